@@ -1,0 +1,29 @@
+"""The artwork stage: from poses and centre-lines to everything that is made, by layer.
+
+In: a :class:`~layoutgen.placement.Placement`. Out: an :class:`Artwork`: copper with nets and origins, vias,
+holes, mask, paste, legend, profile, names, and the pour's measured distance to each line. Not done here:
+judging it against the rules (checks), what it does at RF (response), files (writers). Signal copper is drawn
+where the placement puts it; only the ground pour and what is printed find their own places.
+"""
+
+from layoutgen.artwork.draw import draw
+from layoutgen.artwork.records import (
+    LAYERS,
+    Artwork,
+    Hole,
+    Label,
+    LineCopper,
+    Shape,
+    Via,
+)
+
+__all__ = [
+    "LAYERS",
+    "Artwork",
+    "Hole",
+    "Label",
+    "LineCopper",
+    "Shape",
+    "Via",
+    "draw",
+]

@@ -1,0 +1,147 @@
+"""The stage's one function: from poses and centre-lines to everything that is made."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Iterator, Sequence
+
+import shapely
+
+from layoutgen.artwork.board import GND, cutouts_of, holes_of, profile_shapes
+from layoutgen.artwork.conductors import Conductor, conductors_of, copper_shapes
+from layoutgen.artwork.drills import Drills, legal_area
+from layoutgen.artwork.labels import reference_labels
+from layoutgen.artwork.legend import draw_legend
+from layoutgen.artwork.limits import Limits, limits_of
+from layoutgen.artwork.mask import bottom_openings, paste_shapes, soldered_pads, top_openings
+from layoutgen.artwork.measure import measured_gaps
+from layoutgen.artwork.plane import plane_shapes
+from layoutgen.artwork.pour import ground_pieces, pour_of
+from layoutgen.artwork.records import LAYERS, Artwork, Hole, Shape, Via
+from layoutgen.artwork.stitching import fence, stitch_cutouts, stitch_rest, stitchable, well_held
+from layoutgen.geometry import Point, Ring, grow, offset_ring, pieces, rings_of
+from layoutgen.origin import Origin
+from layoutgen.placement import Placement
+
+__all__ = ["draw"]
+
+
+def draw(placement: Placement) -> Artwork:
+    """Return the artwork of a placed board: copper, vias, mask, paste, legend, profile, names.
+
+    The signal copper is drawn as placed, cut back only at cut-outs and the profile; the ground pour, its vias
+    and all that is printed follow from it and from the rule file. The same placement gives the same artwork,
+    shape by shape.
+    """
+    limits = limits_of(placement.sized)
+    conductors = conductors_of(placement, limits)
+    openings = top_openings(placement, limits, conductors)
+    pour = pour_of(placement, limits, conductors) if limits.pour else []
+    pads = [pad.outline for _, pad in soldered_pads(placement)]
+    area = legal_area(placement, limits, pour, conductors, pads)
+    pour = stitchable(pour, area, limits, placement)
+    drills = Drills(area, limits, [(via.x, via.y, via.drill) for via in placement.vias])
+    sides = fence(pour, conductors, limits, drills)
+    count = len(drills.added)
+    stitch_cutouts(placement, sides, limits, drills)
+    holes = holes_of(placement)
+    legend = draw_legend(
+        placement, limits, openings, conductors, _all_drills(placement, limits, holes, drills)
+    )
+    drills.keep_off(legend.areas, limits.legend_distance)
+    stitch_rest(placement, pour, sides, limits, drills)
+    pour, added = well_held(pour, drills, count)
+    vias = (*_placed_vias(placement), *_pour_vias(limits, added))
+    shapes = [
+        *copper_shapes(conductors),
+        *_ground_shapes(placement, limits, vias),
+        *_pour_shapes(limits, pour),
+        *plane_shapes(placement, limits),
+        *openings,
+        *bottom_openings(placement, limits),
+        *paste_shapes(placement),
+        *legend.shapes,
+        *profile_shapes(placement),
+    ]
+    order = {layer: i for i, layer in enumerate(LAYERS)}
+    return Artwork(
+        placement=placement,
+        shapes=tuple(sorted(shapes, key=lambda shape: order[shape.layer])),
+        vias=vias,
+        holes=holes,
+        labels=tuple(reference_labels(placement)),
+        line_copper=measured_gaps(placement, limits, pour),
+        title_anchor=legend.title_anchor,
+        notes=(*_cutout_notes(placement, limits, conductors), *legend.notes),
+    )
+
+
+def _all_drills(
+    placement: Placement, limits: Limits, holes: Sequence[Hole], drills: Drills
+) -> list[tuple[int, int, int]]:
+    """Return all holes and vias so far, each (x, y, diameter) [nm]."""
+    return [
+        *((hole.x, hole.y, hole.diameter) for hole in holes),
+        *((via.x, via.y, via.drill) for via in placement.vias),
+        *((x, y, limits.via_drill) for x, y in drills.added),
+    ]
+
+
+def _placed_vias(placement: Placement) -> Iterator[Via]:
+    """Yield the vias of parts and lines, in the placement's order."""
+    for via in placement.vias:
+        yield Via(
+            x=via.x,
+            y=via.y,
+            drill=via.drill,
+            land=via.land,
+            net=via.net,
+            purpose=via.purpose,
+            origin=via.origin,
+        )
+
+
+def _pour_vias(limits: Limits, added: Iterable[tuple[Point, str]]) -> Iterator[Via]:
+    """Yield the vias of fence and pour."""
+    for (x, y), purpose in added:
+        yield Via(
+            x=x,
+            y=y,
+            drill=limits.via_drill,
+            land=limits.via_land,
+            net=GND,
+            purpose=purpose,
+            origin=Origin(purpose),
+        )
+
+
+def _ground_shapes(placement: Placement, limits: Limits, vias: Sequence[Via]) -> Iterator[Shape]:
+    """Yield pads on ground, the copper between them and their vias, and the lands of all vias."""
+    for role, ring, origin in ground_pieces(placement):
+        drawn = offset_ring(ring, limits.undercut)
+        yield Shape(layer="copper_top", outline=drawn, net=GND, role=role, origin=origin)
+    for via in vias:
+        land = Ring.circle(via.x, via.y, via.land // 2 + limits.undercut)
+        yield Shape(layer="copper_top", outline=land, net=via.net, role="land", origin=via.origin)
+
+
+def _pour_shapes(limits: Limits, pour: Sequence[shapely.Polygon]) -> Iterator[Shape]:
+    """Yield the artwork of the pour, grown by the undercut."""
+    for piece in pour:
+        for grown in pieces(grow(piece, limits.undercut)):
+            outline, holes = rings_of(grown)
+            yield Shape(
+                layer="copper_top", outline=outline, holes=holes, net=GND, role="pour", origin=Origin("pour")
+            )
+
+
+def _cutout_notes(
+    placement: Placement, limits: Limits, conductors: Sequence[Conductor]
+) -> Iterator[tuple[str, str, str]]:
+    """Yield a note for each part with pads nearer to its own cut-out than the edge rule allows."""
+    for part, ring in cutouts_of(placement):
+        cutout = ring.polygon()
+        for pad in part.pads:
+            distance = pad.outline.polygon().distance(cutout)
+            if pad.net != GND and distance < limits.edge:
+                text = f"pad {pad.pin} faces its part's own cut-out at {distance / 1e6:.3f} mm and is exempt"
+                yield "copper.min_edge_distance", part.name, text

@@ -1,0 +1,297 @@
+"""The printed legend: references beside their parts, names beside ports, title and revision.
+
+A text keeps off mask openings, drills, the board's edge and other texts. Places around its object are tried
+from near to far and from large to small letters; a text that finds none is left out and noted, not squeezed.
+"""
+
+from __future__ import annotations
+
+import itertools
+import math
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+import shapely
+from numpy.typing import NDArray
+from shapely.geometry.base import BaseGeometry
+
+from layoutgen.artwork.board import BOARD, board_area, cutouts_of
+from layoutgen.artwork.conductors import Conductor
+from layoutgen.artwork.limits import Limits
+from layoutgen.artwork.records import Shape
+from layoutgen.geometry import Point, grow, lettering, lettering_size, pieces, printable, rings_of
+from layoutgen.origin import Origin
+from layoutgen.placement import PlacedPart, PlacedPort, Placement
+
+__all__ = ["Legend", "draw_legend"]
+
+_LEAST_UNITS = 6.0
+"""Height of a capital over the pen [-] below which letters run together."""
+_NAME_HEIGHTS = (1_000_000, 850_000, 720_000)
+_TITLE_HEIGHTS = (1_500_000, 1_250_000, 1_000_000, 800_000)
+_NEAR_NM = (0, 150_000, 300_000, 500_000, 750_000, 1_000_000)
+_FAR_NM = (1_300_000, 1_600_000, 2_000_000, 2_400_000, 2_900_000, 3_500_000)
+_SLIDES = tuple(sign * k / 8.0 for k in range(10) for sign in ((1.0, -1.0) if k else (1.0,)))
+_TITLE_STEP_NM = 500_000
+_PORT_LENGTH_NM = 1_500_000
+_EDGE_NM = 500_000
+_RULE = "legend.min_distance"
+
+Boxes = NDArray[np.float64]
+Bools = NDArray[np.bool_]
+Geometries = NDArray[np.object_]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Legend:
+    """What was printed: outlines, the areas of the texts [nm], the title's anchor, what was left out."""
+
+    shapes: tuple[Shape, ...]
+    areas: tuple[shapely.Polygon, ...]
+    title_anchor: Point
+    notes: tuple[tuple[str, str, str], ...]
+
+
+@dataclass(frozen=True, slots=True)
+class _Text:
+    """One text to place: its wording, the box it belongs to (x0, y0, x1, y1) [nm], its origin."""
+
+    text: str
+    home: tuple[float, float, float, float]
+    origin: Origin
+
+
+@dataclass(frozen=True, slots=True)
+class _Spot:
+    """A text in its place: baseline start [nm], height [nm], upright or not, the box it fills [nm]."""
+
+    x: float
+    y: float
+    height: int
+    upright: bool
+    box: tuple[float, float, float, float]
+
+
+def draw_legend(
+    placement: Placement,
+    limits: Limits,
+    openings: Sequence[Shape],
+    conductors: Sequence[Conductor],
+    drills: Sequence[tuple[int, int, int]],
+) -> Legend:
+    """Return the legend of a board.
+
+    Args:
+        placement: The placed board.
+        limits: Pen and distances.
+        openings: Openings of the top solder mask.
+        conductors: Signal copper; texts are not printed across it, nor across its gap if there is a choice.
+        drills: Holes and vias, each (x, y, diameter) [nm].
+    """
+    printer = _Printer(placement, limits, _Ground(placement, openings, conductors, drills, limits))
+    for part in placement.parts.values():
+        printer.print_near(_Text(part.name, _part_box(part), part.origin))
+    for port in placement.ports.values():
+        printer.print_near(_Text(port.name, _port_box(port), port.origin))
+    anchor = printer.print_title()
+    return Legend(
+        shapes=tuple(printer.shapes),
+        areas=tuple(printer.areas),
+        title_anchor=anchor,
+        notes=tuple(printer.notes),
+    )
+
+
+def _part_box(part: PlacedPart) -> tuple[float, float, float, float]:
+    """Return the box around a part's outline and pads [nm]."""
+    rings = (part.outline, *(pad.outline for pad in part.pads))
+    x, y = zip(*(point for ring in rings for point in ring.chords()), strict=True)
+    return min(x), min(y), max(x), max(y)
+
+
+def _port_box(port: PlacedPort) -> tuple[float, float, float, float]:
+    """Return the box around the end of a port's copper [nm]."""
+    angle = math.radians(port.heading)
+    ux, uy = math.cos(angle), math.sin(angle)
+    half = port.width / 2.0
+    corners = [
+        (port.x + t * ux - s * uy, port.y + t * uy + s * ux)
+        for t in (0.0, _PORT_LENGTH_NM)
+        for s in (-half, half)
+    ]
+    x, y = zip(*corners, strict=True)
+    return min(x), min(y), max(x), max(y)
+
+
+class _Printer:
+    """Finds room for one text after the other and remembers what is taken."""
+
+    def __init__(self, placement: Placement, limits: Limits, ground: _Ground) -> None:
+        self._placement, self._limits, self._ground = placement, limits, ground
+        self._pen = limits.legend_line
+        self._homes = [_part_box(part) for part in placement.parts.values()]
+        self.shapes: list[Shape] = []
+        self.areas: list[shapely.Polygon] = []
+        self.notes: list[tuple[str, str, str]] = []
+
+    def print_near(self, text: _Text) -> None:
+        """Print a text beside its object, or note that it was left out."""
+        wording = printable(text.text)
+        tries = ((True, _NEAR_NM), (False, _NEAR_NM), (True, _FAR_NM), (False, _FAR_NM))
+        for (tidy, steps), upright in itertools.product(tries, (False, True)):
+            for height in self._heights(_NAME_HEIGHTS):
+                spots = list(self._spots(wording, text.home, height, steps, upright))
+                spot = self._first_free(spots, text.home, tidy)
+                if spot is not None:
+                    self._ink(wording, spot, text.origin)
+                    return
+        self.notes.append((_RULE, text.origin.element, "its name is left off the legend: no room beside it"))
+
+    def print_title(self) -> Point:
+        """Print title and revision where there is room, the south-west corner first; return the anchor."""
+        design = self._placement.sized.circuit.file.design
+        revision = "" if design.revision is None else f"rev {design.revision}"
+        title = printable(design.title)
+        wordings = ((f"{title}  {printable(revision)}".strip(),), (title, printable(revision)))
+        for tidy, height in itertools.product((True, False), self._heights(_TITLE_HEIGHTS)):
+            for lines in wordings:
+                anchor = self._print_block([line for line in lines if line], height, tidy)
+                if anchor is not None:
+                    return anchor
+        self.notes.append((_RULE, "board", "title and revision are left off the legend: no room"))
+        return 0, 0
+
+    def _heights(self, wanted: Sequence[int]) -> list[int]:
+        """Return the heights that the pen can write, at least one."""
+        least = math.ceil(_LEAST_UNITS * self._pen)
+        return [height for height in wanted if height >= least] or [least]
+
+    def _print_block(self, lines: Sequence[str], height: int, tidy: bool) -> Point | None:
+        """Print lines below each other in the first free place; return the first line's start."""
+        sizes = [lettering_size(line, height, self._pen) for line in lines]
+        pitch = 1.7 * height
+        width = max(size[0] for size in sizes)
+        above, depth = sizes[0][2], sizes[-1][1] + pitch * (len(lines) - 1)
+        corners = self._block_corners(width, above + depth)
+        boxes = np.column_stack([corners, corners + np.array([width, above + depth])])
+        for k in np.flatnonzero(self._open(boxes, tidy)):
+            x, y = float(boxes[k, 0]), float(boxes[k, 1]) + depth
+            for i, line in enumerate(lines):
+                base = y - pitch * i
+                box = (x, base - sizes[i][1], x + sizes[i][0], base + sizes[i][2])
+                self._ink(line, _Spot(x, base, height, False, box), BOARD)
+            return round(x), round(y)
+        return None
+
+    def _block_corners(self, width: float, height: float) -> Boxes:
+        """Return south-west corners to try for a block [nm]: rows from both edges to the middle."""
+        first = float(_EDGE_NM + self._limits.legend_distance)
+        xs = np.arange(first, self._placement.width - width, _TITLE_STEP_NM)
+        ys = np.arange(first, self._placement.height - height, _TITLE_STEP_NM)
+        middle = (ys[-1] + ys[0]) / 2.0 if len(ys) else 0.0
+        rows = ys[np.argsort(-np.abs(ys - middle), kind="stable")]
+        return np.array([(x, y) for y in rows for x in xs], dtype=np.float64).reshape(-1, 2)
+
+    def _spots(
+        self,
+        wording: str,
+        home: tuple[float, float, float, float],
+        height: int,
+        steps: Sequence[int],
+        upright: bool,
+    ) -> Iterator[_Spot]:
+        """Yield places around a box, near ones first: above, below, beside."""
+        width, depth, above = lettering_size(wording, height, self._pen)
+        w, h = (depth + above, width) if upright else (width, depth + above)
+        x0, y0, x1, y1 = home
+        for step, slide in itertools.product(steps, _SLIDES):
+            away = step + self._limits.legend_distance
+            mx = (x0 + x1 - w) / 2.0 + slide * (x1 - x0 + w) / 2.0
+            my = (y0 + y1 - h) / 2.0 + slide * (y1 - y0 + h) / 2.0
+            for x, y in ((mx, y1 + away), (mx, y0 - away - h), (x1 + away, my), (x0 - away - w, my)):
+                base = (x + above, y) if upright else (x, y + depth)
+                yield _Spot(*base, height, upright, (x, y, x + w, y + h))
+
+    def _first_free(
+        self, spots: Sequence[_Spot], home: tuple[float, float, float, float], tidy: bool
+    ) -> _Spot | None:
+        """Return the first place that is free and not nearer to another part than to its own."""
+        boxes = np.array([spot.box for spot in spots])
+        for k in np.flatnonzero(self._open(boxes, tidy)).tolist():
+            own = _box_distance(spots[k].box, home)
+            if all(_box_distance(spots[k].box, other) >= own for other in self._homes if other != home):
+                return spots[k]
+        return None
+
+    def _open(self, boxes: Boxes, tidy: bool) -> Bools:
+        """Return which boxes (N, 4) [nm] keep their distance to the edge, to obstacles and to other texts."""
+        if not len(boxes):
+            return np.zeros(0, dtype=bool)
+        away = self._limits.legend_distance + 2
+        wide = shapely.box(boxes[:, 0] - away, boxes[:, 1] - away, boxes[:, 2] + away, boxes[:, 3] + away)
+        fits = self._ground.open(boxes, wide, tidy)
+        if self.areas:
+            fits[shapely.STRtree(self.areas).query(wide, predicate="intersects")[0]] = False
+        return fits
+
+    def _ink(self, wording: str, spot: _Spot, origin: Origin) -> None:
+        """Print a text and take its box."""
+        outlines = lettering(wording, spot.x, spot.y, spot.height, self._pen, spot.upright)
+        for piece in pieces(outlines):
+            outline, holes = rings_of(piece)
+            self.shapes.append(
+                Shape(layer="legend_top", outline=outline, holes=holes, role="legend", origin=origin)
+            )
+        self.areas.append(shapely.box(*spot.box))
+
+
+class _Ground:
+    """What texts are printed on, with all that they must keep off and that they had better keep off."""
+
+    def __init__(
+        self,
+        placement: Placement,
+        openings: Sequence[Shape],
+        conductors: Sequence[Conductor],
+        drills: Sequence[tuple[int, int, int]],
+        limits: Limits,
+    ) -> None:
+        self._inside = board_area(placement, _EDGE_NM)
+        shapely.prepare(self._inside)
+        must = [*_obstacles(placement, openings, drills, 0), *(piece.copper for piece in conductors)]
+        ring = (limits.via_land - limits.via_drill) // 2
+        had_better = [*_obstacles(placement, (), drills, ring), *(piece.keepout for piece in conductors)]
+        self._must, self._had_better = shapely.STRtree(must), shapely.STRtree(had_better)
+
+    def open(self, boxes: Boxes, wide: Geometries, tidy: bool) -> Bools:
+        """Return which texts stand on free ground, given their boxes (N, 4) [nm] and the same grown.
+
+        Args:
+            boxes: Boxes of the texts.
+            wide: The same, grown by the distance to keep.
+            tidy: Also off the lands of vias and off the gaps beside lines.
+        """
+        fits: Bools = np.asarray(shapely.contains(self._inside, shapely.box(*boxes.T)))
+        fits[self._must.query(wide, predicate="intersects")[0]] = False
+        if tidy:
+            fits[self._had_better.query(shapely.box(*boxes.T), predicate="intersects")[0]] = False
+        return fits
+
+
+def _obstacles(
+    placement: Placement, openings: Sequence[Shape], drills: Sequence[tuple[int, int, int]], extra: int
+) -> Iterator[BaseGeometry]:
+    """Yield openings, cut-outs, and drills grown by an extra [nm]."""
+    for shape in openings:
+        yield shapely.Polygon(shape.outline.chords(), [hole.chords() for hole in shape.holes])
+    for _, ring in cutouts_of(placement):
+        yield ring.polygon()
+    for x, y, diameter in drills:
+        reach = diameter // 2 + 1 + extra
+        yield grow(shapely.box(x, y, x + 1, y + 1), reach)
+
+
+def _box_distance(a: tuple[float, float, float, float], b: tuple[float, float, float, float]) -> float:
+    """Return the distance of two boxes [nm]."""
+    return math.hypot(max(a[0] - b[2], b[0] - a[2], 0.0), max(a[1] - b[3], b[1] - a[3], 0.0))

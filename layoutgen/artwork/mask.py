@@ -1,0 +1,119 @@
+"""Solder mask openings of both sides, and solder paste.
+
+Top: pads are open, RF lines too unless the board says otherwise, and the last piece of every line at a port,
+where a connector or a wire is soldered. Vias stay covered. Bottom: a board whose part stands on a carrier
+through a cut-out rests on that carrier and is bare all over; else the bottom is covered but for the holes.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterator, Sequence
+
+import shapely
+from shapely.geometry.base import BaseGeometry
+
+from layoutgen.artwork.board import BOARD, board_area, board_outline, cutouts_of, has_area
+from layoutgen.artwork.conductors import Conductor
+from layoutgen.artwork.limits import Limits
+from layoutgen.artwork.records import Shape
+from layoutgen.geometry import Ring, circumscribed, closed, grow, joined, overlap, pieces, rings_of
+from layoutgen.placement import PlacedPad, PlacedPart, PlacedPort, Placement
+
+__all__ = ["bottom_openings", "paste_shapes", "soldered_pads", "top_openings"]
+
+_PORT_LANDING_NM = 2_000_000
+_PANE_NM, _PANE_GAP_NM = 1_200_000, 300_000
+_SCREW_HEADS = 2.0
+
+
+def soldered_pads(placement: Placement) -> list[tuple[PlacedPart, PlacedPad]]:
+    """Return all pads that are copper, each with its part."""
+    return [(part, pad) for part in placement.parts.values() for pad in part.pads if has_area(pad.outline)]
+
+
+def top_openings(placement: Placement, limits: Limits, conductors: Sequence[Conductor]) -> list[Shape]:
+    """Return the openings of the top solder mask; those with too narrow a web between them are one."""
+    bare: list[BaseGeometry] = [pad.outline.polygon() for _, pad in soldered_pads(placement)]
+    bare += [_landing(port, conductors) for port in placement.ports.values()]
+    if not placement.sized.circuit.file.board.mask_over_lines:
+        bare += [piece.copper for piece in conductors if piece.rf]
+    bare += [_hole(hole.x, hole.y, hole.diameter) for hole in placement.holes]
+    grown = joined(grow(copper, limits.mask_expansion) for copper in bare)
+    merged = overlap(closed(grown, limits.mask_web / 2.0), board_area(placement))
+    return [_opening("soldermask_top", piece) for piece in pieces(merged)]
+
+
+def _landing(port: PlacedPort, conductors: Sequence[Conductor]) -> BaseGeometry:
+    """Return the end of a port's copper, left bare for solder: as long as it is wide, 2 mm at least."""
+    length = max(_PORT_LANDING_NM, port.width)
+    angle = math.radians(port.heading)
+    ahead = (round(port.x + length * math.cos(angle)), round(port.y + length * math.sin(angle)))
+    area = shapely.buffer(shapely.LineString([(port.x, port.y), ahead]), port.width, cap_style="flat")
+    own = [
+        piece.copper for piece in conductors if piece.copper.distance(shapely.Point(port.x, port.y)) <= 1.0
+    ]
+    return overlap(joined(own), area)
+
+
+def _hole(x: int, y: int, diameter: int) -> BaseGeometry:
+    """Return the area of a drilled hole, as a polygon around it."""
+    return circumscribed(x, y, math.ceil(diameter / 2))
+
+
+def bottom_openings(placement: Placement, limits: Limits) -> list[Shape]:
+    """Return the openings of the bottom solder mask."""
+    if cutouts_of(placement):
+        whole = Shape(
+            layer="soldermask_bottom",
+            outline=board_outline(placement),
+            holes=(),
+            role="opening",
+            origin=BOARD,
+        )
+        return [whole]
+    screws = [_hole(h.x, h.y, round(_SCREW_HEADS * h.diameter)) for h in placement.holes]
+    merged = overlap(closed(joined(screws), limits.mask_web / 2.0), board_area(placement))
+    return [_opening("soldermask_bottom", piece) for piece in pieces(merged)]
+
+
+def _opening(layer: str, piece: shapely.Polygon) -> Shape:
+    """Return one opening."""
+    outline, holes = rings_of(piece)
+    return Shape(layer=layer, outline=outline, holes=holes, role="opening", origin=BOARD)
+
+
+def paste_shapes(placement: Placement) -> Iterator[Shape]:
+    """Yield the solder paste of all pads: the pad itself, exposed pads as windows of panes."""
+    for part, pad in soldered_pads(placement):
+        for ring in _panes(pad) if pad.ground == "vias" else (pad.outline,):
+            yield Shape(layer="paste_top", outline=ring, net=pad.net, role="paste", origin=part.origin)
+
+
+def _panes(pad: PlacedPad) -> list[Ring]:
+    """Return the window of an exposed pad: even panes of about 1.2 mm with bars of 0.3 mm between.
+
+    The bars let gas out and keep the part from floating (common practice, no source).
+    """
+    points = pad.outline.points
+    (ox, oy), (ax, ay), (bx, by) = points[0], points[1], points[-1]
+    along, across = math.hypot(ax - ox, ay - oy), math.hypot(bx - ox, by - oy)
+    return [
+        Ring(
+            tuple(
+                (round(ox + (ax - ox) * s + (bx - ox) * t), round(oy + (ay - oy) * s + (by - oy) * t))
+                for s, t in ((s0, t0), (s1, t0), (s1, t1), (s0, t1))
+            )
+        )
+        for s0, s1 in _windows(along)
+        for t0, t1 in _windows(across)
+    ]
+
+
+def _windows(length: float) -> list[tuple[float, float]]:
+    """Return begin and end of the panes along an edge, as shares of its length [-]."""
+    bar = min(_PANE_GAP_NM, length / 4.0)
+    count = max(1, round((length - bar) / (_PANE_NM + bar)))
+    pane = (length - (count + 1) * bar) / count
+    starts = [bar + i * (pane + bar) for i in range(count)]
+    return [(start / length, (start + pane) / length) for start in starts]

@@ -1,0 +1,107 @@
+"""The ground pour: what is left of the top side beside the signal copper, cleaned until it can be made.
+
+The signal copper itself is never changed here. The pour keeps each line's own distance everywhere: its edges
+are those of the lines' bands, so corners are square and the gap is even.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+
+import shapely
+from shapely.geometry.base import BaseGeometry
+
+from layoutgen.artwork.board import GND, has_area, plane_area
+from layoutgen.artwork.conductors import Conductor
+from layoutgen.artwork.limits import Limits
+from layoutgen.geometry import Ring, circumscribed, closed, cut, grow, joined, opened, overlap, pieces
+from layoutgen.origin import Origin
+from layoutgen.placement import Placement
+
+__all__ = ["ground_pieces", "pour_of"]
+
+_CORNER_CHORD_NM = 20_000.0
+_WASH_NM = 20
+_NECK_SHARE = 0.1
+
+
+def ground_pieces(placement: Placement) -> list[tuple[str, Ring, Origin]]:
+    """Return the ground copper of parts and lines, finished: role, outline, origin; without vias."""
+    pads = [
+        ("pad", pad.outline, part.origin)
+        for part in placement.parts.values()
+        for pad in part.pads
+        if pad.net == GND and has_area(pad.outline)
+    ]
+    return pads + [("ground", ring, origin) for ring, origin in placement.ground_shapes]
+
+
+def _own_ground(placement: Placement) -> BaseGeometry:
+    """Return the ground copper that came with parts and lines [nm]: pads, pieces, lands of vias."""
+    shapes: list[BaseGeometry] = [ring.polygon() for _, ring, _ in ground_pieces(placement)]
+    shapes += [Ring.circle(v.x, v.y, v.land // 2).polygon() for v in placement.vias if v.net == GND]
+    return joined(shapes)
+
+
+def pour_of(placement: Placement, limits: Limits, conductors: Sequence[Conductor]) -> list[shapely.Polygon]:
+    """Return the finished pour [nm], piece by piece, before vias decide which pieces stay.
+
+    Nothing of it is narrower than twice ``limits.row`` (pads and lands on ground count as part of it), no gap
+    in it is narrower than ``limits.min_gap``, and sharp corners are cut off.
+    """
+    allowed = cut(
+        plane_area(placement, limits, limits.margin, _CORNER_CHORD_NM),
+        _keepout(placement, limits, conductors),
+    )
+    own = _own_ground(placement)
+    filled = overlap(closed(joined([allowed, own]), limits.min_gap / 2.0), allowed)
+    spaced = cut(filled, _narrow_gaps(filled, own, limits))
+    solid = _solid(spaced, own, limits)
+    washed = overlap(opened(solid, _WASH_NM), allowed)
+    return [piece for piece in pieces(washed) if piece.area >= limits.island]
+
+
+def _solid(pour: BaseGeometry, own: BaseGeometry, limits: Limits) -> BaseGeometry:
+    """Return the pour without fins and without necks too narrow to be etched.
+
+    What is narrower than twice ``limits.row`` goes, but for short necks, which are healed: a cut through one
+    would be a slit with sharp ends. A neck narrower than the least width is cut through squarely.
+    """
+    wide = opened(joined([pour, own]), limits.row)
+    healed = overlap(closed(wide, limits.row), pour)
+    both = joined([healed, own])
+    thin = cut(both, opened(both, 0.55 * limits.min_width))
+    necks = [neck for neck in pieces(thin) if neck.area > _NECK_SHARE * limits.min_width**2]
+    if not necks:
+        return healed
+    apart = cut(healed, joined(shapely.box(*grow(neck, limits.min_gap).bounds) for neck in necks))
+    return overlap(opened(joined([apart, own]), limits.row), apart)
+
+
+def _keepout(placement: Placement, limits: Limits, conductors: Sequence[Conductor]) -> BaseGeometry:
+    """Return all that the pour stays out of beside the board's own limits."""
+    shapes = [piece.keepout for piece in conductors]
+    reach = max(limits.hole_copper, limits.min_gap)
+    shapes += [
+        circumscribed(v.x, v.y, max(math.ceil(v.drill / 2) + reach, math.ceil(v.land / 2) + limits.min_gap))
+        for v in placement.vias
+        if v.net != GND
+    ]
+    return joined(shapes)
+
+
+def _narrow_gaps(pour: BaseGeometry, own: BaseGeometry, limits: Limits) -> BaseGeometry:
+    """Return what to take off the pour where it ends just short of ground copper of a part.
+
+    Such a slot can be neither etched nor, being within a line's distance, filled; the pour steps back.
+    """
+    both = joined([pour, own])
+    slots = cut(closed(both, limits.min_gap / 2.0), both)
+    real = [slot for slot in pieces(slots) if slot.distance(pour) == 0.0 and _is_slot(slot, limits)]
+    return joined(grow(slot, limits.min_gap) for slot in real)
+
+
+def _is_slot(slot: shapely.Polygon, limits: Limits) -> bool:
+    """True for a gap between facing edges; False for the fillet of a single corner."""
+    return slot.length > 7.0 * limits.min_gap

@@ -1,0 +1,220 @@
+"""Rows of vias along the pour's edges: beside lines (the fence), cut-outs and the board's edge.
+
+A row stands at one distance inside the edge. Its corners get vias first, then each straight stretch is
+divided evenly; vias that already stand near the edge (those of ground pads, those of a row on the other side
+of a narrow piece) count as members.
+"""
+
+from __future__ import annotations
+
+import itertools
+import math
+from collections.abc import Iterable, Iterator, Sequence
+from dataclasses import dataclass
+
+import numpy as np
+import shapely
+from numpy.typing import NDArray
+from shapely.geometry.base import BaseGeometry
+
+from layoutgen.artwork.drills import Drills
+from layoutgen.geometry import grow, pieces, rings_of
+
+__all__ = ["Facing", "Side", "set_rows", "sides_of"]
+
+_SAMPLE_NM = 50_000
+_CORNER_DEG = 40.0
+
+Floats = NDArray[np.float64]
+Bools = NDArray[np.bool_]
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Side:
+    """A stretch of a row between two corners: points along it, arc lengths, outward normals; all [nm], [-].
+
+    ``outward`` points from the row to the pour's edge, ``inset`` [nm] away.
+    """
+
+    points: Floats
+    along: Floats
+    outward: Floats
+    inset: int
+
+    @property
+    def length(self) -> float:
+        """Length [nm]."""
+        return float(self.along[-1])
+
+    def at(self, t: float) -> tuple[float, float]:
+        """Return the point at an arc length [nm]."""
+        return (
+            float(np.interp(t, self.along, self.points[:, 0])),
+            float(np.interp(t, self.along, self.points[:, 1])),
+        )
+
+
+@dataclass(frozen=True, slots=True)
+class Facing:
+    """What rows are asked for: targets to be faced, within which distance of the edge, and the pitch [nm].
+
+    ``widened`` is how far the pour's edge may reach beyond the faced stretch for the row to go with it to
+    the corner.
+    """
+
+    targets: Sequence[BaseGeometry]
+    distance: int
+    pitch: int
+    widened: int
+
+
+def sides_of(pour: Iterable[shapely.Polygon], inset: int) -> list[Side]:
+    """Return all rows along the pour's edges, ``inset`` [nm] inside them, cut at their corners."""
+    out: list[Side] = []
+    for piece in pour:
+        for core in pieces(grow(piece, -inset)):
+            outline, holes = rings_of(core)
+            for ring in (outline, *holes):
+                out.extend(_split(np.array(ring.points, dtype=np.float64), inset))
+    return out
+
+
+def _split(points: Floats, inset: int) -> Iterator[Side]:
+    """Yield the sides of one closed ring; the pour's core lies to the left, its edge to the right."""
+    step = np.roll(points, -1, axis=0) - points
+    heading = np.degrees(np.arctan2(step[:, 1], step[:, 0]))
+    turn = np.abs((heading - np.roll(heading, 1) + 180.0) % 360.0 - 180.0)
+    corners = np.flatnonzero(turn > _CORNER_DEG)
+    if len(corners) == 0:
+        corners = np.array([0])
+    points = np.roll(points, -corners[0], axis=0)
+    bounds = [*(corners - corners[0]), len(points)]
+    closed = np.vstack([points, points[:1]])
+    for a, b in itertools.pairwise(bounds):
+        yield _sampled(closed[a : b + 1], inset)
+
+
+def _sampled(vertices: Floats, inset: int) -> Side:
+    """Return a side with points at every vertex and at least every sample length between."""
+    points, normals = [vertices[:1]], []
+    for a, b in itertools.pairwise(vertices):
+        count = max(1, math.ceil(math.dist(a, b) / _SAMPLE_NM))
+        t = np.arange(1, count + 1)[:, None] / count
+        points.append(a + (b - a) * t)
+        direction = (b - a) / math.dist(a, b)
+        normals.append(np.tile([direction[1], -direction[0]], (count, 1)))
+    merged, outward = np.vstack(points), np.vstack([normals[0][:1], *normals])
+    lengths = np.hypot(*np.diff(merged, axis=0).T)
+    return Side(merged, np.concatenate([[0.0], np.cumsum(lengths)]), outward, inset)
+
+
+def set_rows(sides: Sequence[Side], facing: Facing, drills: Drills, reach: int) -> None:
+    """Set the vias of all rows that face the targets.
+
+    Args:
+        sides: Rows to choose from.
+        facing: What must be faced, and the pitch.
+        drills: The book that vias are written into.
+        reach: Largest distance of an axis from the pour's edge [nm] at which it counts for the row.
+    """
+    stretches = [
+        (side, a, b)
+        for side, faced in zip(sides, _faced(sides, facing), strict=True)
+        for a, b in _stretches(side, faced, facing.widened)
+    ]
+    for side, a, b in stretches:
+        for t in (a, b):
+            if not drills.near(*side.at(t), facing.pitch / 2.0):
+                _put_near(side, t, a, b, facing.pitch / 2.0, drills)
+    for side, a, b in stretches:
+        _fill(side, a, b, facing.pitch, drills, reach)
+
+
+def _faced(sides: Sequence[Side], facing: Facing) -> list[Bools]:
+    """Return for each side which of its points see a target through the pour's edge."""
+    if not sides or not facing.targets:
+        return [np.zeros(len(side.points), dtype=bool) for side in sides]
+    starts = np.vstack([side.points for side in sides])
+    outward = np.vstack([side.outward * (side.inset + facing.distance) for side in sides])
+    rays = shapely.linestrings(np.stack([starts, starts + outward], axis=1))
+    tree = shapely.STRtree(list(facing.targets))
+    seen = np.zeros(len(starts), dtype=bool)
+    seen[tree.query(rays, predicate="intersects")[0]] = True
+    return np.split(seen, np.cumsum([len(side.points) for side in sides])[:-1])
+
+
+def _stretches(side: Side, faced: Bools, widened: int) -> Iterator[tuple[float, float]]:
+    """Yield the stretches [nm] of a side that face something, widened and merged."""
+    reach = widened + side.inset + 2 * _SAMPLE_NM
+    current: tuple[float, float] | None = None
+    for t in side.along[faced]:
+        a, b = max(0.0, float(t) - reach), min(side.length, float(t) + reach)
+        if current is not None and a <= current[1] + _SAMPLE_NM:
+            current = (current[0], b)
+        else:
+            if current is not None:
+                yield current
+            current = (a, b)
+    if current is not None:
+        yield current
+
+
+def _put_near(side: Side, t: float, a: float, b: float, tolerance: float, drills: Drills) -> bool:
+    """Set a via at t [nm], or as near to it as it may stand within a tolerance and the stretch."""
+    if drills.put(*side.at(t)):
+        return True
+    for k in range(1, math.floor(tolerance / _SAMPLE_NM) + 1):
+        for s in (t + k * _SAMPLE_NM, t - k * _SAMPLE_NM):
+            if a <= s <= b and drills.put(*side.at(s)):
+                return True
+    return False
+
+
+def _members(side: Side, a: float, b: float, drills: Drills, reach: int) -> list[float]:
+    """Return the arc lengths [nm] of the vias that stand by the row, both ends of the stretch included."""
+    marks = {a, b}
+    middle = (side.along >= a) & (side.along <= b)
+    for x, y, _ in _vias_about(side.points[middle], drills, reach):
+        offsets = np.array([x, y]) - side.points
+        nearest = int(np.argmin(np.hypot(offsets[:, 0], offsets[:, 1])))
+        depth = side.inset - float(np.dot(offsets[nearest], side.outward[nearest]))
+        if depth <= reach and a <= side.along[nearest] <= b:
+            marks.add(float(side.along[nearest]))
+    return sorted(marks)
+
+
+def _vias_about(points: Floats, drills: Drills, reach: int) -> list[tuple[int, int, int]]:
+    """Return the vias within reach of any of a row's points, in order of place."""
+    found: set[tuple[int, int, int]] = set()
+    stride = max(1, reach // _SAMPLE_NM)
+    for x, y in points[::stride]:
+        found.update(drills.near(x, y, 2.0 * reach))
+    return sorted(found)
+
+
+def _fill(side: Side, a: float, b: float, pitch: int, drills: Drills, reach: int) -> None:
+    """Divide what is left open between the members of a row evenly."""
+    for start, end in itertools.pairwise(_members(side, a, b, drills, reach)):
+        count = math.ceil((end - start - 2.0) / pitch)
+        for k in range(1, count):
+            t = start + (end - start) * k / count
+            _put_near(side, t, start, end, pitch / 2.0, drills)
+    _mend(side, a, b, pitch, drills, reach)
+
+
+def _mend(side: Side, a: float, b: float, pitch: int, drills: Drills, reach: int) -> None:
+    """Close gaps wider than the pitch that even division left beside places where no via may stand."""
+    for start, end in itertools.pairwise(_members(side, a, b, drills, reach)):
+        last = start
+        while end - last > pitch:
+            placed = _farthest(side, last, min(last + pitch, end), drills)
+            last = placed if placed is not None else last + pitch
+
+
+def _farthest(side: Side, start: float, end: float, drills: Drills) -> float | None:
+    """Set a via as far along a stretch as one may stand, and return its place [nm]."""
+    for k in range(math.floor((end - start) / _SAMPLE_NM)):
+        t = end - k * _SAMPLE_NM
+        if drills.put(*side.at(t)):
+            return t
+    return None

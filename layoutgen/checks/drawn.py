@@ -1,0 +1,221 @@
+"""From the artwork to the board the rules look at: finished copper, arcs as fine chords, nets joined by lines."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Iterator, Mapping, Sequence
+
+import numpy as np
+import numpy.typing as npt
+import shapely
+
+from layoutgen.artwork import Artwork, Shape
+from layoutgen.checks.board import (
+    CHORD_NM,
+    CORNER_LIMITS,
+    TOLERANCE_NM,
+    Area,
+    Board,
+    Drill,
+    Layer,
+    Piece,
+    merge,
+    parts,
+)
+from layoutgen.checks.limits import Limits
+from layoutgen.checks.nodes import GROUND, drawn_conductors, joined_nets, tail_of
+from layoutgen.geometry import Ring
+
+__all__ = ["board_of", "pour_gaps"]
+
+_POUR_ROLES = ("pour", "plane")
+
+
+def board_of(artwork: Artwork) -> Board:
+    """Return the board that an artwork stands for."""
+    circuit = artwork.placement.sized.circuit
+    limits = Limits(circuit.rules)
+    nodes = joined_nets(circuit.file)
+    drills = _drills(artwork, nodes)
+    copper = {name: _layer(artwork, name, limits, nodes, drills) for name in ("copper_top", "copper_bottom")}
+    outline, cutouts = _profile(artwork.on("profile"))
+    return Board(
+        limits=limits,
+        top=copper["copper_top"],
+        bottom=copper["copper_bottom"],
+        drills=drills,
+        outline=outline,
+        cutouts=cutouts,
+        openings=tuple(_areas(artwork.on("soldermask_top"))),
+        legend=tuple(_areas(artwork.on("legend_top"))),
+        height=circuit.file.substrate.height * 1e9,
+        thickness=circuit.file.substrate.copper_thickness * 1e9,
+        artwork=artwork,
+    )
+
+
+def pour_gaps(artwork: Artwork) -> Mapping[str, float]:
+    """Return the distance [nm] at which the pour was to be drawn from each line, pair and radial stub."""
+    sized = artwork.placement.sized
+    records = (*sized.lines.items(), *sized.pairs.items(), *sized.radials.items())
+    return {name: record.pour_gap * 1e9 for name, record in records if np.isfinite(record.pour_gap)}
+
+
+def _drills(artwork: Artwork, nodes: Mapping[str, str]) -> tuple[Drill, ...]:
+    """Return all drilled holes, vias first, named by their place in the artwork's lists."""
+    vias = [
+        Drill(f"via:{n}", via.x, via.y, via.drill, True, via.net, nodes.get(via.net), via.land, via.purpose)
+        for n, via in enumerate(artwork.vias)
+    ]
+    holes = [
+        Drill(f"hole:{n}", hole.x, hole.y, hole.diameter, hole.plated, hole.net, nodes.get(hole.net or ""))
+        for n, hole in enumerate(artwork.holes)
+    ]
+    return (*vias, *holes)
+
+
+def _layer(
+    artwork: Artwork, name: str, limits: Limits, nodes: Mapping[str, str], drills: Sequence[Drill]
+) -> Layer:
+    """Return one layer's finished copper."""
+    names = {(drill.x, drill.y): drill.item for drill in drills if drill.is_via}
+    tails = _tails(artwork, limits)
+    pieces: list[Piece] = []
+    for shape in _without_buried_lands(artwork.on(name), nodes):
+        pieces.extend(_pieces(shape, nodes, names, tails))
+    undercut = limits.nm("copper.undercut") or 0.0
+    if undercut > 0.0:
+        pieces = _etched(pieces, undercut)
+    return Layer(name, tuple(_bored(pieces, drills)))
+
+
+def _tails(artwork: Artwork, limits: Limits) -> Mapping[str, tuple[str, shapely.Polygon]]:
+    """Return for each line that ends on gnd its other net, and the region at its end that counts as gnd."""
+    gaps = pour_gaps(artwork)
+    corner = CORNER_LIMITS * (limits.nm("copper.min_gap") or 0.0)
+    lines = artwork.placement.lines
+    return {
+        name: (net, tail_of(lines[name], gaps.get(name, 0.0) + corner + lines[name].width))
+        for name, net in drawn_conductors(artwork).items()
+    }
+
+
+def _pieces(
+    shape: Shape,
+    nodes: Mapping[str, str],
+    via_names: Mapping[tuple[float, float], str],
+    tails: Mapping[str, tuple[str, shapely.Polygon]],
+) -> Iterator[Piece]:
+    """Yield a shape's pieces: one, or two where a line that ends on gnd is cut."""
+    polygon, item = _polygon(shape), _item(shape, via_names)
+    if shape.role == "line" and item in tails:
+        net, tail = tails[item]
+        for rest, held in ((polygon.difference(tail), net), (polygon.intersection(tail), GROUND)):
+            for part in parts(rest):
+                yield Piece(part, item, held, nodes.get(held), shape.role)
+        return
+    yield Piece(polygon, item, shape.net, nodes.get(shape.net or ""), shape.role)
+
+
+def _item(shape: Shape, via_names: Mapping[tuple[float, float], str]) -> str:
+    """Return the name of a shape in findings."""
+    if shape.role in _POUR_ROLES:
+        return "pour"
+    if shape.role == "land" and (circle := _circle(shape.outline)) is not None:
+        return via_names.get((circle[0], circle[1]), shape.origin.element)
+    return shape.origin.element
+
+
+def _polygon(shape: Shape) -> shapely.Polygon:
+    """Return a shape as a valid polygon [nm]."""
+    rings = [hole.chords(CHORD_NM) for hole in shape.holes]
+    polygon = shapely.Polygon(shape.outline.chords(CHORD_NM), rings)
+    return polygon if polygon.is_valid else shapely.make_valid(polygon)
+
+
+def _circle(ring: Ring) -> tuple[float, float, float] | None:
+    """Return middle and radius [nm] of a ring that is a whole circle, None for others."""
+    if len(ring.points) != 2 or ring.bulges != (1.0, 1.0):
+        return None
+    (ax, ay), (bx, by) = ring.points
+    return (ax + bx) / 2.0, (ay + by) / 2.0, float(np.hypot(bx - ax, by - ay)) / 2.0
+
+
+def _without_buried_lands(shapes: Sequence[Shape], nodes: Mapping[str, str]) -> list[Shape]:
+    """Return the shapes without round lands that lie wholly inside other copper of their own net.
+
+    They change no outline, and there may be thousands of them.
+    """
+    circles = [(k, c) for k, shape in enumerate(shapes) if (c := _circle(shape.outline)) is not None]
+    hosts = [shape for shape in shapes if _circle(shape.outline) is None]
+    if not circles or not hosts:
+        return list(shapes)
+    polygons = np.array([_polygon(shape) for shape in hosts], dtype=object)
+    points = shapely.points([(x, y) for _, (x, y, _) in circles])
+    point, host = shapely.STRtree(polygons).query(points, predicate="intersects")
+    same = [
+        nodes.get(shapes[circles[p][0]].net or "") == nodes.get(hosts[h].net or "") is not None
+        for p, h in zip(point, host, strict=True)
+    ]
+    point, host = point[same], host[same]
+    radius = np.array([circles[p][1][2] for p in point])
+    rims = shapely.boundary(polygons)
+    shapely.prepare(rims)
+    deep = ~shapely.dwithin(rims[host], points[point], np.maximum(radius - TOLERANCE_NM, 0.0))
+    buried = {circles[p][0] for p in point[deep]}
+    return [shape for k, shape in enumerate(shapes) if k not in buried]
+
+
+def _etched(pieces: Sequence[Piece], undercut: float) -> list[Piece]:
+    """Return the pieces as they are left after etching: every outline of the joined copper moved inwards."""
+    layer = Layer("", tuple(pieces))
+    shrunk = shapely.buffer(layer.merged, -undercut, join_style="mitre", mitre_limit=5.0)
+    copper = shapely.union_all(shrunk)
+    return [
+        Piece(part, piece.item, piece.net, piece.node, piece.role)
+        for piece in pieces
+        for part in parts(piece.polygon.intersection(copper))
+    ]
+
+
+def _bored(pieces: Sequence[Piece], drills: Iterable[Drill]) -> list[Piece]:
+    """Return the pieces with the copper that unplated holes take away removed."""
+    discs = [disc(drill) for drill in drills if not drill.plated]
+    if not discs or not pieces:
+        return list(pieces)
+    away = shapely.union_all(discs)
+    shapely.prepare(away)
+    out: list[Piece] = []
+    for piece in pieces:
+        if not away.intersects(piece.polygon):
+            out.append(piece)
+            continue
+        left = parts(piece.polygon.difference(away))
+        out.extend(Piece(part, piece.item, piece.net, piece.node, piece.role) for part in left)
+    return out
+
+
+def disc(drill: Drill, grown: float = 0.0) -> shapely.Polygon:
+    """Return a hole's circle as a polygon [nm], its radius grown by a length [nm]."""
+    radius = round(drill.diameter / 2.0 + grown)
+    return Ring.circle(round(drill.x), round(drill.y), radius).polygon(CHORD_NM)
+
+
+def _profile(shapes: Sequence[Shape]) -> tuple[shapely.Polygon | None, tuple[Area, ...]]:
+    """Return the board's outline and its cut-outs."""
+    outlines = [_polygon(shape) for shape in shapes if shape.role == "profile"]
+    cutouts = tuple(Area(_polygon(s), s.origin.element) for s in shapes if s.role == "cutout")
+    return (max(outlines, key=lambda polygon: polygon.area) if outlines else None), cutouts
+
+
+def _areas(shapes: Iterable[Shape]) -> Iterator[Area]:
+    """Yield the polygons of mask openings or of the legend."""
+    for shape in shapes:
+        for part in parts(_polygon(shape)):
+            yield Area(part, shape.origin.element)
+
+
+def joined(areas: Sequence[Area]) -> npt.NDArray[np.object_]:
+    """Return areas as disjoint polygons."""
+    polygons = np.array([area.polygon for area in areas], dtype=object)
+    i, j = shapely.STRtree(polygons).query(polygons, predicate="intersects")
+    return merge(polygons, np.stack((i[i < j], j[i < j]), axis=1))

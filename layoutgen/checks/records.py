@@ -1,0 +1,51 @@
+"""What the checks hand on: findings as values, and what was not looked at."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+from layoutgen.geometry import Point
+
+__all__ = ["CheckResult", "Finding", "NotChecked"]
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class Finding:
+    """One fault or note: which rule, how bad, measured against the limit, where, between what.
+
+    ``severity`` is error, warning or note; ``measured`` and ``limit`` are in ``unit`` (None where a figure
+    makes no sense); ``at`` [nm] is the middle of the shortest connection; ``waived`` is the waiver's reason.
+    """
+
+    rule: str
+    severity: str
+    measured: float | None
+    limit: float | None
+    unit: str
+    at: Point | None
+    layer: str
+    items: tuple[str, ...]
+    nets: tuple[str, ...]
+    text: str
+    waived: str | None = None
+
+    @property
+    def counts(self) -> bool:
+        """True when this is an error that nobody has waived."""
+        return self.severity == "error" and self.waived is None
+
+
+@dataclass(frozen=True, slots=True)
+class NotChecked:
+    """A rule that was not evaluated, and why."""
+
+    rule: str
+    reason: str
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class CheckResult:
+    """All findings in a fixed order (rule, place), and all that was not checked."""
+
+    findings: tuple[Finding, ...]
+    not_checked: tuple[NotChecked, ...]

@@ -1,0 +1,103 @@
+"""Every net of the circuit hangs together.
+
+What: all copper of a net (of nets that lines join, of gnd) is one piece; each pad, port and line end has copper.
+Why: what is not joined does not work.
+How measured: from finished polygons and plated holes alone; touching is joining, also through other copper.
+Pads, ports and the legs of lines are looked for at their places, so that copper left out altogether is found. Pour
+that hangs on nothing is ``connectivity.floating``. The place is the middle of the shortest way between the pieces.
+Source: the circuit file.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+import numpy as np
+import shapely
+
+from layoutgen.artwork import Artwork
+from layoutgen.checks.board import Board, whole
+from layoutgen.checks.connections import Connections
+from layoutgen.checks.outcome import Hit, Outcome, Rule, mm, named
+from layoutgen.geometry import Point
+from layoutgen.placement import PlacedLine
+
+__all__ = ["RULE"]
+
+NAME = "connectivity.open"
+_STEP_NM = 2_000.0
+_REACH_NM = 1_000.0
+
+
+def find(board: Board) -> Iterator[Outcome]:
+    """Yield a hit for each net in pieces and for each place without copper."""
+    if board.artwork is not None:
+        joined = Connections(board)
+        yield from _broken(joined)
+        yield from _missing(board, board.artwork)
+
+
+def _broken(joined: Connections) -> Iterator[Hit]:
+    """Yield a hit for each piece of a net that does not hang together with the rest of it."""
+    for members in joined.nodes().values():
+        groups: dict[int, list[int]] = {}
+        for k in members:
+            groups.setdefault(int(joined.cluster[k]), []).append(k)
+        largest = max(groups.values(), key=lambda g: (len(g), sum(joined.pieces[k].polygon.area for k in g)))
+        for group in groups.values():
+            if group is largest or all(joined.pieces[k].role == "pour" for k in group):
+                continue
+            a, b, at, distance = joined.nearest(group, largest)
+            yield Hit(
+                rule=NAME,
+                text=f"{a.item} and {b.item} of net {a.net} are not joined, {mm(distance)} apart",
+                items=named(a.item, b.item),
+                at=at,
+                measured=distance / 1e6,
+                limit=0.0,
+                unit="mm",
+                nets=named(a.net or "", b.net or ""),
+            )
+
+
+def _missing(board: Board, artwork: Artwork) -> Iterator[Hit]:
+    """Yield a hit for each pad, port and leg of a line without copper."""
+    wanted = list(_places(artwork))
+    points = shapely.points([at for _, _, at in wanted]) if wanted else np.array([], dtype=object)
+    found = np.zeros(len(wanted), dtype=bool)
+    if wanted and board.top.pieces:
+        found[board.top.tree.query(points, predicate="dwithin", distance=_REACH_NM)[0]] = True
+    for k in np.flatnonzero(~found).tolist():
+        item, net, (x, y) = wanted[k]
+        yield Hit(rule=NAME, text=f"no copper for {item}", items=(item,), at=whole(x, y), nets=named(net))
+
+
+def _places(artwork: Artwork) -> Iterator[tuple[str, str, tuple[float, float]]]:
+    """Yield the places where there must be copper: item, net, point [nm]."""
+    placement = artwork.placement
+    for part in placement.parts.values():
+        for pad in part.pads:
+            if pad.outline.polygon().area > 0.0:
+                yield part.name, pad.net, (pad.x, pad.y)
+    for port in placement.ports.values():
+        turn = np.radians(port.heading)
+        yield port.name, port.net, (port.x + _STEP_NM * np.cos(turn), port.y + _STEP_NM * np.sin(turn))
+    for line in placement.lines.values():
+        yield from ((line.name, line.nets[0], point) for point in _on_legs(line))
+
+
+def _on_legs(line: PlacedLine) -> Iterator[tuple[float, float]]:
+    """Yield the middle of each leg of a line, and a point just before an open end."""
+    for a, b in zip(line.path, line.path[1:], strict=False):
+        yield (a[0] + b[0]) / 2.0, (a[1] + b[1]) / 2.0
+    if len(line.nets) == 1:
+        yield _before_end(line.path[-2], line.path[-1])
+
+
+def _before_end(a: Point, b: Point) -> tuple[float, float]:
+    """Return the point a step before b on the way from a [nm]."""
+    share = _STEP_NM / float(np.hypot(b[0] - a[0], b[1] - a[1]))
+    return b[0] - share * (b[0] - a[0]), b[1] - share * (b[1] - a[1])
+
+
+RULE = Rule(names=(NAME,), find=find, keyless=True, needs_circuit=True)

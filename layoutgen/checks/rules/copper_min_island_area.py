@@ -1,0 +1,57 @@
+"""No small scrap of copper is left that belongs to nothing.
+
+What: each piece of copper that holds no line, strip, pad or land has at least ``copper.min_island_area``.
+Why: a small scrap may come off in the etch bath and land where it shorts something.
+How measured: the area of the joined copper. Copper of the circuit itself may be as small as it is.
+On drawings of unknown origin all copper is judged. One part in a million below the limit passes.
+Source: the limit is the board house's.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+import numpy as np
+import shapely
+
+from layoutgen.checks.board import Board, Layer, whole
+from layoutgen.checks.outcome import Hit, Outcome, Rule, named
+
+__all__ = ["RULE"]
+
+NAME = "copper.min_island_area"
+_WANTED = frozenset(("line", "pair", "radial", "pad", "strip", "land", "ground"))
+
+
+def find(board: Board) -> Iterator[Outcome]:
+    """Yield a hit for each island."""
+    limit = board.limits.number(NAME)
+    if limit is not None:
+        for layer in board.layers:
+            yield from _islands(layer, limit * 1e18)
+
+
+def _islands(layer: Layer, limit: float) -> Iterator[Hit]:
+    """Yield the islands of one layer; the limit is an area [nm^2]."""
+    areas = shapely.area(layer.merged)
+    for k in np.flatnonzero(areas < limit * (1.0 - 1e-6)).tolist():
+        island = layer.merged[k]
+        inside = [layer.pieces[n] for n in np.sort(layer.tree.query(island, predicate="intersects")).tolist()]
+        if any(piece.role in _WANTED for piece in inside):
+            continue
+        items = named(*(piece.item for piece in inside))
+        spot = island.representative_point()
+        yield Hit(
+            rule=NAME,
+            text=f"island of {areas[k] / 1e12:.4f} mm^2, at least {limit / 1e12:.4f} mm^2",
+            items=items,
+            at=whole(spot.x, spot.y),
+            measured=float(areas[k]) / 1e12,
+            limit=limit / 1e12,
+            unit="mm^2",
+            layer=layer.name,
+            nets=named(*(piece.net or "" for piece in inside)),
+        )
+
+
+RULE = Rule(names=(NAME,), find=find)

@@ -1,0 +1,44 @@
+"""Copper is nowhere narrower than the etching can leave.
+
+What: the distance across finished copper between facing edges of one outline, lines, tapers, necks of mitres
+and slivers of pour alike, is at least ``copper.min_width``.
+Why: narrower copper may be etched through or lift off; a narrow line also misses its impedance.
+How measured: exactly, on the joined copper of each layer, between facing edges found through a tree over all
+edges, not on centre-lines. Two places of one outline less than 3.5 limits apart along it are a corner and are not
+counted, so copper tapering to a point is counted where its angle is below about 33 degrees. Finished
+copper is the artwork less ``copper.undercut`` on each edge. A distance 10 nm short of the limit passes (rounding
+to whole nanometres, chords of arcs).
+Source: the limit is the board house's; the 3.5 limits are a choice of this project.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+from layoutgen.checks.board import Board, Layer
+from layoutgen.checks.outcome import Hit, Outcome, Rule, named, too_small
+from layoutgen.checks.spots import item_at, net_at, spots
+
+__all__ = ["RULE"]
+
+NAME = "copper.min_width"
+
+
+def find(board: Board) -> Iterator[Outcome]:
+    """Yield a hit for each neck."""
+    limit = board.limits.nm(NAME)
+    if limit is not None:
+        for layer in board.layers:
+            yield from _necks(layer, limit)
+
+
+def _necks(layer: Layer, limit: float) -> Iterator[Hit]:
+    """Yield a hit for each neck on one layer."""
+    for spot in spots(layer, layer.necks(limit)):
+        items = named(item_at(layer, spot.first), item_at(layer, spot.second))
+        nets = named(net_at(layer, spot.first), net_at(layer, spot.second))
+        text = f"copper of {' and '.join(items)} is wide only"
+        yield too_small(NAME, text, spot.distance, limit, spot.at, items, nets, layer.name)
+
+
+RULE = Rule(names=(NAME,), find=find)

@@ -1,0 +1,89 @@
+"""No copper is warmed too much by the direct current it carries.
+
+What: the temperature rise of lines, strips and via barrels by the IPC-2221 equation is at most
+``current.temperature_rise``.
+Why: hot copper ages the laminate and moves the bias of what is soldered to it.
+How measured: I = 0.048 dT^0.44 A^0.725 (A in square mils) for lines at the narrowest place of their drawn copper,
+between facing edges; barrels as pi t (d - t) with the drill d taken as drilled and the constant 0.024 of conductors
+inside the board. Currents come from the DC solution, vias share equally. A current beyond the chart's 35 A is a finding
+whatever the width. A width 10 nm short passes. Crowding of current at tees, pads and corners is not
+looked at, nor the current of the ground's own copper.
+Source: IPC-2221, as independent public code and pages quote it; the standard's text was not read.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+from layoutgen.checks.board import TOLERANCE_NM, Board
+from layoutgen.checks.carriers import Carrier, carriers, necks
+from layoutgen.checks.grounding import via_currents
+from layoutgen.checks.outcome import Hit, Outcome, Rule, mm
+from layoutgen.checks.records import NotChecked
+from layoutgen.formulas.limits import IPC2221_MAX_CURRENT, ipc2221_barrel_rise, ipc2221_rise, ipc2221_width
+from layoutgen.geometry import Point
+
+__all__ = ["RULE"]
+
+NAME = "current.temperature_rise"
+
+
+def find(board: Board) -> Iterator[Outcome]:
+    """Yield a hit for each element that gets too warm."""
+    limit = board.limits.number(NAME)
+    if limit is None:
+        return
+    if board.thickness is None:
+        yield NotChecked(NAME, "the thickness of the copper is not known")
+        return
+    for carrier in carriers(board):
+        if carrier.current > IPC2221_MAX_CURRENT:
+            text = f"{carrier.item} carries {carrier.current:.2f} A, beyond the chart's {IPC2221_MAX_CURRENT:g} A"
+            yield _hit(text, carrier.current, IPC2221_MAX_CURRENT, "A", carrier.at, (carrier.item,))
+        else:
+            yield from _lines(board, carrier, limit, board.thickness * 1e-9)
+    yield from _barrels(board, limit)
+
+
+def _lines(board: Board, carrier: Carrier, limit: float, thickness: float) -> Iterator[Hit]:
+    """Yield the hits of one element: too narrow as a whole, or at a neck."""
+    needed = float(ipc2221_width(carrier.current, thickness, limit)) * 1e9
+    found = [(neck.width, neck.at) for neck in necks(board, carrier, needed)]
+    if carrier.width < needed - TOLERANCE_NM:
+        found.append((carrier.width, carrier.at))
+    for width, at in found:
+        rise = float(ipc2221_rise(carrier.current, width * 1e-9, thickness))
+        text = f"{carrier.item} warms by {rise:.1f} K where it is {mm(width)} wide ({carrier.current:.3f} A)"
+        yield _hit(f"{text}, at most {limit:g} K", rise, limit, "K", at, (carrier.item,))
+
+
+def _barrels(board: Board, limit: float) -> Iterator[Outcome]:
+    """Yield the hits of via barrels."""
+    loaded = via_currents(board)
+    plating = board.limits.number("vias.plating")
+    if loaded and plating is None:
+        yield NotChecked(f"{NAME} (vias)", "vias.plating is not given")
+        return
+    for via, current in loaded:
+        rise = float(ipc2221_barrel_rise(current, via.diameter * 1e-9, plating or 0.0, internal=True))
+        if rise > limit * (1.0 + 1e-6):
+            text = f"{via.item} warms by {rise:.1f} K ({current:.3f} A), at most {limit:g} K"
+            yield _hit(text, rise, limit, "K", via.at, (via.item, via.purpose.partition(":")[2]), "drill_plated")
+
+
+def _hit(
+    text: str,
+    measured: float,
+    limit: float,
+    unit: str,
+    at: Point,
+    items: tuple[str, ...],
+    layer: str = "copper_top",
+) -> Hit:
+    """Return a hit of this rule."""
+    return Hit(
+        rule=NAME, text=text, items=items, at=at, measured=measured, limit=limit, unit=unit, layer=layer
+    )
+
+
+RULE = Rule(names=(NAME,), find=find, needs_circuit=True)

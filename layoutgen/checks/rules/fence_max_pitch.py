@@ -1,0 +1,124 @@
+"""The fence along the pour leaves no gap that a wave passes.
+
+What: along each pour edge that faces a line, consecutive via axes are at most ``fence.max_pitch`` apart, and at
+most ``fence.max_pitch_wavelengths`` of c / (f sqrt(er)) at the band's upper edge; the smaller one governs and
+names the finding. ``vias.min_pitch`` wins over both: then ``fence.max_pitch`` says for which frequency the row
+would do.
+Why: the pour with a sparse row of vias guides waves between the planes, past the filter it stands beside.
+How measured: a row is asked for where a pour edge faces a line within two of the line's gaps, over
+stretches longer than the pitch, not within 0.3 mm of part outlines. Vias on gnd within ``fence.max_edge_distance``
+of the stretch count, in the order of their projections on it; the distance of two is the shorter of the way along the
+edge and the straight line between the axes (rows around bends), the ends of a stretch count as axes. A micrometre
+above the limit passes (rows are laid on whole nanometres along arcs drawn as chords).
+Source: a twentieth of a wavelength in the slab is common practice (public pages on microwave boards).
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterator
+from itertools import pairwise
+
+import numpy as np
+import shapely
+
+from layoutgen.checks.board import TOLERANCE_NM, Board, whole
+from layoutgen.checks.fences import Stretch, fenced, stretches
+from layoutgen.checks.nodes import GROUND
+from layoutgen.checks.outcome import Hit, Outcome, Rule, mm, named
+from layoutgen.checks.records import NotChecked
+from layoutgen.formulas.constants import C0
+from layoutgen.geometry import Point
+
+__all__ = ["RULE"]
+
+PITCH = "fence.max_pitch"
+WAVELENGTHS = "fence.max_pitch_wavelengths"
+_PITCH_TOLERANCE_NM = 1_000.0
+
+
+def find(board: Board) -> Iterator[Outcome]:
+    """Yield a hit for each gap in a row of vias."""
+    if not fenced(board):
+        for name in (PITCH, WAVELENGTHS):
+            if board.limits.get(name) is not None:
+                yield NotChecked(name, "the circuit asks for no fence")
+        return
+    name, limit = _governing(board)
+    least = board.limits.nm("vias.min_pitch") or 0.0
+    if limit < least:
+        yield _too_close(board, limit, least)
+        name, limit = PITCH, least
+    for stretch in stretches(board):
+        if stretch.way.length > limit:
+            yield from _gaps(board, stretch, name, limit)
+
+
+def _wavelength(board: Board) -> float:
+    """Return the wavelength in the slab [nm] at the band's upper edge."""
+    assert board.artwork is not None
+    file = board.artwork.placement.sized.circuit.file
+    return C0 / (file.design.band[1] * math.sqrt(file.substrate.relative_permittivity)) * 1e9
+
+
+def _governing(board: Board) -> tuple[str, float]:
+    """Return the rule that governs and its pitch [nm]."""
+    given = []
+    if (pitch := board.limits.nm(PITCH)) is not None:
+        given.append((pitch, PITCH))
+    if (share := board.limits.number(WAVELENGTHS)) is not None:
+        given.append((share * _wavelength(board), WAVELENGTHS))
+    pitch, name = min(given)
+    return name, pitch
+
+
+def _too_close(board: Board, asked: float, least: float) -> Hit:
+    """Return the hit for a fence that the vias' own pitch keeps from being as dense as asked."""
+    text = f"the fence asks for a pitch of {mm(asked)}, vias.min_pitch allows {mm(least)}"
+    if (share := board.limits.number(WAVELENGTHS)) is not None and board.artwork is not None:
+        top = board.artwork.placement.sized.circuit.file.design.band[1]
+        frequency = top * share * _wavelength(board) / least
+        text = f"{text}, which would do up to {frequency / 1e9:.3f} GHz by {WAVELENGTHS}"
+    return Hit(
+        rule=PITCH,
+        text=text,
+        items=("pour",),
+        measured=least / 1e6,
+        limit=asked / 1e6,
+        unit="mm",
+        nets=(GROUND,),
+    )
+
+
+def _gaps(board: Board, stretch: Stretch, name: str, limit: float) -> Iterator[Hit]:
+    """Yield the gaps in the row along one stretch."""
+    for gap, at in _row(board, stretch, limit):
+        if gap > limit + _PITCH_TOLERANCE_NM:
+            yield Hit(
+                rule=name,
+                text=f"fence beside {stretch.item}: {mm(gap)} between axes, at most {mm(limit)}",
+                items=named(stretch.item, "pour"),
+                at=at,
+                measured=gap / 1e6,
+                limit=limit / 1e6,
+                unit="mm",
+                nets=(GROUND,),
+            )
+
+
+def _row(board: Board, stretch: Stretch, limit: float) -> Iterator[tuple[float, Point]]:
+    """Yield the distances of consecutive axes along a stretch [nm], each with the middle between them."""
+    reach = (board.limits.nm("fence.max_edge_distance") or limit) + TOLERANCE_NM
+    near = board.drill_tree.query(stretch.way, predicate="dwithin", distance=reach) if board.drills else []
+    vias = [board.drills[k] for k in np.sort(near).tolist() if board.drills[k].is_via]
+    axes = np.array([(via.x, via.y) for via in vias if via.node == GROUND]).reshape(-1, 2)
+    along = np.atleast_1d(shapely.line_locate_point(stretch.way, shapely.points(axes)))
+    order = np.lexsort((axes[:, 1], axes[:, 0], along))
+    ends = [(0.0, None), *((along[k], axes[k]) for k in order), (stretch.way.length, None)]
+    for (s, a), (t, b) in pairwise(ends):
+        straight = math.inf if a is None or b is None else float(np.hypot(*(b - a)))
+        middle = stretch.way.interpolate((s + t) / 2.0)
+        yield min(float(t - s), straight), whole(middle.x, middle.y)
+
+
+RULE = Rule(names=(PITCH, WAVELENGTHS), find=find, needs_circuit=True)

@@ -1,0 +1,85 @@
+"""Holes keep away from copper that they must not meet.
+
+What: from the wall of a plated hole to copper of another net, and from the wall of an unplated hole to any
+copper, are at least ``holes.min_copper_distance``, on both layers.
+Why: drills wander; a barrel that meets other copper shorts it, an unplated hole tears it.
+How measured: axis to copper less the radius, exact. Copper under an unplated hole counts as drilled away, so
+it measures 0. A plated hole that meets another net's copper is ``connectivity.short``. A line that ends on gnd is
+taken as cut there, so that its own vias are not found. A plated hole without a net belongs to what it meets. 10 nm
+short of the limit passes.
+Source: the limit is the board house's.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+import numpy as np
+import shapely
+
+from layoutgen.checks.board import TOLERANCE_NM, Board, Drill, Layer, Piece, whole
+from layoutgen.checks.drills import touched
+from layoutgen.checks.outcome import Hit, Outcome, Rule, named, too_small
+from layoutgen.geometry import Point
+
+__all__ = ["RULE"]
+
+NAME = "holes.min_copper_distance"
+
+
+def find(board: Board) -> Iterator[Outcome]:
+    """Yield a hit for each hole that is too near to copper."""
+    limit = board.limits.nm(NAME)
+    if limit is None or not board.drills:
+        return
+    own = _own_nodes(board)
+    for layer in board.layers:
+        if layer.pieces:
+            yield from _near_copper(board, layer, limit, own)
+
+
+def _own_nodes(board: Board) -> list[frozenset[str | None]]:
+    """Return for each hole the nodes that it belongs to."""
+    met = [touched(board, layer) for layer in board.layers]
+    own: list[frozenset[str | None]] = []
+    for k, drill in enumerate(board.drills):
+        if drill.node is not None or not drill.plated:
+            own.append(frozenset((drill.node,)))
+            continue
+        pieces = [board.layers[n].pieces[p] for n in (0, 1) for p in met[n].get(k, [])]
+        own.append(frozenset(piece.node for piece in pieces))
+    return own
+
+
+def _near_copper(
+    board: Board, layer: Layer, limit: float, own: list[frozenset[str | None]]
+) -> Iterator[Hit]:
+    """Yield the holes that are too near to copper of one layer."""
+    reach = np.maximum(board.drill_radii + limit - TOLERANCE_NM, 0.0)
+    i, j = layer.tree.query(board.drill_points, predicate="dwithin", distance=reach)
+    gap = shapely.distance(board.drill_points[i], layer.polygons[j]) - board.drill_radii[i]
+    for k in np.lexsort((j, i)).tolist():
+        drill, piece = board.drills[i[k]], layer.pieces[j[k]]
+        met = drill.plated and (gap[k] <= 0.0 or piece.node in own[i[k]])
+        if met or gap[k] >= limit - TOLERANCE_NM:
+            continue
+        yield _hit(drill, piece, layer.name, float(gap[k]), limit)
+
+
+def _hit(drill: Drill, piece: Piece, layer: str, gap: float, limit: float) -> Hit:
+    """Return the hit of one hole and one piece of copper."""
+    text = f"wall of {drill.item} to copper of {piece.item}"
+    items, nets = named(drill.item, piece.item), named(drill.net or "", piece.net or "")
+    return too_small(NAME, text, max(gap, 0.0), limit, _middle(drill, piece), items, nets, layer)
+
+
+def _middle(drill: Drill, piece: Piece) -> Point:
+    """Return the middle between a hole's wall and a piece of copper."""
+    line = shapely.shortest_line(shapely.Point(drill.x, drill.y), piece.polygon)
+    _, (x, y) = shapely.get_coordinates(line).tolist()
+    distance = float(np.hypot(x - drill.x, y - drill.y))
+    share = 0.5 * (1.0 + drill.diameter / 2.0 / distance) if distance > 0.0 else 0.0
+    return whole(drill.x + share * (x - drill.x), drill.y + share * (y - drill.y))
+
+
+RULE = Rule(names=(NAME,), find=find)

@@ -1,0 +1,56 @@
+"""Holes keep away from the board's profile and from cut-outs.
+
+What: from the wall of each via and hole to the outline and to each cut-out are at least
+``holes.min_edge_distance``.
+Why: a hole near the edge breaks out when the board is routed.
+How measured: axis to outline less the radius, exact; negative for a hole across the edge. 10 nm short of the
+limit passes.
+Source: the limit is the board house's.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+import numpy as np
+import shapely
+
+from layoutgen.checks.board import TOLERANCE_NM, Board, whole
+from layoutgen.checks.drills import drill_layer
+from layoutgen.checks.outcome import Hit, Outcome, Rule, named, too_small
+
+__all__ = ["RULE"]
+
+NAME = "holes.min_edge_distance"
+
+
+def find(board: Board) -> Iterator[Outcome]:
+    """Yield a hit for each hole that is too near to an edge."""
+    limit = board.limits.nm(NAME)
+    if limit is None or not board.drills:
+        return
+    if board.outline is not None:
+        yield from _at_edge(board, board.outline, "board", limit, inside=True)
+    for cutout in board.cutouts:
+        yield from _at_edge(board, cutout.polygon, cutout.item, limit, inside=False)
+
+
+def _at_edge(
+    board: Board, area: shapely.Polygon, item: str, limit: float, *, inside: bool
+) -> Iterator[Hit]:
+    """Yield the holes too near to the outline (``inside``) or to a cut-out."""
+    rim = area.boundary
+    shapely.prepare(area)
+    side = np.where(shapely.intersects(area, board.drill_points) == inside, 1.0, -1.0)
+    reach = side * shapely.distance(rim, board.drill_points) - board.drill_radii
+    where = "the profile" if item == "board" else f"the cut-out of {item}"
+    for k in np.flatnonzero(reach < limit - TOLERANCE_NM).tolist():
+        drill = board.drills[k]
+        line = shapely.shortest_line(board.drill_points[k], rim)
+        (ax, ay), (bx, by) = shapely.get_coordinates(line).tolist()
+        text, at = f"wall of {drill.item} to {where}", whole((ax + bx) / 2.0, (ay + by) / 2.0)
+        items, nets = named(drill.item, item), named(drill.net or "")
+        yield too_small(NAME, text, float(reach[k]), limit, at, items, nets, drill_layer(drill))
+
+
+RULE = Rule(names=(NAME,), find=find)

@@ -1,0 +1,179 @@
+"""What stands where during the search, and whether something new may stand beside it.
+
+Everything laid is kept as axis-parallel boxes (exact for routes of right angles, a little larger than the
+copper otherwise). Two things that meet in a net are compared without the part of each line that lies within
+the spacing rule of the shared node: there they are meant to be near.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass
+from enum import IntEnum
+
+import numpy as np
+import numpy.typing as npt
+
+from layoutgen.placement.frame import Box
+from layoutgen.placement.model import Limits
+
+__all__ = ["Kind", "Obstacle", "Obstacles", "clearance_table", "edge_margins"]
+
+Ints = npt.NDArray[np.int64]
+
+_ROUNDING = 2  # [nm]: edges of odd widths are rounded to the grid
+
+
+class Kind(IntEnum):
+    """What an obstacle is, as far as distances go."""
+
+    LINE = 0
+    SUPPLY = 1
+    PAD = 2
+    STRIP = 3
+    GROUND = 4
+    BODY = 5
+    CUTOUT = 6
+    HOLE = 7
+
+
+@dataclass(frozen=True, slots=True)
+class Obstacle:
+    """One box [nm] of an element; a corridor is kept clear but does not count to the board's extent.
+
+    ``at_edges`` names the board edges that the box runs up to (a port's copper): there it keeps ``inset``
+    [nm] from the profile instead of its kind's margin.
+    """
+
+    box: Box
+    kind: Kind
+    owner: str
+    corridor: bool = False
+    at_edges: tuple[str, ...] = ()
+    inset: int = 0
+
+    def reach(self, margins: Mapping[Kind, int]) -> tuple[int, int, int, int]:
+        """Return the box with its margin to the profile [nm] on each side."""
+        plain = margins[self.kind]
+        west, south, east, north = (
+            self.inset if edge in self.at_edges else plain for edge in ("west", "south", "east", "north")
+        )
+        return self.box[0] - west, self.box[1] - south, self.box[2] + east, self.box[3] + north
+
+
+def clearance_table(limits: Limits, pour_gap: int) -> Ints:
+    """Return the least distance [nm] between kinds (8, 8), symmetric.
+
+    Lines keep the spacing rule from lines and strips, and the pour's distance from other parts' ground and
+    pads; courtyards may touch; the rest keeps what etching and soldering need (common practice, no source:
+    one substrate height, at least 0.2 mm).
+    """
+    small = max(limits.gap, 200_000)
+    height = max(small, limits.height)
+    via = max(0, limits.pitch - limits.land)
+    rows: dict[tuple[Kind, Kind], int] = {
+        (Kind.LINE, Kind.LINE): limits.spacing,
+        (Kind.LINE, Kind.SUPPLY): limits.spacing,
+        (Kind.SUPPLY, Kind.SUPPLY): limits.spacing,
+        (Kind.LINE, Kind.PAD): max(pour_gap, height),
+        (Kind.LINE, Kind.STRIP): limits.spacing,
+        (Kind.LINE, Kind.GROUND): max(pour_gap, small),
+        (Kind.LINE, Kind.BODY): height,
+        (Kind.SUPPLY, Kind.PAD): height,
+        (Kind.SUPPLY, Kind.STRIP): height,
+        (Kind.SUPPLY, Kind.GROUND): small,
+        (Kind.SUPPLY, Kind.BODY): small,
+        (Kind.PAD, Kind.PAD): small,
+        (Kind.PAD, Kind.STRIP): height,
+        (Kind.PAD, Kind.GROUND): small,
+        (Kind.STRIP, Kind.STRIP): height,
+        (Kind.STRIP, Kind.GROUND): small,
+        (Kind.STRIP, Kind.BODY): small,
+        (Kind.GROUND, Kind.GROUND): via,
+    }
+    table = np.zeros((len(Kind), len(Kind)), dtype=np.int64)
+    for (a, b), value in rows.items():
+        table[a, b] = table[b, a] = value + _ROUNDING if value else 0
+    for kind in (Kind.LINE, Kind.SUPPLY, Kind.PAD, Kind.STRIP, Kind.GROUND):
+        table[kind, Kind.CUTOUT] = table[Kind.CUTOUT, kind] = limits.edge
+        table[kind, Kind.HOLE] = table[Kind.HOLE, kind] = max(limits.hole, limits.edge)
+    return table
+
+
+def edge_margins(limits: Limits, pour_gap: int, ground_ring: int, *, tight: bool) -> dict[Kind, int]:
+    """Return how far inside the profile [nm] each kind stays.
+
+    With ground, lines want their pour and a ring with vias all round; ``tight`` asks only what the rules do.
+    """
+    ring = 0 if tight else ground_ring
+    beside = 0 if tight or not ground_ring else pour_gap + ring
+    return {
+        Kind.LINE: limits.margin + beside,
+        Kind.SUPPLY: limits.margin + (0 if tight else ring),
+        Kind.PAD: limits.margin + (0 if tight else ring),
+        Kind.STRIP: limits.margin + (0 if tight else ring),
+        Kind.GROUND: limits.margin,
+        Kind.BODY: limits.margin,
+        Kind.CUTOUT: limits.margin + max(ring, limits.margin),
+        Kind.HOLE: max(limits.hole_edge, limits.margin),
+    }
+
+
+class Obstacles:
+    """An immutable pile of boxes with vectorised distance queries."""
+
+    __slots__ = ("boxes", "corridors", "items", "kinds")
+
+    def __init__(self, items: tuple[Obstacle, ...], boxes: Ints, kinds: Ints, corridors: Ints) -> None:
+        """Take the arrays over; use :meth:`empty` and :meth:`plus`."""
+        self.items, self.boxes, self.kinds, self.corridors = items, boxes, kinds, corridors
+
+    @classmethod
+    def empty(cls) -> Obstacles:
+        """Return a pile without boxes."""
+        none = np.zeros(0, dtype=np.int64)
+        return cls((), np.zeros((0, 4), dtype=np.int64), none, none)
+
+    def plus(self, new: Sequence[Obstacle]) -> Obstacles:
+        """Return the pile with more boxes on it."""
+        boxes, kinds, corridors = _arrays(new)
+        return Obstacles(
+            self.items + tuple(new),
+            np.concatenate([self.boxes, boxes]),
+            np.concatenate([self.kinds, kinds]),
+            np.concatenate([self.corridors, corridors]),
+        )
+
+    def conflicts(self, new: Sequence[Obstacle], table: Ints) -> list[tuple[Obstacle, Obstacle]]:
+        """Return the pairs (new, old) that are nearer than the table [nm] allows."""
+        if not new or not self.items:
+            return []
+        boxes, kinds, _ = _arrays(new)
+        need = table[kinds[:, None], self.kinds[None, :]]
+        near = _squared_distance(boxes, self.boxes) < need * need
+        touching = _overlaps(boxes, self.boxes) & (need == 0)
+        rows, columns = np.nonzero(near | touching)
+        return [(new[i], self.items[j]) for i, j in zip(rows.tolist(), columns.tolist(), strict=True)]
+
+
+def _arrays(items: Sequence[Obstacle]) -> tuple[Ints, Ints, Ints]:
+    boxes = np.array([item.box for item in items], dtype=np.int64).reshape(-1, 4)
+    kinds = np.array([int(item.kind) for item in items], dtype=np.int64)
+    corridors = np.array([int(item.corridor) for item in items], dtype=np.int64)
+    return boxes, kinds, corridors
+
+
+def _squared_distance(a: Ints, b: Ints) -> npt.NDArray[np.float64]:
+    """Return the squared distances (N, M) between boxes."""
+    dx = np.maximum(a[:, None, 0] - b[None, :, 2], b[None, :, 0] - a[:, None, 2]).clip(min=0)
+    dy = np.maximum(a[:, None, 1] - b[None, :, 3], b[None, :, 1] - a[:, None, 3]).clip(min=0)
+    squared: npt.NDArray[np.float64] = dx.astype(np.float64) ** 2 + dy.astype(np.float64) ** 2
+    return squared
+
+
+def _overlaps(a: Ints, b: Ints) -> npt.NDArray[np.bool_]:
+    """Return where the interiors of boxes overlap (N, M)."""
+    x = (a[:, None, 0] < b[None, :, 2]) & (b[None, :, 0] < a[:, None, 2])
+    y = (a[:, None, 1] < b[None, :, 3]) & (b[None, :, 1] < a[:, None, 3])
+    result: npt.NDArray[np.bool_] = x & y
+    return result

@@ -1,0 +1,78 @@
+"""Poses and turns on the nanometre grid: quarter turns are exact."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+from layoutgen.geometry import Point, Ring
+
+__all__ = ["Box", "Pose", "ahead", "box_around", "box_to_world", "grown", "ring_to_world", "to_world", "unit"]
+
+Box = tuple[int, int, int, int]
+
+_QUARTERS = {0.0: (1.0, 0.0), 90.0: (0.0, 1.0), 180.0: (-1.0, 0.0), 270.0: (0.0, -1.0)}
+
+
+@dataclass(frozen=True, slots=True)
+class Pose:
+    """A point [nm] and a heading [deg] counter-clockwise from east, 0 <= heading < 360."""
+
+    x: int
+    y: int
+    heading: float
+
+    @property
+    def point(self) -> Point:
+        """The point without the heading."""
+        return (self.x, self.y)
+
+    def turned(self, angle: float) -> Pose:
+        """Return the pose turned on the spot by an angle [deg]."""
+        return Pose(self.x, self.y, (self.heading + angle) % 360.0)
+
+
+def unit(heading: float) -> tuple[float, float]:
+    """Return the unit vector of a heading [deg], exact for quarter turns."""
+    quarter = _QUARTERS.get(heading % 360.0)
+    if quarter is not None:
+        return quarter
+    angle = math.radians(heading)
+    return math.cos(angle), math.sin(angle)
+
+
+def ahead(pose: Pose, distance: float, sideways: float = 0.0) -> Pose:
+    """Return the pose moved along its heading, and to its left, by distances [nm]."""
+    x, y = to_world(pose, distance, sideways)
+    return Pose(x, y, pose.heading)
+
+
+def to_world(pose: Pose, x: float, y: float) -> Point:
+    """Return the world point [nm] of a point given in the frame of a pose."""
+    ux, uy = unit(pose.heading)
+    return round(pose.x + x * ux - y * uy), round(pose.y + x * uy + y * ux)
+
+
+def box_to_world(pose: Pose, box: Box) -> Box:
+    """Return the axis-parallel box around a box given in the frame of a pose (exact for quarter turns)."""
+    x0, y0, x1, y1 = box
+    points = [to_world(pose, x, y) for x, y in ((x0, y0), (x1, y0), (x1, y1), (x0, y1))]
+    return box_around(points)
+
+
+def ring_to_world(pose: Pose, box: Box) -> Ring:
+    """Return the outline of a box given in the frame of a pose, counter-clockwise."""
+    x0, y0, x1, y1 = box
+    return Ring(tuple(to_world(pose, x, y) for x, y in ((x0, y0), (x1, y0), (x1, y1), (x0, y1))))
+
+
+def box_around(points: list[Point]) -> Box:
+    """Return the axis-parallel box around points."""
+    xs = [p[0] for p in points]
+    ys = [p[1] for p in points]
+    return min(xs), min(ys), max(xs), max(ys)
+
+
+def grown(box: Box, amount: int) -> Box:
+    """Return the box with every side moved outward by an amount [nm]."""
+    return box[0] - amount, box[1] - amount, box[2] + amount, box[3] + amount

@@ -1,0 +1,153 @@
+"""Everything the search needs, taken once from the sized circuit and turned into whole nanometres."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+from functools import cached_property
+
+from layoutgen.circuit import EndKind
+from layoutgen.origin import Origin
+from layoutgen.placement.bodies import PartBody, part_body
+from layoutgen.sizing import SizedCircuit
+from layoutgen.units import to_nm
+
+__all__ = ["GROUND", "Limits", "Model", "strip_owner"]
+
+GROUND = "gnd"
+_DEFAULT_SPACING_HEIGHTS = 3.0  # used to place when the rule file is silent; common practice, no source
+_DEFAULT_GROUND_VIAS = 2  # per ground pad; common practice, no source
+
+
+@dataclass(frozen=True, slots=True)
+class Limits:
+    """Distances the placement keeps [nm], from the rule file where it has them.
+
+    ``spacing`` between lines not meant to couple, ``gap`` between copper of two nets, ``edge`` from copper
+    to the profile, ``hole`` from copper to an unplated hole's wall, ``hole_edge`` from a hole's wall to the
+    profile, ``margin`` from copper to the profile where no ground ring is wanted, ``neck`` the least width.
+    """
+
+    height: int
+    spacing: int
+    gap: int
+    edge: int
+    hole: int
+    hole_edge: int
+    margin: int
+    neck: int
+    expansion: int
+    drill: int
+    land: int
+    pitch: int
+    ground_vias: int
+
+    @classmethod
+    def of(cls, sized: SizedCircuit) -> Limits:
+        """Read the limits of a circuit's rule file and board."""
+        file, rules = sized.circuit.file, sized.circuit.rules
+        height = to_nm(file.substrate.height)
+        copper, holes, vias = rules.copper, rules.holes, rules.vias
+        gap = _nm(None if copper is None else copper.min_gap)
+        edge = _nm(None if copper is None else copper.min_edge_distance)
+        heights = _DEFAULT_SPACING_HEIGHTS
+        if rules.spacing is not None and rules.spacing.min_line_heights is not None:
+            heights = rules.spacing.min_line_heights
+        land, drill = to_nm(vias.diameter), to_nm(vias.drill)
+        web = _nm(holes.min_web)
+        return cls(
+            height=height,
+            spacing=max(math.ceil(heights * height), gap),
+            gap=gap,
+            edge=edge,
+            hole=_nm(holes.min_copper_distance),
+            hole_edge=_nm(holes.min_edge_distance),
+            margin=max(edge, _nm(file.board.margin)),
+            neck=_nm(None if copper is None else copper.min_width),
+            expansion=_nm(None if rules.mask is None else rules.mask.expansion),
+            drill=drill,
+            land=land,
+            pitch=max(_nm(vias.min_pitch), drill + web, land),
+            ground_vias=vias.per_ground_pad or _DEFAULT_GROUND_VIAS,
+        )
+
+
+def _nm(value: float | None) -> int:
+    """Return a rule's length [nm], 0 where the rule is absent."""
+    return 0 if value is None else to_nm(value)
+
+
+class Model:
+    """The sized circuit as the search sees it: sizes in nanometres and questions answered once."""
+
+    def __init__(self, sized: SizedCircuit) -> None:
+        """Take the sized circuit over."""
+        self.sized = sized
+        self.circuit = sized.circuit
+        self.file = sized.circuit.file
+        self.limits = Limits.of(sized)
+        self.has_ground = self.file.ground is not None
+        self.widths = {name: to_nm(line.width) for name, line in sized.lines.items()}
+        self.widths |= {name: to_nm(pair.width) for name, pair in sized.pairs.items()}
+        self.bodies: dict[str, PartBody] = {
+            name: part_body(lands, self.limits) for name, lands in sized.lands.items()
+        }
+        self.owner_nets = self._owner_nets()
+        self._reaches: dict[str, int] = {}
+
+    def _owner_nets(self) -> dict[str, frozenset[str]]:
+        """Return the nets (ground left out) of every element that lays copper."""
+        nets: dict[str, set[str]] = {}
+        for net in self.circuit.nets.values():
+            if net.name == GROUND:
+                continue
+            for end in net.ends:
+                nets.setdefault(end.element, set()).add(net.name)
+            nets[strip_owner(net.name)] = {net.name}
+        return {name: frozenset(found) for name, found in nets.items()}
+
+    def pour_gap(self, name: str) -> int:
+        """Return the distance [nm] that ground copper keeps from a line, pair or radial stub."""
+        sized = self.sized
+        record = sized.lines.get(name) or sized.pairs.get(name) or sized.radials.get(name)
+        gap = sized.default_pour_gap if record is None else record.pour_gap
+        return 2 * self.limits.height if math.isinf(gap) else to_nm(gap)
+
+    @cached_property
+    def default_gap(self) -> int:
+        """The distance [nm] that ground copper keeps from RF copper that is no line."""
+        gap = self.sized.default_pour_gap
+        return 2 * self.limits.height if math.isinf(gap) else to_nm(gap)
+
+    @cached_property
+    def ground_ring(self) -> int:
+        """Width [nm] wanted for the ground between the outermost clearance and the board's margin."""
+        return self.limits.land + 2 * self.limits.neck + 100_000 if self.has_ground else 0
+
+    def reach_at(self, net: str) -> int:
+        """Return how far [nm] a junction's own copper reaches from its node: half widths and pads."""
+        if net not in self._reaches:
+            self._reaches[net] = self._reach_at(net)
+        return self._reaches[net]
+
+    def _reach_at(self, net: str) -> int:
+        reach = 0
+        for end in self.circuit.nets[net].ends:
+            if end.kind is EndKind.PAD:
+                land = self.bodies[end.element].land_at(end)
+                reach = max(reach, land.along, land.across // 2)
+            elif end.element in self.widths:
+                reach = max(reach, self.widths[end.element] // 2)
+        return reach
+
+    def origin(self, element: str) -> Origin:
+        """Return where an element stands in the circuit file."""
+        for table in ("lines", "coupled", "parts", "ports"):
+            if element in getattr(self.file, table):
+                return Origin(element, self.file.location(f"{table}.{element}"))
+        return Origin(element)
+
+
+def strip_owner(net: str) -> str:
+    """Return the name under which a net's common strip is known: it can be no element's name."""
+    return f"strip:{net}"

@@ -1,0 +1,149 @@
+"""Whether a candidate stands too near to anything, with allowance for what meets in a net."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass, field
+
+from layoutgen.circuit.queries import ends_of
+from layoutgen.geometry import Point
+from layoutgen.placement.budgets import LineLengths
+from layoutgen.placement.clearance import Ints, Kind, Obstacle, Obstacles
+from layoutgen.placement.model import GROUND, Model
+from layoutgen.placement.state import Growth, LaidLine, leg_boxes
+
+__all__ = ["Neighbours"]
+
+
+@dataclass(slots=True)
+class Neighbours:
+    """Clearance with allowance: lines that meet are compared beyond the spacing rule of the shared node."""
+
+    model: Model
+    lengths: LineLengths
+    table: Ints
+    _cuts: dict[tuple[str, tuple[Point, ...], frozenset[str]], list[Obstacle]] = field(default_factory=dict)
+    _bridges: dict[frozenset[str], tuple[tuple[str, str], ...]] = field(default_factory=dict)
+
+    def conflict(self, growth: Growth) -> str | None:
+        """Return what a candidate is too near to, or None when it may stand."""
+        old = growth.state.obstacles
+        for new, other in old.conflicts(growth.obstacles, self.table):
+            if new.owner != other.owner and self._really(growth, new, other):
+                return f"no room for {new.owner} beside {other.owner}"
+        own = Obstacles.empty().plus(growth.obstacles)
+        for new, other in own.conflicts(growth.obstacles, self.table):
+            if new.owner < other.owner and self._really(growth, new, other):
+                return f"no room for {new.owner} beside {other.owner}"
+        for line in growth.lines.values():
+            if self._folds_on_itself(line):
+                return f"the legs of {line.name} would come too near to each other"
+        return None
+
+    def _really(self, growth: Growth, a: Obstacle, b: Obstacle) -> bool:
+        """Return whether a conflict stands once the allowance for shared nodes is made."""
+        nets_a, nets_b = self._shared(a.owner, b.owner)
+        if not nets_a:
+            return True
+        if Kind.BODY in (a.kind, b.kind) and a.kind != b.kind and not self._is_line(growth, a, b):
+            return False
+        if a.kind != Kind.BODY and b.kind != Kind.BODY and not self._is_line(growth, a, b):
+            return Kind.GROUND in (a.kind, b.kind) and a.kind != b.kind
+        left = self._trimmed(growth, a, nets_a)
+        right = self._trimmed(growth, b, nets_b)
+        return bool(Obstacles.empty().plus(right).conflicts(left, self.table)) if left and right else False
+
+    def _is_line(self, growth: Growth, a: Obstacle, b: Obstacle) -> bool:
+        return any(self._line(growth, item.owner) is not None for item in (a, b))
+
+    def _line(self, growth: Growth, owner: str) -> LaidLine | None:
+        return growth.lines.get(owner) or growth.state.lines.get(owner)
+
+    def _trimmed(self, growth: Growth, item: Obstacle, nets: frozenset[str]) -> list[Obstacle]:
+        """Return an obstacle, or for a line its boxes without what lies near the shared nodes."""
+        line = self._line(growth, item.owner)
+        if line is None or item.corridor:
+            return [item]
+        key = (line.name, line.points, nets)
+        if key not in self._cuts:
+            self._cuts[key] = self._cut_boxes(line, item, nets)
+        return self._cuts[key]
+
+    def _cut_boxes(self, line: LaidLine, item: Obstacle, nets: frozenset[str]) -> list[Obstacle]:
+        points = line.points
+        for index, net in enumerate(self.model.file.lines[line.name].nets):
+            if net in nets:
+                cut = self.model.limits.spacing + self.model.reach_at(net)
+                points = _cut(points, cut, at_start=index == line.start)
+        if len(points) < 2:
+            return []
+        boxes = leg_boxes(points, self.model.widths[line.name])
+        return [Obstacle(box, item.kind, item.owner) for box in boxes]
+
+    def _folds_on_itself(self, line: LaidLine) -> bool:
+        boxes = leg_boxes(line.points, self.model.widths[line.name])
+        for i, a in enumerate(boxes):
+            for b in boxes[i + 2 :]:
+                dx = max(a[0] - b[2], b[0] - a[2], 0)
+                dy = max(a[1] - b[3], b[1] - a[3], 0)
+                if math.hypot(dx, dy) < self.model.limits.spacing - 2:
+                    return True
+        return False
+
+    # -- what meets ----------------------------------------------------------------------------------
+
+    def _shared(self, a: str, b: str) -> tuple[frozenset[str], frozenset[str]]:
+        """Return the nets of a and of b near which the two are meant to be near each other."""
+        nets_a = self.model.owner_nets.get(a, frozenset())
+        nets_b = self.model.owner_nets.get(b, frozenset())
+        common = nets_a & nets_b
+        if common:
+            return common, common
+        left, right = set(), set()
+        for one, two in self._short_bridges():
+            for p, q in ((one, two), (two, one)):
+                if p in nets_a and q in nets_b:
+                    left.add(p)
+                    right.add(q)
+        return frozenset(left), frozenset(right)
+
+    def _short_bridges(self) -> tuple[tuple[str, str], ...]:
+        """Return the pairs of nets joined by a two-pad part or a line shorter than the allowance."""
+        key = frozenset[str]()
+        if key not in self._bridges:
+            self._bridges[key] = tuple(self._find_bridges())
+        return self._bridges[key]
+
+    def _find_bridges(self) -> list[tuple[str, str]]:
+        file = self.model.file
+        out = []
+        for name in (*file.parts, *file.lines):
+            nets = [net for _, net in ends_of(file, name)]
+            if len(nets) != 2 or GROUND in nets:
+                continue
+            if name in file.parts or self._is_short(name):
+                out.append((nets[0], nets[1]))
+        return out
+
+    def _is_short(self, name: str) -> bool:
+        line = self.model.sized.lines.get(name)
+        if line is None or line.free:
+            return False
+        return self.lengths.by_bends(name)[0] < 2 * self.model.limits.spacing
+
+
+def _cut(points: tuple[Point, ...], amount: int, *, at_start: bool) -> tuple[Point, ...]:
+    """Return a path without its first (or last) stretch of a length [nm]."""
+    path = list(points if at_start else points[::-1])
+    left = float(amount)
+    while len(path) > 1:
+        leg = math.dist(path[0], path[1])
+        if leg > left:
+            t = left / leg
+            x = round(path[0][0] + t * (path[1][0] - path[0][0]))
+            y = round(path[0][1] + t * (path[1][1] - path[0][1]))
+            path[0] = (x, y)
+            break
+        left -= leg
+        path.pop(0)
+    return tuple(path if at_start else path[::-1]) if len(path) > 1 else ()

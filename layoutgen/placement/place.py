@@ -1,0 +1,107 @@
+"""The stage's verb: try with more and more effort, and say what would do when nothing does."""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+
+from layoutgen.errors import InfeasibleError
+from layoutgen.placement.budgets import LineLengths
+from layoutgen.placement.finish import finish, frame_of
+from layoutgen.placement.model import Model
+from layoutgen.placement.records import Placement
+from layoutgen.placement.search import Effort, Failure, Search, drawing_cost
+from layoutgen.placement.start import first_states, join_root
+from layoutgen.placement.state import State
+from layoutgen.placement.tour import Tour, plan_tour
+from layoutgen.sizing import SizedCircuit
+
+__all__ = ["place"]
+
+_EFFORTS = (
+    Effort(),
+    Effort(beam=16, accepted=5, any_side=True),
+    Effort(beam=16, accepted=5, any_side=True, tight_edges=True),
+    Effort(beam=24, accepted=6, any_side=True, tight_edges=True, fold_spine=True),
+)
+_SHIFTS = (6_000_000, -6_000_000, 12_000_000, -12_000_000, 25_000_000, -25_000_000)
+
+
+def place(sized: SizedCircuit) -> Placement:
+    """Return poses and centre-lines for a sized circuit.
+
+    The search is deterministic: the same circuit gives the same placement.
+
+    Args:
+        sized: Every width, electrical length and land.
+
+    Raises:
+        InfeasibleError: No placement was found, or a hint cannot be kept; names the element, what stands in
+            its way, and the nearest size or hint that would do.
+        WrongInputError: A line has no positive length after its corrections, or a junction too many arms.
+    """
+    model = Model(sized)
+    tour = plan_tour(model)
+    lengths = LineLengths(model, tour)
+    for name in sized.lines:
+        if not sized.lines[name].free:
+            lengths.by_bends(name)
+    failure: Failure | None = None
+    for effort in _EFFORTS:
+        best, failure = _attempt(model, tour, lengths, effort)
+        if best is not None:
+            return finish(model, lengths, best)
+    raise _infeasible(model, tour, lengths, failure)
+
+
+def _attempt(
+    model: Model, tour: Tour, lengths: LineLengths, effort: Effort, *, sized_board: bool = True
+) -> tuple[State | None, Failure | None]:
+    """Return the best finished state of one effort over all starting frames, or why there is none."""
+    best: tuple[float, State] | None = None
+    failure: Failure | None = None
+    search = Search(model, tour, lengths, effort)
+    for start in first_states(model, tour, search.layer, sized_board=sized_board):
+        for state in _all_trees(search, start):
+            frame = frame_of(state)
+            cost = drawing_cost(frame.width * frame.height, state.bends, state.crossings)
+            if best is None or cost < best[0]:
+                best = (cost, state)
+        failure = search.failure
+        if best is not None and model.file.board.size is not None:
+            break
+    return (None if best is None else best[1]), failure
+
+
+def _all_trees(search: Search, start: State) -> Iterator[State]:
+    """Yield finished states holding every separate tree of the circuit."""
+    states = search.run(start)
+    for root in search.tour.roots[1:]:
+        following: list[State] = []
+        for shift in _SHIFTS:
+            for state in states[:2]:
+                joined = join_root(search.model, search.tour, search.layer, state, root, shift)
+                following = search.run(joined)
+                if following:
+                    break
+            if following:
+                break
+        states = following
+    yield from states
+
+
+def _infeasible(model: Model, tour: Tour, lengths: LineLengths, failure: Failure | None) -> InfeasibleError:
+    """Return the error for a circuit without a place, with the nearest remedy that was found."""
+    element = failure.element if failure is not None else model.circuit.spine[0]
+    reason = failure.reason if failure is not None else "no placement was found"
+    if model.file.board.size is not None:
+        for effort in _EFFORTS[:2]:
+            roomy, _ = _attempt(model, tour, lengths, effort, sized_board=False)
+            if roomy is not None:
+                frame = frame_of(roomy)
+                size = f"{frame.width / 1e6:.1f} mm x {frame.height / 1e6:.1f} mm"
+                return InfeasibleError(element, reason, f"a board of {size} would do")
+    return InfeasibleError(
+        element,
+        reason,
+        f"let {element} leave another way ([layout.hints.{element}]), or lengthen the lines beside it",
+    )

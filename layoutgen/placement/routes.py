@@ -1,0 +1,364 @@
+"""Which routes a line may take from where it starts: tidy shapes, hinted words, ways to a port's edge."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterator
+from dataclasses import dataclass
+
+from layoutgen.circuit import End, EndKind
+from layoutgen.circuit.queries import ends_of
+from layoutgen.geometry import mitre_for_turn, mitre_reach
+from layoutgen.placement.budgets import LineLengths
+from layoutgen.placement.frame import Pose, unit
+from layoutgen.placement.model import GROUND, Model
+from layoutgen.placement.state import EDGES, Bounds
+from layoutgen.placement.tour import Tour
+from layoutgen.placement.words import (
+    LegRules,
+    Reach,
+    Route,
+    Word,
+    fixed_shapes,
+    least_legs,
+    route_points,
+    solve_legs,
+)
+from layoutgen.reading import Hint
+from layoutgen.units import to_nm
+
+__all__ = ["RouteChoice", "Router"]
+
+_MM = 1_000_000
+_STRETCHES = (0, 1 * _MM, 2 * _MM, 4 * _MM, 8 * _MM)
+_JOGS = (0, 2 * _MM, 5 * _MM)
+_TARGET_WORDS: tuple[Word, ...] = (
+    (),
+    (90.0,),
+    (-90.0,),
+    (90.0, -90.0),
+    (-90.0, 90.0),
+    (90.0, 90.0),
+    (-90.0, -90.0),
+    (90.0, -90.0, -90.0),
+    (-90.0, 90.0, 90.0),
+    (90.0, 90.0, -90.0),
+    (-90.0, -90.0, 90.0),
+    (90.0, -90.0, -90.0, 90.0),
+    (-90.0, 90.0, 90.0, -90.0),
+)
+
+
+@dataclass(frozen=True, slots=True)
+class RouteChoice:
+    """A route to try, and the edge it ends at for a line to a port."""
+
+    route: Route
+    edge: str | None = None
+
+
+@dataclass(slots=True)
+class Router:
+    """Yields routes for lines; holds the circuit, no state."""
+
+    model: Model
+    tour: Tour
+    lengths: LineLengths
+
+    def choices(self, end: End, start: Pose, bounds: Bounds, *, straight: bool) -> Iterator[RouteChoice]:
+        """Yield routes for a line from one end, the plainest first.
+
+        Args:
+            end: The line's end at the start.
+            start: Node point and heading out of it.
+            bounds: What is known of the board.
+            straight: Only the straight route, where the line need not turn to its port.
+        """
+        name = end.element
+        far = self._far(end)
+        hinted = self._hinted_word(end)
+        port = self._port_at(far)
+        if hinted is not None:
+            yield from self._hinted(end, start, hinted, bounds, port)
+        elif port is not None:
+            yield from self._to_port(end, start, bounds, port, straight=straight)
+        elif (target := self._pinned_target(far, start, bounds)) is not None:
+            yield from self._to_pose(end, start, target)
+        elif self.model.sized.lines[name].free:
+            yield from self._free(end, straight=straight)
+        else:
+            lengths = self.lengths.by_bends(name)
+            shapes = fixed_shapes(lengths, self.rules(end))
+            for route in shapes:
+                if not straight or not route.word:
+                    yield RouteChoice(route)
+
+    def leaves_as_hinted(self, end: End, first_heading: float, last_heading: float) -> bool:
+        """True when a line keeps its ``leave`` hint; headings [deg] are those of travel."""
+        hint = self._hint(end.element)
+        if hint is None or hint.leave is None:
+            return True
+        wanted = hint.leave % 360.0
+        leaving = first_heading if end.index == 0 else (last_heading + 180.0) % 360.0
+        return leaving == wanted
+
+    def rules(self, end: End) -> LegRules:
+        """Return what the legs of a line, travelled from one end, must keep."""
+        model, name = self.model, end.element
+        width, limits = model.widths[name], model.limits
+        mitre = mitre_for_turn(model.sized.lines[name].mitre_percent, 90.0, width, limits.neck)
+        bend = math.ceil(mitre_reach(mitre, 90.0, width))
+        first = self._reach(end, self._net(end))
+        far = self._far(end)
+        last = Reach(0, 0) if far is None else self._reach(far[0], far[1])
+        room = first.copper + 2 * model.pour_gap(name) + model.ground_ring + width // 2
+        clear = room if model.has_ground else 0
+        return LegRules.of(width, limits.spacing, bend, first=first, last=last, clear=clear)
+
+    # -- what a line meets ---------------------------------------------------------------------------
+
+    def _net(self, end: End) -> str:
+        return next(net for found, net in ends_of(self.model.file, end.element) if found.index == end.index)
+
+    def _far(self, end: End) -> tuple[End, str] | None:
+        return next(
+            (found for found in ends_of(self.model.file, end.element) if found[0].index != end.index), None
+        )
+
+    def _hint(self, name: str) -> Hint | None:
+        layout = self.model.file.layout
+        return layout.hints.get(name) if layout is not None else None
+
+    def _port_at(self, far: tuple[End, str] | None) -> str | None:
+        """Return the port that a line ends in, when nothing else meets there."""
+        if far is None or far[1] == GROUND:
+            return None
+        hub = self.tour.hubs[far[1]]
+        if hub.arrival == far[0] and not hub.bank and len(hub.arms) == 1:
+            end = hub.arms[0].end
+            return end.element if end.kind is EndKind.PORT else None
+        return None
+
+    def _reach(self, end: End, net: str) -> Reach:
+        """Return what lies at one end of a line along it."""
+        model, limits = self.model, self.model.limits
+        if net == GROUND:
+            return Reach(limits.land // 2, limits.land)
+        hub = self.tour.hubs[net]
+        others = [other for other in model.circuit.nets[net].ends if other != end]
+        pads = [other for other in others if other.kind is EndKind.PAD]
+        if hub.bank:
+            first = model.bodies[hub.bank[0].element]
+            half = max(first.outline[3] - first.outline[1], first.outline[2] - first.outline[0]) // 2
+            return Reach(half, half + limits.height)
+        if len(others) == 1 and pads:
+            along = model.bodies[pads[0].element].land_at(pads[0]).along
+            return Reach(along, along + limits.height)
+        halves = [model.widths[other.element] // 2 for other in others if other.element in model.widths]
+        halves += [model.bodies[pad.element].land_at(pad).across // 2 for pad in pads]
+        half = max(halves, default=0)
+        return Reach(half, half + limits.spacing if halves else 0)
+
+    # -- free and targeted ---------------------------------------------------------------------------
+
+    def _least_free(self, end: End, *, to_port: bool) -> int:
+        """Return the least length [nm] of a straight free line."""
+        first = self._reach(end, self._net(end))
+        far = self._far(end)
+        last = Reach(0, 0) if far is None else self._reach(far[0], far[1])
+        limits = self.model.limits
+        rf = self.model.sized.lines[end.element].rf
+        extra = max(limits.spacing, 5 * limits.height if rf else 2 * limits.height)
+        return first.copper + (extra if to_port else last.copper + limits.spacing)
+
+    def _free(self, end: End, *, straight: bool) -> Iterator[RouteChoice]:
+        least = self._least_free(end, to_port=False)
+        for more in _STRETCHES:
+            yield RouteChoice(Route((), (least + more,)))
+        if straight:
+            return
+        rules = self.rules(end)
+        for turn in (90.0, -90.0):
+            for more in _STRETCHES:
+                yield RouteChoice(Route((turn,), (rules.first + more, rules.last)))
+
+    def _to_port(
+        self, end: End, start: Pose, bounds: Bounds, port: str, *, straight: bool
+    ) -> Iterator[RouteChoice]:
+        asked = self.model.file.ports[port].edge
+        edges = (
+            [asked] if asked is not None else sorted(EDGES, key=lambda e: _turn_to(start.heading, EDGES[e]))
+        )
+        for edge in edges:
+            turn = (EDGES[edge] - start.heading) % 360.0
+            if turn % 90.0:
+                continue
+            yield from self._to_edge(end, start, bounds, port, edge, straight=straight and turn == 0.0)
+
+    def _to_edge(
+        self, end: End, start: Pose, bounds: Bounds, port: str, edge: str, *, straight: bool
+    ) -> Iterator[RouteChoice]:
+        name = end.element
+        across, along = self._port_targets(bounds, port, edge)
+        words = [w for w in _TARGET_WORDS if (start.heading + sum(w)) % 360.0 == EDGES[edge]]
+        if straight:
+            words = [w for w in words if not w]
+        x, y = (along, across) if unit(EDGES[edge])[0] else (across, along)
+        if not self.model.sized.lines[name].free:
+            yield from self._fixed_to_edge(end, start, words, (x, y), edge)
+            return
+        for word in words:
+            if across is not None:
+                route = solve_legs(word, self._least(end, word), start, x=x, y=y)
+                if route is not None:
+                    yield RouteChoice(route, edge)
+                continue
+            for route in self._stretched(end, word):
+                ended = _end_at(route, start, along, edge)
+                if ended is not None and ended.legs[-1] >= route.legs[-1]:
+                    yield RouteChoice(ended, edge)
+
+    def _least(self, end: End, word: Word) -> tuple[int, ...]:
+        if not word:
+            return (self._least_free(end, to_port=True),)
+        return least_legs(word, self.rules(end))
+
+    def _stretched(self, end: End, word: Word) -> Iterator[Route]:
+        """Yield a word with its least legs, then with longer first and middle legs to go round things."""
+        least = self._least(end, word)
+        if not word:
+            yield Route(word, least)
+            return
+        for more in _STRETCHES:
+            for jog in _JOGS if len(word) > 1 else (0,):
+                yield Route(word, (least[0] + more, *(leg + jog for leg in least[1:-1]), least[-1]))
+
+    def _fixed_to_edge(
+        self, end: End, start: Pose, words: list[Word], target: tuple[int | None, int | None], edge: str
+    ) -> Iterator[RouteChoice]:
+        """Yield routes of given length that end at an edge, or settle where it is."""
+        name = end.element
+        x, y = target
+        if x is None and y is None:
+            for route in fixed_shapes(self.lengths.by_bends(name), self.rules(end)):
+                if route.word in words:
+                    yield RouteChoice(route, edge)
+            return
+        lengths = self.lengths.by_bends(name)
+        for word in words:
+            if len(word) < len(lengths):
+                solved = solve_legs(
+                    word, self._fixed_least(end, word), start, total=lengths[len(word)], x=x, y=y
+                )
+                if solved is not None:
+                    yield RouteChoice(solved, edge)
+
+    def _fixed_least(self, end: End, word: Word) -> tuple[int, ...]:
+        return least_legs(word, self.rules(end))
+
+    def _port_targets(self, bounds: Bounds, port: str, edge: str) -> tuple[int | None, int | None]:
+        """Return the port's coordinates across and along its edge's heading, where they are settled [nm]."""
+        record = self.model.file.ports[port]
+        ux, uy = unit(EDGES[edge])
+        along = None
+        if bounds.known(edge):
+            inset = 0 if record.to_edge else self.model.limits.edge
+            along = round(bounds.at(edge) - (ux + uy) * inset)
+        across = None
+        low = "south" if ux else "west"
+        if record.at is not None and bounds.known(low):
+            across = round(bounds.at(low)) + to_nm(record.at)
+        return across, along
+
+    def _pinned_target(self, far: tuple[End, str] | None, start: Pose, bounds: Bounds) -> Pose | None:
+        """Return where a line must end, heading that way, for the pinned part it leads to."""
+        if far is None or far[1] == GROUND or not (bounds.known("west") and bounds.known("south")):
+            return None
+        hub = self.tour.hubs[far[1]]
+        if hub.arrival != far[0] or hub.bank or len(hub.arms) != 1 or hub.arms[0].end.kind is not EndKind.PAD:
+            return None
+        end = hub.arms[0].end
+        hint = self._hint(end.element)
+        if hint is None or hint.at is None:
+            return None
+        land = self.model.bodies[end.element].land_at(end)
+        straight_on = start.heading + 180.0 - land.heading
+        heading = straight_on if hint.heading is None else hint.heading
+        at = Pose(round(bounds.x0) + to_nm(hint.at[0]), round(bounds.y0) + to_nm(hint.at[1]), heading % 360.0)
+        ux, uy = unit(at.heading)
+        inner = land.inner
+        x, y = at.x + inner.x * ux - inner.y * uy, at.y + inner.x * uy + inner.y * ux
+        return Pose(round(x), round(y), (at.heading + land.heading + 180.0) % 360.0)
+
+    def _to_pose(self, end: End, start: Pose, target: Pose) -> Iterator[RouteChoice]:
+        name = end.element
+        free = self.model.sized.lines[name].free
+        lengths = None if free else self.lengths.by_bends(name)
+        for word in _TARGET_WORDS:
+            if (start.heading + sum(word)) % 360.0 != target.heading:
+                continue
+            if lengths is not None and len(word) >= len(lengths):
+                continue
+            total = None if lengths is None else lengths[len(word)]
+            least = self._least(end, word) if free else self._fixed_least(end, word)
+            route = solve_legs(word, least, start, total=total, x=target.x, y=target.y)
+            if route is not None:
+                yield RouteChoice(route)
+
+    # -- hints ---------------------------------------------------------------------------------------
+
+    def _hinted_word(self, end: End) -> tuple[Word, tuple[int | None, ...]] | None:
+        """Return a line's hinted turns and legs as travelled from one end."""
+        hint = self._hint(end.element)
+        if hint is None or hint.route is None:
+            return None
+        turns = hint.route.turns
+        legs = tuple(None if leg is None else to_nm(leg) for leg in hint.route.lengths)
+        if end.index == 0:
+            return turns, legs
+        return tuple(-turn for turn in reversed(turns)), legs[::-1]
+
+    def _hinted(
+        self,
+        end: End,
+        start: Pose,
+        hinted: tuple[Word, tuple[int | None, ...]],
+        bounds: Bounds,
+        port: str | None,
+    ) -> Iterator[RouteChoice]:
+        word, legs = hinted
+        name = end.element
+        free = self.model.sized.lines[name].free
+        total = None if free else self.lengths.length(name, word)
+        edge = None
+        x = y = None
+        if port is not None:
+            out = (start.heading + sum(word)) % 360.0
+            edge = next((e for e, heading in EDGES.items() if heading == out), None)
+            if edge is not None:
+                across, along = self._port_targets(bounds, port, edge)
+                x, y = (along, across) if unit(out)[0] else (across, along)
+        least = tuple(
+            1 if leg is not None else m
+            for leg, m in zip(legs, least_legs(word, self.rules(end)), strict=True)
+        )
+        route = solve_legs(word, least, start, total=total, x=x, y=y, fixed=legs)
+        if route is not None:
+            yield RouteChoice(route, edge)
+
+
+def _turn_to(heading: float, out: float) -> float:
+    """Return how far a heading must turn [deg, 0 to 180] to leave by an edge."""
+    turn = abs((out - heading) % 360.0)
+    return min(turn, 360.0 - turn)
+
+
+def _end_at(route: Route, start: Pose, along: int | None, edge: str) -> Route | None:
+    """Return the route with its last leg cut or stretched to end at a coordinate [nm], if it is known."""
+    if along is None:
+        return route
+    ux, uy = unit(EDGES[edge])
+    end = route_points(start, route)[1]
+    more = round((along - (end.x if ux else end.y)) * (ux + uy))
+    last = route.legs[-1] + more
+    return Route(route.word, (*route.legs[:-1], last)) if last > 0 else None

@@ -1,0 +1,283 @@
+"""What has been laid so far, as an immutable value, and the growing candidate that adds to it."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Mapping
+from dataclasses import dataclass, field, replace
+
+from layoutgen.circuit import End
+from layoutgen.geometry import Point
+from layoutgen.placement.clearance import Kind, Obstacle, Obstacles
+from layoutgen.placement.frame import Box, Pose, box_around, unit
+from layoutgen.placement.words import Route
+from layoutgen.sizing import BudgetEntry
+
+__all__ = [
+    "EDGES",
+    "Bounds",
+    "Device",
+    "Growth",
+    "LaidLine",
+    "LaidPair",
+    "LaidPort",
+    "LaidRadial",
+    "LaidStrip",
+    "Pending",
+    "State",
+    "corridor_box",
+    "edge_of_heading",
+    "leg_boxes",
+]
+
+EDGES: Mapping[str, float] = {"east": 0.0, "north": 90.0, "west": 180.0, "south": 270.0}
+"""Board edges with the heading [deg] out of the board."""
+
+FAR = 1_000_000_000  # a corridor's length [nm]: longer than any board
+
+
+def edge_of_heading(heading: float) -> str | None:
+    """Return the edge that a heading [deg] leaves by, None for one that is no quarter turn."""
+    return next((edge for edge, out in EDGES.items() if out == heading % 360.0), None)
+
+
+@dataclass(frozen=True, slots=True)
+class Bounds:
+    """Where the profile is known to be [nm] (infinite: not yet), and the largest width and height."""
+
+    x0: float = -math.inf
+    y0: float = -math.inf
+    x1: float = math.inf
+    y1: float = math.inf
+    width: float = math.inf
+    height: float = math.inf
+
+    def at(self, edge: str) -> float:
+        """Return the coordinate of one edge."""
+        return {"east": self.x1, "west": self.x0, "north": self.y1, "south": self.y0}[edge]
+
+    def known(self, edge: str) -> bool:
+        """True when the place of an edge is settled."""
+        return math.isfinite(self.at(edge))
+
+    def fixed(self, edge: str, value: float) -> Bounds:
+        """Return the bounds with one edge settled, and the opposite one where the size is given."""
+        new = replace(self, **{{"east": "x1", "west": "x0", "north": "y1", "south": "y0"}[edge]: value})
+        if edge in ("east", "west") and math.isfinite(self.width):
+            return (
+                replace(new, x0=value, x1=value + self.width)
+                if edge == "west"
+                else replace(new, x0=value - self.width, x1=value)
+            )
+        if edge in ("north", "south") and math.isfinite(self.height):
+            return (
+                replace(new, y0=value, y1=value + self.height)
+                if edge == "south"
+                else replace(new, y0=value - self.height, y1=value)
+            )
+        return new
+
+    def holds(self, extent: tuple[float, float, float, float]) -> bool:
+        """True when an extent (margins included) lies inside what is known."""
+        x0, y0, x1, y1 = extent
+        inside = x0 >= self.x0 and y0 >= self.y0 and x1 <= self.x1 and y1 <= self.y1
+        return inside and x1 - x0 <= self.width and y1 - y0 <= self.height
+
+
+@dataclass(frozen=True, slots=True)
+class LaidLine:
+    """A line with its route; ``start`` is the index of the net at the first vertex.
+
+    ``open_edge`` names the edge to which the last vertex may still be moved (a free line to a port), and
+    ``root_edge`` the same for the first vertex.
+    """
+
+    name: str
+    start: int
+    points: tuple[Point, ...]
+    route: Route
+    ends: tuple[BudgetEntry, ...]
+    open_edge: str | None = None
+    root_edge: str | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class LaidPair:
+    """A coupled pair: pose of a1 heading to a2, side of the second line (1 left, -1 right), length [nm]."""
+
+    name: str
+    pose: Pose
+    side: int
+    length: int
+
+
+@dataclass(frozen=True, slots=True)
+class LaidRadial:
+    """A radial stub: apex and heading of its axis."""
+
+    name: str
+    pose: Pose
+
+
+@dataclass(frozen=True, slots=True)
+class LaidStrip:
+    """A strip between pads or along a bank; ``open_edge`` as for lines."""
+
+    net: str
+    width: int
+    points: tuple[Point, ...]
+    open_edge: str | None = None
+
+
+@dataclass(frozen=True, slots=True)
+class LaidPort:
+    """A port: the end of its copper so far, its edge, the width there, and what carries it."""
+
+    name: str
+    point: Point
+    edge: str
+    width: int
+    carrier: str
+    movable: bool
+
+
+@dataclass(frozen=True, slots=True)
+class Device:
+    """A transistor's plane: stages up to ``stage`` belong behind it, later ones beyond it."""
+
+    stage: int
+    axis: int
+    sign: float
+    coordinate: int
+
+    def is_crossed(self, box: Box, stage: int) -> bool:
+        """True when something of a stage reaches to the wrong side of the plane."""
+        low, high = (
+            (box[self.axis] - self.coordinate) * self.sign,
+            (box[self.axis + 2] - self.coordinate) * self.sign,
+        )
+        return max(low, high) > 0 if stage <= self.stage else min(low, high) < 0
+
+
+@dataclass(frozen=True, slots=True)
+class Pending:
+    """Something that leaves a placed point and is not laid yet; ``turns`` are the choices left [deg]."""
+
+    end: End
+    at: Pose
+    turns: tuple[float, ...]
+    offset: int = 0
+
+
+@dataclass(frozen=True, slots=True, kw_only=True)
+class State:
+    """Everything laid so far."""
+
+    obstacles: Obstacles
+    lines: Mapping[str, LaidLine]
+    pairs: Mapping[str, LaidPair]
+    radials: Mapping[str, LaidRadial]
+    parts: Mapping[str, Pose]
+    ports: Mapping[str, LaidPort]
+    strips: tuple[LaidStrip, ...]
+    line_vias: tuple[tuple[str, Point], ...]
+    line_grounds: tuple[tuple[str, Box], ...]
+    pending: tuple[Pending, ...]
+    used: Mapping[str, tuple[float, ...]]
+    bounds: Bounds
+    extent: tuple[float, float, float, float]
+    bends: float
+    devices: tuple[Device, ...] = ()
+    crossings: int = 0
+    cost: float = 0.0
+
+
+@dataclass(slots=True, kw_only=True)
+class Growth:
+    """A candidate while it is built: what it would add to a state."""
+
+    state: State
+    bank_side: int = 1
+    obstacles: list[Obstacle] = field(default_factory=list)
+    lines: dict[str, LaidLine] = field(default_factory=dict)
+    pairs: dict[str, LaidPair] = field(default_factory=dict)
+    radials: dict[str, LaidRadial] = field(default_factory=dict)
+    parts: dict[str, Pose] = field(default_factory=dict)
+    ports: dict[str, LaidPort] = field(default_factory=dict)
+    strips: list[LaidStrip] = field(default_factory=list)
+    line_vias: list[tuple[str, Point]] = field(default_factory=list)
+    line_grounds: list[tuple[str, Box]] = field(default_factory=list)
+    pending: list[Pending] = field(default_factory=list)
+    used: dict[str, tuple[float, ...]] = field(default_factory=dict)
+    bounds: Bounds = field(default_factory=Bounds)
+    bends: float = 0.0
+    devices: list[Device] = field(default_factory=list)
+
+    def use(self, net: str, heading: float) -> None:
+        """Note that an arm leaves a net's node with a heading [deg]."""
+        before = self.used.get(net, self.state.used.get(net, ()))
+        self.used[net] = (*before, heading % 360.0)
+
+    def extent(self, margins: Mapping[Kind, int]) -> tuple[float, float, float, float]:
+        """Return the state's extent [nm] with this candidate's boxes and their margins."""
+        x0, y0, x1, y1 = self.state.extent
+        for item in self.obstacles:
+            if item.corridor:
+                continue
+            bx0, by0, bx1, by1 = item.reach(margins)
+            x0, y0, x1, y1 = min(x0, bx0), min(y0, by0), max(x1, bx1), max(y1, by1)
+        return x0, y0, x1, y1
+
+    def applied(self, extent: tuple[float, float, float, float], cost: float, crossings: int = 0) -> State:
+        """Return the state with this candidate laid."""
+        state = self.state
+        return State(
+            obstacles=state.obstacles.plus(self.obstacles),
+            lines={**state.lines, **self.lines},
+            pairs={**state.pairs, **self.pairs},
+            radials={**state.radials, **self.radials},
+            parts={**state.parts, **self.parts},
+            ports={**state.ports, **self.ports},
+            strips=state.strips + tuple(self.strips),
+            line_vias=state.line_vias + tuple(self.line_vias),
+            line_grounds=state.line_grounds + tuple(self.line_grounds),
+            pending=(*state.pending, *self.pending),
+            used={**state.used, **self.used},
+            bounds=self.bounds,
+            extent=extent,
+            bends=state.bends + self.bends,
+            devices=state.devices + tuple(self.devices),
+            crossings=crossings,
+            cost=cost,
+        )
+
+
+def leg_boxes(points: tuple[Point, ...], width: int) -> list[Box]:
+    """Return a box [nm] for each leg of a line, corners of bends included (exact for quarter turns)."""
+    half = width / 2.0
+    boxes = []
+    for i in range(len(points) - 1):
+        a, b = points[i], points[i + 1]
+        length = math.dist(a, b) or 1.0
+        ux, uy = (b[0] - a[0]) / length, (b[1] - a[1]) / length
+        before, after = half if i else 0.0, half if i + 2 < len(points) else 0.0
+        corners = [
+            (math.floor(p[0] + s * ux * e + t * uy * half), math.floor(p[1] + s * uy * e - t * ux * half))
+            for p, s, e in ((a, -1.0, before), (b, 1.0, after))
+            for t in (-1.0, 1.0)
+        ]
+        boxes.append(box_around(corners))
+    return boxes
+
+
+def corridor_box(point: Point, heading: float, width: int) -> Box:
+    """Return the box from a point far out of the board along a quarter-turn heading."""
+    ux, uy = unit(heading)
+    half = width // 2
+    far = (round(point[0] + ux * FAR), round(point[1] + uy * FAR))
+    box = box_around([point, far])
+    return (
+        (box[0] - half, box[1], box[2] + half, box[3])
+        if ux == 0.0
+        else (box[0], box[1] - half, box[2], box[3] + half)
+    )

@@ -1,0 +1,281 @@
+"""Routes as words of turns, with legs: the shapes a line of given length may take.
+
+A word is a tuple of turns [deg]; a line with word (t1, ..., tk) has k + 1 legs. For a fixed word the end
+point is linear in the legs, so lengths that meet a target come out of one linear program; without a target
+the legs are taken from a short list of tidy proportions.
+"""
+
+from __future__ import annotations
+
+import itertools
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass
+
+from layoutgen.geometry import Point
+from layoutgen.placement.frame import Pose, unit
+
+__all__ = [
+    "LegRules",
+    "Route",
+    "Word",
+    "fixed_shapes",
+    "headings_of",
+    "least_legs",
+    "route_points",
+    "solve_legs",
+]
+
+Word = tuple[float, ...]
+
+_L, _R = 90.0, -90.0
+_MEANDER_ROWS = (2, 3, 4, 5, 6, 8)
+_SOLVER_TOLERANCE_NM = 5.0
+
+
+@dataclass(frozen=True, slots=True)
+class Route:
+    """A word with its legs [nm]."""
+
+    word: Word
+    legs: tuple[int, ...]
+
+    @property
+    def length(self) -> int:
+        """Centre-line length [nm]."""
+        return sum(self.legs)
+
+
+@dataclass(frozen=True, slots=True)
+class Reach:
+    """What lies at a line's end, along the line [nm]: copper that no bend may touch, and how far a leg
+
+    that runs across must keep away (to that leg's edge).
+    """
+
+    copper: int
+    beside: int
+
+
+@dataclass(frozen=True, slots=True)
+class LegRules:
+    """What the legs of one line must keep [nm].
+
+    ``first`` and ``last`` are the least first and last legs when there is a bend (they clear what the line
+    leaves and meets), ``clear`` a roomier first leg that lets the pour in between, ``fold`` the least middle
+    leg, centre to centre, so that neighbouring legs keep the spacing rule, ``bend`` the reach of one bend.
+    """
+
+    width: int
+    first: int
+    last: int
+    clear: int
+    fold: int
+    bend: int
+
+    @classmethod
+    def of(cls, width: int, spacing: int, reach: int, *, first: Reach, last: Reach, clear: int) -> LegRules:
+        """Derive the rules from a line's width, the spacing and the reach of one of its bends [nm].
+
+        Args:
+            width: Line width [nm].
+            spacing: Least distance of neighbouring legs [nm].
+            reach: How far a bend reaches from its vertex [nm].
+            first: Copper and clearance at the start.
+            last: Copper and clearance at the far end.
+            clear: Roomier first leg [nm].
+        """
+        start = max(first.copper + reach, first.beside + width // 2)
+        finish = max(last.copper + reach, last.beside + width // 2)
+        return cls(
+            width, start, finish, max(clear, start), max(width + spacing, 2 * reach + width // 4), reach
+        )
+
+
+def headings_of(start: float, word: Word) -> tuple[float, ...]:
+    """Return the heading [deg] of every leg."""
+    return tuple(itertools.accumulate(word, lambda h, t: (h + t) % 360.0, initial=start % 360.0))
+
+
+def route_points(start: Pose, route: Route) -> tuple[tuple[Point, ...], Pose]:
+    """Return the vertices [nm] of a route and the pose at its end."""
+    x, y = float(start.x), float(start.y)
+    points = [start.point]
+    headings = headings_of(start.heading, route.word)
+    for heading, leg in zip(headings, route.legs, strict=True):
+        ux, uy = unit(heading)
+        x, y = x + ux * leg, y + uy * leg
+        points.append((round(x), round(y)))
+    return tuple(points), Pose(points[-1][0], points[-1][1], headings[-1])
+
+
+def least_legs(word: Word, rules: LegRules) -> tuple[int, ...]:
+    """Return the least length [nm] of each leg of a word."""
+    if not word:
+        return (1,)
+    return (rules.first, *([rules.fold] * (len(word) - 1)), rules.last)
+
+
+def fixed_shapes(lengths: Sequence[int], rules: LegRules) -> Iterator[Route]:
+    """Yield tidy shapes for a line of fixed length, the straight one first.
+
+    Args:
+        lengths: Centre-line length [nm] by number of bends: ``lengths[k]`` for k bends.
+        rules: Least legs.
+    """
+    yield Route((), (lengths[0],))
+    for turn in (_L, _R):
+        yield from _one_bend(lengths, rules, turn)
+        yield from _two_bends(lengths, rules, turn)
+        yield from _three_bends(lengths, rules, turn)
+        yield from _meanders(lengths, rules, turn)
+
+
+def _first_legs(total: int, rules: LegRules) -> list[int]:
+    """Return tidy first legs: just clear, roomy, and thirds of the whole."""
+    legs = [rules.clear, rules.first, round(total / 3), round(total / 2), round(2 * total / 3)]
+    return list(dict.fromkeys(leg for leg in legs if leg >= rules.first))
+
+
+def _one_bend(lengths: Sequence[int], rules: LegRules, turn: float) -> Iterator[Route]:
+    total = lengths[1]
+    for first in [*_first_legs(total, rules), total - rules.last]:
+        if first >= rules.first and total - first >= rules.last:
+            yield Route((turn,), (first, total - first))
+
+
+def _two_bends(lengths: Sequence[int], rules: LegRules, turn: float) -> Iterator[Route]:
+    total = lengths[2]
+    for first in _first_legs(total, rules):
+        for middle in (rules.fold, 2 * rules.fold, total - first - rules.last):
+            last = total - first - middle
+            if middle >= rules.fold and last >= rules.last:
+                yield Route((turn, turn), (first, middle, last))
+                yield Route((turn, -turn), (first, middle, last))
+    half = (total - rules.fold) // 2
+    if half >= max(rules.first, rules.last):
+        yield Route((turn, turn), (half, rules.fold, total - half - rules.fold))
+
+
+def _three_bends(lengths: Sequence[int], rules: LegRules, turn: float) -> Iterator[Route]:
+    """Out, along, back: the first leg leaves, the rest lies as a hairpin beside what it left."""
+    total = lengths[3]
+    for first in _first_legs(total, rules)[:2]:
+        rest = total - first - rules.fold
+        row = rest // 2
+        if row >= max(rules.fold, rules.last):
+            yield Route((turn, -turn, -turn), (first, row, rules.fold, rest - row))
+        for last in (rules.last, 2 * rules.last):
+            row = total - first - rules.fold - last
+            if row >= rules.fold:
+                yield Route((turn, -turn, turn), (first, row, rules.fold, last))
+                yield Route((turn, turn, -turn), (first, rules.fold, row, last))
+
+
+def _meanders(lengths: Sequence[int], rules: LegRules, turn: float) -> Iterator[Route]:
+    """Rows to and fro: along the heading it left with, and across it."""
+    for rows in _MEANDER_ROWS:
+        bends = 2 * (rows - 1)
+        if 2 < bends < len(lengths):
+            row, spare = divmod(lengths[bends] - (rows - 1) * rules.fold, rows)
+            if row >= max(rules.first, rules.last, rules.fold // 2):
+                word = tuple(
+                    t for k in range(rows - 1) for t in ((turn, turn) if k % 2 == 0 else (-turn, -turn))
+                )
+                legs = _interleave([row] * rows, rules.fold)
+                yield Route(word, (legs[0] + spare, *legs[1:]))
+        bends = 2 * rows - 1
+        if 3 < bends < len(lengths):
+            yield from _cross_meander(lengths[bends], rules, turn, rows)
+
+
+def _cross_meander(total: int, rules: LegRules, turn: float, rows: int) -> Iterator[Route]:
+    """Leave, turn, then rows across the heading; the last row ends the line."""
+    for first in (rules.clear, rules.first):
+        row, spare = divmod(total - first - (rows - 1) * rules.fold, rows)
+        if row < max(rules.fold, rules.last):
+            continue
+        word: list[float] = [turn]
+        for k in range(rows - 1):
+            word += [-turn, -turn] if k % 2 == 0 else [turn, turn]
+        legs = (first, *_interleave([row] * rows, rules.fold))
+        yield Route(tuple(word), (*legs[:-1], legs[-1] + spare))
+
+
+def _interleave(rows: list[int], fold: int) -> list[int]:
+    """Return rows with fold legs between them."""
+    out = [rows[0]]
+    for row in rows[1:]:
+        out += [fold, row]
+    return out
+
+
+def solve_legs(
+    word: Word,
+    least: Sequence[int],
+    start: Pose,
+    *,
+    total: int | None = None,
+    x: int | None = None,
+    y: int | None = None,
+    fixed: Sequence[int | None] = (),
+) -> Route | None:
+    """Return the legs that give a word a total length and an end point, or None where none do.
+
+    The linear program keeps every leg at its least or more and spreads what is spare evenly (it maximises
+    the least surplus), or, for a free total, makes the line as short as it can.
+
+    Args:
+        word: Turns [deg].
+        least: Least length of each leg [nm].
+        start: Where the line starts and where it is heading.
+        total: Centre-line length asked [nm]; None for free.
+        x: East coordinate of the end asked [nm], or None.
+        y: North coordinate of the end asked [nm], or None.
+        fixed: Legs given [nm], None for free ones; empty when all are free.
+    """
+    from scipy.optimize import linprog  # slow to import, and few lines need it
+
+    count = len(word) + 1
+    directions = [unit(heading) for heading in headings_of(start.heading, word)]
+    rows, wanted = [], []
+    for value, row in (
+        (total, [1.0] * count),
+        (None if x is None else x - start.x, [d[0] for d in directions]),
+        (None if y is None else y - start.y, [d[1] for d in directions]),
+    ):
+        if value is not None:
+            rows.append([*row, 0.0])
+            wanted.append(float(value))
+    bounds: list[tuple[float, float | None]] = []
+    for i in range(count):
+        given = fixed[i] if fixed else None
+        bounds.append((float(least[i]), None) if given is None else (float(given), float(given)))
+    cost = [0.0] * count + [-1.0] if total is not None else [1.0] * count + [0.0]
+    spread = [[-1.0 if j == i else 0.0 for j in range(count)] + [1.0] for i in range(count)]
+    free = [i for i in range(count) if not (fixed and fixed[i] is not None)]
+    result = linprog(
+        cost,
+        A_ub=[spread[i] for i in free] or None,
+        b_ub=[-float(least[i]) for i in free] or None,
+        A_eq=rows or None,
+        b_eq=wanted or None,
+        bounds=[*bounds, (0.0, None)],
+        method="highs",
+    )
+    if not result.success or result.x is None:
+        return None
+    legs = [round(float(leg)) for leg in result.x[:count]]
+    if total is not None:
+        legs = _mend_total(legs, total, free)
+    route = Route(word, tuple(legs))
+    end = route_points(start, route)[1]
+    off = max(abs(end.x - x) if x is not None else 0, abs(end.y - y) if y is not None else 0)
+    return route if off <= _SOLVER_TOLERANCE_NM else None
+
+
+def _mend_total(legs: list[int], total: int, free: Sequence[int]) -> list[int]:
+    """Put the rounding error of the sum into the longest free leg."""
+    if free:
+        longest = max(free, key=lambda i: legs[i])
+        legs[longest] += total - sum(legs)
+    return legs

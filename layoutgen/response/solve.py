@@ -1,0 +1,279 @@
+"""From a network to its S-parameters, for all frequencies (and samples) at once.
+
+In: a :class:`Network`. Out: S-parameters (B, N, N) as power waves (Kurokawa 1965), so that complex
+reference impedances are allowed.
+
+Formulation: nodal admittances, with the ports' own impedances as loads. A two-port whose admittances are
+large or infinite - a line near a multiple of half a wavelength, an element of no impedance - keeps its far
+current as an unknown instead, with the equation ``V1 - a V2 - b I2 = 0``, which is regular at any length;
+measured data keep their incident waves, regular for any S. Only the frequencies that need extra unknowns
+get them. Everything is scaled to 50 ohm. Small networks go through one batched dense solution, networks
+of more than ``SPARSE_FROM`` unknowns through a sparse one per frequency.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from typing import TYPE_CHECKING, NamedTuple
+
+import numpy as np
+import numpy.typing as npt
+
+from layoutgen.response.chain import Chain, ComplexArray, FloatArray
+from layoutgen.response.network import GROUND, Block, Branch, Ends, Network, Port
+from layoutgen.response.reduce import reduce_network
+
+if TYPE_CHECKING:
+    from scipy.sparse import csc_array
+
+__all__ = ["SPARSE_FROM", "solve"]
+
+SPARSE_FROM = 300
+"""Number of unknowns from which on each frequency is solved by a sparse factorisation."""
+
+_R = 50.0  # scale of all impedances [ohm]
+_STIFF = 1e3  # largest scaled admittance between two nodes: costs three digits
+_STIFF_TO_GROUND = 1e9  # on the diagonal alone it costs none
+_CHUNK_BYTES = 32e6
+_BLOCK = 16  # right-hand sides of one sparse solution
+
+_Rows = npt.NDArray[np.intp]
+_Values = ComplexArray | FloatArray | complex
+_Stamps = dict[tuple[int, int], ComplexArray]
+
+
+def solve(network: Network) -> ComplexArray:
+    """Return the S-parameters (B, N, N) [-] between the network's ports, to the ports' own impedances.
+
+    Where a lossless part that no port can see is exactly at resonance, the solution of least energy is
+    taken; the S-parameters do not depend on it.
+
+    >>> from layoutgen.response.chain import line
+    >>> from layoutgen.response.network import between
+    >>> half_wave = between("a", "b", line(70.0, [np.pi]))
+    >>> s = solve(Network(1, (Port("a", 50.0), Port("b", 50.0)), (half_wave,)))
+    >>> np.abs(s[0, 0]).round(12).tolist()
+    [0.0, 1.0]
+    """
+    small = reduce_network(network)
+    stiff = [np.broadcast_to(_is_stiff(branch), (small.size,)) for branch in small.branches]
+    special = np.any(stiff, axis=0) if stiff else np.zeros(small.size, dtype=np.bool_)
+    voltages = np.empty((small.size, len(small.ports), len(small.ports)), dtype=np.complex128)
+    for rows in (np.flatnonzero(~special), np.flatnonzero(special)):
+        if rows.size:
+            kept = tuple(bool(np.any(flags[rows])) for flags in stiff)
+            voltages[rows] = _loaded_impedances(small, rows, kept)
+    return _power_waves(voltages, small.ports)
+
+
+def _power_waves(loaded: ComplexArray, ports: Sequence[Port]) -> ComplexArray:
+    """Return S (B, N, N) from the impedance matrix [ohm] of the network with its ports loaded."""
+    z = np.array([port.impedance for port in ports], dtype=np.complex128)
+    scale = np.sqrt(z.real) / z
+    s = 2.0 * scale[:, None] * loaded * scale[None, :]
+    index = np.arange(len(ports))
+    s[:, index, index] -= np.conj(z) / z
+    return s
+
+
+def _is_stiff(branch: Branch) -> npt.NDArray[np.bool_]:
+    """Say at which frequencies the branch's admittances would spoil the nodal equations."""
+    a, b, _, d = branch.chain
+    to_ground = all(node == GROUND for node, _ in branch.near) or all(
+        node == GROUND for node, _ in branch.far
+    )
+    limit = _STIFF_TO_GROUND if to_ground else _STIFF
+    largest = np.maximum(1.0, np.maximum(np.abs(a), np.abs(d)))
+    return np.asarray(np.abs(b) * limit < _R * largest)
+
+
+class _Unknowns(NamedTuple):
+    """Numbers of the unknowns: nodes by name, then a current for each stiff branch, waves for each block."""
+
+    node: dict[str, int]
+    current: dict[int, int]
+    wave: dict[int, int]
+    total: int
+
+
+def _number(network: Network, stiff: Sequence[bool]) -> _Unknowns:
+    """Number the unknowns, in the order in which the network mentions them."""
+    node: dict[str, int] = {}
+    mentioned = [port.node for port in network.ports]
+    mentioned += [name for branch in network.branches for name, _ in branch.near + branch.far]
+    mentioned += [name for block in network.blocks for pair in block.ends for name in pair]
+    for name in mentioned:
+        if name != GROUND:
+            node.setdefault(name, len(node))
+    count = len(node)
+    current = {}
+    for k, flag in enumerate(stiff):
+        if flag:
+            current[k] = count
+            count += 1
+    wave = {}
+    for k, block in enumerate(network.blocks):
+        wave[k] = count
+        count += len(block.ends)
+    return _Unknowns(node, current, wave, count)
+
+
+def _loaded_impedances(network: Network, rows: _Rows, stiff: Sequence[bool]) -> ComplexArray:
+    """Return port voltages for unit currents into loaded ports, (rows, N, N) [ohm]."""
+    unknowns = _number(network, stiff)
+    stamps = _assemble(network, rows, unknowns)
+    at = np.array([unknowns.node[port.node] for port in network.ports])
+    right = np.zeros((unknowns.total, at.size), dtype=np.complex128)
+    right[at, np.arange(at.size)] = _R
+    positions = np.array(list(stamps))
+    values = np.array([np.broadcast_to(value, rows.shape) for value in stamps.values()])
+    method = _solve_sparse if unknowns.total > SPARSE_FROM else _solve_dense
+    return method(positions, values, right, at)
+
+
+# -- equations, all scaled by 50 ohm
+
+
+def _assemble(network: Network, rows: _Rows, unknowns: _Unknowns) -> _Stamps:
+    """Return the matrix's non-zero places with their values (rows,)."""
+    stamps: _Stamps = {}
+    for port in network.ports:
+        k = unknowns.node[port.node]
+        _add(stamps, k, k, _R / port.impedance)
+    for element in network.shunts:
+        k = unknowns.node[element.node]
+        _add(stamps, k, k, _R * _pick(element.admittance, rows))
+    for number, branch in enumerate(network.branches):
+        chain = Chain(*(_pick(value, rows) for value in branch.chain))
+        near, far = _numbered(branch.near, unknowns), _numbered(branch.far, unknowns)
+        if number in unknowns.current:
+            _stamp_current(stamps, near, far, chain, unknowns.current[number])
+        else:
+            _stamp_admittance(stamps, near, far, chain)
+    for number, block in enumerate(network.blocks):
+        _stamp_block(stamps, block, rows, unknowns, unknowns.wave[number])
+    return stamps
+
+
+def _pick(value: npt.ArrayLike, rows: _Rows) -> ComplexArray:
+    """Return the values of some frequencies; a single number stands for all."""
+    array = np.asarray(value, dtype=np.complex128)
+    return array if array.ndim == 0 or array.shape[0] == rows.size else array[rows]
+
+
+def _numbered(ends: Ends, unknowns: _Unknowns) -> list[tuple[int, float]]:
+    """Return the numbers and weights of a side, ground left out."""
+    return [(unknowns.node[node], weight) for node, weight in ends if node != GROUND]
+
+
+def _add(stamps: _Stamps, row: int, column: int, value: _Values) -> None:
+    """Add a value to one place of the matrix."""
+    place = (row, column)
+    added = np.asarray(value, dtype=np.complex128)
+    stamps[place] = stamps[place] + added if place in stamps else added
+
+
+def _stamp_admittance(
+    stamps: _Stamps, near: list[tuple[int, float]], far: list[tuple[int, float]], chain: Chain
+) -> None:
+    """Add a two-port by its admittances: (1/b) [[d, -1], [-1, a]]."""
+    transfer = -_R / chain.b
+    for sides, value in (((near, near), -transfer * chain.d), ((far, far), -transfer * chain.a)):
+        _add_weighted(stamps, *sides, value)
+    _add_weighted(stamps, near, far, transfer)
+    _add_weighted(stamps, far, near, transfer)
+
+
+def _add_weighted(
+    stamps: _Stamps, side: list[tuple[int, float]], other: list[tuple[int, float]], value: _Values
+) -> None:
+    """Add a value between two weighted sides."""
+    for row, weight in side:
+        for column, factor in other:
+            _add(stamps, row, column, value if weight == factor == 1.0 else weight * factor * value)
+
+
+def _stamp_current(
+    stamps: _Stamps, near: list[tuple[int, float]], far: list[tuple[int, float]], chain: Chain, k: int
+) -> None:
+    """Add a two-port by its far current, unknown k: V1 - a V2 - b I2 = 0, its row scaled to order one."""
+    a, b, c, d = chain
+    scale = 1.0 / (1.0 + np.abs(a) + np.abs(b) / _R)
+    this = [(k, 1.0)]
+    _add(stamps, k, k, -b / _R * scale)
+    _add_weighted(stamps, this, near, scale)
+    _add_weighted(stamps, this, far, -a * scale)
+    _add_weighted(stamps, near, far, _R * c)
+    _add_weighted(stamps, near, this, d)
+    _add_weighted(stamps, far, this, -1.0)
+
+
+def _stamp_block(stamps: _Stamps, block: Block, rows: _Rows, unknowns: _Unknowns, first: int) -> None:
+    """Add data by their incident waves x: V = root(z0) (1 + S) x and I = (1 - S) x / root(z0)."""
+    s = _pick(block.s, rows)
+    root = np.sqrt(block.z0 / _R)
+    for i, (plus, minus) in enumerate(block.ends):
+        side = _numbered(((plus, 1.0), (minus, -1.0)), unknowns)
+        _add_weighted(stamps, [(first + i, 1.0)], side, 1.0)
+        for j in range(len(block.ends)):
+            own = 1.0 if i == j else 0.0
+            _add(stamps, first + i, first + j, -root[i] * (own + s[:, i, j]))
+            _add_weighted(stamps, side, [(first + j, 1.0)], (own - s[:, i, j]) / root[i])
+
+
+# -- solutions
+
+
+def _solve_dense(positions: _Rows, values: ComplexArray, right: ComplexArray, at: _Rows) -> ComplexArray:
+    """Solve for every frequency and keep the unknowns ``at`` (N,): result (F, N, N).
+
+    ``positions`` (K, 2) are the matrix's non-zero places, ``values`` (K, F) what stands there, ``right``
+    (n, N) the right-hand sides.
+    """
+    n, count = right.shape[0], values.shape[1]
+    flat = positions[:, 0] * n + positions[:, 1]
+    chunk = max(1, int(_CHUNK_BYTES / (16 * n * n)))
+    solution = np.empty((count, at.size, right.shape[1]), dtype=np.complex128)
+    for start in range(0, count, chunk):
+        part = values[:, start : start + chunk].T
+        matrix = np.zeros((part.shape[0], n * n), dtype=np.complex128)
+        matrix[:, flat] = part
+        solution[start : start + chunk] = _solve_batch(matrix.reshape(-1, n, n), right)[:, at]
+    return solution
+
+
+def _solve_batch(matrix: ComplexArray, right: ComplexArray) -> ComplexArray:
+    """Solve a stack of equations; where one is exactly singular, the solution of least energy."""
+    try:
+        return np.asarray(np.linalg.solve(matrix, right))
+    except np.linalg.LinAlgError:
+        if matrix.shape[0] > 1:
+            return np.concatenate([_solve_batch(one[None], right) for one in matrix])
+        return np.asarray(np.linalg.lstsq(matrix[0], right)[0], dtype=np.complex128)[None]
+
+
+def _solve_sparse(positions: _Rows, values: ComplexArray, right: ComplexArray, at: _Rows) -> ComplexArray:
+    """Solve as :func:`_solve_dense` does, one sparse factorisation for each frequency."""
+    from scipy.sparse import csc_array
+
+    n = right.shape[0]
+    order = np.lexsort((positions[:, 0], positions[:, 1]))
+    rows = positions[order, 0].astype(np.int32)
+    starts = np.searchsorted(positions[order, 1], np.arange(n + 1)).astype(np.int32)
+    solution = np.empty((values.shape[1], at.size, right.shape[1]), dtype=np.complex128)
+    for k, column in enumerate(np.ascontiguousarray(values[order].T)):
+        matrix = csc_array((column, rows, starts), shape=(n, n))
+        solution[k] = _solve_one_sparse(matrix, right, at)
+    return solution
+
+
+def _solve_one_sparse(matrix: csc_array, right: ComplexArray, at: _Rows) -> ComplexArray:
+    """Factorise one sparse matrix and solve in narrow blocks, which keeps the dense kernels on one thread."""
+    from scipy.sparse.linalg import splu
+
+    try:
+        factors = splu(matrix, permc_spec="MMD_AT_PLUS_A")
+    except RuntimeError:  # exactly singular
+        return np.asarray(np.linalg.lstsq(matrix.toarray(), right)[0], dtype=np.complex128)[at]
+    blocks = range(0, right.shape[1], _BLOCK)
+    return np.concatenate([factors.solve(right[:, k : k + _BLOCK])[at] for k in blocks], axis=1)

@@ -1,0 +1,97 @@
+"""The response on its own: a table for people, a CSV of every trace, a chart as SVG, Touchstone files."""
+
+from __future__ import annotations
+
+import cmath
+import math
+
+from layoutgen.numbers import fixed
+from layoutgen.response import Response
+from layoutgen.writers.charts import Trace, chart, decibels, match_traces, transmission_traces
+from layoutgen.writers.html import escape
+from layoutgen.writers.records import Job, Result
+from layoutgen.writers.touchstone import write_as_drawn, write_wanted
+
+__all__ = ["TRACE_HEADS", "response_files", "trace_values", "traces_of", "write_csv", "write_plot"]
+
+TRACE_HEADS = (
+    "ports", "frequency GHz", "wanted dB", "drawn dB", "change dB", "wanted deg", "drawn deg", "change deg",
+)  # fmt: skip
+"""Headings of :func:`trace_values`."""
+
+_STYLE = (
+    "svg{font:12px Helvetica,Arial,'DejaVu Sans',sans-serif}text{fill:#2b261e}.m{text-anchor:middle}"
+    ".e{text-anchor:end}.g{stroke:#ddd3bf}.band{fill:#a2531f;opacity:.16}.d,.w{fill:none;stroke-width:1.8}"
+    ".w{stroke-dasharray:6 4;stroke-width:1.3}.ink{stroke:#6b6252}.t0{stroke:#a2531f}.t1{stroke:#1f6f8b}"
+    ".t2{stroke:#5b7f2b}.t3{stroke:#7a4a91}.t4{stroke:#b08900}.t5{stroke:#52606d}"
+)
+
+
+def response_files(result: Result, job: Job) -> dict[str, bytes]:
+    """Return the files of the response by name: Touchstone, CSV, chart.
+
+    Raises:
+        ValueError: The result has no response.
+    """
+    if result.response is None:
+        raise ValueError("a result without RF ports has no response")
+    ports = len(result.response.ports)
+    return {
+        f"wanted.s{ports}p": write_wanted(result, job),
+        f"as_drawn.s{ports}p": write_as_drawn(result, job),
+        "response.csv": write_csv(result.response),
+        "response.svg": write_plot(result, result.response),
+    }
+
+
+def traces_of(response: Response) -> list[Trace]:
+    """Return all traces worth showing: reflections, then transmissions above -60 dB."""
+    return [*match_traces(response), *transmission_traces(response)]
+
+
+def trace_values(response: Response) -> list[tuple[str, ...]]:
+    """Return rows of text, each trace at each spot: levels [dB], angles [deg], and their changes."""
+    return [_values(response, trace, k) for trace in traces_of(response) for k in range(len(response.spots))]
+
+
+def _values(response: Response, trace: Trace, spot: int) -> tuple[str, ...]:
+    both = (response.wanted_at_spots, response.as_drawn_at_spots)
+    wanted, drawn = (complex(s[spot, trace.row, trace.column]) for s in both)
+    levels = float(decibels(wanted)), float(decibels(drawn))
+    angles = math.degrees(cmath.phase(wanted)), math.degrees(cmath.phase(drawn))
+    turn = (angles[1] - angles[0] + 180.0) % 360.0 - 180.0
+    return (
+        trace.name,
+        f"{response.spots[spot] / 1e9:.9g}",
+        *(fixed(value, 2) for value in (*levels, levels[1] - levels[0])),
+        *(fixed(value, 1) for value in (*angles, turn)),
+    )
+
+
+def write_csv(response: Response) -> bytes:
+    """Return the levels [dB] of every trace over the sweep as comma-separated values."""
+    traces = traces_of(response)
+    heads = ["frequency_hz", *(f"{t.name} {kind} (dB)" for t in traces for kind in ("wanted", "as drawn"))]
+    levels = [level.tolist() for t in traces for level in (t.wanted, t.as_drawn)]
+    rows = zip(response.frequencies.tolist(), *levels, strict=True)
+    lines = [",".join(heads), *(",".join([fixed(f, 3), *(fixed(v, 4) for v in row)]) for f, *row in rows)]
+    return ("\n".join(lines) + "\n").encode("utf-8")
+
+
+def write_plot(result: Result, response: Response) -> bytes:
+    """Return one SVG with both charts, reflection above transmission."""
+    design = result.circuit.file.design
+    match, through = match_traces(response), transmission_traces(response)
+    charts = [("Reflection at each port", match), ("Transmission between ports", through)]
+    shown = [(title, traces) for title, traces in charts if traces]
+    parts = [
+        f'<svg xmlns="http://www.w3.org/2000/svg" width="780" height="{30 + 340 * len(shown)}" role="img">'
+        f"<title>{escape(design.title)}: response</title><style>{_STYLE}</style>"
+        '<rect width="100%" height="100%" fill="#fbf8f1"/>'
+    ]
+    for k, (title, traces) in enumerate(shown):
+        y = 10 + 340 * k
+        parts.append(f'<text x="20" y="{y + 18}" font-size="15">{escape(title)}</text>')
+        inner = chart(title, response.frequencies, traces, design.band)
+        parts.append(inner.replace("<svg ", f'<svg x="10" y="{y + 26}" width="760" height="300" ', 1))
+    return ("".join(parts) + "</svg>\n").encode("utf-8")
