@@ -23,7 +23,7 @@ if TYPE_CHECKING:
     from layoutgen.checks import Finding
     from layoutgen.writers import Result
 
-__all__ = ["cli", "main"]
+__all__ = ["cli", "main", "status_of"]
 
 CLEAN, FINDINGS, WRONG_INPUT, INTERRUPTED, CUT_OFF = 0, 1, 2, 130, 141
 _ARTWORK_SUFFIXES = (".gds", ".oas", ".dxf")
@@ -33,10 +33,10 @@ _HELP = {"help_option_names": ["-h", "--help"], "max_content_width": 100}
 def main() -> None:
     """Run the command line and exit; no fault of a user ends in a traceback."""
     signal.signal(signal.SIGTERM, lambda *_: sys.exit(128 + signal.SIGTERM))
-    sys.exit(_status(sys.argv[1:]))
+    sys.exit(status_of(sys.argv[1:]))
 
 
-def _status(arguments: Sequence[str]) -> int:
+def status_of(arguments: Sequence[str]) -> int:
     """Run a command and return the exit status."""
     try:
         status = cli.main(args=list(arguments), prog_name="layoutgen", standalone_mode=False)
@@ -223,12 +223,16 @@ def _wrong(path: Path, found: str, allowed: str) -> WrongInputError:
 def _summary(result: Result) -> str:
     """Return one line: the board and how many findings there are."""
     placement, artwork = result.placement, result.artwork
-    counts = ", ".join(f"{result.count(kind)} {kind}s" for kind in ("error", "warning", "note"))
+    counts = ", ".join(_many(result.count(kind), kind) for kind in ("error", "warning", "note"))
     return (
-        f"{placement.width / 1e6:.1f} x {placement.height / 1e6:.1f} mm, {len(placement.lines)} lines, "
-        f"{len(placement.parts)} parts, {len(artwork.vias)} vias; {counts}; "
+        f"{placement.width / 1e6:g} x {placement.height / 1e6:g} mm, {_many(len(placement.lines), 'line')}, "
+        f"{_many(len(placement.parts), 'part')}, {_many(len(artwork.vias), 'via')}; {counts}; "
         f"{len(result.checks.not_checked)} not checked"
     )
+
+
+def _many(count: int, noun: str) -> str:
+    return f"{count} {noun}" if count == 1 else f"{count} {noun}s"
 
 
 def _print_findings(findings: Sequence[Finding], notes: bool) -> None:

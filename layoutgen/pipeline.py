@@ -6,15 +6,16 @@ import math
 import time
 from collections.abc import Callable, Iterator, Mapping
 from contextlib import contextmanager
+from dataclasses import replace
 from pathlib import Path
 
 from layoutgen.artwork import Artwork, draw
 from layoutgen.checks import check
 from layoutgen.circuit import Circuit, build_circuit
-from layoutgen.placement import place
+from layoutgen.placement import Placement, place
 from layoutgen.reading import CircuitFile, RuleFile, read_inputs
 from layoutgen.response import Response, respond
-from layoutgen.sizing import SizedCircuit, size_circuit
+from layoutgen.sizing import SizedCircuit, placed_dc, size_circuit
 from layoutgen.writers import Result
 
 __all__ = ["Result", "run", "run_inputs"]
@@ -67,7 +68,7 @@ def _settled(circuit: Circuit, clock: _Clock) -> tuple[Artwork, tuple[Note, ...]
         sized = size_circuit(circuit)
     for _ in range(MAX_ROUNDS):
         with clock("placement"):
-            placement = place(sized)
+            placement = with_placed_bias(place(sized))
         with clock("artwork"):
             artwork = draw(placement)
         with clock("sizing"):
@@ -80,7 +81,14 @@ def _settled(circuit: Circuit, clock: _Clock) -> tuple[Artwork, tuple[Note, ...]
         f"widths had not settled after {MAX_ROUNDS} drawings: with the pour as drawn, {moved[0]} would be "
         f"{moved[1] * 1e6:.1f} um wider or narrower"
     )
-    return artwork, (("sizing.pour", moved[0], text),)
+    return artwork, (("assumption.pour", moved[0], text),)
+
+
+def with_placed_bias(placement: Placement) -> Placement:
+    """Return the placement with the bias point that the lengths as placed give; nothing moves."""
+    lengths = {name: line.centre_line * 1e-9 for name, line in placement.lines.items()}
+    lengths |= {name: pair.centre_line * 1e-9 for name, pair in placement.pairs.items()}
+    return replace(placement, sized=placed_dc(placement.sized, lengths))
 
 
 def measured_gaps(artwork: Artwork) -> dict[str, tuple[float, float]]:

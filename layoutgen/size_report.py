@@ -172,4 +172,4 @@ def _gap(metres: float) -> str | None:
 
 
 def _mm(metres: float) -> str:
-    return fixed(metres * 1e3, 3)
+    return fixed(metres * 1e3, 3) if math.isfinite(metres) else "none"

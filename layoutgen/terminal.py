@@ -46,7 +46,10 @@ _STYLES = {"error": "bold red", "warning": "yellow", "note": "dim"}
 
 def _is_numeric(texts: Sequence[str]) -> bool:
     """Tell whether all texts of a column are numbers or missing ones."""
-    return bool(texts) and all(text == "-" or text.lstrip("-")[:1].isdigit() for text in texts)
+    return bool(texts) and all(text in _NO_NUMBER or text.lstrip("-")[:1].isdigit() for text in texts)
+
+
+_NO_NUMBER = ("-", "none", "free")
 
 
 class Progress:

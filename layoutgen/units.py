@@ -314,8 +314,8 @@ def to_nm(metres: float) -> int:
     Raises:
         ValueError: NaN or infinite.
 
-    >>> to_nm(0.508e-3), to_nm(2.5e-9)
-    (508000, 2)
+    >>> to_nm(0.508e-3), to_nm(-1.4e-9)
+    (508000, -1)
     """
     if not math.isfinite(metres):
         raise ValueError(f"{metres} m is no length")

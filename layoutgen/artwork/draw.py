@@ -18,7 +18,7 @@ from layoutgen.artwork.plane import plane_shapes
 from layoutgen.artwork.pour import ground_pieces, pour_of
 from layoutgen.artwork.records import LAYERS, Artwork, Hole, Shape, Via
 from layoutgen.artwork.stitching import fence, stitch_cutouts, stitch_rest, stitchable, well_held
-from layoutgen.geometry import Point, Ring, grow, offset_ring, pieces, rings_of
+from layoutgen.geometry import Point, Ring, offset_ring, offset_rings
 from layoutgen.origin import Origin
 from layoutgen.placement import Placement
 
@@ -127,8 +127,7 @@ def _ground_shapes(placement: Placement, limits: Limits, vias: Sequence[Via]) ->
 def _pour_shapes(limits: Limits, pour: Sequence[shapely.Polygon]) -> Iterator[Shape]:
     """Yield the artwork of the pour, grown by the undercut."""
     for piece in pour:
-        for grown in pieces(grow(piece, limits.undercut)):
-            outline, holes = rings_of(grown)
+        for outline, holes in offset_rings(piece, limits.undercut):
             yield Shape(
                 layer="copper_top", outline=outline, holes=holes, net=GND, role="pour", origin=Origin("pour")
             )

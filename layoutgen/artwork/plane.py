@@ -10,7 +10,7 @@ import shapely
 from layoutgen.artwork.board import BOARD, GND, board_outline, cutouts_of, plane_area
 from layoutgen.artwork.limits import Limits
 from layoutgen.artwork.records import Shape
-from layoutgen.geometry import Ring, grow, offset_ring, pieces, rings_of
+from layoutgen.geometry import Ring, grow, offset_ring, offset_rings, pieces, rings_of
 from layoutgen.placement import Placement
 
 __all__ = ["plane_shapes"]
@@ -26,8 +26,8 @@ def plane_shapes(placement: Placement, limits: Limits) -> list[Shape]:
     polygons = [ring.polygon() for ring in clear]
     if all(outline.polygon().contains_properly(p) for p in polygons) and _apart(polygons):
         return [_shape(outline, tuple(_clockwise(ring) for ring in clear))]
-    area = grow(plane_area(placement, limits, limits.margin, 900.0), limits.undercut)
-    return [_shape(*rings_of(piece)) for piece in pieces(area)]
+    area = plane_area(placement, limits, limits.margin, 900.0)
+    return [_shape(*rings) for piece in pieces(area) for rings in offset_rings(piece, limits.undercut)]
 
 
 def _clearances(placement: Placement, limits: Limits) -> list[Ring]:

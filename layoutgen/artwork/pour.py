@@ -15,7 +15,18 @@ from shapely.geometry.base import BaseGeometry
 from layoutgen.artwork.board import GND, has_area, plane_area
 from layoutgen.artwork.conductors import Conductor
 from layoutgen.artwork.limits import Limits
-from layoutgen.geometry import Ring, circumscribed, closed, cut, grow, joined, opened, overlap, pieces
+from layoutgen.geometry import (
+    Ring,
+    circumscribed,
+    closed,
+    cut,
+    grow,
+    joined,
+    opened,
+    overlap,
+    pieces,
+    sharpened,
+)
 from layoutgen.origin import Origin
 from layoutgen.placement import Placement
 
@@ -23,7 +34,9 @@ __all__ = ["ground_pieces", "pour_of"]
 
 _CORNER_CHORD_NM = 20_000.0
 _WASH_NM = 20
+_SHORT_NM = 50.0
 _NECK_SHARE = 0.1
+_MOST_STEPS = 4
 
 
 def ground_pieces(placement: Placement) -> list[tuple[str, Ring, Origin]]:
@@ -56,10 +69,10 @@ def pour_of(placement: Placement, limits: Limits, conductors: Sequence[Conductor
     )
     own = _own_ground(placement)
     filled = overlap(closed(joined([allowed, own]), limits.min_gap / 2.0), allowed)
-    spaced = cut(filled, _narrow_gaps(filled, own, limits))
+    spaced = _spaced(filled, own, limits)
     solid = _solid(spaced, own, limits)
     washed = overlap(opened(solid, _WASH_NM), allowed)
-    return [piece for piece in pieces(washed) if piece.area >= limits.island]
+    return [sharpened(piece, _SHORT_NM) for piece in pieces(washed) if piece.area >= limits.island]
 
 
 def _solid(pour: BaseGeometry, own: BaseGeometry, limits: Limits) -> BaseGeometry:
@@ -91,17 +104,17 @@ def _keepout(placement: Placement, limits: Limits, conductors: Sequence[Conducto
     return joined(shapes)
 
 
-def _narrow_gaps(pour: BaseGeometry, own: BaseGeometry, limits: Limits) -> BaseGeometry:
-    """Return what to take off the pour where it ends just short of ground copper of a part.
+def _spaced(pour: BaseGeometry, own: BaseGeometry, limits: Limits) -> BaseGeometry:
+    """Return the pour stepped back where it ends just short of ground copper of a part.
 
-    Such a slot can be neither etched nor, being within a line's distance, filled; the pour steps back.
+    Such a slot can be neither etched nor, being within a line's distance, filled. Stepping back may leave
+    another one, so it is looked for again, a few times.
     """
-    both = joined([pour, own])
-    slots = cut(closed(both, limits.min_gap / 2.0), both)
-    real = [slot for slot in pieces(slots) if slot.distance(pour) == 0.0 and _is_slot(slot, limits)]
-    return joined(grow(slot, limits.min_gap) for slot in real)
-
-
-def _is_slot(slot: shapely.Polygon, limits: Limits) -> bool:
-    """True for a gap between facing edges; False for the fillet of a single corner."""
-    return slot.length > 7.0 * limits.min_gap
+    for _ in range(_MOST_STEPS):
+        both = joined([pour, own])
+        slots = pieces(cut(closed(both, limits.min_gap / 2.0), both))
+        real = [slot for slot in slots if slot.area > _WASH_NM * limits.min_gap]
+        if not real:
+            break
+        pour = cut(pour, joined(grow(slot, limits.min_gap) for slot in real))
+    return pour

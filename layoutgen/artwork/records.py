@@ -108,3 +108,9 @@ class Artwork:
     def on(self, layer: str) -> tuple[Shape, ...]:
         """Return the shapes of one layer, in drawing order."""
         return tuple(shape for shape in self.shapes if shape.layer == layer)
+
+    def _repr_svg_(self) -> str:
+        """Return the picture that a notebook shows; the writer is imported only then."""
+        from layoutgen.writers.svg import artwork_svg
+
+        return artwork_svg(self)

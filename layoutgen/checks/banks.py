@@ -8,7 +8,7 @@ from dataclasses import dataclass
 import shapely
 
 from layoutgen.artwork import Artwork
-from layoutgen.checks.board import CHORD_NM
+from layoutgen.checks.planar import CHORD_NM, Geometry
 from layoutgen.circuit import End, Net
 from layoutgen.geometry import Point
 from layoutgen.placement import PlacedPad, Placement
@@ -33,23 +33,25 @@ class Bank:
 
     net: str
     feed: str
-    end: shapely.Geometry
+    end: Geometry
     members: tuple[Member, ...]
 
 
 def banks(artwork: Artwork) -> Iterator[Bank]:
-    """Yield the banks whose feed is placed, in the circuit's order, parts in the order the feed meets them."""
+    """Yield the banks whose feed is placed, parts in the order the feed meets them."""
     placement = artwork.placement
     circuit = placement.sized.circuit
     for net in circuit.nets.values():
         end = None if net.feed is None else _feed_end(placement, net.feed, net.name)
         if len(net.bank) > 1 and net.feed is not None and end is not None:
-            members = sorted(_members(placement, circuit.file, net, end), key=lambda m: (m.way, m.rank, m.part))
+            members = sorted(
+                _members(placement, circuit.file, net, end), key=lambda m: (m.way, m.rank, m.part)
+            )
             yield Bank(net.name, net.feed.element, end, tuple(members))
 
 
-def _feed_end(placement: Placement, feed: End, net: str) -> shapely.Geometry | None:
-    """Return where a feed ends: across a line's width, a part's pad, or a port; None when it is not placed."""
+def _feed_end(placement: Placement, feed: End, net: str) -> Geometry | None:
+    """Return where a feed ends: across a line's width, a part's pad, or a port; None when not placed."""
     if (line := placement.lines.get(feed.element)) is not None:
         return _across(line.path if feed.index else line.path[::-1], line.width)
     if (pair := placement.pairs.get(feed.element)) is not None:
@@ -69,7 +71,7 @@ def _across(path: tuple[Point, ...], width: float) -> shapely.LineString:
     return shapely.LineString([(bx - nx, by - ny), (bx + nx, by + ny)])
 
 
-def _members(placement: Placement, file: CircuitFile, net: Net, end: shapely.Geometry) -> Iterator[Member]:
+def _members(placement: Placement, file: CircuitFile, net: Net, end: Geometry) -> Iterator[Member]:
     """Yield the parts of a bank with their ways from the feed."""
     strip = next((s for s in placement.strips if s.net == net.name and len(s.path) > 1), None)
     for name in net.bank:

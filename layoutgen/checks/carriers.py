@@ -8,8 +8,9 @@ from dataclasses import dataclass
 import numpy as np
 import shapely
 
-from layoutgen.checks.board import CORNER_LIMITS, TOLERANCE_NM, Board, whole
+from layoutgen.checks.board import Board
 from layoutgen.checks.facing import edges_of, facing
+from layoutgen.checks.planar import CORNER_LIMITS, TOLERANCE_NM, whole
 from layoutgen.geometry import Point
 
 __all__ = ["Carrier", "Neck", "carriers", "necks"]

@@ -10,10 +10,10 @@ import numpy as np
 import numpy.typing as npt
 import shapely
 
-from layoutgen.checks.board import Board, Piece, middle, whole
-from layoutgen.checks.drawn import disc
+from layoutgen.checks.board import Board, Piece
 from layoutgen.checks.drills import touched
 from layoutgen.checks.netgraph import clusters
+from layoutgen.checks.planar import middle, whole
 from layoutgen.geometry import Point
 
 __all__ = ["Connections", "Joint"]
@@ -43,10 +43,11 @@ class Connections:
         self.layer_of += ["drill_plated"] * (len(self.pieces) - len(self.layer_of))
 
     def _barrels(self) -> Iterator[Piece]:
-        """Yield the plated holes as pieces."""
-        for drill in self.board.drills:
+        """Yield the plated holes as pieces; their outlines only serve to name a place."""
+        discs = shapely.buffer(self.board.drill_points, self.board.drill_radii, quad_segs=4)
+        for drill, disc in zip(self.board.drills, discs, strict=True):
             if drill.plated:
-                yield Piece(disc(drill), drill.item, drill.net, drill.node, "barrel")
+                yield Piece(disc, drill.item, drill.net, drill.node, "barrel")
 
     @cached_property
     def touching(self) -> npt.NDArray[np.intp]:
@@ -85,7 +86,9 @@ class Connections:
         for a, b in self.touching.tolist():
             one, other = self.pieces[a], self.pieces[b]
             if one.node is not None and other.node is not None:
-                if one.node != other.node and not (one.item == other.item and one.role == other.role == "line"):
+                if one.node != other.node and not (
+                    one.item == other.item and one.role == other.role == "line"
+                ):
                     yield Joint(one, other, middle(one.polygon, other.polygon), self.layer_of[b])
             else:
                 links.setdefault(a, []).append(b)

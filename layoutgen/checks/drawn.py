@@ -1,4 +1,4 @@
-"""From the artwork to the board the rules look at: finished copper, arcs as fine chords, nets joined by lines."""
+"""From the artwork to the board the rules look at: finished copper, arcs as fine chords."""
 
 from __future__ import annotations
 
@@ -9,20 +9,10 @@ import numpy.typing as npt
 import shapely
 
 from layoutgen.artwork import Artwork, Shape
-from layoutgen.checks.board import (
-    CHORD_NM,
-    CORNER_LIMITS,
-    TOLERANCE_NM,
-    Area,
-    Board,
-    Drill,
-    Layer,
-    Piece,
-    merge,
-    parts,
-)
+from layoutgen.checks.board import Area, Board, Drill, Layer, Piece
 from layoutgen.checks.limits import Limits
 from layoutgen.checks.nodes import GROUND, drawn_conductors, joined_nets, tail_of
+from layoutgen.checks.planar import CHORD_NM, CORNER_LIMITS, TOLERANCE_NM, Geometry, merge, parts, within
 from layoutgen.geometry import Ring
 
 __all__ = ["board_of", "pour_gaps"]
@@ -56,8 +46,10 @@ def board_of(artwork: Artwork) -> Board:
 def pour_gaps(artwork: Artwork) -> Mapping[str, float]:
     """Return the distance [nm] at which the pour was to be drawn from each line, pair and radial stub."""
     sized = artwork.placement.sized
-    records = (*sized.lines.items(), *sized.pairs.items(), *sized.radials.items())
-    return {name: record.pour_gap * 1e9 for name, record in records if np.isfinite(record.pour_gap)}
+    gaps = {line.name: line.pour_gap for line in sized.lines.values()}
+    gaps |= {pair.name: pair.pour_gap for pair in sized.pairs.values()}
+    gaps |= {stub.name: stub.pour_gap for stub in sized.radials.values()}
+    return {name: gap * 1e9 for name, gap in gaps.items() if np.isfinite(gap)}
 
 
 def _drills(artwork: Artwork, nodes: Mapping[str, str]) -> tuple[Drill, ...]:
@@ -113,7 +105,8 @@ def _pieces(
             for part in parts(rest):
                 yield Piece(part, item, held, nodes.get(held), shape.role)
         return
-    yield Piece(polygon, item, shape.net, nodes.get(shape.net or ""), shape.role)
+    for part in parts(polygon):
+        yield Piece(part, item, shape.net, nodes.get(shape.net or ""), shape.role)
 
 
 def _item(shape: Shape, via_names: Mapping[tuple[float, float], str]) -> str:
@@ -125,8 +118,8 @@ def _item(shape: Shape, via_names: Mapping[tuple[float, float], str]) -> str:
     return shape.origin.element
 
 
-def _polygon(shape: Shape) -> shapely.Polygon:
-    """Return a shape as a valid polygon [nm]."""
+def _polygon(shape: Shape) -> Geometry:
+    """Return a shape as a valid polygon [nm], or several where its outline crosses itself."""
     rings = [hole.chords(CHORD_NM) for hole in shape.holes]
     polygon = shapely.Polygon(shape.outline.chords(CHORD_NM), rings)
     return polygon if polygon.is_valid else shapely.make_valid(polygon)
@@ -160,7 +153,7 @@ def _without_buried_lands(shapes: Sequence[Shape], nodes: Mapping[str, str]) -> 
     radius = np.array([circles[p][1][2] for p in point])
     rims = shapely.boundary(polygons)
     shapely.prepare(rims)
-    deep = ~shapely.dwithin(rims[host], points[point], np.maximum(radius - TOLERANCE_NM, 0.0))
+    deep = ~within(rims[host], points[point], np.maximum(radius - TOLERANCE_NM, 0.0))
     buried = {circles[p][0] for p in point[deep]}
     return [shape for k, shape in enumerate(shapes) if k not in buried]
 
@@ -202,13 +195,13 @@ def disc(drill: Drill, grown: float = 0.0) -> shapely.Polygon:
 
 def _profile(shapes: Sequence[Shape]) -> tuple[shapely.Polygon | None, tuple[Area, ...]]:
     """Return the board's outline and its cut-outs."""
-    outlines = [_polygon(shape) for shape in shapes if shape.role == "profile"]
-    cutouts = tuple(Area(_polygon(s), s.origin.element) for s in shapes if s.role == "cutout")
+    outlines = [part for shape in shapes if shape.role == "profile" for part in parts(_polygon(shape))]
+    cutouts = tuple(_areas(shape for shape in shapes if shape.role == "cutout"))
     return (max(outlines, key=lambda polygon: polygon.area) if outlines else None), cutouts
 
 
 def _areas(shapes: Iterable[Shape]) -> Iterator[Area]:
-    """Yield the polygons of mask openings or of the legend."""
+    """Yield the polygons of shapes with the names of their elements."""
     for shape in shapes:
         for part in parts(_polygon(shape)):
             yield Area(part, shape.origin.element)

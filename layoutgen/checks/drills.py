@@ -8,7 +8,8 @@ from typing import NamedTuple
 import numpy as np
 import shapely
 
-from layoutgen.checks.board import Board, Drill, Layer, whole
+from layoutgen.checks.board import Board, Drill, Layer
+from layoutgen.checks.planar import near_points, whole
 from layoutgen.geometry import Point
 
 __all__ = ["NearDrills", "drill_layer", "near_drills", "touched"]
@@ -33,7 +34,7 @@ def near_drills(board: Board, web: float) -> Iterator[NearDrills]:
     if not board.drills:
         return
     reach = board.drill_radii + float(board.drill_radii.max()) + web
-    i, j = board.drill_tree.query(board.drill_points, predicate="dwithin", distance=np.maximum(reach, 0.0))
+    i, j = near_points(board.drill_tree, board.drill_points, np.maximum(reach, 0.0))
     i, j = i[i < j], j[i < j]
     pitch = shapely.distance(board.drill_points[i], board.drill_points[j])
     for k in np.flatnonzero(pitch - board.drill_radii[i] - board.drill_radii[j] < web).tolist():
@@ -53,7 +54,7 @@ def touched(board: Board, layer: Layer) -> dict[int, list[int]]:
     if not plated or not layer.pieces:
         return {k: [] for k in plated}
     points, radii = board.drill_points[plated], board.drill_radii[plated]
-    spots, pieces = layer.tree.query(points, predicate="dwithin", distance=radii)
+    spots, pieces = near_points(layer.tree, points, radii)
     found: dict[int, list[int]] = {k: [] for k in plated}
     for spot, piece in sorted(zip(spots.tolist(), pieces.tolist(), strict=True)):
         found[plated[spot]].append(piece)

@@ -19,7 +19,7 @@ __all__ = ["Edges", "Places", "edges_of", "facing"]
 
 Floats = npt.NDArray[np.float64]
 Ints = npt.NDArray[np.intp]
-Polygons = npt.NDArray[np.object_]
+Geometries = npt.NDArray[np.object_]
 
 _CHUNK = 20_000
 """Edges asked for at once: bounds the memory of the pair lists."""
@@ -39,7 +39,7 @@ class Edges:
     polygon: Ints
     along: Floats
     around: Floats
-    polygons: Polygons
+    polygons: Geometries
 
     @cached_property
     def length(self) -> Floats:
@@ -52,9 +52,14 @@ class Edges:
         return np.asarray((self.end - self.start) / self.length[:, None])
 
     @cached_property
+    def lines(self) -> Geometries:
+        """The edges as line strings."""
+        return np.asarray(shapely.linestrings(np.stack((self.start, self.end), axis=1)), dtype=object)
+
+    @cached_property
     def tree(self) -> shapely.STRtree:
         """Tree over the edges."""
-        return shapely.STRtree(shapely.linestrings(np.stack((self.start, self.end), axis=1)))
+        return shapely.STRtree(self.lines)
 
 
 @dataclass(frozen=True, eq=False)
@@ -72,7 +77,7 @@ class Places:
         return Places(self.first[mask], self.second[mask], self.distance[mask], self.i[mask], self.j[mask])
 
 
-def edges_of(polygons: Polygons) -> Edges:
+def edges_of(polygons: Geometries) -> Edges:
     """Return the edges of shapely polygons [nm], each ring turned so that the copper is on the left."""
     rings, polygon = shapely.get_rings(polygons, return_index=True)
     polygon = np.asarray(polygon, dtype=np.intp)
@@ -156,13 +161,13 @@ def _facing_parts(
         high[:, column] = np.where(slope < -1e-12, np.minimum(high[:, column], crossing), high[:, column])
         behind = (np.abs(slope) <= 1e-12) & (offset <= 0.0)
         high[behind, column] = -1.0
-    return low, high, (low < high).all(axis=1)
+    return low, high, np.asarray((low < high).all(axis=1))
 
 
 def _closest(
     edges: Edges, i: Ints, j: Ints, low: Floats, high: Floats, apart: float
 ) -> tuple[Floats, Floats, npt.NDArray[np.bool_]]:
-    """Return the closest places (along edge i, along edge j) [nm] that are far enough apart on the outline."""
+    """Return the closest places (along i, along j) [nm] that are far enough apart on the outline."""
     ti, tj, offset = edges.direction[i], edges.direction[j], edges.start[j] - edges.start[i]
     u, v = _closest_free(ti, tj, offset, low, high)
     same = edges.ring[i] == edges.ring[j]
@@ -178,10 +183,8 @@ def _closest(
     return u, v, fits
 
 
-def _closest_free(
-    ti: Floats, tj: Floats, offset: Floats, low: Floats, high: Floats
-) -> tuple[Floats, Floats]:
-    """Return the closest places of two edges that do not cross; the middle of the overlap of parallel ones."""
+def _closest_free(ti: Floats, tj: Floats, offset: Floats, low: Floats, high: Floats) -> tuple[Floats, Floats]:
+    """Return the closest places of edges that do not cross; of parallel ones the middle of the overlap."""
     b = np.einsum("nk,nk->n", ti, tj)
     di, dj = np.einsum("nk,nk->n", ti, offset), np.einsum("nk,nk->n", tj, offset)
     ends = [(low[:, 0], np.clip(b * low[:, 0] - dj, low[:, 1], high[:, 1]))]
@@ -214,8 +217,8 @@ def _closest_bound(
     return u, u + bound, lowest <= highest
 
 
-def _connections(places: Places) -> Polygons:
-    """Return the connections as lines, shortened a little at both ends so that they touch no outline there."""
+def _connections(places: Places) -> Geometries:
+    """Return the connections as lines, a little shortened so that they touch no outline at their ends."""
     step = 0.02 * (places.second - places.first)
     ends = np.stack((places.first + step, places.second - step), axis=1)
     return np.asarray(shapely.linestrings(ends), dtype=object)

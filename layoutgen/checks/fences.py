@@ -3,32 +3,34 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
-from dataclasses import dataclass
+from itertools import groupby
 
 import numpy as np
 import numpy.typing as npt
 import shapely
 
 from layoutgen.artwork import Artwork
-from layoutgen.checks.board import CHORD_NM, TOLERANCE_NM, Board, Piece, parts
+from layoutgen.checks.board import Board
 from layoutgen.checks.drawn import pour_gaps
-from layoutgen.checks.facing import edges_of
+from layoutgen.checks.facing import Edges, edges_of
 from layoutgen.checks.nodes import GROUND
+from layoutgen.checks.planar import CHORD_NM, TOLERANCE_NM, Geometry, array_of, parts
+from layoutgen.geometry import Point
 
-__all__ = ["PART_CLEARANCE_NM", "Stretch", "fenced", "line_pieces", "part_outlines", "stretches"]
+__all__ = [
+    "PART_CLEARANCE_NM",
+    "fenced",
+    "line_pieces",
+    "nearest_line",
+    "part_outlines",
+    "pour_rim",
+    "stretches",
+]
 
 PART_CLEARANCE_NM = 300_000.0
 """No fence is asked for nearer than this to a part's outline [nm]."""
 
 _LINE_ROLES = ("line", "pair", "radial")
-
-
-@dataclass(frozen=True, slots=True, eq=False)
-class Stretch:
-    """A stretch of pour edge that faces a line: its way as a line string [nm], pour on its left."""
-
-    item: str
-    way: shapely.LineString
 
 
 def fenced(board: Board) -> bool:
@@ -47,42 +49,49 @@ def line_pieces(board: Board) -> Mapping[str, list[shapely.Polygon]]:
     return found
 
 
-def part_outlines(artwork: Artwork, grown: float) -> shapely.Geometry:
+def part_outlines(artwork: Artwork, grown: float) -> Geometry:
     """Return the union of all part outlines, grown by a length [nm]."""
     outlines = [part.outline.polygon(CHORD_NM) for part in artwork.placement.parts.values()]
     return shapely.union_all([o.buffer(grown, join_style="mitre") for o in outlines])
 
 
-def stretches(board: Board) -> list[Stretch]:
-    """Return the stretches of pour edge that face a line within two of its gaps, away from parts."""
+def stretches(board: Board) -> list[shapely.LineString]:
+    """Return the stretches of pour edge [nm] that face a line within two of its gaps, away from parts.
+
+    Stretches that face one line after the other are one.
+    """
     if board.artwork is None:
         return []
-    pours = _joined([piece for piece in board.top.pieces if piece.role == "pour"])
-    if not len(pours):
+    pours = parts(shapely.union_all([piece.polygon for piece in board.top.pieces if piece.role == "pour"]))
+    if not pours:
         return []
+    edges = edges_of(array_of(pours))
     gaps = pour_gaps(board.artwork)
     away = part_outlines(board.artwork, PART_CLEARANCE_NM)
-    found: list[Stretch] = []
+    spans: list[tuple[int, float, float]] = []
     for name, polygons in line_pieces(board).items():
         if name in gaps:
-            line = shapely.union_all(polygons)
-            found.extend(Stretch(name, way) for way in _ways(pours, line, 2.0 * gaps[name], away))
-    return found
+            spans.extend(_spans(edges, shapely.union_all(polygons), 2.0 * gaps[name], away))
+    return [_way(edges, ring, start, end) for ring, start, end in _joined(edges, spans)]
 
 
-def _joined(pieces: list[Piece]) -> npt.NDArray[np.object_]:
-    """Return the union of pieces as an array of polygons."""
-    return np.array(parts(shapely.union_all([piece.polygon for piece in pieces])), dtype=object)
+def nearest_line(board: Board, at: Point) -> str:
+    """Return the line, pair or radial stub nearest to a point [nm]."""
+    spot = shapely.Point(at)
+    lines = line_pieces(board)
+    return min(lines, key=lambda name: min(polygon.distance(spot) for polygon in lines[name]), default="")
 
 
-def _ways(
-    pours: npt.NDArray[np.object_], line: shapely.Geometry, reach: float, away: shapely.Geometry
-) -> Iterator[shapely.LineString]:
-    """Yield the stretches of pour outline that face a line within reach [nm]."""
-    edges = edges_of(pours)
-    segments = np.asarray(
-        shapely.linestrings(np.stack((edges.start, edges.end), axis=1)), dtype=object
-    )
+def pour_rim(board: Board) -> Geometry:
+    """Return the outlines of the pour as lines, prepared for many questions; empty without pour."""
+    rim = shapely.boundary(shapely.union_all([p.polygon for p in board.top.pieces if p.role == "pour"]))
+    shapely.prepare(rim)
+    return rim
+
+
+def _spans(edges: Edges, line: Geometry, reach: float, away: Geometry) -> Iterator[tuple[int, float, float]]:
+    """Yield the spans of pour outline that face a line within reach: ring, start, end along it [nm]."""
+    segments = edges.lines
     zone = shapely.buffer(line, reach + TOLERANCE_NM, quad_segs=32)
     shapely.prepare(zone)
     near = np.flatnonzero(shapely.intersects(zone, segments))
@@ -91,12 +100,47 @@ def _ways(
     real = shapely.length(pieces) > 0.0
     pieces, index = pieces[real], near[index[real]]
     facing = _faces(pieces, edges.direction[index], line)
-    joined = shapely.line_merge(shapely.multilinestrings(list(pieces[facing])), directed=True)
-    yield from (part for part in shapely.get_parts(joined) if part.length > 0.0)
+    for piece, edge in zip(pieces[facing], index[facing].tolist(), strict=True):
+        way = (shapely.get_coordinates(piece) - edges.start[edge]) @ edges.direction[edge] + edges.along[edge]
+        yield int(edges.ring[edge]), float(way.min()), float(way.max())
+
+
+def _joined(edges: Edges, spans: list[tuple[int, float, float]]) -> list[tuple[int, float, float]]:
+    """Return spans that touch or overlap as one, also across the start of their ring.
+
+    A span across the start ends beyond the ring's length.
+    """
+    joined: list[tuple[int, float, float]] = []
+    for ring, start, end in sorted(spans):
+        if joined and joined[-1][0] == ring and start <= joined[-1][2] + TOLERANCE_NM:
+            joined[-1] = (ring, joined[-1][1], max(joined[-1][2], end))
+        else:
+            joined.append((ring, start, end))
+    around = {int(ring): float(length) for ring, length in zip(edges.ring, edges.around, strict=True)}
+    out: list[tuple[int, float, float]] = []
+    for _, group in groupby(joined, key=lambda span: span[0]):
+        row = list(group)
+        length = around[row[0][0]]
+        if len(row) > 1 and row[0][1] <= TOLERANCE_NM and row[-1][2] >= length - TOLERANCE_NM:
+            first = row.pop(0)
+            row[-1] = (first[0], row[-1][1], length + first[2])
+        out.extend(row)
+    return out
+
+
+def _way(edges: Edges, ring: int, start: float, end: float) -> shapely.LineString:
+    """Return a span of a ring as a line string [nm]; the end may lie beyond the ring's length."""
+    own = np.flatnonzero(edges.ring == ring)
+    along = np.concatenate((edges.along[own], edges.along[own] + edges.around[own]))
+    points = np.concatenate((edges.start[own], edges.start[own]))
+    along, points = np.append(along, 2.0 * edges.around[own[0]]), np.append(points, points[:1], axis=0)
+    inside = (along > start + 1e-6) & (along < end - 1e-6)
+    ends = np.array([[np.interp(t, along, points[:, k]) for k in (0, 1)] for t in (start, end)])
+    return shapely.LineString(np.concatenate((ends[:1], points[inside], ends[1:])))
 
 
 def _faces(
-    pieces: npt.NDArray[np.object_], direction: npt.NDArray[np.float64], line: shapely.Geometry
+    pieces: npt.NDArray[np.object_], direction: npt.NDArray[np.float64], line: Geometry
 ) -> npt.NDArray[np.bool_]:
     """Return which pieces of pour outline have the line on their outer side."""
     middles = shapely.line_interpolate_point(pieces, 0.5, normalized=True)

@@ -9,9 +9,10 @@ import numpy as np
 import shapely
 
 from layoutgen.artwork import Artwork
-from layoutgen.checks.board import CHORD_NM, Board, Drill, whole
+from layoutgen.checks.board import Board, Drill
 from layoutgen.checks.netgraph import clusters
 from layoutgen.checks.nodes import GROUND
+from layoutgen.checks.planar import CHORD_NM, Geometry, whole, within
 from layoutgen.geometry import Point
 from layoutgen.placement import PlacedPad, PlacedPart
 
@@ -56,12 +57,12 @@ def _pads_of(board: Board, artwork: Artwork, part: PlacedPart) -> Iterator[Groun
     reach = np.array([(via.land or 0.0) / 2.0 for via in vias])
     nearest = np.argmin([shapely.distance(spots, o) for _, o in solid], axis=0) if solid and vias else []
     for k, (pad, outline) in enumerate(solid):
-        joined = shapely.dwithin(spots, _own_copper(artwork, part.name, pad, outline), reach)
+        joined = within(spots, _own_copper(artwork, part.name, pad, outline), reach)
         own = [via for n, via in enumerate(vias) if joined[n] and nearest[n] == k]
         yield GroundPad(part.name, pad.pin, outline, tuple(own), pad.thermal)
 
 
-def _own_copper(artwork: Artwork, part: str, pad: PlacedPad, outline: shapely.Polygon) -> shapely.Geometry:
+def _own_copper(artwork: Artwork, part: str, pad: PlacedPad, outline: shapely.Polygon) -> Geometry:
     """Return a pad with the ground copper of its part that hangs together with it."""
     pieces = [outline] + [
         shape.outline.polygon(CHORD_NM)
@@ -75,9 +76,9 @@ def _own_copper(artwork: Artwork, part: str, pad: PlacedPad, outline: shapely.Po
 
 
 def via_currents(board: Board) -> list[tuple[Drill, float]]:
-    """Return the vias that carry direct current with its magnitude [A]: an equal share of their pad's or line's.
+    """Return the vias that carry direct current, each with its magnitude [A].
 
-    Shares are by number; crowding in the vias nearest to the source is not looked at.
+    The vias of a pad or line share equally; crowding in those nearest to the source is not looked at.
     """
     if board.artwork is None:
         return []

@@ -8,7 +8,8 @@ from typing import NamedTuple
 import numpy as np
 import shapely
 
-from layoutgen.checks.board import TOLERANCE_NM, Layer, middle
+from layoutgen.checks.board import Layer
+from layoutgen.checks.planar import TOLERANCE_NM, middle
 from layoutgen.geometry import Point
 
 __all__ = ["NearPair", "near_nets"]

@@ -1,23 +1,24 @@
 """Lines that are not meant to couple: straight pieces of lines, and which of them stand in each other's way.
 
-A place is counted for a pair of lines only where it is farther along its line from each node the two share than
-3 h beyond what else reaches out from that node (half the widest line there, a pad). Nodes joined by a
-part, or by a line no longer than 3 h, count as one. Between legs of one line the bends between them take the place
-of the node. Lines of a coupled pair are meant to couple; a radial stub is not judged against lines it meets.
+A place is counted for a pair of lines only where it is farther along its line from each node the two
+share than 3 h beyond what else reaches out from that node (half the widest line there, a pad). Nodes
+joined by a part, or by a line no longer than 3 h, count as one. Between legs of one line the bends
+between them take the place of the node. Lines of a coupled pair are meant to couple; a radial stub is not
+judged against lines it meets.
 """
 
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
-from itertools import combinations
+from itertools import pairwise
 
 import numpy as np
 import shapely
 
 from layoutgen.artwork import Artwork
-from layoutgen.checks.board import CHORD_NM, TOLERANCE_NM
 from layoutgen.checks.nodes import GROUND, OPEN
+from layoutgen.checks.planar import CHORD_NM, TOLERANCE_NM
 from layoutgen.geometry import Point, Ring
 from layoutgen.placement import PlacedPart, Placement
 from layoutgen.reading import Part
@@ -94,9 +95,11 @@ def legs_of(placement: Placement) -> list[Leg]:
     return legs
 
 
-def _legs(line: str, strip: int, path: tuple[Point, ...], width: float, nets: tuple[str, str]) -> Iterator[Leg]:
+def _legs(
+    line: str, strip: int, path: tuple[Point, ...], width: float, nets: tuple[str, str]
+) -> Iterator[Leg]:
     """Yield the legs of one centre-line."""
-    lengths = [float(np.hypot(b[0] - a[0], b[1] - a[1])) for a, b in zip(path, path[1:], strict=False)]
+    lengths = [float(np.hypot(b[0] - a[0], b[1] - a[1])) for a, b in pairwise(path)]
     total, done = sum(lengths), 0.0
     for k, length in enumerate(lengths):
         yield Leg(line, strip, k, path[k], path[k + 1], width, done, total - done - length, nets)
@@ -139,12 +142,14 @@ def _counted(a: Leg, b: Leg, nodes: _Nodes) -> tuple[shapely.Polygon | None, sha
         return _of_one_line(a, b, nodes.reach)
     cuts = []
     for leg, other in ((a, b), (b, a)):
-        cuts.append([nodes.kept_off(leg.nets[end], other) - way for end, way in ((0, leg.before), (1, leg.after))])
+        cuts.append(
+            [nodes.kept_off(leg.nets[end], other) - way for end, way in ((0, leg.before), (1, leg.after))]
+        )
     return a.copper(*cuts[0]), b.copper(*cuts[1])
 
 
 def _of_one_line(a: Leg, b: Leg, reach: float) -> tuple[shapely.Polygon | None, shapely.Polygon | None]:
-    """Return what counts between two legs of one line: nothing within reach [nm] of the bends between them."""
+    """Return what counts between two legs of one line: nothing within reach of the bends between."""
     first, second = (a, b) if a.number < b.number else (b, a)
     if first.strip != second.strip or second.number < first.number + 2:
         return None, None
@@ -226,5 +231,3 @@ def _pad_size(part: PlacedPart) -> float:
 def _outline(ring: Ring) -> shapely.Polygon:
     """Return a ring as a polygon."""
     return ring.polygon(CHORD_NM)
-
-

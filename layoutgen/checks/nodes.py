@@ -8,6 +8,7 @@ from __future__ import annotations
 from collections.abc import Iterator, Mapping
 
 import shapely
+from shapely.ops import substring
 
 from layoutgen.artwork import Artwork
 from layoutgen.geometry import Point
@@ -72,11 +73,13 @@ def tail_of(line: PlacedLine, length: float) -> shapely.Polygon:
     path: list[Point] = list(line.path) if ground_end(line.nets) == 0 else list(line.path[::-1])
     centre = shapely.LineString(path)
     wanted = min(length, 0.9 * centre.length)
-    tail = shapely.get_coordinates(shapely.ops.substring(centre, 0.0, wanted)).tolist()
+    tail = shapely.get_coordinates(substring(centre, 0.0, wanted)).tolist()
     (x0, y0), (x1, y1) = tail[0], tail[1]
     back = 2.0 * line.width / shapely.Point(x0, y0).distance(shapely.Point(x1, y1))
     tail[0] = [x0 - back * (x1 - x0), y0 - back * (y1 - y0)]
-    grown = shapely.LineString(tail).buffer(line.width, cap_style="flat", join_style="mitre", mitre_limit=10.0)
+    grown = shapely.LineString(tail).buffer(
+        line.width, cap_style="flat", join_style="mitre", mitre_limit=10.0
+    )
     return shapely.Polygon(grown.exterior)
 
 

@@ -5,6 +5,7 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from layoutgen.geometry import Point
+from layoutgen.origin import Location
 
 __all__ = ["CheckResult", "Finding", "NotChecked"]
 
@@ -15,6 +16,8 @@ class Finding:
 
     ``severity`` is error, warning or note; ``measured`` and ``limit`` are in ``unit`` (None where a figure
     makes no sense); ``at`` [nm] is the middle of the shortest connection; ``waived`` is the waiver's reason.
+    ``limit_from`` is the line of the rule file that set the limit, ``sources`` are the lines of the circuit
+    file where the items stand (those that are known).
     """
 
     rule: str
@@ -28,6 +31,8 @@ class Finding:
     nets: tuple[str, ...]
     text: str
     waived: str | None = None
+    limit_from: Location | None = None
+    sources: tuple[Location, ...] = ()
 
     @property
     def counts(self) -> bool:

@@ -5,8 +5,9 @@ from __future__ import annotations
 from collections.abc import Iterator
 from typing import NamedTuple
 
-from layoutgen.checks.board import Layer, whole
+from layoutgen.checks.board import Layer
 from layoutgen.checks.facing import Places
+from layoutgen.checks.planar import whole
 from layoutgen.geometry import Point
 
 __all__ = ["Spot", "item_at", "net_at", "spots"]

@@ -14,11 +14,13 @@ from layoutgen.circuit.queries import (
     element_key,
     elements,
     ends_of,
+    is_device_pin,
     is_shunt,
     is_supply,
     lines_at,
     net_of,
     other_end,
+    two_nets,
 )
 from layoutgen.circuit.records import (
     Circuit,
@@ -41,6 +43,7 @@ __all__ = [
     "element_key",
     "elements",
     "ends_of",
+    "is_device_pin",
     "is_shunt",
     "is_supply",
     "lines_at",
@@ -48,5 +51,6 @@ __all__ = [
     "nominal_resistances",
     "other_end",
     "solve_dc",
+    "two_nets",
     "with_dc",
 ]

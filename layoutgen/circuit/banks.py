@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections import deque
 from collections.abc import Mapping
 
-from layoutgen.circuit.queries import GROUND, ends_of, is_shunt, is_supply
+from layoutgen.circuit.queries import GROUND, ends_of, is_device_pin, is_shunt, is_supply
 from layoutgen.circuit.records import End, EndKind
 from layoutgen.reading import CircuitFile
 
@@ -76,7 +76,7 @@ def _steps_to_rf(file: CircuitFile, ends: Mapping[str, tuple[End, ...]], net: st
 
 def _is_goal(file: CircuitFile, end: End) -> bool:
     """Tell whether an end is an RF port or a pin."""
-    return end.pin != "" or (end.kind is EndKind.PORT and file.ports[end.element].kind == "rf")
+    return is_device_pin(file, end) or (end.kind is EndKind.PORT and file.ports[end.element].kind == "rf")
 
 
 def _nets_beyond(file: CircuitFile, element: str, seen: set[str]) -> list[str]:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
+from dataclasses import replace
 
 from layoutgen.circuit.banks import bank_order, feed_end
 from layoutgen.circuit.dc import nominal_resistances, solve_dc
@@ -52,8 +53,6 @@ def build_circuit(file: CircuitFile, rules: RuleFile) -> Circuit:
 
 def with_dc(circuit: Circuit, solution: DcSolution) -> Circuit:
     """Return the circuit with another bias point: its ``dc`` and the voltages of its nets."""
-    from dataclasses import replace
-
     nets = {
         name: replace(net, voltage=solution.voltages.get(name, 0.0)) for name, net in circuit.nets.items()
     }

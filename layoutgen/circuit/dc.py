@@ -12,7 +12,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from layoutgen.circuit.queries import GROUND, OPEN, collect_ends
+from layoutgen.circuit.queries import GROUND, OPEN, collect_ends, two_nets
 from layoutgen.circuit.records import DcSolution
 from layoutgen.circuit.shorts import short_faults
 from layoutgen.errors import WrongInputError
@@ -81,7 +81,7 @@ def solve_dc(file: CircuitFile, resistances: Mapping[str, float]) -> DcSolution:
     return DcSolution(
         voltages={net: levels[net] + above[net] for net in ends},
         currents=currents,
-        notes=(*notes, *groups.notes(tuple(ends)), *lost),
+        notes=(*notes, *_open_parts(file), *groups.notes(tuple(ends)), *lost),
     )
 
 
@@ -89,12 +89,13 @@ def _branches(file: CircuitFile, resistances: Mapping[str, float]) -> list[_Bran
     """Return everything that conducts, in file order."""
     found = [_Branch(key, *nets, resistances[key]) for key, nets in conductor_keys(file).items()]
     for name, part in file.parts.items():
-        if part.nets is None:
+        nets = two_nets(part)
+        if nets is None:
             continue
         if part.kind == "inductor" or (part.kind == "other" and part.series_resistance > 0.0):
-            found.append(_Branch(name, *part.nets, part.series_resistance))
+            found.append(_Branch(name, *nets, part.series_resistance))
         elif part.kind == "resistor" and part.value is not None:
-            found.append(_Branch(name, *part.nets, part.value + part.series_resistance))
+            found.append(_Branch(name, *nets, part.value + part.series_resistance))
     return found
 
 
@@ -115,6 +116,24 @@ def _injections(file: CircuitFile) -> tuple[dict[str, float], list[str]]:
             fed[pins[draw.from_]] = fed.get(pins[draw.from_], 0.0) - draw.current
             fed[pins[draw.to]] = fed.get(pins[draw.to], 0.0) + draw.current
     return fed, notes
+
+
+def _open_parts(file: CircuitFile) -> list[str]:
+    """Return a note for each part that may conduct in truth but is open here; none without a dc port."""
+    if all(port.kind != "dc" for port in file.ports.values()):
+        return []
+    silent = [name for name, part in file.parts.items() if part.kind == "transistor" and not part.dc]
+    other = [
+        name
+        for name, part in file.parts.items()
+        if part.kind == "other" and part.series_resistance == 0.0 and not part.dc
+    ]
+    notes = [f"no dc currents are given, taken as none: part {', '.join(silent)}"] if silent else []
+    if other:
+        notes.append(
+            f"kind other without series_resistance, taken as open for direct current: {', '.join(other)}"
+        )
+    return notes
 
 
 class _Groups:
@@ -311,5 +330,7 @@ def _all_keys(file: CircuitFile) -> list[str]:
     strips = [f"{name}:{i}" for name in file.coupled for i in (0, 1)]
     parts = []
     for name, part in file.parts.items():
-        parts += [f"{name}.{pin}" for pin in part.pins] if part.pins is not None else [name]
+        two_pads = two_nets(part) is not None
+        parts += [name] if two_pads else []
+        parts += [f"{name}.{pin}" for pin in part.pins or ()] if part.dc or not two_pads else []
     return [*file.ports, *file.lines, *strips, *parts]

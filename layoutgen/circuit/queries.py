@@ -14,15 +14,18 @@ __all__ = [
     "element_key",
     "elements",
     "ends_of",
+    "is_device_pin",
     "is_shunt",
     "is_supply",
     "lines_at",
     "net_of",
     "other_end",
+    "two_nets",
 ]
 
 GROUND = "gnd"
 OPEN = "open"
+_TWO_PAD_KINDS = ("resistor", "capacitor", "inductor")
 _TABLES = ("ports", "lines", "coupled", "parts")
 
 
@@ -77,10 +80,10 @@ def net_of(file: CircuitFile, end: End) -> str:
 def other_end(file: CircuitFile, end: End) -> End | None:
     """Return the far end through a line, a strip of a coupled pair or a two-pad part.
 
-    None for ports, for parts with pins, and where the far end is open.
+    None for ports, for parts that are not two-pad parts, and where the far end is open.
     """
     partner = end.index ^ 1
-    if end.kind is EndKind.PORT or (end.kind is EndKind.PAD and end.pin):
+    if end.kind is EndKind.PORT or is_device_pin(file, end):
         return None
     return next((other for other, _ in ends_of(file, end.element) if other.index == partner), None)
 
@@ -90,9 +93,26 @@ def lines_at(net: Net) -> tuple[End, ...]:
     return tuple(end for end in net.ends if end.kind in (EndKind.LINE, EndKind.COUPLED))
 
 
+def two_nets(part: Part) -> tuple[str, str] | None:
+    """Return the nets of a two-pad part, None for others.
+
+    Two-pad are parts written with ``nets``, and resistors, capacitors and inductors written with two pins.
+    """
+    if part.nets is not None:
+        return part.nets
+    pins = tuple((part.pins or {}).values())
+    return (pins[0], pins[1]) if part.kind in _TWO_PAD_KINDS and len(pins) == 2 else None
+
+
+def is_device_pin(file: CircuitFile, end: End) -> bool:
+    """Tell whether an end is a pin of a device: of a part that is no two-pad part."""
+    return end.kind is EndKind.PAD and two_nets(file.parts[end.element]) is None
+
+
 def is_shunt(part: Part) -> bool:
     """Tell whether a two-pad part has one end on ``gnd``."""
-    return part.nets is not None and GROUND in part.nets
+    nets = two_nets(part)
+    return nets is not None and GROUND in nets
 
 
 def is_supply(line: Line) -> bool:

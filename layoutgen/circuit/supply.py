@@ -4,7 +4,16 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 
-from layoutgen.circuit.queries import GROUND, element_key, ends_of, is_shunt, is_supply, net_of, other_end
+from layoutgen.circuit.queries import (
+    GROUND,
+    element_key,
+    ends_of,
+    is_device_pin,
+    is_shunt,
+    is_supply,
+    net_of,
+    other_end,
+)
 from layoutgen.circuit.records import End, EndKind
 from layoutgen.origin import Fault
 from layoutgen.reading import CircuitFile
@@ -15,9 +24,10 @@ __all__ = ["dc_nets", "joins_dc_only", "width_faults"]
 def dc_nets(file: CircuitFile, ends: Mapping[str, tuple[End, ...]]) -> frozenset[str]:
     """Return the nets that hold a dc port, or are reached from one through supply lines or parts.
 
-    A supply line without width always leads on. A supply line with a width, or a part other than a
-    capacitor, leads on only into a net where nothing of RF meets (no RF port, pin or line), or where the
-    net is bypassed to ground and one RF line leaves it. ``gnd`` and nets with an RF port are never DC nets.
+    A supply line without width leads on, but not into an RF junction: a net where two or more lines, pairs
+    or pins of RF meet and nothing bypasses them to ground. A supply line with a width, or a part other than
+    a capacitor, leads on only into a net where nothing of RF meets, or one such end and a bypass. ``gnd``
+    and nets with an RF port are never DC nets.
     """
     reached = {port.net for port in file.ports.values() if port.kind == "dc"}
     reached -= {port.net for port in file.ports.values() if port.kind == "rf"}
@@ -41,12 +51,13 @@ def _leads_on(file: CircuitFile, element: str, ends: tuple[End, ...], net: str) 
     line = file.lines.get(element)
     if line is not None and not is_supply(line):
         return False
-    if line is not None and line.width is None:
-        return True
     part = file.parts.get(element)
-    carries = line is not None or (part is not None and part.kind != "capacitor")
-    rf = _rf_ends(file, ends)
-    return carries and (rf == 0 or (rf == 1 and _is_bypassed(file, ends)))
+    if line is None and (part is None or part.kind == "capacitor"):
+        return False
+    rf, bypassed = _rf_ends(file, ends), _is_bypassed(file, ends)
+    if line is not None and line.width is None:
+        return rf <= 1 or bypassed
+    return rf == 0 or (rf == 1 and bypassed)
 
 
 def _is_rf_port(file: CircuitFile, end: End) -> bool:
@@ -56,7 +67,9 @@ def _is_rf_port(file: CircuitFile, end: End) -> bool:
 
 def _rf_ends(file: CircuitFile, ends: tuple[End, ...]) -> int:
     """Return how many lines that RF is asked of, strips of pairs and pins end among these."""
-    return sum(end.kind is EndKind.COUPLED or end.pin != "" or _is_rf_line(file, end) for end in ends)
+    return sum(
+        end.kind is EndKind.COUPLED or is_device_pin(file, end) or _is_rf_line(file, end) for end in ends
+    )
 
 
 def _is_rf_line(file: CircuitFile, end: End) -> bool:

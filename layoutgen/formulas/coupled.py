@@ -12,7 +12,7 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from layoutgen.formulas.constants import ETA0
-from layoutgen.formulas.microstrip import GHZ_MM, _dispersion_terms, hammerstad_jensen_1980
+from layoutgen.formulas.microstrip import GHZ_MM, dispersion_terms, hammerstad_jensen_1980
 from layoutgen.formulas.numeric import Array, Flags, floats, within
 from layoutgen.formulas.pour import NO_POUR_GAP, pour_capacitance_increment
 
@@ -178,7 +178,7 @@ def kirschning_jansen_1984_permittivity(
     ee_even, ee_odd, u, g, er, fh = floats(ee_even, ee_odd, u, g, er, fh)
     fn = np.clip(fh / GHZ_MM, 0.0, 1e5)
     u, g, er = np.clip(u, 0.01, 100.0), np.clip(g, 1e-3, 100.0), np.clip(er, 1.0, 1e3)
-    p1, p2, p3, p4 = _dispersion_terms(u, er, fn)
+    p1, p2, p3, p4 = dispersion_terms(u, er, fn)
     even = p1 * p2 * ((p3 * p4 + 0.1844 * _even_factor(g, er, fn)) * fn) ** 1.5763
     odd = p1 * p2 * ((p3 * p4 + 0.1844) * fn * _odd_factor(u, g, er, fn)) ** 1.5763
     return np.asarray(er - (er - ee_even) / (1.0 + even)), np.asarray(er - (er - ee_odd) / (1.0 + odd))

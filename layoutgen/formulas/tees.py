@@ -93,16 +93,19 @@ def tee(
     in_range = within(er, 1.0, 13.0) & within(t, 0.0, 0.1)
     for u in (u_a, u_b, u_side):
         in_range = in_range & within(u, 0.5, 5.0)
-    fit = _fit(*(np.clip(u, 0.3, 8.0) for u in (u_a, u_b, u_side)), np.clip(er, 1.0, 20.0), fh, t)
+    widths = [np.clip(u, 0.1, 20.0) for u in (u_a, u_b, u_side)]
+    fit = _fit(widths, np.clip(er, 1.0, 20.0), fh, t)
     old = hammerstad_1981_tee(u_a, u_b, u_side, er, fh, t)
-    values = [np.where(in_range, new, published) for new, published in zip(fit, old[:4], strict=True)]
-    return TeeResult(*values, in_range, np.where(in_range, FIELD_FIT, HAMMERSTAD_1981))
+    d_a, d_b, d_side, susceptance = (
+        np.where(in_range, new, published) for new, published in zip(fit, old[:4], strict=True)
+    )
+    model = np.where(in_range, FIELD_FIT, HAMMERSTAD_1981)
+    return TeeResult(d_a, d_b, d_side, susceptance, in_range, model)
 
 
-def _fit(
-    u_a: Array, u_b: Array, u_side: Array, er: Array, fh: Array, t: Array
-) -> tuple[Array, Array, Array, Array]:
+def _fit(widths: list[Array], er: Array, fh: Array, t: Array) -> tuple[Array, Array, Array, Array]:
     """Return planes [-] and susceptance [S] of the fit."""
+    u_a, u_b, u_side = widths
     d_a, d_side_a = _equal_mains(u_a, u_side)
     d_b, d_side_b = _equal_mains(u_b, u_side)
     c = 0.5 * (_excess_capacitance(u_a, u_side, er) + _excess_capacitance(u_b, u_side, er))

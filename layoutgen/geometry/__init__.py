@@ -12,10 +12,12 @@ from layoutgen.geometry.booleans import (
     grow,
     joined,
     offset_ring,
+    offset_rings,
     opened,
     overlap,
     pieces,
     rings_of,
+    sharpened,
 )
 from layoutgen.geometry.lettering import lettering, lettering_size, printable
 from layoutgen.geometry.ring import CHORD_TOLERANCE_NM, Point, Ring
@@ -37,6 +39,7 @@ __all__ = [
     "mitre_for_turn",
     "mitre_reach",
     "offset_ring",
+    "offset_rings",
     "opened",
     "overlap",
     "path_length",
@@ -45,6 +48,7 @@ __all__ = [
     "rings_of",
     "sector_cover",
     "sector_ring",
+    "sharpened",
     "stroke",
     "turn_degrees",
 ]

@@ -22,20 +22,26 @@ __all__ = [
     "grow",
     "joined",
     "offset_ring",
+    "offset_rings",
     "opened",
     "overlap",
     "pieces",
     "rings_of",
+    "sharpened",
 ]
 
 GRID_NM = 1.0
+_TINY_NM = 10.0
 MITRE_LIMIT = 1.5
 """Longest mitre in offsets [-]: 1.414 is a right angle, so that one stays and sharper ones are cut."""
 
 
 def joined(shapes: Iterable[BaseGeometry]) -> BaseGeometry:
-    """Return the union of polygons [nm]."""
-    return _areal(shapely.union_all(list(shapes), grid_size=GRID_NM))
+    """Return the union of polygons [nm]; a single one comes out on the grid as well."""
+    together = list(shapes)
+    if len(together) == 1:  # shapely hands a single shape through as it is
+        return _areal(shapely.set_precision(together[0], GRID_NM))
+    return _areal(shapely.union_all(together, grid_size=GRID_NM))
 
 
 def cut(shape: BaseGeometry, tool: BaseGeometry) -> BaseGeometry:
@@ -108,6 +114,60 @@ def _ring(line: shapely.LinearRing, ccw: bool) -> Ring | None:
     return Ring(tuple((int(px), int(py)) for px, py in np.roll(points, -first, axis=0)))
 
 
+def sharpened(polygon: shapely.Polygon, shortest: float) -> shapely.Polygon:
+    """Return a polygon without tiny edges at its corners: the edges before and after are made to meet.
+
+    Roundings leave such edges of a few nanometres, which an offset by more than their length would turn over.
+
+    Args:
+        polygon: The polygon, on the grid.
+        shortest: Edges shorter than this [nm] between two inside corners are replaced, which takes area away;
+            others only when shorter than 10 nm.
+    """
+    outline, holes = rings_of(polygon)
+    rings = [_sharp(list(ring.points), shortest) for ring in (outline, *holes)]
+    sharp = shapely.Polygon(rings[0], rings[1:])
+    return sharp if sharp.is_valid else polygon
+
+
+def _sharp(points: list[Point], shortest: float) -> list[Point]:
+    """Return a ring, area on its left, with tiny edges replaced by corners."""
+    i = 0
+    while i < len(points) and len(points) > 3:
+        a, b, c, d = (points[(i + k) % len(points)] for k in range(4))
+        inside = _turn(a, b, c) < 0 and _turn(b, c, d) < 0
+        length = math.dist(b, c)
+        corner = _crossing(a, b, c, d) if length < (shortest if inside else _TINY_NM) else None
+        if corner is None or math.dist(corner, b) > 4.0 * length or _folds(a, b, c, d, corner):
+            i += 1
+            continue
+        points[(i + 1) % len(points)] = corner
+        del points[(i + 2) % len(points)]
+    return points
+
+
+def _folds(a: Point, b: Point, c: Point, d: Point, corner: Point) -> bool:
+    """True when edges to and from a new corner would run against those they replace."""
+    before = (corner[0] - a[0]) * (b[0] - a[0]) + (corner[1] - a[1]) * (b[1] - a[1])
+    after = (d[0] - corner[0]) * (d[0] - c[0]) + (d[1] - corner[1]) * (d[1] - c[1])
+    return before <= 0 or after <= 0
+
+
+def _turn(a: Point, b: Point, c: Point) -> int:
+    """Return the cross product of two edges that follow each other: negative for a right turn."""
+    return (b[0] - a[0]) * (c[1] - b[1]) - (b[1] - a[1]) * (c[0] - b[0])
+
+
+def _crossing(a: Point, b: Point, c: Point, d: Point) -> Point | None:
+    """Return where the lines a-b and c-d cross, None when they are parallel."""
+    ux, uy, vx, vy = b[0] - a[0], b[1] - a[1], d[0] - c[0], d[1] - c[1]
+    across = ux * vy - uy * vx
+    if across == 0:
+        return None
+    t = ((c[0] - a[0]) * vy - (c[1] - a[1]) * vx) / across
+    return round(a[0] + t * ux), round(a[1] + t * uy)
+
+
 def circumscribed(x: float, y: float, radius: float, sides: int = 32) -> shapely.Polygon:
     """Return a regular polygon [nm] that holds the whole circle, with flats to the four sides.
 
@@ -119,7 +179,9 @@ def circumscribed(x: float, y: float, radius: float, sides: int = 32) -> shapely
 
 
 def offset_ring(ring: Ring, distance: int) -> Ring:
-    """Return a counter-clockwise outline moved outwards by a distance [nm], corners kept sharp.
+    """Return an outline moved to its right by a distance [nm], corners kept sharp.
+
+    That is outwards for a counter-clockwise outline, and into the opening for a clockwise hole.
 
     Raises:
         ValueError: An outline with arcs other than a circle.
@@ -133,6 +195,22 @@ def offset_ring(ring: Ring, distance: int) -> Ring:
         raise ValueError("only straight outlines and circles can be offset")
     points = ring.points
     return Ring(tuple(_moved_corner(points, i, distance) for i in range(len(points))))
+
+
+def offset_rings(polygon: shapely.Polygon, distance: int) -> list[tuple[Ring, tuple[Ring, ...]]]:
+    """Return outline and holes of a polygon grown by a distance [nm], every corner moved exactly.
+
+    A polygon whose edges are too short for that is offset by :func:`grow` instead, which rounds a little; it
+    may come out in several pieces (shrunk) or with fewer holes.
+    """
+    outline, holes = rings_of(polygon)
+    if distance == 0:
+        return [(outline, holes)]
+    moved = offset_ring(outline, distance), tuple(offset_ring(hole, distance) for hole in holes)
+    area = shapely.Polygon(moved[0].points, [hole.points for hole in moved[1]])
+    if area.is_valid and (area.area > polygon.area) == (distance > 0):
+        return [moved]
+    return [rings_of(piece) for piece in pieces(grow(polygon, distance))]
 
 
 def _moved_corner(points: Sequence[Point], i: int, distance: int) -> Point:

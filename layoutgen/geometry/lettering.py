@@ -11,7 +11,7 @@ import unicodedata
 import shapely
 from shapely.geometry.base import BaseGeometry
 
-from layoutgen.geometry.booleans import GRID_NM
+from layoutgen.geometry.booleans import joined
 
 __all__ = ["lettering", "lettering_size", "printable"]
 
@@ -122,6 +122,7 @@ _STROKES = {
     "\u00b5": "00 06|03 12 22 33 36|33 42",
 }
 _BLANK_WIDTH = 2
+_ROUNDING_NM = 1.0
 
 
 def printable(text: str) -> str:
@@ -171,8 +172,7 @@ def lettering(
             points = [(along + int(v[0]) * unit, (int(v[1]) - _BASELINE) * unit) for v in stroke.split()]
             lines.append(shapely.LineString([_turned(x, y, px, py, upright) for px, py in points]))
         along += (_letter_width(letter) + _GAP) * unit
-    inked = shapely.buffer(lines, pen / 2.0 + GRID_NM, quad_segs=3)
-    return shapely.union_all(inked, grid_size=GRID_NM)
+    return joined(shapely.buffer(lines, pen / 2.0 + _ROUNDING_NM, quad_segs=3))
 
 
 def _letter_width(letter: str) -> int:

@@ -113,7 +113,7 @@ class LineLengths:
         hub = self.tour.hubs[net]
         if hub.bank:
             return None
-        headings = hub.canonical_headings()
+        headings = tuple(item for item in hub.canonical_headings() if item[0].element not in sized.radials)
         if len(headings) == 2:
             other = next(end for end, _ in headings if (end.element, end.index) != (name, index))
             if other.kind is EndKind.PORT:

@@ -42,7 +42,7 @@ class Obstacle:
     """One box [nm] of an element; a corridor is kept clear but does not count to the board's extent.
 
     ``at_edges`` names the board edges that the box runs up to (a port's copper): there it keeps ``inset``
-    [nm] from the profile instead of its kind's margin.
+    [nm] from the profile instead of its kind's margin. ``net`` is a pad's.
     """
 
     box: Box
@@ -51,6 +51,7 @@ class Obstacle:
     corridor: bool = False
     at_edges: tuple[str, ...] = ()
     inset: int = 0
+    net: str | None = None
 
     def reach(self, margins: Mapping[Kind, int]) -> tuple[int, int, int, int]:
         """Return the box with its margin to the profile [nm] on each side."""

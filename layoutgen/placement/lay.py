@@ -28,12 +28,14 @@ from layoutgen.placement.state import (
 )
 from layoutgen.placement.tour import Hub, Tour
 from layoutgen.placement.words import Route, route_points
+from layoutgen.sizing import SizedRadial
 from layoutgen.units import to_nm
 
 __all__ = ["Layer", "PinnedError", "root_edge"]
 
 _PIN_TOLERANCE = 5  # [nm]: rounding of solved legs
 _RF_BEND_WEIGHT = 10.0  # a fold in a stub must save ten times what one in a feed must
+_SLICES = 8  # boxes that stand for a radial stub's sector
 _BANK_SPACE = 200_000  # between neighbouring bank parts [nm]; common practice, no source
 
 
@@ -203,7 +205,7 @@ class Layer:
                 across.append(self.model.widths[other.element] // 2)
         if not across:
             return 0
-        return max(0, (min(across) if turn is None else max(across)) - OVERLAP)
+        return max(0, max(across) - OVERLAP)
 
     # -- parts ---------------------------------------------------------------------------------------
 
@@ -259,10 +261,23 @@ class Layer:
     def _check_hint(self, growth: Growth, name: str, pose: Pose) -> None:
         layout = self.model.file.layout
         hint = layout.hints.get(name) if layout is not None else None
-        if hint is not None and hint.heading is not None and hint.heading % 360.0 != pose.heading:
+        if hint is None:
+            return
+        if hint.heading is not None and hint.heading % 360.0 != pose.heading:
             raise PinnedError(
                 name, f"it would be heading {pose.heading:g} deg, the hint says {hint.heading:g} deg"
             )
+        if hint.at is not None:
+            self._pin(growth, name, pose, (to_nm(hint.at[0]), to_nm(hint.at[1])))
+
+    def _pin(self, growth: Growth, name: str, pose: Pose, at: Point) -> None:
+        """Settle the board's west and south edges by a pinned part, or check that it lies where it must."""
+        for edge, here, wanted in (("west", pose.x, at[0]), ("south", pose.y, at[1])):
+            if not growth.bounds.known(edge):
+                growth.bounds = growth.bounds.fixed(edge, here - wanted)
+            off = here - wanted - growth.bounds.at(edge)
+            if abs(off) > _PIN_TOLERANCE:
+                raise PinnedError(name, f"it would lie {abs(off) / 1e6:.3f} mm from where the hint puts it")
 
     def _arrive_by_pad(self, growth: Growth, hub: Hub, body: PartBody, land: BodyLand, pose: Pose) -> None:
         """Go on from a pad: a line starts at its inner edge, all else beyond its outer edge."""
@@ -376,7 +391,7 @@ class Layer:
             self._turned[key] = part_obstacles(body, Pose(0, 0, pose.heading))
         x, y = pose.x, pose.y
         return [
-            Obstacle((b[0] + x, b[1] + y, b[2] + x, b[3] + y), item.kind, item.owner)
+            Obstacle((b[0] + x, b[1] + y, b[2] + x, b[3] + y), item.kind, item.owner, net=item.net)
             for item in self._turned[key]
             for b in (item.box,)
         ]
@@ -477,11 +492,9 @@ class Layer:
         pose = pending.at.turned(turn)
         growth.use(self._net(pending.end), pose.heading)
         growth.radials[name] = LaidRadial(name, pose)
-        outer = to_nm(stub.outer_radius)
-        half = outer if stub.sector >= math.pi else round(outer * math.sin(stub.sector / 2)) + 1
-        inner = round(to_nm(stub.inner_radius) * math.cos(min(stub.sector, math.pi) / 2))
-        box = box_to_world(pose, (inner, -half, outer, half))
-        growth.obstacles.append(Obstacle(box, Kind.LINE, name))
+        growth.obstacles += [
+            Obstacle(box_to_world(pose, box), Kind.LINE, name) for box in sector_slices(stub)
+        ]
 
     def pair(self, growth: Growth, end: End, start: Pose, side: int, length: int) -> None:
         """Lay a coupled pair entered at one of its ends, and go on from the others.
@@ -524,7 +537,7 @@ def part_obstacles(body: PartBody, pose: Pose) -> list[Obstacle]:
     for land in body.lands:
         if land.has_copper:
             kind = Kind.GROUND if land.net == GROUND else Kind.PAD
-            out.append(Obstacle(box_to_world(pose, land.box), kind, name))
+            out.append(Obstacle(box_to_world(pose, land.box), kind, name, net=land.net))
     out += [Obstacle(box_to_world(pose, box), Kind.GROUND, name) for box in body.grounds]
     if body.cutout is not None:
         out.append(Obstacle(box_to_world(pose, body.cutout), Kind.CUTOUT, name))
@@ -569,3 +582,17 @@ def _span_along(body: PartBody, land: BodyLand, side: float) -> tuple[int, int]:
 def root_edge(model: Model, port: str) -> str:
     """Return the edge of the port where the walk begins: as written, else west."""
     return model.file.ports[port].edge or "west"
+
+
+def sector_slices(stub: SizedRadial) -> list[Box]:
+    """Return boxes, in the frame of a radial stub's apex, that cover its sector [nm]."""
+    inner, outer = to_nm(stub.inner_radius), to_nm(stub.outer_radius)
+    half = min(stub.sector, math.pi) / 2.0
+    near = round(inner * math.cos(half))
+    out = []
+    for k in range(_SLICES):
+        x0 = near + (outer - near) * k // _SLICES
+        x1 = near + (outer - near) * (k + 1) // _SLICES
+        reach = outer if math.cos(half) < 1e-9 else min(outer, round(x1 * math.tan(half)) + 1)
+        out.append((x0, -reach, x1, reach))
+    return out

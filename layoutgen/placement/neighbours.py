@@ -5,6 +5,7 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass, field
 
+from layoutgen.circuit import EndKind
 from layoutgen.circuit.queries import ends_of
 from layoutgen.geometry import Point
 from layoutgen.placement.budgets import LineLengths
@@ -43,7 +44,7 @@ class Neighbours:
     def _really(self, growth: Growth, a: Obstacle, b: Obstacle) -> bool:
         """Return whether a conflict stands once the allowance for shared nodes is made."""
         nets_a, nets_b = self._shared(a.owner, b.owner)
-        if not nets_a:
+        if not nets_a or self._too_close(a, b):
             return True
         if Kind.BODY in (a.kind, b.kind) and a.kind != b.kind and not self._is_line(growth, a, b):
             return False
@@ -52,6 +53,19 @@ class Neighbours:
         left = self._trimmed(growth, a, nets_a)
         right = self._trimmed(growth, b, nets_b)
         return bool(Obstacles.empty().plus(right).conflicts(left, self.table)) if left and right else False
+
+    def _too_close(self, a: Obstacle, b: Obstacle) -> bool:
+        """True when copper of different nets is nearer than may be etched: no allowance mends that."""
+        if Kind.BODY in (a.kind, b.kind) or self._nets(a) & self._nets(b):
+            return False
+        dx = max(a.box[0] - b.box[2], b.box[0] - a.box[2], 0)
+        dy = max(a.box[1] - b.box[3], b.box[1] - a.box[3], 0)
+        return math.hypot(dx, dy) < self.model.limits.gap
+
+    def _nets(self, item: Obstacle) -> frozenset[str]:
+        if item.kind == Kind.GROUND:
+            return frozenset((GROUND,))
+        return self.model.owner_nets[item.owner] if item.net is None else frozenset((item.net,))
 
     def _is_line(self, growth: Growth, a: Obstacle, b: Obstacle) -> bool:
         return any(self._line(growth, item.owner) is not None for item in (a, b))
@@ -73,12 +87,24 @@ class Neighbours:
         points = line.points
         for index, net in enumerate(self.model.file.lines[line.name].nets):
             if net in nets:
-                cut = self.model.limits.spacing + self.model.reach_at(net)
+                cut = self._allowance(net)
                 points = _cut(points, cut, at_start=index == line.start)
         if len(points) < 2:
             return []
         boxes = leg_boxes(points, self.model.widths[line.name])
         return [Obstacle(box, item.kind, item.owner) for box in boxes]
+
+    def _allowance(self, net: str) -> int:
+        """Return how far from a node [nm] a line is not compared with what it meets there.
+
+        At the end of a coupled pair or a radial stub's apex twice the spacing rule: there copper begins side
+        by side and must part.
+        """
+        ends = self.model.circuit.nets[net].ends
+        radials = self.model.sized.radials
+        spreads = any(end.kind is EndKind.COUPLED or end.element in radials for end in ends)
+        factor = 2 if spreads else 1
+        return factor * self.model.limits.spacing + self.model.reach_at(net)
 
     def _folds_on_itself(self, line: LaidLine) -> bool:
         boxes = leg_boxes(line.points, self.model.widths[line.name])
@@ -123,6 +149,9 @@ class Neighbours:
                 continue
             if name in file.parts or self._is_short(name):
                 out.append((nets[0], nets[1]))
+        for pair in file.coupled.values():
+            a1, a2, b1, b2 = pair.nets
+            out += [(a1, b1), (a2, b2)]
         return out
 
     def _is_short(self, name: str) -> bool:

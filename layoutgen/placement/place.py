@@ -47,9 +47,10 @@ def place(sized: SizedCircuit) -> Placement:
             lengths.by_bends(name)
     failure: Failure | None = None
     for effort in _EFFORTS:
-        best, failure = _attempt(model, tour, lengths, effort)
+        best, found = _attempt(model, tour, lengths, effort)
         if best is not None:
             return finish(model, lengths, best)
+        failure = failure or found  # the plainest drawing's reason is the one to tell
     raise _infeasible(model, tour, lengths, failure)
 
 
@@ -60,7 +61,7 @@ def _attempt(
     best: tuple[float, State] | None = None
     failure: Failure | None = None
     search = Search(model, tour, lengths, effort)
-    for start in first_states(model, tour, search.layer, sized_board=sized_board):
+    for start in first_states(model, tour, search.layer, search.margins, sized_board=sized_board):
         for state in _all_trees(search, start):
             frame = frame_of(state)
             cost = drawing_cost(frame.width * frame.height, state.bends, state.crossings)
@@ -79,7 +80,9 @@ def _all_trees(search: Search, start: State) -> Iterator[State]:
         following: list[State] = []
         for shift in _SHIFTS:
             for state in states[:2]:
-                joined = join_root(search.model, search.tour, search.layer, state, root, shift)
+                joined = join_root(
+                    search.model, search.tour, search.layer, search.margins, state, root, shift
+                )
                 following = search.run(joined)
                 if following:
                     break

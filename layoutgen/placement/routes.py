@@ -140,24 +140,27 @@ class Router:
         return None
 
     def _reach(self, end: End, net: str) -> Reach:
-        """Return what lies at one end of a line along it."""
+        """Return what lies at one end of a line."""
         model, limits = self.model, self.model.limits
         if net == GROUND:
-            return Reach(limits.land // 2, limits.land)
+            return Reach(limits.land // 2, limits.land, limits.land // 2)
         hub = self.tour.hubs[net]
         others = [other for other in model.circuit.nets[net].ends if other != end]
-        pads = [other for other in others if other.kind is EndKind.PAD]
+        pads = [model.bodies[other.element].land_at(other) for other in others if other.kind is EndKind.PAD]
+        if any(other.kind is EndKind.COUPLED for other in others):
+            return Reach(0, 0)
         if hub.bank:
             first = model.bodies[hub.bank[0].element]
             half = max(first.outline[3] - first.outline[1], first.outline[2] - first.outline[0]) // 2
-            return Reach(half, half + limits.height)
+            along = max(pad.along for pad in pads)
+            return Reach(half, half + limits.height, max(along, self._widest(others)) // 2)
         if len(others) == 1 and pads:
-            along = model.bodies[pads[0].element].land_at(pads[0]).along
-            return Reach(along, along + limits.height)
-        halves = [model.widths[other.element] // 2 for other in others if other.element in model.widths]
-        halves += [model.bodies[pad.element].land_at(pad).across // 2 for pad in pads]
-        half = max(halves, default=0)
-        return Reach(half, half + limits.spacing if halves else 0)
+            return Reach(pads[0].along, pads[0].along + limits.height, pads[0].across // 2)
+        half = max([self._widest(others), *(pad.across for pad in pads)]) // 2
+        return Reach(half, half + limits.spacing if half else 0, half)
+
+    def _widest(self, ends: list[End]) -> int:
+        return max((self.model.widths.get(end.element, 0) for end in ends), default=0)
 
     # -- free and targeted ---------------------------------------------------------------------------
 

@@ -11,6 +11,7 @@ import heapq
 from collections.abc import Callable, Iterator, Mapping
 from dataclasses import dataclass, field, replace
 from functools import partial
+from itertools import islice
 
 from layoutgen.circuit import End, EndKind
 from layoutgen.circuit.queries import ends_of, is_shunt
@@ -30,6 +31,9 @@ __all__ = ["Effort", "Failure", "Search", "drawing_cost"]
 _BEND_COST = 0.02  # of the board's area for each bend: a fold must save at least that
 _BEND_AREA = 10e12  # [nm^2] for each bend besides: on a small board, too, a straight stub is worth its room
 _CROSSING_COST = 0.05  # for each element of an input that lies beside an output, or the other way round
+
+
+_LOOK_AHEAD = 60  # ways tried for what leads to a port before a candidate is taken as shut in
 
 
 def drawing_cost(area: float, bends: float, crossings: int) -> float:
@@ -86,12 +90,12 @@ class Search:
         self.router = Router(self.model, self.tour, self.lengths)
         table = clearance_table(self.model.limits, self.model.default_gap)
         self.neighbours = Neighbours(self.model, self.lengths, table)
-        self._margins = edge_margins(
+        self.margins = edge_margins(
             self.model.limits, self.model.default_gap, self.model.ground_ring, tight=self.effort.tight_edges
         )
         self._spine = frozenset(self.model.circuit.spine)
 
-    _margins: Mapping[Kind, int] = field(init=False)
+    margins: Mapping[Kind, int] = field(init=False)
     _spine: frozenset[str] = field(init=False)
 
     def run(self, start: State) -> list[State]:
@@ -153,6 +157,8 @@ class Search:
             (self._cost(base, way.extent, way.bends, base.crossings), order, way, None)
             for order, way in enumerate(self._ways_to_lay(pending, base))
         ]
+        if not heap:
+            self._fail(depth, element.element, "no route of its length leads where it must, or as its hint asks")
         heapq.heapify(heap)
         accepted = 0
         while heap and accepted < self.effort.accepted:
@@ -160,11 +166,11 @@ class Search:
             if growth is None:
                 growth = self._built(base, way, depth)
                 if growth is not None:
-                    extent = growth.extent(self._margins)
+                    extent = growth.extent(self.margins)
                     cost = self._cost(base, extent, growth.bends, self._crossings(growth))
                     heapq.heappush(heap, (cost, order, way, growth))
                 continue
-            grown = growth.applied(growth.extent(self._margins), cost, self._crossings(growth))
+            grown = growth.applied(growth.extent(self.margins), cost, self._crossings(growth))
             conflict = self._conflict(growth) or self._shut_in(grown, growth)
             if conflict is None:
                 accepted += 1
@@ -173,7 +179,7 @@ class Search:
                 self._fail(depth, element.element, conflict)
 
     def _conflict(self, growth: Growth) -> str | None:
-        return self.neighbours.conflict(growth) or self._port_order(growth)
+        return self._port_order(growth) or self.neighbours.conflict(growth)
 
     def _shut_in(self, grown: State, growth: Growth) -> str | None:
         """Return what is wrong when something new that leads to a port would have no way out."""
@@ -184,13 +190,13 @@ class Search:
 
     def _has_way(self, state: State, pending: Pending) -> bool:
         """True when at least one way of laying a pending thing is clear."""
-        for way in self._ways_to_lay(pending, state):
+        for way in islice(self._ways_to_lay(pending, state), _LOOK_AHEAD):
             trial = Growth(state=state, bounds=state.bounds)
             try:
                 way.lay(trial)
             except PinnedError:
                 continue
-            if trial.bounds.holds(trial.extent(self._margins)) and self._conflict(trial) is None:
+            if trial.bounds.holds(trial.extent(self.margins)) and self._conflict(trial) is None:
                 return True
         return False
 
@@ -202,7 +208,7 @@ class Search:
         except PinnedError as error:
             self._fail(depth, error.element, error.what)
             return None
-        extent = growth.extent(self._margins)
+        extent = growth.extent(self.margins)
         if not growth.bounds.holds(extent):
             self._fail(depth, way.element, self._beyond(growth, extent))
             return None

@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Mapping
+from dataclasses import replace
 
 from layoutgen.circuit import End, EndKind
 from layoutgen.circuit.queries import ends_of
@@ -21,12 +22,14 @@ _GUESSES = (5, 8, 11, 14, 18, 22, 27, 33, 40, 50, 65, 80)
 """Distances [mm] of the straight path from the board's side that are tried where holes fix the frame."""
 
 
-def first_states(model: Model, tour: Tour, layer: Layer, *, sized_board: bool = True) -> Iterator[State]:
+def first_states(
+    model: Model, tour: Tour, layer: Layer, margins: Mapping[Kind, int], *, sized_board: bool = True
+) -> Iterator[State]:
     """Yield the states to start from: one, or several guesses where the board's frame must be known."""
     bounds = _given_size(model) if sized_board else Bounds()
     root = tour.roots[0]
     if root.kind is not EndKind.PORT:
-        yield _begin(model, tour, layer, root, Pose(0, 0, 0.0), bounds)
+        yield _begin(model, tour, layer, margins, root, Pose(0, 0, 0.0), bounds)
         return
     port = model.file.ports[root.element]
     edge = root_edge(model, root.element)
@@ -40,6 +43,7 @@ def first_states(model: Model, tour: Tour, layer: Layer, *, sized_board: bool = 
             model,
             tour,
             layer,
+            margins,
             root,
             pose,
             settled_at(settled if _needs_frame(model) else bounds, side, -to_nm(port.at)),
@@ -47,9 +51,9 @@ def first_states(model: Model, tour: Tour, layer: Layer, *, sized_board: bool = 
         return
     if _needs_frame(model):
         for guess in _guesses(bounds, side):
-            yield _begin(model, tour, layer, root, pose, settled_at(settled, side, -guess))
+            yield _begin(model, tour, layer, margins, root, pose, settled_at(settled, side, -guess))
         return
-    yield _begin(model, tour, layer, root, pose, bounds)
+    yield _begin(model, tour, layer, margins, root, pose, bounds)
 
 
 def settled_at(bounds: Bounds, edge: str, value: float) -> Bounds:
@@ -57,13 +61,22 @@ def settled_at(bounds: Bounds, edge: str, value: float) -> Bounds:
     return bounds if bounds.known(edge) else bounds.fixed(edge, value)
 
 
-def join_root(model: Model, tour: Tour, layer: Layer, state: State, root: End, shift: int) -> State:
+def join_root(
+    model: Model,
+    tour: Tour,
+    layer: Layer,
+    margins: Mapping[Kind, int],
+    state: State,
+    root: End,
+    shift: int,
+) -> State:
     """Return a finished state with the root of a further, separate tree put beside it.
 
     Args:
         model: The circuit.
         tour: The walk.
         layer: Lays things.
+        margins: How far inside the profile each kind stays [nm].
         state: All trees so far, complete.
         root: First end of the next tree.
         shift: How far beyond the extent the new straight path runs [nm]; negative: on the other side.
@@ -80,7 +93,7 @@ def join_root(model: Model, tour: Tour, layer: Layer, state: State, root: End, s
         x = round(x1 + shift if shift > 0 else x0 + shift)
     growth = Growth(state=state, bounds=state.bounds)
     _lay_root(model, tour, layer, growth, root, Pose(x, y, heading))
-    return growth.applied(growth.extent(dict.fromkeys(Kind, 0)), state.cost)
+    return growth.applied(growth.extent(margins), state.cost)
 
 
 def _given_size(model: Model) -> Bounds:
@@ -104,7 +117,9 @@ def _guesses(bounds: Bounds, side: str) -> list[int]:
     return sorted({middle, *(g for g in guesses if g < span)}, key=lambda g: abs(g - middle))
 
 
-def _begin(model: Model, tour: Tour, layer: Layer, root: End, pose: Pose, bounds: Bounds) -> State:
+def _begin(
+    model: Model, tour: Tour, layer: Layer, margins: Mapping[Kind, int], root: End, pose: Pose, bounds: Bounds
+) -> State:
     holes = _board_holes(model, bounds)
     empty = State(
         obstacles=Obstacles.empty().plus(holes),
@@ -124,7 +139,8 @@ def _begin(model: Model, tour: Tour, layer: Layer, root: End, pose: Pose, bounds
     )
     growth = Growth(state=empty, bounds=bounds)
     _lay_root(model, tour, layer, growth, root, pose)
-    return growth.applied(_holes_extent(model, empty, holes), 0.0)
+    growth.state = replace(empty, extent=_holes_extent(model, empty, holes))
+    return growth.applied(growth.extent(margins), 0.0)
 
 
 def _board_holes(model: Model, bounds: Bounds) -> list[Obstacle]:

@@ -47,13 +47,15 @@ class Route:
 
 @dataclass(frozen=True, slots=True)
 class Reach:
-    """What lies at a line's end, along the line [nm]: copper that no bend may touch, and how far a leg
+    """What lies at a line's end [nm].
 
-    that runs across must keep away (to that leg's edge).
+    ``copper`` reaches along the line, no bend may touch it; a leg that runs across keeps ``beside`` away (to
+    its edge); ``half`` is how far it reaches sideways, for the leg that comes back beside it.
     """
 
     copper: int
     beside: int
+    half: int = 0
 
 
 @dataclass(frozen=True, slots=True)
@@ -62,7 +64,8 @@ class LegRules:
 
     ``first`` and ``last`` are the least first and last legs when there is a bend (they clear what the line
     leaves and meets), ``clear`` a roomier first leg that lets the pour in between, ``fold`` the least middle
-    leg, centre to centre, so that neighbouring legs keep the spacing rule, ``bend`` the reach of one bend.
+    leg, centre to centre, so that neighbouring legs keep the spacing rule, ``last_fold`` that of the last
+    fold, beside what the line meets, ``bend`` the reach of one bend.
     """
 
     width: int
@@ -70,6 +73,7 @@ class LegRules:
     last: int
     clear: int
     fold: int
+    last_fold: int
     bend: int
 
     @classmethod
@@ -86,9 +90,9 @@ class LegRules:
         """
         start = max(first.copper + reach, first.beside + width // 2)
         finish = max(last.copper + reach, last.beside + width // 2)
-        return cls(
-            width, start, finish, max(clear, start), max(width + spacing, 2 * reach + width // 4), reach
-        )
+        fold = max(width + spacing, 2 * reach + width // 4)
+        last_fold = max(fold, width // 2 + spacing + last.half)
+        return cls(width, start, finish, max(clear, start), fold, last_fold, reach)
 
 
 def headings_of(start: float, word: Word) -> tuple[float, ...]:
@@ -112,7 +116,7 @@ def least_legs(word: Word, rules: LegRules) -> tuple[int, ...]:
     """Return the least length [nm] of each leg of a word."""
     if not word:
         return (1,)
-    return (rules.first, *([rules.fold] * (len(word) - 1)), rules.last)
+    return (rules.first, *_folds(len(word) - 1, rules), rules.last)
 
 
 def fixed_shapes(lengths: Sequence[int], rules: LegRules) -> Iterator[Route]:
@@ -144,31 +148,31 @@ def _one_bend(lengths: Sequence[int], rules: LegRules, turn: float) -> Iterator[
 
 
 def _two_bends(lengths: Sequence[int], rules: LegRules, turn: float) -> Iterator[Route]:
-    total = lengths[2]
+    total, fold = lengths[2], rules.last_fold
     for first in _first_legs(total, rules):
-        for middle in (rules.fold, 2 * rules.fold, total - first - rules.last):
+        for middle in (fold, 2 * fold, total - first - rules.last):
             last = total - first - middle
-            if middle >= rules.fold and last >= rules.last:
+            if middle >= fold and last >= rules.last:
                 yield Route((turn, turn), (first, middle, last))
                 yield Route((turn, -turn), (first, middle, last))
-    half = (total - rules.fold) // 2
+    half = (total - fold) // 2
     if half >= max(rules.first, rules.last):
-        yield Route((turn, turn), (half, rules.fold, total - half - rules.fold))
+        yield Route((turn, turn), (half, fold, total - half - fold))
 
 
 def _three_bends(lengths: Sequence[int], rules: LegRules, turn: float) -> Iterator[Route]:
     """Out, along, back: the first leg leaves, the rest lies as a hairpin beside what it left."""
-    total = lengths[3]
+    total, fold = lengths[3], rules.last_fold
     for first in _first_legs(total, rules)[:2]:
-        rest = total - first - rules.fold
+        rest = total - first - fold
         row = rest // 2
         if row >= max(rules.fold, rules.last):
-            yield Route((turn, -turn, -turn), (first, row, rules.fold, rest - row))
+            yield Route((turn, -turn, -turn), (first, row, fold, rest - row))
         for last in (rules.last, 2 * rules.last):
-            row = total - first - rules.fold - last
-            if row >= rules.fold:
-                yield Route((turn, -turn, turn), (first, row, rules.fold, last))
-                yield Route((turn, turn, -turn), (first, rules.fold, row, last))
+            row = total - first - fold - last
+            if row >= fold:
+                yield Route((turn, -turn, turn), (first, row, fold, last))
+                yield Route((turn, turn, -turn), (first, fold, row, last))
 
 
 def _meanders(lengths: Sequence[int], rules: LegRules, turn: float) -> Iterator[Route]:
@@ -176,37 +180,41 @@ def _meanders(lengths: Sequence[int], rules: LegRules, turn: float) -> Iterator[
     for rows in _MEANDER_ROWS:
         bends = 2 * (rows - 1)
         if 2 < bends < len(lengths):
-            row, spare = divmod(lengths[bends] - (rows - 1) * rules.fold, rows)
+            folds = _folds(rows - 1, rules)
+            row, spare = divmod(lengths[bends] - sum(folds), rows)
             if row >= max(rules.first, rules.last, rules.fold // 2):
-                word = tuple(
-                    t for k in range(rows - 1) for t in ((turn, turn) if k % 2 == 0 else (-turn, -turn))
-                )
-                legs = _interleave([row] * rows, rules.fold)
-                yield Route(word, (legs[0] + spare, *legs[1:]))
-        bends = 2 * rows - 1
-        if 3 < bends < len(lengths):
-            yield from _cross_meander(lengths[bends], rules, turn, rows)
+                legs = _interleave([row + spare, *[row] * (rows - 1)], folds)
+                yield Route(_to_and_fro(turn, rows), legs)
+        if 3 < bends + 1 < len(lengths):
+            yield from _cross_meander(lengths[bends + 1], rules, turn, rows)
 
 
 def _cross_meander(total: int, rules: LegRules, turn: float, rows: int) -> Iterator[Route]:
     """Leave, turn, then rows across the heading; the last row ends the line."""
-    for first in (rules.clear, rules.first):
-        row, spare = divmod(total - first - (rows - 1) * rules.fold, rows)
-        if row < max(rules.fold, rules.last):
-            continue
-        word: list[float] = [turn]
-        for k in range(rows - 1):
-            word += [-turn, -turn] if k % 2 == 0 else [turn, turn]
-        legs = (first, *_interleave([row] * rows, rules.fold))
-        yield Route(tuple(word), (*legs[:-1], legs[-1] + spare))
+    folds = _folds(rows - 1, rules)
+    for first in dict.fromkeys((rules.clear, rules.first)):
+        row, spare = divmod(total - first - sum(folds), rows)
+        if row >= max(rules.fold, rules.last):
+            legs = _interleave([*[row] * (rows - 1), row + spare], folds)
+            yield Route((turn, *_to_and_fro(-turn, rows)), (first, *legs))
 
 
-def _interleave(rows: list[int], fold: int) -> list[int]:
+def _to_and_fro(turn: float, rows: int) -> Word:
+    """Return the turns between rows that run to and fro, the first pair by ``turn``."""
+    return tuple(t for k in range(rows - 1) for t in ((turn, turn) if k % 2 == 0 else (-turn, -turn)))
+
+
+def _folds(count: int, rules: LegRules) -> tuple[int, ...]:
+    """Return the legs between rows, the last one with room for what the line meets."""
+    return tuple(rules.fold if k < count - 1 else rules.last_fold for k in range(count))
+
+
+def _interleave(rows: Sequence[int], folds: Sequence[int]) -> tuple[int, ...]:
     """Return rows with fold legs between them."""
     out = [rows[0]]
-    for row in rows[1:]:
+    for fold, row in zip(folds, rows[1:], strict=True):
         out += [fold, row]
-    return out
+    return tuple(out)
 
 
 def solve_legs(

@@ -27,7 +27,6 @@ from layoutgen.reading.circuit_records import (
     Substrate,
     Tolerance,
 )
-from layoutgen.reading.kinds import Route
 from layoutgen.reading.read import (
     Inputs,
     circuit_from_data,
@@ -38,6 +37,7 @@ from layoutgen.reading.read import (
     rules_from_data,
     shipped_rules,
 )
+from layoutgen.reading.routes import Route
 from layoutgen.reading.rule_names import KEYLESS_RULES, RULE_NAMES
 from layoutgen.reading.rule_records import (
     BankRules,

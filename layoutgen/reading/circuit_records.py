@@ -11,18 +11,8 @@ from typing import Annotated, Any, Literal
 
 from pydantic import Field, model_validator
 
-from layoutgen.reading.kinds import (
-    FreeLength,
-    Name,
-    Number,
-    PartValue,
-    Quantity,
-    RelativePath,
-    Route,
-    RouteKind,
-    Text,
-    WholeNumber,
-)
+from layoutgen.reading.kinds import Name, Number, RelativePath, Text, WholeNumber
+from layoutgen.reading.quantities import FreeLength, PartValue, Quantity
 from layoutgen.reading.records import (
     Angle,
     Coordinate,
@@ -36,6 +26,7 @@ from layoutgen.reading.records import (
     Resistance,
     Size,
 )
+from layoutgen.reading.routes import Route, RouteKind
 from layoutgen.reading.source import SourceMap
 
 __all__ = [
@@ -86,7 +77,7 @@ class Design(Record):
     band: tuple[Frequency, Frequency] = Field(description="lower and upper edge of the band [Hz]")
     sweep: tuple[Frequency, Frequency] | None = Field(
         default=None,
-        description="range of the response; None: the band widened by its own width on each side [Hz]",
+        description="range of the response; left out: the band widened by its own width on each side [Hz]",
     )
     points: Annotated[int, WholeNumber(2, 100_001)] = Field(
         default=401, description="frequencies of the sweep [-]"
@@ -124,10 +115,10 @@ class Board(Record):
         description='name of a rule file shipped with the tool, or a relative path ending in ".toml"'
     )
     size: Size | None = Field(
-        default=None, description="width, height; None: the smallest board in 0.5 mm steps [m]"
+        default=None, description="width, height; left out: the smallest board in 0.5 mm steps [m]"
     )
     margin: LengthOrZero | None = Field(
-        default=None, description="free of copper at the edge; None: copper.min_edge_distance [m]"
+        default=None, description="free of copper at the edge; left out: copper.min_edge_distance [m]"
     )
     corner_radius: LengthOrZero = Field(default=0.0, description="of the outline [m]")
     mask_over_lines: bool = Field(default=False, description="false: RF lines are free of solder mask")
@@ -157,7 +148,7 @@ class Port(Record):
         default=None, description="dc: supply voltage [V]"
     )
     edge: Literal["west", "east", "north", "south"] | None = Field(
-        default=None, description="edge of the board; None: free"
+        default=None, description="edge of the board; left out: free"
     )
     at: Coordinate | None = Field(default=None, description="along the edge from its west or south end [m]")
     to_edge: bool = Field(default=False, description="true: the copper runs to the profile")
@@ -189,10 +180,10 @@ class Line(Record):
     shape: Literal["radial"] | None = Field(default=None, description="radial stub")
     sector: CornerAngle | None = Field(default=None, description="radial: opening angle [rad]")
     radius: Length | None = Field(
-        default=None, description="radial: outer radius; None: short at the design frequency [m]"
+        default=None, description="radial: outer radius; left out: short at the design frequency [m]"
     )
     inner_radius: Length | None = Field(
-        default=None, description="radial: inner radius; None: from the host line's width [m]"
+        default=None, description="radial: inner radius; left out: from the host line's width [m]"
     )
     kind: Literal["microstrip", "grounded_coplanar"] = Field(
         default="microstrip", description="cross-section"
@@ -291,11 +282,11 @@ class Pad(Record):
     """One pad of a footprint, as drawn at heading east."""
 
     at: Point | None = Field(
-        default=None, description="middle, from the footprint's origin; None: flange pin [m]"
+        default=None, description="middle, from the footprint's origin; left out: flange pin [m]"
     )
-    size: Size | None = Field(default=None, description="along x, along y; None: flange pin [m]")
+    size: Size | None = Field(default=None, description="along x, along y; left out: flange pin [m]")
     heading: Direction | None = Field(
-        default=None, description="in which a line leaves; None: ground pads [deg]"
+        default=None, description="in which a line leaves; left out: ground pads [deg]"
     )
     ground: Literal["flange", "vias"] | None = Field(
         default=None,
@@ -356,7 +347,7 @@ class CircuitFile(FileRecord):
     design: Design = Field(description="title and frequencies")
     substrate: Substrate = Field(description="the board's material")
     board: Board = Field(description="rule file and outline")
-    ground: Ground | None = Field(default=None, description="pour and fence; None: neither")
+    ground: Ground | None = Field(default=None, description="pour and fence; left out: neither")
     ports: Mapping[PortName, Port] = Field(default_factory=dict, description="name -> port, in file order")
     lines: Mapping[LineName, Line] = Field(default_factory=dict, description="name -> line, in file order")
     coupled: Mapping[CoupledPairName, CoupledPair] = Field(
@@ -368,7 +359,7 @@ class CircuitFile(FileRecord):
     )
     layout: Layout = Field(default=Layout(), description="hints")
     tolerance: Tolerance | None = Field(
-        default=None, description="plus-minus limits; None: no tolerance analysis"
+        default=None, description="plus-minus limits; left out: no tolerance analysis"
     )
 
     @property

@@ -38,6 +38,7 @@ class Faults:
     complete: bool = True
     items: list[Fault] = field(default_factory=list)
     paths: set[Path] = field(default_factory=set)
+    _above: set[Path] = field(default_factory=set)
 
     def add(self, path: Path, found: str, allowed: str) -> None:
         """Add a fault of a key; a key has one fault, the first found."""
@@ -47,6 +48,7 @@ class Faults:
         key, found = self._within_quota(path, found)
         self.items.append(Fault(location, key, found, allowed))
         self.paths.add(path)
+        self._above.update(path[:length] for length in range(len(path) + 1))
 
     def add_value(self, path: Path, value: object, allowed: str, why: str = "") -> None:
         """Add a fault of a key's value, with an optional reason after its quote."""
@@ -54,7 +56,7 @@ class Faults:
 
     def about(self, path: Path) -> bool:
         """Tell whether a fault was found at a key or below it."""
-        return any(found[: len(path)] == path for found in self.paths)
+        return path in self._above
 
     def line_of(self, path: Path) -> str:
         """Return ``line 12``, or an empty text for circuits built in code."""

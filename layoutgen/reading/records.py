@@ -8,7 +8,7 @@ from typing import Annotated
 from pydantic import BaseModel, ConfigDict, PrivateAttr
 
 from layoutgen.origin import Location
-from layoutgen.reading.kinds import Heading, Quantity
+from layoutgen.reading.quantities import Heading, Quantity
 from layoutgen.reading.source import SourceMap
 from layoutgen.reading.wording import Path
 

@@ -11,7 +11,8 @@ from typing import Annotated, Literal
 
 from pydantic import Field
 
-from layoutgen.reading.kinds import Date, Name, Number, Quantity, Text, WholeNumber
+from layoutgen.reading.kinds import Date, Name, Number, Text, WholeNumber
+from layoutgen.reading.quantities import Quantity
 from layoutgen.reading.records import CornerAngle, FileRecord, Length, LengthOrZero, Record
 
 __all__ = [

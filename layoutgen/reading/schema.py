@@ -49,8 +49,10 @@ def _as_written(node: Any) -> Any:
     choices = [choice for choice in kept.get("anyOf", []) if choice != {"type": "null"}]
     if len(choices) == 1:
         kept = {**choices[0], **{key: value for key, value in kept.items() if key != "anyOf"}}
-    if "default" in kept and kept["default"] is None:
+    if "default" in kept and (kept["default"] is None or isinstance(kept["default"], dict)):
         del kept["default"]
+    if "patternProperties" in kept:
+        kept["additionalProperties"] = False
     if isinstance(kept.get("default"), float) and "x-dimension" in kept:
         kept["default"] = quantity_text(kept["default"], kept["x-dimension"])
     return kept

@@ -122,14 +122,16 @@ def _read_bytes(path: FilePath) -> bytes:
         handle = os.open(path, os.O_RDONLY | getattr(os, "O_NONBLOCK", 0) | getattr(os, "O_BINARY", 0))
     except (OSError, ValueError) as error:
         raise _UnreadableError(0, _why_unreadable(error), _A_FILE) from None
-    with os.fdopen(handle, "rb") as file:
+    try:
         mode = os.fstat(handle).st_mode
         if not stat.S_ISREG(mode):
             raise _UnreadableError(0, "a directory" if stat.S_ISDIR(mode) else "no regular file", _A_FILE)
-        try:
+        with open(handle, "rb", closefd=False) as file:
             content = file.read(MAX_BYTES + 1)
-        except OSError as error:
-            raise _UnreadableError(0, _why_unreadable(error), _A_FILE) from None
+    except OSError as error:
+        raise _UnreadableError(0, _why_unreadable(error), _A_FILE) from None
+    finally:
+        os.close(handle)
     if len(content) > MAX_BYTES:
         raise _UnreadableError(0, "a file larger than 16 MB", _A_FILE)
     return content
@@ -137,7 +139,9 @@ def _read_bytes(path: FilePath) -> bytes:
 
 def _why_unreadable(error: OSError | ValueError) -> str:
     """Return a phrase for a file that cannot be opened."""
-    if isinstance(error, FileNotFoundError):
+    if isinstance(error, IsADirectoryError):
+        return "a directory"
+    if isinstance(error, FileNotFoundError | NotADirectoryError):
         return "no such file"
     if isinstance(error, PermissionError):
         return "a file that may not be read (permission denied)"

@@ -9,6 +9,7 @@ from __future__ import annotations
 import types
 import typing
 from collections.abc import Mapping, Sequence
+from itertools import islice
 from typing import Any, TypeVar
 
 from annotated_types import MaxLen, MinLen
@@ -22,6 +23,9 @@ from layoutgen.reading.wording import Path, a_or_b, describe, nearest
 __all__ = ["frozen", "known_keys", "misspelt", "model_in", "record_or_none", "table_keys", "validate"]
 
 R = TypeVar("R", bound=BaseModel)
+
+_GUESSED = 100
+"""Most unknown keys whose meaning is guessed, of a table or of a file [-]."""
 
 
 def frozen(value: Any) -> Any:
@@ -53,7 +57,10 @@ def validate(model: type[R], data: Mapping[str, object], faults: Faults) -> R | 
         return model.model_validate(frozen(data))
     except ValidationError as error:
         found = [_Finding(model, item) for item in error.errors(include_url=False)]
-    guessed = {(*finding.path[:-1], guess) for finding in found if (guess := finding.guess()) is not None}
+    unknown = [finding for finding in found if finding.kind == "extra_forbidden"]
+    for finding in unknown[:_GUESSED]:
+        finding.guess = nearest(str(finding.path[-1]), known_keys(finding.parent))
+    guessed = {(*finding.path[:-1], finding.guess) for finding in unknown if finding.guess}
     above = {finding.path[:length] for finding in found for length in range(len(finding.path))}
     for finding in found:
         excused = finding.missing and (finding.path in guessed or not faults.complete)
@@ -74,13 +81,8 @@ class _Finding:
         item_missing = self.kind == "missing" and isinstance(path[-1], int)
         self.path: Path = path[:-1] if item_missing else path
         self.missing = self.kind == "missing" and not item_missing
+        self.guess: str | None = None
         self.field, self.parent, self.inside = _field_at(model, self.path)
-
-    def guess(self) -> str | None:
-        """Return the known key that an unknown one most likely means."""
-        if self.kind != "extra_forbidden":
-            return None
-        return nearest(str(self.path[-1]), known_keys(self.parent))
 
     def phrases(self) -> tuple[str, str]:
         """Return what was found and what is allowed."""
@@ -93,8 +95,7 @@ class _Finding:
 
     def _keys_allowed(self) -> str:
         """Return the nearest known key, or all of them."""
-        guess = self.guess()
-        return f'the nearest known key is "{guess}"' if guess else a_or_b(known_keys(self.parent))
+        return f'the nearest known key is "{self.guess}"' if self.guess else a_or_b(known_keys(self.parent))
 
 
 def known_keys(model: type[BaseModel]) -> list[str]:
@@ -113,9 +114,10 @@ def table_keys(model: type[BaseModel]) -> frozenset[str]:
 
 
 def misspelt(table: Mapping[str, object], model: type[BaseModel]) -> set[str]:
-    """Return the known keys that the unknown keys of a table most likely mean."""
+    """Return the known keys that the unknown keys of a table most likely mean; of many, the first ones."""
     known = known_keys(model)
-    return {guess for key in table if key not in known and (guess := nearest(str(key), known))}
+    unknown = islice((str(key) for key in table if key not in known), _GUESSED)
+    return {guess for key in unknown if (guess := nearest(key, known))}
 
 
 def _field_at(model: type[BaseModel], path: Path) -> tuple[FieldInfo | None, type[BaseModel], Path]:

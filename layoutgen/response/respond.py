@@ -19,6 +19,8 @@ from layoutgen.response.wanted import wanted_network
 
 __all__ = ["respond"]
 
+_CHUNK = 2048  # frequencies of one network: bounds the memory of long sweeps
+
 ArrayType = TypeVar("ArrayType", bound=npt.NDArray[np.generic])
 
 
@@ -36,8 +38,9 @@ def respond(artwork: Artwork, folder: Path | None = None) -> Response:
     sweep = plan_sweep(file, Path(file.file).parent if folder is None else folder)
     frequencies = np.concatenate([sweep.frequencies, sweep.spots])
     copper = trace_copper(artwork)
-    wanted = solve(wanted_network(artwork.placement, frequencies, sweep.data))
-    drawn = solve(drawn_network(artwork, frequencies, sweep.data, copper=copper))
+    parts = [frequencies[start : start + _CHUNK] for start in range(0, frequencies.size, _CHUNK)]
+    wanted = np.concatenate([solve(wanted_network(artwork.placement, f, sweep.data)) for f in parts])
+    drawn = np.concatenate([solve(drawn_network(artwork, f, sweep.data, copper=copper)) for f in parts])
     ports = response_ports(file)
     count = sweep.frequencies.size
     return Response(

@@ -14,13 +14,14 @@ of more than ``SPARSE_FROM`` unknowns through a sparse one per frequency.
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 from typing import TYPE_CHECKING, NamedTuple
 
 import numpy as np
 import numpy.typing as npt
 
-from layoutgen.response.chain import Chain, ComplexArray, FloatArray
-from layoutgen.response.network import GROUND, Block, Branch, Ends, Network, Port
+from layoutgen.response.chain import Chain, ComplexArray, FloatArray, series
+from layoutgen.response.network import GROUND, Block, Branch, Ends, Network, Port, between
 from layoutgen.response.reduce import reduce_network
 
 if TYPE_CHECKING:
@@ -55,15 +56,26 @@ def solve(network: Network) -> ComplexArray:
     >>> np.abs(s[0, 0]).round(12).tolist()
     [0.0, 1.0]
     """
-    small = reduce_network(network)
-    stiff = [np.broadcast_to(_is_stiff(branch), (small.size,)) for branch in small.branches]
-    special = np.any(stiff, axis=0) if stiff else np.zeros(small.size, dtype=np.bool_)
+    small = reduce_network(_without_grounded_ports(network))
+    stiff = np.empty((len(small.branches), small.size), dtype=np.bool_)
+    for k, branch in enumerate(small.branches):
+        stiff[k] = _is_stiff(branch)
+    special = np.any(stiff, axis=0)
     voltages = np.empty((small.size, len(small.ports), len(small.ports)), dtype=np.complex128)
     for rows in (np.flatnonzero(~special), np.flatnonzero(special)):
-        if rows.size:
-            kept = tuple(bool(np.any(flags[rows])) for flags in stiff)
-            voltages[rows] = _loaded_impedances(small, rows, kept)
+        if rows.size and small.ports:
+            voltages[rows] = _loaded_impedances(small, rows, np.any(stiff[:, rows], axis=1))
     return _power_waves(voltages, small.ports)
+
+
+def _without_grounded_ports(network: Network) -> Network:
+    """Return the network with ports on ground at nodes of their own, shorted to it."""
+    ports, shorts = list(network.ports), []
+    for k, port in enumerate(ports):
+        if port.node == GROUND:
+            ports[k] = replace(port, node=f"{GROUND} of port {k}")
+            shorts.append(between(ports[k].node, GROUND, series(0.0)))
+    return replace(network, ports=tuple(ports), branches=(*network.branches, *shorts))
 
 
 def _power_waves(loaded: ComplexArray, ports: Sequence[Port]) -> ComplexArray:
@@ -83,8 +95,10 @@ def _is_stiff(branch: Branch) -> npt.NDArray[np.bool_]:
         node == GROUND for node, _ in branch.far
     )
     limit = _STIFF_TO_GROUND if to_ground else _STIFF
-    largest = np.maximum(1.0, np.maximum(np.abs(a), np.abs(d)))
-    return np.asarray(np.abs(b) * limit < _R * largest)
+    largest = np.maximum(1.0, np.abs(a))
+    if d is not a:
+        largest = np.maximum(largest, np.abs(d))
+    return np.asarray(np.abs(b) * (limit / _R) < largest)
 
 
 class _Unknowns(NamedTuple):
@@ -96,7 +110,7 @@ class _Unknowns(NamedTuple):
     total: int
 
 
-def _number(network: Network, stiff: Sequence[bool]) -> _Unknowns:
+def _number(network: Network, stiff: npt.NDArray[np.bool_]) -> _Unknowns:
     """Number the unknowns, in the order in which the network mentions them."""
     node: dict[str, int] = {}
     mentioned = [port.node for port in network.ports]
@@ -118,15 +132,21 @@ def _number(network: Network, stiff: Sequence[bool]) -> _Unknowns:
     return _Unknowns(node, current, wave, count)
 
 
-def _loaded_impedances(network: Network, rows: _Rows, stiff: Sequence[bool]) -> ComplexArray:
+def _loaded_impedances(network: Network, rows: _Rows, stiff: npt.NDArray[np.bool_]) -> ComplexArray:
     """Return port voltages for unit currents into loaded ports, (rows, N, N) [ohm]."""
     unknowns = _number(network, stiff)
-    stamps = _assemble(network, rows, unknowns)
+    own_rows = rows if unknowns.current else slice(None)  # most rows have no extra unknowns: cut them last
+    with np.errstate(divide="ignore", invalid="ignore"):
+        stamps = _assemble(network, own_rows, unknowns)
+    values = np.empty((len(stamps), rows.size if unknowns.current else network.size), dtype=np.complex128)
+    for k, value in enumerate(stamps.values()):
+        values[k] = value
+    if values.shape[1] != rows.size:
+        values = values[:, rows]
+    positions = np.array(list(stamps))
     at = np.array([unknowns.node[port.node] for port in network.ports])
     right = np.zeros((unknowns.total, at.size), dtype=np.complex128)
     right[at, np.arange(at.size)] = _R
-    positions = np.array(list(stamps))
-    values = np.array([np.broadcast_to(value, rows.shape) for value in stamps.values()])
     method = _solve_sparse if unknowns.total > SPARSE_FROM else _solve_dense
     return method(positions, values, right, at)
 
@@ -134,7 +154,7 @@ def _loaded_impedances(network: Network, rows: _Rows, stiff: Sequence[bool]) -> 
 # -- equations, all scaled by 50 ohm
 
 
-def _assemble(network: Network, rows: _Rows, unknowns: _Unknowns) -> _Stamps:
+def _assemble(network: Network, rows: _Rows | slice, unknowns: _Unknowns) -> _Stamps:
     """Return the matrix's non-zero places with their values (rows,)."""
     stamps: _Stamps = {}
     for port in network.ports:
@@ -155,10 +175,10 @@ def _assemble(network: Network, rows: _Rows, unknowns: _Unknowns) -> _Stamps:
     return stamps
 
 
-def _pick(value: npt.ArrayLike, rows: _Rows) -> ComplexArray:
+def _pick(value: npt.ArrayLike, rows: _Rows | slice) -> ComplexArray:
     """Return the values of some frequencies; a single number stands for all."""
     array = np.asarray(value, dtype=np.complex128)
-    return array if array.ndim == 0 or array.shape[0] == rows.size else array[rows]
+    return array[rows] if array.ndim else array
 
 
 def _numbered(ends: Ends, unknowns: _Unknowns) -> list[tuple[int, float]]:
@@ -208,7 +228,7 @@ def _stamp_current(
     _add_weighted(stamps, far, this, -1.0)
 
 
-def _stamp_block(stamps: _Stamps, block: Block, rows: _Rows, unknowns: _Unknowns, first: int) -> None:
+def _stamp_block(stamps: _Stamps, block: Block, rows: _Rows | slice, unknowns: _Unknowns, first: int) -> None:
     """Add data by their incident waves x: V = root(z0) (1 + S) x and I = (1 - S) x / root(z0)."""
     s = _pick(block.s, rows)
     root = np.sqrt(block.z0 / _R)

@@ -93,10 +93,13 @@ class _Tracer:
         self.notes.append((NOTE_RULE, element, text))
 
     def gaps(self, name: str) -> tuple[float, float]:
-        """Return the pour's distances [m] that a line got in the artwork; infinity for none."""
+        """Return the pour's distances [m] that a line got in the artwork, or is to get; infinity for none."""
         copper = self.line_copper.get(name)
-        found = (None, None) if copper is None else (copper.gap_left, copper.gap_right)
-        left, right = (math.inf if gap is None else gap * _NM for gap in found)
+        if copper is None:
+            sized = self.placement.sized
+            intended = sized.lines[name] if name in sized.lines else sized.pairs[name]
+            return intended.pour_gap, intended.pour_gap
+        left, right = (math.inf if gap is None else gap * _NM for gap in (copper.gap_left, copper.gap_right))
         return left, right
 
     # -- lines and pairs

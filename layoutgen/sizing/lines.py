@@ -7,62 +7,17 @@ from collections.abc import Mapping, Sequence
 
 import numpy as np
 
-from layoutgen.circuit import GROUND, Circuit
-from layoutgen.formulas.limits import ipc2221_rise, ipc2221_width
+from layoutgen.circuit import Circuit
+from layoutgen.formulas.limits import ipc2221_rise
 from layoutgen.origin import Fault
-from layoutgen.reading import CircuitFile, Line, RuleFile
-from layoutgen.sizing.pours import bare_widths, rf_pour_gaps, supply_pour_gap
+from layoutgen.reading import CircuitFile, Line
+from layoutgen.sizing.kinds import is_rf, single_lines
+from layoutgen.sizing.pours import Gaps
 from layoutgen.sizing.records import SizedLine
 from layoutgen.sizing.sections import MAX_U, MIN_U, Section, impedance_limits, sections, widths_for
-from layoutgen.sizing.stackup import NM, Stackup, rounded_up
+from layoutgen.sizing.stackup import NM, Stackup
 
-__all__ = ["Gaps", "line_faults", "line_gaps", "rf_widths", "sized_lines", "supply_width"]
-
-SUPPLY_STEP = 10e-6
-"""Widths that follow from a current are rounded up to this step [m]."""
-
-Gaps = Mapping[str, tuple[float, float, float]]
-"""Per line: the pour's distance as drawn, and on the left and right as the sizing assumes it [m]."""
-
-
-def is_rf(circuit: Circuit, line: Line) -> bool:
-    """Tell whether a line joins anything but DC nets (ground beside a DC net counts as one)."""
-    nets = [circuit.nets[name] for name in line.nets if name != GROUND]
-    return not nets or not all(net.is_dc for net in nets)
-
-
-def single_lines(file: CircuitFile) -> dict[str, Line]:
-    """Return the lines that are no radial stubs, in file order."""
-    return {name: line for name, line in file.lines.items() if line.shape is None}
-
-
-def line_gaps(circuit: Circuit, stackup: Stackup, measured: Mapping[str, tuple[float, float]]) -> Gaps:
-    """Return each line's pour distances: as drawn, left, right [m].
-
-    Args:
-        circuit: The circuit.
-        stackup: Substrate and copper.
-        measured: Gaps (left, right) that a drawing has, by line; they replace the assumed ones [m].
-    """
-    lines = single_lines(circuit.file)
-    rf = {name: line for name, line in lines.items() if line.gap is None and is_rf(circuit, line)}
-    asked = [line.impedance for line in rf.values() if line.impedance is not None]
-    bare = iter(bare_widths(stackup, asked))
-    widths = [
-        next(bare) if line.impedance is not None else (line.width or 0.0) / stackup.height
-        for line in rf.values()
-    ]
-    drawn = dict(
-        zip(rf, rf_pour_gaps(circuit, stackup, widths, [line.nets for line in rf.values()]), strict=True)
-    )
-    gaps = {}
-    for name, line in lines.items():
-        gap = line.gap if line.gap is not None else drawn.get(name)
-        if gap is None:
-            gap = supply_pour_gap(circuit, stackup, line.nets)
-        left, right = measured.get(name, (gap, gap))
-        gaps[name] = (gap, stackup.gap_or_none(left), stackup.gap_or_none(right))
-    return gaps
+__all__ = ["line_faults", "rf_widths", "sized_lines"]
 
 
 def rf_widths(file: CircuitFile, stackup: Stackup, gaps: Gaps) -> dict[str, float]:
@@ -137,20 +92,6 @@ def _up(ohm: float) -> str:
 def _down(ohm: float) -> str:
     """Return an impedance to a hundredth of an ohm, rounded down."""
     return f"{math.floor(ohm * 100.0) / 100.0:.2f}"
-
-
-def supply_width(rules: RuleFile, stackup: Stackup, current: float) -> float:
-    """Return the narrowest width [m] that carries a current [A], rounded up to 10 um.
-
-    The largest of ``copper.min_width``, the IPC-2221 width at ``current.temperature_rise`` and the width at
-    ``current.max_density``; rules that are absent ask for nothing.
-    """
-    least, rule = stackup.min_width, rules.current
-    if rule is not None and rule.temperature_rise is not None:
-        least = max(least, float(ipc2221_width(current, stackup.thickness, rule.temperature_rise)))
-    if rule is not None and rule.max_density is not None:
-        least = max(least, abs(current) / (rule.max_density * stackup.thickness))
-    return rounded_up(least, SUPPLY_STEP)
 
 
 def sized_lines(

@@ -5,54 +5,44 @@ from __future__ import annotations
 import math
 from collections.abc import Mapping
 
-from layoutgen.circuit import OPEN, Circuit
+import numpy as np
+
+from layoutgen.circuit import Circuit
 from layoutgen.formulas.coupled import coupled_pair, kirschning_jansen_1984_permittivity
 from layoutgen.formulas.synthesis import coupled_dimensions
 from layoutgen.origin import Fault
 from layoutgen.reading import CircuitFile, CoupledPair
-from layoutgen.sizing.pours import bare_widths, rf_pour_gaps
+from layoutgen.sizing.pours import Gaps
 from layoutgen.sizing.records import SizedPair
 from layoutgen.sizing.stackup import NM, Stackup, to_nm
 
-__all__ = ["pair_fault", "pair_gap", "pair_sizes", "sized_pair"]
+__all__ = ["PairSize", "pair_fault", "pair_sizes", "sized_pair"]
+
+PairSize = tuple[float, float, bool]
+"""Width and gap of a pair [m], and whether they have the impedances asked for."""
+
+_MET = 1e-6
 
 
-def pair_gap(
-    circuit: Circuit, stackup: Stackup, pair: CoupledPair, measured: tuple[float, float] | None
-) -> tuple[float, float, float]:
-    """Return the pour's distance [m] from a pair: as drawn, and left and right as the sizing assumes it.
-
-    It is that of a single line as wide, or of the impedance sqrt(Z_even Z_odd).
-    """
-    if pair.width is not None:
-        u = pair.width / stackup.height
-    else:
-        u = bare_widths(stackup, [math.sqrt((pair.even_impedance or 50.0) * (pair.odd_impedance or 50.0))])[0]
-    nets = [net for net in pair.nets if net != OPEN]
-    gap = rf_pour_gaps(circuit, stackup, [u], [nets])[0]
-    left, right = measured if measured is not None else (gap, gap)
-    return gap, stackup.gap_or_none(left), stackup.gap_or_none(right)
-
-
-def pair_sizes(
-    stackup: Stackup, pair: CoupledPair, gap: tuple[float, float, float]
-) -> tuple[float, float, bool]:
-    """Return a pair's width and gap [m], in whole nanometres, and whether they meet what was asked."""
-    if pair.width is not None and pair.gap is not None:
-        return pair.width, pair.gap, True
+def pair_sizes(file: CircuitFile, stackup: Stackup, gaps: Gaps) -> dict[str, PairSize]:
+    """Return every pair's width and gap [m], in whole nanometres, and whether they meet what was asked."""
     h = stackup.height
-    found = coupled_dimensions(
-        pair.even_impedance or 0.0, pair.odd_impedance or 0.0, stackup.er, stackup.t, gap[1] / h, gap[2] / h
-    )
-    width, between = to_nm(float(found.u) * h), to_nm(float(found.g) * h)
-    if width <= 0.0 or between <= 0.0:
-        return width, between, False
-    got = coupled_pair(width / h, between / h, stackup.er, stackup.t, gap[1] / h, gap[2] / h)
-    met = (
-        abs(float(got.z_even) / (pair.even_impedance or 1.0) - 1.0) < 1e-4
-        and abs(float(got.z_odd) / (pair.odd_impedance or 1.0) - 1.0) < 1e-4
-    )
-    return width, between, met
+    sizes = {
+        name: (pair.width, pair.gap, True)
+        for name, pair in file.coupled.items()
+        if pair.width is not None and pair.gap is not None
+    }
+    asked = [name for name in file.coupled if name not in sizes]
+    if asked:
+        even = np.array([file.coupled[name].even_impedance for name in asked], dtype=np.float64)
+        odd = np.array([file.coupled[name].odd_impedance for name in asked], dtype=np.float64)
+        left, right = (np.array([gaps[name][side] / h for name in asked]) for side in (1, 2))
+        found = coupled_dimensions(even, odd, stackup.er, stackup.t, left, right)
+        got = coupled_pair(found.u, found.g, stackup.er, stackup.t, left, right)
+        met = (np.abs(got.z_even / even - 1.0) < _MET) & (np.abs(got.z_odd / odd - 1.0) < _MET)
+        for i, name in enumerate(asked):
+            sizes[name] = (to_nm(float(found.u[i]) * h), to_nm(float(found.g[i]) * h), bool(met[i]))
+    return sizes
 
 
 def pair_fault(
@@ -60,7 +50,7 @@ def pair_fault(
     stackup: Stackup,
     name: str,
     gap: tuple[float, float, float],
-    sizes: tuple[float, float, bool],
+    sizes: PairSize,
 ) -> Fault | None:
     """Return the fault of a pair that cannot be made, or None."""
     pair = file.coupled[name]
@@ -104,7 +94,7 @@ def sized_pair(
     stackup: Stackup,
     name: str,
     gap: tuple[float, float, float],
-    sizes: tuple[float, float, bool],
+    sizes: PairSize,
 ) -> SizedPair:
     """Return one pair's record."""
     pair = circuit.file.coupled[name]

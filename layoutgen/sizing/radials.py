@@ -8,19 +8,12 @@ from collections.abc import Mapping
 from layoutgen.circuit import Circuit, EndKind
 from layoutgen.formulas.radial import radial_stub_radius
 from layoutgen.origin import Fault
-from layoutgen.reading import CircuitFile
-from layoutgen.sizing.pours import rf_pour_gaps
+from layoutgen.reading import Line
+from layoutgen.sizing.pours import pour_distances_of_widths
 from layoutgen.sizing.records import SizedRadial
 from layoutgen.sizing.stackup import Stackup, rounded_up, to_nm
 
-__all__ = ["radial_fault", "radial_names", "sized_radial"]
-
-DEFAULT_SECTOR = math.radians(60.0)
-
-
-def radial_names(file: CircuitFile) -> tuple[str, ...]:
-    """Return the radial stubs, in file order."""
-    return tuple(name for name, line in file.lines.items() if line.shape == "radial")
+__all__ = ["radial_fault", "sized_radial"]
 
 
 def radial_fault(circuit: Circuit, stackup: Stackup, name: str, widths: Mapping[str, float]) -> Fault | None:
@@ -45,14 +38,19 @@ def host_width(circuit: Circuit, name: str, widths: Mapping[str, float]) -> floa
     return max(hosts, default=None)
 
 
+def _sector(line: Line) -> float:
+    """Return a stub's opening angle [rad], which reading has made sure is given."""
+    assert line.sector is not None
+    return line.sector
+
+
 def _inner_radius(circuit: Circuit, stackup: Stackup, name: str, widths: Mapping[str, float]) -> float:
     """Return the inner radius [m]: given, or half the host's width over cos(sector/2), at least min_width."""
     line = circuit.file.lines[name]
     if line.inner_radius is not None:
         return line.inner_radius
     host = host_width(circuit, name, widths)
-    sector = line.sector or DEFAULT_SECTOR
-    inner = 0.5 * host / math.cos(0.5 * sector) if host is not None else 0.0
+    inner = 0.5 * host / math.cos(0.5 * _sector(line)) if host is not None else 0.0
     return rounded_up(max(inner, stackup.min_width))
 
 
@@ -66,7 +64,7 @@ def sized_radial(circuit: Circuit, stackup: Stackup, name: str, widths: Mapping[
         widths: Widths of all lines and pairs by name [m].
     """
     line = circuit.file.lines[name]
-    sector = line.sector or DEFAULT_SECTOR
+    sector = _sector(line)
     inner = _inner_radius(circuit, stackup, name, widths)
     outer = line.radius
     if outer is None:
@@ -85,6 +83,6 @@ def sized_radial(circuit: Circuit, stackup: Stackup, name: str, widths: Mapping[
         sector=sector,
         inner_radius=inner,
         outer_radius=outer,
-        pour_gap=rf_pour_gaps(circuit, stackup, [u], [line.nets])[0],
+        pour_gap=pour_distances_of_widths(circuit, stackup, [u], [line.nets])[0],
         flags=flags,
     )

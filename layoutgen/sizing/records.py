@@ -33,7 +33,9 @@ class SizedLine:
     by angle, 0.0 stands for free when ``free``); ``beta`` [rad/m] at the design frequency; ``pour_gap``
     [m] is the distance the pour is drawn at, ``gap_left`` and ``gap_right`` [m] what the sizing assumed
     (infinity: none); ``loss`` [dB/m]; ``spread`` [-] the relative impedance difference of the second,
-    independent model; ``rf`` is False for a line that joins DC nets only.
+    independent model; ``rf`` is False for a line that joins DC nets only and of which nothing of RF is asked;
+    ``current`` [A] is a magnitude, ``temperature_rise`` [K] by IPC-2221; ``flags`` say which formulas are
+    used outside their range.
     """
 
     name: str

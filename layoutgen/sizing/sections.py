@@ -133,6 +133,10 @@ def _flags(
         found.append(
             f"bend length (fit to field solutions): W/h {u:.3g} (0.5 to 4), er {stackup.er:g} (to 13)"
         )
+    if not (0.25 <= u <= 2.75 and 2.5 <= stackup.er <= 25.0):
+        found.append(
+            f"bend mitre (Douville-James 1978): W/h {u:.3g} (0.25 to 2.75), er {stackup.er:g} (2.5 to 25)"
+        )
     if stackup.thickness < 3.0 * float(skin_depth(stackup.frequency, stackup.conductivity)):
         found.append("conductor loss: copper thinner than three skin depths")
     cutoff = C0 / (math.sqrt(stackup.er) * (2.0 * u + 0.8) * stackup.height)

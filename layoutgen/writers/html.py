@@ -3,12 +3,16 @@
 from __future__ import annotations
 
 import html
+import re
 from collections.abc import Iterable, Sequence
 
 __all__ = ["Cell", "cell", "escape", "items", "section", "table"]
 
 Cell = str
-"""A table cell's HTML, escaped already; numbers are recognised by their first character."""
+"""A table cell's HTML, escaped already."""
+
+_NUMBERS = re.compile(r"([−-]?\d|–, )[\d.,−– ]*(\s?[A-Za-zΩ/%^]+\d?)?(<br>.*|\s<small>.*)?")
+"""A cell of numbers: digits with a unit at most, then perhaps a line or a word about them."""
 
 
 def escape(text: object) -> str:
@@ -30,26 +34,28 @@ def table(caption: str, heads: Sequence[str], rows: Iterable[Sequence[Cell]], id
         rows: Cells, HTML already.
         ids: Anchor of each row, if any.
     """
-    top = "".join(f'<th scope="col">{escape(head)}</th>' for head in heads)
-    body = "".join(_row(row, ids[k] if ids else "") for k, row in enumerate(rows))
+    cells = list(rows)
+    kinds = [_kind([row[k] for row in cells]) for k in range(len(heads))]
+    top = "".join(
+        f'<th scope="col"{kind}>{escape(head)}</th>' for head, kind in zip(heads, kinds, strict=True)
+    )
+    body = "".join(_row(row, kinds, ids[k] if ids else "") for k, row in enumerate(cells))
     return (
         f'<div class="scroll" tabindex="0" role="region" aria-label="{escape(caption)}"><table>'
         f"<caption>{escape(caption)}</caption><thead><tr>{top}</tr></thead><tbody>{body}</tbody></table></div>"
     )
 
 
-def _row(row: Sequence[Cell], anchor: str) -> str:
-    first, *rest = row
+def _kind(column: Sequence[Cell]) -> str:
+    """Return the class attribute of a column: numbers, with or without gaps, stand to the right."""
+    filled = [content for content in column if content not in ("", "–")]
+    return ' class="n"' if filled and all(map(_NUMBERS.fullmatch, filled)) else ""
+
+
+def _row(row: Sequence[Cell], kinds: Sequence[str], anchor: str) -> str:
     name = f' id="{escape(anchor)}"' if anchor else ""
-    return f'<tr{name}><th scope="row">{first}</th>{"".join(map(_td, rest))}</tr>'
-
-
-def _td(content: Cell) -> str:
-    return f'<td class="n">{content}</td>' if _is_number(content) else f"<td>{content}</td>"
-
-
-def _is_number(content: Cell) -> bool:
-    return content.lstrip("−-+")[:1].isdigit()
+    cells = "".join(f"<td{kind}>{content}</td>" for content, kind in zip(row[1:], kinds[1:], strict=True))
+    return f'<tr{name}><th scope="row"{kinds[0]}>{row[0]}</th>{cells}</tr>'
 
 
 def section(anchor: str, heading: str, *content: str) -> str:

@@ -34,7 +34,8 @@ caption{text-align:left;color:var(--soft);padding:.2rem 0}
 th,td{padding:.25rem .6rem;text-align:left;border-bottom:1px solid var(--rule);vertical-align:top}
 thead th{background:var(--head);white-space:nowrap}
 tbody th{font-weight:600;white-space:nowrap}
-td.n{text-align:right;font-variant-numeric:tabular-nums;white-space:nowrap}
+.n{text-align:right;font-variant-numeric:tabular-nums;white-space:nowrap}
+.beside{display:flex;flex-wrap:wrap;gap:0 2rem;align-items:flex-start}
 td small{color:var(--soft)}
 .error{color:var(--bad);font-weight:600}
 .warning{color:var(--warn);font-weight:600}

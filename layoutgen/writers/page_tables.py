@@ -66,7 +66,7 @@ def _line_row(result: Result, line: PlacedLine) -> list[Cell]:
         impedance += f"<br><small>asked {fixed(asked, 2)}</small>"
     return [
         escape(line.name),
-        escape(" – ".join(line.nets) if len(line.nets) > 1 else f"{line.nets[0]} – open"),
+        _path_of_nets((*line.nets, "open")[:2]),
         impedance,
         _mm(line.width),
         fixed(math.degrees(line.angle), 2) + ("<br><small>free</small>" if sized.free else ""),
@@ -116,13 +116,13 @@ def _entries(entries: Sequence[BudgetEntry]) -> Cell:
     """Return the entries of one cause with their places, zero ones left out."""
     shown = [e for e in entries if round(math.degrees(e.angle), 3)]
     return "<br>".join(
-        f"{_signed(math.degrees(e.angle))}" + (f" <small>{escape(e.at)}</small>" if e.at else "")
+        f"{_signed(math.degrees(e.angle))}" + (f" <small>{escape(e.at)}</small>" if e.cause != "line" else "")
         for e in shown
     )
 
 
-def _signed(value: float) -> str:
-    return fixed(value, 3).replace("-", "−")
+def _signed(value: float, places: int = 3) -> str:
+    return fixed(value, places).replace("-", "−")
 
 
 def strip_table(result: Result) -> str:
@@ -168,7 +168,7 @@ def _value(part: Part) -> Cell:
 
 def _nets(part: Part) -> Cell:
     if part.nets:
-        return escape(" – ".join(part.nets))
+        return _path_of_nets(part.nets)
     return escape(", ".join(f"{pin}: {net}" for pin, net in (part.pins or {}).items()))
 
 
@@ -192,30 +192,38 @@ def port_table(result: Result) -> str:
 
 
 def _port_value(port: Port) -> Cell:
-    if port.kind == "dc":
-        return cell(None if port.voltage is None else quantity_text(port.voltage, "voltage"))
-    return cell(None if port.impedance is None else quantity_text(port.impedance, "impedance"))
+    text = None
+    if port.voltage is not None:
+        text = quantity_text(port.voltage, "voltage").replace("-", "−")
+    elif port.impedance is not None:
+        text = quantity_text(port.impedance, "impedance")
+    return cell(text)
 
 
 def bias_tables(result: Result) -> Iterator[str]:
     """Yield the expected voltages of nets and currents through elements, and what was assumed."""
     dc = result.circuit.dc
-    rows = ((escape(net), fixed(voltage, 4).replace("-", "−")) for net, voltage in dc.voltages.items())
-    yield table("Voltages to expect at the nets", ("Net", "Voltage (V)"), rows)
+    nets = [(escape(net), _signed(voltage, 4)) for net, voltage in dc.voltages.items()]
     flowing = ((name, current) for name, current in dc.currents.items() if abs(current) >= 5e-7)
-    currents = [(escape(name), fixed(current * 1e3, 3).replace("-", "−")) for name, current in flowing]
+    currents = [(escape(name), _signed(current * 1e3, 3)) for name, current in flowing]
+    yield '<div class="beside">'
+    yield table("Voltages to expect at the nets", ("Net", "Voltage (V)"), nets)
     if currents:
         yield table("Currents: first to second net, or into the pin", ("Element", "Current (mA)"), currents)
     else:
         yield "<p>No element carries direct current.</p>"
-    for note in dc.notes:
-        yield f'<p class="soft">{escape(note)}</p>'
+    yield "</div>"
+    yield from (f'<p class="soft">{escape(note)}</p>' for note in dc.notes)
+
+
+def _path_of_nets(nets: Sequence[str]) -> Cell:
+    return escape("\u00a0– ".join(nets))
 
 
 def _gaps(copper: LineCopper | None) -> Cell:
     if copper is None or (copper.gap_left is None and copper.gap_right is None):
         return cell(None)
-    return ", ".join("none" if gap is None else _mm(gap) for gap in (copper.gap_left, copper.gap_right))
+    return ", ".join("–" if gap is None else _mm(gap) for gap in (copper.gap_left, copper.gap_right))
 
 
 def _mm(nm: float) -> str:

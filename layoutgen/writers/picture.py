@@ -122,7 +122,7 @@ def _marks(findings: Sequence[Finding], unit: int) -> Iterator[Area]:
     for number, finding in marked_findings(findings):
         if finding.at is not None:
             yield Area(
-                (diamond(*finding.at, round(0.9 * unit)),), finding.severity, f"{number}: {finding.text}"
+                (diamond(*finding.at, round(0.75 * unit)),), finding.severity, f"{number}: {finding.text}"
             )
 
 
@@ -130,7 +130,7 @@ def _mark_numbers(findings: Sequence[Finding], unit: int) -> Iterator[Text]:
     for number, finding in marked_findings(findings):
         if finding.at is not None:
             x, y = finding.at
-            yield Text(str(number), x, y - round(0.3 * unit), round(0.6 * unit), "paper", "middle")
+            yield Text(str(number), x, y - round(0.25 * unit), round(0.5 * unit), "paper", "middle")
 
 
 def _line_names(artwork: Artwork) -> Iterator[Text]:

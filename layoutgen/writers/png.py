@@ -57,7 +57,7 @@ def _draw_area(renderer: Any, area: Area, to_dots: Any, scale: float) -> None:
 
     style = STYLES[area.style]
     context = renderer.new_gc()
-    context.set_linewidth(max(style.width * scale, 0.6) if style.pen else 0.0)
+    context.set_linewidth(max(style.width * scale, 0.6) if style.pen not in (None, style.fill) else 0.0)
     context.set_foreground(style.pen or style.fill)
     context.set_antialiased(True)
     renderer.draw_path(context, _path(area.rings), to_dots, to_rgb(style.fill) if style.fill else None)

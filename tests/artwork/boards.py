@@ -111,10 +111,7 @@ class BoardBuilder:
     ) -> BoardBuilder:
         """Add a line along a path."""
         points = tuple((nm(x), nm(y)) for x, y in path)
-        bends = tuple(
-            _bend(points, i, mitre, nm(width))
-            for i in range(1, len(points) - 1)
-        )
+        bends = tuple(_bend(points, i, mitre, nm(width)) for i in range(1, len(points) - 1))
         self.lines[name] = PlacedLine(
             name=name,
             nets=nets,
@@ -210,7 +207,9 @@ class BoardBuilder:
         )
         return self
 
-    def port(self, name: str, net: str, x: float, y: float, heading: float, width: float, to_edge: bool = False) -> BoardBuilder:
+    def port(
+        self, name: str, net: str, x: float, y: float, heading: float, width: float, to_edge: bool = False
+    ) -> BoardBuilder:
         """Add a port."""
         edge = {0.0: "west", 90.0: "south", 180.0: "east", 270.0: "north"}[heading]
         self.ports[name] = PlacedPort(
@@ -280,7 +279,13 @@ class BoardBuilder:
         """Add a via that came with a part or line."""
         self.vias.append(
             PlacedVia(
-                x=nm(x), y=nm(y), drill=300_000, land=600_000, net=net, purpose=purpose, origin=Origin(purpose)
+                x=nm(x),
+                y=nm(y),
+                drill=300_000,
+                land=600_000,
+                net=net,
+                purpose=purpose,
+                origin=Origin(purpose),
             )
         )
         return self
@@ -304,9 +309,26 @@ class BoardBuilder:
         """Add the transistor over its cut-out: gate to the west, drain to the east, two screws."""
         turn = _Turn(x, y, 0.0)
         pads = [
-            PlacedPad(pin="gate", net="g", x=nm(x - 3.6), y=nm(y), outline=turn.box(-3.6, 0, 2.4, 2.0), heading=180.0),
-            PlacedPad(pin="drain", net="d", x=nm(x + 3.6), y=nm(y), outline=turn.box(3.6, 0, 2.4, 4.0), heading=0.0),
-            PlacedPad(pin="source", net="gnd", x=nm(x), y=nm(y), outline=turn.box(0, 0, 0, 0), heading=0.0, ground="flange"),
+            PlacedPad(
+                pin="gate",
+                net="g",
+                x=nm(x - 3.6),
+                y=nm(y),
+                outline=turn.box(-3.6, 0, 2.4, 2.0),
+                heading=180.0,
+            ),
+            PlacedPad(
+                pin="drain", net="d", x=nm(x + 3.6), y=nm(y), outline=turn.box(3.6, 0, 2.4, 4.0), heading=0.0
+            ),
+            PlacedPad(
+                pin="source",
+                net="gnd",
+                x=nm(x),
+                y=nm(y),
+                outline=turn.box(0, 0, 0, 0),
+                heading=0.0,
+                ground="flange",
+            ),
         ]
         self.parts[name] = PlacedPart(
             name=name,
@@ -352,7 +374,12 @@ class BoardBuilder:
         """Return a circuit that has the design, substrate, board and ground of this board."""
         data: dict[str, Any] = {
             "format": 1,
-            "design": {"title": self.title, "frequency": "2.245 GHz", "band": ["2.20 GHz", "2.29 GHz"], "revision": "A"},
+            "design": {
+                "title": self.title,
+                "frequency": "2.245 GHz",
+                "band": ["2.20 GHz", "2.29 GHz"],
+                "revision": "A",
+            },
             "substrate": {
                 "relative_permittivity": 3.55,
                 "loss_tangent": 0.0027,
@@ -422,7 +449,12 @@ def feed() -> BoardBuilder:
     board = BoardBuilder(34.0, 26.0, corner_radius=1.0)
     board.line("left", [(0.3, 6.0), (12.0, 6.0)], 1.1, ("a", "t"))
     board.line("right", [(12.0, 6.0), (33.7, 6.0)], 1.1, ("t", "b"))
-    board.line("feed", [(12.0, 6.0), (12.0, 16.0), (16.0, 16.0), (16.0, 11.0), (20.0, 11.0), (20.0, 17.0)], 0.3, ("t", "k"))
+    board.line(
+        "feed",
+        [(12.0, 6.0), (12.0, 16.0), (16.0, 16.0), (16.0, 11.0), (20.0, 11.0), (20.0, 17.0)],
+        0.3,
+        ("t", "k"),
+    )
     board.strip("bank", "k", [(20.0, 17.0), (25.0, 17.0)], 0.95)
     for i, x in enumerate((20.0, 22.0, 24.0)):
         board.chip(f"C{i + 1}", x, 17.0 - 0.775 - 0.3, 270.0, ("k", "gnd")) if i else board.chip(

@@ -19,7 +19,9 @@ def polygon(shape: Shape, undercut: float = 0.0) -> BaseGeometry:
     return drawn.buffer(-undercut, join_style="mitre", mitre_limit=5.0) if undercut else drawn
 
 
-def areas(artwork: Artwork, *roles: str, layer: str = "copper_top", undercut: float = 0.0) -> list[BaseGeometry]:
+def areas(
+    artwork: Artwork, *roles: str, layer: str = "copper_top", undercut: float = 0.0
+) -> list[BaseGeometry]:
     """Return the finished areas of all shapes of some roles on a layer [nm]."""
     return [polygon(s, undercut) for s in artwork.on(layer) if s.role in roles]
 
@@ -35,7 +37,7 @@ def signal(artwork: Artwork, undercut: float = 0.0) -> BaseGeometry:
 
 
 def corners(shape: BaseGeometry, shortest: float) -> Iterator[tuple[float, tuple[float, float]]]:
-    """Yield the angle of the empty notch at each inside corner [deg], edges shorter than a length smoothed."""
+    """Yield the angle of the empty notch at each inside corner [deg], short edges smoothed."""
     for part in shapely.get_parts(shapely.simplify(shape, shortest)):
         oriented = shapely.geometry.polygon.orient(part)
         for ring in (oriented.exterior, *oriented.interiors):

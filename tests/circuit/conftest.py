@@ -36,13 +36,13 @@ def inputs(**tables: Any) -> Inputs:
     return inputs_from_data({**BASE, "footprints": {"fet": FET}, **tables}, name="c.toml")
 
 
-@pytest.fixture
+@pytest.fixture(scope="session")
 def read() -> Callable[..., CircuitFile]:
     """Reads a circuit from its tables."""
     return lambda **tables: inputs(**tables).circuit
 
 
-@pytest.fixture
+@pytest.fixture(scope="session")
 def build() -> Callable[..., Circuit]:
     """Builds a circuit from its tables."""
 

@@ -131,6 +131,25 @@ def test_capacitors_and_rf_ports_are_open_and_nets_behind_them_noted(read):
     assert dc.notes == ("no DC path to gnd or to a dc port, taken as 0 V: net a",)
 
 
+def test_parts_whose_current_is_not_told_are_named(read):
+    """Would catch a transistor without dc entries that silently draws nothing from its supply."""
+    tables = {
+        "ports": {"p": RF, "q": {"net": "b"}, "v": {"kind": "dc", "net": "v", "voltage": "5 V"}},
+        "parts": {
+            "Q": {
+                "kind": "transistor",
+                "footprint": "fet",
+                "pins": {"gate": "a", "drain": "v", "source": "gnd"},
+            },
+            "D": {"kind": "other", "nets": ["v", "b"], "case": "0603"},
+            "B": {"kind": "other", "nets": ["v", "b"], "case": "0603", "series_resistance": "1 ohm"},
+        },
+    }
+    notes = solve_dc(read(**tables), {}).notes
+    assert "no dc currents are given, taken as none: part Q" in notes
+    assert any(note.endswith("taken as open for direct current: D") for note in notes)
+
+
 def test_a_current_without_return_is_left_out_and_said_so(read):
     """Would catch an invented voltage on a net whose current cannot come from anywhere."""
     file = read(

@@ -5,6 +5,7 @@ from __future__ import annotations
 import pytest
 
 from layoutgen.circuit import End, EndKind, ends_of, is_shunt, is_supply, lines_at, net_of, other_end
+from layoutgen.errors import WrongInputError
 
 RF = {"net": "a", "impedance": "50 ohm"}
 DC = {"kind": "dc", "net": "v", "voltage": "5 V"}
@@ -75,6 +76,30 @@ def test_a_supply_line_with_width_leads_on_to_a_bypassed_net_only(build):
         lines={"s": wide, "one": line("w", "a"), "two": line("w", "b")},
     )
     assert not junction.nets["w"].is_dc
+
+
+def test_a_shared_bank_of_two_feeds_is_dc_and_a_junction_without_bypass_is_not(build):
+    """Would catch a push-pull stage's supply taken as RF, or an RF junction taken as a supply net."""
+    lines = {"s": supply("w", "v"), "one": line("w", "a"), "two": line("w", "b")}
+    ports = {"p": RF, "v": DC, "q": {"net": "b"}}
+    bank = {"C": capacitor("w"), "D": capacitor("w")}
+    assert build(ports=ports, lines=lines, parts=bank).nets["w"].is_dc
+    with pytest.raises(WrongInputError, match=r"lines\.s: found neither impedance nor width"):
+        build(ports=ports, lines=lines)
+
+
+def test_a_supply_pin_with_its_bypass_is_dc(build):
+    """Would catch an amplifier's supply pin whose bank cannot be fed by a line without width."""
+    circuit = build(
+        ports={"p": RF, "v": DC, "q": {"net": "b"}},
+        lines={"s": supply("vcc", "v")},
+        parts={
+            "Q": fet(gate="a", drain="vcc", source="gnd"),
+            "C": capacitor("vcc"),
+            "D": capacitor("a", "b"),
+        },
+    )
+    assert circuit.nets["vcc"].is_dc
 
 
 def test_a_choke_leads_to_dc_only_where_nothing_of_rf_meets(build):
@@ -221,3 +246,30 @@ def test_shunt_and_supply(read):
     )
     assert is_shunt(file.parts["C"]) and not is_shunt(file.parts["D"])
     assert [is_supply(file.lines[name]) for name in ("s", "wide", "short", "f")] == [True, True, False, False]
+
+
+def test_two_pins_make_a_two_pad_part(build):
+    """Would catch a part written with two pins that is no shunt part, bank or way for direct current."""
+    pads = {
+        "one": {"at": ["-2 mm", "0 mm"], "size": ["1 mm", "1 mm"], "heading": "west"},
+        "two": {"at": ["2 mm", "0 mm"], "size": ["1 mm", "1 mm"], "heading": "east"},
+    }
+
+    def pinned(kind, value, one, two):
+        return {"kind": kind, "value": value, "footprint": "big", "pins": {"one": one, "two": two}}
+
+    circuit = build(
+        ports={"p": {**RF, "current": "0.1 A"}, "v": DC},
+        lines={"s": supply("v", "w")},
+        parts={
+            "C": pinned("capacitor", "1 nF", "gnd", "w"),
+            "D": capacitor("w"),
+            "L": pinned("inductor", "1 nH", "w", "a"),
+        },
+        footprints={"big": {"pads": pads}},
+    )
+    assert circuit.nets["w"].bank == ("D", "C")
+    assert circuit.nets["w"].feed == End("L", 0, EndKind.PAD, "one")
+    assert other_end(circuit.file, circuit.nets["w"].feed) == End("L", 1, EndKind.PAD, "two")
+    assert circuit.dc.currents["L"] == pytest.approx(0.1) and circuit.dc.currents["C"] == 0.0
+    assert "L.one" not in circuit.dc.currents

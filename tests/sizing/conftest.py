@@ -36,7 +36,7 @@ RULES: dict[str, Any] = {
 }
 
 
-@pytest.fixture
+@pytest.fixture(scope="session")
 def build() -> Callable[..., Circuit]:
     """Builds a circuit; tables given replace those of the base, ``substrate`` and ``design`` are merged."""
 
@@ -50,7 +50,7 @@ def build() -> Callable[..., Circuit]:
     return built
 
 
-@pytest.fixture
+@pytest.fixture(scope="session")
 def size(build: Callable[..., Circuit]) -> Callable[..., SizedCircuit]:
     """Sizes a circuit; see ``build``."""
     return lambda gaps=None, **tables: size_circuit(build(**tables), gaps)

@@ -4,9 +4,11 @@ from __future__ import annotations
 
 import itertools
 import math
+from pathlib import Path
 
 import pytest
 
+from layoutgen.circuit import build_circuit
 from layoutgen.errors import WrongInputError
 from layoutgen.formulas.bends import bend_excess
 from layoutgen.formulas.ends import open_end
@@ -14,6 +16,7 @@ from layoutgen.formulas.pads import pad_excess
 from layoutgen.formulas.steps import step
 from layoutgen.formulas.tees import cross, tee
 from layoutgen.formulas.vias import via_inductance
+from layoutgen.reading import read_inputs
 from layoutgen.sizing import (
     Arm,
     BudgetEntry,
@@ -26,6 +29,7 @@ from layoutgen.sizing import (
     line_budget,
     open_end_correction,
     pad_correction,
+    size_circuit,
     via_correction,
 )
 
@@ -250,7 +254,26 @@ class TestLineBudget:
         assert sized.pairs["k"].beta * length == pytest.approx(math.pi / 2 - end.angle, rel=1e-12)
 
 
+EXAMPLES = sorted((Path(__file__).parents[2] / "examples").glob("*.toml"))
+
+
 class TestDefaults:
+    @pytest.mark.parametrize("path", EXAMPLES, ids=lambda path: path.stem)
+    def test_every_line_of_every_example_adds_up(self, path):
+        """Would catch a line of an example whose budget does not close, or whose impedance is missed."""
+        found = read_inputs(path)
+        sized = size_circuit(build_circuit(found.circuit, found.rules))
+        budgets = default_budgets(sized)
+        assert set(budgets) == {*sized.lines, *sized.pairs}
+        for name, (length, entries) in budgets.items():
+            held = sized.lines.get(name) or sized.pairs[name]
+            if held.angle is not None:
+                assert total(entries) == pytest.approx(held.angle, abs=1e-12)
+                assert length > 0.0
+        for line in sized.lines.values():
+            if line.asked_impedance is not None:
+                assert line.impedance == pytest.approx(line.asked_impedance, rel=1e-5)
+
     def test_every_line_of_the_amplifier_adds_up(self, amplifier):
         """Would catch any line of the example whose budget does not close."""
         budgets = default_budgets(amplifier)

@@ -89,16 +89,17 @@ def test_density_comes_from_the_rule_file(size):
     assert "0402" in note and "least density" in note and "toe 0.1, heel 0, side -0.05 mm" in note
 
 
-class TestFootprint:
-    PART = {
-        "kind": "transistor",
-        "footprint": "f",
-        "pins": {"drain": "b", "gate": "a", "slug": "gnd", "source": "gnd"},
-    }
+PART = {
+    "kind": "transistor",
+    "footprint": "f",
+    "pins": {"drain": "b", "gate": "a", "slug": "gnd", "source": "gnd"},
+}
 
+
+class TestFootprint:
     def test_pads_are_as_drawn_with_the_nets_of_the_pins(self, size):
         """Would catch pads matched by order instead of by pin."""
-        lands = size(lines={}, parts={"Q": self.PART}, footprints={"f": three_pads()}).lands["Q"]
+        lands = size(lines={}, parts={"Q": PART}, footprints={"f": three_pads()}).lands["Q"]
         gate = lands.pad("gate")
         assert (gate.net, gate.x, gate.width, gate.height) == ("a", -3 * MM, 2 * MM, 1 * MM)
         assert gate.heading == 180.0 and lands.pad("drain").heading == 0.0
@@ -109,7 +110,7 @@ class TestFootprint:
 
     def test_outline_is_round_pads_and_cutout_and_the_courtyard_round_holes_too(self, size):
         """Would catch screw heads outside the courtyard."""
-        lands = size(lines={}, parts={"Q": self.PART}, footprints={"f": three_pads()}).lands["Q"]
+        lands = size(lines={}, parts={"Q": PART}, footprints={"f": three_pads()}).lands["Q"]
         assert lands.outline == pytest.approx((-4 * MM, -5 * MM, 4 * MM, 5 * MM))
         assert lands.courtyard == pytest.approx((-4.25 * MM, -5.25 * MM, 4.25 * MM, 8.6 * MM))
         assert lands.cutout == pytest.approx((-2 * MM, -5 * MM, 2 * MM, 5 * MM))

@@ -229,6 +229,13 @@ class TestSupplies:
         assert s.temperature_rise <= 20.0
         assert not s.rf and sized.lines["f"].rf
 
+    def test_a_stub_with_an_impedance_on_a_dc_net_is_rf(self, size, tables):
+        """Would catch a quarter-wave bypass stub drawn and checked as if it were a supply line."""
+        tables["lines"]["stub"] = line("w", angle="90 deg", impedance="30 ohm")
+        lines = size(ground=POUR, **tables).lines
+        assert lines["stub"].rf and not lines["s"].rf
+        assert lines["stub"].pour_gap > 1.5 * H
+
     def test_density_governs_where_it_asks_for_more(self, size, tables):
         """Would catch the smaller of the two rules being taken."""
         rules = {"current": {"temperature_rise": "60 K", "max_density": "20 A/mm^2"}}
@@ -295,7 +302,7 @@ def test_gap_below_what_can_be_etched_is_raised_and_said_so(size):
     """Would catch a pour drawn onto its line by gap = 0."""
     sized = size(ground={"gap": "0.02 mm"})
     assert sized.lines["x"].pour_gap == pytest.approx(0.1e-3)
-    assert any("0.1 mm is drawn" in note for note in sized.notes)
+    assert any("raised to 0.1 mm beside x" in note for note in sized.notes)
 
 
 def test_pour_of_pads_and_strips_is_that_of_50_ohm(size):

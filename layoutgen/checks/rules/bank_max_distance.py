@@ -1,9 +1,10 @@
 """A bank's first capacitor stands at the feed's end.
 
-What: from the end of a bank's feed to the live pad of the first capacitor are at most ``bank.max_distance``.
+What: from the end of a bank's feed to the live pad of the first capacitor are at most
+``bank.max_distance``.
 Why: strip between feed and capacitor lengthens the quarter wave that the feed was made to be.
-How measured: from the feed's end, taken across its whole width (a feeding part's pad, a port), to the outline
-of the nearest capacitor's pad of the bank. 10 nm above the limit pass.
+How measured: from the feed's end, taken across its whole width (a feeding part's pad, a port), to the
+outline of the nearest capacitor's pad of the bank. 10 nm above the limit pass.
 Source: the limit is the rule file's; common practice, no source.
 """
 
@@ -12,8 +13,9 @@ from __future__ import annotations
 from collections.abc import Iterator
 
 from layoutgen.checks.banks import banks
-from layoutgen.checks.board import TOLERANCE_NM, Board, middle
+from layoutgen.checks.board import Board
 from layoutgen.checks.outcome import Hit, Outcome, Rule, mm, named
+from layoutgen.checks.planar import TOLERANCE_NM, middle
 
 __all__ = ["RULE"]
 
@@ -34,7 +36,7 @@ def find(board: Board) -> Iterator[Outcome]:
         if distance > limit + TOLERANCE_NM:
             yield Hit(
                 rule=NAME,
-                text=f"pad of {first.part} is {mm(distance)} from the end of {bank.feed}, at most {mm(limit)}",
+                text=f"pad of {first.part} {mm(distance)} from the end of {bank.feed}, at most {mm(limit)}",
                 items=named(bank.feed, first.part),
                 at=middle(bank.end, first.pad),
                 measured=distance / 1e6,

@@ -1,9 +1,11 @@
 """In a bank the feed meets the smallest capacitance first.
 
-What: along the common strip, counted from the end of the feed, capacitances rise; parts of other kinds come last.
-Why: the smallest capacitor works at the highest frequency, and every millimetre before it adds inductance.
-How measured: middles of the live pads projected on the strip's centre-line, to a micrometre; parts at
-one place (either side of the strip) may stand in any order.
+What: along the common strip, counted from the end of the feed, capacitances rise; parts of other kinds
+come last.
+Why: the smallest capacitor works at the highest frequency, and every millimetre before it adds
+inductance.
+How measured: middles of the live pads projected on the strip's centre-line, to a micrometre; parts at one
+place (either side of the strip) may stand in any order.
 Source: common practice, no source.
 """
 
@@ -15,8 +17,9 @@ from itertools import pairwise
 import shapely
 
 from layoutgen.checks.banks import banks
-from layoutgen.checks.board import Board, middle
+from layoutgen.checks.board import Board
 from layoutgen.checks.outcome import Hit, Outcome, Rule, mm, named
+from layoutgen.checks.planar import middle
 
 __all__ = ["RULE"]
 
@@ -28,7 +31,9 @@ def find(board: Board) -> Iterator[Outcome]:
     for bank in banks(board.artwork) if board.artwork is not None else ():
         for first, second in pairwise(bank.members):
             if first.rank > second.rank:
-                text = f"{first.part} stands {mm(first.way)} from the end of {bank.feed}, before {second.part}"
+                text = (
+                    f"{first.part} stands {mm(first.way)} from the end of {bank.feed}, before {second.part}"
+                )
                 yield Hit(
                     rule=NAME,
                     text=f"{text} of smaller capacitance at {mm(second.way)}",

@@ -1,6 +1,7 @@
 """No copper floats: pour hangs on the plane, and nothing else is left over.
 
-What: each piece of copper hangs together with a net of the circuit; each piece of pour with the ground plane.
+What: each piece of copper hangs together with a net of the circuit; each piece of pour with the ground
+plane.
 Why: floating copper is a resonator that nobody meant, and it takes up charge.
 How measured: from finished polygons and plated holes alone; touching is joining. The plane is the largest
 copper of gnd on the bottom, or on the top where the bottom has none.

@@ -1,10 +1,12 @@
 """Every net of the circuit hangs together.
 
-What: all copper of a net (of nets that lines join, of gnd) is one piece; each pad, port and line end has copper.
+What: all copper of a net (of nets that lines join, of gnd) is one piece; each pad, port and line end has
+copper.
 Why: what is not joined does not work.
-How measured: from finished polygons and plated holes alone; touching is joining, also through other copper.
-Pads, ports and the legs of lines are looked for at their places, so that copper left out altogether is found. Pour
-that hangs on nothing is ``connectivity.floating``. The place is the middle of the shortest way between the pieces.
+How measured: from finished polygons and plated holes alone; touching is joining, also through other
+copper. Pads, ports and the legs of lines are looked for at their places, so that copper left out
+altogether is found. Pour that hangs on nothing is ``connectivity.floating``. The place is the middle of
+the shortest way between the pieces.
 Source: the circuit file.
 """
 
@@ -16,9 +18,10 @@ import numpy as np
 import shapely
 
 from layoutgen.artwork import Artwork
-from layoutgen.checks.board import Board, whole
+from layoutgen.checks.board import Board
 from layoutgen.checks.connections import Connections
 from layoutgen.checks.outcome import Hit, Outcome, Rule, mm, named
+from layoutgen.checks.planar import whole
 from layoutgen.geometry import Point
 from layoutgen.placement import PlacedLine
 

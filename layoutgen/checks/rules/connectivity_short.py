@@ -2,10 +2,10 @@
 
 What: copper and barrels of two nets do not meet, unless a line of the circuit joins the nets.
 Why: it is another circuit.
-How measured: from finished polygons and plated holes alone; touching is joining. Nets that lines join are one. A
-line that ends on gnd is taken as cut at that end (the pour's distance, 3.5 least gaps and a width before its via), so
-that the same line touching ground elsewhere is found. Copper without a net joins what it touches. Shorts that the
-circuit asks for (lines that end on gnd) are listed as notes.
+How measured: from finished polygons and plated holes alone; touching is joining. Nets that lines join are
+one. A line that ends on gnd is taken as cut at that end (the pour's distance, 3.5 least gaps and a width
+before its via), so that the same line touching ground elsewhere is found. Copper without a net joins what
+it touches. Shorts that the circuit asks for (lines that end on gnd) are listed as notes.
 Source: the circuit file.
 """
 

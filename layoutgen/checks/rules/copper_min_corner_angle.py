@@ -3,10 +3,10 @@
 What: at each inside corner of finished copper the angle of the empty notch is at least
 ``copper.min_corner_angle``.
 Why: etchant is held in a sharp notch and goes on etching there.
-How measured: on the joined copper of each layer, after steps below 10 nm are smoothed; the angle between the
-two edges that meet. Points of copper that stick out are not notches: ``copper.min_width`` finds those sharper
-than about 33 degrees. The two notches of a radial stub on its host line are exempt, with a note. 0.05 degrees below
-the limit pass.
+How measured: on the joined copper of each layer, after steps below 10 nm are smoothed; the angle between
+the two edges that meet. Points of copper that stick out are not notches: ``copper.min_width`` finds those
+sharper than about 33 degrees. The two notches of a radial stub on its host line are exempt, with a note.
+0.05 degrees below the limit pass.
 Source: common practice, no source; the exemption is the circuit file's meaning.
 """
 
@@ -19,9 +19,10 @@ import numpy as np
 import numpy.typing as npt
 import shapely
 
-from layoutgen.checks.board import TOLERANCE_NM, Board, Layer, whole
+from layoutgen.checks.board import Board, Layer
 from layoutgen.checks.facing import Edges, edges_of
 from layoutgen.checks.outcome import Hit, Outcome, Rule, named
+from layoutgen.checks.planar import TOLERANCE_NM, whole
 
 __all__ = ["RULE"]
 

@@ -1,10 +1,11 @@
 """Copper keeps away from the board's profile and from cut-outs.
 
-What: finished copper of both layers is at least ``copper.min_edge_distance`` from the outline and from cut-outs.
+What: finished copper of both layers is at least ``copper.min_edge_distance`` from the outline and from
+cut-outs.
 Why: routing tears copper that it reaches, and copper at the edge may touch the housing.
-How measured: exactly, polygon to outline; copper across the outline measures 0, copper outside less. Exempt,
-each with a note: within its own width, the copper of a port with ``to_edge``; the outline of a pad at the
-cut-out of its own part, not a wider line that covers the pad. 10 nm short of the limit passes.
+How measured: exactly, polygon to outline; copper across the outline measures 0, copper outside less.
+Exempt, each with a note: within its own width, the copper of a port with ``to_edge``; the outline of a
+pad at the cut-out of its own part, not a wider line that covers the pad. 10 nm short of the limit passes.
 Source: the limit is the board house's; the exemptions are the circuit file's meaning.
 """
 
@@ -17,8 +18,9 @@ import numpy as np
 import shapely
 
 from layoutgen.artwork import Artwork
-from layoutgen.checks.board import CHORD_NM, TOLERANCE_NM, Area, Board, Layer, Piece, middle
+from layoutgen.checks.board import Area, Board, Layer, Piece
 from layoutgen.checks.outcome import Hit, Outcome, Rule, mm, named, too_small
+from layoutgen.checks.planar import CHORD_NM, TOLERANCE_NM, Geometry, middle
 from layoutgen.placement import PlacedPort
 
 __all__ = ["RULE"]
@@ -55,7 +57,7 @@ def _at_profile(
             yield _hit(layer, piece, rest, outline.boundary, distance, limit, "board")
 
 
-def _signed_distance(copper: shapely.Geometry, outline: shapely.Polygon) -> float:
+def _signed_distance(copper: Geometry, outline: shapely.Polygon) -> float:
     """Return copper's distance from the outline [nm]: 0 across it, negative outside, infinite for none."""
     if copper.is_empty:
         return math.inf
@@ -79,8 +81,8 @@ def _at_cutout(layer: Layer, cutout: Area, limit: float, pads: list[shapely.Poly
 def _hit(
     layer: Layer,
     piece: Piece,
-    copper: shapely.Geometry,
-    edge: shapely.Geometry,
+    copper: Geometry,
+    edge: Geometry,
     distance: float,
     limit: float,
     to: str,

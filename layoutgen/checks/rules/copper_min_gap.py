@@ -3,11 +3,11 @@
 What: the distance between copper of two nets, and between facing edges of one net (slits), is at least
 ``copper.min_gap``.
 Why: a narrower gap may stay closed, or be bridged by solder.
-How measured: between nets exactly, polygon to polygon, corners included; lines join their nets into one, and
-a line that ends on gnd is taken as cut at that end. Copper of two nets that meets is ``connectivity.short``, not a
-gap. Within one net between facing edges across empty board, on the joined copper; two places of one outline less
-than 3.5 limits apart along it are a corner and are not counted. On finished copper (see ``copper.min_width``); 10 nm
-short of the limit passes.
+How measured: between nets exactly, polygon to polygon, corners included; lines join their nets into one,
+and a line that ends on gnd is taken as cut at that end. Copper of two nets that meets is
+``connectivity.short``, not a gap. Within one net between facing edges across empty board, on the joined
+copper; two places of one outline less than 3.5 limits apart along it are a corner and are not counted. On
+finished copper (see ``copper.min_width``); 10 nm short of the limit passes.
 Source: the limit is the board house's; the 3.5 limits are a choice of this project.
 """
 

@@ -14,8 +14,9 @@ from collections.abc import Iterator
 import numpy as np
 import shapely
 
-from layoutgen.checks.board import Board, Layer, whole
+from layoutgen.checks.board import Board, Layer
 from layoutgen.checks.outcome import Hit, Outcome, Rule, named
+from layoutgen.checks.planar import whole
 
 __all__ = ["RULE"]
 

@@ -1,13 +1,13 @@
 """Copper is nowhere narrower than the etching can leave.
 
-What: the distance across finished copper between facing edges of one outline, lines, tapers, necks of mitres
-and slivers of pour alike, is at least ``copper.min_width``.
+What: the distance across finished copper between facing edges of one outline, lines, tapers, necks of
+mitres and slivers of pour alike, is at least ``copper.min_width``.
 Why: narrower copper may be etched through or lift off; a narrow line also misses its impedance.
-How measured: exactly, on the joined copper of each layer, between facing edges found through a tree over all
-edges, not on centre-lines. Two places of one outline less than 3.5 limits apart along it are a corner and are not
-counted, so copper tapering to a point is counted where its angle is below about 33 degrees. Finished
-copper is the artwork less ``copper.undercut`` on each edge. A distance 10 nm short of the limit passes (rounding
-to whole nanometres, chords of arcs).
+How measured: exactly, on the joined copper of each layer, between facing edges found through a tree over
+all edges, not on centre-lines. Two places of one outline less than 3.5 limits apart along it are a corner
+and are not counted, so copper tapering to a point is counted where its angle is below about 33 degrees.
+Finished copper is the artwork less ``copper.undercut`` on each edge. A distance 10 nm short of the limit
+passes (rounding to whole nanometres, chords of arcs).
 Source: the limit is the board house's; the 3.5 limits are a choice of this project.
 """
 

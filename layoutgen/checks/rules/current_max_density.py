@@ -3,8 +3,8 @@
 What: current over cross-section of lines, strips and via barrels is at most ``current.max_density``.
 Why: beyond it the narrowest place fuses or drifts, before the board as a whole is warm.
 How measured: current of the DC solution over (narrowest drawn width, between facing edges, times copper
-thickness); barrels as pi t (d - t) with the drill d taken as drilled, vias share equally. A width 10 nm short passes.
-Crowding at tees, pads and corners is not looked at.
+thickness); barrels as pi t (d - t) with the drill d taken as drilled, vias share equally. A width 10 nm
+short passes. Crowding at tees, pads and corners is not looked at.
 Source: the limit is the rule file's.
 """
 
@@ -12,10 +12,11 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
-from layoutgen.checks.board import TOLERANCE_NM, Board
+from layoutgen.checks.board import Board
 from layoutgen.checks.carriers import Carrier, carriers, necks
 from layoutgen.checks.grounding import via_currents
 from layoutgen.checks.outcome import Hit, Outcome, Rule, mm
+from layoutgen.checks.planar import TOLERANCE_NM
 from layoutgen.checks.records import NotChecked
 from layoutgen.formulas.limits import barrel_section
 from layoutgen.geometry import Point
@@ -61,7 +62,9 @@ def _barrels(board: Board, limit: float) -> Iterator[Outcome]:
         density = current / float(barrel_section(via.diameter * 1e-9, plating or 0.0))
         if density > limit * (1.0 + 1e-6):
             text = f"barrel of {via.item} carries {current:.3f} A"
-            yield _hit(text, density, limit, via.at, (via.item, via.purpose.partition(":")[2]), "drill_plated")
+            yield _hit(
+                text, density, limit, via.at, (via.item, via.purpose.partition(":")[2]), "drill_plated"
+            )
 
 
 def _hit(

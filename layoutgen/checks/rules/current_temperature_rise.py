@@ -3,11 +3,11 @@
 What: the temperature rise of lines, strips and via barrels by the IPC-2221 equation is at most
 ``current.temperature_rise``.
 Why: hot copper ages the laminate and moves the bias of what is soldered to it.
-How measured: I = 0.048 dT^0.44 A^0.725 (A in square mils) for lines at the narrowest place of their drawn copper,
-between facing edges; barrels as pi t (d - t) with the drill d taken as drilled and the constant 0.024 of conductors
-inside the board. Currents come from the DC solution, vias share equally. A current beyond the chart's 35 A is a finding
-whatever the width. A width 10 nm short passes. Crowding of current at tees, pads and corners is not
-looked at, nor the current of the ground's own copper.
+How measured: I = 0.048 dT^0.44 A^0.725 (A in square mils) for lines at the narrowest place of their drawn
+copper, between facing edges; barrels as pi t (d - t) with the drill d taken as drilled and the constant
+0.024 of conductors inside the board. Currents come from the DC solution, vias share equally. A current
+beyond the chart's 35 A is a finding whatever the width. A width 10 nm short passes. Crowding of current
+at tees, pads and corners is not looked at, nor the current of the ground's own copper.
 Source: IPC-2221, as independent public code and pages quote it; the standard's text was not read.
 """
 
@@ -15,10 +15,11 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
-from layoutgen.checks.board import TOLERANCE_NM, Board
+from layoutgen.checks.board import Board
 from layoutgen.checks.carriers import Carrier, carriers, necks
 from layoutgen.checks.grounding import via_currents
 from layoutgen.checks.outcome import Hit, Outcome, Rule, mm
+from layoutgen.checks.planar import TOLERANCE_NM
 from layoutgen.checks.records import NotChecked
 from layoutgen.formulas.limits import IPC2221_MAX_CURRENT, ipc2221_barrel_rise, ipc2221_rise, ipc2221_width
 from layoutgen.geometry import Point
@@ -38,7 +39,7 @@ def find(board: Board) -> Iterator[Outcome]:
         return
     for carrier in carriers(board):
         if carrier.current > IPC2221_MAX_CURRENT:
-            text = f"{carrier.item} carries {carrier.current:.2f} A, beyond the chart's {IPC2221_MAX_CURRENT:g} A"
+            text = f"{carrier.item} carries {carrier.current:.2f} A, the chart ends at 35 A"
             yield _hit(text, carrier.current, IPC2221_MAX_CURRENT, "A", carrier.at, (carrier.item,))
         else:
             yield from _lines(board, carrier, limit, board.thickness * 1e-9)
@@ -68,7 +69,9 @@ def _barrels(board: Board, limit: float) -> Iterator[Outcome]:
         rise = float(ipc2221_barrel_rise(current, via.diameter * 1e-9, plating or 0.0, internal=True))
         if rise > limit * (1.0 + 1e-6):
             text = f"{via.item} warms by {rise:.1f} K ({current:.3f} A), at most {limit:g} K"
-            yield _hit(text, rise, limit, "K", via.at, (via.item, via.purpose.partition(":")[2]), "drill_plated")
+            yield _hit(
+                text, rise, limit, "K", via.at, (via.item, via.purpose.partition(":")[2]), "drill_plated"
+            )
 
 
 def _hit(

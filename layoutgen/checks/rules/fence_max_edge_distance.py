@@ -1,10 +1,11 @@
 """The fence stands close behind the pour's edge.
 
-What: the axis of each fence via is at most ``fence.max_edge_distance`` from a pour edge that faces a line.
+What: the axis of each fence via is at most ``fence.max_edge_distance`` from the pour's edge.
 Why: the copper between edge and fence is a stub of its own; the wider, the lower its resonance.
-How measured: from the axis to the nearest stretch of pour edge that faces a line (see ``fence.max_pitch``),
-exact; vias set for the pour at large or for parts are not fence vias. A micrometre above the limit passes (edges of
-the pour may be arcs, drawn as chords within a micrometre).
+How measured: from the axis to the nearest outline of the finished pour, exact; vias set for the pour at
+large or for parts are not fence vias. That the vias near an edge that faces a line follow each other
+closely is ``fence.max_pitch``. A micrometre above the limit passes (arcs of the pour may be drawn as
+chords).
 Source: the limit is the rule file's; common practice, no source.
 """
 
@@ -14,10 +15,11 @@ from collections.abc import Iterator
 
 import shapely
 
-from layoutgen.checks.board import Board, Drill, middle
-from layoutgen.checks.fences import Stretch, fenced, stretches
+from layoutgen.checks.board import Board, Drill
+from layoutgen.checks.fences import fenced, pour_rim
 from layoutgen.checks.nodes import GROUND
 from layoutgen.checks.outcome import Hit, Outcome, Rule, mm, named
+from layoutgen.checks.planar import Geometry, middle
 from layoutgen.checks.records import NotChecked
 
 __all__ = ["RULE"]
@@ -34,27 +36,25 @@ def find(board: Board) -> Iterator[Outcome]:
     if not fenced(board):
         yield NotChecked(NAME, "the circuit asks for no fence")
         return
-    edges = stretches(board)
+    rim = pour_rim(board)
     for via in board.vias:
         if via.purpose == "fence":
-            yield from _behind(via, edges, limit)
+            yield from _behind(via, rim, limit)
 
 
-def _behind(via: Drill, edges: list[Stretch], limit: float) -> Iterator[Hit]:
+def _behind(via: Drill, rim: Geometry, limit: float) -> Iterator[Hit]:
     """Yield the hit of one fence via, when it stands too far behind the edge."""
     axis = shapely.Point(via.x, via.y)
-    if not edges:
-        text = f"{via.item} is a fence via, but no pour edge faces a line"
+    if rim.is_empty:
+        text = f"{via.item} is a fence via, but there is no pour"
         yield Hit(rule=NAME, text=text, items=named(via.item, "pour"), at=via.at, nets=(GROUND,))
-        return
-    nearest = min(edges, key=lambda stretch: axis.distance(stretch.way))
-    distance = float(axis.distance(nearest.way))
-    if distance > limit + _TOLERANCE_NM:
+    elif not shapely.dwithin(rim, axis, limit + _TOLERANCE_NM):
+        distance = float(axis.distance(rim))
         yield Hit(
             rule=NAME,
             text=f"axis of {via.item} is {mm(distance)} behind the pour's edge, at most {mm(limit)}",
             items=named(via.item, "pour"),
-            at=middle(axis, nearest.way),
+            at=middle(axis, rim),
             measured=distance / 1e6,
             limit=limit / 1e6,
             unit="mm",

@@ -1,15 +1,16 @@
 """The fence along the pour leaves no gap that a wave passes.
 
-What: along each pour edge that faces a line, consecutive via axes are at most ``fence.max_pitch`` apart, and at
-most ``fence.max_pitch_wavelengths`` of c / (f sqrt(er)) at the band's upper edge; the smaller one governs and
-names the finding. ``vias.min_pitch`` wins over both: then ``fence.max_pitch`` says for which frequency the row
-would do.
+What: along each pour edge that faces a line, consecutive via axes are at most ``fence.max_pitch`` apart,
+and at most ``fence.max_pitch_wavelengths`` of c / (f sqrt(er)) at the band's upper edge; the smaller one
+governs and names the finding. ``vias.min_pitch`` wins over both: then ``fence.max_pitch`` says for which
+frequency the row would do.
 Why: the pour with a sparse row of vias guides waves between the planes, past the filter it stands beside.
 How measured: a row is asked for where a pour edge faces a line within two of the line's gaps, over
-stretches longer than the pitch, not within 0.3 mm of part outlines. Vias on gnd within ``fence.max_edge_distance``
-of the stretch count, in the order of their projections on it; the distance of two is the shorter of the way along the
-edge and the straight line between the axes (rows around bends), the ends of a stretch count as axes. A micrometre
-above the limit passes (rows are laid on whole nanometres along arcs drawn as chords).
+stretches longer than the pitch, not within 0.3 mm of part outlines. Vias on gnd within
+``fence.max_edge_distance`` of the stretch count, in the order of their feet on it (on both sides of a
+narrow piece of pour); the distance of two is the shorter of the way along the edge and the straight line
+between the axes (rows around bends), the ends of a stretch count as axes. A micrometre above the limit
+passes (rows are laid on whole nanometres along arcs drawn as chords).
 Source: a twentieth of a wavelength in the slab is common practice (public pages on microwave boards).
 """
 
@@ -20,12 +21,14 @@ from collections.abc import Iterator
 from itertools import pairwise
 
 import numpy as np
+import numpy.typing as npt
 import shapely
 
-from layoutgen.checks.board import TOLERANCE_NM, Board, whole
-from layoutgen.checks.fences import Stretch, fenced, stretches
+from layoutgen.checks.board import Board
+from layoutgen.checks.fences import fenced, nearest_line, stretches
 from layoutgen.checks.nodes import GROUND
 from layoutgen.checks.outcome import Hit, Outcome, Rule, mm, named
+from layoutgen.checks.planar import TOLERANCE_NM, whole
 from layoutgen.checks.records import NotChecked
 from layoutgen.formulas.constants import C0
 from layoutgen.geometry import Point
@@ -50,7 +53,7 @@ def find(board: Board) -> Iterator[Outcome]:
         yield _too_close(board, limit, least)
         name, limit = PITCH, least
     for stretch in stretches(board):
-        if stretch.way.length > limit:
+        if stretch.length > limit:
             yield from _gaps(board, stretch, name, limit)
 
 
@@ -90,14 +93,15 @@ def _too_close(board: Board, asked: float, least: float) -> Hit:
     )
 
 
-def _gaps(board: Board, stretch: Stretch, name: str, limit: float) -> Iterator[Hit]:
+def _gaps(board: Board, stretch: shapely.LineString, name: str, limit: float) -> Iterator[Hit]:
     """Yield the gaps in the row along one stretch."""
     for gap, at in _row(board, stretch, limit):
         if gap > limit + _PITCH_TOLERANCE_NM:
+            line = nearest_line(board, at)
             yield Hit(
                 rule=name,
-                text=f"fence beside {stretch.item}: {mm(gap)} between axes, at most {mm(limit)}",
-                items=named(stretch.item, "pour"),
+                text=f"fence beside {line}: {mm(gap)} between axes, at most {mm(limit)}",
+                items=named(line, "pour"),
                 at=at,
                 measured=gap / 1e6,
                 limit=limit / 1e6,
@@ -106,19 +110,39 @@ def _gaps(board: Board, stretch: Stretch, name: str, limit: float) -> Iterator[H
             )
 
 
-def _row(board: Board, stretch: Stretch, limit: float) -> Iterator[tuple[float, Point]]:
+def _row(board: Board, stretch: shapely.LineString, limit: float) -> Iterator[tuple[float, Point]]:
     """Yield the distances of consecutive axes along a stretch [nm], each with the middle between them."""
     reach = (board.limits.nm("fence.max_edge_distance") or limit) + TOLERANCE_NM
-    near = board.drill_tree.query(stretch.way, predicate="dwithin", distance=reach) if board.drills else []
+    near = board.drill_tree.query(stretch, predicate="dwithin", distance=reach)
     vias = [board.drills[k] for k in np.sort(near).tolist() if board.drills[k].is_via]
     axes = np.array([(via.x, via.y) for via in vias if via.node == GROUND]).reshape(-1, 2)
-    along = np.atleast_1d(shapely.line_locate_point(stretch.way, shapely.points(axes)))
-    order = np.lexsort((axes[:, 1], axes[:, 0], along))
-    ends = [(0.0, None), *((along[k], axes[k]) for k in order), (stretch.way.length, None)]
-    for (s, a), (t, b) in pairwise(ends):
-        straight = math.inf if a is None or b is None else float(np.hypot(*(b - a)))
-        middle = stretch.way.interpolate((s + t) / 2.0)
-        yield min(float(t - s), straight), whole(middle.x, middle.y)
+    ends = shapely.get_coordinates(stretch)[[0, -1]]
+    marks = [(0.0, *ends[0].tolist()), *sorted(_feet(stretch, axes, reach))]
+    for (s, ax, ay), (t, bx, by) in pairwise([*marks, (stretch.length, *ends[1].tolist())]):
+        middle = stretch.interpolate((s + t) / 2.0)
+        yield min(t - s, math.hypot(bx - ax, by - ay)), whole(middle.x, middle.y)
+
+
+def _feet(
+    stretch: shapely.LineString, axes: npt.NDArray[np.float64], reach: float
+) -> Iterator[tuple[float, float, float]]:
+    """Yield where axes (N, 2) stand along a stretch: way along it, x, y [nm].
+
+    An axis in a narrow piece of pour, with the stretch running past on both sides, has a foot on each.
+    """
+    points = shapely.get_coordinates(stretch)
+    step = np.diff(points, axis=0)
+    length = np.hypot(*step.T)
+    before = np.concatenate(([0.0], np.cumsum(length)))[:-1]
+    for x, y in axes.tolist():
+        offset = np.array([x, y]) - points[:-1]
+        share = np.clip(np.einsum("nk,nk->n", offset, step) / length**2, 0.0, 1.0)
+        away = np.hypot(*(offset - share[:, None] * step).T)
+        close = np.flatnonzero(away <= reach)
+        for group in np.split(close, np.flatnonzero(np.diff(close) > 1) + 1):
+            if len(group):
+                best = int(group[np.argmin(away[group])])
+                yield float(before[best] + share[best] * length[best]), x, y
 
 
 RULE = Rule(names=(PITCH, WAVELENGTHS), find=find, needs_circuit=True)

@@ -1,11 +1,14 @@
 """The pour keeps the distance from lines that it was set.
 
-What: the distance from each line, coupled pair and radial stub to the pour is at least the one it was sized with.
+What: the distance from each line, coupled pair and radial stub to the pour is at least the one it was
+sized with.
 Why: nearer pour lowers the line's impedance below what was allowed for.
-How measured: exactly, from the finished copper of the line to the finished pour. Left out: pour inside part
-outlines; the last such distance of a line before its end on gnd, counted from the axis of its via. Lands of vias, and
-copper between ground pads and their vias, are not pour. Chords of arcs: 1 um short of the distance passes.
-Source: the distance is the sizing's, from ``ground.max_impedance_shift`` or ``ground.gap`` of the circuit file.
+How measured: exactly, from the finished copper of the line to the finished pour. Left out: pour inside
+part outlines; the last such distance of a line before its end on gnd, counted from the axis of its via.
+Lands of vias, and copper between ground pads and their vias, are not pour. Chords of arcs: 1 um short of
+the distance passes.
+Source: the distance is the sizing's, from ``ground.max_impedance_shift`` or ``ground.gap`` of the circuit
+file.
 """
 
 from __future__ import annotations
@@ -16,11 +19,12 @@ import numpy as np
 import shapely
 
 from layoutgen.artwork import Artwork
-from layoutgen.checks.board import TOLERANCE_NM, Board, middle, parts
+from layoutgen.checks.board import Board
 from layoutgen.checks.drawn import pour_gaps
 from layoutgen.checks.fences import part_outlines
 from layoutgen.checks.nodes import GROUND, ground_end, tail_of
 from layoutgen.checks.outcome import Outcome, Rule, named, too_small
+from layoutgen.checks.planar import TOLERANCE_NM, Geometry, middle, parts
 from layoutgen.checks.records import NotChecked
 
 __all__ = ["RULE"]
@@ -52,8 +56,8 @@ def find(board: Board) -> Iterator[Outcome]:
                 yield too_small(NAME, text, distance, limit, at, named(item, "pour"), (GROUND,))
 
 
-def _lines(board: Board, artwork: Artwork, gaps: Mapping[str, float]) -> dict[str, shapely.Geometry]:
-    """Return the copper of each line that has a distance to keep, without the last of it before an end on gnd."""
+def _lines(board: Board, artwork: Artwork, gaps: Mapping[str, float]) -> dict[str, Geometry]:
+    """Return the copper of each line that has a distance to keep, without its last before gnd."""
     found: dict[str, list[shapely.Polygon]] = {}
     for piece in board.top.pieces:
         if piece.role in _LINE_ROLES and piece.item in gaps:

@@ -1,7 +1,7 @@
 """Under every RF line the ground plane is unbroken.
 
-What: the copper of each RF line, coupled pair and radial stub lies wholly over the bottom plane, except within
-``copper.min_edge_distance`` of the profile and of cut-outs, where the plane must end.
+What: the copper of each RF line, coupled pair and radial stub lies wholly over the bottom plane, except
+within ``copper.min_edge_distance`` of the profile and of cut-outs, where the plane must end.
 Why: return current that has to go round a slot radiates, and the line's impedance jumps there.
 How measured: the area of the line's finished copper with no plane below; openings thinner than 20 nm are
 rounding. Only straight below: a slot beside the line is not looked at.
@@ -15,9 +15,10 @@ from collections.abc import Iterator
 import shapely
 
 from layoutgen.artwork import Artwork
-from layoutgen.checks.board import TOLERANCE_NM, Board, parts, whole
+from layoutgen.checks.board import Board
 from layoutgen.checks.nodes import GROUND
 from layoutgen.checks.outcome import Hit, Outcome, Rule, named
+from layoutgen.checks.planar import TOLERANCE_NM, Geometry, parts, whole
 
 __all__ = ["RULE"]
 
@@ -53,12 +54,12 @@ def find(board: Board) -> Iterator[Outcome]:
             )
 
 
-def _edge_zone(board: Board) -> shapely.Geometry:
+def _edge_zone(board: Board) -> Geometry:
     """Return where the plane may have ended already: beyond its distance from profile and cut-outs."""
     reach = (board.limits.nm("copper.min_edge_distance") or 0.0) + TOLERANCE_NM
     margin = None if board.artwork is None else board.artwork.placement.sized.circuit.file.board.margin
     reach = max(reach, (margin or 0.0) * 1e9 + TOLERANCE_NM)
-    zones = [cutout.polygon.buffer(reach, join_style="mitre") for cutout in board.cutouts]
+    zones: list[Geometry] = [cutout.polygon.buffer(reach, join_style="mitre") for cutout in board.cutouts]
     if board.outline is not None:
         x0, y0, x1, y1 = board.outline.bounds
         beyond = shapely.box(x0 - reach, y0 - reach, x1 + reach, y1 + reach)

@@ -1,14 +1,14 @@
 """Ground pads reach the plane, and exposed pads are cooled.
 
-What: each pad on gnd has a via of its own even where ``vias.per_ground_pad`` is silent; the vias under a pad
-with ``thermal`` have together no more than that thermal resistance.
-Why: a shunt part without a via of its own is not grounded at these frequencies; an exposed pad without vias is
-not cooled.
-How measured: vias as for ``vias.per_ground_pad``. Thermal: barrels whose axes lie under the pad, in parallel,
-each height / (k pi t (d - t)) with the drill d taken as drilled, plating t and k = 385 W/(m K); spreading in the
-plane and the solder are left out. One part in a million above the limit passes.
-Source: the resistance of a barrel is that of a conductor of heat (two public pages give 192 K/W for 0.3 mm,
-25 um, 1.6 mm, as does this).
+What: each pad on gnd has a via of its own even where ``vias.per_ground_pad`` is silent; the vias under a
+pad with ``thermal`` have together no more than that thermal resistance.
+Why: a shunt part without a via of its own is not grounded at these frequencies; an exposed pad without
+vias is not cooled.
+How measured: vias as for ``vias.per_ground_pad``. Thermal: barrels whose axes lie under the pad, in
+parallel, each height / (k pi t (d - t)) with the drill d taken as drilled, plating t and k = 385 W/(m K);
+spreading in the plane and the solder are left out. One part in a million above the limit passes.
+Source: the resistance of a barrel is that of a conductor of heat (two public pages give 192 K/W for 0.3
+mm, 25 um, 1.6 mm, as does this).
 """
 
 from __future__ import annotations
@@ -66,9 +66,10 @@ def _heat(board: Board, pad: GroundPad, limit: float) -> Iterator[Outcome]:
     if resistance is not None and resistance <= limit * (1.0 + 1e-6):
         return
     found = "none are there" if resistance is None else f"they have {resistance:.1f} K/W"
+    asked = f"at most {limit:g} K/W together"
     yield Hit(
         rule=NAME,
-        text=f"vias under pad {pad.pin} of {pad.part}: at most {limit:g} K/W together, {found} ({len(under)} vias)",
+        text=f"{len(under)} vias under pad {pad.pin} of {pad.part}: {asked}, {found}",
         items=(pad.part,),
         at=pad.at,
         measured=resistance,

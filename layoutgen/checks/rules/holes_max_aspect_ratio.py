@@ -3,8 +3,8 @@
 What: board thickness over hole diameter, (height + 2 copper_thickness) / diameter, is at most
 ``holes.max_aspect_ratio``.
 Why: the bath does not reach the middle of a deep narrow hole, and its plating comes out thin.
-How measured: with the substrate's height and copper thickness of the circuit file; every hole. One part in a
-million above the limit passes.
+How measured: with the substrate's height and copper thickness of the circuit file; every hole. One part
+in a million above the limit passes.
 Source: the limit is the board house's.
 """
 

@@ -3,9 +3,9 @@
 What: from the wall of each plated hole to the outline of the copper around it are at least
 ``holes.min_annular_ring``, on both layers.
 Why: drills wander; where the ring is broken the barrel may part from its copper.
-How measured: from the hole's axis to the nearest outline of the joined finished copper, less the radius, so
-that a land pushed aside is found; negative where copper does not even cover the hole. A layer without any copper
-is left out. 10 nm short of the limit passes.
+How measured: from the hole's axis to the nearest outline of the joined finished copper, less the radius,
+so that a land pushed aside is found; negative where copper does not even cover the hole. A layer without
+any copper is left out. 10 nm short of the limit passes.
 Source: the limit is the board house's.
 """
 
@@ -16,8 +16,9 @@ from collections.abc import Iterator
 import numpy as np
 import shapely
 
-from layoutgen.checks.board import TOLERANCE_NM, Board, Drill, Layer, whole
+from layoutgen.checks.board import Board, Drill, Layer
 from layoutgen.checks.outcome import Hit, Outcome, Rule, named, too_small
+from layoutgen.checks.planar import TOLERANCE_NM, Geometry, whole, within
 from layoutgen.geometry import Point
 
 __all__ = ["RULE"]
@@ -46,7 +47,7 @@ def _rings(board: Board, layer: Layer, plated: list[int], limit: float) -> Itera
     reach = np.maximum(radii + limit - TOLERANCE_NM, 0.0)
     tight = np.ones(len(plated), dtype=bool)
     inside = covered >= 0
-    tight[inside] = shapely.dwithin(rims[covered[inside]], points[inside], reach[inside])
+    tight[inside] = within(rims[covered[inside]], points[inside], reach[inside])
     for k in np.flatnonzero(tight).tolist():
         rim = rims[covered[k]] if covered[k] >= 0 else None
         ring, at = _ring(board.drills[plated[k]], points[k], rim)
@@ -56,7 +57,7 @@ def _rings(board: Board, layer: Layer, plated: list[int], limit: float) -> Itera
             yield too_small(NAME, text, ring, limit, at, (drill.item,), named(drill.net or ""), layer.name)
 
 
-def _ring(drill: Drill, point: shapely.Point, rim: shapely.Geometry | None) -> tuple[float, Point]:
+def _ring(drill: Drill, point: shapely.Point, rim: Geometry | None) -> tuple[float, Point]:
     """Return the ring's least width [nm] and its place; the negative radius where there is no copper."""
     radius = drill.diameter / 2.0
     if rim is None:

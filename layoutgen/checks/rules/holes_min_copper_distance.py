@@ -1,12 +1,12 @@
 """Holes keep away from copper that they must not meet.
 
-What: from the wall of a plated hole to copper of another net, and from the wall of an unplated hole to any
-copper, are at least ``holes.min_copper_distance``, on both layers.
+What: from the wall of a plated hole to copper of another net, and from the wall of an unplated hole to
+any copper, are at least ``holes.min_copper_distance``, on both layers.
 Why: drills wander; a barrel that meets other copper shorts it, an unplated hole tears it.
-How measured: axis to copper less the radius, exact. Copper under an unplated hole counts as drilled away, so
-it measures 0. A plated hole that meets another net's copper is ``connectivity.short``. A line that ends on gnd is
-taken as cut there, so that its own vias are not found. A plated hole without a net belongs to what it meets. 10 nm
-short of the limit passes.
+How measured: axis to copper less the radius, exact. Copper under an unplated hole counts as drilled away,
+so it measures 0. A plated hole that meets another net's copper is ``connectivity.short``. A line that
+ends on gnd is taken as cut there, so that its own vias are not found. A plated hole without a net belongs
+to what it meets. 10 nm short of the limit passes.
 Source: the limit is the board house's.
 """
 
@@ -17,9 +17,10 @@ from collections.abc import Iterator
 import numpy as np
 import shapely
 
-from layoutgen.checks.board import TOLERANCE_NM, Board, Drill, Layer, Piece, whole
+from layoutgen.checks.board import Board, Drill, Layer, Piece
 from layoutgen.checks.drills import touched
 from layoutgen.checks.outcome import Hit, Outcome, Rule, named, too_small
+from layoutgen.checks.planar import TOLERANCE_NM, near_points, whole
 from layoutgen.geometry import Point
 
 __all__ = ["RULE"]
@@ -51,19 +52,16 @@ def _own_nodes(board: Board) -> list[frozenset[str | None]]:
     return own
 
 
-def _near_copper(
-    board: Board, layer: Layer, limit: float, own: list[frozenset[str | None]]
-) -> Iterator[Hit]:
+def _near_copper(board: Board, layer: Layer, limit: float, own: list[frozenset[str | None]]) -> Iterator[Hit]:
     """Yield the holes that are too near to copper of one layer."""
     reach = np.maximum(board.drill_radii + limit - TOLERANCE_NM, 0.0)
-    i, j = layer.tree.query(board.drill_points, predicate="dwithin", distance=reach)
-    gap = shapely.distance(board.drill_points[i], layer.polygons[j]) - board.drill_radii[i]
-    for k in np.lexsort((j, i)).tolist():
-        drill, piece = board.drills[i[k]], layer.pieces[j[k]]
-        met = drill.plated and (gap[k] <= 0.0 or piece.node in own[i[k]])
-        if met or gap[k] >= limit - TOLERANCE_NM:
+    for k, n in sorted(zip(*map(list, near_points(layer.tree, board.drill_points, reach)), strict=True)):
+        drill, piece = board.drills[k], layer.pieces[n]
+        if drill.plated and piece.node in own[k]:
             continue
-        yield _hit(drill, piece, layer.name, float(gap[k]), limit)
+        gap = float(shapely.distance(board.drill_points[k], piece.polygon)) - drill.diameter / 2.0
+        if gap < limit - TOLERANCE_NM and not (drill.plated and gap <= 0.0):
+            yield _hit(drill, piece, layer.name, gap, limit)
 
 
 def _hit(drill: Drill, piece: Piece, layer: str, gap: float, limit: float) -> Hit:

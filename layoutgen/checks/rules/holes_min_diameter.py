@@ -26,7 +26,9 @@ def find(board: Board) -> Iterator[Outcome]:
         if limit is not None and drill.diameter < limit - 0.5:
             nets = named(drill.net or "")
             text = f"{drill.item} has a diameter of"
-            yield too_small(NAME, text, drill.diameter, limit, drill.at, (drill.item,), nets, drill_layer(drill))
+            yield too_small(
+                NAME, text, drill.diameter, limit, drill.at, (drill.item,), nets, drill_layer(drill)
+            )
 
 
 RULE = Rule(names=(NAME,), find=find)

@@ -3,8 +3,8 @@
 What: from the wall of each via and hole to the outline and to each cut-out are at least
 ``holes.min_edge_distance``.
 Why: a hole near the edge breaks out when the board is routed.
-How measured: axis to outline less the radius, exact; negative for a hole across the edge. 10 nm short of the
-limit passes.
+How measured: axis to outline less the radius, exact; negative for a hole across the edge. 10 nm short of
+the limit passes.
 Source: the limit is the board house's.
 """
 
@@ -15,9 +15,10 @@ from collections.abc import Iterator
 import numpy as np
 import shapely
 
-from layoutgen.checks.board import TOLERANCE_NM, Board, whole
+from layoutgen.checks.board import Board
 from layoutgen.checks.drills import drill_layer
 from layoutgen.checks.outcome import Hit, Outcome, Rule, named, too_small
+from layoutgen.checks.planar import TOLERANCE_NM, whole
 
 __all__ = ["RULE"]
 
@@ -35,9 +36,7 @@ def find(board: Board) -> Iterator[Outcome]:
         yield from _at_edge(board, cutout.polygon, cutout.item, limit, inside=False)
 
 
-def _at_edge(
-    board: Board, area: shapely.Polygon, item: str, limit: float, *, inside: bool
-) -> Iterator[Hit]:
+def _at_edge(board: Board, area: shapely.Polygon, item: str, limit: float, *, inside: bool) -> Iterator[Hit]:
     """Yield the holes too near to the outline (``inside``) or to a cut-out."""
     rim = area.boundary
     shapely.prepare(area)

@@ -2,8 +2,8 @@
 
 What: from wall to wall of any two holes, vias included, are at least ``holes.min_web``.
 Why: a thin web breaks out, and plating bath creeps along cracked fibres.
-How measured: axis to axis less both radii, exact; holes that overlap, or were drawn twice, measure negative.
-One nanometre short of the limit passes.
+How measured: axis to axis less both radii, exact; holes that overlap, or were drawn twice, measure
+negative. One nanometre short of the limit passes.
 Source: the limit is the board house's.
 """
 

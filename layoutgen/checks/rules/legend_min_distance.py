@@ -2,7 +2,8 @@
 
 What: from the legend to each mask opening and to each pad are at least ``legend.min_distance``.
 Why: ink on a pad keeps solder away.
-How measured: exactly, polygon to polygon; legend on an opening measures 0. 10 nm short of the limit passes.
+How measured: exactly, polygon to polygon; legend on an opening measures 0. 10 nm short of the limit
+passes.
 Source: the limit is the board house's.
 """
 
@@ -12,8 +13,9 @@ from collections.abc import Iterator
 
 import shapely
 
-from layoutgen.checks.board import TOLERANCE_NM, Area, Board, middle
+from layoutgen.checks.board import Area, Board
 from layoutgen.checks.outcome import Outcome, Rule, named, too_small
+from layoutgen.checks.planar import TOLERANCE_NM, middle
 
 __all__ = ["RULE"]
 
@@ -34,8 +36,9 @@ def find(board: Board) -> Iterator[Outcome]:
         stroke, target = board.legend[a], targets[b]
         distance = float(stroke.polygon.distance(target.polygon))
         if distance < limit - TOLERANCE_NM:
-            text, at = f"legend of {stroke.item} to {target.item}", middle(stroke.polygon, target.polygon)
-            items = named(stroke.item, target.item)
+            at = middle(stroke.polygon, target.polygon)
+            bare = board.top.nearest_item(*at) if target.item == "board" else target.item
+            text, items = f"legend of {stroke.item} to {bare}", named(stroke.item, bare)
             yield too_small(NAME, text, distance, limit, at, items, (), "legend_top")
 
 

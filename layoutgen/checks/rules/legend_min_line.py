@@ -14,10 +14,11 @@ from collections.abc import Iterator
 import numpy as np
 import shapely
 
-from layoutgen.checks.board import CORNER_LIMITS, TOLERANCE_NM, Board, whole
+from layoutgen.checks.board import Board
 from layoutgen.checks.drawn import joined
 from layoutgen.checks.facing import edges_of, facing
 from layoutgen.checks.outcome import Outcome, Rule, named, too_small
+from layoutgen.checks.planar import CORNER_LIMITS, TOLERANCE_NM, whole
 
 __all__ = ["RULE"]
 

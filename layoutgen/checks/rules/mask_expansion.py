@@ -2,9 +2,9 @@
 
 What: the mask opening reaches at least ``mask.expansion`` beyond the outline of each pad, on every side.
 Why: the mask is printed a little off its place; mask on a pad keeps solder away.
-How measured: from the pad's outline to the outline of the joined openings around it, exact; negative or no
-figure where the pad is not inside an opening. Where the board ends first (a pad at its cut-out) only the board counts.
-10 nm short of the limit passes.
+How measured: from the pad's outline to the outline of the joined openings around it, exact; negative or
+no figure where the pad is not inside an opening. Where the board ends first (a pad at its cut-out) only
+the board counts. 10 nm short of the limit passes.
 Source: the limit is the board house's.
 """
 
@@ -15,9 +15,10 @@ from collections.abc import Iterator
 import numpy as np
 import shapely
 
-from layoutgen.checks.board import CHORD_NM, TOLERANCE_NM, Board, middle
+from layoutgen.checks.board import Board
 from layoutgen.checks.drawn import joined
 from layoutgen.checks.outcome import Hit, Outcome, Rule, too_small
+from layoutgen.checks.planar import CHORD_NM, TOLERANCE_NM, Geometry, middle
 from layoutgen.placement import PlacedPad
 
 __all__ = ["RULE"]
@@ -56,7 +57,9 @@ def _pad(
     if host is None or bare.area > TOLERANCE_NM * outline.length:
         at = middle(bare, outline)
         text = f"{name} leaves {bare.area / 1e12:.4f} mm^2 of the pad covered"
-        yield Hit(rule=NAME, text=text, items=items, at=at, limit=limit / 1e6, unit="mm", layer=_LAYER, nets=nets)
+        yield Hit(
+            rule=NAME, text=text, items=items, at=at, limit=limit / 1e6, unit="mm", layer=_LAYER, nets=nets
+        )
         return
     rim = _on_board(board, host.boundary)
     distance = float(outline.distance(rim)) if not rim.is_empty else limit
@@ -65,10 +68,10 @@ def _pad(
         yield too_small(NAME, f"{name} reaches beyond it by", distance, limit, at, items, nets, _LAYER)
 
 
-def _on_board(board: Board, geometry: shapely.Geometry) -> shapely.Geometry:
+def _on_board(board: Board, geometry: Geometry) -> Geometry:
     """Return what of a geometry lies on the board, off its cut-outs."""
     if board.outline is not None:
-        geometry = geometry.intersection(board.outline)
+        geometry = geometry.intersection(board.outline.buffer(-TOLERANCE_NM, join_style="mitre"))
     for cutout in board.cutouts:
         geometry = geometry.difference(cutout.polygon.buffer(TOLERANCE_NM, join_style="mitre"))
     return geometry

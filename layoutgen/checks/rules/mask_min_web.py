@@ -1,10 +1,11 @@
 """Between two mask openings a web of mask holds.
 
-What: the mask left between openings, and between facing edges of one opening, is at least ``mask.min_web`` wide.
+What: the mask left between openings, and between facing edges of one opening, is at least
+``mask.min_web`` wide.
 Why: a thinner web comes off and takes part in the soldering.
-How measured: exactly, opening to opening, on the joined openings of the top; openings that overlap or touch
-are one. Facing edges of one outline less than 3.5 limits apart along it are a corner and are not counted. 10 nm
-short of the limit passes.
+How measured: exactly, opening to opening, on the joined openings of the top; openings that overlap or
+touch are one. Facing edges of one outline less than 3.5 limits apart along it are a corner and are not
+counted. 10 nm short of the limit passes.
 Source: the limit is the board house's.
 """
 
@@ -13,12 +14,15 @@ from __future__ import annotations
 from collections.abc import Iterator
 
 import numpy as np
+import numpy.typing as npt
 import shapely
 
-from layoutgen.checks.board import CORNER_LIMITS, TOLERANCE_NM, Area, Board, middle, whole
+from layoutgen.checks.board import Board
 from layoutgen.checks.drawn import joined
 from layoutgen.checks.facing import edges_of, facing
 from layoutgen.checks.outcome import Hit, Outcome, Rule, named, too_small
+from layoutgen.checks.planar import CORNER_LIMITS, TOLERANCE_NM, middle, whole
+from layoutgen.geometry import Point
 
 __all__ = ["RULE"]
 
@@ -32,38 +36,23 @@ def find(board: Board) -> Iterator[Outcome]:
     if limit is None or not board.openings:
         return
     openings = joined(board.openings)
-    names = _Names(board.openings)
-    i, j = shapely.STRtree(openings).query(openings, predicate="dwithin", distance=max(limit - TOLERANCE_NM, 0.0))
+    i, j = shapely.STRtree(openings).query(
+        openings, predicate="dwithin", distance=max(limit - TOLERANCE_NM, 0.0)
+    )
     for a, b in sorted(zip(i[i < j].tolist(), j[i < j].tolist(), strict=True)):
         distance = float(openings[a].distance(openings[b]))
         if distance < limit - TOLERANCE_NM:
             ends = shapely.get_coordinates(shapely.shortest_line(openings[a], openings[b]))
-            yield _hit(names.at(ends), distance, limit, middle(openings[a], openings[b]))
+            yield _hit(board, ends, distance, limit, middle(openings[a], openings[b]))
     places = facing(edges_of(openings), limit - TOLERANCE_NM, CORNER_LIMITS * limit, across_copper=False)
     for p, q, distance in zip(places.first, places.second, places.distance.tolist(), strict=True):
-        yield _hit(names.at(np.array([p, q])), distance, limit, whole(*((p + q) / 2.0).tolist()))
+        yield _hit(board, np.array([p, q]), distance, limit, whole(*((p + q) / 2.0).tolist()))
 
 
-class _Names:
-    """Which openings reach a point."""
-
-    def __init__(self, openings: tuple[Area, ...]) -> None:
-        """Take the openings as drawn."""
-        self._openings = openings
-        self._tree = shapely.STRtree([opening.polygon for opening in openings])
-
-    def at(self, points: np.ndarray[tuple[int, int], np.dtype[np.float64]]) -> tuple[str, ...]:
-        """Return the names of the openings that reach the points, one each."""
-        found = []
-        for point in shapely.points(points):
-            hosts = np.sort(self._tree.query(point, predicate="dwithin", distance=TOLERANCE_NM))
-            found += [self._openings[k].item for k in hosts[:1].tolist()]
-        return named(*found)
-
-
-def _hit(items: tuple[str, ...], distance: float, limit: float, at: tuple[int, int]) -> Hit:
-    """Return the hit of one web."""
-    return too_small(NAME, f"mask web between {' and '.join(items)}", distance, limit, at, items, (), _LAYER)
+def _hit(board: Board, ends: npt.NDArray[np.float64], distance: float, limit: float, at: Point) -> Hit:
+    """Return the hit of one web between two points (2, 2) [nm], named after the copper laid bare there."""
+    items = named(*(board.top.nearest_item(x, y) for x, y in ends.tolist()))
+    return too_small(NAME, f"mask web at {' and '.join(items)}", distance, limit, at, items, (), _LAYER)
 
 
 RULE = Rule(names=(NAME,), find=find)

@@ -1,11 +1,11 @@
 """No part is loaded beyond its rating by the bias.
 
-What: direct voltage across each two-pad part, direct current through it and power in it are at most what its
-``rating`` gives, each where given.
+What: direct voltage across each two-pad part, direct current through it and power in it are at most what
+its ``rating`` gives, each where given.
 Why: a capacitor beyond its voltage fails short, a resistor beyond its power drifts and burns.
 How measured: from the DC solution; power is current squared times resistance for resistors, times
-``series_resistance`` for inductors, voltage times current for other kinds. One part in a million above passes.
-Parts with pins and RF loads are not looked at.
+``series_resistance`` for inductors, voltage times current for other kinds. One part in a million above
+passes. Parts with pins and RF loads are not looked at.
 Source: the ratings are the circuit file's.
 """
 

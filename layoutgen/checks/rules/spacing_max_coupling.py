@@ -1,14 +1,15 @@
 """Parallel runs of lines that are not meant to couple stay weakly coupled.
 
-What: the coupling between two lines over the length they run in parallel is at most ``spacing.max_coupling``.
+What: the coupling between two lines over the length they run in parallel is at most
+``spacing.max_coupling``.
 Why: a few per cent of the output led back to the input is enough to make an amplifier oscillate.
-How measured: k = (Ze - Zo) / (Ze + Zo) of a symmetric coupled pair at the drawn gap, times sin(beta l) up to a
-quarter wave, at the band's upper edge; for unequal widths the geometric mean of k at both. Legs of two different lines
-that run in parallel within a degree, up to ten heights apart; places left out as for
-``spacing.min_line_heights``. Pour between the lines lowers the coupling and is not taken into account. 0.01 dB
-above the limit pass.
-Source: Kirschning and Jansen 1984 with thickness (see the formulas); mean and product with sin are choices of this
-project, good for weak coupling.
+How measured: k = (Ze - Zo) / (Ze + Zo) of a symmetric coupled pair at the drawn gap, times sin(beta l) up
+to a quarter wave, at the band's upper edge; for unequal widths the geometric mean of k at both. Legs of
+two different lines that run in parallel within a degree, up to ten heights apart; places left out as for
+``spacing.min_line_heights``. Pour between the lines lowers the coupling and is not taken into account.
+0.01 dB above the limit pass.
+Source: Kirschning and Jansen 1984 with thickness (see the formulas); mean and product with sin are
+choices of this project, good for weak coupling.
 """
 
 from __future__ import annotations
@@ -19,9 +20,10 @@ from collections.abc import Iterator
 import numpy as np
 
 from layoutgen.artwork import Artwork
-from layoutgen.checks.board import Board, middle
+from layoutgen.checks.board import Board
 from layoutgen.checks.neighbours import Leg, neighbours
 from layoutgen.checks.outcome import Hit, Outcome, Rule, mm, named
+from layoutgen.checks.planar import middle
 from layoutgen.checks.records import NotChecked
 from layoutgen.formulas.constants import C0
 from layoutgen.formulas.coupled import coupled_pair
@@ -49,10 +51,10 @@ def find(board: Board) -> Iterator[Outcome]:
             continue
         coupling = _coupling(board.artwork, board.height, (a, b), pair.distance, lap)
         if coupling > limit + 0.01:
+            where = f"{mm(pair.distance)} apart over {mm(lap)}"
             yield Hit(
                 rule=NAME,
-                text=f"{a.line} and {b.line} couple by {coupling:.1f} dB, {mm(pair.distance)} apart over {mm(lap)}, "
-                f"at most {limit:g} dB",
+                text=f"{a.line} and {b.line} couple by {coupling:.1f} dB, {where}, at most {limit:g} dB",
                 items=named(a.line, b.line),
                 at=middle(pair.one, pair.other),
                 measured=coupling,
@@ -63,7 +65,7 @@ def find(board: Board) -> Iterator[Outcome]:
 
 
 def _overlap(a: Leg, b: Leg) -> float:
-    """Return the length [nm] over which two legs run in parallel; 0 for radial stubs and across each other."""
+    """Return the length [nm] over which two legs run in parallel, 0 for radial stubs."""
     if a.shape is not None or b.shape is not None or a.length == 0.0 or b.length == 0.0:
         return 0.0
     ax, ay = (a.end[0] - a.start[0]) / a.length, (a.end[1] - a.start[1]) / a.length

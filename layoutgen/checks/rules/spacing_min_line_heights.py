@@ -1,13 +1,13 @@
 """Lines that are not meant to couple keep apart.
 
-What: the copper of any two lines, and the legs of one folded line, are at least ``spacing.min_line_heights``
-substrate heights apart.
+What: the copper of any two lines, and the legs of one folded line, are at least
+``spacing.min_line_heights`` substrate heights apart.
 Why: at three heights two 50-ohm lines couple by about -29 dB over a quarter wave, at one by -18 dB.
-How measured: edge to edge of the straight legs at their drawn width. Not counted: within 3 h of path from a
-node that both lines share, beginning where other lines and pads at that node end (half the widest line); nets joined
-by a part or by a line of up to 3 h count as one node; legs that share a bend, and legs within 3 h of the
-bends between them; the strips of a coupled pair; a radial stub against lines it meets. Mitred corners are
-left to the legs beside them. 10 nm short of the limit passes.
+How measured: edge to edge of the straight legs at their drawn width. Not counted: within 3 h of path from
+a node that both lines share, beginning where other lines and pads at that node end (half the widest
+line); nets joined by a part or by a line of up to 3 h count as one node; legs that share a bend, and legs
+within 3 h of the bends between them; the strips of a coupled pair; a radial stub against lines it meets.
+Mitred corners are left to the legs beside them. 10 nm short of the limit passes.
 Source: field-solved tables made for this project (coupling); three heights is common practice, no source.
 """
 
@@ -15,9 +15,10 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
-from layoutgen.checks.board import Board, middle
+from layoutgen.checks.board import Board
 from layoutgen.checks.neighbours import Neighbours, neighbours
 from layoutgen.checks.outcome import Hit, Outcome, Rule, named
+from layoutgen.checks.planar import middle
 
 __all__ = ["RULE"]
 

@@ -2,7 +2,8 @@
 
 What: from axis to axis of any two vias are at least ``vias.min_pitch``.
 Why: a row of holes too close together is a row of perforations.
-How measured: axis to axis, exact; two vias at one place measure 0. One nanometre short of the limit passes.
+How measured: axis to axis, exact; two vias at one place measure 0. One nanometre short of the limit
+passes.
 Source: the limit is the board house's.
 """
 
@@ -29,7 +30,9 @@ def find(board: Board) -> Iterator[Outcome]:
         a, b = pair.first, pair.second
         if a.is_via and b.is_via and pair.pitch < limit - 1.0:
             text, nets = f"pitch of {a.item} and {b.item}", named(a.net or "", b.net or "")
-            yield too_small(NAME, text, pair.pitch, limit, pair.at, named(a.item, b.item), nets, "drill_plated")
+            yield too_small(
+                NAME, text, pair.pitch, limit, pair.at, named(a.item, b.item), nets, "drill_plated"
+            )
 
 
 RULE = Rule(names=(NAME,), find=find)

@@ -1,9 +1,10 @@
 """Each ground pad has vias of its own.
 
-What: each pad on gnd has at least ``vias.per_ground_pad`` vias of its own; pads that meet a carrier have none.
+What: each pad on gnd has at least ``vias.per_ground_pad`` vias of its own; pads that meet a carrier have
+none.
 Why: a via shared by two parts couples them, and one via has twice the inductance of two.
-How measured: vias set for the pad's part whose lands meet the pad or the ground copper that joins it to them;
-of two ground pads of one part the nearer one counts a via. Lines that end on gnd are not pads.
+How measured: vias set for the pad's part whose lands meet the pad or the ground copper that joins it to
+them; of two ground pads of one part the nearer one counts a via. Lines that end on gnd are not pads.
 Source: the number is the rule file's; two or more is common practice (IC makers' layout notes).
 """
 

@@ -2,8 +2,8 @@
 
 What: the drill of each via equals ``vias.drill``, its land ``vias.diameter``.
 Why: a via of another size is another tool in the drill rack, or has too small a land.
-How measured: the sizes of the via itself, equal to a nanometre. Whether the copper drawn around it is as wide
-is ``holes.min_annular_ring``.
+How measured: the sizes of the via itself, equal to a nanometre. Whether the copper drawn around it is as
+wide is ``holes.min_annular_ring``.
 Source: the sizes are the board house's.
 """
 

@@ -1,12 +1,14 @@
 """The gap between two nets stands the voltage between them.
 
-What: the distance between copper of two nets is at least what IPC-2221B table 6-1 (column ``voltage.condition``)
-or ``voltage.table`` asks for the direct voltage between them. With both given both are checked.
+What: the distance between copper of two nets is at least what IPC-2221B table 6-1 (column
+``voltage.condition``) or ``voltage.table`` asks for the direct voltage between them. With both given both
+are checked.
 Why: across too small a gap dirt and moisture creep, and in the end it arcs.
 How measured: exactly, polygon to polygon, on finished copper of both layers; net voltages from the DC
-solution, of nets joined by lines the pair with the largest difference. Voltages between the table's rows belong to the
-next row; beyond the last row of ``voltage.table`` that row holds and a line of the not-checked list says so. 10 nm short
-passes. RF peak voltages are not added: the circuit file gives no power.
+solution, of nets joined by lines the pair with the largest difference. Voltages between the table's rows
+belong to the next row; beyond the last row of ``voltage.table`` that row holds and a line of the
+not-checked list says so. 10 nm short passes. RF peak voltages are not added: the circuit file gives no
+power.
 Source: IPC-2221B (2012) table 6-1 as independent public code cites it; the standard's text was not read.
 """
 
@@ -14,10 +16,11 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
 
-from layoutgen.checks.board import TOLERANCE_NM, Board, Layer
+from layoutgen.checks.board import Board, Layer
 from layoutgen.checks.near import near_nets
 from layoutgen.checks.nodes import joined_nets
 from layoutgen.checks.outcome import Hit, Outcome, Rule, mm, named
+from layoutgen.checks.planar import TOLERANCE_NM
 from layoutgen.checks.records import NotChecked
 from layoutgen.formulas.limits import ipc2221b_clearance
 
@@ -76,7 +79,9 @@ def _beyond(board: Board, name: str, voltages: Mapping[str, tuple[float, float]]
         return
     last = max(float(up_to) for up_to, _ in board.limits.get(TABLE))
     if _largest(voltages) > last:
-        yield NotChecked(f"{TABLE} (above {last:g} V)", f"voltages reach {_largest(voltages):g} V; the last row is used")
+        yield NotChecked(
+            f"{TABLE} (above {last:g} V)", f"voltages reach {_largest(voltages):g} V; the last row is used"
+        )
 
 
 def _near(
@@ -85,14 +90,16 @@ def _near(
     """Yield the pairs of one layer that are too near for their voltage."""
     for pair in near_nets(layer, most):
         a, b = layer.pieces[pair.first], layer.pieces[pair.second]
-        if a.node not in voltages or b.node not in voltages:
+        one, other = voltages.get(a.node or ""), voltages.get(b.node or "")
+        if one is None or other is None:
             continue
-        volts = _between(voltages[a.node], voltages[b.node])
+        volts = _between(one, other)
         limit = _clearance(board, name, volts)
         if pair.distance < limit - TOLERANCE_NM:
+            asked = f"at least {mm(limit)} for {volts:.1f} V"
             yield Hit(
                 rule=name,
-                text=f"gap between {a.item} and {b.item} {mm(pair.distance)}, at least {mm(limit)} for {volts:.1f} V",
+                text=f"gap between {a.item} and {b.item} {mm(pair.distance)}, {asked}",
                 items=named(a.item, b.item),
                 at=pair.at,
                 measured=pair.distance / 1e6,

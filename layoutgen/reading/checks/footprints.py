@@ -8,7 +8,7 @@ from layoutgen.reading.checks.exclusive import forbid, require
 from layoutgen.reading.circuit_records import Footprint, Pad, Part
 from layoutgen.reading.draft import Draft, Table
 from layoutgen.reading.validate import misspelt
-from layoutgen.reading.wording import quote
+from layoutgen.reading.wording import Path, quote
 
 __all__ = ["check_footprints"]
 
@@ -52,12 +52,21 @@ def _check_pad(draft: Draft, footprint: Table, pad: Table) -> None:
 def _check_ground_pins(draft: Draft) -> None:
     """Check that pins whose pads are ground pads are on gnd."""
     for _, table in draft.tables("parts", Part):
-        pins = table.raw.get("pins")
         footprint = draft.footprints.get(str(table.raw.get("footprint")))
-        if footprint is None or not isinstance(pins, Mapping):
-            continue
-        for pin, net in pins.items():
-            pad = footprint.pads.get(pin)
-            if pad is not None and pad.ground is not None and isinstance(net, str) and net != "gnd":
-                text = f"the net {quote(net)} on a pad with ground = {quote(pad.ground)}"
-                draft.faults.add((*table.at("pins"), pin), text, '"gnd"')
+        for pad, key, net in _pad_nets(table, footprint) if footprint else ():
+            ground = footprint.pads[pad].ground if footprint and pad in footprint.pads else None
+            if ground is not None and isinstance(net, str) and net != "gnd":
+                text = f"the net {quote(net)} on a pad with ground = {quote(ground)}"
+                draft.faults.add((*table.path, *key), text, '"gnd"')
+
+
+def _pad_nets(part: Table, footprint: Footprint) -> list[tuple[str, Path, object]]:
+    """Return pad, key and net of a part's pins, or of its nets in the order of the footprint's pads."""
+    pins, nets = part.raw.get("pins"), part.raw.get("nets")
+    if isinstance(pins, Mapping):
+        return [(str(pin), ("pins", pin), net) for pin, net in pins.items()]
+    listed = nets if isinstance(nets, list | tuple) else ()
+    return [
+        (pad, ("nets", number), net)
+        for number, (pad, net) in enumerate(zip(footprint.pads, listed, strict=False))
+    ]

@@ -58,10 +58,11 @@ def _check_references(draft: Draft, sections: dict[str, str]) -> None:
 
 def _check_repeats(draft: Draft, spine: list[tuple[Path, str]]) -> None:
     """Check that the spine names each element once."""
-    names = [name for _, name in spine]
-    for number, (path, name) in enumerate(spine):
-        if name in names[:number]:
+    seen: set[str] = set()
+    for path, name in spine:
+        if name in seen:
             draft.faults.add_value(path, name, "each element once")
+        seen.add(name)
 
 
 def _check_radial(draft: Draft, path: tuple[str, ...], name: str, raw: Mapping[str, object]) -> None:

@@ -7,6 +7,7 @@ from typing import NamedTuple
 
 from layoutgen.reading.circuit_records import CoupledPair, Line, Part, Port
 from layoutgen.reading.draft import Draft, Table
+from layoutgen.reading.faults import SHOWN
 from layoutgen.reading.wording import Path, nearest, quote
 
 __all__ = ["check_nets", "possible_supplies"]
@@ -40,8 +41,9 @@ def check_nets(draft: Draft) -> None:
     told = {net: end for net, end in lonely.items() if net not in partners.values()}
     if len(told) <= _faulty_ends(draft, ends):
         return
+    few = len(told) <= SHOWN
     for net, end in told.items():
-        known = [other for other in (*used, "gnd") if other != net]
+        known = [other for other in (*used, "gnd") if other != net] if few else []
         found = f"the net {quote(net)}, used once"
         draft.faults.add(end.path, found, _advice(draft, net, partners, lonely, known))
 
@@ -56,7 +58,7 @@ def _faulty_ends(draft: Draft, ends: list[_End]) -> int:
 def _likely_slips(lonely: dict[str, _End]) -> dict[str, str]:
     """Return pairs of once-used nets that are most likely one net written in two ways: later -> earlier."""
     pairs: dict[str, str] = {}
-    names = list(lonely)
+    names = list(lonely) if len(lonely) <= SHOWN else []
     for number, net in enumerate(names):
         free = [other for other in names[:number] if other not in pairs and other not in pairs.values()]
         if guess := nearest(net, free):

@@ -99,11 +99,18 @@ def _check_pins(draft: Draft, table: Table) -> None:
         if pins.get(pin) == "gnd":
             text = f"a termination of the pin {quote(str(pin))}, which is on gnd"
             faults.add((*table.at("terminations"), pin), text, "terminations of pins on other nets")
+    _check_data_ports(draft, table)
+    _check_currents(draft, table)
+
+
+def _check_data_ports(draft: Draft, table: Table) -> None:
+    """Check that the data's ports are pins of the part, each once."""
+    seen: set[str] = set()
     for number, pin in enumerate(_listed(table.raw.get("data_ports"))):
         _check_pin(draft, table, ("data_ports", number), pin)
-        if pin in _listed(table.raw["data_ports"])[:number]:
-            faults.add_value((*table.at("data_ports"), number), pin, "each pin once")
-    _check_currents(draft, table)
+        if isinstance(pin, str) and pin in seen:
+            draft.faults.add_value((*table.at("data_ports"), number), pin, "each pin once")
+        seen.add(str(pin))
 
 
 def _listed(value: object) -> list[object]:
@@ -141,10 +148,18 @@ def _check_data(draft: Draft, table: Table, folder: Path) -> None:
     if match is None:
         faults.add_value(path, name, "a Touchstone file named .s1p, .s2p, ... or .ts")
         return
-    if not (folder / name).is_file():
+    if not _is_file(folder / name):
         faults.add_value(path, name, "an existing file; the path starts at the circuit file", "no such file")
     elif match[1]:
         _check_port_count(draft, table, int(match[1]))
+
+
+def _is_file(path: Path) -> bool:
+    """Tell whether a regular file is there; a path that the system refuses is none."""
+    try:
+        return path.is_file()
+    except (OSError, ValueError):
+        return False
 
 
 def _check_port_count(draft: Draft, table: Table, ports: int) -> None:

@@ -1,4 +1,4 @@
-"""Checks of positions against a board whose size is given: holes, ports, hinted parts and their pads."""
+"""Checks of positions against the board: holes, ports, hinted parts and their pads."""
 
 from __future__ import annotations
 
@@ -15,20 +15,23 @@ _EPSILON = 1e-12
 """Rounding of sums of floats, far below the grid [m]."""
 
 Point = tuple[float, float]
+_GROWING: Point = (math.inf, math.inf)
+"""Size of a board that grows to what it holds [m]."""
 
 
 def check_places(draft: Draft) -> None:
-    """Check that everything with a place lies on the board; nothing to check while the board may grow."""
+    """Check that everything with a place lies on the board; one that may grow only has its corner."""
     board = draft.board
-    if board is None or board.size is None:
+    if board is None:
         return
+    size = board.size or _GROWING
     for number, hole in enumerate(board.holes):
-        if not _inside(hole.at, hole.diameter / 2.0, board.size):
-            _outside(draft, ("board", "holes", number, "at"), "a hole", board.size)
-    _check_ports(draft, board.size)
+        if not _inside(hole.at, hole.diameter / 2.0, size):
+            _outside(draft, ("board", "holes", number, "at"), "a hole", size)
+    _check_ports(draft, size)
     for name, hint in draft.layout.hints.items() if draft.layout else ():
         if hint.at is not None:
-            _check_hint(draft, name, hint, board.size)
+            _check_hint(draft, name, hint, size)
 
 
 def _inside(point: Point, reach: float, size: Point) -> bool:
@@ -41,9 +44,12 @@ def _inside(point: Point, reach: float, size: Point) -> bool:
 
 def _outside(draft: Draft, path: Path, what: str, size: Point) -> None:
     """Add a fault of a thing that is not wholly on the board."""
-    width, height = (quantity_text(length, "length") for length in size)
-    line = draft.faults.line_of(("board", "size"))
-    draft.faults.add(path, f"{what} not wholly on the board", f"within {width} by {height} ({line})")
+    if size == _GROWING:
+        allowed = "x and y from 0 mm: the origin is the board's south-west corner"
+    else:
+        width, height = (quantity_text(length, "length") for length in size)
+        allowed = f"within {width} by {height} ({draft.faults.line_of(('board', 'size'))})"
+    draft.faults.add(path, f"{what} not wholly on the board", allowed)
 
 
 def _check_ports(draft: Draft, size: Point) -> None:
@@ -54,7 +60,8 @@ def _check_ports(draft: Draft, size: Point) -> None:
         length = size[1] if port.edge in ("west", "east") else size[0]
         if not 0.0 <= port.at <= length:
             raw = draft.data["ports"][name]["at"]
-            allowed = f"0 mm to {quantity_text(length, 'length')} along the {port.edge} edge"
+            upper = "" if math.isinf(length) else f" to {quantity_text(length, 'length')}"
+            allowed = f"from 0 mm{upper} along the {port.edge} edge"
             draft.faults.add_value(("ports", name, "at"), raw, allowed)
 
 

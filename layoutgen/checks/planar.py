@@ -1,0 +1,106 @@
+"""Plane geometry that the rules share: tolerances, joining of polygons, middles of shortest connections.
+
+All in nanometres.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+from typing import Any
+
+import numpy as np
+import numpy.typing as npt
+import shapely
+from shapely.geometry.base import BaseGeometry as Geometry
+
+from layoutgen.checks.netgraph import clusters
+from layoutgen.geometry import Point
+
+__all__ = [
+    "CHORD_NM",
+    "CORNER_LIMITS",
+    "TOLERANCE_NM",
+    "Geometry",
+    "Polygons",
+    "array_of",
+    "merge",
+    "middle",
+    "near_points",
+    "parts",
+    "points_of",
+    "whole",
+    "within",
+]
+
+Polygons = npt.NDArray[np.object_]
+Ints = npt.NDArray[np.intp]
+Bools = npt.NDArray[np.bool_]
+
+CHORD_NM = 5.0
+"""Largest distance of a chord from its arc in the polygons judged [nm]."""
+
+TOLERANCE_NM = 10.0
+"""What a distance may fall short of its limit [nm]: two chords, or two roundings to whole nanometres."""
+
+CORNER_LIMITS = 3.5
+"""Two places of one outline nearer to each other along it than this many limits are a corner [-]."""
+
+
+def merge(polygons: npt.NDArray[np.object_], pairs: npt.NDArray[np.intp]) -> npt.NDArray[np.object_]:
+    """Return disjoint polygons: the union of those that the index pairs join, the others as they are."""
+    label = clusters(len(polygons), pairs)
+    order = np.argsort(label, kind="stable")
+    bounds = np.flatnonzero(np.diff(label[order])) + 1
+    out: list[shapely.Polygon] = []
+    for group in np.split(order, bounds) if len(order) else ():
+        joined = polygons[group[0]] if len(group) == 1 else shapely.union_all(polygons[group])
+        out.extend(parts(joined))
+    return array_of(out)
+
+
+def parts(geometry: Geometry) -> list[shapely.Polygon]:
+    """Return the polygons that a geometry is made of; points and lines are dropped."""
+    pieces = shapely.get_parts(shapely.get_parts(geometry))
+    return [piece for piece in pieces if piece.geom_type == "Polygon" and not piece.is_empty]
+
+
+def middle(a: Geometry, b: Geometry) -> Point:
+    """Return the middle of the shortest connection of two geometries [nm], or of their overlap."""
+    if a.intersects(b):
+        shared = a.intersection(b)
+        largest = max(shapely.get_parts(shared), key=lambda part: (part.area, part.length))
+        inside = largest.centroid if largest.intersects(largest.centroid) else largest.representative_point()
+        return whole(inside.x, inside.y)
+    (ax, ay), (bx, by) = shapely.get_coordinates(shapely.shortest_line(a, b)).tolist()
+    return whole((ax + bx) / 2.0, (ay + by) / 2.0)
+
+
+def whole(x: float, y: float) -> Point:
+    """Return a point in whole nanometres."""
+    return math.floor(x + 0.5), math.floor(y + 0.5)
+
+
+def array_of(items: Sequence[Geometry]) -> npt.NDArray[np.object_]:
+    """Return geometries as an array of objects, also when there are none."""
+    out = np.empty(len(items), dtype=object)
+    out[:] = items
+    return out
+
+
+def points_of(places: Sequence[tuple[float, float]]) -> npt.NDArray[np.object_]:
+    """Return points as an array of objects, also when there are none."""
+    return array_of(list(shapely.points(places)) if places else [])
+
+
+def near_points(tree: shapely.STRtree, points: Polygons, reach: npt.NDArray[np.float64]) -> tuple[Ints, Ints]:
+    """Return the index pairs (point, member of the tree) that are within each point's reach (N,) [nm]."""
+    query: Any = tree.query
+    point, member = query(points, predicate="dwithin", distance=reach)
+    return point, member
+
+
+def within(a: Polygons | Geometry, b: Polygons | Geometry, reach: npt.NDArray[np.float64]) -> Bools:
+    """Return pair by pair whether geometries are within a reach (N,) [nm] of each other."""
+    dwithin: Any = shapely.dwithin
+    return np.asarray(dwithin(a, b, reach), dtype=bool)

@@ -1,0 +1,146 @@
+"""Booleans and offsets: on the grid, exact, corners kept."""
+
+from __future__ import annotations
+
+import math
+
+import numpy as np
+import pytest
+import shapely
+from hypothesis import given, settings
+from hypothesis import strategies as st
+
+from layoutgen.geometry import (
+    Ring,
+    circumscribed,
+    closed,
+    cut,
+    grow,
+    joined,
+    offset_ring,
+    offset_rings,
+    opened,
+    overlap,
+    pieces,
+    rings_of,
+)
+
+COORDINATE = st.integers(-40_000_000, 40_000_000)
+
+
+@settings(max_examples=80, deadline=None, derandomize=True)
+@given(COORDINATE, COORDINATE, st.integers(10_000, 5_000_000), st.sampled_from((8, 16, 32, 64)))
+def test_circumscribed_polygon_holds_the_circle(x: int, y: int, radius: int, sides: int) -> None:
+    """Would catch an inscribed polygon, whose flats come nearer than the distance asked for."""
+    polygon = circumscribed(x, y, radius, sides)
+    assert polygon.exterior.distance(shapely.Point(x, y)) >= radius
+    assert max(math.dist(p, (x, y)) for p in polygon.exterior.coords) <= (radius + 3) / math.cos(
+        math.pi / sides
+    )
+
+
+def test_booleans_stay_on_the_nanometre_grid() -> None:
+    """Would catch plain booleans, which leave fractions of a nanometre where skew edges cross."""
+    rng = np.random.default_rng(7)
+    shapes = [
+        shapely.Polygon(rng.integers(-(10**7), 10**7, (3, 2)).astype(float)).buffer(0) for _ in range(40)
+    ]
+    for result in (
+        joined(shapes),
+        cut(shapes[0], shapes[1]),
+        overlap(joined(shapes[:9]), joined(shapes[9:])),
+    ):
+        coordinates = shapely.get_coordinates(result)
+        assert np.array_equal(coordinates, np.rint(coordinates))
+
+
+def test_touching_shapes_leave_no_lines_or_points_behind() -> None:
+    """Would catch a mixed result, on which the next boolean fails."""
+    left, right = shapely.box(0, 0, 10, 10), shapely.box(10, 2, 20, 8)
+    assert overlap(left, right).is_empty
+    partly = overlap(
+        shapely.MultiPolygon([left, shapely.box(30, 0, 40, 10)]), joined([right, shapely.box(25, 0, 35, 5)])
+    )
+    assert {part.geom_type for part in shapely.get_parts(partly)} == {"Polygon"}
+    assert cut(partly, left).area == partly.area
+
+
+def test_growing_keeps_right_angles_and_cuts_acute_tips() -> None:
+    """Would catch round joins (chords on the pour) and mitres that shoot far out of a sharp tip."""
+    square = grow(shapely.box(0, 0, 1000, 1000), 300)
+    assert square.equals(shapely.box(-300, -300, 1300, 1300))
+    tip = grow(shapely.Polygon([(0, 0), (10_000, 900), (10_000, -900)]), 300)
+    assert tip.bounds[0] > -300 * 1.6
+
+
+def test_opening_takes_fins_and_leaves_the_rest_untouched() -> None:
+    """Would catch an opening that rounds corners or moves edges that need no change."""
+    body = shapely.box(0, 0, 10_000, 10_000)
+    fin = shapely.box(10_000, 4000, 15_000, 4400)
+    assert opened(joined([body, fin]), 250).equals(body)
+    assert opened(joined([body, fin]), 150).equals(joined([body, fin]))
+
+
+def test_closing_fills_slits_and_leaves_the_rest_untouched() -> None:
+    """Would catch a closing that grows the outline."""
+    comb = cut(shapely.box(0, 0, 10_000, 10_000), shapely.box(4000, 2000, 4400, 10_000))
+    assert closed(comb, 250).equals(shapely.box(0, 0, 10_000, 10_000))
+    assert closed(comb, 150).equals(comb)
+
+
+def test_pieces_are_in_the_same_order_however_they_were_made() -> None:
+    """Would catch an order that depends on how a union was computed."""
+    boxes = [shapely.box(x, y, x + 5, y + 5) for x in (0, 10, 20) for y in (0, 10)]
+    assert [p.bounds for p in pieces(joined(boxes))] == [p.bounds for p in pieces(joined(boxes[::-1]))]
+
+
+def test_rings_run_outline_ccw_holes_cw_without_straight_vertices() -> None:
+    """Would catch outlines the wrong way round, and vertices in the middle of an edge."""
+    polygon = shapely.Polygon(
+        [(0, 0), (0, 50), (0, 100), (100, 100), (100, 0), (50, 0)], [[(20, 20), (40, 20), (40, 40), (20, 40)]]
+    )
+    outline, holes = rings_of(polygon)
+    assert outline.points == ((0, 0), (100, 0), (100, 100), (0, 100))
+    assert not shapely.LinearRing(holes[0].points).is_ccw
+    assert holes[0].points[0] == (20, 20)
+
+
+def test_offset_moves_every_edge_by_the_distance_and_holes_shrink() -> None:
+    """Would catch an undercut that widens holes, or that is lost at bends."""
+    polygon = shapely.Polygon(
+        [(0, 0), (900, 0), (900, 500), (0, 500)], [[(100, 100), (100, 300), (300, 300), (300, 100)]]
+    )
+    ((outline, holes),) = offset_rings(polygon, 20)
+    assert outline.points == ((-20, -20), (920, -20), (920, 520), (-20, 520))
+    assert shapely.Polygon(holes[0].points).bounds == (120, 120, 280, 280)
+    assert offset_rings(polygon, 0) == [rings_of(polygon)]
+
+
+@settings(max_examples=50, deadline=None, derandomize=True)
+@given(st.integers(1, 60), st.integers(0, 89))
+def test_offset_of_a_turned_box_is_exact_within_rounding(distance: int, degrees: int) -> None:
+    """Would catch an offset that is only right for edges along the axes."""
+    c, s = math.cos(math.radians(degrees)), math.sin(math.radians(degrees))
+    points = tuple(
+        (round(x * c - y * s), round(x * s + y * c)) for x, y in ((0, 0), (9000, 0), (9000, 4000), (0, 4000))
+    )
+    grown = offset_ring(Ring(points), distance)
+    assert shapely.Polygon(points).exterior.distance(shapely.Polygon(grown.points).exterior) == pytest.approx(
+        distance, abs=1.5
+    )
+
+
+def test_offset_of_a_circle_is_a_circle_and_other_arcs_are_refused() -> None:
+    """Would catch arcs that are turned into chords without a word."""
+    assert offset_ring(Ring.circle(5, 7, 100), 30) == Ring.circle(5, 7, 130)
+    with pytest.raises(ValueError, match="straight"):
+        offset_ring(Ring(((0, 0), (10, 0), (10, 10)), (0.0, 0.5, 0.0)), 3)
+
+
+def test_a_polygon_too_fine_for_exact_offset_still_comes_out_valid() -> None:
+    """Would catch crossed outlines from edges shorter than the offset."""
+    notched = shapely.Polygon(
+        [(0, 0), (1000, 0), (1000, 1000), (505, 1000), (500, 990), (495, 1000), (0, 1000)]
+    )
+    for outline, holes in offset_rings(notched, 80):
+        assert shapely.Polygon(outline.points, [h.points for h in holes]).is_valid

@@ -1,0 +1,259 @@
+"""All files of a run, or none: killed, failing and repeated writes."""
+
+from __future__ import annotations
+
+import os
+import random
+import signal
+import subprocess
+import sys
+import time
+from pathlib import Path
+
+import pytest
+
+import layoutgen.writers.folder as folder_module
+from layoutgen.errors import WrongInputError
+from layoutgen.writers.folder import prepare_folder, recover, write_files
+
+OLD = {"board.gds": b"old gds", "board.svg": b"old svg", "wanted.s4p": b"old", "report.json": b""}
+OLD["report.json"] = b'{"files": [{"path": "board.gds"}, {"path": "board.svg"}, {"path": "wanted.s4p"}]}'
+NEW = {"board.gds": b"new gds", "board.png": b"new png", "board.svg": b"new svg", "wanted.s2p": b"new"}
+NEW["report.json"] = b'{"files": [{"path": "board.gds"}]}'
+FOREIGN = {"notes.txt": b"mine", "board.toml": b"mine", "as_drawn.s9p": b"mine"}
+
+LOADS = f"""
+import importlib.util, os, sys
+from pathlib import Path
+spec = importlib.util.spec_from_file_location("folder", {folder_module.__file__!r})
+module = importlib.util.module_from_spec(spec)
+spec.loader.exec_module(module)
+write_files = module.write_files
+"""
+"""Loads the module without the package around it, which would take longest of all to import."""
+
+DIES = """
+folder, limit, files = Path(sys.argv[1]), int(sys.argv[2]), eval(sys.argv[3])
+count = 0
+def dying(real):
+    def call(*args, **kwargs):
+        global count
+        if count == limit:
+            os._exit(9)
+        count += 1
+        return real(*args, **kwargs)
+    return call
+for name in ("rename", "replace", "unlink", "rmdir", "mkdir", "link"):
+    setattr(os, name, dying(getattr(os, name)))
+write_files(folder, files)
+"""
+
+
+def contents(folder: Path) -> dict[str, bytes]:
+    """Return the folder's files; working folders are not looked into."""
+    return {path.name: path.read_bytes() for path in folder.iterdir() if path.is_file()}
+
+
+def leftovers(folder: Path) -> list[str]:
+    return sorted(path.name for path in folder.iterdir() if path.is_dir())
+
+
+@pytest.fixture
+def filled(tmp_path: Path) -> Path:
+    """A folder with the old set and files of other people."""
+    folder = tmp_path / "out"
+    folder.mkdir()
+    for name, data in (OLD | FOREIGN).items():
+        (folder / name).write_bytes(data)
+    (folder / "photos").mkdir()
+    (folder / "photos" / "one.jpg").write_bytes(b"mine")
+    return folder
+
+
+def test_a_new_folder_appears_with_all_files(tmp_path: Path) -> None:
+    """Missing parents are made; nothing but the files is left."""
+    folder = tmp_path / "a" / "b" / "out"
+    write_files(folder, NEW)
+    assert contents(folder) == NEW
+    assert leftovers(folder) == []
+    assert [path.name for path in folder.parent.iterdir()] == ["out"]
+
+
+def test_a_new_folder_can_be_read_by_others(tmp_path: Path) -> None:
+    """A private temporary folder renamed would stay private."""
+    write_files(tmp_path / "out", NEW)
+    (tmp_path / "plain").mkdir()
+    assert (tmp_path / "out").stat().st_mode == (tmp_path / "plain").stat().st_mode
+
+
+def test_files_of_others_stay(filled: Path) -> None:
+    """Touchstone files of the last run with another number of ports go; what it did not list stays."""
+    write_files(filled, NEW)
+    assert contents(filled) == NEW | FOREIGN
+    assert leftovers(filled) == ["photos"]
+    assert (filled / "photos" / "one.jpg").read_bytes() == b"mine"
+
+
+@pytest.mark.parametrize(
+    "report", [b"not json", b"[]", b'{"files": 3}', b'{"files": [{"path": "../x.s4p"}, 7]}']
+)
+def test_a_strange_report_of_before_harms_nothing(filled: Path, report: bytes) -> None:
+    """Somebody else's report.json must not stop the run, nor make it delete anything."""
+    (filled / "report.json").write_bytes(report)
+    write_files(filled, NEW)
+    assert contents(filled) == NEW | FOREIGN | {"wanted.s4p": b"old"}
+
+
+def test_every_place_of_death_leaves_the_old_or_the_new_set(filled: Path) -> None:
+    """Killed before each single step in turn; the next run finds one whole set, others' files untouched."""
+    seen = set()
+    for limit in range(100):
+        for path in list(filled.iterdir()):
+            if path.name in OLD | NEW:
+                path.unlink()
+        for name, data in OLD.items():
+            (filled / name).write_bytes(data)
+        command = [sys.executable, "-c", LOADS + DIES, str(filled), str(limit), repr(NEW)]
+        status = subprocess.run(command, check=False).returncode
+        recover(filled)
+        found = contents(filled)
+        assert found in (OLD | FOREIGN, NEW | FOREIGN), f"died before step {limit}"
+        assert leftovers(filled) == ["photos"]
+        seen.add(found["board.gds"])
+        if status == 0:
+            break
+    assert status == 0
+    assert limit > 10
+    assert seen == {b"old gds", b"new gds"}
+
+
+def test_death_in_a_new_folder_leaves_none(tmp_path: Path) -> None:
+    """The folder appears by one rename: either it is not there or it is whole."""
+    for limit in range(20):
+        folder = tmp_path / str(limit) / "out"
+        folder.parent.mkdir()
+        command = [sys.executable, "-c", LOADS + DIES, str(folder), str(limit), repr(NEW)]
+        status = subprocess.run(command, check=False).returncode
+        assert not folder.exists() or contents(folder) == NEW
+        if status == 0:
+            break
+    assert status == 0
+    assert contents(folder) == NEW
+
+
+WRITES = """
+folder = Path(sys.argv[1])
+print("ready", flush=True)
+k = 0
+while True:
+    k += 1
+    files = {f"file{n}": str(k).encode() * 2000 for n in range(8)}
+    write_files(folder, files | {"report.json": str(k).encode()})
+"""
+
+
+def test_killed_at_random_moments_the_set_is_whole(filled: Path) -> None:
+    """Twenty kills of a process that does nothing but replace the set."""
+    rng = random.Random(5)
+    for _ in range(20):
+        process = subprocess.Popen(
+            [sys.executable, "-c", LOADS + WRITES, str(filled)], stdout=subprocess.PIPE
+        )
+        assert process.stdout is not None
+        process.stdout.readline()
+        time.sleep(rng.uniform(0.0, 0.05))
+        process.send_signal(signal.SIGKILL)
+        process.wait()
+        process.stdout.close()
+        recover(filled)
+        versions = {name: data for name, data in contents(filled).items() if name.startswith("file")}
+        assert len(set(versions.values())) <= 1
+        assert len(versions) in (0, 8)
+        assert contents(filled).items() >= FOREIGN.items()
+
+
+def test_a_failing_rename_is_undone(filled: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    """A file held open elsewhere, at any of the renames: the old set is back, and the message says why."""
+    real, failures = os.replace, 0
+    for limit in range(12):
+        calls = 0
+
+        def failing(source: str, target: str, limit: int = limit) -> None:
+            nonlocal calls
+            calls += 1
+            if calls == limit + 1:
+                raise PermissionError(13, "Permission denied", str(target))
+            real(source, target)
+
+        monkeypatch.setattr(os, "replace", failing)
+        try:
+            write_files(filled, NEW)
+        except WrongInputError as error:
+            failures += 1
+            assert "permission denied" in str(error)
+            assert contents(filled) == OLD | FOREIGN
+            assert leftovers(filled) == ["photos"]
+        else:
+            break
+    assert failures == len(NEW)
+    assert contents(filled) == NEW | FOREIGN
+
+
+def test_a_full_disk_leaves_the_old_set(filled: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    """Written in place, a full disk would leave half a file."""
+
+    def full(handle: int) -> None:
+        raise OSError(28, "No space left on device")
+
+    monkeypatch.setattr(os, "fsync", full)
+    with pytest.raises(WrongInputError, match="no space left"):
+        write_files(filled, NEW)
+    assert contents(filled) == OLD | FOREIGN
+    assert leftovers(filled) == ["photos"]
+
+
+def test_preparing_leaves_no_trace(tmp_path: Path) -> None:
+    """A probe file, or the folder itself, would be left behind by a run that then fails."""
+    prepare_folder(tmp_path / "a" / "out", ["x.gds"])
+    assert list(tmp_path.iterdir()) == []
+
+
+def test_a_file_in_the_way_is_refused_before_any_work(tmp_path: Path) -> None:
+    """Found out only when writing, minutes of work would be lost."""
+    (tmp_path / "out").write_bytes(b"a file")
+    for folder in (tmp_path / "out", tmp_path / "out" / "deeper"):
+        with pytest.raises(WrongInputError, match="cannot be written"):
+            prepare_folder(folder)
+    assert (tmp_path / "out").read_bytes() == b"a file"
+
+
+def test_a_folder_where_a_file_must_go_is_refused(tmp_path: Path) -> None:
+    """A file cannot replace a folder; found half way, others would have been replaced."""
+    (tmp_path / "x.gds").mkdir()
+    with pytest.raises(WrongInputError, match=r"x\.gds"):
+        prepare_folder(tmp_path, ["x.svg", "x.gds"])
+
+
+@pytest.mark.skipif(not Path("/proc/self").is_dir(), reason="needs a folder that nobody can write to")
+def test_a_folder_that_nobody_can_write_to_is_refused() -> None:
+    """Also for a user who may do everything else."""
+    with pytest.raises(WrongInputError, match="cannot be written"):
+        prepare_folder(Path("/proc/self/out"))
+
+
+def test_preparing_mends_what_a_killed_run_left(filled: Path) -> None:
+    """A stage that was never committed is rubbish; the next run must not trip over it."""
+    (filled / ".layoutgen-stage").mkdir()
+    (filled / ".layoutgen-stage" / "board.gds").write_bytes(b"half")
+    prepare_folder(filled)
+    assert leftovers(filled) == ["photos"]
+    assert contents(filled) == OLD | FOREIGN
+
+
+def test_a_relative_folder_and_the_current_one_work(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    """--out . is common."""
+    monkeypatch.chdir(tmp_path)
+    for folder in (Path(), Path("deep/er")):
+        prepare_folder(folder)
+        write_files(folder, NEW)
+        assert contents(folder) == NEW
