@@ -66,9 +66,11 @@ def _settled(circuit: Circuit, clock: _Clock) -> tuple[Artwork, tuple[Note, ...]
     """Size, place and draw until the pour's distances as drawn leave the widths where they are."""
     with clock("sizing"):
         sized = size_circuit(circuit)
+    choices = None
     for _ in range(MAX_ROUNDS):
         with clock("placement"):
-            placement = with_placed_bias(place(sized))
+            placement = with_placed_bias(place(sized, choices))
+            choices = placement.choices
         with clock("artwork"):
             artwork = draw(placement)
         with clock("sizing"):

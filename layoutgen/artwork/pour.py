@@ -53,7 +53,7 @@ def ground_pieces(placement: Placement) -> list[tuple[str, Ring, Origin]]:
 def _own_ground(placement: Placement) -> BaseGeometry:
     """Return the ground copper that came with parts and lines [nm]: pads, pieces, lands of vias."""
     shapes: list[BaseGeometry] = [ring.polygon() for _, ring, _ in ground_pieces(placement)]
-    shapes += [Ring.circle(v.x, v.y, v.land // 2).polygon() for v in placement.vias if v.net == GND]
+    shapes += [circumscribed(v.x, v.y, v.land / 2, 48) for v in placement.vias if v.net == GND]
     return joined(shapes)
 
 
@@ -107,14 +107,16 @@ def _keepout(placement: Placement, limits: Limits, conductors: Sequence[Conducto
 def _spaced(pour: BaseGeometry, own: BaseGeometry, limits: Limits) -> BaseGeometry:
     """Return the pour stepped back where it ends just short of ground copper of a part.
 
-    Such a slot can be neither etched nor, being within a line's distance, filled. Stepping back may leave
-    another one, so it is looked for again, a few times.
+    Such a slot can be neither etched nor, being within a line's distance, filled. About it the pour keeps the
+    least gap to that copper; should that leave another slot, it is looked for again, a few times.
     """
+    away = grow(own, limits.min_gap)
     for _ in range(_MOST_STEPS):
         both = joined([pour, own])
         slots = pieces(cut(closed(both, limits.min_gap / 2.0), both))
         real = [slot for slot in slots if slot.area > _WASH_NM * limits.min_gap]
         if not real:
             break
-        pour = cut(pour, joined(grow(slot, limits.min_gap) for slot in real))
+        about = joined(shapely.box(*grow(slot, limits.min_gap).bounds) for slot in real)
+        pour = cut(pour, overlap(away, about))
     return pour

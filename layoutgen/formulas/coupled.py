@@ -131,7 +131,7 @@ def _air_capacitances(u: Array, g: Array) -> tuple[Array, Array]:
     q7 = (10.0 + 190.0 * g**2) / (1.0 + 82.3 * g**3)
     q8 = np.exp(-6.5 - 0.95 * np.log(g) - np.minimum((g / 0.15) ** 5, 700.0))
     q9 = np.log(q7) * (q8 + 1.0 / 16.5)
-    q10 = q4 - q5 / q2 * np.exp(np.log(u) * q6 * u**-q9)
+    q10 = q4 - q5 / q2 * np.exp(np.minimum(np.log(u) * q6 * u**-q9, 9.0))
     single = ETA0 / hammerstad_jensen_1980(u, 1.0).impedance
     return np.maximum(single - q4, 0.05 * single), single - q10
 

@@ -70,21 +70,20 @@ def hammerstad_jensen_1980(u: ArrayLike, er: ArrayLike, t: ArrayLike = 0.0) -> L
     u, er, t = np.clip(u, 1e-6, 1e6), np.clip(er, 1.0, 1e4), np.clip(t, 0.0, 1e3)
     if not np.any(t > 0.0):
         ee = _permittivity(u, er)
-        return LineResult(_air_impedance(u) / np.sqrt(ee), ee, _shaped(in_range, ee))
+        return _shaped(_air_impedance(u) / np.sqrt(ee), ee, in_range)
     widened = 4.0 * math.e * np.tanh(np.sqrt(6.517 * u)) ** 2
     du_air = t / math.pi * np.log1p(widened / np.maximum(t, _TINY))
     du = 0.5 * du_air * (1.0 + 1.0 / np.cosh(np.sqrt(er - 1.0)))
     z_air, ee = _air_impedance(u + du), _permittivity(u + du, er)
-    return LineResult(
-        z_air / np.sqrt(ee),
-        ee * (_air_impedance(u + du_air) / z_air) ** 2,
-        _shaped(in_range, ee),
-    )
+    return _shaped(z_air / np.sqrt(ee), ee * (_air_impedance(u + du_air) / z_air) ** 2, in_range)
 
 
-def _shaped(in_range: Flags, like: Array) -> Flags:
-    """Return the flags with the shape of a result."""
-    return np.broadcast_to(in_range, np.shape(like))
+def _shaped(impedance: Array, ee: Array, in_range: Flags) -> LineResult:
+    """Return the result with one shape, that of the flags, which have seen all inputs."""
+    shape = np.shape(in_range)
+    if np.shape(impedance) != shape:
+        impedance, ee = np.broadcast_to(impedance, shape), np.broadcast_to(ee, shape)
+    return LineResult(impedance, ee, in_range)
 
 
 def _air_impedance(u: Array) -> Array:
@@ -134,8 +133,7 @@ def hammerstad_1975(u: ArrayLike, er: ArrayLike) -> LineResult:
     ee = 0.5 * (er + 1.0) + 0.5 * (er - 1.0) * filling
     narrow = 60.0 * np.log(8.0 / u + 0.25 * u)
     wide = 120.0 * math.pi / (u + 1.393 + 0.667 * np.log(u + 1.444))
-    z = np.where(u <= 1.0, narrow, wide) / np.sqrt(ee)
-    return LineResult(z, ee, _shaped(in_range, ee))
+    return _shaped(np.where(u <= 1.0, narrow, wide) / np.sqrt(ee), ee, in_range)
 
 
 def kirschning_jansen_1982_permittivity(ee: ArrayLike, u: ArrayLike, er: ArrayLike, fh: ArrayLike) -> Array:

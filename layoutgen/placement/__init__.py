@@ -12,6 +12,8 @@ the best drawings so far, rejecting by ``clearance``; ``finish`` settles the boa
 from layoutgen.placement.place import place
 from layoutgen.placement.records import (
     Bend,
+    Choice,
+    Choices,
     PlacedHole,
     PlacedLine,
     PlacedPad,
@@ -26,6 +28,8 @@ from layoutgen.placement.records import (
 
 __all__ = [
     "Bend",
+    "Choice",
+    "Choices",
     "PlacedHole",
     "PlacedLine",
     "PlacedPad",

@@ -116,7 +116,7 @@ def edge_margins(limits: Limits, pour_gap: int, ground_ring: int, *, tight: bool
         Kind.GROUND: limits.margin,
         Kind.BODY: limits.margin,
         Kind.CUTOUT: limits.margin + max(ring, limits.margin),
-        Kind.HOLE: max(limits.hole_edge, limits.margin),
+        Kind.HOLE: max(limits.hole_edge, limits.margin, limits.margin + limits.hole + ring),
     }
 
 

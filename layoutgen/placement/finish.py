@@ -15,6 +15,7 @@ from layoutgen.placement.frame import Box, Pose, ring_to_world, to_world, unit
 from layoutgen.placement.model import Model, strip_owner
 from layoutgen.placement.records import (
     Bend,
+    Choices,
     PlacedHole,
     PlacedLine,
     PlacedPad,
@@ -80,8 +81,8 @@ def _axis(low: float, high: float, least: float, most: float, size: float) -> tu
     return round(start - more / 2), need, 0
 
 
-def finish(model: Model, lengths: LineLengths, state: State) -> Placement:
-    """Return the placement of a finished state."""
+def finish(model: Model, lengths: LineLengths, state: State, effort: int = 0) -> Placement:
+    """Return the placement of a finished state; ``effort`` is the one that found it."""
     frame = frame_of(state)
     maker = _Maker(model, lengths, state, frame)
     lines = {name: maker.line(state.lines[name]) for name in model.sized.lines if name in state.lines}
@@ -106,6 +107,7 @@ def finish(model: Model, lengths: LineLengths, state: State) -> Placement:
         holes=maker.holes(),
         ground_shapes=maker.grounds(),
         notes=maker.notes(),
+        choices=Choices(effort, state.start, state.ways),
     )
 
 

@@ -3,12 +3,14 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
+from dataclasses import replace
+from itertools import islice
 
 from layoutgen.errors import InfeasibleError
 from layoutgen.placement.budgets import LineLengths
 from layoutgen.placement.finish import finish, frame_of
 from layoutgen.placement.model import Model
-from layoutgen.placement.records import Placement
+from layoutgen.placement.records import Choices, Placement
 from layoutgen.placement.search import Effort, Failure, Search, drawing_cost
 from layoutgen.placement.start import first_states, join_root
 from layoutgen.placement.state import State
@@ -26,13 +28,15 @@ _EFFORTS = (
 _SHIFTS = (6_000_000, -6_000_000, 12_000_000, -12_000_000, 25_000_000, -25_000_000)
 
 
-def place(sized: SizedCircuit) -> Placement:
+def place(sized: SizedCircuit, like: Choices | None = None) -> Placement:
     """Return poses and centre-lines for a sized circuit.
 
     The search is deterministic: the same circuit gives the same placement.
 
     Args:
         sized: Every width, electrical length and land.
+        like: What an earlier placement of the circuit decided; kept where it still fits, which saves the
+            search when only lengths have changed a little.
 
     Raises:
         InfeasibleError: No placement was found, or a hint cannot be kept; names the element, what stands in
@@ -45,13 +49,25 @@ def place(sized: SizedCircuit) -> Placement:
     for name in sized.lines:
         if not sized.lines[name].free:
             lengths.by_bends(name)
+    if like is not None and (again := _again(model, tour, lengths, like)) is not None:
+        return finish(model, lengths, again, like.effort)
     failure: Failure | None = None
-    for effort in _EFFORTS:
+    for number, effort in enumerate(_EFFORTS):
         best, found = _attempt(model, tour, lengths, effort)
         if best is not None:
-            return finish(model, lengths, best)
+            return finish(model, lengths, best, number)
         failure = failure or found  # the plainest drawing's reason is the one to tell
     raise _infeasible(model, tour, lengths, failure)
+
+
+def _again(model: Model, tour: Tour, lengths: LineLengths, like: Choices) -> State | None:
+    """Return the state that earlier choices give, None where they no longer fit."""
+    if len(tour.roots) > 1:
+        return None
+    search = Search(model, tour, lengths, _EFFORTS[like.effort])
+    starts = first_states(model, tour, search.layer, search.margins)
+    start = next(islice(starts, like.start, None), None)
+    return None if start is None else search.replay(start, like)
 
 
 def _attempt(
@@ -61,8 +77,9 @@ def _attempt(
     best: tuple[float, State] | None = None
     failure: Failure | None = None
     search = Search(model, tour, lengths, effort)
-    for start in first_states(model, tour, search.layer, search.margins, sized_board=sized_board):
-        for state in _all_trees(search, start):
+    starts = first_states(model, tour, search.layer, search.margins, sized_board=sized_board)
+    for number, start in enumerate(starts):
+        for state in _all_trees(search, replace(start, start=number)):
             frame = frame_of(state)
             cost = drawing_cost(frame.width * frame.height, state.bends, state.crossings)
             if best is None or cost < best[0]:

@@ -11,6 +11,8 @@ from layoutgen.sizing import BudgetEntry, SizedCircuit
 
 __all__ = [
     "Bend",
+    "Choice",
+    "Choices",
     "PlacedHole",
     "PlacedLine",
     "PlacedPad",
@@ -162,12 +164,38 @@ class PlacedHole:
     origin: Origin
 
 
+@dataclass(frozen=True, slots=True)
+class Choice:
+    """How one element was laid: turn off its node [deg], side of banks or pairs, word, legs [nm]."""
+
+    turn: float
+    side: int
+    word: tuple[float, ...] = ()
+    legs: tuple[int, ...] = ()
+    edge: str | None = None
+
+    @property
+    def shape(self) -> tuple[object, ...]:
+        """What stays the same when only lengths change."""
+        return self.turn, self.side, self.word, self.edge
+
+
+@dataclass(frozen=True, slots=True)
+class Choices:
+    """What the search decided, so that a drawing with slightly other lengths can be made the same way."""
+
+    effort: int
+    start: int
+    ways: Mapping[str, Choice]
+
+
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Placement:
     """Everything that has a place. Board from (0, 0) to (width, height) [nm], corners rounded.
 
     ``ground_shapes`` are copper pieces on ground that belong to parts or lines (between a ground pad and
-    its vias); ``notes`` are assumptions for the findings list: (rule, element, text).
+    its vias); ``notes`` are assumptions for the findings list: (rule, element, text); ``choices`` is what
+    the search decided.
     """
 
     sized: SizedCircuit
@@ -184,3 +212,4 @@ class Placement:
     holes: tuple[PlacedHole, ...]
     ground_shapes: tuple[tuple[Ring, Origin], ...]
     notes: tuple[tuple[str, str, str], ...]
+    choices: Choices | None = None

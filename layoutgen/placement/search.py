@@ -21,6 +21,7 @@ from layoutgen.placement.frame import Pose
 from layoutgen.placement.lay import Layer, PinnedError
 from layoutgen.placement.model import GROUND, Model
 from layoutgen.placement.neighbours import Neighbours
+from layoutgen.placement.records import Choice, Choices
 from layoutgen.placement.routes import RouteChoice, Router
 from layoutgen.placement.state import EDGES, Growth, Pending, State
 from layoutgen.placement.tour import Tour
@@ -63,9 +64,10 @@ class Failure:
 
 @dataclass(frozen=True, slots=True)
 class Way:
-    """One way to lay an element: the least extent and bends it brings about, and how to lay it."""
+    """One way to lay an element: the choice made, the least extent and bends it brings about, how to lay it."""
 
     element: str
+    choice: Choice
     extent: tuple[float, float, float, float]
     bends: float
     lay: Callable[[Growth], None]
@@ -114,6 +116,27 @@ class Search:
             depth += 1
         return states
 
+    def replay(self, start: State, choices: Choices) -> State | None:
+        """Return the state that the same choices give with this circuit's lengths, None where they do not fit."""
+        state = start
+        while state.pending:
+            pending = self._next(state)
+            chosen = choices.ways.get(_key(pending.end))
+            if chosen is None:
+                return None
+            base = replace(state, pending=tuple(p for p in state.pending if p is not pending))
+            ways = [w for w in self._ways_to_lay(pending, base) if w.choice.shape == chosen.shape]
+            if not ways:
+                return None
+            way = min(ways, key=lambda w: _difference(w.choice, chosen))
+            growth = self._built(base, way, 0)
+            if growth is None or self._conflict(growth) is not None:
+                return None
+            extent, crossings = growth.extent(self.margins), self._crossings(growth)
+            cost = self._cost(base, extent, growth.bends, crossings)
+            state = growth.applied(extent, cost, crossings, (_key(pending.end), way.choice))
+        return state
+
     def _next(self, state: State) -> Pending:
         """Return the pending thing to lay next: the same for all states of one depth."""
         return min(state.pending, key=lambda p: self._priority(p.end))
@@ -158,7 +181,9 @@ class Search:
             for order, way in enumerate(self._ways_to_lay(pending, base))
         ]
         if not heap:
-            self._fail(depth, element.element, "no route of its length leads where it must, or as its hint asks")
+            self._fail(
+                depth, element.element, "no route of its length leads where it must, or as its hint asks"
+            )
         heapq.heapify(heap)
         accepted = 0
         while heap and accepted < self.effort.accepted:
@@ -170,7 +195,8 @@ class Search:
                     cost = self._cost(base, extent, growth.bends, self._crossings(growth))
                     heapq.heappush(heap, (cost, order, way, growth))
                 continue
-            grown = growth.applied(growth.extent(self.margins), cost, self._crossings(growth))
+            extent, key = growth.extent(self.margins), _key(element)
+            grown = growth.applied(extent, cost, self._crossings(growth), (key, way.choice))
             conflict = self._conflict(growth) or self._shut_in(grown, growth)
             if conflict is None:
                 accepted += 1
@@ -279,20 +305,24 @@ class Search:
     def _ways(self, pending: Pending, turn: float, state: State) -> Iterator[Way]:
         end, layer, extent = pending.end, self.layer, state.extent
         if end.kind is EndKind.LINE and self.model.file.lines[end.element].shape == "radial":
-            yield Way(end.element, extent, 0.0, lambda growth: layer.radial(growth, pending, turn))
+            yield Way(
+                end.element, Choice(turn, 1), extent, 0.0, partial(layer.radial, pending=pending, turn=turn)
+            )
         elif end.kind is EndKind.LINE:
             yield from self._line_ways(pending, turn, state)
         elif end.kind is EndKind.COUPLED:
             length, start = self.lengths.pair_length(end.element), pending.at.turned(turn)
             for side in (1, -1):
                 lay_pair = partial(layer.pair, end=end, start=start, side=side, length=length)
-                yield Way(end.element, extent, 0.0, lay_pair)
+                yield Way(end.element, Choice(turn, side), extent, 0.0, lay_pair)
         elif end.kind is EndKind.PORT:
-            yield Way(end.element, extent, 0.0, lambda growth: layer.port_arm(growth, pending, turn))
+            yield Way(
+                end.element, Choice(turn, 1), extent, 0.0, partial(layer.port_arm, pending=pending, turn=turn)
+            )
         else:
             for side in (1, -1) if self._meets_bank(end) else (1,):
                 lay_part = partial(layer.pad_arm, pending=pending, turn=turn, bank_side=side)
-                yield Way(end.element, extent, 0.0, lay_part)
+                yield Way(end.element, Choice(turn, side), extent, 0.0, lay_part)
 
     def _line_ways(self, pending: Pending, turn: float, state: State) -> Iterator[Way]:
         end, start = pending.end, pending.at.turned(turn)
@@ -313,7 +343,8 @@ class Search:
                     edge=choice.edge,
                     bank_side=side,
                 )
-                yield Way(end.element, extent, weight * len(choice.route.word), lay)
+                made = Choice(turn, side, choice.route.word, choice.route.legs, choice.edge)
+                yield Way(end.element, made, extent, weight * len(choice.route.word), lay)
 
     def _line_extent(
         self, end: End, start: Pose, choice: RouteChoice, state: State
@@ -362,3 +393,13 @@ class Search:
                 if (step > 0) != (order.index(name) > order.index(other)):
                     return f"port {name} would not come in file order with {other} on the {laid.edge} edge"
         return None
+
+
+def _key(end: End) -> str:
+    """Return the name under which a choice is kept."""
+    return f"{end.element}:{end.index}"
+
+
+def _difference(a: Choice, b: Choice) -> int:
+    """Return how far the legs of two routes of one shape differ [nm]."""
+    return sum(abs(p - q) for p, q in zip(a.legs, b.legs, strict=True))

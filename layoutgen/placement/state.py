@@ -10,6 +10,7 @@ from layoutgen.circuit import End
 from layoutgen.geometry import Point
 from layoutgen.placement.clearance import Kind, Obstacle, Obstacles
 from layoutgen.placement.frame import Box, Pose, box_around, unit
+from layoutgen.placement.records import Choice
 from layoutgen.placement.words import Route
 from layoutgen.sizing import BudgetEntry
 
@@ -190,6 +191,8 @@ class State:
     devices: tuple[Device, ...] = ()
     crossings: int = 0
     cost: float = 0.0
+    start: int = 0
+    ways: Mapping[str, Choice] = field(default_factory=dict)
 
 
 @dataclass(slots=True, kw_only=True)
@@ -228,7 +231,13 @@ class Growth:
             x0, y0, x1, y1 = min(x0, bx0), min(y0, by0), max(x1, bx1), max(y1, by1)
         return x0, y0, x1, y1
 
-    def applied(self, extent: tuple[float, float, float, float], cost: float, crossings: int = 0) -> State:
+    def applied(
+        self,
+        extent: tuple[float, float, float, float],
+        cost: float,
+        crossings: int = 0,
+        way: tuple[str, Choice] | None = None,
+    ) -> State:
         """Return the state with this candidate laid."""
         state = self.state
         return State(
@@ -249,6 +258,8 @@ class Growth:
             devices=state.devices + tuple(self.devices),
             crossings=crossings,
             cost=cost,
+            start=state.start,
+            ways=state.ways if way is None else {**state.ways, way[0]: way[1]},
         )
 
 

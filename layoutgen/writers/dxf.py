@@ -48,6 +48,8 @@ def write_dxf(result: Result, job: Job) -> bytes:
         document.header["$MEASUREMENT"] = _METRIC
         for name in LAYERS:
             document.layers.add(name, color=_COLOURS[name])
+        for name in sorted(document.entitydb.dxf_types_in_use()):
+            document.classes.add_class(name)  # here, since the library takes them in the order of a set
         _set_extents(document, result)
         entities = _entities(result, document)
         stream = io.StringIO()

@@ -52,7 +52,7 @@ def too_thin(shape: BaseGeometry, width: float) -> BaseGeometry:
     """Return what a disc of a diameter cannot reach [nm], without the bits in corners."""
     opened = shape.buffer(-width / 2.0).buffer(width / 2.0 * 1.02)
     left = shapely.difference(shape, opened)
-    return shapely.union_all([p for p in shapely.get_parts(left) if p.area > 0.1 * width * width])
+    return shapely.union_all([p for p in shapely.get_parts(left) if p.area > 0.25 * width * width])
 
 
 def nearest_pair(points: Iterable[tuple[int, int]]) -> float:

@@ -1,9 +1,9 @@
 """A quasi-static field solution of microstrip cross-sections by finite elements: the outside check.
 
-It shares nothing with the package: Laplace's equation in a box, biquadratic elements on a tensor mesh that is
-refined towards every conductor corner, capacitance from the field energy. Lengths are in units of the substrate
-height. The open space is bracketed by a grounded and by a magnetic box wall, of which the mean is taken.
-Accuracy 0.05 % in impedance against the reference tables, at a fifth of a second for a line.
+It shares nothing with the package: Laplace's equation in a box, biquadratic elements on a tensor mesh that
+is refined towards every conductor corner, capacitance from the field energy. Lengths are in units of the
+substrate height. The open space is bracketed by a grounded and by a magnetic box wall, of which the mean is
+taken. Accuracy 0.05 % in impedance against the reference tables, at a fifth of a second for a line.
 
 >>> line = solve_line(1.0, 1.0)
 >>> round(line.impedance), round(line.effective_permittivity, 9)
@@ -15,6 +15,7 @@ from __future__ import annotations
 import math
 from dataclasses import dataclass
 from functools import lru_cache
+from itertools import pairwise
 
 import numpy as np
 from skfem import Basis, BilinearForm, ElementQuad2, MeshQuad, condense, solve
@@ -120,7 +121,7 @@ def _mesh(conductors: list[Conductor], t: float) -> MeshQuad:
 def _graded(marks: list[float]) -> np.ndarray:
     """Return grid lines between the marks, geometrically refined towards every inner mark."""
     lines = [marks[0]]
-    for index, (low, high) in enumerate(zip(marks, marks[1:], strict=False)):
+    for index, (low, high) in enumerate(pairwise(marks)):
         shares = _shares(high - low, left=index > 0, right=index < len(marks) - 2)
         lines.extend(low + (high - low) * share for share in shares)
     return np.array(lines)

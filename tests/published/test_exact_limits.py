@@ -1,4 +1,4 @@
-"""Exact solutions by conformal mapping that the formulas must approach: coplanar line, stripline, air plates."""
+"""Exact solutions by conformal mapping that the formulas must approach: coplanar line, stripline, plates."""
 
 from __future__ import annotations
 

@@ -1,7 +1,7 @@
 """scikit-rf's microstrip line, where its own traps do not bite.
 
-Its traps, avoided here: dispersion by the effective width unless told otherwise, other quasi-static models 14 to
-16 % off with thickness, no conductor loss at all with ``t=None``, NaN at a permittivity of 1.
+Its traps, avoided here: dispersion by the effective width unless told otherwise, other quasi-static models
+14 to 16 % off with thickness, no conductor loss at all with ``t=None``, NaN at a permittivity of 1.
 """
 
 from __future__ import annotations

@@ -1,4 +1,4 @@
-"""Lines against printed digits of field solutions that no fit has seen: tables by impedance, pour, coupling."""
+"""Lines against field solutions that no fit has seen: tables by impedance, pour, coupling, dispersion."""
 
 from __future__ import annotations
 

@@ -75,7 +75,7 @@ class TestIpc2221Current:
         assert ipc2221_barrel_rise(1.6863, 0.3e-3, 25e-6) == pytest.approx(10.0, abs=0.02)
 
     def test_barrel_of_a_finished_hole(self):
-        """pi t (d + t) when the hole's diameter is the finished one; solid when the plating fills the drill."""
+        """pi t (d + t) when the diameter is the finished one; solid when the plating fills the drill."""
         assert barrel_section(0.25e-3, 25e-6, finished=True) == pytest.approx(math.pi * 25e-6 * 0.275e-3)
         assert barrel_section(0.3e-3, 0.2e-3) == pytest.approx(math.pi * 0.15e-3**2)
 

@@ -13,6 +13,7 @@ Source: the circuit file.
 from __future__ import annotations
 
 from collections.abc import Iterator
+from itertools import pairwise
 
 import numpy as np
 import shapely
@@ -30,14 +31,17 @@ __all__ = ["RULE"]
 NAME = "connectivity.open"
 _STEP_NM = 2_000.0
 _REACH_NM = 1_000.0
+_LEG_WIDTHS = 4.0
 
 
 def find(board: Board) -> Iterator[Outcome]:
     """Yield a hit for each net in pieces and for each place without copper."""
-    if board.artwork is not None:
-        joined = Connections(board)
-        yield from _broken(joined)
-        yield from _missing(board, board.artwork)
+    if board.artwork is None:
+        return
+    broken = list(_broken(Connections(board)))
+    yield from broken
+    named_already = {item for hit in broken for item in hit.items}
+    yield from (hit for hit in _missing(board, board.artwork) if not named_already.intersection(hit.items))
 
 
 def _broken(joined: Connections) -> Iterator[Hit]:
@@ -90,9 +94,10 @@ def _places(artwork: Artwork) -> Iterator[tuple[str, str, tuple[float, float]]]:
 
 
 def _on_legs(line: PlacedLine) -> Iterator[tuple[float, float]]:
-    """Yield the middle of each leg of a line, and a point just before an open end."""
-    for a, b in zip(line.path, line.path[1:], strict=False):
-        yield (a[0] + b[0]) / 2.0, (a[1] + b[1]) / 2.0
+    """Yield the middle of each leg that its mitres leave straight there, and a point before an open end."""
+    for a, b in pairwise(line.path):
+        if np.hypot(b[0] - a[0], b[1] - a[1]) > _LEG_WIDTHS * line.width:
+            yield (a[0] + b[0]) / 2.0, (a[1] + b[1]) / 2.0
     if len(line.nets) == 1:
         yield _before_end(line.path[-2], line.path[-1])
 
