@@ -203,7 +203,7 @@ def test_findings_of_severity_error_give_status_one(
 ) -> None:
     """The files are written all the same, with the findings drawn in."""
     rules = (ROOT / "rules" / "two-layer-standard.toml").read_text("utf-8")
-    strict = re.sub(r'min_edge_distance = "[^"]+"', 'min_edge_distance = "40 mm"', rules, count=1)
+    strict = re.sub(r'min_island_area = "[^"]+"', 'min_island_area = "9000 mm^2"', rules, count=1)
     assert strict != rules
     (circuit.parent / "strict.toml").write_text(strict, "utf-8")
     circuit.write_text(GOOD.replace('"two-layer-standard"', '"strict.toml"'))
@@ -211,7 +211,7 @@ def test_findings_of_severity_error_give_status_one(
     status = status_of(["draw", str(circuit), "--out", str(out)])
     printed = capsys.readouterr()
     assert status == 1
-    assert "copper.min_edge_distance" in printed.out
+    assert "copper.min_island_area" in printed.out
     assert (out / "report.json").is_file()
 
 

@@ -32,6 +32,8 @@ _NAME_HEIGHTS = (1_000_000, 850_000, 720_000)
 _TITLE_HEIGHTS = (1_500_000, 1_250_000, 1_000_000, 800_000)
 _NEAR_NM = (0, 150_000, 300_000, 500_000, 750_000, 1_000_000)
 _FAR_NM = (1_300_000, 1_600_000, 2_000_000, 2_400_000, 2_900_000, 3_500_000)
+_PART_TRIES = ((True, _NEAR_NM), (False, _NEAR_NM), (True, _FAR_NM), (False, _FAR_NM))
+_PORT_TRIES = ((True, _NEAR_NM), (True, _FAR_NM), (False, _NEAR_NM), (False, _FAR_NM))
 _SLIDES = tuple(sign * k / 8.0 for k in range(10) for sign in ((1.0, -1.0) if k else (1.0,)))
 _TITLE_STEP_NM = 500_000
 _PORT_LENGTH_NM = 1_500_000
@@ -91,9 +93,9 @@ def draw_legend(
     """
     printer = _Printer(placement, limits, _Ground(placement, openings, conductors, drills, limits))
     for part in placement.parts.values():
-        printer.print_near(_Text(part.name, _part_box(part), part.origin))
+        printer.print_near(_Text(part.name, _part_box(part), part.origin), _PART_TRIES)
     for port in placement.ports.values():
-        printer.print_near(_Text(port.name, _port_box(port), port.origin))
+        printer.print_near(_Text(port.name, _port_box(port), port.origin), _PORT_TRIES)
     anchor = printer.print_title()
     return Legend(
         shapes=tuple(printer.shapes),
@@ -135,10 +137,14 @@ class _Printer:
         self.areas: list[shapely.Polygon] = []
         self.notes: list[tuple[str, str, str]] = []
 
-    def print_near(self, text: _Text) -> None:
-        """Print a text beside its object, or note that it was left out."""
+    def print_near(self, text: _Text, tries: Sequence[tuple[bool, Sequence[int]]]) -> None:
+        """Print a text beside its object, or note that it was left out.
+
+        Args:
+            text: What to print, and beside what.
+            tries: In what order to look: whether on tidy ground only, and the distances [nm].
+        """
         wording = printable(text.text)
-        tries = ((True, _NEAR_NM), (False, _NEAR_NM), (True, _FAR_NM), (False, _FAR_NM))
         for (tidy, steps), upright in itertools.product(tries, (False, True)):
             for height in self._heights(_NAME_HEIGHTS):
                 spots = list(self._spots(wording, text.home, height, steps, upright))

@@ -12,7 +12,7 @@ from layoutgen.checks.records import Finding
 from layoutgen.origin import Location
 from layoutgen.reading import Waiver
 
-__all__ = ["judged", "severity_of"]
+__all__ = ["default_severity", "judged", "severity_of"]
 
 _ERRORS = frozenset(
     ("copper", "holes", "vias", "mask", "current", "voltage", "connectivity", "ground", "part")
@@ -38,10 +38,14 @@ class _Named:
         return today is not None and self.waiver.until is not None and today > self.waiver.until
 
 
+def default_severity(rule: str) -> str:
+    """Return the severity of a rule's findings where the rule file does not say: by the rule's table."""
+    return "error" if rule.partition(".")[0] in _ERRORS else "warning"
+
+
 def severity_of(limits: Limits, rule: str) -> str:
     """Return the severity of a rule's findings: the rule file's own, else the one of its table."""
-    table = rule.partition(".")[0]
-    return str(limits.rules.severity.get(rule, "error" if table in _ERRORS else "warning"))
+    return str(limits.rules.severity.get(rule, default_severity(rule)))
 
 
 def judged(limits: Limits, hits: Sequence[Hit], today: datetime.date | None) -> list[Finding]:

@@ -64,7 +64,7 @@ class Failure:
 
 @dataclass(frozen=True, slots=True)
 class Way:
-    """One way to lay an element: the choice made, the least extent and bends it brings about, how to lay it."""
+    """One way to lay an element: the choice made, the least extent and bends it brings, how to lay it."""
 
     element: str
     choice: Choice
@@ -117,7 +117,7 @@ class Search:
         return states
 
     def replay(self, start: State, choices: Choices) -> State | None:
-        """Return the state that the same choices give with this circuit's lengths, None where they do not fit."""
+        """Return the state that earlier choices give with this circuit's lengths, None if they do not fit."""
         state = start
         while state.pending:
             pending = self._next(state)
@@ -182,7 +182,7 @@ class Search:
         ]
         if not heap:
             self._fail(
-                depth, element.element, "no route of its length leads where it must, or as its hint asks"
+                depth, element.element, "no route leads where it must, or as its hint asks"
             )
         heapq.heapify(heap)
         accepted = 0

@@ -7,15 +7,14 @@ and parts. Parallel runs of different lines, and pads of more than two on one pa
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator, Mapping
 
 import numpy as np
 
 from layoutgen.artwork import Artwork
 from layoutgen.formulas.pads import chip_gap
-from layoutgen.formulas.radial import radial_stub_line, radial_stub_reactance
-from layoutgen.placement import PlacedRadial
-from layoutgen.response.chain import Chain, FloatArray, series
+from layoutgen.response.chain import FloatArray, series
 from layoutgen.response.copper import ChipGap, Copper
 from layoutgen.response.junctions import junction_effect, own_change, post_impedance
 from layoutgen.response.medium import Medium, medium_of
@@ -25,6 +24,8 @@ from layoutgen.response.touchstone import PartData
 from layoutgen.response.trace import trace_copper
 
 __all__ = ["drawn_network"]
+
+_NM = 1e-9
 
 
 def drawn_network(
@@ -53,7 +54,9 @@ def drawn_network(
     branches += [between(one, other, series(0.0)) for one, other in traced.ties]
     branches += _pairs(traced, medium)
     for name, node in traced.radials.items():
-        branches.append(between(node, GROUND, _radial(artwork.placement.radials[name], medium)))
+        stub = artwork.placement.radials[name]
+        radii = stub.inner_radius * _NM, stub.outer_radius * _NM
+        branches.append(between(node, GROUND, medium.radial(math.radians(stub.sector_deg), *radii)))
     blocks = _parts(artwork, traced, medium, data, branches, shunts)
     at = {**traced.ports, **traced.terminals}
     ports = tuple(Port(at[name], impedance) for name, impedance in response_ports(circuit.file))
@@ -78,15 +81,6 @@ def _pairs(copper: Copper, medium: Medium) -> Iterator[Branch]:
     for pair in copper.pairs:
         even, odd = medium.pair(pair.width, pair.gap, pair.pour_gap)
         yield from coupled_pair(pair.nodes, even.chain(pair.length), odd.chain(pair.length))
-
-
-def _radial(stub: PlacedRadial, medium: Medium) -> Chain:
-    """Return a radial stub as an impedance to ground."""
-    sector = np.radians(stub.sector_deg)
-    inner, outer = stub.inner_radius * 1e-9, stub.outer_radius * 1e-9
-    f, h = medium.frequencies, medium.height
-    ee, extension = radial_stub_line(f, h, medium.er, sector, inner, outer, medium.t)
-    return series(1j * radial_stub_reactance(f, h, ee, sector, inner, outer + extension))
 
 
 def _parts(

@@ -19,7 +19,8 @@ from layoutgen.formulas.coupled import coupled_pair, kirschning_jansen_1984_perm
 from layoutgen.formulas.loss import dielectric_attenuation, hammerstad_jensen_1980_conductor_attenuation
 from layoutgen.formulas.microstrip import kirschning_jansen_1982_permittivity
 from layoutgen.formulas.pour import microstrip_beside_pour
-from layoutgen.response.chain import Chain, ComplexArray, FloatArray, line
+from layoutgen.formulas.radial import radial_stub_line, radial_stub_reactance
+from layoutgen.response.chain import Chain, ComplexArray, FloatArray, line, series
 
 __all__ = ["LineSection", "Medium", "medium_of"]
 
@@ -117,6 +118,20 @@ class Medium:
             self._section(static.z_even, modes[0], width),
             self._section(static.z_odd, modes[1], width),
         )
+
+    def radial(self, sector: float, inner: float, outer: float, dispersion_at: float | None = None) -> Chain:
+        """Return a radial stub as an impedance to ground, by the radial-line equation.
+
+        Args:
+            sector: Opening angle [rad].
+            inner: Inner radius [m].
+            outer: Drawn outer radius [m]; its open end is longer.
+            dispersion_at: Frequency of the effective permittivity [Hz]; None: each frequency's own.
+        """
+        at = self.frequencies if dispersion_at is None else np.full_like(self.frequencies, dispersion_at)
+        ee, extension = radial_stub_line(at, self.height, self.er, sector, inner, outer, self.t)
+        x = radial_stub_reactance(self.frequencies, self.height, ee, sector, inner, outer + extension)
+        return series(1j * x)
 
     def _section(self, impedance: FloatArray, ee: FloatArray, width: float) -> LineSection:
         """Return a line of an impedance [ohm] and an effective permittivity (B,) [-], with its losses."""

@@ -46,8 +46,8 @@ _Stamps = dict[tuple[int, int], ComplexArray]
 def solve(network: Network) -> ComplexArray:
     """Return the S-parameters (B, N, N) [-] between the network's ports, to the ports' own impedances.
 
-    Where a lossless part that no port can see is exactly at resonance, the solution of least energy is
-    taken; the S-parameters do not depend on it.
+    Where a lossless part that no port can see is exactly at resonance, the smallest solution is taken; the
+    S-parameters do not depend on it.
 
     >>> from layoutgen.response.chain import line
     >>> from layoutgen.response.network import between
@@ -91,9 +91,7 @@ def _power_waves(loaded: ComplexArray, ports: Sequence[Port]) -> ComplexArray:
 def _is_stiff(branch: Branch) -> npt.NDArray[np.bool_]:
     """Say at which frequencies the branch's admittances would spoil the nodal equations."""
     a, b, _, d = branch.chain
-    to_ground = all(node == GROUND for node, _ in branch.near) or all(
-        node == GROUND for node, _ in branch.far
-    )
+    to_ground = any(all(node == GROUND for node, _ in side) for side in (branch.near, branch.far))
     limit = _STIFF_TO_GROUND if to_ground else _STIFF
     largest = np.maximum(1.0, np.abs(a))
     if d is not a:

@@ -10,17 +10,14 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Mapping
 
-import numpy as np
-
 from layoutgen.circuit import OPEN
-from layoutgen.formulas.radial import radial_stub_line, radial_stub_reactance
 from layoutgen.placement import Placement
 from layoutgen.reading import CircuitFile
-from layoutgen.response.chain import FloatArray, line, series
+from layoutgen.response.chain import FloatArray, line
+from layoutgen.response.medium import medium_of
 from layoutgen.response.network import GROUND, Block, Branch, Network, Port, between, coupled_pair
 from layoutgen.response.parts import part_elements, response_ports, terminals
 from layoutgen.response.touchstone import PartData
-from layoutgen.sizing import SizedRadial
 
 __all__ = ["wanted_network"]
 
@@ -75,30 +72,10 @@ def _pairs(placement: Placement, frequencies: FloatArray) -> Iterator[Branch]:
 
 def _radials(placement: Placement, frequencies: FloatArray) -> Iterator[Branch]:
     """Yield the radial stubs, by the radial-line equation with the permittivity of the design frequency."""
-    file = placement.sized.circuit.file
-    at = np.full_like(frequencies, file.design.frequency)
+    circuit = placement.sized.circuit
+    medium = medium_of(circuit, frequencies, lossless=True)
     for stub in placement.sized.radials.values():
-        reactance = radial_reactance(placement, stub, frequencies, at)
-        yield between(stub.nets[0], GROUND, series(1j * reactance))
-
-
-def radial_reactance(
-    placement: Placement, stub: SizedRadial, frequencies: FloatArray, dispersion_at: FloatArray
-) -> FloatArray:
-    """Return a radial stub's input reactance (B,) [ohm].
-
-    Args:
-        placement: What holds the substrate.
-        stub: The stub.
-        frequencies: Frequencies (B,) [Hz].
-        dispersion_at: Frequencies (B,) [Hz] at which the effective permittivity is taken.
-    """
-    substrate = placement.sized.circuit.file.substrate
-    h, er, t = (
-        substrate.height,
-        substrate.relative_permittivity,
-        substrate.copper_thickness / substrate.height,
-    )
-    sector, inner, outer = stub.sector, stub.inner_radius, stub.outer_radius
-    ee, extension = radial_stub_line(dispersion_at, h, er, sector, inner, outer, t)
-    return radial_stub_reactance(frequencies, h, ee, sector, inner, outer + extension)
+        chain = medium.radial(
+            stub.sector, stub.inner_radius, stub.outer_radius, circuit.file.design.frequency
+        )
+        yield between(stub.nets[0], GROUND, chain)

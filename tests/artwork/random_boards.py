@@ -59,7 +59,11 @@ class RandomBoard:
     def _stub(self, i: int) -> None:
         """Add a stub off the through line: straight, bent at right angles, or bent by 45 degrees."""
         r, board = self._random, self.board
-        x, width, side = round(r.uniform(3, board.width - 3), 4), round(r.uniform(0.15, 1.8), 6), r.choice((1, -1))
+        x, width, side = (
+            round(r.uniform(3, board.width - 3), 4),
+            round(r.uniform(0.15, 1.8), 6),
+            r.choice((1, -1)),
+        )
         room = (board.height - self._y if side > 0 else self._y) - 1.0
         leg, aside = round(r.uniform(0.3, 1.0) * room, 4), round(r.uniform(2.5 * width + 0.5, 8.0), 4)
         path = [(x, self._y), (x, round(self._y + side * leg, 4))]
@@ -71,14 +75,20 @@ class RandomBoard:
         start = self._y + side * (self._width / 2 + 0.21)
         if (path[1][1] - start) * side < 2.0 * width:
             return
-        free = shapely.LineString([(x, start), *path[1:]]).buffer(width / 2 + 0.2, cap_style="flat", join_style="mitre")
+        free = shapely.LineString([(x, start), *path[1:]]).buffer(
+            width / 2 + 0.2, cap_style="flat", join_style="mitre"
+        )
         if self._free(free):
             board.line(f"l{i}", path, width, (f"n{i}",), gap=round(r.uniform(0.2, 1.6), 6))
 
     def _chip(self, i: int) -> None:
         """Add a chip anywhere, some with a ground pad, some with no vias at it."""
         r, board = self._random, self.board
-        x, y, heading = round(r.uniform(2, board.width - 2), 4), round(r.uniform(2, board.height - 2), 4), r.choice(_HEADINGS)
+        x, y, heading = (
+            round(r.uniform(2, board.width - 2), 4),
+            round(r.uniform(2, board.height - 2), 4),
+            r.choice(_HEADINGS),
+        )
         if self._free(_chip_area(x, y, heading)):
             nets = (f"m{i}", "gnd" if r.random() < 0.7 else f"k{i}")
             board.chip(f"C{i}", x, y, heading, nets, ground_vias=r.random() < 0.8)
@@ -87,17 +97,27 @@ class RandomBoard:
         """Add a shunt chip whose first pad lies on the edge of the through line."""
         r = self._random
         side = r.choice((1, -1))
-        x, y = round(r.uniform(2, self.board.width - 2), 4), round(self._y + side * (self._width / 2 + 0.775 + 0.3), 4)
+        x, y = (
+            round(r.uniform(2, self.board.width - 2), 4),
+            round(self._y + side * (self._width / 2 + 0.775 + 0.3), 4),
+        )
         heading = 90.0 if side > 0 else 270.0
         start = self._y + side * (self._width / 2 + 0.201)
-        area = shapely.difference(_chip_area(x, y, heading), shapely.box(0, start - side * 9 if side > 0 else start, 99, start if side > 0 else start + 9))
+        area = shapely.difference(
+            _chip_area(x, y, heading),
+            shapely.box(0, start - side * 9 if side > 0 else start, 99, start if side > 0 else start + 9),
+        )
         if self._free(area):
             self.board.chip(f"S{i}", x, y, heading, ("a", "gnd"))
 
     def _hole(self) -> None:
         """Add a hole off all copper that is placed."""
         r = self._random
-        x, y, diameter = round(r.uniform(2.5, self.board.width - 2.5), 4), round(r.uniform(2.5, self.board.height - 2.5), 4), r.choice((1.0, 2.7))
+        x, y, diameter = (
+            round(r.uniform(2.5, self.board.width - 2.5), 4),
+            round(r.uniform(2.5, self.board.height - 2.5), 4),
+            r.choice((1.0, 2.7)),
+        )
         if self._free(shapely.Point(x, y).buffer(diameter / 2 + 0.3), 0.5):
             self.board.hole(x, y, diameter, r.random() < 0.3)
 
@@ -106,6 +126,9 @@ def _chip_area(x: float, y: float, heading: float) -> BaseGeometry:
     """Return what a chip with its ground vias takes."""
     dx, dy = _DIRECTION[heading]
     ahead, aside = 2.2, 0.95
-    corners = [(x - 1.45 * dx - aside * dy, y - 1.45 * dy - aside * dx), (x + ahead * dx + aside * dy, y + ahead * dy + aside * dx)]
+    corners = [
+        (x - 1.45 * dx - aside * dy, y - 1.45 * dy - aside * dx),
+        (x + ahead * dx + aside * dy, y + ahead * dy + aside * dx),
+    ]
     (x0, y0), (x1, y1) = corners
     return shapely.box(min(x0, x1), min(y0, y1), max(x0, x1), max(y0, y1))

@@ -125,7 +125,13 @@ class Sheet:
         self._shape("profile", box(0.0, 0.0, *size), "profile", None, "board")
 
     def _shape(
-        self, layer: str, outline: Ring, role: str, net: str | None, element: str, holes: tuple[Ring, ...] = ()
+        self,
+        layer: str,
+        outline: Ring,
+        role: str,
+        net: str | None,
+        element: str,
+        holes: tuple[Ring, ...] = (),
     ) -> None:
         self.shapes.append(
             Shape(layer=layer, outline=outline, holes=holes, net=net, role=role, origin=Origin(element))
@@ -151,7 +157,14 @@ class Sheet:
         self.copper(outline, role="plane", element="board", layer="copper_bottom", holes=holes)
 
     def line(
-        self, name: str, path: list[XY], width: float, *, gap: float = math.inf, draw: bool = True, rf: bool = True
+        self,
+        name: str,
+        path: list[XY],
+        width: float,
+        *,
+        gap: float = math.inf,
+        draw: bool = True,
+        rf: bool = True,
     ) -> None:
         """Add a line of the circuit along a path, its copper a square-ended stroke; gap is the pour's [mm]."""
         nets = self.file.lines[name].nets
@@ -285,7 +298,9 @@ class Sheet:
         if cutout is not None:
             self._shape("profile", cutout, "cutout", None, name)
 
-    def port(self, name: str, x: float, y: float, heading: float, width: float, *, to_edge: bool = False) -> None:
+    def port(
+        self, name: str, x: float, y: float, heading: float, width: float, *, to_edge: bool = False
+    ) -> None:
         """Add a port."""
         self.ports[name] = PlacedPort(
             name=name,

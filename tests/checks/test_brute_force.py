@@ -31,7 +31,9 @@ def random_sheet(seed: int) -> Sheet:
         net = NETS[k % 3]
         x, y = rng.uniform(1.5, 26), rng.uniform(1.5, 16)
         w, h = rng.uniform(0.3, 3.5), rng.uniform(0.3, 3.5)
-        outline = box(x, y, x + w, y + h) if k % 2 else polygon((x, y), (x + w, y + h / 3), (x + w / 3, y + h))
+        outline = (
+            box(x, y, x + w, y + h) if k % 2 else polygon((x, y), (x + w, y + h / 3), (x + w / 3, y + h))
+        )
         sheet.copper(outline, net, "strip", f"{ELEMENTS[net]}-{k}")
     for _ in range(6):
         sheet.hole(rng.uniform(0.8, 29), rng.uniform(0.8, 19), 1.0)

@@ -83,7 +83,11 @@ def test_only_sharp_wedges_are_narrow(angle: float, faults: int) -> None:
     """Catches a corner taken for narrow copper, and a wedge below 33 degrees taken for a corner."""
     half = math.radians(angle / 2.0)
     sheet = Sheet(WIDTH)
-    tip = [(0.0, 0.0), (4.0 * math.cos(half), -4.0 * math.sin(half)), (4.0 * math.cos(half), 4.0 * math.sin(half))]
+    tip = [
+        (0.0, 0.0),
+        (4.0 * math.cos(half), -4.0 * math.sin(half)),
+        (4.0 * math.cos(half), 4.0 * math.sin(half)),
+    ]
     sheet.copper(rotated(tip, 11.0, 10.0, 10.0))
     found = sheet.found("copper.min_width")
     assert len(found) == faults

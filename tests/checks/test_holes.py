@@ -57,7 +57,9 @@ def test_annular_ring(land: float, faults: int) -> None:
     sheet.via(10, 10, land=land)
     found = sheet.found("holes.min_annular_ring")
     assert len(found) == faults
-    assert all(f.items == ("via:0",) and f.measured == pytest.approx(land / 2 - 0.15, abs=1e-5) for f in found)
+    assert all(
+        f.items == ("via:0",) and f.measured == pytest.approx(land / 2 - 0.15, abs=1e-5) for f in found
+    )
 
 
 def test_ring_of_a_land_pushed_aside() -> None:

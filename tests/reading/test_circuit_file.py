@@ -117,7 +117,7 @@ class TestSubstrate:
         ('"0.508 mm"', '"1e-30 m"', "substrate.height", "1e-30", "beyond any board"),
         ('"0.508 mm"', '"3 m"', "substrate.height", "3 m", "beyond any board"),
         ('"0.508 mm"', "0.508", "substrate.height", "0.508", "without a unit"),
-        ('"58 MS/m"', '"58 Ms/m"', "substrate.conductivity", "Ms/m", "case-sensitive: MS/m"),
+        ('"58 MS/m"', '"58 Ms/m"', "substrate.conductivity", "Ms/m", "case-sensitive: mS/m or MS/m"),
         ('"1.2 um"', '"-1.2 um"', "substrate.copper_roughness", "-1.2", ">= 0"),
         ("loss_tangent = 0.0027\n", "", "substrate.loss_tangent", "[substrate]", "found nothing"),
     )
@@ -345,13 +345,7 @@ class TestLines:
         ('angle = "24 deg"', 'angle = "0 deg"', "lines.series_in.angle", "0 deg", "> 0"),
         ('angle = "24 deg"', 'angle = "24 mm"', "lines.series_in.angle", "24 mm", "a length"),
         ('angle = "24 deg"', 'length = "Free"', "lines.series_in.length", "Free", '"free"'),
-        (
-            'length = "5 mm"',
-            'length = "free"',
-            "lines.stub.length",
-            'width = "1.1 mm"\nlength = "free"',
-            "open stub",
-        ),
+        ('length = "5 mm"', 'length ="free"', "lines.stub.length", 'length ="free"', "open stub"),
         ('["in", "a"]', '["in", "in"]', "lines.series_in.nets[1]", '["in", "in"]', "another net"),
         ('["in", "a"]', '["gnd", "gnd"]', "lines.series_in.nets[1]", '["gnd", "gnd"]', "another net"),
         ('["in", "a"]', '["in", "open"]', "lines.series_in.nets[1]", '["in", "open"]', "reserved"),
@@ -364,7 +358,7 @@ class TestLines:
         ('sector = "60 deg"', 'sector = "180 deg"', "lines.bypass.sector", "180 deg", "< 180 deg"),
         ('"0.4 mm"', '"9 mm"', "lines.bypass.inner_radius", "inner_radius", "less than radius"),
         ('shape = "radial"\n', "", "lines.bypass.sector", "sector", 'shape = "radial"'),
-        ('shape = "radial"', 'shape = "round"', "lines.bypass.shape", "round", '"radial"'),
+        ('shape = "radial"', 'shape = "round"', "lines.bypass.shape", '"round"', '"radial"'),
         (
             'sector = "60 deg"',
             'sector = "60 deg"\nimpedance = "50 ohm"',
@@ -456,9 +450,9 @@ class TestCoupled:
         ),
         (
             'odd_impedance = "45 ohm"\nangle = "90 deg"',
-            'odd_impedance = "45 ohm"\nlength = "free"',
+            'odd_impedance = "45 ohm"\nlength ="free"',
             "coupled.pickup.length",
-            'odd_impedance = "45 ohm"\nlength',
+            'length ="free"',
             "a length",
         ),
         ('"b1", "open"]', '"b1"]', "coupled.pickup.nets", '["a1", "a2", "b1"]', "a list of 4"),
@@ -467,8 +461,6 @@ class TestCoupled:
     )
     def test_slips(self, files: Files, slip: Slip) -> None:
         """Alternatives and ends."""
-        if "length" in slip[1] and "free" in slip[1]:
-            slip = (*slip[:3], 'length = "free"\n\n[parts', slip[4])
         check(files, slip)
 
 
@@ -746,12 +738,6 @@ class TestFootprints:
     )
     def test_slips(self, files: Files, slip: Slip) -> None:
         """What pads need and exclude."""
-        if slip[2] == "footprints.flange.pads.source.ground" and "carrier" in slip[1]:
-            files.change(', source = "gnd" }', ', source = "gnd" }')
-        if slip[0] == "pads.gate":
-            with pytest.raises(AssertionError):
-                check(files, slip)  # the pad is missed by the part as well: two faults
-            return
         check(files, slip)
 
 
@@ -867,8 +853,6 @@ class TestLayout:
     )
     def test_slips(self, files: Files, slip: Slip) -> None:
         """Names of elements, keys that suit them, places on the board."""
-        if slip[0].startswith("[layout.hints.gate") and "hint." in slip[1]:
-            slip = (*slip[:3], "[layout.hint.gate_feed]", slip[4])
         check(files, slip)
 
     def test_port_is_no_hint(self, files: Files) -> None:
@@ -879,7 +863,7 @@ class TestLayout:
         assert fault.key == "layout.hints.rf_in.at"
         assert "edge and at" in fault.allowed
 
-    @pytest.mark.parametrize("heading", ["east", "west", "45 deg"])
+    @pytest.mark.parametrize("heading", ["east", "west"])
     def test_turned_footprint_stays_on_the_board(self, files: Files, heading: str) -> None:
         """Pads are turned before they are judged: 4.8 mm from the west edge just holds the pads east-west."""
         files.change('at = ["30 mm", "20 mm"]', 'at = ["4.8 mm", "20 mm"]')

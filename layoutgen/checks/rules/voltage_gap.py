@@ -7,8 +7,8 @@ Why: across too small a gap dirt and moisture creep, and in the end it arcs.
 How measured: exactly, polygon to polygon, on finished copper of both layers; net voltages from the DC
 solution, of nets joined by lines the pair with the largest difference. Voltages between the table's rows
 belong to the next row; beyond the last row of ``voltage.table`` that row holds and a line of the
-not-checked list says so. 10 nm short passes. RF peak voltages are not added: the circuit file gives no
-power.
+not-checked list says so. 10 nm short passes. Nets at one voltage are left to ``copper.min_gap``. RF peak
+voltages are not added: the circuit file gives no power.
 Source: IPC-2221B (2012) table 6-1 as independent public code cites it; the standard's text was not read.
 """
 
@@ -28,6 +28,7 @@ __all__ = ["RULE"]
 
 CONDITION = "voltage.condition"
 TABLE = "voltage.table"
+_SAME_VOLTAGE = 1e-9
 
 
 def find(board: Board) -> Iterator[Outcome]:
@@ -95,7 +96,7 @@ def _near(
             continue
         volts = _between(one, other)
         limit = _clearance(board, name, volts)
-        if pair.distance < limit - TOLERANCE_NM:
+        if abs(volts) > _SAME_VOLTAGE and pair.distance < limit - TOLERANCE_NM:
             asked = f"at least {mm(limit)} for {volts:.1f} V"
             yield Hit(
                 rule=name,

@@ -34,6 +34,8 @@ def _pads(table: Table) -> list[Table]:
 def _check_pad(draft: Draft, footprint: Table, pad: Table) -> None:
     """Check one pad."""
     faults, ground = draft.faults, pad.raw.get("ground")
+    if ground not in (None, "flange", "vias"):
+        return
     if ground == "flange":
         forbid(faults, pad, ("at", "size", "heading"), "a flange pin has no pad; it meets the carrier")
         if not footprint.has("cutout") and faults.complete:

@@ -5,8 +5,9 @@ from __future__ import annotations
 from collections.abc import Iterable, Mapping
 from typing import Any
 
-from layoutgen.reading.circuit_records import Part
-from layoutgen.reading.draft import ELEMENT_TABLES, Draft, Table
+from layoutgen.reading.circuit_records import Footprint, Part
+from layoutgen.reading.draft import ELEMENT_TABLES, Draft, Table, given
+from layoutgen.reading.validate import misspelt
 from layoutgen.reading.wording import Path, a_or_b, nearest, quote
 
 __all__ = ["check_names", "element_sections", "unknown_name"]
@@ -64,9 +65,9 @@ def _check_footprint(draft: Draft, table: Table) -> None:
         if "footprints" not in draft.misspelt_tables and draft.faults.complete:
             unknown_name(draft, table.at("footprint"), name, known, "a table of [footprints]")
         return
-    pads = draft.data["footprints"][name]
-    pads = pads.get("pads") if isinstance(pads, Mapping) else None
-    if isinstance(pads, Mapping):
+    footprint = draft.data["footprints"][name]
+    pads = given(footprint, "pads")
+    if isinstance(pads, Mapping) and "pads" not in misspelt(footprint, Footprint):
         _check_pins(draft, table, name, pads)
 
 

@@ -35,7 +35,8 @@ def check_nets(draft: Draft) -> None:
         return
     used: dict[str, list[_End]] = {}
     for end in ends:
-        used.setdefault(end.net, []).append(end)
+        if end.path not in draft.faults.paths:
+            used.setdefault(end.net, []).append(end)
     lonely = {net: found[0] for net, found in used.items() if len(found) == 1 and net not in _RESERVED}
     partners = _likely_slips(lonely)
     told = {net: end for net, end in lonely.items() if net not in partners.values()}
@@ -49,10 +50,9 @@ def check_nets(draft: Draft) -> None:
 
 
 def _faulty_ends(draft: Draft, ends: list[_End]) -> int:
-    """Return how many ends have a fault of their net, counting a faulty list as both its ends."""
-    whole = {end.path[:3] for end in ends if (end.path[:3]) in draft.faults.paths}
-    single = {end.path for end in ends if end.path in draft.faults.paths and len(end.path) > 3}
-    return 2 * len(whole) + len(single)
+    """Return how many ends may have been meant otherwise: a port's with a fault, two of any other element's."""
+    elements = {end.path[:2] for end in ends if draft.faults.about(end.path[:3])}
+    return sum(1 if path[0] == "ports" else 2 for path in elements)
 
 
 def _likely_slips(lonely: dict[str, _End]) -> dict[str, str]:

@@ -1,0 +1,180 @@
+"""Rules on ground: the pour's distance, vias and heat, plane under lines, plane at a flange."""
+
+from __future__ import annotations
+
+import pytest
+
+from layoutgen.checks.rules.ground_vias import barrel_thermal_resistance
+from layoutgen.geometry import Ring
+from tests.checks.boards import Sheet, box, near, only, polygon
+
+
+@pytest.mark.parametrize(("gap", "faults"), [(1.0, 0), (0.998, 1)])
+def test_pour_beside_a_line(gap: float, faults: int) -> None:
+    """Catches pour passed nearer than set, or found at the distance."""
+    sheet = Sheet()
+    sheet.line("la", [(4, 5), (14, 5)], 1.0, gap=1.0)
+    sheet.copper(box(6, 5.5 + gap, 12, 10))
+    found = sheet.found("ground.gap")
+    assert len(found) == faults
+    if found:
+        assert set(found[0].items) == {"la", "pour"}
+        assert found[0].measured == pytest.approx(gap)
+        assert near(found[0], 9, 5.5 + gap / 2, 3.01)
+
+
+def test_each_line_has_its_own_distance() -> None:
+    """Catches one distance used for all lines."""
+    sheet = Sheet()
+    sheet.line("la", [(4, 5), (14, 5)], 1.0, gap=0.3)
+    sheet.line("lv", [(4, 9), (14, 9)], 1.0, gap=1.5)
+    sheet.copper(box(6, 5.8, 12, 7.5))
+    assert set(only(sheet.found("ground.gap")).items) == {"lv", "pour"}
+
+
+def test_pour_inside_part_outlines_is_left_out() -> None:
+    """Catches the pour that a ground pad merges into found within the part's outline."""
+    sheet = Sheet()
+    sheet.line("la", [(4, 5), (14, 5)], 1.0, gap=1.0)
+    sheet.copper(box(8, 5.7, 10, 9))
+    assert len(sheet.found("ground.gap")) == 1
+    sheet.part("C1", {"1": ("c", 9, 5, 1, 1), "2": ("gnd", 9, 6.5, 1, 1)}, outline=box(7.9, 4, 10.1, 6.5))
+    assert sheet.found("ground.gap") == []
+
+
+def test_last_gap_before_ground_is_left_out() -> None:
+    """Catches the pour that a shorted stub ends in found, or the stub's whole length left out with it."""
+    sheet = Sheet()
+    sheet.line("lg", [(10, 15), (10, 5)], 1.0, gap=1.0)
+    sheet.copper(polygon((4, 2), (16, 2), (16, 5), (4, 5)))
+    assert sheet.found("ground.gap") == []
+    sheet.copper(box(11.2, 8, 14, 12))
+    assert only(sheet.found("ground.gap")).measured == pytest.approx(0.7)
+
+
+def test_lands_and_ground_strips_are_no_pour() -> None:
+    """Catches vias of a ground pad, or the copper that joins them to it, taken for pour."""
+    sheet = Sheet()
+    sheet.line("la", [(4, 5), (14, 5)], 1.0, gap=1.0)
+    sheet.copper(box(15, 15, 18, 18))
+    sheet.copper(box(8, 6, 9, 7), role="ground", element="R1")
+    sheet.via(8.5, 6.5, "part:R1")
+    assert sheet.found("ground.gap") == []
+
+
+def test_no_pour_is_listed() -> None:
+    """Catches a rule that could not look read as passed."""
+    assert Sheet().unchecked()["ground.gap"] == "there is no pour"
+
+
+# -- ground.vias
+
+
+def slug(count: int, thermal: float) -> Sheet:
+    """Return an exposed pad with so many vias under it."""
+    sheet = Sheet({"vias": {"per_ground_pad": 2}})
+    pads = {"1": ("w", 10, 10, 1, 1), "2": ("gnd", 14, 10, 4, 4)}
+    sheet.part("R1", pads, ground={"2": "vias"}, thermal={"2": thermal})
+    for k in range(count):
+        sheet.via(12.5 + k, 10, "part:R1")
+    return sheet
+
+
+ONE_BARREL = 0.5e-3 / (385.0 * 3.141592653589793 * 20e-6 * 280e-6)
+
+
+@pytest.mark.parametrize(("target", "faults"), [(ONE_BARREL / 4 * 1.0001, 0), (ONE_BARREL / 4 * 0.999, 1)])
+def test_thermal_resistance(target: float, faults: int) -> None:
+    """Catches too little copper under an exposed pad passed: four barrels in parallel."""
+    found = slug(4, target).found("ground.vias")
+    assert len(found) == faults
+    assert all(f.measured == pytest.approx(ONE_BARREL / 4, rel=1e-9) for f in found)
+
+
+def test_published_thermal_via() -> None:
+    """Catches the formula: 0.3 mm, 25 um, 1.6 mm is quoted as 192 K/W on two public pages."""
+    assert barrel_thermal_resistance(1.6e-3, 0.3e-3, 25e-6) == pytest.approx(192.0, abs=0.5)
+
+
+def test_exposed_pad_without_vias() -> None:
+    """Catches a pad without any via passed for want of a figure."""
+    assert any("none are there" in f.text for f in slug(0, 10.0).found("ground.vias"))
+
+
+def test_ground_pad_without_a_via() -> None:
+    """Catches a ground pad without any via passed where the rule file asks for no number."""
+    sheet = Sheet()
+    sheet.part("R1", {"1": ("w", 10, 10, 1, 1), "2": ("gnd", 13, 10, 1, 1)})
+    assert only(sheet.found("ground.vias")).items == ("R1",)
+
+
+# -- ground.under_line
+
+
+def over_plane(*holes: Ring) -> Sheet:
+    """Return line la over a plane with clearances."""
+    sheet = Sheet({"copper": {"min_edge_distance": "0.5 mm"}})
+    sheet.plane(*holes)
+    sheet.line("la", [(4, 5), (14, 5)], 1.0)
+    return sheet
+
+
+def test_plane_under_a_line() -> None:
+    """Catches a whole plane found."""
+    assert over_plane().found("ground.under_line") == []
+
+
+def test_slot_across_a_line() -> None:
+    """Catches a slot of ten micrometres under a line passed."""
+    finding = only(over_plane(Ring(box(8, 3, 8.01, 7).points[::-1])).found("ground.under_line"))
+    assert finding.items == ("la",)
+    assert finding.layer == "copper_bottom"
+    assert finding.measured == pytest.approx(0.01, rel=0.01)
+    assert near(finding, 8.005, 5, 0.51)
+
+
+def test_slot_beside_a_line() -> None:
+    """Catches a slot that does not pass under the line found."""
+    assert over_plane(Ring(box(8, 6, 9, 7).points[::-1])).found("ground.under_line") == []
+
+
+def test_plane_may_end_at_the_edge() -> None:
+    """Catches a line to the profile found where the plane has to keep its own distance."""
+    sheet = Sheet({"copper": {"min_edge_distance": "0.5 mm"}})
+    sheet.plane(inset=0.5)
+    sheet.line("la", [(0, 5), (14, 5)], 1.0)
+    assert sheet.found("ground.under_line") == []
+
+
+def test_dc_lines_need_no_plane() -> None:
+    """Catches a supply line judged like an RF line."""
+    sheet = Sheet()
+    sheet.plane(Ring(box(8, 3, 9, 7).points[::-1]))
+    sheet.line("lv", [(4, 5), (14, 5)], 1.0, rf=False)
+    assert sheet.found("ground.under_line") == []
+
+
+# -- ground.flange
+
+
+@pytest.mark.parametrize(("away", "faults"), [(0.3, 0), (0.302, 1)])
+def test_plane_at_a_flange(away: float, faults: int) -> None:
+    """Catches a plane passed that ends too far from the slot under a pad, or found at the limit."""
+    sheet = Sheet({"copper": {"min_edge_distance": "0.3 mm"}})
+    pads = {"gate": ("a", 8.8, 10.0, 2.0, 2.0), "source": ("gnd", 12.0, 10.0, 0.0, 0.0)}
+    sheet.part("C1", pads, headings={"gate": 180.0}, cutout=box(10, 5, 14, 15), ground={"source": "flange"})
+    sheet.plane(Ring(box(10 - away, 4.7, 14.3, 15.3).points[::-1]))
+    found = sheet.found("ground.flange")
+    assert len(found) == faults
+    if found:
+        assert found[0].items == ("C1",)
+        assert found[0].measured == pytest.approx(away)
+        assert near(found[0], 10, 10, 1.01)
+
+
+def test_no_plane_at_a_flange() -> None:
+    """Catches a missing plane passed for want of a distance."""
+    sheet = Sheet({"copper": {"min_edge_distance": "0.3 mm"}})
+    pads = {"gate": ("a", 8.8, 10.0, 2.0, 2.0), "source": ("gnd", 12.0, 10.0, 0.0, 0.0)}
+    sheet.part("C1", pads, headings={"gate": 180.0}, cutout=box(10, 5, 14, 15), ground={"source": "flange"})
+    assert len(sheet.found("ground.flange")) == 1
