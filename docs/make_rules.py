@@ -18,14 +18,16 @@ INTRO = """\
 
 Written by `docs/make_rules.py` from the rules in `layoutgen/checks/rules/`; do not edit.
 
-A finding names its rule (the path of the key in the rule file), its severity, the measured value and the limit, the
-place (the middle of the shortest connection), and the items it lies between. There is one finding for each rule and set
-of items: the worst place stands for all, and its text says of how many. Severities may be changed under `[severity]`;
-a finding that matches a waiver keeps its place in the list with the waiver's reason and does not count.
+A finding names its rule (the path of the key in the rule file), its severity, the measured value and the
+limit, the place (the middle of the shortest connection), and the items it lies between. There is one
+finding for each rule and set of items: the worst place stands for all, and its text says of how many.
+Severities may be changed under `[severity]`; a finding that matches a waiver keeps its place in the list
+with the waiver's reason and does not count.
 
-Rules look at *finished* copper: the artwork less `copper.undercut` on every edge. Distances are exact; arcs are
-judged as chords within 5 nm, and a distance 10 nm short of its limit passes (rounding to whole nanometres), so that a
-board at the limit passes and one a micrometre below it does not. Where a rule allows more, it says so.
+Rules look at *finished* copper: the artwork less `copper.undercut` on every edge. Distances are exact;
+arcs are judged as chords within 5 nm, and a distance 10 nm short of its limit passes (rounding to whole
+nanometres), so that a board at the limit passes and one a micrometre below it does not. Where a rule
+allows more, it says so.
 """
 
 CLOSING = """\
@@ -35,9 +37,9 @@ CLOSING = """\
 
 ## Waivers
 
-`waive.expired` (warning): the waiver's day has passed; the findings it spoke of count again. Without a date no waiver
-is taken as expired, and the list of what was not checked says so. `waive.unused` (warning): the waiver matches no
-finding.
+`waive.expired` (warning): the waiver's day has passed; the findings it spoke of count again. Without a
+date no waiver is taken as expired, and the list of what was not checked says so. `waive.unused`
+(warning): the waiver matches no finding.
 
 ## What no rule covers
 
@@ -48,7 +50,7 @@ finding.
 def rules_page() -> str:
     """Return the page as text."""
     parameters = ", ".join(f"`{key}`" for key in PARAMETERS)
-    uncovered = "\n".join(f"- {entry.rule}: {entry.reason}." for entry in UNCOVERED)
+    uncovered = "\n".join(_wrapped(f"- {entry.rule}: {entry.reason}.") for entry in UNCOVERED)
     closing = CLOSING.format(parameters=parameters, uncovered=uncovered)
     return "\n".join([INTRO, *(_section(module) for module in RULE_MODULES), closing])
 
@@ -60,9 +62,13 @@ def _section(module: ModuleType) -> str:
     severity = default_severity(names[0])
     title = ", ".join(f"`{name}`" for name in names)
     chunks = re.split(r"\n(?=(?:Why|How measured|Source):)", body.strip().replace("``", "`"))
-    rows = [f"- {' '.join(chunk.split())}" for chunk in chunks]
-    wrapped = [textwrap.fill(row, 118, subsequent_indent="  ", break_on_hyphens=False) for row in rows]
+    wrapped = [_wrapped(f"- {' '.join(chunk.split())}") for chunk in chunks]
     return "\n".join([f"## {title}", "", f"{head.strip()} ({severity})", "", *wrapped, ""])
+
+
+def _wrapped(row: str) -> str:
+    """Return a list item, wrapped."""
+    return textwrap.fill(row, 118, subsequent_indent="  ", break_on_hyphens=False)
 
 
 if __name__ == "__main__":

@@ -53,8 +53,8 @@ def legal_area(
 class Drills:
     """All vias set so far: answers what may stand where, and what stands near a point.
 
-    A book of squares as wide as the largest distance asked for keeps each answer to nine squares, so the time
-    grows with the number of vias only.
+    A book of squares as wide as the largest distance that two vias must keep limits each answer to the squares
+    about its place, so the time grows with the number of vias only.
     """
 
     def __init__(self, area: BaseGeometry, limits: Limits, placed: Iterable[tuple[int, int, int]]) -> None:
@@ -65,9 +65,7 @@ class Drills:
         self._drill = limits.via_drill
         placed = tuple(placed)
         most = max((drill for _, _, drill in placed), default=0)
-        self._square = max(
-            limits.via_pitch, limits.stitch_pitch, (most + self._drill) // 2 + limits.hole_web, 1
-        )
+        self._square = max(limits.via_pitch, math.ceil((most + self._drill) / 2) + limits.hole_web, 1)
         self._book: dict[tuple[int, int], list[tuple[int, int, int]]] = {}
         self.added: list[Point] = []
         for x, y, drill in placed:

@@ -20,7 +20,7 @@ from layoutgen.artwork.board import BOARD, board_area, cutouts_of
 from layoutgen.artwork.conductors import Conductor
 from layoutgen.artwork.limits import Limits
 from layoutgen.artwork.records import Shape
-from layoutgen.geometry import Point, grow, lettering, lettering_size, pieces, printable, rings_of
+from layoutgen.geometry import Point, lettering, lettering_size, pieces, printable, rings_of
 from layoutgen.origin import Origin
 from layoutgen.placement import PlacedPart, PlacedPort, Placement
 
@@ -179,25 +179,28 @@ class _Printer:
         pitch = 1.7 * height
         width = max(size[0] for size in sizes)
         above, depth = sizes[0][2], sizes[-1][1] + pitch * (len(lines) - 1)
-        corners = self._block_corners(width, above + depth)
-        boxes = np.column_stack([corners, corners + np.array([width, above + depth])])
-        for k in np.flatnonzero(self._open(boxes, tidy)):
-            x, y = float(boxes[k, 0]), float(boxes[k, 1]) + depth
-            for i, line in enumerate(lines):
-                base = y - pitch * i
-                box = (x, base - sizes[i][1], x + sizes[i][0], base + sizes[i][2])
-                self._ink(line, _Spot(x, base, height, False, box), BOARD)
-            return round(x), round(y)
-        return None
+        corner = self._free_block(width, above + depth, tidy)
+        if corner is None:
+            return None
+        x, y = corner[0], corner[1] + depth
+        for i, line in enumerate(lines):
+            base = y - pitch * i
+            box = (x, base - sizes[i][1], x + sizes[i][0], base + sizes[i][2])
+            self._ink(line, _Spot(x, base, height, False, box), BOARD)
+        return round(x), round(y)
 
-    def _block_corners(self, width: float, height: float) -> Boxes:
-        """Return south-west corners to try for a block [nm]: rows from both edges to the middle."""
+    def _free_block(self, width: float, height: float, tidy: bool) -> tuple[float, float] | None:
+        """Return the south-west corner of the first free place of a size [nm]: from the edges to the middle."""
         first = float(_EDGE_NM + self._limits.legend_distance)
         xs = np.arange(first, self._placement.width - width, _TITLE_STEP_NM)
         ys = np.arange(first, self._placement.height - height, _TITLE_STEP_NM)
         middle = (ys[-1] + ys[0]) / 2.0 if len(ys) else 0.0
-        rows = ys[np.argsort(-np.abs(ys - middle), kind="stable")]
-        return np.array([(x, y) for y in rows for x in xs], dtype=np.float64).reshape(-1, 2)
+        for y in ys[np.argsort(-np.abs(ys - middle), kind="stable")]:
+            row = np.column_stack([xs, np.full(len(xs), y), xs + width, np.full(len(xs), y + height)])
+            free = np.flatnonzero(self._open(row, tidy))
+            if len(free):
+                return float(xs[free[0]]), float(y)
+        return None
 
     def _spots(
         self,
@@ -293,9 +296,10 @@ def _obstacles(
         yield shapely.Polygon(shape.outline.chords(), [hole.chords() for hole in shape.holes])
     for _, ring in cutouts_of(placement):
         yield ring.polygon()
-    for x, y, diameter in drills:
-        reach = diameter // 2 + 1 + extra
-        yield grow(shapely.box(x, y, x + 1, y + 1), reach)
+    if drills:
+        x, y, diameter = np.array(drills, dtype=np.float64).T
+        reach = np.ceil(diameter / 2.0) + extra
+        yield from np.asarray(shapely.box(x - reach, y - reach, x + reach, y + reach), dtype=object).tolist()
 
 
 def _box_distance(a: tuple[float, float, float, float], b: tuple[float, float, float, float]) -> float:

@@ -50,7 +50,7 @@ def _pour_edges(pour: Sequence[shapely.Polygon]) -> tuple[shapely.STRtree, Float
     rings = [np.asarray(ring.coords) for piece in pour for ring in (piece.exterior, *piece.interiors)]
     segments = [np.stack([ring[:-1], ring[1:]], axis=1) for ring in rings]
     ends = np.concatenate(segments) if segments else np.zeros((0, 2, 2))
-    return shapely.STRtree([shapely.LineString(edge) for edge in ends]), ends
+    return shapely.STRtree(np.asarray(shapely.linestrings(ends), dtype=object).tolist()), ends
 
 
 def _along(path: Sequence[Point]) -> tuple[Floats, Floats, Floats]:

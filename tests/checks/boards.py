@@ -166,7 +166,7 @@ class Sheet:
         draw: bool = True,
         rf: bool = True,
     ) -> None:
-        """Add a line of the circuit along a path, its copper a square-ended stroke; gap is the pour's [mm]."""
+        """Add a line of the circuit along a path, its copper a stroke; gap is the pour's [mm]."""
         nets = self.file.lines[name].nets
         points = tuple((nm(x), nm(y)) for x, y in path)
         length = path_length(points)

@@ -73,7 +73,10 @@ CIRCUITS: dict[str, Data] = {
     ),
     "shunt part": through_with(
         {"mid": line("n", "m", angle="60 deg")},
-        {"C1": chip("capacitor", "1.2 pF", "n", "gnd"), "L1": chip("inductor", "8.2 nH", "m", "gnd", case="0402")},
+        {
+            "C1": chip("capacitor", "1.2 pF", "n", "gnd"),
+            "L1": chip("inductor", "8.2 nH", "m", "gnd", case="0402"),
+        },
     ),
     "pads only": base(
         ports=two_ports(),
@@ -89,17 +92,31 @@ CIRCUITS: dict[str, Data] = {
             "fan": {"nets": ["n"], "shape": "radial", "sector": "60 deg"},
         }
     ),
-    "shorted": through_with({"mid": line("n", "m", angle="60 deg"), "short": line("n", "gnd", angle="50 deg", z="80 ohm")}),
-    "wide shorted": through_with({"mid": line("n", "m", angle="90 deg"), "short": line("n", "gnd", angle="60 deg", z="20 ohm")}),
+    "shorted": through_with(
+        {"mid": line("n", "m", angle="60 deg"), "short": line("n", "gnd", angle="50 deg", z="80 ohm")}
+    ),
+    "wide shorted": through_with(
+        {"mid": line("n", "m", angle="90 deg"), "short": line("n", "gnd", angle="60 deg", z="20 ohm")}
+    ),
     "wall": base(
         ports=two_ports(),
         lines={
             "launch": free("a", "n"),
-            "wall": {"nets": ["n", "z"], "kind": "grounded_coplanar", "gap": "0.3 mm", "impedance": "50 ohm", "angle": "80 deg"},
+            "wall": {
+                "nets": ["n", "z"],
+                "kind": "grounded_coplanar",
+                "gap": "0.3 mm",
+                "impedance": "50 ohm",
+                "angle": "80 deg",
+            },
         },
     ),
     "long feed": through_with(
-        {"mid": line("n", "m", angle="60 deg"), "feed": line("n", "k", angle="270 deg", z="90 ohm"), "supply": free("k", "v", z="")},
+        {
+            "mid": line("n", "m", angle="60 deg"),
+            "feed": line("n", "k", angle="270 deg", z="90 ohm"),
+            "supply": free("k", "v", z=""),
+        },
         {"C1": chip("capacitor", "22 pF", "k", "gnd"), "C2": chip("capacitor", "1 nF", "k", "gnd")},
         {**two_ports(), "v": {"kind": "dc", "net": "v", "voltage": "5 V"}},
     ),
@@ -133,9 +150,19 @@ CIRCUITS: dict[str, Data] = {
     ),
     "coupler": base(
         ports={"p1": port("a"), "p2": port("z"), "p3": port("s")},
-        lines={"in": free("a", "a1"), "out": free("a2", "z"), "pick": free("b1", "s"), "load": free("b2", "t")},
+        lines={
+            "in": free("a", "a1"),
+            "out": free("a2", "z"),
+            "pick": free("b1", "s"),
+            "load": free("b2", "t"),
+        },
         coupled={
-            "pair": {"nets": ["a1", "a2", "b1", "b2"], "even_impedance": "56 ohm", "odd_impedance": "45 ohm", "angle": "90 deg"}
+            "pair": {
+                "nets": ["a1", "a2", "b1", "b2"],
+                "even_impedance": "56 ohm",
+                "odd_impedance": "45 ohm",
+                "angle": "90 deg",
+            }
         },
         parts={"R1": chip("resistor", "50 ohm", "t", "gnd")},
     ),
@@ -143,19 +170,34 @@ CIRCUITS: dict[str, Data] = {
         ports=two_ports(),
         lines={"in": free("a", "i"), "out": free("o", "z")},
         coupled={
-            "first": {"nets": ["i", "open", "open", "k"], "even_impedance": "70.61 ohm", "odd_impedance": "39.24 ohm", "angle": "90 deg"},
-            "second": {"nets": ["k", "open", "open", "o"], "even_impedance": "70.61 ohm", "odd_impedance": "39.24 ohm", "angle": "90 deg"},
+            "first": {
+                "nets": ["i", "open", "open", "k"],
+                "even_impedance": "70.61 ohm",
+                "odd_impedance": "39.24 ohm",
+                "angle": "90 deg",
+            },
+            "second": {
+                "nets": ["k", "open", "open", "o"],
+                "even_impedance": "70.61 ohm",
+                "odd_impedance": "39.24 ohm",
+                "angle": "90 deg",
+            },
         },
     ),
     "fixed board": through_with(
-        {"mid": line("n", "m", angle="60 deg"), "stub": line("n", angle="80 deg")}, board={"rules": "two-layer-standard", "size": ["30 mm", "14 mm"]}
+        {"mid": line("n", "m", angle="60 deg"), "stub": line("n", angle="80 deg")},
+        board={"rules": "two-layer-standard", "size": ["30 mm", "14 mm"]},
     ),
     "fixed board and holes": through_with(
         {"mid": line("n", "m", angle="60 deg"), "stub": line("n", angle="40 deg")},
         board={
             "rules": "two-layer-standard",
             "size": ["40 mm", "30 mm"],
-            "holes": [{"at": [f"{x} mm", f"{y} mm"], "diameter": "2.7 mm", "plated": False} for x in (3, 37) for y in (3, 27)],
+            "holes": [
+                {"at": [f"{x} mm", f"{y} mm"], "diameter": "2.7 mm", "plated": False}
+                for x in (3, 37)
+                for y in (3, 27)
+            ],
         },
     ),
     "ports placed": through_with(
@@ -163,11 +205,16 @@ CIRCUITS: dict[str, Data] = {
         ports={"p1": port("a", edge="west", at="9 mm"), "p2": port("z", edge="east", at="14 mm")},
     ),
     "to edge": base(
-        ports={"p1": port("a", to_edge=True), "p2": port("z", to_edge=True)}, lines={"only": line("a", "z", angle="120 deg")}
+        ports={"p1": port("a", to_edge=True), "p2": port("z", to_edge=True)},
+        lines={"only": line("a", "z", angle="120 deg")},
     ),
     "north to south": base(
         ports={"p1": port("a", edge="south"), "p2": port("z", edge="north")},
-        lines={"one": free("a", "n"), "two": line("n", "z", angle="70 deg", z="35 ohm"), "stub": line("n", angle="30 deg")},
+        lines={
+            "one": free("a", "n"),
+            "two": line("n", "z", angle="70 deg", z="35 ohm"),
+            "stub": line("n", angle="30 deg"),
+        },
     ),
     "corner": base(
         ports={"p1": port("a", edge="west"), "p2": port("z", edge="south")},
@@ -179,7 +226,12 @@ CIRCUITS: dict[str, Data] = {
     ),
     "two trees": base(
         ports={"p1": port("a"), "p2": port("b"), "p3": port("c"), "p4": port("d")},
-        lines={"one": free("a", "b"), "two": free("c", "d"), "stub": line("a2", angle="30 deg"), "three": line("e", "a2", angle="20 deg")},
+        lines={
+            "one": free("a", "b"),
+            "two": free("c", "d"),
+            "stub": line("a2", angle="30 deg"),
+            "three": line("e", "a2", angle="20 deg"),
+        },
     ),
 }
 del CIRCUITS["two trees"]["lines"]["stub"], CIRCUITS["two trees"]["lines"]["three"]

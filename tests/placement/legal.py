@@ -98,7 +98,10 @@ def tight_folds(placement: Placement) -> list[str]:
     spacing = heights * placement.sized.circuit.file.substrate.height * 1e9  # type: ignore[operator]
     out = []
     for line in placement.lines.values():
-        legs = [shapely.LineString(leg).buffer(line.width / 2, cap_style="flat") for leg in itertools.pairwise(line.path)]
+        legs = [
+            shapely.LineString(leg).buffer(line.width / 2, cap_style="flat")
+            for leg in itertools.pairwise(line.path)
+        ]
         for i, j in itertools.combinations(range(len(legs)), 2):
             if j - i > 1 and legs[i].distance(legs[j]) < spacing - 1000:
                 out.append(f"{line.name}: legs {i} and {j}")

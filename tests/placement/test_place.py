@@ -128,7 +128,9 @@ def test_bank_order_and_side() -> None:
     """Catches a bank whose smallest capacitor is not the first from the feed, or whose parts are not in a row."""
     placement = placed(CIRCUITS["long feed"])
     feed_end = placement.lines["feed"].path[-1]
-    distances = [math.dist(feed_end, (placement.parts[name].x, placement.parts[name].y)) for name in ("C1", "C2")]
+    distances = [
+        math.dist(feed_end, (placement.parts[name].x, placement.parts[name].y)) for name in ("C1", "C2")
+    ]
     assert distances[0] < distances[1]
     assert placement.strips[0].net == "k"
 

@@ -28,9 +28,13 @@ def trees(draw: st.DrawFn) -> dict[str, Any]:
         here, there = f"n{k}", f"n{k + 1}"
         kind = draw(st.sampled_from(["line", "line", "line", "part"]))
         if kind == "part":
-            parts[f"C{k}"] = chip("capacitor", "10 pF", here, there, case=draw(st.sampled_from(["0402", "0603", "1206"])))
+            parts[f"C{k}"] = chip(
+                "capacitor", "10 pF", here, there, case=draw(st.sampled_from(["0402", "0603", "1206"]))
+            )
             continue
-        lines[f"main{k}"] = line(here, there, z=f"{draw(st.integers(12, 100))} ohm", angle=f"{draw(st.integers(20, 120))} deg")
+        lines[f"main{k}"] = line(
+            here, there, z=f"{draw(st.integers(12, 100))} ohm", angle=f"{draw(st.integers(20, 120))} deg"
+        )
         _branch(draw, k, here, lines, parts, ports)
     lines["exit"] = free(f"n{count}", "z")
     data = base(ports=ports, lines=lines)

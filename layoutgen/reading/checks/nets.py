@@ -50,13 +50,13 @@ def check_nets(draft: Draft) -> None:
 
 
 def _faulty_ends(draft: Draft, ends: list[_End]) -> int:
-    """Return how many ends may have been meant otherwise: a port's with a fault, two of any other element's."""
+    """Return how many ends may have been meant otherwise: one of a faulty port, two of other elements."""
     elements = {end.path[:2] for end in ends if draft.faults.about(end.path[:3])}
     return sum(1 if path[0] == "ports" else 2 for path in elements)
 
 
 def _likely_slips(lonely: dict[str, _End]) -> dict[str, str]:
-    """Return pairs of once-used nets that are most likely one net written in two ways: later -> earlier."""
+    """Return pairs of once-used nets that are likely one net in two spellings: later -> earlier."""
     pairs: dict[str, str] = {}
     names = list(lonely) if len(lonely) <= SHOWN else []
     for number, net in enumerate(names):

@@ -1,0 +1,188 @@
+"""The stages in order, the loop between pour and widths, and the public names."""
+
+from __future__ import annotations
+
+import doctest
+import math
+from collections.abc import Iterator
+from dataclasses import replace
+from pathlib import Path
+from typing import Any
+
+import pytest
+
+import layoutgen
+from layoutgen import pipeline
+from layoutgen.artwork import Artwork, LineCopper
+from layoutgen.reading import inputs_from_data
+from layoutgen.sizing import SizedCircuit
+
+ROOT = Path(__file__).parents[1]
+
+NOTCH: dict[str, Any] = {
+    "format": 1,
+    "design": {"title": "Notch", "frequency": "2.245 GHz", "band": ["2.20 GHz", "2.29 GHz"]},
+    "substrate": {
+        "relative_permittivity": 3.55,
+        "loss_tangent": 0.0027,
+        "height": "0.508 mm",
+        "copper_thickness": "35 um",
+    },
+    "board": {"rules": "two-layer-standard"},
+    "ground": {"max_impedance_shift": "1 %"},
+    "ports": {"a": {"net": "a", "edge": "west"}, "b": {"net": "b", "edge": "east"}},
+    "lines": {
+        "left": {"nets": ["a", "m"], "impedance": "50 ohm", "angle": "40 deg"},
+        "right": {"nets": ["m", "b"], "impedance": "50 ohm", "angle": "40 deg"},
+        "stub": {"nets": ["m"], "impedance": "50 ohm", "angle": "90 deg"},
+    },
+}
+
+
+@pytest.fixture(scope="module")
+def notch() -> layoutgen.Inputs:
+    return inputs_from_data(NOTCH)
+
+
+@pytest.fixture(scope="module")
+def result(notch: layoutgen.Inputs) -> layoutgen.Result:
+    return pipeline.run_inputs(notch.circuit, notch.rules)
+
+
+def test_the_flow_in_the_package_docstring_works() -> None:
+    """The first thing a reader tries."""
+    done = doctest.testmod(layoutgen)
+    assert done.attempted > 5
+    assert done.failed == 0
+
+
+def test_stages_are_told_in_order(notch: layoutgen.Inputs) -> None:
+    """Progress names what is at work; a stage left out would be a silent wait."""
+    told: list[str] = []
+    pipeline.run_inputs(notch.circuit, notch.rules, told.append)
+    order = ["circuit", "sizing", "placement", "artwork", "checks", "response"]
+    assert list(dict.fromkeys(told)) == order
+
+
+def test_every_stage_has_its_seconds(result: layoutgen.Result) -> None:
+    """They go into report.json; rounds of one stage add up."""
+    assert list(result.seconds) == ["circuit", "sizing", "placement", "artwork", "checks", "response"]
+    assert all(seconds > 0.0 for seconds in result.seconds.values())
+
+
+def test_records_hang_together(result: layoutgen.Result) -> None:
+    """Each stage's record holds the one before it: no copy of another run can slip in."""
+    assert result.placement is result.artwork.placement
+    assert result.circuit is result.sized.circuit
+    assert set(result.placement.lines) == set(result.circuit.file.lines)
+
+
+def test_widths_agree_with_the_pour_as_drawn(result: layoutgen.Result, notch: layoutgen.Inputs) -> None:
+    """The loop's purpose: sizing for the measured distances moves no width by a micrometre."""
+    from layoutgen.sizing import size_circuit
+
+    again = size_circuit(
+        layoutgen.build_circuit(notch.circuit, notch.rules), pipeline.measured_gaps(result.artwork)
+    )
+    assert pipeline.largest_move(result.sized, again)[1] < 1e-6
+    assert result.notes == ()
+
+
+def test_measured_gaps_are_metres_and_infinity_for_none(result: layoutgen.Result) -> None:
+    """Nanometres handed on as metres, or no pour as a pour at zero, would size absurd lines."""
+    copper = {"x": LineCopper(name="x", gap_left=1_123_200, gap_right=None)}
+    artwork = replace(result.artwork, line_copper=copper)
+    assert pipeline.measured_gaps(artwork) == {"x": (pytest.approx(1.1232e-3), math.inf)}
+
+
+@pytest.fixture
+def restless(monkeypatch: pytest.MonkeyPatch) -> Iterator[list[float]]:
+    """Let each sizing change the widths by the next number of the list [m]; none left: by nothing."""
+    moves: list[float] = []
+    real = pipeline.size_circuit
+    shift = 0.0
+
+    def sizing(circuit: layoutgen.Circuit, gaps: Any = None) -> SizedCircuit:
+        nonlocal shift
+        sized = real(circuit)
+        if gaps is not None:
+            shift += moves.pop(0) if moves else 0.0
+        lines = {name: replace(line, width=line.width + shift) for name, line in sized.lines.items()}
+        return replace(sized, lines=lines)
+
+    monkeypatch.setattr(pipeline, "size_circuit", sizing)
+    yield moves
+
+
+@pytest.fixture
+def drawings(monkeypatch: pytest.MonkeyPatch) -> list[Artwork]:
+    """Every artwork that the loop draws."""
+    made: list[Artwork] = []
+    real = pipeline.draw
+
+    def drawing(placement: layoutgen.Placement) -> Artwork:
+        made.append(real(placement))
+        return made[-1]
+
+    monkeypatch.setattr(pipeline, "draw", drawing)
+    return made
+
+
+def test_it_draws_again_until_widths_rest(
+    notch: layoutgen.Inputs, restless: list[float], drawings: list[Artwork]
+) -> None:
+    """Stopped one round early, the copper drawn is not the copper sized."""
+    restless += [4e-6, 1.5e-6, 0.4e-6]
+    result = pipeline.run_inputs(notch.circuit, notch.rules)
+    assert len(drawings) == 3
+    assert result.artwork is drawings[-1]
+    assert result.notes == ()
+    assert result.placement.lines["left"].width == round(result.sized.lines["left"].width * 1e9)
+
+
+def test_it_says_when_widths_do_not_settle(
+    notch: layoutgen.Inputs, restless: list[float], drawings: list[Artwork]
+) -> None:
+    """After four drawings the last one stands, with a note that names the line and how far off it is."""
+    restless += [5e-6] * 9
+    result = pipeline.run_inputs(notch.circuit, notch.rules)
+    assert len(drawings) == pipeline.MAX_ROUNDS == 4
+    (note,) = result.notes
+    assert note[0] == "assumption.pour"
+    assert note[1] in result.sized.lines
+    assert "5.0 um" in note[2]
+    assert result.findings[-1 - len(result.response.notes if result.response else ())].severity == "note"
+
+
+def test_bias_is_that_of_the_lengths_as_placed() -> None:
+    """The voltage drop of a free supply line is known only once it is placed."""
+    data = {
+        **NOTCH,
+        "ports": {
+            "a": {"net": "a", "edge": "west", "current": "0.5 A"},
+            "vd": {"net": "v", "kind": "dc", "voltage": "5 V", "edge": "north"},
+        },
+        "lines": {
+            "left": {"nets": ["a", "m"], "impedance": "50 ohm", "angle": "40 deg"},
+            "feed": {"nets": ["m", "n"], "impedance": "90 ohm", "angle": "90 deg"},
+            "supply": {"nets": ["n", "v"], "length": "free"},
+        },
+        "parts": {
+            "C1": {"kind": "capacitor", "nets": ["n", "gnd"], "value": "22 pF", "case": "0603"},
+            "C2": {"kind": "capacitor", "nets": ["n", "gnd"], "value": "1 nF", "case": "0603"},
+        },
+    }
+    inputs = inputs_from_data(data)
+    result = pipeline.run_inputs(inputs.circuit, inputs.rules)
+    supply = result.placement.lines["supply"]
+    squares = supply.centre_line / supply.width
+    drop = result.circuit.dc.voltages["v"] - result.circuit.dc.voltages["n"]
+    assert drop == pytest.approx(0.5 * squares / (58e6 * 35e-6), rel=1e-6)
+
+
+@pytest.mark.parametrize("path", sorted((ROOT / "examples").glob("*.toml")), ids=lambda path: path.stem)
+def test_examples_run_without_errors(path: Path) -> None:
+    """Each example is what a user starts from."""
+    result = pipeline.run(path)
+    assert [f.text for f in result.findings if f.counts] == []
+    assert result.checks.not_checked
