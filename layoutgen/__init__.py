@@ -28,7 +28,7 @@ The flow, each stage's result going into the next one:
 >>> circuit = build_circuit(inputs.circuit, inputs.rules)
 >>> sized = size_circuit(circuit)
 >>> print(f"{sized.lines['section'].width * 1e3:.2f} mm wide")
-1.12 mm wide
+1.10 mm wide
 >>> artwork = draw(place(sized))
 >>> [finding.rule for finding in check(artwork).findings if finding.counts]
 []

@@ -89,7 +89,7 @@ def _verbosity(command: Callable[..., Any]) -> Callable[..., Any]:
     type=click.IntRange(30, 600),
     default=150,
     show_default=True,
-    help="Resolution of the PNG, which is ten inches wide.",
+    help="Resolution of the PNG, whose longer side is ten inches.",
 )
 @_verbosity
 def draw(circuit: Path, out: Path | None, repeatable: bool, dpi: int, quiet: bool, verbose: bool) -> int:

@@ -66,12 +66,12 @@ def _lines(sized: SizedCircuit, budgets: Budgets) -> SizeTable:
     heads = (
         "line", "nets", "ohm", "width mm", "deg", "length mm", "pour gap mm", "permittivity", "current A",
     )  # fmt: skip
-    rows = tuple(_line_row(line, budgets[line.name][0]) for line in sized.lines.values())
+    rows = tuple(_line_row(line, *budgets[line.name]) for line in sized.lines.values())
     return SizeTable("Lines", heads, rows)
 
 
-def _line_row(line: SizedLine, length: float) -> tuple[str, ...]:
-    angle = line.beta * length if line.angle is None else line.angle
+def _line_row(line: SizedLine, length: float, entries: Sequence[BudgetEntry]) -> tuple[str, ...]:
+    angle = math.fsum(entry.angle for entry in entries) if line.angle is None else line.angle
     return (
         line.name,
         ",".join(line.nets),
@@ -122,7 +122,7 @@ def _budgets(sized: SizedCircuit, budgets: Budgets) -> SizeTable:
 
 def _line_entry(line: SizedLine, budget: tuple[float, Sequence[BudgetEntry]]) -> Entry:
     length, entries = budget
-    angle = sum(entry.angle for entry in entries) if line.angle is None else line.angle
+    angle = math.fsum(entry.angle for entry in entries) if line.angle is None else line.angle
     return {
         "name": line.name,
         "nets": list(line.nets),

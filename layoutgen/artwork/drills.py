@@ -53,8 +53,8 @@ def legal_area(
 class Drills:
     """All vias set so far: answers what may stand where, and what stands near a point.
 
-    A book of squares as wide as the largest distance that two vias must keep limits each answer to the squares
-    about its place, so the time grows with the number of vias only.
+    A book of squares as wide as the largest distance that two vias must keep limits each answer to the
+    squares about its place, so the time grows with the number of vias only.
     """
 
     def __init__(self, area: BaseGeometry, limits: Limits, placed: Iterable[tuple[int, int, int]]) -> None:
@@ -80,6 +80,10 @@ class Drills:
     def _enter(self, x: int, y: int, drill: int) -> None:
         """Write a via into its square."""
         self._book.setdefault((x // self._square, y // self._square), []).append((x, y, drill))
+
+    def axes(self) -> list[Point]:
+        """Return the axes of all vias [nm], in order of place."""
+        return sorted((x, y) for square in self._book.values() for x, y, _ in square)
 
     def near(self, x: float, y: float, distance: float) -> list[tuple[int, int, int]]:
         """Return the vias whose axes are within a distance [nm] of a point."""

@@ -190,7 +190,7 @@ class _Printer:
         return round(x), round(y)
 
     def _free_block(self, width: float, height: float, tidy: bool) -> tuple[float, float] | None:
-        """Return the south-west corner of the first free place of a size [nm]: from the edges to the middle."""
+        """Return the south-west corner of the first free place of a size [nm], edges first."""
         first = float(_EDGE_NM + self._limits.legend_distance)
         xs = np.arange(first, self._placement.width - width, _TITLE_STEP_NM)
         ys = np.arange(first, self._placement.height - height, _TITLE_STEP_NM)

@@ -84,8 +84,8 @@ def stitch_rest(
     for x, y in _grid(placement, limits.stitch_pitch, drills):
         if not drills.near(x, y, _GRID_CLEAR * limits.stitch_pitch):
             drills.put(x, y)
-    for piece in pour:
-        _hold(piece, limits, drills)
+    for piece, count in zip(pour, _counts(pour, drills), strict=True):
+        _hold(piece, _LEAST_VIAS - count, limits, drills)
 
 
 def _grid(placement: Placement, pitch: int, drills: Drills) -> list[Point]:
@@ -99,12 +99,10 @@ def _grid(placement: Placement, pitch: int, drills: Drills) -> list[Point]:
     return [(int(x), int(y)) for x, y in zip(xs[keep], ys[keep], strict=True)]
 
 
-def _hold(piece: shapely.Polygon, limits: Limits, drills: Drills) -> None:
-    """Give a piece of pour vias until it has two."""
-    area = shapely.intersection(piece, drills.area)
-    for _ in range(_LEAST_VIAS):
-        if _count_in(piece, drills) >= _LEAST_VIAS:
-            return
+def _hold(piece: shapely.Polygon, missing: int, limits: Limits, drills: Drills) -> None:
+    """Give a piece of pour the vias that it lacks."""
+    for _ in range(missing):
+        area = shapely.intersection(piece, drills.area)
         open_area = _away_from_vias(area, drills, limits)
         if open_area.is_empty:
             return
@@ -112,12 +110,16 @@ def _hold(piece: shapely.Polygon, limits: Limits, drills: Drills) -> None:
         drills.put(place.x, place.y)
 
 
-def _count_in(piece: shapely.Polygon, drills: Drills) -> int:
-    """Return how many vias stand in a piece of pour."""
-    x0, y0, x1, y1 = piece.bounds
-    reach = max(x1 - x0, y1 - y0)
-    about = drills.near((x0 + x1) / 2.0, (y0 + y1) / 2.0, reach)
-    return int(np.count_nonzero(shapely.intersects_xy(piece, [v[0] for v in about], [v[1] for v in about])))
+def _counts(pour: Sequence[shapely.Polygon], drills: Drills) -> list[int]:
+    """Return how many vias stand in each piece of pour."""
+    axes = np.array(drills.axes(), dtype=np.float64).reshape(-1, 2)
+    tree = shapely.STRtree(np.asarray(shapely.points(axes), dtype=object).tolist())
+    found = (
+        tree.query(np.array(pour, dtype=object), predicate="intersects")[0]
+        if pour
+        else np.zeros(0, dtype=int)
+    )
+    return [int(count) for count in np.bincount(found, minlength=len(pour))]
 
 
 def _away_from_vias(area: BaseGeometry, drills: Drills, limits: Limits) -> BaseGeometry:
@@ -149,7 +151,8 @@ def well_held(
         drills: The book of vias.
         fenced: How many of the added vias, counted from the first, belong to the fence.
     """
-    kept = [piece for piece in pour if _count_in(piece, drills) >= _LEAST_VIAS]
+    counts = _counts(pour, drills)
+    kept = [piece for piece, count in zip(pour, counts, strict=True) if count >= _LEAST_VIAS]
     tree = shapely.STRtree(kept)
     purposes = ["fence"] * fenced + ["pour"] * (len(drills.added) - fenced)
     axes = shapely.points(np.array(drills.added, dtype=np.float64).reshape(-1, 2))

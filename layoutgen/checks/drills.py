@@ -9,10 +9,10 @@ import numpy as np
 import shapely
 
 from layoutgen.checks.board import Board, Drill, Layer
-from layoutgen.checks.planar import near_points, whole
+from layoutgen.checks.planar import Geometry, near_points, whole
 from layoutgen.geometry import Point
 
-__all__ = ["NearDrills", "drill_layer", "near_drills", "touched"]
+__all__ = ["NearDrills", "drill_layer", "near_drills", "touched", "wall_middle"]
 
 
 class NearDrills(NamedTuple):
@@ -46,6 +46,21 @@ def _between(a: Drill, b: Drill, pitch: float) -> Point:
     """Return the middle of the web between two holes."""
     share = 0.5 if pitch == 0.0 else 0.5 + (a.diameter - b.diameter) / (4.0 * pitch)
     return whole(a.x + share * (b.x - a.x), a.y + share * (b.y - a.y))
+
+
+def wall_middle(drill: Drill, point: shapely.Point, other: Geometry) -> tuple[float, Point]:
+    """Return the distance from a hole's wall to a geometry [nm], and the middle between them.
+
+    Args:
+        drill: The hole.
+        point: Its axis.
+        other: What is measured to; the distance is negative where it comes inside the wall.
+    """
+    _, (x, y) = shapely.get_coordinates(shapely.shortest_line(point, other)).tolist()
+    distance = float(np.hypot(x - drill.x, y - drill.y))
+    share = 0.5 * (1.0 + drill.diameter / 2.0 / distance) if distance > 0.0 else 0.0
+    at = whole(drill.x + share * (x - drill.x), drill.y + share * (y - drill.y))
+    return distance - drill.diameter / 2.0, at
 
 
 def touched(board: Board, layer: Layer) -> dict[int, list[int]]:

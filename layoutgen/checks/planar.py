@@ -43,6 +43,9 @@ CHORD_NM = 5.0
 TOLERANCE_NM = 10.0
 """What a distance may fall short of its limit [nm]: two chords, or two roundings to whole nanometres."""
 
+_FLAT_NM = 2.0
+"""How far the ends of an edge may lie off a straight line [nm]: rounding to whole nanometres."""
+
 CORNER_LIMITS = 3.5
 """Two places of one outline nearer to each other along it than this many limits are a corner [-]."""
 
@@ -66,14 +69,43 @@ def parts(geometry: Geometry) -> list[shapely.Polygon]:
 
 
 def middle(a: Geometry, b: Geometry) -> Point:
-    """Return the middle of the shortest connection of two geometries [nm], or of their overlap."""
+    """Return the middle of the shortest connection of two geometries [nm], or of their overlap.
+
+    Where parallel edges leave a choice of connections, it is the middle one of them.
+    """
     if a.intersects(b):
         shared = a.intersection(b)
         largest = max(shapely.get_parts(shared), key=lambda part: (part.area, part.length))
         inside = largest.centroid if largest.intersects(largest.centroid) else largest.representative_point()
         return whole(inside.x, inside.y)
-    (ax, ay), (bx, by) = shapely.get_coordinates(shapely.shortest_line(a, b)).tolist()
-    return whole((ax + bx) / 2.0, (ay + by) / 2.0)
+    start, end = shapely.get_coordinates(shapely.shortest_line(a, b))
+    centre = (start + end) / 2.0
+    across = (end - start) / np.hypot(*(end - start))
+    along = np.array([-across[1], across[0]])
+    (low, high), (least, most) = _flat(a, start, along, across), _flat(b, end, along, across)
+    return whole(*(centre + along * (max(low, least) + min(high, most)) / 2.0).tolist())
+
+
+def _flat(
+    geometry: Geometry,
+    at: npt.NDArray[np.float64],
+    along: npt.NDArray[np.float64],
+    across: npt.NDArray[np.float64],
+) -> tuple[float, float]:
+    """Return how far an outline runs straight along a direction to both sides of a point on it [nm]."""
+    points, part = shapely.get_coordinates(shapely.get_parts(_lines(geometry)), return_index=True)
+    same = part[1:] == part[:-1]
+    flat = np.abs((points - at) @ across) < _FLAT_NM
+    edge = np.flatnonzero(same & flat[1:] & flat[:-1])
+    t = (points - at) @ along
+    low, high = np.minimum(t[edge], t[edge + 1]), np.maximum(t[edge], t[edge + 1])
+    holds = (low <= _FLAT_NM) & (high >= -_FLAT_NM)
+    return float(low[holds].min(initial=0.0)), float(high[holds].max(initial=0.0))
+
+
+def _lines(geometry: Geometry) -> Geometry:
+    """Return a geometry's outlines as lines, lines and points as they are."""
+    return geometry.boundary if shapely.get_dimensions(geometry) == 2 else geometry
 
 
 def whole(x: float, y: float) -> Point:

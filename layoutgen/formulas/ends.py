@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 from numpy.typing import ArrayLike
 
-from layoutgen.formulas.microstrip import hammerstad_jensen_1980
+from layoutgen.formulas.microstrip import hammerstad_jensen_1980, hammerstad_jensen_1980_widening
 from layoutgen.formulas.numeric import Array, floats
 
 __all__ = ["hammerstad_open_end", "kirschning_jansen_koster_1981", "open_end"]
@@ -15,31 +15,33 @@ def open_end(u: ArrayLike, er: ArrayLike, t: ArrayLike = 0.0) -> Array:
     """Return by how much an open end makes a line electrically longer than its copper.
 
     The published form of Kirschning, Jansen and Koster lies 5 to 9 % below field solutions over the whole
-    range, .02 to .055 h; it is raised here by 5.2 % plus a share that falls with the permittivity.
+    range, .02 to .055 h; it is raised here by a share that falls with the permittivity. A thick end reaches
+    further by half of the widening that stands for the thickness of a line: .054 h at t = 0.07 in air.
 
     Args:
         u: Strip width over substrate height, W/h [-].
         er: Relative permittivity of the substrate [-].
-        t: Conductor thickness over substrate height; enters through the line's permittivity only [-].
+        t: Conductor thickness over substrate height [-].
 
     Returns:
         Extension over substrate height [-].
 
     Source: :func:`kirschning_jansen_koster_1981` times a correction fitted for this project.
-    Range: 0.3 <= u <= 6, 1 <= er <= 13.
-    Accuracy: 0.01 h against field solutions (u 0.5-4, er 2.2-9.8, t = 0).
+    Range: 0.3 <= u <= 6, 1 <= er <= 13, t <= 0.2.
+    Accuracy: 0.006 h against field solutions (u 0.5-4, er 2.2-9.8, t = 0); 0.01 h in air with t up to 0.14.
 
     >>> round(float(open_end(1.0, 9.8)), 3)
     0.338
     """
     u, er, t = floats(u, er, t)
     u, er = np.clip(u, 1e-3, 1e3), np.clip(er, 1.0, 1e3)
-    return np.asarray(kirschning_jansen_koster_1981(u, er, t) * _rise(u, er))
+    thin = kirschning_jansen_koster_1981(u, er) * _rise(u, er)
+    return np.asarray(thin + 0.5 * hammerstad_jensen_1980_widening(u, er, t))
 
 
 def _rise(u: Array, er: Array) -> Array:
     """Return the ratio of the field-solved extension to the published one [-]."""
-    return np.asarray(1.06 + 0.06 / er + 0.012 * np.tanh(u - 1.0))
+    return np.asarray(1.0655 + 0.0875 * er**-1.7 + 0.012 * np.tanh(u - 1.0))
 
 
 def kirschning_jansen_koster_1981(u: ArrayLike, er: ArrayLike, t: ArrayLike = 0.0) -> Array:

@@ -19,6 +19,7 @@ __all__ = [
     "LineResult",
     "hammerstad_1975",
     "hammerstad_jensen_1980",
+    "hammerstad_jensen_1980_widening",
     "jansen_kirschning_1983_impedance",
     "kirschning_jansen_1982_permittivity",
     "wheeler_hammerstad_width",
@@ -71,8 +72,7 @@ def hammerstad_jensen_1980(u: ArrayLike, er: ArrayLike, t: ArrayLike = 0.0) -> L
     if not np.any(t > 0.0):
         ee = _permittivity(u, er)
         return _shaped(_air_impedance(u) / np.sqrt(ee), ee, in_range)
-    widened = 4.0 * math.e * np.tanh(np.sqrt(6.517 * u)) ** 2
-    du_air = t / math.pi * np.log1p(widened / np.maximum(t, _TINY))
+    du_air = _air_widening(u, t)
     du = 0.5 * du_air * (1.0 + 1.0 / np.cosh(np.sqrt(er - 1.0)))
     z_air, ee = _air_impedance(u + du), _permittivity(u + du, er)
     return _shaped(z_air / np.sqrt(ee), ee * (_air_impedance(u + du_air) / z_air) ** 2, in_range)
@@ -84,6 +84,35 @@ def _shaped(impedance: Array, ee: Array, in_range: Flags) -> LineResult:
     if np.shape(impedance) != shape:
         impedance, ee = np.broadcast_to(impedance, shape), np.broadcast_to(ee, shape)
     return LineResult(impedance, ee, in_range)
+
+
+def hammerstad_jensen_1980_widening(u: ArrayLike, er: ArrayLike, t: ArrayLike) -> Array:
+    """Return by how much a thin strip must be wider to stand for a thick one.
+
+    Args:
+        u: Strip width over substrate height, W/h [-].
+        er: Relative permittivity of the substrate; 1 for the inductance [-].
+        t: Conductor thickness over substrate height [-].
+
+    Returns:
+        Additional width over substrate height [-].
+
+    Source: E. Hammerstad and O. Jensen, IEEE MTT-S Digest 1980, pp. 407-409.
+    Range: that of :func:`hammerstad_jensen_1980`.
+    Accuracy: that of it.
+
+    >>> round(float(hammerstad_jensen_1980_widening(1.0, 1.0, 0.07)), 3)
+    0.112
+    """
+    u, er, t = floats(u, er, t)
+    u, er, t = np.clip(u, 1e-6, 1e6), np.clip(er, 1.0, 1e4), np.clip(t, 0.0, 1e3)
+    return np.asarray(0.5 * _air_widening(u, t) * (1.0 + 1.0 / np.cosh(np.sqrt(er - 1.0))))
+
+
+def _air_widening(u: Array, t: Array) -> Array:
+    """Return the widening [-] of the strip in air."""
+    reach = 4.0 * math.e * np.tanh(np.sqrt(6.517 * u)) ** 2
+    return np.asarray(t / math.pi * np.log1p(reach / np.maximum(t, _TINY)))
 
 
 def _air_impedance(u: Array) -> Array:

@@ -34,6 +34,7 @@ _BEND_AREA = 10e12  # [nm^2] for each bend besides: on a small board, too, a str
 _CROSSING_COST = 0.05  # for each element of an input that lies beside an output, or the other way round
 
 
+_CROWDING = 3.0  # bends that a stub is worth on the side away from the feeds
 _LOOK_AHEAD = 60  # ways tried for what leads to a port before a candidate is taken as shut in
 
 
@@ -71,6 +72,7 @@ class Way:
     extent: tuple[float, float, float, float]
     bends: float
     lay: Callable[[Growth], None]
+    crowding: float = 0.0
 
 
 @dataclass(slots=True)
@@ -231,6 +233,7 @@ class Search:
         growth = Growth(state=base, bounds=base.bounds)
         try:
             way.lay(growth)
+            growth.bends += way.crowding
         except PinnedError as error:
             self._fail(depth, error.element, error.what)
             return None
@@ -288,7 +291,17 @@ class Search:
             heading = (pending.at.heading + turn) % 360.0
             if heading in used or self._leads_away(pending, heading):
                 continue
-            yield from self._ways(pending, turn, state)
+            crowding = _CROWDING if self._joins_feeds(pending, heading) else 0.0
+            for way in self._ways(pending, turn, state):
+                yield replace(way, bends=way.bends + crowding, crowding=crowding) if crowding else way
+
+    def _joins_feeds(self, pending: Pending, heading: float) -> bool:
+        """True when a stub or shunt part would leave to the side where the feeds go, and has a choice."""
+        key = (pending.end.element, pending.end.index)
+        if len(pending.turns) < 2 or self.tour.leads_to_port.get(key, False):
+            return False
+        asked = {port.edge for port in self.model.file.ports.values() if port.kind == "dc" and port.edge}
+        return any(EDGES[edge] == heading for edge in asked)
 
     def _leads_away(self, pending: Pending, heading: float) -> bool:
         """True when an arm could leave towards the edge that its ports ask for, and this is not the way."""

@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Mapping
 from dataclasses import dataclass
 from pathlib import Path
-from typing import Any, TypeVar
+from typing import Any, TypeGuard, TypeVar
 
 from layoutgen.reading.checks import check_circuit
 from layoutgen.reading.circuit_records import CircuitFile
@@ -204,7 +204,7 @@ def _named_rules(name: str, faults: Faults, folder: Path, collections: list[Faul
 
 def _circuit(data: Mapping[str, Any] | None, faults: Faults, folder: Path) -> CircuitFile | None:
     """Return the circuit's record after all checks, None when there are faults."""
-    if data is None or not _is_readable(data, faults):
+    if not _is_readable(data, faults):
         return None
     record = validate(CircuitFile, data, faults)
     check_circuit(Draft(data, faults), folder)
@@ -216,7 +216,7 @@ def _circuit(data: Mapping[str, Any] | None, faults: Faults, folder: Path) -> Ci
 
 def _rules(data: Mapping[str, Any] | None, faults: Faults) -> RuleFile | None:
     """Return the rules' record after all checks, None when there are faults."""
-    if data is None or not _is_readable(data, faults):
+    if not _is_readable(data, faults):
         return None
     check_rule_names(data, faults)
     record = validate(RuleFile, data, faults)
@@ -227,8 +227,10 @@ def _rules(data: Mapping[str, Any] | None, faults: Faults) -> RuleFile | None:
     return record
 
 
-def _is_readable(data: Mapping[str, Any], faults: Faults) -> bool:
+def _is_readable(data: Mapping[str, Any] | None, faults: Faults) -> TypeGuard[Mapping[str, Any]]:
     """Tell whether the data are of the form read here; if not, that is the only fault worth telling."""
+    if data is None and faults.items:
+        return False
     if not isinstance(data, Mapping) or too_deep(data):
         faults.add((), "data nested too deep" if isinstance(data, Mapping) else describe(data), LEVELS)
         return False

@@ -47,7 +47,9 @@ def _as_written(node: Any) -> Any:
     if isinstance(kept.get("title"), str):
         del kept["title"]
     choices = [choice for choice in kept.get("anyOf", []) if choice != {"type": "null"}]
-    if len(choices) == 1:
+    if len(choices) > 1:
+        kept["anyOf"] = choices
+    elif choices:
         kept = {**choices[0], **{key: value for key, value in kept.items() if key != "anyOf"}}
     if "default" in kept and (kept["default"] is None or isinstance(kept["default"], dict)):
         del kept["default"]

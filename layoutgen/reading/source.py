@@ -38,6 +38,7 @@ _TOKEN = re.compile(
     r"|[\[\]{}\n=.,]",
     re.DOTALL,
 )
+_CLOSED = re.compile(r'(""").*\1|(\'\'\').*\2|(["\']).*\3', re.DOTALL)
 _AT_LINE = re.compile(r"\(at line (\d+), column \d+\)")
 _LONG_INTEGER = re.compile(r"[0-9_]{4300}")
 _REPEATED = ("Cannot declare", "Cannot overwrite", "Duplicate inline table key")
@@ -232,11 +233,26 @@ def _syntax_fault(text: str, error: Exception) -> _UnreadableError:
         line = text.count("\n", 0, long.start()) + 1 if long else 0
         return _UnreadableError(line, "an integer of thousands of digits", "integers of 64 bits")
     place = _AT_LINE.search(message)
-    line = int(place[1]) if place else text.count("\n") + 1
+    line = int(place[1]) if place else _line_left_open(text)
     reason = message[: message.rfind(" (at ")]
     head = re.match(r"[^('\"]*", reason)
     kept = head.end() if head else 0
     return _UnreadableError(line, f"no valid TOML: {_short_reason(reason, kept)}", _TOML)
+
+
+def _line_left_open(text: str) -> int:
+    """Return the line of the string or bracket still open at the end of a text, else its last line."""
+    opened: list[int] = []
+    for match in _TOKEN.finditer(text):
+        token = match[0]
+        if token in ("[", "{"):
+            opened.append(match.start())
+        elif token in ("]", "}"):
+            opened = opened[:-1]
+        elif token[0] in "\"'" and not _CLOSED.fullmatch(token):
+            opened.append(match.start())
+            break
+    return text.count("\n", 0, opened[-1] if opened else len(text.rstrip())) + 1
 
 
 def _short_reason(reason: str, kept: int) -> str:

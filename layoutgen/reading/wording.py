@@ -7,7 +7,6 @@ from __future__ import annotations
 
 import datetime
 import re
-import unicodedata
 from collections.abc import Iterable, Mapping, Sequence
 
 __all__ = ["QUOTE", "Path", "a_or_b", "describe", "key_text", "nearest", "printable", "quote", "split_key"]
@@ -21,11 +20,10 @@ QUOTE = 40
 _ESCAPED_IN_QUOTES = '"\\\\'
 _BARE_KEY = re.compile(r"[A-Za-z0-9_-]+")
 _TOKEN = re.compile(r'\[(\d+)\]|"((?:[^"\\]|\\.)*)"|([^.\[\]"]+)')
-_HIDDEN = frozenset({"Cc", "Cf", "Cs", "Zl", "Zp"})
 
 
 def printable(text: str, also: str = "") -> str:
-    """Return the text with control, format and line-separating characters as escapes.
+    """Return the text with every character that is not printable as an escape.
 
     Args:
         text: Any text.
@@ -38,7 +36,7 @@ def _escaped(character: str, also: str) -> str:
     """Return one character, or its escape when a terminal would act on it."""
     if character in also:
         return f"\\{character}"
-    if unicodedata.category(character) not in _HIDDEN:
+    if character.isprintable():
         return character
     code = ord(character)
     return f"\\x{code:02x}" if code < 0x100 else f"\\u{code:04x}" if code < 0x10000 else f"\\U{code:08x}"

@@ -1,4 +1,4 @@
-"""PNG: the preview picture in dots, ten inches wide; drawn by matplotlib's Agg with its own fonts."""
+"""PNG: the preview picture in dots, its longer side ten inches; drawn by matplotlib's Agg with its own fonts."""
 
 from __future__ import annotations
 
@@ -23,14 +23,13 @@ _CAPITAL = 0.729
 
 
 def write_png(result: Result, job: Job) -> bytes:
-    """Return the PNG file: the picture ten inches wide at the job's resolution."""
+    """Return the PNG file: the picture, its longer side ten inches, at the job's resolution."""
     from PIL import Image
 
     picture = picture_of(result.artwork, result.findings)
     x0, y0, x1, y1 = picture.box
-    columns = min(round(_INCHES * job.dpi), _MOST_DOTS)
-    scale = columns / (x1 - x0)
-    rows = max(1, round((y1 - y0) * scale))
+    scale = min(round(_INCHES * job.dpi), _MOST_DOTS) / max(x1 - x0, y1 - y0)
+    columns, rows = (max(1, round(side * scale)) for side in (x1 - x0, y1 - y0))
     dots = np.asarray(_drawn(picture, columns, rows, scale))[:, :, :3]
     stream = io.BytesIO()
     Image.fromarray(np.ascontiguousarray(dots)).save(stream, "PNG", dpi=(job.dpi, job.dpi), compress_level=4)

@@ -15,7 +15,7 @@ from layoutgen.sizing import SizedCircuit
 __all__ = ["DEFAULT_DPI", "Job", "Result"]
 
 DEFAULT_DPI = 150
-"""Dots per inch of the preview picture, which is drawn ten inches wide [1/in]."""
+"""Dots per inch of the preview picture, whose longer side is ten inches [1/in]."""
 
 
 @dataclass(frozen=True, slots=True, kw_only=True, eq=False)

@@ -190,7 +190,7 @@ def test_slit_within_one_net(slit: float, faults: int) -> None:
 
 
 def test_slit_shorter_than_a_corner_is_none() -> None:
-    """Catches a shallow dent taken for a slit: its two sides lie less than 3.5 limits apart on the outline."""
+    """Catches a shallow dent taken for a slit: its sides lie less than 3.5 limits apart."""
     sheet = Sheet(GAP)
     dent = polygon((4, 4), (8, 4), (8, 8), (6.1, 8), (6.1, 7.75), (6, 7.75), (6, 8), (4, 8))
     sheet.copper(dent)

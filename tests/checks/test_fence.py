@@ -118,7 +118,7 @@ def test_wavelengths_govern_when_shorter() -> None:
 
 
 def test_via_pitch_wins_over_the_fence() -> None:
-    """Catches a fence that cannot be as dense as asked passed in silence, or without the frequency it suits."""
+    """Catches a fence that cannot be as dense as asked passed, or without the frequency it suits."""
     rules = {
         "fence": {"max_pitch": "2 mm", "max_pitch_wavelengths": 0.02, "max_edge_distance": "0.8 mm"},
         "vias": {"min_pitch": "1.6 mm"},

@@ -73,7 +73,7 @@ def test_ring_of_a_land_pushed_aside() -> None:
 
 
 def test_ring_in_the_pour() -> None:
-    """Catches a via in the pour found although its land lies inside other copper, or a hole at its edge passed."""
+    """Catches a via in the pour found though its land lies inside it, or one at its edge passed."""
     sheet = Sheet(holes(min_annular_ring="0.125 mm"))
     sheet.copper(box(8, 8, 12, 12))
     sheet.via(10, 10, draw=False)
@@ -223,7 +223,7 @@ def test_vias_per_ground_pad(count: int, faults: int) -> None:
 
 
 def test_a_via_elsewhere_is_not_the_pads_own() -> None:
-    """Catches vias counted by their label alone: one was moved off the pad's copper, one belongs to the pour."""
+    """Catches vias counted by their label alone: one was moved off, one is the pour's."""
     sheet = grounded(1, per_ground_pad=2)
     sheet.via(20, 9, "part:R1")
     sheet.via(14.5, 11, "pour")

@@ -68,7 +68,7 @@ def test_given_lengths_end_in_a_strip_and_say_so() -> None:
 
 
 def test_a_given_board_keeps_its_size_and_its_ports() -> None:
-    """Catches a board that grows although its size was given, and a free line that does not reach the edge."""
+    """Catches a board that grows although its size was given, and a free line short of the edge."""
     placement = placed(CIRCUITS["fixed board"])
     assert (placement.width, placement.height) == (30_000_000, 14_000_000)
     assert placement.ports["p1"].x == 300_000
@@ -125,7 +125,7 @@ def test_a_pinned_part_lies_where_the_hint_says() -> None:
 
 
 def test_bank_order_and_side() -> None:
-    """Catches a bank whose smallest capacitor is not the first from the feed, or whose parts are not in a row."""
+    """Catches a bank whose smallest capacitor is not the first from the feed."""
     placement = placed(CIRCUITS["long feed"])
     feed_end = placement.lines["feed"].path[-1]
     distances = [

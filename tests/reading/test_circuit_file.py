@@ -676,7 +676,8 @@ class TestFootprints:
         """A pad over thermal vias needs no heading."""
         files.change(
             'pads.source = { ground = "flange" }',
-            'pads.source = { at = ["0 mm", "0 mm"], size = ["2 mm", "2 mm"], ground = "vias", thermal = "12 K/W" }',
+            'pads.source = { at = ["0 mm", "0 mm"], size = ["2 mm", "2 mm"], '
+            'ground = "vias", thermal = "12 K/W" }',
         )
         pad = files.read().circuit.footprints["flange"].pads["source"]
         assert (pad.ground, pad.thermal, pad.heading) == ("vias", 12.0, None)

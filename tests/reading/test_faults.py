@@ -1,4 +1,4 @@
-"""All faults in one run: of both files, in order, counted, quoted with care, and never one slip told twice."""
+"""All faults in one run: of both files, in order, counted, quoted with care, no slip told twice."""
 
 from __future__ import annotations
 
@@ -17,7 +17,7 @@ if TYPE_CHECKING:
 
 class TestAllAtOnce:
     def test_both_files_in_line_order(self, files: Files) -> None:
-        """Faults of form, across keys, of names and of the rule file come together, each file in its own order."""
+        """Faults of form, across keys, of names and of rules come together, each file in its own order."""
         files.change('"-2.8 V"', '"-2.8 A"').change('"0.508 mm"', '"0.508"').change(
             '"Q1", "rf_out"]', '"Q9", "rf_out"]'
         )

@@ -56,7 +56,7 @@ class TestKindsOfFile:
         assert only_fault(Path("/dev/zero")).found == "no regular file"
 
     def test_unreadable(self, tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
-        """A file without permission is a fault, not a traceback (root may read all, so the refusal is made)."""
+        """A file without permission is a fault, not a traceback (made up: root may read all)."""
 
         def refuse(*_: object) -> int:
             raise PermissionError(13, "Permission denied")
@@ -116,14 +116,16 @@ class TestText:
             (b"format = 1\n[design\n", 2),
             (b"format = 1\ntitle = \n", 2),
             (b"format = 1\n\ntitle = 'a\n", 3),
-            (b"format = 1\na = [1,\n2\n", 4),
+            (b'format = 1\n\ntitle = """a\nb\n', 3),
+            (b"format = 1\na = [{b = 1,\n2\n", 2),
+            (b"format = 1\na = '[' \nb", 3),
+            (b"format = 1\na = [1,\n2\n", 2),
             (b"format = 1\nzeichen = 1 2\n", 2),
             (b"format = 1\n\x00\n", 2),
             (b"format = 1\rname = 2", 1),
             (b"\x7fELF\x02\x01\x01", 1),
             (b"PK\x03\x04junk", 1),
             (b"format = 1\nd = 2024-13-01\n", 2),
-            (b"format = 1\n[a]\nb = 1\n[a.b]\n", 4),
             (b"format = 1\nn = 1__0\n", 2),
             (b'format = 1\ns = "\\q"\n', 2),
         ],

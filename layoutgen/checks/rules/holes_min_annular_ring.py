@@ -16,10 +16,10 @@ from collections.abc import Iterator
 import numpy as np
 import shapely
 
-from layoutgen.checks.board import Board, Drill, Layer
+from layoutgen.checks.board import Board, Layer
+from layoutgen.checks.drills import wall_middle
 from layoutgen.checks.outcome import Hit, Outcome, Rule, named, too_small
-from layoutgen.checks.planar import TOLERANCE_NM, Geometry, whole, within
-from layoutgen.geometry import Point
+from layoutgen.checks.planar import TOLERANCE_NM, within
 
 __all__ = ["RULE"]
 
@@ -49,23 +49,13 @@ def _rings(board: Board, layer: Layer, plated: list[int], limit: float) -> Itera
     inside = covered >= 0
     tight[inside] = within(rims[covered[inside]], points[inside], reach[inside])
     for k in np.flatnonzero(tight).tolist():
-        rim = rims[covered[k]] if covered[k] >= 0 else None
-        ring, at = _ring(board.drills[plated[k]], points[k], rim)
+        drill = board.drills[plated[k]]
+        ring, at = -drill.diameter / 2.0, drill.at
+        if covered[k] >= 0:
+            ring, at = wall_middle(drill, points[k], rims[covered[k]])
         if ring < limit - TOLERANCE_NM:
-            drill = board.drills[plated[k]]
             text = f"copper around {drill.item} on {layer.name} is wide only"
             yield too_small(NAME, text, ring, limit, at, (drill.item,), named(drill.net or ""), layer.name)
-
-
-def _ring(drill: Drill, point: shapely.Point, rim: Geometry | None) -> tuple[float, Point]:
-    """Return the ring's least width [nm] and its place; the negative radius where there is no copper."""
-    radius = drill.diameter / 2.0
-    if rim is None:
-        return -radius, drill.at
-    _, (x, y) = shapely.get_coordinates(shapely.shortest_line(point, rim)).tolist()
-    distance = float(np.hypot(x - drill.x, y - drill.y))
-    share = 0.5 * (1.0 + radius / distance) if distance > 0.0 else 0.0
-    return distance - radius, whole(drill.x + share * (x - drill.x), drill.y + share * (y - drill.y))
 
 
 RULE = Rule(names=(NAME,), find=find)

@@ -15,13 +15,11 @@ from __future__ import annotations
 from collections.abc import Iterator
 
 import numpy as np
-import shapely
 
-from layoutgen.checks.board import Board, Drill, Layer, Piece
-from layoutgen.checks.drills import touched
+from layoutgen.checks.board import Board, Layer
+from layoutgen.checks.drills import touched, wall_middle
 from layoutgen.checks.outcome import Hit, Outcome, Rule, named, too_small
-from layoutgen.checks.planar import TOLERANCE_NM, near_points, whole
-from layoutgen.geometry import Point
+from layoutgen.checks.planar import TOLERANCE_NM, near_points
 
 __all__ = ["RULE"]
 
@@ -59,25 +57,11 @@ def _near_copper(board: Board, layer: Layer, limit: float, own: list[frozenset[s
         drill, piece = board.drills[k], layer.pieces[n]
         if drill.plated and piece.node in own[k]:
             continue
-        gap = float(shapely.distance(board.drill_points[k], piece.polygon)) - drill.diameter / 2.0
+        gap, at = wall_middle(drill, board.drill_points[k], piece.polygon)
         if gap < limit - TOLERANCE_NM and not (drill.plated and gap <= 0.0):
-            yield _hit(drill, piece, layer.name, gap, limit)
-
-
-def _hit(drill: Drill, piece: Piece, layer: str, gap: float, limit: float) -> Hit:
-    """Return the hit of one hole and one piece of copper."""
-    text = f"wall of {drill.item} to copper of {piece.item}"
-    items, nets = named(drill.item, piece.item), named(drill.net or "", piece.net or "")
-    return too_small(NAME, text, max(gap, 0.0), limit, _middle(drill, piece), items, nets, layer)
-
-
-def _middle(drill: Drill, piece: Piece) -> Point:
-    """Return the middle between a hole's wall and a piece of copper."""
-    line = shapely.shortest_line(shapely.Point(drill.x, drill.y), piece.polygon)
-    _, (x, y) = shapely.get_coordinates(line).tolist()
-    distance = float(np.hypot(x - drill.x, y - drill.y))
-    share = 0.5 * (1.0 + drill.diameter / 2.0 / distance) if distance > 0.0 else 0.0
-    return whole(drill.x + share * (x - drill.x), drill.y + share * (y - drill.y))
+            text = f"wall of {drill.item} to copper of {piece.item}"
+            items, nets = named(drill.item, piece.item), named(drill.net or "", piece.net or "")
+            yield too_small(NAME, text, max(gap, 0.0), limit, at, items, nets, layer.name)
 
 
 RULE = Rule(names=(NAME,), find=find)

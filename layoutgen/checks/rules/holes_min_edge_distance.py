@@ -16,9 +16,9 @@ import numpy as np
 import shapely
 
 from layoutgen.checks.board import Board
-from layoutgen.checks.drills import drill_layer
+from layoutgen.checks.drills import drill_layer, wall_middle
 from layoutgen.checks.outcome import Hit, Outcome, Rule, named, too_small
-from layoutgen.checks.planar import TOLERANCE_NM, whole
+from layoutgen.checks.planar import TOLERANCE_NM
 
 __all__ = ["RULE"]
 
@@ -45,9 +45,8 @@ def _at_edge(board: Board, area: shapely.Polygon, item: str, limit: float, *, in
     where = "the profile" if item == "board" else f"the cut-out of {item}"
     for k in np.flatnonzero(reach < limit - TOLERANCE_NM).tolist():
         drill = board.drills[k]
-        line = shapely.shortest_line(board.drill_points[k], rim)
-        (ax, ay), (bx, by) = shapely.get_coordinates(line).tolist()
-        text, at = f"wall of {drill.item} to {where}", whole((ax + bx) / 2.0, (ay + by) / 2.0)
+        _, at = wall_middle(drill, board.drill_points[k], rim)
+        text = f"wall of {drill.item} to {where}"
         items, nets = named(drill.item, item), named(drill.net or "")
         yield too_small(NAME, text, float(reach[k]), limit, at, items, nets, drill_layer(drill))
 

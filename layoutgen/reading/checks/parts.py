@@ -37,7 +37,7 @@ def check_parts(draft: Draft, folder: Path) -> None:
 
 def _check_kind(draft: Draft, table: Table) -> None:
     """Check the keys that a part's kind asks for or excludes."""
-    faults, kind = draft.faults, table.raw.get("kind")
+    faults, kind = draft.faults, str(table.raw.get("kind"))
     if kind in _EXAMPLES:
         require(faults, table, "value", f'the {kind}\'s value, such as "{_EXAMPLES[kind]}"')
     elif kind in ("transistor", "other"):
@@ -69,8 +69,9 @@ def _check_pads(draft: Draft, table: Table) -> None:
             "belongs to a part of two pads with nets",
         )
         pins = table.raw.get("pins")
-        if table.raw.get("kind") in _EXAMPLES and isinstance(pins, Mapping) and len(pins) != 2:
-            faults.add(table.at("pins"), f"{len(pins)} pins", f"two pins on a {table.raw['kind']}")
+        kind = str(table.raw.get("kind"))
+        if kind in _EXAMPLES and isinstance(pins, Mapping) and len(pins) != 2:
+            faults.add(table.at("pins"), f"{len(pins)} pins", f"two pins on a {kind}")
     elif table.has("nets") and table.raw.get("kind") != "transistor":
         forbid(faults, table, ("dc", "terminations", "data_ports"), "belongs to a part with pins")
 
@@ -133,9 +134,9 @@ def _check_pin(draft: Draft, table: Table, path: tuple[str | int, ...], pin: obj
     """Add a fault when a pin is named that neither the part nor its footprint has."""
     pins = table.raw["pins"]
     pads = given(draft.data, "footprints", str(table.raw.get("footprint")), "pads")
-    if isinstance(pads, Mapping) and pin in pads:
+    if not isinstance(pin, str) or (isinstance(pads, Mapping) and pin in pads):
         return
-    if isinstance(pin, str) and pin not in pins and not draft.faults.about((*table.path, *path)):
+    if pin not in pins and not draft.faults.about((*table.path, *path)):
         unknown_name(draft, (*table.path, *path), pin, pins, "a pin of the part")
 
 
