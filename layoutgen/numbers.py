@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import json
 from collections.abc import Iterable, Mapping, Sequence
+from json.encoder import encode_basestring
 
 from layoutgen.units import nm_to_mm_text
 
@@ -55,8 +56,10 @@ def json_text(value: object, indent: int = 0) -> str:
     """
     if isinstance(value, Fixed):
         return str(value)
-    if value is None or isinstance(value, (str, bool, int)):
-        return json.dumps(value, ensure_ascii=False)
+    if isinstance(value, str):
+        return encode_basestring(value)
+    if value is None or isinstance(value, (bool, int)):
+        return json.dumps(value)
     if isinstance(value, Mapping):
         return _joined("{}", _pairs(value, indent), _is_flat(value.values()), indent)
     if isinstance(value, Sequence):
@@ -65,7 +68,7 @@ def json_text(value: object, indent: int = 0) -> str:
 
 
 def _pairs(value: Mapping[str, object], indent: int) -> list[str]:
-    return [f"{json.dumps(key)}: {json_text(item, indent + 1)}" for key, item in value.items()]
+    return [f"{encode_basestring(key)}: {json_text(item, indent + 1)}" for key, item in value.items()]
 
 
 def _is_flat(items: Iterable[object]) -> bool:

@@ -33,6 +33,9 @@ from layoutgen.units import to_nm
 
 __all__ = ["Conductor", "conductors_of", "copper_shapes"]
 
+_SKEW_MARGIN_NM = 30
+"""Added to offsets of outlines that are not parallel to the axes, which come out up to 20 nm short [nm]."""
+
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Conductor:
@@ -204,7 +207,7 @@ def _radial(radial: PlacedRadial, room: _Room, gaps: Mapping[str, int]) -> Condu
         rings=(ring,),
         drawn=(sector_ring(*frame, room.limits.undercut),),
         gap=gap,
-        keepout=grow(sector_cover(*frame), gap + 5),
+        keepout=grow(sector_cover(*frame), gap + _SKEW_MARGIN_NM),
         origin=radial.origin,
     )
 
@@ -251,7 +254,7 @@ def _pad(part: PlacedPart, pad: PlacedPad, room: _Room, gaps: Mapping[str, int])
 def _clear_of(copper: BaseGeometry, gap: int) -> BaseGeometry:
     """Return copper grown by a gap [nm], never less where its edges are not parallel to an axis."""
     straight = copper.area == shapely.box(*copper.bounds).area
-    return grow(copper, gap if straight else gap + 5)
+    return grow(copper, gap if straight else gap + _SKEW_MARGIN_NM)
 
 
 def _around(path: Sequence[Point], width: int, nets: tuple[str, str], gap: int, room: _Room) -> BaseGeometry:

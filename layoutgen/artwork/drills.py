@@ -18,6 +18,8 @@ from layoutgen.placement import Placement
 
 __all__ = ["Drills", "legal_area"]
 
+_ROUNDING_NM = 1
+
 
 def legal_area(
     placement: Placement,
@@ -36,9 +38,9 @@ def legal_area(
         pads: Outlines of the pads that are soldered; vias stay out of their mask openings.
     """
     radius = math.ceil(limits.via_drill / 2)
-    area = joined(grow(piece, -math.ceil(limits.via_land / 2)) for piece in pour)
+    land = math.ceil(limits.via_land / 2) + _ROUNDING_NM
+    area = joined(grow(piece, -land) for piece in pour)
     inner = overlap(area, board_area(placement, limits.hole_edge + radius, 10_000.0))
-    land = math.ceil(limits.via_land / 2)
     forbidden = [grow(ring.polygon(), limits.mask_expansion + land) for ring in pads]
     forbidden += [grow(ring.polygon(), limits.hole_edge + radius) for _, ring in cutouts_of(placement)]
     forbidden += [

@@ -6,7 +6,6 @@ from collections.abc import Iterator, Mapping
 from itertools import groupby
 
 import numpy as np
-import numpy.typing as npt
 import shapely
 
 from layoutgen.artwork import Artwork
@@ -14,7 +13,7 @@ from layoutgen.checks.board import Board
 from layoutgen.checks.drawn import pour_gaps
 from layoutgen.checks.facing import Edges, edges_of
 from layoutgen.checks.nodes import GROUND
-from layoutgen.checks.planar import CHORD_NM, TOLERANCE_NM, Geometry, array_of, parts
+from layoutgen.checks.planar import CHORD_NM, TOLERANCE_NM, Bools, Floats, Geometry, Polygons, array_of, parts
 from layoutgen.geometry import Point
 
 __all__ = [
@@ -99,7 +98,7 @@ def _spans(edges: Edges, line: Geometry, reach: float, away: Geometry) -> Iterat
     pieces, index = shapely.get_parts(cut, return_index=True)
     real = shapely.length(pieces) > 0.0
     pieces, index = pieces[real], near[index[real]]
-    facing = _faces(pieces, edges.direction[index], line)
+    facing = _faces(pieces, edges.direction[index], line, reach + TOLERANCE_NM)
     for piece, edge in zip(pieces[facing], index[facing].tolist(), strict=True):
         way = (shapely.get_coordinates(piece) - edges.start[edge]) @ edges.direction[edge] + edges.along[edge]
         yield int(edges.ring[edge]), float(way.min()), float(way.max())
@@ -139,12 +138,15 @@ def _way(edges: Edges, ring: int, start: float, end: float) -> shapely.LineStrin
     return shapely.LineString(np.concatenate((ends[:1], points[inside], ends[1:])))
 
 
-def _faces(
-    pieces: npt.NDArray[np.object_], direction: npt.NDArray[np.float64], line: Geometry
-) -> npt.NDArray[np.bool_]:
-    """Return which pieces of pour outline have the line on their outer side."""
+def _faces(pieces: Polygons, direction: Floats, line: Geometry, reach: float) -> Bools:
+    """Return which pieces of pour outline look at the line.
+
+    A piece does when the nearest copper of the line lies on its outer side, or when the line is met straight
+    ahead within reach [nm].
+    """
     middles = shapely.line_interpolate_point(pieces, 0.5, normalized=True)
     ends = shapely.get_coordinates(shapely.shortest_line(middles, line)).reshape(-1, 2, 2)
-    towards = ends[:, 1] - ends[:, 0]
     outward = np.stack((direction[:, 1], -direction[:, 0]), axis=1)
-    return np.asarray(np.einsum("nk,nk->n", towards, outward) > 0.0)
+    nearest = np.einsum("nk,nk->n", ends[:, 1] - ends[:, 0], outward) > 0.0
+    rays = shapely.linestrings(np.stack((ends[:, 0], ends[:, 0] + reach * outward), axis=1))
+    return np.asarray(nearest | shapely.intersects(rays, line))

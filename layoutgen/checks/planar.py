@@ -21,7 +21,10 @@ __all__ = [
     "CHORD_NM",
     "CORNER_LIMITS",
     "TOLERANCE_NM",
+    "Bools",
+    "Floats",
     "Geometry",
+    "Ints",
     "Polygons",
     "array_of",
     "merge",
@@ -34,6 +37,7 @@ __all__ = [
 ]
 
 Polygons = npt.NDArray[np.object_]
+Floats = npt.NDArray[np.float64]
 Ints = npt.NDArray[np.intp]
 Bools = npt.NDArray[np.bool_]
 
@@ -86,12 +90,7 @@ def middle(a: Geometry, b: Geometry) -> Point:
     return whole(*(centre + along * (max(low, least) + min(high, most)) / 2.0).tolist())
 
 
-def _flat(
-    geometry: Geometry,
-    at: npt.NDArray[np.float64],
-    along: npt.NDArray[np.float64],
-    across: npt.NDArray[np.float64],
-) -> tuple[float, float]:
+def _flat(geometry: Geometry, at: Floats, along: Floats, across: Floats) -> tuple[float, float]:
     """Return how far an outline runs straight along a direction to both sides of a point on it [nm]."""
     points, part = shapely.get_coordinates(shapely.get_parts(_lines(geometry)), return_index=True)
     same = part[1:] == part[:-1]

@@ -28,10 +28,10 @@ def open_end(u: ArrayLike, er: ArrayLike, t: ArrayLike = 0.0) -> Array:
 
     Source: :func:`kirschning_jansen_koster_1981` times a correction fitted for this project.
     Range: 0.3 <= u <= 6, 1 <= er <= 13, t <= 0.2.
-    Accuracy: 0.006 h against field solutions (u 0.5-4, er 2.2-9.8, t = 0); 0.01 h in air with t up to 0.14.
+    Accuracy: 0.006 h against field solutions (u 0.5-4, er 2.2-9.8, t = 0); 0.012 h in air with t up to 0.14.
 
     >>> round(float(open_end(1.0, 9.8)), 3)
-    0.338
+    0.339
     """
     u, er, t = floats(u, er, t)
     u, er = np.clip(u, 1e-3, 1e3), np.clip(er, 1.0, 1e3)

@@ -14,6 +14,8 @@ Flags = NDArray[np.bool_]
 
 _AGM_STEPS = 40
 _ROOT_STEPS = 200
+_ROOT_PRODUCT = 1e-14
+_ROOT_WIDTH = 1e-13
 
 
 def floats(*values: ArrayLike) -> list[Array]:
@@ -71,19 +73,20 @@ def _mean_of_one_and(k: ArrayLike) -> Array:
 
 
 def increasing_root(
-    function: Callable[[Array], Array], start: Array, low: float, high: float, tolerance: float = 1e-13
+    function: Callable[[Array], Array], start: Array, low: float, high: float, slope: float = 1.0
 ) -> Array:
     """Find where an increasing function of one variable is zero, for a whole array at once.
 
-    Secant steps inside a bracket that every evaluation narrows; a step that leaves the bracket, or is not
-    finite, becomes a bisection. Where there is no zero the nearer end of the bracket is returned.
+    Secant steps inside a bracket that every evaluation narrows; a step that leaves the bracket becomes a
+    bisection. An element is found when the product of its last two steps is below 1e-14: the error left by a
+    secant step is about that product. Where there is no zero the nearer end of the bracket is returned.
 
     Args:
         function: Maps an array [-] to an array of the same shape [-], each element for itself.
         start: First guess [-], anywhere.
         low: Lower end of the bracket [-].
         high: Upper end of the bracket [-].
-        tolerance: The step [-] at which an element counts as found.
+        slope: Guess of the slope for the first step [-].
 
     >>> round(float(increasing_root(lambda x: x**3 - 8.0, np.array(1.0), 0.0, 10.0)), 12)
     2.0
@@ -91,26 +94,23 @@ def increasing_root(
     x = np.clip(start, low, high)
     below, above = np.full_like(x, low), np.full_like(x, high)
     y = function(x)
-    x_old, y_old = x, y
-    step = np.where(y > 0.0, -1e-3, 1e-3)
+    step, last = -y / slope, np.ones_like(x)
     for _ in range(_ROOT_STEPS):
         below, above = np.where(y <= 0.0, x, below), np.where(y >= 0.0, x, above)
         proposed = x + step
-        stuck = (np.abs(step) <= tolerance) | (y == 0.0)
-        outside = ~stuck & ~((proposed > below) & (proposed < above))
-        new = np.where(
-            stuck, np.clip(proposed, below, above), np.where(outside, 0.5 * (below + above), proposed)
-        )
-        x_old, y_old, x = x, y, new
-        if np.all(stuck | (above - below <= tolerance)):
-            break
-        y = function(x)
-        step = _secant_step(x, y, x_old, y_old)
+        found = (np.abs(step * last) <= _ROOT_PRODUCT) | (above - below <= _ROOT_WIDTH)
+        leaves = (proposed <= below) | (proposed >= above)
+        new = np.where(leaves, np.where(found, x, 0.5 * (below + above)), proposed)
+        if np.all(found):
+            return np.asarray(new)
+        last = new - x
+        y_old, y = y, function(new)
+        step, x = _secant_step(last, y, y_old), new
     return np.asarray(x)
 
 
-def _secant_step(x: Array, y: Array, x_old: Array, y_old: Array) -> Array:
-    """Return the secant's step from x; zero where the two points coincide."""
+def _secant_step(last: Array, y: Array, y_old: Array) -> Array:
+    """Return the secant's next step after a step from y_old to y; zero where both are the same."""
     rise = y - y_old
     level = rise == 0.0
-    return np.asarray(np.where(level, 0.0, -y * (x - x_old) / np.where(level, 1.0, rise)))
+    return np.asarray(np.where(level, 0.0, -y * last / np.where(level, 1.0, rise)))

@@ -125,5 +125,5 @@ def radial_stub_radius(
         k = 2.0 * math.pi * f * np.sqrt(ee) / C0
         return np.asarray(_bessel_pair(k * r_inner, k * (drawn + extension))[0] * k * r_inner)
 
-    share = increasing_root(excess, np.full(f.shape, 0.3), 1e-6, 1.0, 1e-12)
+    share = increasing_root(excess, np.full(f.shape, 0.3), 1e-6, 1.0)
     return np.asarray(r_inner + share * quarter)

@@ -13,7 +13,7 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from layoutgen.formulas.coupled import coupled_pair
-from layoutgen.formulas.microstrip import wheeler_hammerstad_width
+from layoutgen.formulas.microstrip import hammerstad_jensen_1980_widening, wheeler_hammerstad_width
 from layoutgen.formulas.numeric import Array, Flags, floats, increasing_root, within
 from layoutgen.formulas.pour import microstrip_beside_pour
 
@@ -87,8 +87,9 @@ def width_for_impedance(
         line = microstrip_beside_pour(np.exp(log_u), er, t, gap_left, gap_right)
         return np.asarray(target - np.log(line.impedance))
 
-    start = np.log(wheeler_hammerstad_width(np.exp(target), er))
-    log_u = increasing_root(excess, start, math.log(_LOWEST), math.log(_HIGHEST), 1e-11)
+    thin = wheeler_hammerstad_width(np.exp(target), er)
+    start = np.log(np.maximum(thin - hammerstad_jensen_1980_widening(thin, er, t), 0.3 * thin))
+    log_u = increasing_root(excess, start, math.log(_LOWEST), math.log(_HIGHEST), slope=0.6)
     u = np.exp(log_u)
     line = microstrip_beside_pour(u, er, t, gap_left, gap_right)
     met = np.abs(np.log(line.impedance) - target) < 1e-8

@@ -59,7 +59,7 @@ class Faults:
         return path in self._above
 
     def line_of(self, path: Path) -> str:
-        """Return ``line 12``, or an empty text for circuits built in code."""
+        """Return ``line 12``, or ``the same data`` for circuits built in code."""
         line = self.source.location(path).line
         return f"line {line}" if line else "the same data"
 

@@ -102,7 +102,7 @@ def circuit_from_data(
     """Check a circuit built in code: tables as dicts, values as written in a circuit file.
 
     Args:
-        data: The same structure as the file, quantities as text.
+        data: The same structure as the file, quantities as text; None stands for a key left out.
         rules: Stands for ``board.rules`` where the data leave it out.
         folder: What the paths of data files start from; the current folder when None.
         name: Stands for the file's name in messages.
@@ -166,7 +166,7 @@ def _result(result: T | None, collections: list[Faults]) -> T:
 def _with_rules(data: Mapping[str, Any], rules: str | None) -> Mapping[str, Any]:
     """Return circuit data whose ``board.rules`` is filled in where it is left out."""
     board = given(data, "board")
-    if rules is None or not isinstance(board, Mapping) or "rules" in board:
+    if rules is None or not isinstance(board, Mapping) or board.get("rules") is not None:
         return data
     return {**data, "board": {**board, "rules": rules}}
 
@@ -206,6 +206,7 @@ def _circuit(data: Mapping[str, Any] | None, faults: Faults, folder: Path) -> Ci
     """Return the circuit's record after all checks, None when there are faults."""
     if not _is_readable(data, faults):
         return None
+    data = _without_none(data)
     record = validate(CircuitFile, data, faults)
     check_circuit(Draft(data, faults), folder)
     if record is None or faults.items:
@@ -218,6 +219,7 @@ def _rules(data: Mapping[str, Any] | None, faults: Faults) -> RuleFile | None:
     """Return the rules' record after all checks, None when there are faults."""
     if not _is_readable(data, faults):
         return None
+    data = _without_none(data)
     check_rule_names(data, faults)
     record = validate(RuleFile, data, faults)
     check_rules(data, faults)
@@ -225,6 +227,15 @@ def _rules(data: Mapping[str, Any] | None, faults: Faults) -> RuleFile | None:
         return None
     record._source = faults.source
     return record
+
+
+def _without_none(data: Mapping[str, Any]) -> dict[str, Any]:
+    """Return data whose keys with None, which only code can write, are left out, at any depth."""
+    return {
+        key: _without_none(value) if isinstance(value, Mapping) else value
+        for key, value in data.items()
+        if value is not None
+    }
 
 
 def _is_readable(data: Mapping[str, Any] | None, faults: Faults) -> TypeGuard[Mapping[str, Any]]:

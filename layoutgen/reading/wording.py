@@ -123,5 +123,5 @@ def nearest(name: str, known: Iterable[str]) -> str | None:
 
 def a_or_b(names: Sequence[str]) -> str:
     """Return ``"a", "b" or "c"``."""
-    quoted = [f'"{name}"' for name in names]
+    quoted = [quote(name) for name in names]
     return quoted[0] if len(quoted) == 1 else f"{', '.join(quoted[:-1])} or {quoted[-1]}"

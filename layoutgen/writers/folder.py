@@ -2,7 +2,7 @@
 
 What is promised:
 
-- A folder that does not exist yet appears whole, by one rename.
+- A folder that does not exist yet is made beside its place, and appears there whole, by one rename.
 - In a folder that exists, every new file is first written and flushed into ``.layoutgen-stage`` inside it.
   Renaming that to ``.layoutgen-commit`` is the point of no return; then each file is renamed to its place,
   ``report.json`` last. A run that is killed before the point leaves the old set, and leftovers that the next
@@ -109,10 +109,11 @@ def recover(folder: Path) -> None:
 def _create(folder: Path, files: Mapping[str, bytes]) -> None:
     """Make the folder whole beside its place, then rename it there."""
     folder.parent.mkdir(parents=True, exist_ok=True)
-    stage = Path(tempfile.mkdtemp(prefix=".layoutgen-", dir=folder.parent))
+    stage = folder.parent / f".{folder.name}{_STAGE}"
+    shutil.rmtree(stage, ignore_errors=True)
+    stage.mkdir()
     try:
         _write_flushed(stage, files)
-        stage.chmod(0o777 & ~_umask())
         with _uninterrupted():
             stage.rename(folder)
             _flush_folder(folder.parent)
@@ -241,13 +242,6 @@ def _uninterrupted() -> Iterator[None]:
         yield
     finally:
         signal.pthread_sigmask(signal.SIG_SETMASK, before)
-
-
-def _umask() -> int:
-    """Return the process's mask for new files; it can only be read by setting it."""
-    mask = os.umask(0)
-    os.umask(mask)
-    return mask
 
 
 def _reason(error: OSError) -> str:

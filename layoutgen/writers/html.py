@@ -11,6 +11,9 @@ __all__ = ["Cell", "cell", "escape", "items", "section", "table"]
 Cell = str
 """A table cell's HTML, escaped already."""
 
+_LONG = 40
+"""Characters from which on a column's text may break [-]."""
+
 _NUMBERS = re.compile(r"([−-]?\d|–, )[\d.,−– ]*(\s?[A-Za-zΩ/%^]+\d?)?(<br>.*|\s<small>.*)?")
 """A cell of numbers: digits with a unit at most, then perhaps a line or a word about them."""
 
@@ -47,8 +50,10 @@ def table(caption: str, heads: Sequence[str], rows: Iterable[Sequence[Cell]], id
 
 
 def _kind(column: Sequence[Cell]) -> str:
-    """Return the class attribute of a column: numbers, with or without gaps, stand to the right."""
+    """Return the class attribute of a column: numbers stand to the right, long text may break."""
     filled = [content for content in column if content not in ("", "–")]
+    if any(len(content) > _LONG for content in filled):
+        return ' class="t"'
     return ' class="n"' if filled and all(map(_NUMBERS.fullmatch, filled)) else ""
 
 

@@ -11,6 +11,9 @@ __all__ = ["as_circle", "bulge_radius", "distinct_vertices", "doubled_area", "tu
 
 def doubled_area(ring: Ring) -> float:
     """Return twice the signed area [nm^2] of the outline, true arcs included; counter-clockwise is > 0."""
+    circle = as_circle(ring)
+    if circle:
+        return math.copysign(2.0 * math.pi * circle[2] ** 2, ring.bulges[0])
     points = ring.points
     after = (*points[1:], points[0])
     area = sum(x0 * y1 - x1 * y0 for (x0, y0), (x1, y1) in zip(points, after, strict=True))

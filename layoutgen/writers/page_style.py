@@ -32,8 +32,10 @@ figure svg{display:block;width:100%;height:auto;max-height:80vh}
 table{border-collapse:collapse;background:var(--card);font-size:.9rem;min-width:24rem}
 caption{text-align:left;color:var(--soft);padding:.2rem 0}
 th,td{padding:.25rem .6rem;text-align:left;border-bottom:1px solid var(--rule);vertical-align:top}
-thead th{background:var(--head);white-space:nowrap}
+thead th{background:var(--head);vertical-align:bottom}
 tbody th{font-weight:600;white-space:nowrap}
+td{white-space:nowrap}
+td.t{white-space:normal;min-width:17rem}
 .n{text-align:right;font-variant-numeric:tabular-nums;white-space:nowrap}
 .beside{display:flex;flex-wrap:wrap;gap:0 2rem;align-items:flex-start}
 td small{color:var(--soft)}

@@ -69,7 +69,7 @@ def _line_row(result: Result, line: PlacedLine) -> list[Cell]:
         _path_of_nets((*line.nets, "open")[:2]),
         impedance,
         _mm(line.width),
-        fixed(math.degrees(line.angle), 2) + ("<br><small>free</small>" if sized.free else ""),
+        fixed(math.degrees(line.angle), 2) + (" <small>free</small>" if sized.free else ""),
         _mm(line.centre_line),
         str(len(line.bends)),
         _gaps(result.artwork.line_copper.get(line.name)),

@@ -56,7 +56,7 @@ class Frame:
             *(text.x + _text_width(text) + self.unit for text in (*self._head(), *self._key_texts())),
         )
         lowest = min(y for _, _, y in self._key_places()) if self.styles else self._bar_y
-        return (-self.left, lowest - 2 * self.unit, reach, self.height + self.above + 5 * self.unit)
+        return (-self.left, lowest - 2 * self.unit, reach, self._head()[0].y + round(2.6 * self.unit))
 
     def areas(self) -> Iterator[Area]:
         """Yield port arrows, scale bar and the key's samples."""
@@ -87,15 +87,17 @@ class Frame:
         design, substrate = self.file.design, self.file.substrate
         revision = f", revision {design.revision}" if design.revision else ""
         low, high = (fixed(f / 1e9, 3) for f in design.band)
-        about = (
-            f"{low} to {high} GHz · {self.width / _NM:g} x {self.height / _NM:g} mm · permittivity "
-            f"{substrate.relative_permittivity:g}, height {substrate.height * 1e3:g} mm · seen from the top"
-        )
-        y = self.height + self.above
-        return [
-            Text(design.title + revision, 0, y + round(2.2 * self.unit), round(1.3 * self.unit)),
-            Text(about, 0, y + round(0.7 * self.unit), round(0.7 * self.unit)),
+        lines = [
+            f"{low} to {high} GHz · {self.width / _NM:g} x {self.height / _NM:g} mm · seen from the top",
+            f"permittivity {substrate.relative_permittivity:g}, height {substrate.height * 1e3:g} mm",
         ]
+        y, size = self.height + self.above, round(0.7 * self.unit)
+        if _width_of(" · ".join(lines), size) < self.width + self.right:
+            lines = [" · ".join(lines)]
+        step = round(1.15 * self.unit)
+        texts = [Text(line, 0, y + step // 2 + k * step, size) for k, line in enumerate(reversed(lines))]
+        title_y = texts[-1].y + round(1.6 * self.unit)
+        return [Text(design.title + revision, 0, title_y, round(1.3 * self.unit)), *texts]
 
     def _arrow(self, port: PlacedPort) -> Area:
         """Return an arrow outside the board that points into it."""

@@ -1,4 +1,4 @@
-"""PNG: the preview picture in dots, its longer side ten inches; drawn by matplotlib's Agg with its own fonts."""
+"""PNG: the preview picture in dots, its longer side ten inches; drawn by matplotlib's Agg and fonts."""
 
 from __future__ import annotations
 

@@ -13,17 +13,21 @@ from shapely.geometry.base import BaseGeometry
 from layoutgen.artwork import Artwork, Shape
 
 
-def polygon(shape: Shape, undercut: float = 0.0) -> BaseGeometry:
-    """Return a shape's finished area [nm]."""
-    drawn = shapely.Polygon(shape.outline.chords(), [hole.chords() for hole in shape.holes])
+def polygon(shape: Shape, undercut: float = 0.0, tolerance: float = 900.0) -> BaseGeometry:
+    """Return a shape's finished area [nm], arcs as chords within a tolerance."""
+    drawn = shapely.Polygon(shape.outline.chords(tolerance), [hole.chords(tolerance) for hole in shape.holes])
     return drawn.buffer(-undercut, join_style="mitre", mitre_limit=5.0) if undercut else drawn
 
 
 def areas(
-    artwork: Artwork, *roles: str, layer: str = "copper_top", undercut: float = 0.0
+    artwork: Artwork,
+    *roles: str,
+    layer: str = "copper_top",
+    undercut: float = 0.0,
+    tolerance: float = 900.0,
 ) -> list[BaseGeometry]:
     """Return the finished areas of all shapes of some roles on a layer [nm]."""
-    return [polygon(s, undercut) for s in artwork.on(layer) if s.role in roles]
+    return [polygon(s, undercut, tolerance) for s in artwork.on(layer) if s.role in roles]
 
 
 def ground(artwork: Artwork, undercut: float = 0.0) -> BaseGeometry:
@@ -43,7 +47,8 @@ def corners(shape: BaseGeometry, shortest: float) -> Iterator[tuple[float, tuple
         for ring in (oriented.exterior, *oriented.interiors):
             points = np.asarray(ring.coords)[:-1]
             for a, b, c in zip(np.roll(points, 1, axis=0), points, np.roll(points, -1, axis=0), strict=True):
-                turn = math.degrees(math.atan2(np.cross(b - a, c - b), np.dot(b - a, c - b)))
+                (ux, uy), (vx, vy) = (b - a).tolist(), (c - b).tolist()
+                turn = math.degrees(math.atan2(ux * vy - uy * vx, ux * vx + uy * vy))
                 if turn < 0.0:
                     yield 180.0 + turn, (float(b[0]), float(b[1]))
 

@@ -173,15 +173,16 @@ def narrow_gap(artwork: Artwork, rng: random.Random) -> Seeded:
 
 def near_pour(artwork: Artwork, rng: random.Random) -> Seeded:
     """Pour drawn two micrometres nearer to a line than set."""
-    name, width, at, (ux, uy) = straight(artwork, rng)
-    gap = gap_of(artwork, name) - 2_000.0
-    away = width / 2.0 + gap
-    start = (at[0] - uy * away, at[1] + ux * away)
-    strip = beam(start, (-uy, ux), 600_000.0, 500_000.0)
+    lines = shapely.union_all([as_polygon(s) for s in artwork.shapes if s.role == "line"])
+    while True:
+        name, width, at, (ux, uy) = straight(artwork, rng)
+        gap = gap_of(artwork, name) - 2_000.0
+        away = width / 2.0 + gap
+        strip = beam((at[0] - uy * away, at[1] + ux * away), (-uy, ux), 50_000.0, 500_000.0)
+        if strip.distance(lines) > gap - 10.0:
+            break
     place = (at[0] - uy * (away - gap / 2.0), at[1] + ux * (away - gap / 2.0))
-    return Seeded(
-        with_shape(artwork, "copper_top", strip, "gnd", "pour", "pour"), ("ground.gap",), place, 300_000.0
-    )
+    return Seeded(with_shape(artwork, "copper_top", strip, "gnd", "pour", "pour"), ("ground.gap",), place)
 
 
 def sliver(artwork: Artwork, rng: random.Random) -> Seeded:
@@ -247,11 +248,14 @@ def stray_via(artwork: Artwork, rng: random.Random) -> Seeded:
 
 def lost_fence(artwork: Artwork, rng: random.Random) -> Seeded:
     """A via that stands beside a line, and its two neighbours, left out."""
-    name, width, at, (ux, uy) = straight(artwork, rng)
-    reach = width / 2.0 + gap_of(artwork, name)
-    beside = [(at[0] - side * uy * reach, at[1] + side * ux * reach) for side in (1, -1)]
     rim = pour_of(artwork).boundary
-    edge = min(beside, key=lambda p: rim.distance(shapely.Point(p)))
+    while True:
+        name, width, at, (ux, uy) = straight(artwork, rng)
+        reach = rng.choice((1.0, -1.0)) * (width / 2.0 + gap_of(artwork, name))
+        edge = (at[0] - uy * reach, at[1] + ux * reach)
+        way = shapely.LineString([(edge[0] + s * ux, edge[1] + s * uy) for s in (-3e6, 3e6)])
+        if rim.intersection(way.buffer(1_000.0)).length > 5.9e6:
+            break
     loose = [via for via in artwork.vias if via.purpose in ("fence", "pour")]
     near = sorted(loose, key=lambda via: math.dist((via.x, via.y), edge))[:3]
     vias = tuple(via for via in artwork.vias if via not in near)

@@ -110,6 +110,20 @@ def test_narrow_pour_between_two_lines() -> None:
     assert sheet.found("fence.max_pitch") == []
 
 
+def test_tip_of_a_narrow_pour_without_vias() -> None:
+    """Catches the last via of a finger taken as its own neighbour around the tip, 4 mm away."""
+    sheet = Sheet(RULES)
+    sheet.line("la", [(2, 5), (21.5, 5), (21.5, 8), (2, 8)], 1.0, gap=0.5)
+    sheet.copper(box(10, 6, 20, 7))
+    for x in EVEN[:-2]:
+        sheet.via(x, 6.5, "fence")
+    found = sheet.found("fence.max_pitch")
+    assert found[0].measured == pytest.approx(9.0 - 2.0, abs=0.01)  # 4 + 1 + 4 mm less twice 0.5 mm, twice
+    for x in EVEN[-2:]:
+        sheet.via(x, 6.5, "fence")
+    assert sheet.found("fence.max_pitch") == []
+
+
 def test_wavelengths_govern_when_shorter() -> None:
     """Catches the smaller limit not taken, or the wrong name: c / (2.3 GHz sqrt(3.55)) = 69.18 mm."""
     rules = {"fence": {"max_pitch": "2 mm", "max_pitch_wavelengths": 0.028, "max_edge_distance": "0.8 mm"}}

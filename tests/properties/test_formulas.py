@@ -187,9 +187,9 @@ class TestLimits:
         """g -> infinity: both modes are the single line's."""
         single, pair = hammerstad_jensen_1980(u, er), coupled_pair(u, 60.0, er)
         for value in (pair.z_even, pair.z_odd):
-            assert value == pytest.approx(single.impedance, rel=2e-3)
+            assert value == pytest.approx(single.impedance, rel=5e-3)
         for value in (pair.ee_even, pair.ee_odd):
-            assert value == pytest.approx(single.effective_permittivity, rel=2e-3)
+            assert value == pytest.approx(single.effective_permittivity, rel=5e-3)
 
     @MANY
     @given(logarithmic(0.2, 8.0), st.floats(1.5, 18.0), st.floats(0.1, 25.0))

@@ -292,6 +292,10 @@ class TestLines:
         files.append('[lines.short]\nnets = ["gnd", "a"]\nimpedance = "50 ohm"\nangle = "10 deg"\n')
         assert files.read().circuit.lines["short"].nets == ("gnd", "a")
 
+    def test_radial_of_the_usual_kind(self, files: Files) -> None:
+        """The default kind may be written on a radial stub."""
+        files.change('sector = "60 deg"', 'sector = "60 deg"\nkind = "microstrip"').read()
+
     def test_radial_with_sector_alone(self, files: Files) -> None:
         """Both radii may be left out."""
         files.change('radius = "9 mm"\ninner_radius = "0.4 mm"\n', "")
@@ -612,17 +616,11 @@ class TestParts:
         """Kinds, pads, data, pins."""
         check(files, slip)
 
-    @pytest.mark.parametrize(
-        ("data", "key", "phrase"),
-        [
-            ('data = "c1.s2p"\ndata_ports = ["gate", "drain"]', "terminations", "not both"),
-        ],
-    )
-    def test_terminations_beside_data(self, files: Files, data: str, key: str, phrase: str) -> None:
-        """Both at once are wrong input, whichever comes first."""
-        fault = files.change("dc = [{", f"{data}\ndc = [{{").fault()
-        assert fault.key == f"parts.Q1.{key}"
-        assert phrase in fault.allowed
+    def test_terminations_beside_data(self, files: Files) -> None:
+        """Both at once are wrong input."""
+        fault = files.change("dc = [{", 'data = "c1.s2p"\ndata_ports = ["gate", "drain"]\ndc = [{').fault()
+        assert fault.key == "parts.Q1.terminations"
+        assert f"data (line {files.line('data_ports') - 1})" in fault.found
 
     @pytest.mark.parametrize(
         ("name", "keys", "key", "phrase"),

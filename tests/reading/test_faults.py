@@ -101,9 +101,26 @@ class TestOneSlipOneFault:
         files.append('[lines.lost]\nnets = ["alpha", "omega"]\nimpedance = "50 ohm"\nangle = "10 deg"\n')
         assert [fault.key for fault in files.faults()] == ["lines.lost.nets[0]", "lines.lost.nets[1]"]
 
+    def test_unreadable_element_hides_no_other_piece(self, files: Files) -> None:
+        """A line without nets excuses two once-used nets, not a whole lost piece of circuit beside them."""
+        files.append('[lines.lost]\nnets = ["alpha", "omega"]\nimpedance = "50 ohm"\nangle = "10 deg"\n')
+        files.append('[lines.lost2]\nnets = ["beta", "psi"]\nimpedance = "50 ohm"\nangle = "10 deg"\n')
+        keys = [fault.key for fault in files.change('nets = ["g", "vg_rf"]\n', "").faults()]
+        assert keys[0] == "lines.gate_feed.nets"
+        assert {
+            "lines.lost.nets[0]",
+            "lines.lost.nets[1]",
+            "lines.lost2.nets[0]",
+            "lines.lost2.nets[1]",
+        } < set(keys)
+
+    def test_missing_nets_are_one_fault(self, files: Files) -> None:
+        """What a line without nets leaves dangling is not told beside it."""
+        assert files.change('nets = ["in", "a"]\n', "").fault().key == "lines.series_in.nets"
+
     def test_ground_once_is_no_dangling_net(self, files: Files) -> None:
         """gnd may be used once: it is the plane."""
-        files.change('["b1", "gnd"]', '["b1", "a"]').change(', source = "gnd" }', ', source = "gnd" }').read()
+        files.change('["b1", "gnd"]', '["b1", "a"]').read()
 
     @pytest.mark.parametrize(
         ("first", "second", "what"),

@@ -135,10 +135,12 @@ def test_death_in_a_new_folder_leaves_none(tmp_path: Path) -> None:
         command = [sys.executable, "-c", LOADS + DIES, str(folder), str(limit), repr(NEW)]
         status = subprocess.run(command, check=False).returncode
         assert not folder.exists() or contents(folder) == NEW
+        write_files(folder, NEW)
+        assert contents(folder) == NEW
+        assert [path.name for path in folder.parent.iterdir()] == ["out"]
         if status == 0:
             break
     assert status == 0
-    assert contents(folder) == NEW
 
 
 WRITES = """

@@ -8,9 +8,9 @@ Why: the pour with a sparse row of vias guides waves between the planes, past th
 How measured: a row is asked for where a pour edge faces a line within two of the line's gaps, over
 stretches longer than the pitch, not within 0.3 mm of part outlines. Vias on gnd within
 ``fence.max_edge_distance`` of the stretch count, in the order of their feet on it (on both sides of a
-narrow piece of pour); the distance of two is the shorter of the way along the edge and the straight line
-between the axes (rows around bends), the ends of a stretch count as axes. A micrometre above the limit
-passes (rows are laid on whole nanometres along arcs drawn as chords).
+narrow piece of pour); the distance of two is the way along the edge, or around a corner the straight line
+between the axes, at most twice the depth of each behind the edge shorter; the ends of a stretch count as
+axes. A micrometre above the limit passes (rows are laid on whole nanometres along arcs drawn as chords).
 Source: a twentieth of a wavelength in the slab is common practice (public pages on microwave boards).
 """
 
@@ -19,6 +19,7 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator
 from itertools import pairwise
+from typing import NamedTuple
 
 import numpy as np
 import numpy.typing as npt
@@ -116,17 +117,34 @@ def _row(board: Board, stretch: shapely.LineString, limit: float) -> Iterator[tu
     near = board.drill_tree.query(stretch, predicate="dwithin", distance=reach)
     vias = [board.drills[k] for k in np.sort(near).tolist() if board.drills[k].is_via]
     axes = np.array([(via.x, via.y) for via in vias if via.node == GROUND]).reshape(-1, 2)
-    ends = shapely.get_coordinates(stretch)[[0, -1]]
-    marks = [(0.0, *ends[0].tolist()), *sorted(_feet(stretch, axes, reach))]
-    for (s, ax, ay), (t, bx, by) in pairwise([*marks, (stretch.length, *ends[1].tolist())]):
-        middle = stretch.interpolate((s + t) / 2.0)
-        yield min(t - s, math.hypot(bx - ax, by - ay)), whole(middle.x, middle.y)
+    (x0, y0), (x1, y1) = shapely.get_coordinates(stretch)[[0, -1]].tolist()
+    feet = [_Foot(0.0, x0, y0, 0.0), *sorted(_feet(stretch, axes, reach)), _Foot(stretch.length, x1, y1, 0.0)]
+    for a, b in pairwise(feet):
+        middle = stretch.interpolate((a.along + b.along) / 2.0)
+        yield _apart(a, b), whole(middle.x, middle.y)
 
 
-def _feet(
-    stretch: shapely.LineString, axes: npt.NDArray[np.float64], reach: float
-) -> Iterator[tuple[float, float, float]]:
-    """Yield where axes (N, 2) stand along a stretch: way along it, x, y [nm].
+class _Foot(NamedTuple):
+    """Where an axis stands by a stretch: way along it, the axis itself, its distance behind the edge [nm]."""
+
+    along: float
+    x: float
+    y: float
+    depth: float
+
+
+def _apart(a: _Foot, b: _Foot) -> float:
+    """Return the distance of two axes that follow each other along an edge [nm].
+
+    Around a corner of pour the edge is longer than the row behind it, by twice the depth of each axis at
+    most: so much may the straight way be shorter.
+    """
+    along = b.along - a.along
+    return min(along, max(math.hypot(b.x - a.x, b.y - a.y), along - 2.0 * (a.depth + b.depth)))
+
+
+def _feet(stretch: shapely.LineString, axes: npt.NDArray[np.float64], reach: float) -> Iterator[_Foot]:
+    """Yield where axes (N, 2) [nm] stand by a stretch.
 
     An axis in a narrow piece of pour, with the stretch running past on both sides, has a foot on each.
     """
@@ -142,7 +160,7 @@ def _feet(
         for group in np.split(close, np.flatnonzero(np.diff(close) > 1) + 1):
             if len(group):
                 best = int(group[np.argmin(away[group])])
-                yield float(before[best] + share[best] * length[best]), x, y
+                yield _Foot(float(before[best] + share[best] * length[best]), x, y, float(away[best]))
 
 
 RULE = Rule(names=(PITCH, WAVELENGTHS), find=find, needs_circuit=True)

@@ -39,29 +39,25 @@ def check_lines(draft: Draft) -> None:
         else:
             _check_plain(draft.faults, table, name in without_width)
         if name in draft.lines:
+            _check_radii(draft.faults, table, draft.lines[name])
             _check_line_nets(draft.faults, table, draft.lines[name])
 
 
 def _check_radial(faults: Faults, table: Table) -> None:
-    """Check a radial stub."""
+    """Check the keys of a radial stub."""
     require(faults, table, "sector", 'the opening angle of the radial stub, such as "60 deg"')
-    keys = ("impedance", "width", "angle", "length", "gap", "kind")
-    forbid(
-        faults,
-        table,
-        keys,
-        'a radial stub has sector, radius and inner_radius; leave out shape = "radial" for a line',
-    )
-    inner, outer = table.at("inner_radius"), table.at("radius")
-    if table.raw.get("shape") == "radial" and not faults.about(table.path):
-        _check_radii(faults, table, inner, outer)
+    reason = 'a radial stub has sector, radius and inner_radius; leave out shape = "radial" for a line'
+    forbid(faults, table, ("impedance", "width", "angle", "length", "gap"), reason)
+    if table.raw.get("kind", "microstrip") != "microstrip":
+        forbid(faults, table, ("kind",), reason)
 
 
-def _check_radii(faults: Faults, table: Table, inner: tuple[str, ...], outer: tuple[str, ...]) -> None:
+def _check_radii(faults: Faults, table: Table, line: Line) -> None:
     """Check that a radial stub's inner radius is the smaller one."""
-    line = Line.model_validate({**table.raw, "nets": tuple(table.raw["nets"])})
-    if line.inner_radius is not None and line.radius is not None and line.inner_radius >= line.radius:
-        faults.add_value(inner, table.raw["inner_radius"], f"less than radius ({faults.line_of(outer)})")
+    inner, outer = line.inner_radius, line.radius
+    if inner is not None and outer is not None and inner >= outer:
+        place = faults.line_of(table.at("radius"))
+        faults.add_value(table.at("inner_radius"), table.raw["inner_radius"], f"less than radius ({place})")
 
 
 def _check_plain(faults: Faults, table: Table, is_supply: bool) -> None:

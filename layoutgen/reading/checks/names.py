@@ -31,19 +31,22 @@ def check_names(draft: Draft) -> None:
 
 def _check_shared_names(draft: Draft) -> None:
     """Add a fault for each name that two elements bear, naming both lines."""
-    places: dict[str, list[tuple[int, str]]] = {}
+    sections: dict[str, list[str]] = {}
     for section in ELEMENT_TABLES:
         for name in draft.names(section):
-            line = draft.faults.source.location((section, name)).line
-            places.setdefault(name, []).append((line, section))
-    for name, found in places.items():
-        (_, first), *rest = sorted(found, key=lambda place: place[0])
-        for _, section in rest:
-            place = draft.faults.line_of((first, name))
-            text = f"{quote(name)}, already the name of {_WHAT[first]} at {place}"
-            draft.faults.add(
-                (section, name), text, "each name once among ports, lines, coupled pairs and parts"
-            )
+            sections.setdefault(name, []).append(section)
+    for name, found in sections.items():
+        if len(found) > 1:
+            _add_duplicates(draft, name, found)
+
+
+def _add_duplicates(draft: Draft, name: str, sections: list[str]) -> None:
+    """Add a fault for each element but the first in the file that bears a name."""
+    first, *rest = sorted(sections, key=lambda section: draft.faults.source.location((section, name)).line)
+    place = draft.faults.line_of((first, name))
+    for section in rest:
+        text = f"{quote(name)}, already the name of {_WHAT[first]} at {place}"
+        draft.faults.add((section, name), text, "each name once among ports, lines, coupled pairs and parts")
 
 
 def unknown_name(draft: Draft, path: Path, name: str, known: Iterable[str], what: str) -> None:

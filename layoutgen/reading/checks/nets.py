@@ -15,6 +15,8 @@ __all__ = ["check_nets", "possible_supplies"]
 _RESERVED = ("gnd", "open")
 _SHORT = 2
 """Names so short resemble any other [-]."""
+_ENDS = {"ports": 1, "lines": 2, "coupled": 4, "parts": 4}
+"""Ends that an element has, or may well have, whose nets cannot be read [-]."""
 _CONDUCT = ("resistor", "inductor", "other")
 
 
@@ -26,13 +28,14 @@ class _End(NamedTuple):
 
 
 def check_nets(draft: Draft) -> None:
-    """Add a fault for each net that joins one end only; not done where elements could not be read.
+    """Add a fault for each net that joins one end only; not done where elements could not be seen.
 
-    Ends whose net is faulty may have been meant for such a net: no more of them than that are forgiven.
+    Ends whose net is faulty or cannot be read may have been meant for such a net: while there are no more
+    once-used nets than such ends, they are forgiven.
     """
-    ends = _all_ends(draft)
-    if ends is None or draft.elements_missed:
+    if draft.elements_missed:
         return
+    ends, unread = _all_ends(draft)
     used: dict[str, list[_End]] = {}
     for end in ends:
         if end.path not in draft.faults.paths:
@@ -40,7 +43,7 @@ def check_nets(draft: Draft) -> None:
     lonely = {net: found[0] for net, found in used.items() if len(found) == 1 and net not in _RESERVED}
     partners = _likely_slips(lonely)
     told = {net: end for net, end in lonely.items() if net not in partners.values()}
-    if len(told) <= _faulty_ends(draft, ends):
+    if len(told) <= unread + _faulty_ends(draft, ends):
         return
     few = len(told) <= SHOWN
     for net, end in told.items():
@@ -78,32 +81,26 @@ def _advice(
     return "a net joins at least two ends" + (f"; the nearest net is {quote(guess)}" if guess else "")
 
 
-def _all_ends(draft: Draft) -> list[_End] | None:
-    """Return every end of every element in file order, None when an element's nets cannot be read."""
+def _all_ends(draft: Draft) -> tuple[list[_End], int]:
+    """Return every end of every element in file order, and how many ends cannot be read."""
     ends: list[_End] = []
+    unread = 0
     for section, model in (("ports", Port), ("lines", Line), ("coupled", CoupledPair), ("parts", Part)):
-        raw = draft.data.get(section, {})
         tables = list(draft.tables(section, model))
-        if not isinstance(raw, Mapping) or len(tables) < len(raw):
-            return None
+        unread += _ENDS[section] * (len(draft.names(section)) - len(tables))
         for _, table in tables:
             found = _ends(section, table)
-            if found is None:
-                return None
             ends += found
-    return ends
+            unread += 0 if found else _ENDS[section]
+    return ends, unread
 
 
-def _ends(section: str, table: Table) -> list[_End] | None:
-    """Return the ends of one element, None when they cannot be read."""
-    if table.meant & {"net", "nets", "pins"}:
-        return None
+def _ends(section: str, table: Table) -> list[_End]:
+    """Return the ends of one element, none when they cannot be read."""
     key = "net" if section == "ports" else "pins" if "pins" in table.raw else "nets"
-    path = table.at(key)
-    items = list(_items(table.raw.get(key), path))
-    if not items or not all(isinstance(net, str) for net, _ in items):
-        return None
-    return [_End(net, place) for net, place in items]
+    items = list(_items(table.raw.get(key), table.at(key)))
+    readable = not table.meant & {"net", "nets", "pins"} and all(isinstance(net, str) for net, _ in items)
+    return [_End(net, place) for net, place in items] if readable else []
 
 
 def _items(value: object, path: Path) -> Iterator[tuple[str, Path]]:
