@@ -177,7 +177,9 @@ def response(circuit: Path, out: Path | None, quiet: bool, verbose: bool) -> int
         prepare_folder(out)
     result = _run(circuit, quiet)
     if result.response is None:
-        raise _wrong(circuit, "a circuit without RF ports", "a circuit with at least one port of kind rf")
+        raise _wrong(
+            circuit, "a circuit without RF ports", "one with at least one port of kind rf, or terminations"
+        )
     if out is not None:
         files = response_files(result, Job(stem=circuit.stem))
         write_files(out, files)

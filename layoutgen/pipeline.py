@@ -1,4 +1,7 @@
-"""The stages in order: a circuit file in, every stage's result out. Nothing is printed or written here."""
+"""The stages in order: a circuit file in, every stage's result out. Nothing is printed or written here.
+
+A few drawings are made: the pour as drawn moves the widths a little, and the response as drawn the lengths.
+"""
 
 from __future__ import annotations
 
@@ -7,34 +10,38 @@ import time
 from collections.abc import Callable, Iterator, Mapping
 from contextlib import contextmanager
 from dataclasses import replace
+from functools import partial
 from pathlib import Path
 
 from layoutgen.artwork import Artwork, draw
 from layoutgen.checks import check
 from layoutgen.circuit import Circuit, build_circuit
+from layoutgen.errors import LayoutgenError
 from layoutgen.placement import Placement, place
 from layoutgen.reading import CircuitFile, RuleFile, read_inputs
-from layoutgen.response import Response, respond
+from layoutgen.response import NOTE_RULE, LengthFit, correct_lengths, respond
 from layoutgen.sizing import SizedCircuit, placed_dc, size_circuit
 from layoutgen.writers import Result
 
 __all__ = ["Result", "run", "run_inputs"]
 
 MAX_ROUNDS = 4
-"""Most drawings made to let widths and the pour's measured distances agree [-]."""
+"""Most drawings made to let widths, corrected lengths and the pour's measured distances agree [-]."""
 SETTLED = 1e-6
 """Widths that move by less than this [m] count as settled."""
 
+Fit = Callable[..., LengthFit]
 Tell = Callable[[str], None]
 Note = tuple[str, str, str]
 
 
-def run(path: str | Path, tell: Tell = lambda stage: None) -> Result:
+def run(path: str | Path, tell: Tell = lambda stage: None, *, correction: bool = True) -> Result:
     """Return every stage's result for a circuit file and the rule file it names.
 
     Args:
         path: The circuit file.
         tell: Called with the name of each stage as it begins.
+        correction: False leaves the lengths as their budgets alone give them, whatever the response.
 
     Raises:
         WrongInputError: A faulty file, or a circuit outside what the formulas cover.
@@ -43,47 +50,114 @@ def run(path: str | Path, tell: Tell = lambda stage: None) -> Result:
     clock = _Clock(tell)
     with clock("reading"):
         inputs = read_inputs(path)
-    return _run(inputs.circuit, inputs.rules, clock)
+    return _run(inputs.circuit, inputs.rules, clock, None, correction)
 
 
-def run_inputs(file: CircuitFile, rules: RuleFile, tell: Tell = lambda stage: None) -> Result:
-    """Return every stage's result for records built in code; otherwise as :func:`run`."""
-    return _run(file, rules, _Clock(tell))
+def run_inputs(
+    file: CircuitFile,
+    rules: RuleFile,
+    tell: Tell = lambda stage: None,
+    *,
+    folder: Path | None = None,
+    correction: bool = True,
+) -> Result:
+    """Return every stage's result for records built in code; otherwise as :func:`run`.
+
+    Args:
+        file: The circuit.
+        rules: The board house's rules.
+        tell: Called with the name of each stage as it begins.
+        folder: What the paths of data files start from; None: the folder of the circuit file, for a circuit
+            built in code the current one.
+        correction: As for :func:`run`.
+    """
+    return _run(file, rules, _Clock(tell), folder, correction)
 
 
-def _run(file: CircuitFile, rules: RuleFile, clock: _Clock) -> Result:
+def _run(
+    file: CircuitFile, rules: RuleFile, clock: _Clock, folder: Path | None, correction: bool
+) -> Result:
     with clock("circuit"):
         circuit = build_circuit(file, rules)
-    artwork, notes = _settled(circuit, clock)
+    fit = partial(correct_lengths, folder=folder) if correction and has_response(file) else None
+    artwork, notes = _settled(circuit, clock, fit)
     with clock("checks"):
         checks = check(artwork)
     with clock("response"):
-        response = _respond(artwork)
+        response = respond(artwork, folder) if has_response(file) else None
     return Result(artwork=artwork, checks=checks, response=response, seconds=clock.seconds, notes=notes)
 
 
-def _settled(circuit: Circuit, clock: _Clock) -> tuple[Artwork, tuple[Note, ...]]:
-    """Size, place and draw until the pour's distances as drawn leave the widths where they are."""
+def has_response(file: CircuitFile) -> bool:
+    """Tell whether a circuit has ports of the response: RF ports or terminations."""
+    rf = any(port.kind == "rf" for port in file.ports.values())
+    return rf or any(part.terminations for part in file.parts.values())
+
+
+def _settled(circuit: Circuit, clock: _Clock, fit: Fit | None) -> tuple[Artwork, tuple[Note, ...]]:
+    """Size, place and draw until the pour and the response as drawn leave the sizes where they are.
+
+    Args:
+        circuit: The circuit.
+        clock: Takes the time.
+        fit: Says how lengths should be corrected; None leaves them.
+    """
     with clock("sizing"):
         sized = size_circuit(circuit)
-    choices = None
+    choices, found = None, LengthFit({})
     for _ in range(MAX_ROUNDS):
         with clock("placement"):
-            placement = with_placed_bias(place(sized, choices))
+            try:
+                placement = with_placed_bias(place(sized, choices))
+            except LayoutgenError as error:
+                if not sized.corrections:
+                    raise
+                return _uncorrected(circuit, clock, f"no placement with corrected lengths ({error})")
             choices = placement.choices
         with clock("artwork"):
             artwork = draw(placement)
         with clock("sizing"):
-            again = size_circuit(circuit, gaps=measured_gaps(artwork))
+            again = size_circuit(circuit, measured_gaps(artwork))
+        if fit is not None:
+            with clock("correction"):
+                found = fit(artwork, sized=again)
+        again = replace(again, corrections=found.corrections)
         moved = largest_move(sized, again)
-        if moved[1] < SETTLED:
-            return artwork, ()
+        if moved[1] < SETTLED and again.corrections == sized.corrections:
+            break
         sized = again
+    if found.now > found.uncorrected:
+        text = f"corrected lengths gave a difference of {found.now:.4f} instead of {found.uncorrected:.4f}"
+        return _uncorrected(circuit, clock, text)
+    return artwork, (*_unsettled_widths(moved), *_unsettled_lengths(found))
+
+
+def _uncorrected(circuit: Circuit, clock: _Clock, reason: str) -> tuple[Artwork, tuple[Note, ...]]:
+    """Return the drawing with the lengths of the budgets alone, with a note that says why."""
+    artwork, notes = _settled(circuit, clock, None)
+    return artwork, (*notes, (NOTE_RULE, "", f"{reason}; no length is corrected"))
+
+
+def _unsettled_widths(moved: tuple[str, float]) -> tuple[Note, ...]:
+    """Return a note when the last drawing would still move a width, by ``moved`` (name, [m])."""
+    if moved[1] < SETTLED:
+        return ()
     text = (
         f"widths had not settled after {MAX_ROUNDS} drawings: with the pour as drawn, {moved[0]} would be "
         f"{moved[1] * 1e6:.1f} um wider or narrower"
     )
-    return artwork, (("assumption.pour", moved[0], text),)
+    return (("assumption.pour", moved[0], text),)
+
+
+def _unsettled_lengths(found: LengthFit) -> tuple[Note, ...]:
+    """Return a note when other lengths would still bring the last drawing nearer to the schematic."""
+    if found.expected >= found.now:
+        return ()
+    text = (
+        f"the response correction had not settled after {MAX_ROUNDS} drawings: the largest difference in the "
+        f"band is {found.now:.4f}, other lengths promise {found.expected:.4f}"
+    )
+    return ((NOTE_RULE, "", text),)
 
 
 def with_placed_bias(placement: Placement) -> Placement:
@@ -118,12 +192,6 @@ def _widths(sized: SizedCircuit) -> dict[str, float]:
 
 def _metres(nm: int | None) -> float:
     return math.inf if nm is None else nm * 1e-9
-
-
-def _respond(artwork: Artwork) -> Response | None:
-    """Return the response, None for a circuit without RF ports."""
-    ports = artwork.placement.sized.circuit.file.ports.values()
-    return respond(artwork) if any(port.kind == "rf" for port in ports) else None
 
 
 class _Clock:

@@ -46,7 +46,7 @@ def notch() -> layoutgen.Inputs:
 
 @pytest.fixture(scope="module")
 def result(notch: layoutgen.Inputs) -> layoutgen.Result:
-    return pipeline.run_inputs(notch.circuit, notch.rules)
+    return pipeline.run_inputs(notch.circuit, notch.rules, correction=False)
 
 
 def test_the_flow_in_the_package_docstring_works() -> None:
@@ -60,7 +60,7 @@ def test_stages_are_told_in_order(notch: layoutgen.Inputs) -> None:
     """Progress names what is at work; a stage left out would be a silent wait."""
     told: list[str] = []
     pipeline.run_inputs(notch.circuit, notch.rules, told.append)
-    order = ["circuit", "sizing", "placement", "artwork", "checks", "response"]
+    order = ["circuit", "sizing", "placement", "artwork", "correction", "checks", "response"]
     assert list(dict.fromkeys(told)) == order
 
 
@@ -133,7 +133,7 @@ def test_it_draws_again_until_widths_rest(
 ) -> None:
     """Stopped one round early, the copper drawn is not the copper sized."""
     restless += [4e-6, 1.5e-6, 0.4e-6]
-    result = pipeline.run_inputs(notch.circuit, notch.rules)
+    result = pipeline.run_inputs(notch.circuit, notch.rules, correction=False)
     assert len(drawings) == 3
     assert result.artwork is drawings[-1]
     assert result.notes == ()
@@ -145,7 +145,7 @@ def test_it_says_when_widths_do_not_settle(
 ) -> None:
     """After four drawings the last one stands, with a note that names the line and how far off it is."""
     restless += [5e-6] * 9
-    result = pipeline.run_inputs(notch.circuit, notch.rules)
+    result = pipeline.run_inputs(notch.circuit, notch.rules, correction=False)
     assert len(drawings) == pipeline.MAX_ROUNDS == 4
     (note,) = result.notes
     assert note[0] == "assumption.pour"
@@ -178,6 +178,42 @@ def test_bias_is_that_of_the_lengths_as_placed() -> None:
     squares = supply.centre_line / supply.width
     drop = result.circuit.dc.voltages["v"] - result.circuit.dc.voltages["n"]
     assert drop == pytest.approx(0.5 * squares / (58e6 * 35e-6), rel=1e-6)
+
+
+@pytest.mark.parametrize(
+    ("changes", "er", "h", "t"),
+    [
+        ({}, 3.55, 508e-6, 35e-6),
+        ({"height": "0.813 mm"}, 3.55, 813e-6, 35e-6),
+        ({"relative_permittivity": 9.8}, 9.8, 508e-6, 35e-6),
+        ({"copper_thickness": "70 um"}, 3.55, 508e-6, 70e-6),
+    ],
+    ids=["as it is", "height", "permittivity", "thickness"],
+)
+def test_the_drawing_follows_the_substrate(changes: dict[str, Any], er: float, h: float, t: float) -> None:
+    """The drawn copper, put back into the formulas, has the impedance and angle asked for."""
+    from layoutgen.formulas.microstrip import hammerstad_jensen_1980, kirschning_jansen_1982_permittivity
+
+    data = {**NOTCH, "substrate": {**NOTCH["substrate"], **changes}}
+    del data["ground"]
+    inputs = inputs_from_data(data)
+    result = pipeline.run_inputs(inputs.circuit, inputs.rules)
+    drawn = [shape for shape in result.artwork.shapes if shape.role == "line"]
+    assert len(drawn) == 3
+    for shape in drawn:
+        line = result.placement.lines[shape.origin.element]
+        x0, y0, x1, y1 = shape.outline.polygon().bounds
+        across = y1 - y0 if line.path[0][1] == line.path[-1][1] else x1 - x0
+        u = across * 1e-9 / h
+        impedance, ee, _ = hammerstad_jensen_1980(u, er, t / h)
+        assert impedance == pytest.approx(50.0, abs=1e-3)
+        at_frequency = kirschning_jansen_1982_permittivity(ee, u, er, 2.245e9 * h)
+        (own,) = (entry.angle for entry in line.budget if entry.cause == "line")
+        beta = 2.0 * math.pi * 2.245e9 * math.sqrt(float(at_frequency)) / 299_792_458.0
+        assert beta * line.centre_line * 1e-9 == pytest.approx(own, abs=math.radians(0.001))
+        assert math.fsum(entry.angle for entry in line.budget) == pytest.approx(
+            line.angle, abs=math.radians(0.01)
+        )
 
 
 @pytest.mark.parametrize("path", sorted((ROOT / "examples").glob("*.toml")), ids=lambda path: path.stem)

@@ -21,6 +21,7 @@ __all__ = [
     "board_outline",
     "cutouts_of",
     "has_area",
+    "hole_lands",
     "holes_of",
     "plane_area",
     "profile_shapes",
@@ -58,15 +59,31 @@ def has_area(ring: Ring) -> bool:
 
 
 def holes_of(placement: Placement) -> tuple[Hole, ...]:
-    """Return the drilled holes that are no vias; they belong to no net."""
+    """Return the drilled holes that are no vias; plated ones are joined to ground."""
     return tuple(
-        Hole(x=hole.x, y=hole.y, diameter=hole.diameter, plated=hole.plated, net=None, origin=hole.origin)
+        Hole(
+            x=hole.x,
+            y=hole.y,
+            diameter=hole.diameter,
+            plated=hole.plated,
+            net=GND if hole.plated else None,
+            origin=hole.origin,
+        )
         for hole in placement.holes
     )
 
 
+def hole_lands(placement: Placement, limits: Limits) -> list[tuple[Ring, Origin]]:
+    """Return the round lands of plated holes [nm]; screws in them reach ground on both sides."""
+    return [
+        (Ring.circle(hole.x, hole.y, math.ceil(hole.diameter / 2) + limits.hole_land), hole.origin)
+        for hole in placement.holes
+        if hole.plated
+    ]
+
+
 def plane_area(placement: Placement, limits: Limits, margin: int, tolerance: float) -> BaseGeometry:
-    """Return where ground copper may be: the board inside a margin [nm], off cut-outs and holes.
+    """Return where ground copper may be: the board inside a margin [nm], off cut-outs and bare holes.
 
     Args:
         placement: The placed board.
@@ -78,6 +95,7 @@ def plane_area(placement: Placement, limits: Limits, margin: int, tolerance: flo
     clear += [
         circumscribed(hole.x, hole.y, math.ceil(hole.diameter / 2) + limits.hole_copper)
         for hole in placement.holes
+        if not hole.plated
     ]
     return cut(board_area(placement, margin, tolerance), joined(clear))
 

@@ -118,7 +118,7 @@ class _Room:
     def reach(self, end: Point, net: str, gap: int) -> int:
         """Return how far the pour's keep-out reaches past a line's end [nm].
 
-        None past an end on ground, which the pour is to meet; to the profile and beyond past a port.
+        Nothing past an end on ground, which the pour is to meet; to the profile and beyond past a port.
         """
         if net == GND:
             return 0

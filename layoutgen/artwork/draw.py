@@ -6,7 +6,7 @@ from collections.abc import Iterable, Iterator, Sequence
 
 import shapely
 
-from layoutgen.artwork.board import GND, cutouts_of, holes_of, profile_shapes
+from layoutgen.artwork.board import GND, cutouts_of, hole_lands, holes_of, profile_shapes
 from layoutgen.artwork.conductors import Conductor, conductors_of, copper_shapes
 from layoutgen.artwork.drills import Drills, legal_area
 from layoutgen.artwork.labels import reference_labels
@@ -36,8 +36,9 @@ def draw(placement: Placement) -> Artwork:
     conductors = conductors_of(placement, limits)
     openings = top_openings(placement, limits, conductors)
     pour = pour_of(placement, limits, conductors) if limits.pour else []
-    pads = [pad.outline for _, pad in soldered_pads(placement)]
-    area = legal_area(placement, limits, pour, conductors, pads)
+    bare = [pad.outline for _, pad in soldered_pads(placement)]
+    bare += [ring for ring, _ in hole_lands(placement, limits)]
+    area = legal_area(placement, limits, pour, conductors, bare)
     pour = stitchable(pour, area, limits, placement)
     drills = Drills(area, limits, [(via.x, via.y, via.drill) for via in placement.vias])
     sides = fence(pour, conductors, limits, drills)
@@ -116,7 +117,7 @@ def _pour_vias(limits: Limits, added: Iterable[tuple[Point, str]]) -> Iterator[V
 
 def _ground_shapes(placement: Placement, limits: Limits, vias: Sequence[Via]) -> Iterator[Shape]:
     """Yield pads on ground, the copper between them and their vias, and the lands of all vias."""
-    for role, ring, origin in ground_pieces(placement):
+    for role, ring, origin in ground_pieces(placement, limits):
         drawn = offset_ring(ring, limits.undercut)
         yield Shape(layer="copper_top", outline=drawn, net=GND, role=role, origin=origin)
     for via in vias:

@@ -26,7 +26,7 @@ def legal_area(
     limits: Limits,
     pour: Sequence[shapely.Polygon],
     conductors: Sequence[Conductor],
-    pads: Iterable[Ring],
+    bare: Iterable[Ring],
 ) -> BaseGeometry:
     """Return where axes of pour vias may stand [nm]: the land inside the pour, all hole distances kept.
 
@@ -35,13 +35,13 @@ def legal_area(
         limits: Sizes and distances.
         pour: Finished pour.
         conductors: Signal copper, for the distance of hole walls to it.
-        pads: Outlines of the pads that are soldered; vias stay out of their mask openings.
+        bare: Outlines of pads and lands free of mask; vias stay out of these openings.
     """
     radius = math.ceil(limits.via_drill / 2)
     land = math.ceil(limits.via_land / 2) + _ROUNDING_NM
     area = joined(grow(piece, -land) for piece in pour)
     inner = overlap(area, board_area(placement, limits.hole_edge + radius, 10_000.0))
-    forbidden = [grow(ring.polygon(), limits.mask_expansion + land) for ring in pads]
+    forbidden = [grow(ring.polygon(), limits.mask_expansion + land) for ring in bare]
     forbidden += [grow(ring.polygon(), limits.hole_edge + radius) for _, ring in cutouts_of(placement)]
     forbidden += [
         circumscribed(hole.x, hole.y, math.ceil(hole.diameter / 2) + limits.hole_web + radius)

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import itertools
 import math
+import textwrap
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 
@@ -29,13 +30,14 @@ __all__ = ["Legend", "draw_legend"]
 _LEAST_UNITS = 6.0
 """Height of a capital over the pen [-] below which letters run together."""
 _NAME_HEIGHTS = (1_000_000, 850_000, 720_000)
-_TITLE_HEIGHTS = (1_500_000, 1_250_000, 1_000_000, 800_000)
+_TITLE_HEIGHTS = (1_500_000, 1_250_000, 1_000_000, 850_000, 720_000)
 _NEAR_NM = (0, 150_000, 300_000, 500_000, 750_000, 1_000_000)
 _FAR_NM = (1_300_000, 1_600_000, 2_000_000, 2_400_000, 2_900_000, 3_500_000)
 _PART_TRIES = ((True, _NEAR_NM), (False, _NEAR_NM), (True, _FAR_NM), (False, _FAR_NM))
 _PORT_TRIES = ((True, _NEAR_NM), (True, _FAR_NM), (False, _NEAR_NM), (False, _FAR_NM))
 _SLIDES = tuple(sign * k / 8.0 for k in range(10) for sign in ((1.0, -1.0) if k else (1.0,)))
 _TITLE_STEP_NM = 500_000
+_TITLE_LINES = 4
 _PORT_LENGTH_NM = 1_500_000
 _EDGE_NM = 500_000
 _RULE = "legend.min_distance"
@@ -92,10 +94,10 @@ def draw_legend(
         drills: Holes and vias, each (x, y, diameter) [nm].
     """
     printer = _Printer(placement, limits, _Ground(placement, openings, conductors, drills, limits))
-    for part in placement.parts.values():
-        printer.print_near(_Text(part.name, _part_box(part), part.origin), _PART_TRIES)
     for port in placement.ports.values():
         printer.print_near(_Text(port.name, _port_box(port), port.origin), _PORT_TRIES)
+    for part in placement.parts.values():
+        printer.print_near(_Text(part.name, _part_box(part), part.origin), _PART_TRIES)
     anchor = printer.print_title()
     return Legend(
         shapes=tuple(printer.shapes),
@@ -159,10 +161,10 @@ class _Printer:
         design = self._placement.sized.circuit.file.design
         revision = "" if design.revision is None else f"rev {design.revision}"
         title = printable(design.title)
-        wordings = ((f"{title}  {printable(revision)}".strip(),), (title, printable(revision)))
+        wordings = list(_wrapped(title, printable(revision)))
         for tidy, height in itertools.product((True, False), self._heights(_TITLE_HEIGHTS)):
             for lines in wordings:
-                anchor = self._print_block([line for line in lines if line], height, tidy)
+                anchor = self._print_block(lines, height, tidy)
                 if anchor is not None:
                     return anchor
         self.notes.append((_RULE, "board", "title and revision are left off the legend: no room"))
@@ -286,6 +288,17 @@ class _Ground:
         if tidy:
             fits[self._had_better.query(shapely.box(*boxes.T), predicate="intersects")[0]] = False
         return fits
+
+
+def _wrapped(title: str, revision: str) -> Iterator[list[str]]:
+    """Yield title and revision on one line, on two, then the title's words on more and more lines."""
+    if revision:
+        yield [f"{title}  {revision}"]
+    for count in range(1, _TITLE_LINES + 1):
+        widths = range(-(-len(title) // count), len(title) + 1)
+        lines = next((w for width in widths if len(w := textwrap.wrap(title, width)) <= count), [])
+        if len(lines) == count:
+            yield [*lines, revision] if revision else lines
 
 
 def _obstacles(

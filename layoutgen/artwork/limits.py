@@ -20,8 +20,10 @@ _ROOM_NM = 100_000
 # What is drawn by where the rule file is silent: common practice, no source. None of it is checked.
 _MIN_WIDTH, _MIN_GAP, _COPPER_EDGE = 150_000, 150_000, 300_000
 _ISLAND_NM2, _CORNER_DEG = 500_000.0 * 1e6, 85.0
-_HOLE_WEB, _HOLE_COPPER, _HOLE_EDGE, _RING = 300_000, 200_000, 500_000, 100_000
+_HOLE_WEB, _HOLE_COPPER, _HOLE_EDGE = 300_000, 200_000, 500_000
 _MASK_EXPANSION, _MASK_WEB = 50_000, 100_000
+_HOLE_LAND = 400_000
+"""Copper around a plated hole, for the head of a screw [nm]: common practice, no source."""
 _LEGEND_LINE, _LEGEND_DISTANCE = 150_000, 150_000
 
 
@@ -46,6 +48,7 @@ class Limits:
     hole_web: int
     hole_copper: int
     hole_edge: int
+    hole_land: int
     via_drill: int
     via_land: int
     via_pitch: int
@@ -90,6 +93,7 @@ def limits_of(sized: SizedCircuit) -> Limits:
         hole_web=web,
         hole_copper=_nm(holes.min_copper_distance, _HOLE_COPPER),
         hole_edge=_nm(holes.min_edge_distance, _HOLE_EDGE),
+        hole_land=max(_HOLE_LAND, _nm(holes.min_annular_ring, 0)),
         via_drill=drill,
         via_land=land,
         via_pitch=pitch,

@@ -1,8 +1,9 @@
 """Solder mask openings of both sides, and solder paste.
 
 Top: pads are open, RF lines too unless the board says otherwise, and the last piece of every line at a port,
-where a connector or a wire is soldered. Vias stay covered. Bottom: a board whose part stands on a carrier
-through a cut-out rests on that carrier and is bare all over; else the bottom is covered but for the holes.
+where a connector or a wire is soldered. Vias stay covered, plated holes are open. Bottom: a board whose part
+stands on a carrier through a cut-out rests on that carrier and is bare all over; else the bottom is covered
+but for the holes.
 """
 
 from __future__ import annotations
@@ -13,7 +14,7 @@ from collections.abc import Iterator, Sequence
 import shapely
 from shapely.geometry.base import BaseGeometry
 
-from layoutgen.artwork.board import BOARD, board_area, board_outline, cutouts_of, has_area
+from layoutgen.artwork.board import BOARD, board_area, board_outline, cutouts_of, has_area, hole_lands
 from layoutgen.artwork.conductors import Conductor
 from layoutgen.artwork.limits import Limits
 from layoutgen.artwork.records import Shape
@@ -39,6 +40,7 @@ def top_openings(placement: Placement, limits: Limits, conductors: Sequence[Cond
     if not placement.sized.circuit.file.board.mask_over_lines:
         bare += [piece.copper for piece in conductors if piece.rf]
     bare += [_hole(hole.x, hole.y, hole.diameter) for hole in placement.holes]
+    bare += [ring.polygon() for ring, _ in hole_lands(placement, limits)]
     grown = joined(grow(copper, limits.mask_expansion) for copper in bare)
     merged = overlap(closed(grown, limits.mask_web / 2.0), board_area(placement))
     return [_opening("soldermask_top", piece) for piece in pieces(merged)]

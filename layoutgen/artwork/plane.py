@@ -17,7 +17,7 @@ __all__ = ["plane_shapes"]
 
 
 def plane_shapes(placement: Placement, limits: Limits) -> list[Shape]:
-    """Return the plane: the board but for its edge, its cut-outs and its holes.
+    """Return the plane: the board but for its edge, its cut-outs and its bare holes.
 
     Where nothing touches, the clearances go in as they are, with true arcs; else as polygons.
     """
@@ -34,7 +34,9 @@ def _clearances(placement: Placement, limits: Limits) -> list[Ring]:
     """Return the outlines that the drawn plane stays out of."""
     rings = [_wider(ring, limits.edge - limits.undercut) for _, ring in cutouts_of(placement)]
     away = limits.hole_copper - limits.undercut
-    rings += [Ring.circle(h.x, h.y, math.ceil(h.diameter / 2) + away) for h in placement.holes]
+    rings += [
+        Ring.circle(h.x, h.y, math.ceil(h.diameter / 2) + away) for h in placement.holes if not h.plated
+    ]
     return rings
 
 

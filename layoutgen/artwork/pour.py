@@ -12,7 +12,7 @@ from collections.abc import Sequence
 import shapely
 from shapely.geometry.base import BaseGeometry
 
-from layoutgen.artwork.board import GND, has_area, plane_area
+from layoutgen.artwork.board import GND, has_area, hole_lands, plane_area
 from layoutgen.artwork.conductors import Conductor
 from layoutgen.artwork.limits import Limits
 from layoutgen.geometry import (
@@ -35,25 +35,33 @@ __all__ = ["ground_pieces", "pour_of"]
 _CORNER_CHORD_NM = 20_000.0
 _WASH_NM = 20
 _SHORT_NM = 50.0
-_NECK_SHARE = 0.1
+_NECK_ROUND = 12.0
+_NECK_FILLED = 0.5
 _MOST_STEPS = 4
 
 
-def ground_pieces(placement: Placement) -> list[tuple[str, Ring, Origin]]:
-    """Return the ground copper of parts and lines, finished: role, outline, origin; without vias."""
+def ground_pieces(placement: Placement, limits: Limits) -> list[tuple[str, Ring, Origin]]:
+    """Return the ground copper of parts, lines, plated holes, finished: role, outline, origin; no vias."""
     pads = [
         ("pad", pad.outline, part.origin)
         for part in placement.parts.values()
         for pad in part.pads
         if pad.net == GND and has_area(pad.outline)
     ]
-    return pads + [("ground", ring, origin) for ring, origin in placement.ground_shapes]
+    pads += [("ground", ring, origin) for ring, origin in placement.ground_shapes]
+    return pads + [("land", ring, origin) for ring, origin in hole_lands(placement, limits)]
 
 
-def _own_ground(placement: Placement) -> BaseGeometry:
+def _own_ground(placement: Placement, limits: Limits) -> BaseGeometry:
     """Return the ground copper that came with parts and lines [nm]: pads, pieces, lands of vias."""
-    shapes: list[BaseGeometry] = [ring.polygon() for _, ring, _ in ground_pieces(placement)]
+    flat = [ring for role, ring, _ in ground_pieces(placement, limits) if role != "land"]
+    shapes: list[BaseGeometry] = [ring.polygon() for ring in flat]
     shapes += [circumscribed(v.x, v.y, v.land / 2, 48) for v in placement.vias if v.net == GND]
+    shapes += [
+        circumscribed(hole.x, hole.y, math.ceil(hole.diameter / 2) + limits.hole_land, 48)
+        for hole in placement.holes
+        if hole.plated
+    ]
     return joined(shapes)
 
 
@@ -63,11 +71,9 @@ def pour_of(placement: Placement, limits: Limits, conductors: Sequence[Conductor
     Nothing of it is narrower than twice ``limits.row`` (pads and lands on ground count as part of it), no gap
     in it is narrower than ``limits.min_gap``, and sharp corners are cut off.
     """
-    allowed = cut(
-        plane_area(placement, limits, limits.margin, _CORNER_CHORD_NM),
-        _keepout(placement, limits, conductors),
-    )
-    own = _own_ground(placement)
+    board = plane_area(placement, limits, limits.margin, _CORNER_CHORD_NM)
+    allowed = cut(board, _keepout(placement, limits, conductors))
+    own = _own_ground(placement, limits)
     filled = overlap(closed(joined([allowed, own]), limits.min_gap / 2.0), allowed)
     spaced = _spaced(filled, own, limits)
     solid = _solid(spaced, own, limits)
@@ -76,20 +82,40 @@ def pour_of(placement: Placement, limits: Limits, conductors: Sequence[Conductor
 
 
 def _solid(pour: BaseGeometry, own: BaseGeometry, limits: Limits) -> BaseGeometry:
-    """Return the pour without fins and without necks too narrow to be etched.
+    """Return the pour without fins, and without necks too narrow to be etched.
 
-    What is narrower than twice ``limits.row`` goes, but for short necks, which are healed: a cut through one
-    would be a slit with sharp ends. A neck narrower than the least width is cut through squarely.
+    What is narrower than twice ``limits.row`` goes, but for short necks, which come back as they were: a cut
+    through one would be a slit with sharp ends. A neck narrower than the least width is cut through squarely.
     """
     wide = opened(joined([pour, own]), limits.row)
-    healed = overlap(closed(wide, limits.row), pour)
-    both = joined([healed, own])
-    thin = cut(both, opened(both, 0.55 * limits.min_width))
-    necks = [neck for neck in pieces(thin) if neck.area > _NECK_SHARE * limits.min_width**2]
-    if not necks:
+    healed = overlap(joined([wide, *_short_necks(pour, wide, limits)]), pour)
+    thin = _thin_necks(joined([healed, own]), 0.55 * limits.min_width)
+    if not thin:
         return healed
-    apart = cut(healed, joined(shapely.box(*grow(neck, limits.min_gap).bounds) for neck in necks))
+    apart = cut(healed, joined(shapely.box(*grow(neck, limits.min_gap).bounds) for neck in thin))
     return overlap(opened(joined([apart, own]), limits.row), apart)
+
+
+def _short_necks(pour: BaseGeometry, wide: BaseGeometry, limits: Limits) -> list[shapely.Polygon]:
+    """Return what opening took off the pour between places that lie near each other.
+
+    Such a piece fills the hollow between its contacts with what is left; a fin stands out from one contact.
+    """
+    lost = [piece for piece in pieces(cut(pour, wide)) if piece.length < _NECK_ROUND * limits.row]
+    return [piece for piece in lost if _fills_hollow(piece, wide)]
+
+
+def _fills_hollow(piece: shapely.Polygon, rest: BaseGeometry) -> bool:
+    """True when most of a piece lies between the places where it touches the rest."""
+    contact = overlap(piece.buffer(_WASH_NM), rest)
+    return overlap(piece, contact.convex_hull).area >= _NECK_FILLED * piece.area
+
+
+def _thin_necks(copper: BaseGeometry, radius: float) -> list[shapely.Polygon]:
+    """Return where a disc cannot pass from one part of the copper to the other; corners do not count."""
+    passed = shapely.buffer(shapely.buffer(copper, -radius), radius)
+    left = pieces(shapely.difference(copper, passed))
+    return [piece for piece in left if len(pieces(overlap(passed, piece.buffer(_WASH_NM)))) > 1]
 
 
 def _keepout(placement: Placement, limits: Limits, conductors: Sequence[Conductor]) -> BaseGeometry:

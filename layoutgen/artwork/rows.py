@@ -22,7 +22,9 @@ from layoutgen.geometry import grow, pieces, rings_of
 
 __all__ = ["Facing", "Side", "set_rows", "sides_of"]
 
-_SAMPLE_NM = 50_000
+_SAMPLE_NM = 100_000
+_STEP_NM = 50_000
+_ROUNDING_NM = 2.0
 _CORNER_DEG = 40.0
 
 Floats = NDArray[np.float64]
@@ -125,7 +127,7 @@ def set_rows(sides: Sequence[Side], facing: Facing, drills: Drills, reach: int) 
     for side, a, b in stretches:
         for t in (a, b):
             if not drills.near(*side.at(t), facing.pitch / 2.0):
-                _put_near(side, t, a, b, facing.pitch / 2.0, drills)
+                _put_near(side, t, (a, b), facing.pitch / 2.0, drills)
     for side, a, b in stretches:
         _fill(side, a, b, facing.pitch, drills, reach)
 
@@ -159,28 +161,41 @@ def _stretches(side: Side, faced: Bools, widened: int) -> Iterator[tuple[float, 
         yield current
 
 
-def _put_near(side: Side, t: float, a: float, b: float, tolerance: float, drills: Drills) -> bool:
-    """Set a via at t [nm], or as near to it as it may stand within a tolerance and the stretch."""
-    if drills.put(*side.at(t)):
-        return True
-    for k in range(1, math.floor(tolerance / _SAMPLE_NM) + 1):
-        for s in (t + k * _SAMPLE_NM, t - k * _SAMPLE_NM):
-            if a <= s <= b and drills.put(*side.at(s)):
-                return True
-    return False
+def _put_near(
+    side: Side, t: float, bounds: tuple[float, float], tolerance: float, drills: Drills
+) -> float | None:
+    """Set a via at t [nm], or as near to it as it may stand within a tolerance and bounds; return where."""
+    places = [t]
+    for k in range(1, math.floor(tolerance / _STEP_NM) + 1):
+        places += [t + k * _STEP_NM, t - k * _STEP_NM]
+    for place in places:
+        if bounds[0] <= place <= bounds[1] and drills.put(*side.at(place)):
+            return place
+    return None
 
 
-def _members(side: Side, a: float, b: float, drills: Drills, reach: int) -> list[float]:
-    """Return the arc lengths [nm] of the vias that stand by the row, both ends of the stretch included."""
-    marks = {a, b}
+def _members(side: Side, a: float, b: float, pitch: int, drills: Drills, reach: int) -> list[float]:
+    """Return the arc lengths [nm] of the vias that stand by the row, and a mark for either end.
+
+    An end is marked as far outside the stretch as the nearest via stands from it, where one stands about a
+    corner; else the end itself counts.
+    """
+    marks = {a - _nearest(side.at(a), drills, pitch / 2.0), b + _nearest(side.at(b), drills, pitch / 2.0)}
     middle = (side.along >= a) & (side.along <= b)
     for x, y, _ in _vias_about(side.points[middle], drills, reach):
         offsets = np.array([x, y]) - side.points
         nearest = int(np.argmin(np.hypot(offsets[:, 0], offsets[:, 1])))
-        depth = side.inset - float(np.dot(offsets[nearest], side.outward[nearest]))
-        if depth <= reach and a <= side.along[nearest] <= b:
-            marks.add(float(side.along[nearest]))
+        (dx, dy), (nx, ny) = offsets[nearest].tolist(), side.outward[nearest].tolist()
+        along = float(side.along[nearest]) - dx * ny + dy * nx
+        if 0.0 < side.inset - dx * nx - dy * ny <= reach and a <= along <= b:
+            marks.add(along)
     return sorted(marks)
+
+
+def _nearest(point: tuple[float, float], drills: Drills, reach: float) -> float:
+    """Return the way [nm] to the nearest via within reach of a point, round a corner, or 0."""
+    about = drills.near(*point, reach)
+    return min((abs(x - point[0]) + abs(y - point[1]) for x, y, _ in about), default=0.0)
 
 
 def _vias_about(points: Floats, drills: Drills, reach: int) -> list[tuple[int, int, int]]:
@@ -193,28 +208,15 @@ def _vias_about(points: Floats, drills: Drills, reach: int) -> list[tuple[int, i
 
 
 def _fill(side: Side, a: float, b: float, pitch: int, drills: Drills, reach: int) -> None:
-    """Divide what is left open between the members of a row evenly."""
-    for start, end in itertools.pairwise(_members(side, a, b, drills, reach)):
-        count = math.ceil((end - start - 2.0) / pitch)
-        for k in range(1, count):
-            t = start + (end - start) * k / count
-            _put_near(side, t, start, end, pitch / 2.0, drills)
-    _mend(side, a, b, pitch, drills, reach)
+    """Divide what is left open between the members of a row evenly.
 
-
-def _mend(side: Side, a: float, b: float, pitch: int, drills: Drills, reach: int) -> None:
-    """Close gaps wider than the pitch that even division left beside places where no via may stand."""
-    for start, end in itertools.pairwise(_members(side, a, b, drills, reach)):
+    Where no via may stand at its place, the nearest one within the pitch is taken and the rest divided anew.
+    """
+    for start, end in itertools.pairwise(_members(side, a, b, pitch, drills, reach)):
         last = start
-        while end - last > pitch:
-            placed = _farthest(side, last, min(last + pitch, end), drills)
-            last = placed if placed is not None else last + pitch
-
-
-def _farthest(side: Side, start: float, end: float, drills: Drills) -> float | None:
-    """Set a via as far along a stretch as one may stand, and return its place [nm]."""
-    for k in range(math.floor((end - start) / _SAMPLE_NM)):
-        t = end - k * _SAMPLE_NM
-        if drills.put(*side.at(t)):
-            return t
-    return None
+        while end - last > pitch + _ROUNDING_NM:
+            steps = math.ceil((end - last - _ROUNDING_NM) / pitch)
+            wish = last + (end - last) / steps
+            bounds = (max(a, last), min(b, last + pitch))
+            placed = _put_near(side, wish, bounds, float(pitch), drills)
+            last = last + pitch if placed is None else placed

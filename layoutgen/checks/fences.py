@@ -18,12 +18,12 @@ from layoutgen.geometry import Point
 
 __all__ = [
     "PART_CLEARANCE_NM",
-    "fenced",
     "line_pieces",
     "nearest_line",
     "part_outlines",
     "pour_rim",
     "stretches",
+    "unfenced",
 ]
 
 PART_CLEARANCE_NM = 300_000.0
@@ -32,11 +32,12 @@ PART_CLEARANCE_NM = 300_000.0
 _LINE_ROLES = ("line", "pair", "radial")
 
 
-def fenced(board: Board) -> bool:
-    """Tell whether the circuit asks for a fence."""
-    artwork = board.artwork
-    ground = None if artwork is None else artwork.placement.sized.circuit.file.ground
-    return ground is not None and ground.fence
+def unfenced(board: Board) -> str | None:
+    """Return why there is no fence to look at, None where there should be one."""
+    ground = None if board.artwork is None else board.artwork.placement.sized.circuit.file.ground
+    if ground is None or not ground.fence:
+        return "the circuit asks for no fence"
+    return None if any(piece.role == "pour" for piece in board.top.pieces) else "there is no pour"
 
 
 def line_pieces(board: Board) -> Mapping[str, list[shapely.Polygon]]:

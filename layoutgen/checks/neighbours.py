@@ -171,19 +171,19 @@ class _Nodes:
         placement = artwork.placement
         file = placement.sized.circuit.file
         self._parent: dict[str, str] = {}
-        for name, part in file.parts.items():
-            self._join(_nets_of(part), name in placement.parts)
+        for part in file.parts.values():
+            self._join(_nets_of(part))
         for line in placement.lines.values():
-            self._join(line.nets, line.centre_line <= reach)
+            if line.centre_line <= reach:
+                self._join(line.nets)
         self._out = self._outreach(placement, file.parts)
 
-    def _join(self, nets: tuple[str, ...], together: bool) -> None:
-        """Make one node of nets other than gnd, if they are together."""
+    def _join(self, nets: tuple[str, ...]) -> None:
+        """Make one node of nets, gnd left out."""
         live = [net for net in nets if net != GROUND]
-        for net in live:
-            self._parent.setdefault(net, net)
-        for net in live[1:] if together else ():
-            self._parent[self._root(net)] = self._root(live[0])
+        for net in live[1:]:
+            if self._root(net) != self._root(live[0]):
+                self._parent[self._root(net)] = self._root(live[0])
 
     def _root(self, net: str) -> str:
         """Return the net that stands for a node."""

@@ -57,13 +57,13 @@ CORNER_LIMITS = 3.5
 def merge(polygons: npt.NDArray[np.object_], pairs: npt.NDArray[np.intp]) -> npt.NDArray[np.object_]:
     """Return disjoint polygons: the union of those that the index pairs join, the others as they are."""
     label = clusters(len(polygons), pairs)
-    order = np.argsort(label, kind="stable")
+    alone = (np.bincount(label, minlength=len(polygons))[label] == 1) & (shapely.get_type_id(polygons) == 3)
+    rest = np.flatnonzero(~alone)
+    order = rest[np.argsort(label[rest], kind="stable")]
     bounds = np.flatnonzero(np.diff(label[order])) + 1
-    out: list[shapely.Polygon] = []
-    for group in np.split(order, bounds) if len(order) else ():
-        joined = polygons[group[0]] if len(group) == 1 else shapely.union_all(polygons[group])
-        out.extend(parts(joined))
-    return array_of(out)
+    unions = [shapely.union_all(polygons[group]) for group in np.split(order, bounds) if len(group)]
+    joined = [part for union in unions for part in parts(union)]
+    return np.concatenate((polygons[alone], array_of(joined)))
 
 
 def parts(geometry: Geometry) -> list[shapely.Polygon]:

@@ -3,7 +3,12 @@
 from __future__ import annotations
 
 from layoutgen.formulas.bends import BendResult, bend_excess, douville_james_1978_mitre
-from layoutgen.formulas.ends import hammerstad_open_end, kirschning_jansen_koster_1981, open_end
+from layoutgen.formulas.ends import (
+    hammerstad_open_end,
+    kirschning_jansen_koster_1981,
+    open_end,
+    open_end_in_range,
+)
 from layoutgen.formulas.pads import GapResult, chip_gap, pad_excess
 from layoutgen.formulas.radial import radial_stub_line, radial_stub_radius, radial_stub_reactance
 from layoutgen.formulas.steps import StepResult, line_constants, step
@@ -13,6 +18,7 @@ from layoutgen.formulas.vias import (
     via_array_inductance,
     via_equivalent_length,
     via_inductance,
+    via_inductance_in_range,
     via_resistance,
 )
 
@@ -32,6 +38,7 @@ __all__ = [
     "kirschning_jansen_koster_1981",
     "line_constants",
     "open_end",
+    "open_end_in_range",
     "pad_excess",
     "radial_stub_line",
     "radial_stub_radius",
@@ -41,5 +48,6 @@ __all__ = [
     "via_array_inductance",
     "via_equivalent_length",
     "via_inductance",
+    "via_inductance_in_range",
     "via_resistance",
 ]

@@ -6,9 +6,9 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from layoutgen.formulas.microstrip import hammerstad_jensen_1980, hammerstad_jensen_1980_widening
-from layoutgen.formulas.numeric import Array, floats
+from layoutgen.formulas.numeric import Array, Flags, floats, within
 
-__all__ = ["hammerstad_open_end", "kirschning_jansen_koster_1981", "open_end"]
+__all__ = ["hammerstad_open_end", "kirschning_jansen_koster_1981", "open_end", "open_end_in_range"]
 
 
 def open_end(u: ArrayLike, er: ArrayLike, t: ArrayLike = 0.0) -> Array:
@@ -42,6 +42,27 @@ def open_end(u: ArrayLike, er: ArrayLike, t: ArrayLike = 0.0) -> Array:
 def _rise(u: Array, er: Array) -> Array:
     """Return the ratio of the field-solved extension to the published one [-]."""
     return np.asarray(1.0655 + 0.0875 * er**-1.7 + 0.012 * np.tanh(u - 1.0))
+
+
+def open_end_in_range(u: ArrayLike, er: ArrayLike, t: ArrayLike = 0.0) -> Flags:
+    """Say whether an open end lies in the range of :func:`open_end`.
+
+    Args:
+        u: Strip width over substrate height, W/h [-].
+        er: Relative permittivity of the substrate [-].
+        t: Conductor thickness over substrate height [-].
+
+    Returns:
+        True inside the range [-].
+
+    Source: that of :func:`open_end`.
+    Range: any.
+    Accuracy: exact.
+
+    >>> bool(open_end_in_range(20.0, 3.5))
+    False
+    """
+    return within(u, 0.3, 6.0) & within(er, 1.0, 13.0) & within(t, 0.0, 0.2)
 
 
 def kirschning_jansen_koster_1981(u: ArrayLike, er: ArrayLike, t: ArrayLike = 0.0) -> Array:

@@ -12,7 +12,7 @@ from typing import NamedTuple
 import numpy as np
 from numpy.typing import ArrayLike
 
-from layoutgen.formulas.constants import ETA0
+from layoutgen.formulas.constants import C0, ETA0
 from layoutgen.formulas.numeric import Array, Flags, floats, within
 
 __all__ = [
@@ -21,6 +21,7 @@ __all__ = [
     "hammerstad_jensen_1980",
     "hammerstad_jensen_1980_widening",
     "jansen_kirschning_1983_impedance",
+    "kirschning_jansen_1982_in_range",
     "kirschning_jansen_1982_permittivity",
     "wheeler_hammerstad_width",
 ]
@@ -191,6 +192,27 @@ def kirschning_jansen_1982_permittivity(ee: ArrayLike, u: ArrayLike, er: ArrayLi
     p1, p2, p3, p4 = dispersion_terms(u, er, fn)
     p = p1 * p2 * ((0.1844 + p3 * p4) * fn) ** 1.5763
     return np.asarray(er - (er - ee) / (1.0 + p))
+
+
+def kirschning_jansen_1982_in_range(u: ArrayLike, er: ArrayLike, fh: ArrayLike) -> Flags:
+    """Say whether a line lies in the range of :func:`kirschning_jansen_1982_permittivity`.
+
+    Args:
+        u: Strip width over substrate height, W/h [-].
+        er: Relative permittivity of the substrate [-].
+        fh: Frequency times substrate height [Hz m].
+
+    Returns:
+        True inside the range [-].
+
+    Source: that of :func:`kirschning_jansen_1982_permittivity`.
+    Range: any.
+    Accuracy: exact.
+
+    >>> bool(kirschning_jansen_1982_in_range(1.0, 3.5, 2.2e9 * 0.508e-3))
+    True
+    """
+    return within(u, 0.1, 100.0) & within(er, 1.0, 20.0) & within(fh, 0.0, 0.13 * C0)
 
 
 def dispersion_terms(u: Array, er: Array, fn: Array) -> tuple[Array, Array, Array, Array]:

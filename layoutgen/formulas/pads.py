@@ -30,7 +30,8 @@ def pad_excess(
         t: Conductor thickness over substrate height [-].
 
     Returns:
-        Extra electrical length over substrate height [-], never negative.
+        Extra electrical length over substrate height [-]; a little below zero for slightly narrower
+        pads, whose wave is faster.
 
     Source: first-order line theory; the steps at the pad's ends are not in it.
     Range: pads short against the wavelength (below about 20 degrees).

@@ -110,7 +110,7 @@ def _inductance(wide: Array, narrow: Array, ratio: Array) -> Array:
     a = np.clip(ratio, 1e-9, 1.0 - 1e-9)
     plates = (a + 1.0 / a) * np.log((1.0 + a) / (1.0 - a)) - 2.0 * np.log(4.0 * a / (1.0 - a * a))
     share = 0.2909 + 0.0852 * np.log(wide) + 0.0689 * np.log(narrow)
-    return np.asarray(plates / (2.0 * math.pi) * np.maximum(share, 0.0))
+    return np.asarray(np.where(wide == narrow, 0.0, plates / (2.0 * math.pi) * np.maximum(share, 0.0)))
 
 
 def _capacitance(wide: Array, narrow: Array, er: Array, c_wide: Array) -> Array:

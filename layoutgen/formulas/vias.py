@@ -10,13 +10,14 @@ from numpy.typing import ArrayLike
 from layoutgen.formulas.constants import ETA0, MU0
 from layoutgen.formulas.limits import barrel_resistance
 from layoutgen.formulas.microstrip import hammerstad_jensen_1980
-from layoutgen.formulas.numeric import Array, floats
+from layoutgen.formulas.numeric import Array, Flags, floats, within
 
 __all__ = [
     "goldfarb_pucel_1991",
     "via_array_inductance",
     "via_equivalent_length",
     "via_inductance",
+    "via_inductance_in_range",
     "via_resistance",
 ]
 
@@ -74,6 +75,28 @@ def via_inductance(r: ArrayLike, h: ArrayLike, w: ArrayLike | None = None) -> Ar
     line = hammerstad_jensen_1980(u, 1.0).impedance / ETA0
     spread = 0.0665 + 0.0225 * np.log(u)
     return np.asarray(bare + MU0 * (h * spread - r * line))
+
+
+def via_inductance_in_range(r: ArrayLike, h: ArrayLike, w: ArrayLike) -> Flags:
+    """Say whether a via at a strip's end lies in the range of :func:`via_inductance`.
+
+    Args:
+        r: Radius of the via, outside of its barrel [m].
+        h: Height of the substrate [m].
+        w: Width of the strip that ends there [m].
+
+    Returns:
+        True inside the range [-].
+
+    Source: that of :func:`via_inductance`.
+    Range: any.
+    Accuracy: exact.
+
+    >>> bool(via_inductance_in_range(0.15e-3, 0.508e-3, 1e-3))
+    True
+    """
+    r, h, w = floats(r, h, w)
+    return within(r / h, 0.1, 0.4) & within(w / h, 1.0, 2.5) & (2.0 * r < w)
 
 
 def via_array_inductance(count: int, pitch: ArrayLike, r: ArrayLike, h: ArrayLike) -> Array:

@@ -3,11 +3,37 @@
 In: an :class:`~layoutgen.artwork.Artwork`. Out: a :class:`Response`, the S-parameters between the ports of
 the schematic taken literally (``wanted``) and of what was placed (``as_drawn``). ``network``, ``chain``,
 ``reduce`` and ``solve`` are a solver that knows nothing of boards; ``wanted`` and ``drawn`` build its
-networks; ``trace`` reads the drawn copper; ``touchstone`` reads the parts' data. Nothing here changes a
-drawing, and nothing writes files. Coupling between neighbouring lines that are no pair is not modelled.
+networks; ``trace`` reads the drawn copper; ``touchstone`` reads the parts' data. ``correct`` says how much
+longer or shorter lines should be drawn. Nothing here changes a drawing, and nothing writes files. Coupling between neighbouring lines that are no pair is not modelled.
 """
 
-from layoutgen.response.records import NOTE_RULE, Response
+from layoutgen.response.correct import LengthFit, correct_lengths
+from layoutgen.response.records import (
+    CLOSE_ENOUGH,
+    NOTE_RULE,
+    Correction,
+    DeviceView,
+    Doubt,
+    FeedView,
+    Holder,
+    PinView,
+    Response,
+    Stability,
+)
 from layoutgen.response.respond import respond
 
-__all__ = ["NOTE_RULE", "Response", "respond"]
+__all__ = [
+    "CLOSE_ENOUGH",
+    "NOTE_RULE",
+    "Correction",
+    "DeviceView",
+    "Doubt",
+    "FeedView",
+    "Holder",
+    "LengthFit",
+    "PinView",
+    "Response",
+    "Stability",
+    "correct_lengths",
+    "respond",
+]

@@ -20,7 +20,8 @@ class Piece:
     """A uniform length of copper between two nodes.
 
     ``width``, ``length`` [m]; ``gaps`` to the pour on both sides [m]; ``bends`` along it; ``is_open`` when
-    its far end is an open end. A length may be negative: it moves a plane back.
+    its far end is an open end; ``line`` is the line whose centre-line it is, empty for pads, strips and the
+    ends of pairs. A length may be negative: it moves a plane back.
     """
 
     near: str
@@ -30,6 +31,7 @@ class Piece:
     length: float
     bends: tuple[Bend, ...] = ()
     is_open: bool = False
+    line: str = ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -44,13 +46,17 @@ class JointArm:
 
 @dataclass(slots=True)
 class Joint:
-    """A point of a net where pieces end: place [nm], node, and the arms that meet there."""
+    """A point of a net where pieces end: place [nm], node, and the arms that meet there.
+
+    ``lump`` False leaves out the susceptance of a tee or cross; what if, not what is drawn.
+    """
 
     net: str
     node: str
     x: float
     y: float
     arms: list[JointArm] = field(default_factory=list)
+    lump: bool = True
 
 
 @dataclass(frozen=True, slots=True)
@@ -65,13 +71,18 @@ class Post:
 
 @dataclass(frozen=True, slots=True)
 class PairCopper:
-    """A coupled pair: its four nodes, width, gap, pour's distance and centre-line length [m]."""
+    """A coupled pair: its four nodes, width, gap, pour's distance and centre-line length [m], its name.
+
+    ``equal_modes`` gives both modes the mean of their speeds; what if it were so, not what is drawn.
+    """
 
     nodes: tuple[str, str, str, str]
     width: float
     gap: float
     pour_gap: float
     length: float
+    line: str = ""
+    equal_modes: bool = False
 
 
 @dataclass(frozen=True, slots=True)

@@ -20,8 +20,7 @@ from layoutgen.formulas.vias import goldfarb_pucel_1991, via_inductance, via_res
 from layoutgen.response.chain import ComplexArray, FloatArray
 from layoutgen.response.copper import Joint, JointArm, Piece, Post
 from layoutgen.response.medium import Medium
-from layoutgen.sizing import Arm
-from layoutgen.sizing.junctions import _cross_order, _tee_order
+from layoutgen.sizing import Arm, cross_order, tee_order
 
 __all__ = ["JunctionEffect", "junction_effect", "own_change", "post_impedance"]
 
@@ -50,11 +49,11 @@ def junction_effect(joint: Joint, medium: Medium) -> JunctionEffect:
     if len(arms) not in (3, _MOST_ARMS):
         return JunctionEffect()
     stand_ins = [Arm(str(i), i, arm.heading, arm.width, arm.is_line) for i, arm in enumerate(arms)]
-    order = _tee_order(stand_ins) if len(arms) == 3 else _cross_order(stand_ins)
+    order = tee_order(stand_ins) if len(arms) == 3 else cross_order(stand_ins)
     ordered = [arms[arm.index] for arm in order]
     planes, susceptance = _planes([medium.u(arm.width) for arm in ordered], medium)
     changes = tuple((arm.piece, -d * medium.height) for arm, d in zip(ordered, planes, strict=True))
-    return JunctionEffect(changes, susceptance)
+    return JunctionEffect(changes, susceptance if joint.lump else None)
 
 
 def _planes(u: Sequence[float | FloatArray], medium: Medium) -> tuple[tuple[FloatArray, ...], FloatArray]:

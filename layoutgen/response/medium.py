@@ -47,10 +47,10 @@ class LineSection:
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Medium:
-    """Substrate and copper; each quantity a number, or of shape (B,) for samples of a tolerance analysis.
+    """Substrate and copper; each quantity a number, or of shape (S, 1) for samples beside frequencies (F,).
 
     Attributes:
-        frequencies: Frequencies, shape (B,) [Hz].
+        frequencies: Frequencies, shape (F,) [Hz].
         er: Relative permittivity [-].
         loss_tangent: Loss tangent [-].
         height: Substrate height [m].
@@ -75,8 +75,14 @@ class Medium:
     _known: dict[_Key, LineSection] = field(default_factory=dict, init=False, repr=False)
 
     @property
+    def shape(self) -> tuple[int, ...]:
+        """The shape of everything that depends on frequency and sample."""
+        quantities = (self.er, self.loss_tangent, self.height, self.thickness, self.width_change)
+        return np.broadcast_shapes(self.frequencies.shape, *(np.shape(value) for value in quantities))
+
+    @property
     def omega(self) -> FloatArray:
-        """Angular frequencies (B,) [rad/s]."""
+        """Angular frequencies [rad/s]."""
         return 2.0 * math.pi * self.frequencies
 
     @property

@@ -7,13 +7,24 @@ frequencies laid out flat: the solver does not ask which.
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
 from layoutgen.response.chain import Chain, ComplexArray, FloatArray
 
-__all__ = ["GROUND", "Block", "Branch", "Ends", "Network", "Port", "Shunt", "between", "coupled_pair"]
+__all__ = [
+    "GROUND",
+    "Block",
+    "Branch",
+    "Ends",
+    "Network",
+    "Port",
+    "Shunt",
+    "between",
+    "coupled_pair",
+    "spread",
+]
 
 GROUND = "gnd"
 """The node all voltages refer to."""
@@ -98,3 +109,27 @@ def coupled_pair(nodes: tuple[str, str, str, str], even: Chain, odd: Chain) -> t
     for chain, sign in ((even, _HALF), (odd, -_HALF)):
         modes.append(Branch(((a1, _HALF), (b1, sign)), ((a2, _HALF), (b2, sign)), chain))
     return modes[0], modes[1]
+
+
+def spread(network: Network, shape: tuple[int, ...]) -> Network:
+    """Return the network with all values to one shape, samples times frequencies, laid out flat.
+
+    Values of the batch's own shape are kept, numbers stand for the whole batch as they are.
+    """
+    if len(shape) == 1:
+        return network
+    branches = tuple(
+        replace(branch, chain=Chain(*(_flat(value, shape) for value in branch.chain)))
+        for branch in network.branches
+    )
+    shunts = tuple(replace(shunt, admittance=_flat(shunt.admittance, shape)) for shunt in network.shunts)
+    blocks = tuple(
+        replace(b, s=np.broadcast_to(b.s, (*shape, *b.s.shape[-2:])).reshape(-1, *b.s.shape[-2:]))
+        for b in network.blocks
+    )
+    return replace(network, branches=branches, shunts=shunts, blocks=blocks)
+
+
+def _flat(value: ComplexArray, shape: tuple[int, ...]) -> ComplexArray:
+    """Return a value to a shape, laid out flat."""
+    return np.broadcast_to(value, shape).reshape(-1) if np.ndim(value) else value

@@ -45,29 +45,34 @@ def response_ports(file: CircuitFile) -> tuple[tuple[str, complex], ...]:
     return tuple(found)
 
 
-def part_impedance(part: Part, omega: FloatArray) -> ComplexArray | None:
+def part_impedance(part: Part, omega: FloatArray, scale: float | FloatArray = 1.0) -> ComplexArray | None:
     """Return the series impedance (B,) [ohm] of a two-terminal part by its value; None when it has none.
 
     Args:
         part: A resistor, capacitor or inductor with its series resistance and inductance.
         omega: Angular frequency (B,) [rad/s], positive.
+        scale: What the value is multiplied by [-]; series resistance and inductance stay.
     """
     if part.value is None:
         return None
-    jw = 1j * omega
+    jw, value = 1j * omega, part.value * scale
     if part.kind == "resistor":
-        own = part.value + 0.0 * jw
+        own = value + 0.0 * jw
     elif part.kind == "inductor":
-        own = jw * part.value
+        own = jw * value
     elif part.kind == "capacitor":
-        own = 1.0 / (jw * part.value)
+        own = 1.0 / (jw * value)
     else:
         return None
     return np.asarray(own + part.series_resistance + jw * part.series_inductance, dtype=np.complex128)
 
 
 def part_elements(
-    part: Part, nodes: Mapping[str, str], data: PartData | None, frequencies: FloatArray
+    part: Part,
+    nodes: Mapping[str, str],
+    data: PartData | None,
+    frequencies: FloatArray,
+    scale: float | FloatArray = 1.0,
 ) -> tuple[tuple[Branch, ...], tuple[Block, ...]]:
     """Return a part's branches and blocks; none for a part that is open at RF.
 
@@ -76,10 +81,11 @@ def part_elements(
         nodes: Node of each terminal, by the names of :func:`terminals`.
         data: Its measured data, which stand in for the value.
         frequencies: Frequencies (B,) [Hz].
+        scale: What the value is multiplied by [-]; measured data are taken as they are.
     """
     if data is not None:
         return _measured(part, nodes, data, frequencies)
-    z = part_impedance(part, 2.0 * np.pi * frequencies)
+    z = part_impedance(part, 2.0 * np.pi * frequencies, scale)
     if z is None or len(nodes) != 2:
         return (), ()
     first, second = nodes.values()

@@ -9,11 +9,14 @@ import numpy as np
 import numpy.typing as npt
 
 from layoutgen.artwork import Artwork
+from layoutgen.response.copper import Copper
+from layoutgen.response.device import Board, device_view, passive_data
 from layoutgen.response.drawn import drawn_network
-from layoutgen.response.parts import response_ports
-from layoutgen.response.records import Response
+from layoutgen.response.figures import correction_figures
+from layoutgen.response.parts import response_ports, terminals
+from layoutgen.response.records import CLOSE_ENOUGH, NOTE_RULE, Correction, DeviceView, Response
 from layoutgen.response.solve import solve
-from layoutgen.response.sweep import plan_sweep
+from layoutgen.response.sweep import Sweep, plan_sweep
 from layoutgen.response.trace import trace_copper
 from layoutgen.response.wanted import wanted_network
 
@@ -35,7 +38,7 @@ def respond(artwork: Artwork, folder: Path | None = None) -> Response:
         WrongInputError: Data files that cannot be used or do not cover the band, all in one go.
     """
     file = artwork.placement.sized.circuit.file
-    sweep = plan_sweep(file, Path(file.file).parent if folder is None else folder)
+    sweep = plan_sweep(file, folder)
     frequencies = np.concatenate([sweep.frequencies, sweep.spots])
     copper = trace_copper(artwork)
     parts = [frequencies[start : start + _CHUNK] for start in range(0, frequencies.size, _CHUNK)]
@@ -43,17 +46,47 @@ def respond(artwork: Artwork, folder: Path | None = None) -> Response:
     drawn = np.concatenate([solve(drawn_network(artwork, f, sweep.data, copper=copper)) for f in parts])
     ports = response_ports(file)
     count = sweep.frequencies.size
+    correction = correction_figures(artwork, sweep.data, copper)
     return Response(
         ports=tuple(name for name, _ in ports),
         impedances=tuple(impedance for _, impedance in ports),
         frequencies=_frozen(sweep.frequencies),
         wanted=_frozen(wanted[:count]),
         as_drawn=_frozen(drawn[:count]),
-        notes=(*sweep.notes, *copper.notes),
+        notes=(*sweep.notes, *copper.notes, *_remainder(correction)),
         spots=_frozen(sweep.spots),
         wanted_at_spots=_frozen(wanted[count:]),
         as_drawn_at_spots=_frozen(drawn[count:]),
+        correction=correction,
+        device=_device(artwork, sweep, copper),
     )
+
+
+def _device(artwork: Artwork, sweep: Sweep, copper: Copper) -> DeviceView | None:
+    """Return what the transistors and feeds of an artwork see."""
+    file = artwork.placement.sized.circuit.file
+    data = passive_data(file, sweep.data)
+    nets = {name: port.net for name, port in file.ports.items()}
+    for name, part in file.parts.items():
+        nets |= {f"{name}.{pin}": net for pin, net in terminals(part)}
+    wanted = Board(lambda f: wanted_network(artwork.placement, f, data), nets)
+    drawn = Board(
+        lambda f: drawn_network(artwork, f, data, copper=copper), {**copper.ports, **copper.terminals}
+    )
+    return device_view(file, sweep.data, wanted, drawn, sweep.frequencies)
+
+
+def _remainder(correction: Correction) -> tuple[tuple[str, str, str], ...]:
+    """Return a note when the band does not come near enough to the schematic, naming what holds it."""
+    if correction.after <= CLOSE_ENOUGH:
+        return ()
+    text = f"as drawn and wanted differ by up to {correction.after:.3f} in the band, without losses"
+    if correction.reachable <= CLOSE_ENOUGH:
+        return ((NOTE_RULE, "", f"{text}; other lengths would bring that to {correction.reachable:.3f}"),)
+    if not correction.holders:
+        return ((NOTE_RULE, "", f"{text}; no single element holds it"),)
+    first = correction.holders[0]
+    return ((NOTE_RULE, first.element, f"{text}; without {first.what} it would be {first.without:.3f}"),)
 
 
 def _frozen(values: ArrayType) -> ArrayType:

@@ -23,7 +23,7 @@ from layoutgen.response.parts import data_terminals, terminals
 from layoutgen.response.records import NOTE_RULE
 from layoutgen.response.touchstone import PartData, UnusableDataError, largest_gain, read_part_data
 
-__all__ = ["Sweep", "plan_sweep"]
+__all__ = ["Sweep", "part_data", "plan_sweep"]
 
 _PASSIVE = 1.001  # rounding of four digits in a file [-]
 _COARSE = 0.01  # error of the straight line between two points of data [-]
@@ -39,8 +39,8 @@ class Sweep:
     notes: tuple[tuple[str, str, str], ...]
 
 
-def plan_sweep(file: CircuitFile, folder: Path) -> Sweep:
-    """Return the sweep of a circuit file whose data files lie relative to a folder.
+def plan_sweep(file: CircuitFile, folder: Path | None = None) -> Sweep:
+    """Return the sweep of a circuit file whose data files lie relative to a folder; None: the file's own.
 
     Raises:
         WrongInputError: Every data file that cannot be used, or does not cover the band.
@@ -48,22 +48,38 @@ def plan_sweep(file: CircuitFile, folder: Path) -> Sweep:
     low, high = file.design.band
     start, stop = file.design.sweep or (max(2.0 * low - high, 0.01 * low), 2.0 * high - low)
     frequencies = np.linspace(start, stop, file.design.points)
-    spots = np.array([low, file.design.frequency, high])
+    data = part_data(file, folder)
+    kept, notes = _cut(file, frequencies, data)
+    return Sweep(kept, _spots(file), data, (*notes, *_remarks(file, data)))
+
+
+def _spots(file: CircuitFile) -> FloatArray:
+    """Return the band edges and the design frequency between them [Hz]."""
+    low, high = file.design.band
+    return np.array([low, file.design.frequency, high])
+
+
+def part_data(file: CircuitFile, folder: Path | None = None) -> dict[str, PartData]:
+    """Return the measured data by part, read from files relative to a folder; None: the circuit file's own.
+
+    Raises:
+        WrongInputError: Every data file that cannot be used, or does not cover the band.
+    """
+    place = Path(file.file).parent if folder is None else folder
     data: dict[str, PartData] = {}
     faults: list[Fault] = []
     for name, part in file.parts.items():
         if part.data is None:
             continue
         try:
-            data[name] = _covering(read_part_data(folder / part.data, _port_counts(part)), spots)
+            data[name] = _covering(read_part_data(place / part.data, _port_counts(part)), _spots(file))
         except UnusableDataError as error:
             key = f"parts.{name}.data"
             found = f"{quote(part.data)}: {error.found}"
             faults.append(Fault(file.location(key), key, found, error.allowed))
     if faults:
         raise WrongInputError(faults)
-    kept, notes = _cut(file, frequencies, data)
-    return Sweep(kept, spots, data, (*notes, *_remarks(file, data)))
+    return data
 
 
 def _port_counts(part: Part) -> tuple[int, ...]:

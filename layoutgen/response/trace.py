@@ -115,7 +115,7 @@ class _Tracer:
         )
         length = line.centre_line * _NM - near[1] - far[1]
         self.piece(
-            Piece(near[0], far[0], width, gaps, length, line.bends, nets[1] == OPEN),
+            Piece(near[0], far[0], width, gaps, length, line.bends, nets[1] == OPEN, line.name),
             (near[2], heading(*legs[0]), True),
             (far[2], heading(*legs[1]), True),
         )
@@ -131,7 +131,8 @@ class _Tracer:
             stretch = Piece(corners[index], node, width, gaps, -taken, (), net == OPEN)
             self.piece(stretch, (joint, heading(*leg), True))
         nodes = (corners[0], corners[1], corners[2], corners[3])
-        self.pairs.append(PairCopper(nodes, width, pair.gap * _NM, min(gaps), pair.centre_line * _NM))
+        length = pair.centre_line * _NM
+        self.pairs.append(PairCopper(nodes, width, pair.gap * _NM, min(gaps), length, pair.name))
 
     def end(
         self, owner: tuple[str, int], net: str, at: Point, width: float, gaps: tuple[float, float]

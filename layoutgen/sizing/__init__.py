@@ -10,6 +10,8 @@ from layoutgen.sizing.budget import (
     Arm,
     bend_entries,
     budget_for_length,
+    correction_entries,
+    cross_order,
     default_arms,
     default_budgets,
     halved,
@@ -18,6 +20,7 @@ from layoutgen.sizing.budget import (
     line_budget,
     open_end_correction,
     pad_correction,
+    tee_order,
     via_correction,
 )
 from layoutgen.sizing.records import (
@@ -42,6 +45,8 @@ __all__ = [
     "SizedRadial",
     "bend_entries",
     "budget_for_length",
+    "correction_entries",
+    "cross_order",
     "default_arms",
     "default_budgets",
     "halved",
@@ -53,5 +58,6 @@ __all__ = [
     "placed_dc",
     "size_circuit",
     "strip_width",
+    "tee_order",
     "via_correction",
 ]

@@ -12,10 +12,12 @@ from layoutgen.origin import Fault
 from layoutgen.sizing.junctions import (
     Arm,
     bend_change,
+    cross_order,
     junction_corrections,
     junction_flags,
     open_end_correction,
     pad_correction,
+    tee_order,
     via_correction,
 )
 from layoutgen.sizing.records import BudgetEntry, Land, SizedCircuit, SizedLine, SizedPair
@@ -24,6 +26,8 @@ __all__ = [
     "Arm",
     "bend_entries",
     "budget_for_length",
+    "correction_entries",
+    "cross_order",
     "default_arms",
     "default_budgets",
     "halved",
@@ -32,6 +36,7 @@ __all__ = [
     "line_budget",
     "open_end_correction",
     "pad_correction",
+    "tee_order",
     "via_correction",
 ]
 
@@ -51,6 +56,7 @@ def line_budget(
 
     Returns:
         The length through the sharp corners, and the entries (the line's first); they add up to the angle.
+        A response correction of the line is one of them.
 
     Raises:
         WrongInputError: The length is not positive; the least angle that works is named.
@@ -59,7 +65,7 @@ def line_budget(
     held = _held(sized, name)
     if held.angle is None:
         raise ValueError(f"{name} is not given by angle")
-    others = (*ends, *bend_entries(sized, name, turns))
+    others = (*ends, *bend_entries(sized, name, turns), *correction_entries(sized, name))
     own = held.angle - math.fsum(entry.angle for entry in others)
     if own <= 0.0:
         raise WrongInputError([_too_short(sized, name, held.angle, held.angle - own)])
@@ -94,6 +100,12 @@ def bend_entries(sized: SizedCircuit, name: str, turns: Turns) -> tuple[BudgetEn
         BudgetEntry("bend", held.beta * h * bend_change(u, er, mitre, abs(turn), t), f"bend {i}")
         for i, (turn, mitre) in enumerate(turns, 1)
     )
+
+
+def correction_entries(sized: SizedCircuit, name: str) -> tuple[BudgetEntry, ...]:
+    """Return the entry of a line's response correction; nothing for a line without one."""
+    angle = sized.corrections.get(name, 0.0)
+    return (BudgetEntry("response_correction", angle, name),) if angle else ()
 
 
 def halved(entries: Sequence[BudgetEntry]) -> tuple[BudgetEntry, ...]:

@@ -13,7 +13,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import lru_cache
 
-from layoutgen.circuit import Circuit
+from layoutgen.circuit import Circuit, EndKind
 from layoutgen.formulas.bends import bend_excess, douville_james_1978_mitre
 from layoutgen.formulas.ends import open_end
 from layoutgen.formulas.pads import pad_excess
@@ -24,10 +24,12 @@ from layoutgen.sizing.records import BudgetEntry, SizedCircuit
 
 __all__ = [
     "Arm",
+    "cross_order",
     "junction_corrections",
     "junction_flags",
     "open_end_correction",
     "pad_correction",
+    "tee_order",
     "via_correction",
 ]
 
@@ -132,7 +134,7 @@ def junction_corrections(
         raise ValueError(f"net {net}: {len(arms)} arms, at most 4")
     if len(arms) == 2:
         return _two(sized, net, arms, corner_mitre) if len(lines) == 2 else {}
-    cause, ordered = ("tee", _tee_order(arms)) if len(arms) == 3 else ("cross", _cross_order(arms))
+    cause, ordered = ("tee", tee_order(arms)) if len(arms) == 3 else ("cross", cross_order(arms))
     planes = _planes(_board(sized.circuit), ordered)[0]
     h = sized.circuit.file.substrate.height
     return {
@@ -153,7 +155,7 @@ def junction_flags(sized: SizedCircuit, net: str, arms: Sequence[Arm]) -> tuple[
             return ()
         name, holds = "step (fit to field solutions)", _step(u[0], u[1], board.er, board.t)[2]
     else:
-        ordered = _tee_order(arms) if len(arms) == 3 else _cross_order(arms)
+        ordered = tee_order(arms) if len(arms) == 3 else cross_order(arms)
         name, holds = "tee (fit to field solutions; Hammerstad 1981 used)", _planes(board, ordered)[1]
     widths = ", ".join(f"{value:.3g}" for value in u)
     return () if holds else (f"net {net}: {name}: W/h {widths} (0.5 to 5), er {board.er:g} (to 13)",)
@@ -196,7 +198,7 @@ def _between(a: float, b: float) -> float:
     return abs((a - b + 180.0) % 360.0 - 180.0)
 
 
-def _tee_order(arms: Sequence[Arm]) -> tuple[Arm, Arm, Arm]:
+def tee_order(arms: Sequence[Arm]) -> tuple[Arm, Arm, Arm]:
     """Return the two arms that are most nearly opposite, and the third as the side."""
     i, j = max(
         itertools.combinations(range(3), 2),
@@ -205,7 +207,7 @@ def _tee_order(arms: Sequence[Arm]) -> tuple[Arm, Arm, Arm]:
     return arms[i], arms[j], arms[3 - i - j]
 
 
-def _cross_order(arms: Sequence[Arm]) -> tuple[Arm, Arm, Arm, Arm]:
+def cross_order(arms: Sequence[Arm]) -> tuple[Arm, Arm, Arm, Arm]:
     """Return the opposite pair that is wider in sum (the mains), then the other; ties keep the order."""
     turned = sorted(range(4), key=lambda k: (arms[k].heading_deg - arms[0].heading_deg) % 360.0)
     first, second = (turned[0], turned[2]), (turned[1], turned[3])
@@ -229,7 +231,8 @@ def pad_correction(
 ) -> BudgetEntry:
     """Return what the pad at a line's end adds, the line being drawn to the pad's inner edge.
 
-    The line's copper covers a pad that is not wider, which then adds nothing.
+    The line's copper covers a pad that is not wider, which then adds nothing. A pad that the part's measured
+    data include (``planes = "pad_outer"``) takes its own length off: there the line ends at the outer edge.
 
     Args:
         sized: The sized circuit.
@@ -238,6 +241,9 @@ def pad_correction(
         pad_width: The pad's size across the line [m].
         pad_length: The pad's size along the line [m].
     """
+    beta = beta_of(sized, element)
+    if _in_data(sized.circuit, net):
+        return BudgetEntry("pad", -beta * pad_length, net)
     board = _board(sized.circuit)
     u = _width_of(sized, element) / board.h
     excess = (
@@ -245,7 +251,14 @@ def pad_correction(
         if pad_width <= u * board.h
         else _pad(u, pad_width / board.h, pad_length / board.h, board.er, board.t)
     )
-    return BudgetEntry("pad", beta_of(sized, element) * excess * board.h, net)
+    return BudgetEntry("pad", beta * excess * board.h, net)
+
+
+def _in_data(circuit: Circuit, net: str) -> bool:
+    """Tell whether the data of a part at a net include its pad."""
+    parts = circuit.file.parts
+    pads = (parts[end.element] for end in circuit.nets[net].ends if end.kind is EndKind.PAD)
+    return any(part.data is not None and part.planes == "pad_outer" for part in pads)
 
 
 @lru_cache(maxsize=_CACHE)

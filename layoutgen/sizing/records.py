@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 from layoutgen.circuit import Circuit
 
@@ -135,7 +135,11 @@ class Lands:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class SizedCircuit:
-    """The circuit with every size that follows from formulas and rules alone."""
+    """The circuit with every size that follows from formulas and rules alone.
+
+    ``corrections`` are response corrections by line or pair [rad]: what the rest of the drawn circuit is
+    taken to add to a line given by angle, so that its copper is drawn shorter by it (longer when negative).
+    """
 
     circuit: Circuit
     lines: Mapping[str, SizedLine]
@@ -144,3 +148,4 @@ class SizedCircuit:
     lands: Mapping[str, Lands]
     default_pour_gap: float
     notes: tuple[str, ...] = ()
+    corrections: Mapping[str, float] = field(default_factory=dict)

@@ -21,13 +21,18 @@ from layoutgen.sizing.supplies import dc_resistances, supply_width, with_supplie
 __all__ = ["placed_dc", "size_circuit", "strip_width"]
 
 
-def size_circuit(circuit: Circuit, gaps: Mapping[str, tuple[float, float]] | None = None) -> SizedCircuit:
+def size_circuit(
+    circuit: Circuit,
+    gaps: Mapping[str, tuple[float, float]] | None = None,
+    corrections: Mapping[str, float] | None = None,
+) -> SizedCircuit:
     """Return every size that follows from formulas and rules alone.
 
     Args:
         circuit: The circuit.
         gaps: By line or pair, the distance of the pour (left, right) as a drawing has it, infinity for none
             [m]; left out: the distance the sizing asks for, on both sides.
+        corrections: By line or pair given by angle, its response correction [rad]; others are left out.
 
     Raises:
         WrongInputError: Substrate, impedances, widths or radii outside what the formulas cover or the board
@@ -53,6 +58,7 @@ def size_circuit(circuit: Circuit, gaps: Mapping[str, tuple[float, float]] | Non
         lands=part_lands(file, circuit.rules),
         default_pour_gap=pours.default,
         notes=(*pours.notes, *chip_notes(file, circuit.rules)),
+        corrections=dict(corrections or {}),
     )
 
 

@@ -11,8 +11,8 @@ What is promised:
   mixed.
 - When a rename fails (a file held open elsewhere, a full disk) all renames are undone, under the name
   ``.layoutgen-undo``; the next run ends an undoing that was killed.
-- Files that the tool did not write are never touched. Touchstone files of the last run with another number
-  of ports are removed together with it.
+- Files that the tool did not write are never touched. Touchstone files of the last run whose number of ports
+  has changed are removed together with it.
 
 Two runs into one folder at the same moment are not kept apart: one of them ends with an error.
 """
@@ -195,18 +195,16 @@ def _read_journal(where: Path) -> dict[str, list[str]]:
 
 
 def _outdated(folder: Path, files: Mapping[str, bytes]) -> list[str]:
-    """Return Touchstone files of the last run that the new set has under another number of ports."""
+    """Return Touchstone files that the last run listed and the new set does not have under that name."""
     try:
         listed = [entry["path"] for entry in json.loads((folder / _LAST).read_bytes())["files"]]
     except (OSError, ValueError, KeyError, TypeError):
         return []
-    stems = {name.split(".")[0] for name in files if _NUMBERED.fullmatch(name)}
     return [
         name
         for name in listed
         if isinstance(name, str)
         and _NUMBERED.fullmatch(name)
-        and name.split(".")[0] in stems
         and name not in files
         and (folder / name).is_file()
     ]

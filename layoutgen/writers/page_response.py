@@ -17,7 +17,7 @@ def response_section(result: Result) -> Iterator[str]:
     """Yield what the schematic does and what the drawn board does, as pictures and numbers."""
     response = result.response
     if response is None:
-        yield "<p>The circuit has no RF ports, so there is no response.</p>"
+        yield "<p>The circuit has no RF ports and no terminations, so there is no response.</p>"
         return
     yield (
         "<p>Dashed: the schematic with lossless lines. Solid: the board as drawn, with loss, junctions, "

@@ -22,8 +22,8 @@ DEFAULT_DPI = 150
 class Result:
     """Every stage's result. Each stage's record holds the one before it, so three of them hold all.
 
-    ``response`` is None for a circuit without RF ports; ``seconds`` [s] are by stage, in their order;
-    ``notes`` are assumptions made between the stages: (rule, element, text).
+    ``response`` is None for a circuit without RF ports and terminations; ``seconds`` [s] are by stage, in
+    their order; ``notes`` are assumptions made between the stages: (rule, element, text).
     """
 
     artwork: Artwork

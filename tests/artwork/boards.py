@@ -41,7 +41,7 @@ RULES: dict[str, Any] = {
         "min_island_area": "0.5 mm^2",
     },
     "holes": {
-        "drills": ["0.3 mm", "2.7 mm"],
+        "drills": ["0.3 mm", "1.0 mm", "2.7 mm"],
         "min_annular_ring": "0.125 mm",
         "min_web": "0.25 mm",
         "min_copper_distance": "0.20 mm",

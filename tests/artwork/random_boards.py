@@ -111,15 +111,12 @@ class RandomBoard:
             self.board.chip(f"S{i}", x, y, heading, ("a", "gnd"))
 
     def _hole(self) -> None:
-        """Add a hole off all copper that is placed."""
-        r = self._random
-        x, y, diameter = (
-            round(r.uniform(2.5, self.board.width - 2.5), 4),
-            round(r.uniform(2.5, self.board.height - 2.5), 4),
-            r.choice((1.0, 2.7)),
-        )
-        if self._free(shapely.Point(x, y).buffer(diameter / 2 + 0.3), 0.5):
-            self.board.hole(x, y, diameter, r.random() < 0.3)
+        """Add a hole off all copper that is placed; a plated one, which has a land on ground, well off it."""
+        r, plated = self._random, self._random.random() < 0.3
+        x, y = (round(r.uniform(2.5, size - 2.5), 4) for size in (self.board.width, self.board.height))
+        diameter = r.choice((1.0, 2.7))
+        if self._free(shapely.Point(x, y).buffer(diameter / 2 + (2.5 if plated else 0.3)), 0.5):
+            self.board.hole(x, y, diameter, plated)
 
 
 def _chip_area(x: float, y: float, heading: float) -> BaseGeometry:

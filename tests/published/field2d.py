@@ -23,7 +23,7 @@ from skfem.helpers import dot, grad
 
 ETA0 = 376.730313668
 FAR = 60.0
-FINEST = 2e-4
+FINEST = 5e-4
 GROWTH = 1.9
 POUR_COUNTS_TO = 20.0
 

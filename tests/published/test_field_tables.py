@@ -77,7 +77,7 @@ def test_coupled_pair_meets_the_table():
 def test_open_end_meets_the_table_where_the_published_forms_do_not():
     """Catches a return to the published value, which is up to .055 h short."""
     u, er, wanted = columns("openend", "u", "er", "dl_over_h")
-    assert np.max(np.abs(open_end(u, er) - wanted)) < 0.01
+    assert np.max(np.abs(open_end(u, er) - wanted)) < 0.006
     assert np.all(wanted - kirschning_jansen_koster_1981(u, er) > 0.014)
     assert np.max(wanted - hammerstad_open_end(u, er)) > 0.1
 
@@ -93,7 +93,7 @@ def test_bend_meets_the_table():
     """Catches a centre-line left uncorrected (.6 to 1.2 h) and a mitre that has no effect."""
     u, er, mitre, length = columns("bend", "u", "er", "mitre_pct", "delay_equiv_length_over_h")
     result = bend_excess(u, er, np.nan_to_num(mitre))
-    assert np.max(np.abs(u + result.length_change - length)) < 0.05
+    assert np.max(np.abs(u + result.length_change - length)) < 0.02
     assert result.in_range.all()
 
 
@@ -102,10 +102,8 @@ def test_tee_planes_and_susceptance_meet_the_table():
     keys = ("u1", "u1b", "u2", "er", "value.da", "value.db", "value.d2", "value.B")
     u_a, u_b, u_side, er, d_a, d_b, d_side, b = columns("tee", *keys)
     result = tee(u_a, u_b, u_side, er, 1e6)
-    equal = u_a == u_b
     for found, wanted in ((result.d_a, d_a), (result.d_b, d_b), (result.d_side, d_side)):
-        assert np.max(np.abs(found - wanted)[equal]) < 0.03
-        assert np.max(np.abs(found - wanted)[~equal]) < 0.05
+        assert np.max(np.abs(found - wanted)) < 0.016
     assert np.max(np.abs(result.susceptance * 1e3 - b)) < 0.06
     assert np.all(result.model == FIELD_FIT)
     assert result.in_range.all()
@@ -115,8 +113,8 @@ def test_step_meets_the_table_in_either_order():
     """Catches a swap of the two lines and excess values taken from the books (off by 2 to 4 times)."""
     u_1, u_2, er, d_1, d_2 = columns("step", "u1", "u2", "er", "value.d1", "value.d2")
     result, swapped = step(u_1, u_2, er), step(u_2, u_1, er)
-    assert np.max(np.abs(result.d_1 - d_1)) < 0.02
-    assert np.max(np.abs(result.d_2 - d_2)) < 0.02
+    assert np.max(np.abs(result.d_1 - d_1)) < 0.016
+    assert np.max(np.abs(result.d_2 - d_2)) < 0.016
     assert np.array_equal(swapped.d_1, result.d_2)
     assert np.array_equal(swapped.d_2, result.d_1)
 

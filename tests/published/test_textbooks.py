@@ -26,7 +26,7 @@ from layoutgen.formulas.microstrip import (
 )
 from layoutgen.formulas.pour import ghione_naldi_1983
 from layoutgen.formulas.radial import radial_stub_reactance
-from layoutgen.formulas.synthesis import coupled_dimensions
+from layoutgen.formulas.synthesis import coupled_dimensions, width_for_impedance
 from layoutgen.formulas.vias import goldfarb_pucel_1991, via_resistance
 
 MIL = 25.4e-6
@@ -269,6 +269,22 @@ class TestPozarComponents:
         found = coupled_dimensions(*wanted, 4.4, 0.035)
         pair = coupled_pair(found.u, found.g, 4.4, 0.035)
         assert (pair.z_even, pair.z_odd) == (pytest.approx(wanted[0]), pytest.approx(wanted[1]))
+
+    @pytest.mark.parametrize(
+        ("impedance", "printed"),
+        [
+            (50.0 * math.sqrt(2.0), 70.71),  # Wilkinson divider and rat-race ring
+            (50.0 / math.sqrt(2.0), 35.36),  # series arms of the branch-line coupler
+            (50.0 * math.sqrt((1.0 + 2.0**2) / 2.0**3) * 4.0, 158.11),  # unequal divider, K = 2
+            (50.0 * math.sqrt((1.0 + 2.0**2) / 2.0**3), 39.53),
+        ],
+    )
+    def test_arms_of_dividers_and_couplers(self, impedance, printed):
+        """Examples 8.2 and 8.5 and the unequal divider: every arm can be drawn and has its impedance."""
+        assert impedance == pytest.approx(printed, abs=6e-3)
+        found = width_for_impedance(impedance, 2.2, 0.03)
+        assert found.in_range
+        assert hammerstad_jensen_1980(found.u, 2.2, 0.03).impedance == pytest.approx(impedance, rel=1e-9)
 
     def test_quarter_wave_transformer(self):
         """10 to 50 ohm: 22.36 ohm and a bandwidth of 0.29 at SWR 1.5, from the line's own phase constant."""

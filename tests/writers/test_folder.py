@@ -94,6 +94,28 @@ def test_files_of_others_stay(filled: Path) -> None:
     assert (filled / "photos" / "one.jpg").read_bytes() == b"mine"
 
 
+def test_the_report_comes_last(filled: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    """Its hashes tell a mixed set from a whole one only if it is the last to change."""
+    moved: list[str] = []
+    real = os.replace
+
+    def recording(source: str, target: str) -> None:
+        moved.append(Path(target).name)
+        real(source, target)
+
+    monkeypatch.setattr(os, "replace", recording)
+    write_files(filled, dict(sorted(NEW.items(), reverse=True)))
+    assert sorted(moved) == sorted(NEW)
+    assert moved[-1] == "report.json"
+
+
+def test_a_set_without_a_response_removes_the_old_one(filled: Path) -> None:
+    """Left behind, it would be taken for the response of the board beside it."""
+    silent = {name: data for name, data in NEW.items() if not name.startswith("wanted")}
+    write_files(filled, silent)
+    assert contents(filled) == silent | FOREIGN
+
+
 @pytest.mark.parametrize(
     "report", [b"not json", b"[]", b'{"files": 3}', b'{"files": [{"path": "../x.s4p"}, 7]}']
 )

@@ -178,6 +178,7 @@ def test_svg_shows_legend_scale_references_and_title(svg: ET.Element) -> None:
         "2",
     ):
         assert words in texts
+    assert "3" not in texts, "a waived finding has no mark"
     assert "C1" not in texts, "its reference is printed on the legend already"
     tips = [title.text or "" for title in svg.iter(f"{SVG}title")]
     assert any("1.100 mm wide" in tip for tip in tips)

@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 import pytest
 import shapely
-from hypothesis import given
+from hypothesis import example, given
 from hypothesis import strategies as st
 
 from layoutgen.geometry import Ring
@@ -73,6 +73,9 @@ def test_a_row_of_holes_needs_one_cut() -> None:
 
 
 @given(st.lists(st.tuples(st.integers(0, 10**7), st.integers(3, 10**6)), min_size=1, max_size=30))
+@example([(0, 10), (10, 10)])
+@example([(0, 10), (9, 11)])
+@example([(0, 10), (8, 11)])
 def test_each_hole_is_met_by_a_cut(spans: list[tuple[int, int]]) -> None:
     """A cut that only grazes a hole leaves it in a piece."""
     ends = np.array([(low, low + size) for low, size in spans], dtype=float)

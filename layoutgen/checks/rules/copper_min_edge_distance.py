@@ -21,6 +21,7 @@ from layoutgen.artwork import Artwork
 from layoutgen.checks.board import Area, Board, Layer, Piece
 from layoutgen.checks.outcome import Hit, Outcome, Rule, mm, named, too_small
 from layoutgen.checks.planar import CHORD_NM, TOLERANCE_NM, Geometry, middle
+from layoutgen.checks.records import NotChecked
 from layoutgen.placement import PlacedPort
 
 __all__ = ["RULE"]
@@ -33,6 +34,8 @@ def find(board: Board) -> Iterator[Outcome]:
     limit = board.limits.nm(NAME)
     if limit is None:
         return
+    if board.outline is None:
+        yield NotChecked(NAME, "the drawing has no profile")
     ports = _edge_ports(board.artwork, limit)
     for layer in board.layers:
         if board.outline is not None:

@@ -35,13 +35,15 @@ def find(board: Board) -> Iterator[Outcome]:
 def _islands(layer: Layer, limit: float) -> Iterator[Hit]:
     """Yield the islands of one layer; the limit is an area [nm^2]."""
     areas = shapely.area(layer.merged)
-    for k in np.flatnonzero(areas < limit * (1.0 - 1e-6)).tolist():
-        island = layer.merged[k]
-        inside = [layer.pieces[n] for n in np.sort(layer.tree.query(island, predicate="intersects")).tolist()]
-        if any(piece.role in _WANTED for piece in inside):
-            continue
+    small = np.flatnonzero(areas < limit * (1.0 - 1e-6))
+    wanted = np.array([piece.role in _WANTED for piece in layer.pieces], dtype=bool)
+    island, member = layer.tree.query(layer.merged[small], predicate="intersects")
+    used = np.isin(np.arange(len(small)), island[wanted[member]])
+    for n in np.flatnonzero(~used).tolist():
+        k, shape = small[n], layer.merged[small[n]]
+        inside = [layer.pieces[m] for m in np.sort(member[island == n]).tolist()]
         items = named(*(piece.item for piece in inside))
-        spot = island.representative_point()
+        spot = shape.representative_point()
         yield Hit(
             rule=NAME,
             text=f"island of {areas[k] / 1e12:.4f} mm^2, at least {limit / 1e12:.4f} mm^2",

@@ -16,7 +16,7 @@ from collections.abc import Iterator
 import shapely
 
 from layoutgen.checks.board import Board, Drill
-from layoutgen.checks.fences import fenced, pour_rim
+from layoutgen.checks.fences import pour_rim, unfenced
 from layoutgen.checks.nodes import GROUND
 from layoutgen.checks.outcome import Hit, Outcome, Rule, mm, named
 from layoutgen.checks.planar import Geometry, middle
@@ -33,8 +33,8 @@ def find(board: Board) -> Iterator[Outcome]:
     limit = board.limits.nm(NAME)
     if limit is None:
         return
-    if not fenced(board):
-        yield NotChecked(NAME, "the circuit asks for no fence")
+    if (reason := unfenced(board)) is not None:
+        yield NotChecked(NAME, reason)
         return
     rim = pour_rim(board)
     for via in board.vias:
@@ -45,10 +45,7 @@ def find(board: Board) -> Iterator[Outcome]:
 def _behind(via: Drill, rim: Geometry, limit: float) -> Iterator[Hit]:
     """Yield the hit of one fence via, when it stands too far behind the edge."""
     axis = shapely.Point(via.x, via.y)
-    if rim.is_empty:
-        text = f"{via.item} is a fence via, but there is no pour"
-        yield Hit(rule=NAME, text=text, items=named(via.item, "pour"), at=via.at, nets=(GROUND,))
-    elif not shapely.dwithin(rim, axis, limit + _TOLERANCE_NM):
+    if not shapely.dwithin(rim, axis, limit + _TOLERANCE_NM):
         distance = float(axis.distance(rim))
         yield Hit(
             rule=NAME,

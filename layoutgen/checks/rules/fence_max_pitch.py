@@ -26,7 +26,7 @@ import numpy.typing as npt
 import shapely
 
 from layoutgen.checks.board import Board
-from layoutgen.checks.fences import fenced, nearest_line, stretches
+from layoutgen.checks.fences import nearest_line, stretches, unfenced
 from layoutgen.checks.nodes import GROUND
 from layoutgen.checks.outcome import Hit, Outcome, Rule, mm, named
 from layoutgen.checks.planar import TOLERANCE_NM, whole
@@ -43,10 +43,8 @@ _PITCH_TOLERANCE_NM = 1_000.0
 
 def find(board: Board) -> Iterator[Outcome]:
     """Yield a hit for each gap in a row of vias."""
-    if not fenced(board):
-        for name in (PITCH, WAVELENGTHS):
-            if board.limits.get(name) is not None:
-                yield NotChecked(name, "the circuit asks for no fence")
+    if (reason := unfenced(board)) is not None:
+        yield from (NotChecked(name, reason) for name in RULE.names if board.limits.get(name) is not None)
         return
     name, limit = _governing(board)
     least = board.limits.nm("vias.min_pitch") or 0.0

@@ -32,6 +32,7 @@ __all__ = ["RULE"]
 NAME = "ground.gap"
 _TOLERANCE_NM = 1_000.0
 _LINE_ROLES = ("line", "pair", "radial")
+_OWN_ROLES = ("pad", "ground", "land")
 
 
 def find(board: Board) -> Iterator[Outcome]:
@@ -43,8 +44,8 @@ def find(board: Board) -> Iterator[Outcome]:
         yield NotChecked(NAME, "there is no pour")
         return
     gaps = pour_gaps(board.artwork)
-    outlines = part_outlines(board.artwork, TOLERANCE_NM)
-    pour = np.array([p for whole in pours for p in parts(whole.difference(outlines))], dtype=object)
+    away = part_outlines(board.artwork, TOLERANCE_NM).union(_own_ground(board))
+    pour = np.array([p for whole in pours for p in parts(whole.difference(away))], dtype=object)
     tree = shapely.STRtree(pour)
     for item, line in _lines(board, board.artwork, gaps).items():
         limit = gaps[item]
@@ -54,6 +55,12 @@ def find(board: Board) -> Iterator[Outcome]:
             if distance < limit - _TOLERANCE_NM:
                 text, at = f"pour beside {item} at", middle(line, pour[k])
                 yield too_small(NAME, text, distance, limit, at, named(item, "pour"), (GROUND,))
+
+
+def _own_ground(board: Board) -> Geometry:
+    """Return the ground copper of parts and lines: pour drawn over it is no pour."""
+    own = [p.polygon for p in board.top.pieces if p.node == GROUND and p.role in (*_OWN_ROLES, *_LINE_ROLES)]
+    return shapely.union_all(own)
 
 
 def _lines(board: Board, artwork: Artwork, gaps: Mapping[str, float]) -> dict[str, Geometry]:

@@ -19,6 +19,7 @@ from layoutgen.checks.board import Board
 from layoutgen.checks.drills import drill_layer, wall_middle
 from layoutgen.checks.outcome import Hit, Outcome, Rule, named, too_small
 from layoutgen.checks.planar import TOLERANCE_NM
+from layoutgen.checks.records import NotChecked
 
 __all__ = ["RULE"]
 
@@ -30,7 +31,9 @@ def find(board: Board) -> Iterator[Outcome]:
     limit = board.limits.nm(NAME)
     if limit is None or not board.drills:
         return
-    if board.outline is not None:
+    if board.outline is None:
+        yield NotChecked(NAME, "the drawing has no profile")
+    else:
         yield from _at_edge(board, board.outline, "board", limit, inside=True)
     for cutout in board.cutouts:
         yield from _at_edge(board, cutout.polygon, cutout.item, limit, inside=False)
