@@ -88,7 +88,7 @@ def bend_excess(
     Range: 0.3 <= u <= 6, 1 <= er <= 13, t <= 0.2, angles to 90 degrees, mitres to 70 % or five points
         beyond Douville and James' optimum, whichever is more.
     Accuracy: 0.02 h against the reference table of right angles; against the fitted bends 0.02 h at 90
-        degrees and to the optimal mitre at 45 degrees, 0.04 h beyond it; 0.02 h at 60 degrees, not fitted.
+        degrees and to the optimal mitre at 45 degrees, 0.04 h beyond it and, not fitted, at 60 degrees.
 
     >>> round(float(bend_excess(1.0, 3.66, 68.85).length_change), 2)
     -0.83

@@ -11,15 +11,13 @@ from layoutgen.geometry.booleans import (
     cut,
     grow,
     joined,
-    offset_ring,
-    offset_rings,
     opened,
     overlap,
     pieces,
     rings_of,
-    sharpened,
 )
 from layoutgen.geometry.lettering import lettering, lettering_size, printable
+from layoutgen.geometry.offsets import offset_ring, offset_rings, sharpened
 from layoutgen.geometry.ring import CHORD_TOLERANCE_NM, Point, Ring
 from layoutgen.geometry.sector import sector_cover, sector_ring
 from layoutgen.geometry.stroke import mitre_for_turn, mitre_reach, path_length, stroke, turn_degrees

@@ -11,6 +11,7 @@ import numpy.typing as npt
 from layoutgen.artwork import Artwork
 from layoutgen.response.copper import Copper
 from layoutgen.response.device import Board, device_view, passive_data
+from layoutgen.response.doubts import find_doubts
 from layoutgen.response.drawn import drawn_network
 from layoutgen.response.figures import correction_figures
 from layoutgen.response.parts import response_ports, terminals
@@ -59,6 +60,7 @@ def respond(artwork: Artwork, folder: Path | None = None) -> Response:
         as_drawn_at_spots=_frozen(drawn[count:]),
         correction=correction,
         device=_device(artwork, sweep, copper),
+        doubts=find_doubts(artwork, copper),
     )
 
 

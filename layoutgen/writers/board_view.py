@@ -57,7 +57,8 @@ class BoardView:
     def ring(self, ring: Ring) -> npt.NDArray[np.float64]:
         """Return an outline's vertices on the sheet [mm], arcs as chords."""
         points = np.array(ring.chords(), dtype=float) * (self.scale / _NM_PER_MM)
-        return points + np.array([self.x, self.y])
+        moved: npt.NDArray[np.float64] = points + np.array([self.x, self.y])
+        return moved
 
     def rings(self, shape: Shape) -> list[npt.NDArray[np.float64]]:
         """Return a shape's outline counter-clockwise and its holes clockwise [mm]."""

@@ -249,7 +249,7 @@ def text_width(text: str, size: float, bold: bool = False) -> float:
 def _font(bold: bool) -> Any:
     from matplotlib.font_manager import FontProperties
 
-    return FontProperties(_FONT, weight="bold" if bold else "normal")
+    return FontProperties(family=_FONT, weight="bold" if bold else "normal")
 
 
 @functools.lru_cache(maxsize=1)

@@ -1,12 +1,12 @@
-"""Quasi-static field solution of thin microstrip shapes in three dimensions: where the junction tables come from.
+"""Quasi-static field solution of thin microstrip shapes in three dimensions, behind the junctions' fits.
 
-A thin sheet at height 1 over a ground plane at height 0, cut into triangles. The capacitance comes from a charge
-that is constant on each triangle, with the images of the grounded slab; the inductance from a stream function
-that is linear on each triangle and constant along each side edge, with the image in the ground plane. Excess
-values are differences to straight strips of the same mesh, whose open ends cancel. Lengths are in units of the
-substrate height, inductances over MU0, capacitances over EPS0.
+A thin sheet at height 1 over a ground plane at height 0, cut into triangles. The capacitance comes from a
+charge that is constant on each triangle, with the images of the grounded slab; the inductance from a stream
+function that is linear on each triangle and constant along each side edge, with the image in the ground
+plane. Excess values are differences to straight strips of the same mesh, whose open ends cancel. Lengths are
+in units of the substrate height, inductances over MU0, capacitances over EPS0.
 
-Arms of finite length couple along their line as 3/(8 pi length), which ``tee`` and ``bend`` correct.
+The shapes and their excess values are in ``sheet_shapes``.
 """
 
 from __future__ import annotations
@@ -32,7 +32,7 @@ WEIGHTS = np.array([0.225] + [0.132394152788506] * 3 + [0.125939180544827] * 3)
 
 @dataclass(frozen=True)
 class Sheet:
-    """Points (N, 2) [h], triangles (M, 3) counter-clockwise, and the side edges' points, one array per edge."""
+    """Points (N, 2) [h], triangles (M, 3) counter-clockwise, and the points of each side edge."""
 
     points: np.ndarray
     triangles: np.ndarray
@@ -139,7 +139,7 @@ def capacitance(sheet: Sheet, er: float) -> float:
 
 
 def inductances(sheet: Sheet) -> np.ndarray:
-    """Return twice the energy over MU0 as a quadratic form of the stream function on all edges but the first."""
+    """Return twice the energy over MU0 as a form of the stream function on all edges but the first."""
     mutual = (interaction(sheet, 0.0) - interaction(sheet, 2.0)) / (4.0 * math.pi)
     energy = sum(slope.T @ (slope.T @ mutual).T for slope in _slopes(sheet))
     fixed = np.concatenate(sheet.edges)

@@ -1,8 +1,7 @@
-"""Meshes of junctions and bends for the sheet solution, and the excess values that the tables hold.
+"""Meshes of tees and bends for the sheet solution, and the excess values that the formulas are fitted to.
 
-    python -m tests.published.sheet_shapes
-
-prints one tee and one bend. Tables were made with arms of 9 h (tees) and of 6 and 10 h (bends).
+Arms of finite length miss what endless ones couple along their line; a tee's side line is corrected for it by
+3/(4 pi length), a bend is left with arms of 8 h, as circuits have them.
 """
 
 from __future__ import annotations
@@ -84,12 +83,6 @@ def straight_inductance(u: float, arm: float) -> float:
     return 0.5 * float(inductances(straight_sheet(u, arm))[0, 0])
 
 
-@lru_cache(maxsize=64)
-def straight_capacitance(u: float, arm: float, er: float) -> float:
-    """Return half of what a straight strip of two arms has, open ends included."""
-    return 0.5 * capacitance(straight_sheet(u, arm), er)
-
-
 def tee_sheet(u_a: float, u_b: float, u_side: float, arm: float) -> Sheet:
     """Return a tee: mains to the west (a) and east (b) that step at x = 0, side line to the north."""
     marks_x = [-0.5 * u_side, 0.5 * u_side] + ([0.0] if u_a != u_b else [])
@@ -112,12 +105,12 @@ def tee_planes(u_a: float, u_b: float, u_side: float, arm: float = 9.0) -> tuple
     form = inductances(tee_sheet(u_a, u_b, u_side, arm))
     side = -form[0, 1]
     excess = np.array([form[0, 0] - side, form[1, 1] - side, side])
-    per_length = []
-    for u in (u_a, u_b, u_side):
-        per_length.append((straight_inductance(u, arm + 1.0) - straight_inductance(u, arm)) / 1.0)
-    excess -= [straight_inductance(u, arm) for u in (u_a, u_b, u_side)]
+    short, long = (
+        np.array([straight_inductance(u, x) for u in (u_a, u_b, u_side)]) for x in (arm, arm + 1.0)
+    )
+    excess -= short
     excess[2] -= 3.0 / (4.0 * math.pi * arm)
-    return tuple(float(value) for value in -excess / per_length)
+    return tuple(float(value) for value in -excess / (long - short))
 
 
 def bend_sheet(u: float, angle: float, mitre: float, arm: float) -> Sheet:
@@ -164,19 +157,15 @@ def _folded(grid: np.ndarray, fold: int) -> Sheet:
 def bend_length(u: float, angle_deg: float, mitre: float, er: float, arm: float = 8.0) -> float:
     """Return a bend's equivalent length less that of its centre-line [h], with arms of 8 h."""
     angle = math.radians(angle_deg)
-    shape = bend_sheet(u, angle, mitre, arm), bend_sheet(u, 0.0, 0.0, arm), bend_sheet(u, 0.0, 0.0, arm + 1.0)
-    (l_bend, l_short, l_long), (c_bend, c_short, c_long) = (
-        [float(value) for value in values]
-        for values in (
-            (inductances(sheet)[0, 0] for sheet in shape),
-            (capacitance(sheet, er) for sheet in shape),
-        )
+    shapes = (
+        bend_sheet(u, angle, mitre, arm),
+        bend_sheet(u, 0.0, 0.0, arm),
+        bend_sheet(u, 0.0, 0.0, arm + 1.0),
     )
-    by_l, by_c = 2.0 * (l_bend - l_short) / (l_long - l_short), 2.0 * (c_bend - c_short) / (c_long - c_short)
-    return 0.5 * (by_l + by_c) - u * math.tan(0.5 * angle)
-
-
-if __name__ == "__main__":
-    np.set_printoptions(precision=3)
-    print("tee 2.2, 5, 1:", np.array(tee_planes(2.2, 5.0, 1.0)))
-    print("bend u 1, 45 degrees, mitre 69 %, er 3.66:", round(bend_length(1.0, 45.0, 0.69, 3.66), 3))
+    length = 0.0
+    for bend, short, long in (
+        [float(inductances(shape)[0, 0]) for shape in shapes],
+        [capacitance(shape, er) for shape in shapes],
+    ):
+        length += (bend - short) / (long - short)
+    return length - u * math.tan(0.5 * angle)

@@ -109,6 +109,33 @@ def test_tee_planes_and_susceptance_meet_the_table():
     assert result.in_range.all()
 
 
+def test_tees_of_random_widths():
+    """Catches a change of the terms for unequal mains, which the reference table samples thinly."""
+    keys = ("u_a", "u_b", "u_side", "d_a", "d_b", "d_side")
+    u_a, u_b, u_side, d_a, d_b, d_side = columns("tee_random", *keys)
+    result = tee(u_a, u_b, u_side, 3.66, 0.0)
+    assert result.in_range.all()
+    usual = np.max([u_a, u_b, u_side], axis=0) <= 6.0
+    for found, wanted, limit in (
+        (result.d_a, d_a, 0.016),
+        (result.d_b, d_b, 0.016),
+        (result.d_side, d_side, 0.04),
+    ):
+        assert np.max(np.abs(found - wanted)[usual]) < limit
+        assert np.max(np.abs(found - wanted)) < 0.07
+
+
+def test_bends_of_two_angles_and_any_mitre():
+    """Catches a change of the fit where the reference table, right angles of u 1 and 2, has no rows."""
+    keys = ("angle_deg", "u", "er", "mitre_pct", "length_change_over_h")
+    angle, u, er, mitre, wanted = columns("bend_angles", *keys)
+    result = bend_excess(u, er, mitre, angle)
+    off = np.abs(result.length_change - wanted)[result.in_range]
+    assert result.in_range.mean() > 0.85
+    assert np.max(off) < 0.04
+    assert np.max(off[angle[result.in_range] == 90.0]) < 0.02
+
+
 def test_step_meets_the_table_in_either_order():
     """Catches a swap of the two lines and excess values taken from the books (off by 2 to 4 times)."""
     u_1, u_2, er, d_1, d_2 = columns("step", "u1", "u2", "er", "value.d1", "value.d2")
