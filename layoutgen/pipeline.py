@@ -74,9 +74,7 @@ def run_inputs(
     return _run(file, rules, _Clock(tell), folder, correction)
 
 
-def _run(
-    file: CircuitFile, rules: RuleFile, clock: _Clock, folder: Path | None, correction: bool
-) -> Result:
+def _run(file: CircuitFile, rules: RuleFile, clock: _Clock, folder: Path | None, correction: bool) -> Result:
     with clock("circuit"):
         circuit = build_circuit(file, rules)
     fit = partial(correct_lengths, folder=folder) if correction and has_response(file) else None

@@ -174,21 +174,41 @@ def _put_near(
     return None
 
 
-def _members(side: Side, a: float, b: float, pitch: int, drills: Drills, reach: int) -> list[float]:
-    """Return the arc lengths [nm] of the vias that stand by the row, and a mark for either end.
+@dataclass(frozen=True, slots=True, order=True)
+class _Member:
+    """A via by a row: arc length, distance from the row; an end of a stretch: the way on to the nearest via.
 
-    An end is marked as far outside the stretch as the nearest via stands from it, where one stands about a
-    corner; else the end itself counts.
+    All [nm]; ``across`` is positive towards the pour's edge.
     """
-    marks = {a - _nearest(side.at(a), drills, pitch / 2.0), b + _nearest(side.at(b), drills, pitch / 2.0)}
+
+    along: float
+    across: float = 0.0
+    beyond: float = 0.0
+
+    def gap_to(self, other: _Member) -> float:
+        """Return the distance [nm] to a later member."""
+        return math.hypot(self.beyond + other.along - self.along + other.beyond, other.across - self.across)
+
+    @property
+    def aside(self) -> float:
+        """How much farther than its arc length a via of the row sees this one, at most [nm]."""
+        return self.beyond + abs(self.across)
+
+
+def _members(side: Side, a: float, b: float, pitch: int, drills: Drills, reach: int) -> list[_Member]:
+    """Return the vias that stand by the row in order, and both ends of the stretch.
+
+    An end counts as an axis unless a via stands near it about the corner.
+    """
+    marks = {_Member(t, beyond=_nearest(side.at(t), drills, pitch / 2.0)) for t in (a, b)}
     middle = (side.along >= a) & (side.along <= b)
     for x, y, _ in _vias_about(side.points[middle], drills, reach):
         offsets = np.array([x, y]) - side.points
         nearest = int(np.argmin(np.hypot(offsets[:, 0], offsets[:, 1])))
         (dx, dy), (nx, ny) = offsets[nearest].tolist(), side.outward[nearest].tolist()
-        along = float(side.along[nearest]) - dx * ny + dy * nx
-        if 0.0 < side.inset - dx * nx - dy * ny <= reach and a <= along <= b:
-            marks.add(along)
+        along, across = float(side.along[nearest]) - dx * ny + dy * nx, dx * nx + dy * ny
+        if 0.0 < side.inset - across <= reach and a <= along <= b:
+            marks.add(_Member(along, across))
     return sorted(marks)
 
 
@@ -212,11 +232,14 @@ def _fill(side: Side, a: float, b: float, pitch: int, drills: Drills, reach: int
 
     Where no via may stand at its place, the nearest one within the pitch is taken and the rest divided anew.
     """
-    for start, end in itertools.pairwise(_members(side, a, b, pitch, drills, reach)):
-        last = start
+    for before, after in itertools.pairwise(_members(side, a, b, pitch, drills, reach)):
+        if before.gap_to(after) <= pitch + _ROUNDING_NM:
+            continue
+        last, end = before.along - before.aside, after.along + after.aside
         while end - last > pitch + _ROUNDING_NM:
             steps = math.ceil((end - last - _ROUNDING_NM) / pitch)
-            wish = last + (end - last) / steps
-            bounds = (max(a, last), min(b, last + pitch))
-            placed = _put_near(side, wish, bounds, float(pitch), drills)
-            last = last + pitch if placed is None else placed
+            wish, farthest = last + (end - last) / steps, min(b, last + pitch)
+            placed = _put_near(side, wish, (max(a, last), farthest), float(pitch), drills)
+            if placed is None:
+                placed = _put_near(side, farthest, (farthest, min(b, end)), end - farthest, drills)
+            last = end if placed is None else placed

@@ -85,17 +85,18 @@ def bend_excess(
     Source: fits made for this project to field-solved C and L of 96 bends of 45 and 90 degrees, with arms of
         8 heights (endless ones would shorten a right angle by 0.04 h more at u = 1, 0.06 h at u = 2); other
         angles by a power of the angle through both.
-    Range: 0.3 <= u <= 6, 1 <= er <= 13, t <= 0.2, angles to 90 degrees, mitres to 70 % or five points
-        beyond Douville and James' optimum, whichever is more.
-    Accuracy: 0.02 h against the reference table of right angles; against the fitted bends 0.02 h at 90
-        degrees and to the optimal mitre at 45 degrees, 0.04 h beyond it and, not fitted, at 60 degrees.
+    Range: 0.3 <= u <= 6, 1 <= er <= 13, t <= 0.2, angles to 90 degrees, mitres to 8 points beyond
+        Douville and James' optimum, to 15 points where that is below 70 %.
+    Accuracy: 0.02 h against the reference table of right angles; against the fitted bends 0.02 h at 90 and
+        0.03 h at 45 degrees; 0.04 h at 60 degrees, not fitted.
 
     >>> round(float(bend_excess(1.0, 3.66, 68.85).length_change), 2)
     -0.83
     """
     u, er, mitre, angle, t = floats(u, er, mitre_percent, angle_deg, t)
     in_range = within(u, 0.3, 6.0) & within(er, 1.0, 13.0) & within(angle, 0.0, 90.0) & within(t, 0.0, 0.2)
-    deepest = np.maximum(70.0, douville_james_1978_mitre(u) + 5.0)
+    optimum = douville_james_1978_mitre(u)
+    deepest = np.maximum(optimum + 8.0, np.minimum(optimum + 15.0, 70.0))
     in_range = in_range & within(mitre, 0.0, 100.0) & (mitre <= deepest)
     u, t = np.clip(u, 0.1, 10.0), np.clip(t, 0.0, 0.3)
     u = u + hammerstad_jensen_1980_widening(u, 1.0, t)

@@ -87,7 +87,10 @@ def _moved_corner(points: Sequence[Point], i: int, distance: int) -> Point:
     before, after = math.hypot(bx - ax, by - ay), math.hypot(cx - bx, cy - by)
     nx, ny = (by - ay) / before, (ax - bx) / before
     mx, my = (cy - by) / after, (bx - cx) / after
-    scale = distance / (1.0 + nx * mx + ny * my)
+    opening = 1.0 + nx * mx + ny * my
+    if opening < 1e-9:
+        raise ValueError("an outline that folds back on itself cannot be offset")
+    scale = distance / opening
     return round(bx + (nx + mx) * scale), round(by + (ny + my) * scale)
 
 

@@ -64,9 +64,25 @@ def line(impedance: npt.ArrayLike, angle: npt.ArrayLike) -> Chain:
     """
     z = np.asarray(impedance)
     theta = np.asarray(angle)
-    cosine, sine = np.cos(theta), np.sin(theta)
-    a = np.asarray(cosine + 0j * z, dtype=np.complex128)
-    return Chain(a, 1j * z * sine, 1j * sine / z, a)
+    cosine, sine = _circle(theta)
+    a = np.asarray(cosine, dtype=np.complex128)
+    if z.ndim > theta.ndim:
+        a = np.broadcast_to(a, np.broadcast_shapes(z.shape, theta.shape))
+    turned = 1j * sine
+    return Chain(a, z * turned, turned / z, a)
+
+
+def _circle(theta: ComplexArray | FloatArray) -> tuple[ComplexArray | FloatArray, ComplexArray | FloatArray]:
+    """Return cosine and sine; of complex angles by real functions, which is quicker."""
+    if not np.iscomplexobj(theta):
+        return np.cos(theta), np.sin(theta)
+    x, y = theta.real, theta.imag
+    cosine, sine = np.cos(x), np.sin(x)
+    even, odd = np.cosh(y), np.sinh(y)
+    both = np.empty((2, *theta.shape), dtype=np.complex128)
+    both[0].real, both[0].imag = cosine * even, -sine * odd
+    both[1].real, both[1].imag = sine * even, cosine * odd
+    return both[0], both[1]
 
 
 def cascade(first: Chain, *others: Chain) -> Chain:

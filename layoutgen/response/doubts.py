@@ -18,6 +18,7 @@ from layoutgen.circuit import GROUND
 from layoutgen.formulas.constants import C0
 from layoutgen.geometry import Point
 from layoutgen.placement import PlacedLine, PlacedPart, Placement
+from layoutgen.response.chain import FloatArray
 from layoutgen.response.copper import Copper, Joint
 from layoutgen.response.parts import terminals
 from layoutgen.response.paths import SNAP
@@ -65,9 +66,11 @@ def _line_formulas(placement: Placement) -> Iterator[Doubt]:
     places |= {name: _middle(pair.paths[0]) for name, pair in placement.pairs.items()}
     places |= {name: stub.apex for name, stub in placement.radials.items()}
     straight = {name for name, line in placement.lines.items() if not line.bends}
-    supplies = {name for name, line in sized.lines.items() if not line.rf}
-    for name, held in (*sized.lines.items(), *sized.pairs.items(), *sized.radials.items()):
-        for flag in held.flags if name not in supplies else ():
+    flags = {name: line.flags for name, line in sized.lines.items() if line.rf}
+    flags |= {name: pair.flags for name, pair in sized.pairs.items()}
+    flags |= {name: stub.flags for name, stub in sized.radials.items()}
+    for name, texts in flags.items():
+        for flag in texts:
             if not (flag.startswith("bend") and name in straight):
                 yield Doubt(at=places[name], items=(name,), reason=f"out of range: {flag}")
 
@@ -133,8 +136,9 @@ def _junction(line: PlacedLine, joint: Joint) -> tuple[str, float] | None:
         return None
     if len(arms) == 2:
         return "a step", 0.0
-    widest = max(arm.width for arm in arms if arm.width != line.width * _NM) if len(arms) > 2 else 0.0
-    return "a junction", 0.5 * widest
+    others = sorted(arm.width for arm in arms)
+    others.remove(min(others, key=lambda width: abs(width - line.width * _NM)))
+    return "a junction", 0.5 * others[-1]
 
 
 def _tall_parts(placement: Placement) -> Iterator[Doubt]:
@@ -197,19 +201,22 @@ def _open_pour(artwork: Artwork) -> Iterator[Doubt]:
                 reason = "no via joins this pour to the ground plane"
             else:
                 at_ghz = quarter / (distance * _NM) / 1e9
-                reason = f"its edge is {distance * 1e-6:.1f} mm from the nearest via: resonant at {at_ghz:.2g} GHz"
+                reason = (
+                    f"its edge is {distance * 1e-6:.1f} mm from the nearest via: resonant at {at_ghz:.2g} GHz"
+                )
             yield Doubt(at=at, items=("pour",), reason=reason)
 
 
-def _farthest(outline: Sequence[Point], vias: np.ndarray[tuple[int, int], np.dtype[np.float64]]) -> tuple[float, Point]:
+def _farthest(outline: Sequence[Point], vias: FloatArray) -> tuple[float, Point]:
     """Return the largest distance [nm] of an outline's points from the nearest via, and where."""
     if not len(vias):
         return math.inf, outline[0]
+    from shapely import Point as Mark
     from shapely import STRtree, points
 
     corners = np.asarray(outline, dtype=float)
-    marks = points(corners)
-    _, distances = STRtree(points(vias)).query_nearest(marks, return_distance=True, all_matches=False)
+    tree = STRtree([Mark(*via) for via in vias])
+    _, distances = tree.query_nearest(points(corners), return_distance=True, all_matches=False)
     worst = int(np.argmax(distances))
     return float(distances[worst]), outline[worst]
 

@@ -22,7 +22,17 @@ from layoutgen.response.chain import Chain, FloatArray, series
 from layoutgen.response.copper import ChipGap, Copper
 from layoutgen.response.junctions import junction_effect, own_change, post_impedance
 from layoutgen.response.medium import LineSection, Medium, medium_of
-from layoutgen.response.network import GROUND, Block, Branch, Network, Port, Shunt, between, coupled_pair, spread
+from layoutgen.response.network import (
+    GROUND,
+    Block,
+    Branch,
+    Network,
+    Port,
+    Shunt,
+    between,
+    coupled_pair,
+    spread,
+)
 from layoutgen.response.parts import part_elements, response_ports, terminals
 from layoutgen.response.touchstone import PartData
 from layoutgen.response.trace import trace_copper
@@ -157,7 +167,8 @@ class DrawnBoard:
 
     def _add_parts(self, data: Mapping[str, PartData], scales: Mapping[str, FloatArray]) -> list[Block]:
         """Add the parts between their terminals; return the blocks of those with data."""
-        copper, blocks = self.drawing.copper, []
+        copper = self.drawing.copper
+        blocks: list[Block] = []
         for name, part in self.drawing.parts.items():
             nodes = {terminal: copper.terminals[f"{name}.{terminal}"] for terminal, _ in terminals(part)}
             frequencies = self.medium.frequencies

@@ -21,7 +21,9 @@ __all__ = ["find_feeds"]
 _Z0 = 50.0
 
 
-def find_feeds(network: Network, supplies: Mapping[str, str]) -> dict[tuple[str, ...], tuple[str, ComplexArray]]:
+def find_feeds(
+    network: Network, supplies: Mapping[str, str]
+) -> dict[tuple[str, ...], tuple[str, ComplexArray]]:
     """Return the feeds by the DC ports in them: node that they leave, impedance (F,) [ohm] looking in.
 
     Args:
@@ -68,7 +70,7 @@ class _Graph:
     def __init__(self, network: Network) -> None:
         """Note the neighbours of each node, and how many elements and ports meet there."""
         self.near: dict[str, set[str]] = defaultdict(set)
-        self.elements = [_nodes(element) for element in (*network.branches, *network.blocks)]
+        self.elements = [_nodes(b) for b in network.branches] + [_nodes(b) for b in network.blocks]
         self.ports = [port.node for port in network.ports]
         for nodes in self.elements:
             for node in nodes:

@@ -1,4 +1,4 @@
-"""What holds the difference that lengths cannot remove: each cause made ideal in turn, the lengths fitted anew.
+"""What holds the difference that lengths cannot remove: each cause made ideal in turn, lengths fitted anew.
 
 In: a :class:`Match`. Out: for each element, how large the difference would be without what it adds: a
 junction its susceptance and strips, a part its pads, the gap under it and its vias, a grounded line its vias,
@@ -13,7 +13,7 @@ from dataclasses import replace
 
 import numpy as np
 
-from layoutgen.response.chain import ComplexArray, FloatArray
+from layoutgen.response.chain import ComplexArray
 from layoutgen.response.copper import Copper, Piece
 from layoutgen.response.match import Match
 from layoutgen.response.network import GROUND
@@ -39,10 +39,10 @@ def holders(match: Match) -> tuple[Holder, ...]:
     here, slope = match.around(np.zeros(len(match.groups)))
     limit = _HELPS * _largest(_fitted(here, slope))
     zero = np.zeros((1, len(match.groups)))
-    found = [
-        Holder(element=element, what=what, without=_largest(_fitted(match.difference(zero, bare).ravel(), slope)))
-        for element, what, bare in _idealised(match.copper)
-    ]
+    found = []
+    for element, what, bare in _idealised(match.copper):
+        left = _largest(_fitted(match.difference(zero, bare).ravel(), slope))
+        found.append(Holder(element=element, what=what, without=left))
     real = [holder for holder in found if holder.without < limit]
     return tuple(sorted(real, key=lambda holder: holder.without)[:_NAMED])
 
@@ -57,7 +57,7 @@ def _fitted(difference: ComplexArray, slope: ComplexArray) -> ComplexArray:
     if not slope.shape[1]:
         return difference
     curve = (slope.conj().T @ slope).real + _PRICE**2 * difference.size * np.eye(slope.shape[1])
-    x: FloatArray = np.linalg.solve(curve, -(slope.conj().T @ difference).real)
+    x = np.linalg.solve(curve, -(slope.conj().T @ difference).real)
     return np.asarray(difference + slope @ x)
 
 
@@ -68,7 +68,8 @@ def _idealised(copper: Copper) -> Iterator[tuple[str, str, Copper]]:
     for part in dict.fromkeys(key.partition(".")[0] for key in copper.terminals):
         yield from _without_lands(copper, part)
     grounded = {post.node for post in copper.posts}
-    for line in dict.fromkeys(item.line for item in (*copper.pieces, *copper.pairs) if item.line):
+    names = [piece.line for piece in copper.pieces if piece.line] + [pair.line for pair in copper.pairs]
+    for line in dict.fromkeys(names):
         feet = {f"foot {end} of {line}" for end in range(4)}
         if feet & grounded:
             yield line, "its ground vias", _grounded(copper, feet)
@@ -80,7 +81,9 @@ def _idealised(copper: Copper) -> Iterator[tuple[str, str, Copper]]:
 def _without_junctions(copper: Copper, net: str) -> Iterator[tuple[str, str, Copper]]:
     """Yield a net's junctions without susceptance and its strips without length."""
     nodes = {joint.node for joint in copper.joints if joint.net == net}
-    strips = [piece for piece in copper.pieces if piece.near in nodes and piece.far in nodes and not piece.line]
+    strips = [
+        piece for piece in copper.pieces if piece.near in nodes and piece.far in nodes and not piece.line
+    ]
     busy = any(len(joint.arms) > 2 for joint in copper.joints if joint.net == net)
     if not strips and not busy:
         return

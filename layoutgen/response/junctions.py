@@ -7,6 +7,7 @@ made with; here they get every arm that was drawn, and what a budget cannot hold
 
 from __future__ import annotations
 
+import itertools
 from collections.abc import Sequence
 from dataclasses import dataclass
 
@@ -26,6 +27,7 @@ __all__ = ["JunctionEffect", "junction_effect", "own_change", "post_impedance"]
 
 _COLLINEAR_DEG = 1.0
 _MOST_ARMS = 4
+_NODES = 5
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -51,17 +53,38 @@ def junction_effect(joint: Joint, medium: Medium) -> JunctionEffect:
     stand_ins = [Arm(str(i), i, arm.heading, arm.width, arm.is_line) for i, arm in enumerate(arms)]
     order = tee_order(stand_ins) if len(arms) == 3 else cross_order(stand_ins)
     ordered = [arms[arm.index] for arm in order]
-    planes, susceptance = _planes([medium.u(arm.width) for arm in ordered], medium)
+    planes, susceptance = _over_frequency([medium.u(arm.width) for arm in ordered], medium)
     changes = tuple((arm.piece, -d * medium.height) for arm, d in zip(ordered, planes, strict=True))
     return JunctionEffect(changes, susceptance if joint.lump else None)
 
 
-def _planes(u: Sequence[float | FloatArray], medium: Medium) -> tuple[tuple[FloatArray, ...], FloatArray]:
-    """Return the planes over h [-] and the susceptance [S] of a tee or cross of widths over h [-]."""
+def _over_frequency(
+    u: Sequence[float | FloatArray], medium: Medium
+) -> tuple[tuple[FloatArray, ...], FloatArray]:
+    """Return planes [-] and susceptance [S] of a tee or cross of widths over h [-], at all frequencies.
+
+    For samples of a tolerance analysis they are worked out at five frequencies; the polynomial through
+    those gives the others.
+    """
+    f = medium.frequencies
+    if len(medium.shape) == 1 or f.size <= _NODES:
+        return _planes(u, medium, medium.fh)
+    nodes = np.linspace(np.min(f), np.max(f), _NODES)
+    weights = np.ones((_NODES, f.size))
+    for k, j in itertools.permutations(range(_NODES), 2):
+        weights[k] *= (f - nodes[j]) / (nodes[k] - nodes[j])
+    planes, susceptance = _planes(u, medium, nodes * medium.height)
+    return tuple(plane @ weights for plane in planes), np.asarray(susceptance @ weights)
+
+
+def _planes(
+    u: Sequence[float | FloatArray], medium: Medium, fh: FloatArray
+) -> tuple[tuple[FloatArray, ...], FloatArray]:
+    """Return planes over h [-] and susceptance [S] of a tee or cross; ``fh`` is f times h [Hz m]."""
     if len(u) == 3:
-        at = tee(u[0], u[1], u[2], medium.er, medium.fh, medium.t)
+        at = tee(u[0], u[1], u[2], medium.er, fh, medium.t)
         return (at.d_a, at.d_b, at.d_side), at.susceptance
-    four = cross(u[0], u[1], u[2], u[3], medium.er, medium.fh, medium.t)
+    four = cross(u[0], u[1], u[2], u[3], medium.er, fh, medium.t)
     return (four.d_w, four.d_e, four.d_n, four.d_s), four.susceptance
 
 
@@ -94,7 +117,7 @@ def own_change(piece: Piece, medium: Medium) -> FloatArray:
         excess = bend_excess(u, medium.er, bend.mitre_percent, abs(bend.turn), medium.t)
         total = total + excess.length_change * medium.height
     if piece.is_open:
-        total = total + open_end(u, medium.er, medium.t) * medium.height
+        total = total + open_end(u, medium.er, medium.t) * medium.height + 0.5 * medium.width_change
     return total
 
 
@@ -104,12 +127,13 @@ def post_impedance(post: Post, medium: Medium) -> ComplexArray:
     One via has the inductance of a via at the end of a strip; several share it as bare posts at their
     places do, which is more than one over their number.
     """
-    inductance = via_inductance(post.radius, medium.height, post.width) * _share(post, medium)
+    one = via_inductance(post.radius, medium.height, post.width + medium.width_change)
+    inductance = one * _share(post, medium)
     z = 1j * medium.omega * inductance
     if medium.lossless or medium.plating <= 0.0:
         return np.asarray(z)
-    one = via_resistance(medium.frequencies, post.radius, medium.height, medium.plating, medium.conductivity)
-    return np.asarray(z + one / len(post.axes))
+    r = via_resistance(medium.frequencies, post.radius, medium.height, medium.plating, medium.conductivity)
+    return np.asarray(z + r / len(post.axes))
 
 
 def _share(post: Post, medium: Medium) -> FloatArray:

@@ -1,4 +1,4 @@
-"""How far the drawing is from the schematic in the band, without losses, and what its lengths can do about it.
+"""How far the drawing is from the schematic in the band, without losses, and what lengths can do about it.
 
 In: an artwork and the parts' data. Out: :class:`Match`, which gives the difference of S-parameters at any
 change of the lengths of lines given by angle, and its derivatives. Nothing is drawn here: the change is made
@@ -101,7 +101,8 @@ class Match:
     def _copper_angle(self, group: tuple[str, ...]) -> float:
         """Return the electrical length [rad] of the shortest centre-line of a group, as drawn."""
         placement = self.artwork.placement
-        lengths = {name: item.centre_line for name, item in (*placement.lines.items(), *placement.pairs.items())}
+        lengths = {name: line.centre_line for name, line in placement.lines.items()}
+        lengths |= {name: pair.centre_line for name, pair in placement.pairs.items()}
         return min(self._beta(name) * lengths[name] * 1e-9 for name in group)
 
     def difference(self, changes: FloatArray, copper: Copper | None = None) -> ComplexArray:

@@ -58,7 +58,8 @@ class Medium:
         conductivity: Copper's conductivity [S/m].
         roughness: Copper's rms roughness [m].
         plating: Thickness of the vias' plating [m]; zero when the rules do not say, for no loss in vias.
-        width_change: What etching adds to every width, and takes from every gap [m].
+        width_change: What etching adds to every width, and takes from every gap [m]; half of it moves each
+            edge, so open ends move by half.
         lossless: True leaves all losses out.
     """
 
@@ -125,7 +126,9 @@ class Medium:
             self._section(static.z_odd, modes[1], width),
         )
 
-    def radial(self, sector: float, inner: float, outer: float, dispersion_at: float | None = None) -> Chain:
+    def radial(
+        self, sector: float, inner: float, outer: _Quantity, dispersion_at: float | None = None
+    ) -> Chain:
         """Return a radial stub as an impedance to ground, by the radial-line equation.
 
         Args:
@@ -135,6 +138,7 @@ class Medium:
             dispersion_at: Frequency of the effective permittivity [Hz]; None: each frequency's own.
         """
         at = self.frequencies if dispersion_at is None else np.full_like(self.frequencies, dispersion_at)
+        outer = outer + 0.5 * self.width_change
         ee, extension = radial_stub_line(at, self.height, self.er, sector, inner, outer, self.t)
         x = radial_stub_reactance(self.frequencies, self.height, ee, sector, inner, outer + extension)
         return series(1j * x)

@@ -83,7 +83,7 @@ class PinView:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class FeedView:
-    """How nearly open a bias feed looks: the net it leaves, the DC ports in it, the impedance looking in [ohm]."""
+    """How nearly open a bias feed looks: the net it leaves, its DC ports, the impedance looking in [ohm]."""
 
     net: str
     ports: tuple[str, ...]

@@ -8,17 +8,21 @@ every frequency, at half-wave lengths too.
 from __future__ import annotations
 
 from collections import defaultdict
-from collections.abc import Iterable
+from collections.abc import Iterable, Iterator
+from dataclasses import replace
+
+import numpy as np
+import numpy.typing as npt
 
 from layoutgen.response.chain import Chain, ComplexArray, cascade, reverse, shunt
 from layoutgen.response.network import GROUND, Block, Branch, Network, Shunt
 
-__all__ = ["reduce_network"]
+__all__ = ["islands", "reduce_network"]
 
 
 def reduce_network(network: Network) -> Network:
     """Return the network without unseen parts, with every chain of two-ports as one two-port."""
-    seen = _seen_nodes(network)
+    seen = _reached(_neighbours(network), (port.node for port in network.ports))
     branches = [b for b in network.branches if _nodes(b) & seen]
     blocks = tuple(b for b in network.blocks if _nodes(b) & seen)
     admittances = _sum_by_node(s for s in network.shunts if s.node in seen)
@@ -43,20 +47,45 @@ def _is_plain(branch: Branch) -> bool:
     return len(branch.near) == len(branch.far) == 1 and branch.near[0][1] == branch.far[0][1] == 1.0
 
 
-def _seen_nodes(network: Network) -> set[str]:
-    """Return the nodes that some port reaches other than through ground."""
-    neighbours: dict[str, set[str]] = defaultdict(set)
+def islands(network: Network) -> Iterator[tuple[npt.NDArray[np.intp], Network]]:
+    """Yield the parts of a network that nothing but ground joins, with the numbers of their ports."""
+    near = _neighbours(network)
+    left = list(range(len(network.ports)))
+    while left:
+        inside = _reached(near, [network.ports[left[0]].node])
+        numbers = [k for k in left if network.ports[k].node in inside]
+        left = [k for k in left if k not in numbers]
+        yield (
+            np.array(numbers),
+            replace(
+                network,
+                ports=tuple(network.ports[k] for k in numbers),
+                branches=tuple(b for b in network.branches if _nodes(b) & inside),
+                shunts=tuple(s for s in network.shunts if s.node in inside),
+                blocks=tuple(b for b in network.blocks if _nodes(b) & inside),
+            ),
+        )
+
+
+def _neighbours(network: Network) -> dict[str, set[str]]:
+    """Return the nodes that an element joins to each node."""
+    near: dict[str, set[str]] = defaultdict(set)
     elements: list[Branch | Block] = [*network.branches, *network.blocks]
     for nodes in map(_nodes, elements):
         for node in nodes:
-            neighbours[node] |= nodes
+            near[node] |= nodes
+    return near
+
+
+def _reached(near: dict[str, set[str]], start: Iterable[str]) -> set[str]:
+    """Return the nodes that are reached from some, other than through ground."""
     seen: set[str] = set()
-    waiting = [port.node for port in network.ports]
+    waiting = list(start)
     while waiting:
         node = waiting.pop()
         if node not in seen:
             seen.add(node)
-            waiting.extend(neighbours[node] - seen)
+            waiting.extend(near[node] - seen)
     return seen
 
 

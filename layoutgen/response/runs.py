@@ -62,17 +62,16 @@ def parallel_runs(placement: Placement) -> Iterator[Run]:
             middle = starts[i] + ahead * 0.5 * (max(0.0, along[0, k]) + min(lengths[i], along[1, k]))
             sign = math.copysign(0.5, float((starts[j] - starts[i]) @ aside))
             at = (middle + sign * offset[k] * aside) / _NM
-            coupling = _coupling(placement, (widths[i], widths[j]), float(gap[k]), float(lap[k]))
-            yield Run((names[i], names[j]), (round(at[0]), round(at[1])), float(gap[k]), float(lap[k]), coupling)
+            sizes = float(gap[k]), float(lap[k])
+            coupling = _coupling(placement, (widths[i], widths[j]), *sizes)
+            yield Run((names[i], names[j]), (round(at[0]), round(at[1])), *sizes, coupling)
 
 
 def _legs(placement: Placement) -> tuple[list[str], FloatArray, FloatArray, FloatArray]:
     """Return names (L,), starts and ends (L, 2) [m] and widths (L,) [m] of all straight legs."""
     paths = [(line.name, line.width, line.path) for line in placement.lines.values()]
     paths += [(pair.name, pair.width, path) for pair in placement.pairs.values() for path in pair.paths]
-    legs = [
-        (name, width, a, b) for name, width, path in paths for a, b in itertools.pairwise(path) if a != b
-    ]
+    legs = [(name, width, a, b) for name, width, path in paths for a, b in itertools.pairwise(path) if a != b]
     starts, ends = (np.array([leg[k] for leg in legs], dtype=float).reshape(-1, 2) * _NM for k in (2, 3))
     return [leg[0] for leg in legs], starts, ends, np.array([leg[1] for leg in legs], dtype=float) * _NM
 

@@ -7,8 +7,9 @@ Formulation: nodal admittances, with the ports' own impedances as loads. A two-p
 large or infinite - a line near a multiple of half a wavelength, an element of no impedance - keeps its far
 current as an unknown instead, with the equation ``V1 - a V2 - b I2 = 0``, which is regular at any length;
 measured data keep their incident waves, regular for any S. Only the frequencies that need extra unknowns
-get them. Everything is scaled to 50 ohm. Small networks go through one batched dense solution, networks
-of more than ``SPARSE_FROM`` unknowns through a sparse one per frequency.
+get them. Parts of a network that only ground joins are solved one by one. Everything is scaled to 50 ohm.
+Small networks go through one batched dense solution, networks of more than ``SPARSE_FROM`` unknowns through
+a sparse one per frequency.
 """
 
 from __future__ import annotations
@@ -22,7 +23,7 @@ import numpy.typing as npt
 
 from layoutgen.response.chain import Chain, ComplexArray, FloatArray, series
 from layoutgen.response.network import GROUND, Block, Branch, Ends, Network, Port, between
-from layoutgen.response.reduce import reduce_network
+from layoutgen.response.reduce import islands, reduce_network
 
 if TYPE_CHECKING:
     from scipy.sparse import csc_array
@@ -57,15 +58,23 @@ def solve(network: Network) -> ComplexArray:
     [0.0, 1.0]
     """
     small = reduce_network(_without_grounded_ports(network))
-    stiff = np.empty((len(small.branches), small.size), dtype=np.bool_)
-    for k, branch in enumerate(small.branches):
+    voltages = np.zeros((small.size, len(small.ports), len(small.ports)), dtype=np.complex128)
+    for numbers, island in islands(small):
+        voltages[:, numbers[:, None], numbers] = _port_voltages(island)
+    return _power_waves(voltages, small.ports)
+
+
+def _port_voltages(network: Network) -> ComplexArray:
+    """Return port voltages for unit currents into loaded ports, (B, N, N) [ohm]."""
+    stiff = np.empty((len(network.branches), network.size), dtype=np.bool_)
+    for k, branch in enumerate(network.branches):
         stiff[k] = _is_stiff(branch)
     special = np.any(stiff, axis=0)
-    voltages = np.empty((small.size, len(small.ports), len(small.ports)), dtype=np.complex128)
+    voltages = np.empty((network.size, len(network.ports), len(network.ports)), dtype=np.complex128)
     for rows in (np.flatnonzero(~special), np.flatnonzero(special)):
-        if rows.size and small.ports:
-            voltages[rows] = _loaded_impedances(small, rows, np.any(stiff[:, rows], axis=1))
-    return _power_waves(voltages, small.ports)
+        if rows.size:
+            voltages[rows] = _loaded_impedances(network, rows, np.any(stiff[:, rows], axis=1))
+    return voltages
 
 
 def _without_grounded_ports(network: Network) -> Network:

@@ -12,7 +12,7 @@ from layoutgen.artwork import Shape
 from layoutgen.geometry import Ring
 from layoutgen.writers.outlines import turned
 from layoutgen.writers.records import Result
-from layoutgen.writers.sheet import INK, Sheet
+from layoutgen.writers.sheet import INK, Sheet, circle_outline
 
 __all__ = ["COPPER", "BoardView", "scale_text", "suitable_scale"]
 
@@ -21,7 +21,7 @@ PAD = "#c9a24b"
 
 _SCALES = tuple(
     Fraction(text)
-    for text in ("20", "10", "5", "4", "3", "2", "3/2", "1", "1/2", "1/4", "1/5", "1/10", "1/20")
+    for text in ("20", "10", "5", "4", "3", "5/2", "2", "3/2", "1", "1/2", "1/4", "1/5", "1/10", "1/20")
 )
 _NM_PER_MM = 1e6
 
@@ -86,19 +86,12 @@ class BoardView:
 
     def drills(self, result: Result, crosses: bool = True) -> None:
         """Draw vias and holes as circles with centre marks."""
-        for via in result.artwork.vias:
-            self._drill(via.x, via.y, via.drill, crosses)
-        for hole in result.artwork.holes:
-            self._drill(hole.x, hole.y, hole.diameter, crosses)
-
-    def _drill(self, x: int, y: int, diameter: int, cross: bool) -> None:
-        px, py = self.at(x, y)
-        radius = self.size(diameter) / 2.0
-        self.sheet.circle(px, py, radius, fill="#ffffff", pen=INK, weight=0.13)
-        if cross:
-            arm = radius + min(1.0, radius)
-            self.sheet.line([(px - arm, py), (px + arm, py)], weight=0.08)
-            self.sheet.line([(px, py - arm), (px, py + arm)], weight=0.08)
+        drills = [(via.x, via.y, via.drill) for via in result.artwork.vias]
+        drills += [(hole.x, hole.y, hole.diameter) for hole in result.artwork.holes]
+        circles = [(*self.at(x, y), self.size(diameter) / 2.0) for x, y, diameter in drills]
+        self.sheet.area([circle_outline(*circle) for circle in circles], "#ffffff", INK, 0.13)
+        if crosses:
+            self.sheet.strokes([stroke for circle in circles for stroke in _cross(*circle)], 0.08)
 
     def numbered(self, marks: Sequence[tuple[str, float, float]], size: float = 2.3) -> None:
         """Draw short texts in discs at points [nm], pushed apart where they would overlap."""
@@ -110,6 +103,12 @@ class BoardView:
             self.sheet.line([self.at(x, y), spot], weight=0.15)
             self.sheet.circle(*spot, radius, fill="#ffffff", pen=INK, weight=0.18)
             self.sheet.text(*spot, text, size, "center", middle=True)
+
+
+def _cross(x: float, y: float, radius: float) -> list[list[tuple[float, float]]]:
+    """Return the two centre lines of a hole [mm]."""
+    arm = radius + min(1.0, radius)
+    return [[(x - arm, y), (x + arm, y)], [(x, y - arm), (x, y + arm)]]
 
 
 def _free_spot(

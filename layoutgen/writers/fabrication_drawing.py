@@ -28,6 +28,8 @@ _LEFT, _RIGHT, _BELOW, _ABOVE = 24.0, 16.0, 24.0, 12.0
 _TABLES = 46.0
 _FEW = 20
 """Tools with up to so many holes [-] have their letter at each of them."""
+_ROOMY = 3.0
+"""Radius on the sheet [mm] from which on a hole holds its letter."""
 
 
 def write_fabrication_drawing(result: Result, job: Job) -> bytes:
@@ -89,8 +91,9 @@ def _tool_letters(view: BoardView, result: Result) -> None:
     for letter, ((_, diameter), places) in zip(letters, tools, strict=True):
         for x, y in places if len(places) <= _FEW else ():
             px, py = view.at(x, y)
-            reach = view.size(diameter) / 2.0 + 0.8
-            view.sheet.text(px + 0.72 * reach, py + 0.72 * reach, letter, 2.6, bold=True)
+            radius = view.size(diameter) / 2.0
+            away = 0.35 if radius > _ROOMY else 0.72 * radius + 0.6
+            view.sheet.text(px + away, py + away, letter, 2.6, bold=True)
 
 
 def _dimensions(view: BoardView, result: Result, drawn: tuple[float, float]) -> None:
@@ -128,7 +131,7 @@ def _stackup_sheet(book: Book, result: Result) -> None:
 def _section(sheet: Sheet, flow: Flow, result: Result) -> None:
     """Draw a section through the board: plane, substrate, a line with its sloping sides, mask."""
     substrate = result.circuit.file.substrate
-    x0, x1, y = flow.left + 4.0, flow.left + 96.0, flow.y - 20.0
+    x0, x1, y = flow.left + 4.0, flow.left + 96.0, flow.y - 22.0
     sheet.box(x0, y, x1, y + 12.0, fill="#efe6cf", pen=INK)
     sheet.box(x0, y - 2.0, x1, y, fill="#ad5f2c", pen=INK)
     middle = (x0 + x1) / 2.0
@@ -138,7 +141,7 @@ def _section(sheet: Sheet, flow: Flow, result: Result) -> None:
     sheet.line([(middle - 9.0, y + 12.0), (middle - 9.0, y + 18.0)], 0.1)
     sheet.line([(middle + 9.0, y + 12.0), (middle + 9.0, y + 18.0)], 0.1)
     sheet.line([(middle - 9.0, y + 17.0), (middle + 9.0, y + 17.0)], 0.1)
-    sheet.text(middle, y + 17.6, "width, measured at the foot", 2.3, "center")
+    sheet.text(middle, y + 18.6, "width, measured at the foot", 2.3, "center")
     copper, height = substrate.copper_thickness, substrate.height
     texts = (
         (y + 12.2, f"copper 1: {mm_short(to_nm(copper))} mm"),
@@ -151,14 +154,14 @@ def _section(sheet: Sheet, flow: Flow, result: Result) -> None:
     )
     for at, text in texts:
         sheet.text(x1 + 4.0, at, text, 2.6)
-    flow.skip(30.0)
+    flow.skip(31.0)
 
 
 def _width_sheets(book: Book, result: Result) -> None:
     """Draw the numbered lines, and the table of what must be held."""
     sheet = book.sheet("critical widths")
     left, low, right, high = sheet.room
-    scale = suitable_scale(result, right - left - 12.0, 0.5 * (high - low))
+    scale = suitable_scale(result, right - left - 12.0, 0.42 * (high - low))
     drawn = (result.placement.width / 1e6 * float(scale), result.placement.height / 1e6 * float(scale))
     view = BoardView(sheet, left + (right - left - drawn[0]) / 2.0, high - 6.0 - drawn[1], scale)
     view.profile(result)

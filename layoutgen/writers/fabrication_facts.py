@@ -11,7 +11,7 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 
 from layoutgen.geometry import Point
-from layoutgen.numbers import fixed, mm, mm_short
+from layoutgen.numbers import fixed, mm_short
 from layoutgen.reading import CircuitFile
 from layoutgen.units import quantity_text, to_nm
 from layoutgen.writers.records import Result
@@ -105,17 +105,17 @@ def criticals(result: Result) -> list[Critical]:
     for line in result.placement.lines.values():
         sized = result.sized.lines[line.name]
         coplanar = result.circuit.file.lines[line.name].kind == "grounded_coplanar"
-        gap = mm(to_nm(sized.pour_gap)) if coplanar else ""
+        gap = _width(to_nm(sized.pour_gap)) if coplanar else ""
         impedance = fixed(sized.impedance, 2) if sized.rf else ""
         rule = _HOLD if sized.rf else _CURRENT
-        found.append(((line.name, mm(line.width), tolerance, gap, impedance, rule), _longest(line.path)))
+        found.append(((line.name, _width(line.width), tolerance, gap, impedance, rule), _longest(line.path)))
     for pair in result.placement.pairs.values():
         modes = result.sized.pairs[pair.name]
         impedance = f"even {fixed(modes.even_impedance, 2)}, odd {fixed(modes.odd_impedance, 2)}"
-        cells = (pair.name, mm(pair.width), tolerance, mm(pair.gap), impedance, _HOLD)
+        cells = (pair.name, _width(pair.width), tolerance, _width(pair.gap), impedance, _HOLD)
         found.append((cells, _longest(pair.paths[0])))
     for radial in result.placement.radials.values():
-        size = f"radii {mm(radial.inner_radius)}, {mm(radial.outer_radius)}"
+        size = f"radii {_width(radial.inner_radius)}, {_width(radial.outer_radius)}"
         sector = f"sector of {fixed(radial.sector_deg, 2)} deg: do not change"
         found.append(((radial.name, size, tolerance, "", "", sector), radial.apex))
     return [Critical((str(number), *cells), at) for number, (cells, at) in enumerate(found, start=1)]
@@ -125,7 +125,12 @@ def _tolerance(file: CircuitFile) -> str:
     """Return the width tolerance that the response was examined with, or that none is stated."""
     if file.tolerance is None or not file.tolerance.width:
         return "not stated"
-    return f"+/-{mm(to_nm(file.tolerance.width))}"
+    return f"+/-{_width(to_nm(file.tolerance.width))}"
+
+
+def _width(nm: int) -> str:
+    """Return a width [mm] to a tenth of a micrometre."""
+    return fixed(nm / 1e6, 4)
 
 
 def _longest(path: tuple[Point, ...]) -> Point:

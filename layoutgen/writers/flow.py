@@ -61,7 +61,7 @@ class Flow:
         self, text: str, size: float = _SIZE, lead: str = "", bold: bool = False, pen: str = INK
     ) -> None:
         """Write a paragraph; ``lead`` stands before it, the text beside it."""
-        inset = text_width(f"{lead}  ", size) if lead else 0.0
+        inset = text_width(lead, size) + 0.6 * size if lead else 0.0
         lines = wrapped(text, self.right - self.left - inset, size, bold)
         self.need(size * _LEAD * min(len(lines), 3))
         for number, line in enumerate(lines):
@@ -108,7 +108,7 @@ class Flow:
             right = column in table.numbers
             at = x + width - table.pad if right else x + table.pad
             for number, line in enumerate(cell):
-                y = self.y - table.size * (0.45 + 0.85 + number * 1.3)
+                y = self.y - table.size * (0.3 + 0.85 + number * 1.3)
                 self.sheet.text(at, y, line, table.size, "right" if right else "left", bold)
             x += width
         self.y -= height
@@ -168,4 +168,4 @@ class _Table:
 
     def height(self, lines: list[list[str]]) -> float:
         """Return a row's height [mm]."""
-        return self.size * (0.9 + 1.3 * max(len(cell) for cell in lines))
+        return self.size * (0.65 + 1.3 * max(len(cell) for cell in lines))

@@ -15,7 +15,18 @@ from typing import Any, Literal
 import numpy as np
 import numpy.typing as npt
 
-__all__ = ["A4", "INK", "PAPER_SIZES", "Book", "Sheet", "document", "paper_for", "printable", "text_width"]
+__all__ = [
+    "A4",
+    "INK",
+    "PAPER_SIZES",
+    "Book",
+    "Sheet",
+    "circle_outline",
+    "document",
+    "paper_for",
+    "printable",
+    "text_width",
+]
 
 A4 = (297.0, 210.0)
 """Width and height of the usual sheet, on its side [mm]."""
@@ -29,6 +40,8 @@ SOFT = "#6b6252"
 _MM_PER_INCH, _POINTS_PER_MM = 25.4, 72.0 / 25.4
 _FONT = "DejaVu Sans"
 _STRIP = 14.0
+_EM = 100.0
+"""Size in which characters are measured [points]."""
 
 Polyline = Sequence[tuple[float, float]]
 Align = Literal["left", "center", "right"]
@@ -54,7 +67,7 @@ def document(kind: str, title: str, details: Sequence[str] = ()) -> Iterator[Boo
     import matplotlib as mpl
 
     defaults = {key: value for key, value in mpl.rcParamsDefault.items() if key != "backend"}
-    with mpl.rc_context({**defaults, "pdf.fonttype": 42}):
+    with mpl.rc_context({**defaults, "pdf.fonttype": 3}):
         yield Book(kind, title, details)
 
 
@@ -169,6 +182,19 @@ class Sheet:
         )
         self.figure.add_artist(patch)
 
+    def strokes(self, lines: Sequence[Polyline], weight: float = 0.18, pen: str = INK) -> None:
+        """Draw many lines at once."""
+        from matplotlib.patches import PathPatch
+        from matplotlib.path import Path
+
+        if not lines:
+            return
+        codes = [code for line in lines for code in (Path.MOVETO, *[Path.LINETO] * (len(line) - 1))]
+        path = Path(np.concatenate([np.asarray(line, dtype=float) for line in lines]), codes)
+        width = weight * _POINTS_PER_MM
+        patch = PathPatch(path, facecolor="none", edgecolor=pen, linewidth=width, transform=self._place)
+        self.figure.add_artist(patch)
+
     def box(
         self,
         x0: float,
@@ -192,10 +218,7 @@ class Sheet:
         weight: float = 0.18,
     ) -> None:
         """Draw a circle."""
-        angle = np.arange(48) * (2.0 * np.pi / 48)
-        self.area(
-            [np.column_stack([x + radius * np.cos(angle), y + radius * np.sin(angle)])], fill, pen, weight
-        )
+        self.area([circle_outline(x, y, radius)], fill, pen, weight)
 
     def text(
         self,
@@ -234,15 +257,27 @@ class Sheet:
         self.figure.add_artist(artist)
 
 
-@functools.lru_cache(maxsize=4096)
-def text_width(text: str, size: float, bold: bool = False) -> float:
-    """Return how wide a line of text is in a font of a size [mm]."""
-    from matplotlib.textpath import TextPath
+def circle_outline(x: float, y: float, radius: float) -> npt.NDArray[np.float64]:
+    """Return a circle's outline [mm], as many chords as keep within a fiftieth of a millimetre."""
+    share = min(1.0, 0.02 / max(radius, 1e-6))
+    count = max(8, int(np.ceil(np.pi / np.arccos(1.0 - share))))
+    angle = np.arange(count) * (2.0 * np.pi / count)
+    return np.column_stack([x + radius * np.cos(angle), y + radius * np.sin(angle)])
 
-    if not text.strip():
-        return 0.3 * size * len(text)
-    outline: Any = TextPath((0.0, 0.0), printable(text), size=size, prop=_font(bold), usetex=False)
-    return float(outline.vertices[:, 0].max())
+
+def text_width(text: str, size: float, bold: bool = False) -> float:
+    """Return how wide a line of text is in a font of a size [mm], kerning left out."""
+    return size * sum(_advance(c, bold) for c in printable(text))
+
+
+@functools.lru_cache(maxsize=4096)
+def _advance(character: str, bold: bool) -> float:
+    """Return how far a character moves the pen in a font of size one [-]."""
+    from matplotlib.font_manager import findfont, get_font
+
+    font: Any = get_font(findfont(_font(bold)))
+    font.set_size(_EM, 72)
+    return float(font.load_char(ord(character)).linearHoriAdvance) / 65536.0 / _EM
 
 
 @functools.lru_cache(maxsize=2)

@@ -83,8 +83,24 @@ def test_holes_are_those_of_the_placement_in_order(boards: ModuleType) -> None:
     placement = boards.stage().hole(3.0, 3.0, 2.7, plated=True).placement()
     holes = draw(placement).holes
     assert [(h.x, h.y, h.diameter, h.plated, h.net) for h in holes] == [
-        (h.x, h.y, h.diameter, h.plated, None) for h in placement.holes
+        (h.x, h.y, h.diameter, h.plated, "gnd" if h.plated else None) for h in placement.holes
     ]
+
+
+@pytest.mark.parametrize("ground", [{}, None])
+def test_plated_holes_have_lands_on_ground_free_of_mask(
+    boards: ModuleType, measures: ModuleType, ground: dict[str, str] | None
+) -> None:
+    """Would catch a plated hole without copper around it, cut off from ground, or under mask."""
+    board = boards.straight().hole(4.0, 3.5, 2.7, plated=True)
+    board.ground = ground
+    artwork = draw(board.placement())
+    land = shapely.Point(4_000_000, 3_500_000).buffer(1_350_000 + 395_000)
+    assert measures.ground(artwork).covers(land)
+    assert shapely.union_all([measures.polygon(s) for s in artwork.on("copper_bottom")]).covers(land)
+    opening = shapely.union_all(measures.areas(artwork, "opening", layer="soldermask_top"))
+    assert opening.covers(land)
+    assert all(math.dist((via.x, via.y), (4e6, 3.5e6)) > 1_750_000 + 300_000 for via in artwork.vias)
 
 
 def test_reference_names_ports_elements_and_each_net_once(boards: ModuleType) -> None:

@@ -23,6 +23,7 @@ from layoutgen.geometry import (
     overlap,
     pieces,
     rings_of,
+    sharpened,
 )
 
 COORDINATE = st.integers(-40_000_000, 40_000_000)
@@ -135,6 +136,40 @@ def test_offset_of_a_circle_is_a_circle_and_other_arcs_are_refused() -> None:
     assert offset_ring(Ring.circle(5, 7, 100), 30) == Ring.circle(5, 7, 130)
     with pytest.raises(ValueError, match="straight"):
         offset_ring(Ring(((0, 0), (10, 0), (10, 10)), (0.0, 0.5, 0.0)), 3)
+
+
+def test_edges_that_would_turn_over_are_dropped() -> None:
+    """Would catch hairline spikes where a chamfer in a notch is shorter than the offset."""
+    notch = [(0, 0), (1000, 0), (1000, 1000), (520, 1000), (520, 500), (519, 490), (501, 490), (500, 500)]
+    polygon = shapely.Polygon([*notch, (500, 1000), (0, 1000)]).difference(shapely.box(0, 0, 1, 1))
+    wide = shapely.Polygon(
+        [(0, 0), (9000, 0), (9000, 9000), (5000, 9000), (5000, 5000), (4995, 4990), (4500, 9000), (0, 9000)]
+    )
+    for shape, distance in ((polygon, 5), (wide, 40)):
+        for outline, holes in offset_rings(shape, distance):
+            grown = shapely.Polygon(outline.points, [hole.points for hole in holes])
+            assert grown.is_valid
+            assert grown.buffer(1).covers(shape)
+            assert grown.buffer(2).covers(shape.buffer(distance, quad_segs=1))
+            assert all(shape.distance(shapely.Point(p)) <= 1.5 * distance for p in outline.points)
+
+
+@pytest.mark.parametrize("points", [((0, 0), (10, 0), (20, 0), (5, 0)), ((0, 0), (100, 0), (100, 1), (0, 1))])
+def test_outlines_of_which_nothing_is_left_are_refused(points: tuple[tuple[int, int], ...]) -> None:
+    """Would catch a division by zero, or an endless search, on outlines without body."""
+    with pytest.raises(ValueError, match=r"sensible|folds"):
+        offset_ring(Ring(points), -5)
+
+
+def test_tiny_chamfers_are_made_corners() -> None:
+    """Would catch edges of a few nanometres that no maker can etch and no offset survives."""
+    chamfered = shapely.Polygon(
+        [(0, 0), (9000, 0), (9000, 4005), (8995, 4000), (5004, 4000), (5000, 4004), (5000, 9000), (0, 9000)]
+    )
+    outline, _ = rings_of(sharpened(chamfered, 50.0))
+    assert outline.points == ((0, 0), (9000, 0), (9000, 4000), (5000, 4000), (5000, 9000), (0, 9000))
+    large = shapely.Polygon([(0, 0), (9000, 0), (9000, 9000), (500, 9000), (0, 8500)])
+    assert sharpened(large, 50.0).equals(large)
 
 
 def test_a_polygon_too_fine_for_exact_offset_still_comes_out_valid() -> None:

@@ -131,9 +131,9 @@ def test_bends_of_two_angles_and_any_mitre():
     angle, u, er, mitre, wanted = columns("bend_angles", *keys)
     result = bend_excess(u, er, mitre, angle)
     off = np.abs(result.length_change - wanted)[result.in_range]
-    assert result.in_range.mean() > 0.85
-    assert np.max(off) < 0.04
-    assert np.max(off[angle[result.in_range] == 90.0]) < 0.02
+    assert result.in_range.mean() > 0.8
+    assert np.max(off) < 0.03
+    assert np.max(off[angle[result.in_range] == 90.0]) < 0.021
 
 
 def test_step_meets_the_table_in_either_order():

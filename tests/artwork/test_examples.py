@@ -1,0 +1,69 @@
+"""The shipped examples through the stages: the artwork of real circuits keeps what the hand-made boards keep."""
+
+from __future__ import annotations
+
+import math
+from pathlib import Path
+from types import ModuleType
+
+import pytest
+import shapely
+
+from layoutgen.artwork import Artwork, draw
+from layoutgen.circuit import build_circuit
+from layoutgen.placement import place
+from layoutgen.reading import read_inputs
+from layoutgen.sizing import size_circuit
+
+EXAMPLES = sorted((Path(__file__).parents[2] / "examples").glob("*.toml"))
+
+
+@pytest.fixture(scope="module", params=EXAMPLES, ids=lambda path: path.stem)
+def artwork(request: pytest.FixtureRequest) -> Artwork:
+    """The artwork of one example."""
+    inputs = read_inputs(request.param)
+    return draw(place(size_circuit(build_circuit(inputs.circuit, inputs.rules))))
+
+
+def test_pour_keeps_the_sized_gap_to_every_line(artwork: Artwork, measures: ModuleType) -> None:
+    """Would catch a pour drawn at another distance than the widths were computed for."""
+    pour = shapely.union_all(measures.areas(artwork, "pour"))
+    placement = artwork.placement
+    for name, line in placement.lines.items():
+        shapes = [s for s in artwork.on("copper_top") if s.origin.element == name and s.role == "line"]
+        copper = shapely.union_all([measures.polygon(s) for s in shapes])
+        gap = placement.sized.lines[name].pour_gap * 1e9
+        if line.nets[-1] == "gnd":
+            copper = copper.difference(shapely.Point(line.path[-1]).buffer(gap))
+        assert copper.distance(pour) >= gap - 0.01 - 1e3 * (line.nets[-1] == "gnd")
+
+
+def test_measured_gaps_are_what_was_sized_or_more(artwork: Artwork) -> None:
+    """Would catch gaps in the report that the drawing does not have."""
+    for name, measured in artwork.line_copper.items():
+        wished = artwork.placement.sized.lines[name].pour_gap * 1e9
+        for gap in (measured.gap_left, measured.gap_right):
+            assert gap is None or not math.isfinite(wished) or gap >= wished - 1.0
+
+
+def test_ground_can_be_etched(artwork: Artwork, measures: ModuleType) -> None:
+    """Would catch slivers, slits and sharp notches where pour, pads and vias of real parts meet."""
+    ground = measures.ground(artwork)
+    assert measures.too_thin(ground, 124_000).is_empty
+    placement = artwork.placement
+    void = shapely.box(0, 0, placement.width, placement.height).difference(ground).buffer(1)
+    assert measures.too_thin(void, 124_000).is_empty
+    assert [at for angle, at in measures.corners(ground, 20.0) if angle < 84.9] == []
+
+
+def test_every_line_is_drawn_whole(artwork: Artwork) -> None:
+    """Would catch a line cut in two by a cut-out, or lost."""
+    for name in artwork.placement.lines:
+        drawn = [s for s in artwork.on("copper_top") if s.origin.element == name and s.role == "line"]
+        assert len(drawn) == 1
+
+
+def test_everything_is_named(artwork: Artwork) -> None:
+    """Would catch a part that nobody can find on the board."""
+    printed = {shape.origin.element for shape in artwork.on("legend_top")}
+    assert {*artwork.placement.parts, *artwork.placement.ports, "board"} <= printed
