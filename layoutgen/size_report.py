@@ -11,7 +11,16 @@ from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
 from layoutgen.numbers import fixed, json_text, mm
-from layoutgen.sizing import BudgetEntry, SizedCircuit, SizedLine, SizedPair, SizedRadial, default_budgets
+from layoutgen.sizing import (
+    BudgetEntry,
+    SizedCircuit,
+    SizedLine,
+    SizedPair,
+    SizedRadial,
+    default_arms,
+    default_budgets,
+    junction_flags,
+)
 from layoutgen.units import to_nm
 
 __all__ = ["SizeTable", "size_json", "size_tables"]
@@ -30,13 +39,19 @@ class SizeTable:
 
 
 def size_tables(sized: SizedCircuit) -> list[SizeTable]:
-    """Return the tables of lines, pairs, radial stubs and length budgets; empty ones are left out.
+    """Return the tables of lines, pairs, radial stubs, length budgets and flags; empty ones are left out.
 
     Raises:
         WrongInputError: Lines whose corrections leave no length.
     """
     budgets = default_budgets(sized)
-    tables = [_lines(sized, budgets), _pairs(sized, budgets), _radials(sized), _budgets(sized, budgets)]
+    tables = [
+        _lines(sized, budgets),
+        _pairs(sized, budgets),
+        _radials(sized),
+        _budgets(sized, budgets),
+        _flags(sized),
+    ]
     return [table for table in tables if table.rows]
 
 
@@ -64,7 +79,8 @@ def size_json(sized: SizedCircuit) -> str:
 
 def _lines(sized: SizedCircuit, budgets: Budgets) -> SizeTable:
     heads = (
-        "line", "nets", "ohm", "width mm", "deg", "length mm", "pour gap mm", "permittivity", "current A",
+        "line", "nets", "asked", "ohm", "spread %", "width mm", "deg", "length mm", "pour gap mm",
+        "permittivity", "loss dB", "current A", "rise K",
     )  # fmt: skip
     rows = tuple(_line_row(line, *budgets[line.name]) for line in sized.lines.values())
     return SizeTable("Lines", heads, rows)
@@ -75,14 +91,38 @@ def _line_row(line: SizedLine, length: float, entries: Sequence[BudgetEntry]) ->
     return (
         line.name,
         ",".join(line.nets),
+        _asked(line),
         fixed(line.impedance, 2),
+        fixed(100.0 * line.spread, 2),
         _mm(line.width),
         "free" if line.free else fixed(math.degrees(angle), 2),
         "free" if line.free else _mm(length),
         _mm(line.pour_gap),
         fixed(line.effective_permittivity, 4),
+        "free" if line.free else fixed(line.loss * length, 4),
         fixed(abs(line.current), 4),
+        fixed(line.temperature_rise, 1),
     )
+
+
+def _asked(line: SizedLine) -> str:
+    """Return what the circuit file asked of a line: impedance and angle or length, as far as given."""
+    cross = f"{line.asked_impedance:g} ohm" if line.asked_impedance is not None else "width"
+    if line.free:
+        return f"{cross}, free"
+    if line.length is not None:
+        return f"{cross}, {_mm(line.length)} mm"
+    return f"{cross}, {math.degrees(line.angle or 0.0):g} deg"
+
+
+def _flags(sized: SizedCircuit) -> SizeTable:
+    """Return every formula that is used outside its range, by line or junction."""
+    rows = [(line.name, flag) for line in sized.lines.values() for flag in line.flags]
+    rows += [(pair.name, flag) for pair in sized.pairs.values() for flag in pair.flags]
+    rows += [(stub.name, flag) for stub in sized.radials.values() for flag in stub.flags]
+    for net in sized.circuit.nets.values():
+        rows += [(net.name, flag) for flag in junction_flags(sized, net.name, default_arms(sized, net.name))]
+    return SizeTable("Outside a formula's range", ("where", "formula, found (holds for)"), tuple(rows))
 
 
 def _pairs(sized: SizedCircuit, budgets: Budgets) -> SizeTable:
@@ -133,6 +173,11 @@ def _line_entry(line: SizedLine, budget: tuple[float, Sequence[BudgetEntry]]) ->
         "effective_permittivity": fixed(line.effective_permittivity),
         "centre_line_mm": None if line.free else mm(to_nm(length)),
         "current_a": fixed(abs(line.current)),
+        "asked": _asked(line),
+        "loss_db": None if line.free else fixed(line.loss * length),
+        "temperature_rise_k": fixed(line.temperature_rise),
+        "model_spread": fixed(line.spread),
+        "flags": list(line.flags),
         "budget": _entries(entries),
     }
 

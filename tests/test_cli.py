@@ -221,12 +221,14 @@ def test_size_prints_tables_and_json(circuit: Path, capsys: pytest.CaptureFixtur
     printed = capsys.readouterr()
     first = printed.out.splitlines()
     assert first[0].split()[:2] == ["line", "nets"]
-    assert first[1].split()[:3] == ["section", "a,b", "50.00"]
+    assert first[1].split()[:7] == ["section", "a,b", "50", "ohm,", "90", "deg", "50.00"]
     assert "deg" in printed.out
     assert "cause" in printed.out
     assert status_of(["size", str(circuit), "--json"]) == 0
     line = json.loads(capsys.readouterr().out)["lines"][0]
     assert line["width_mm"] == pytest.approx(1.1, abs=0.1)
+    assert 0.0 < line["loss_db"] < 0.2
+    assert abs(line["model_spread"]) < 0.01
     assert sum(entry["angle_deg"] for entry in line["budget"]) == pytest.approx(90.0, abs=1e-5)
     assert [p.name for p in circuit.parent.iterdir()] == ["circuit.toml"]
 

@@ -31,9 +31,10 @@ LAYERS: Mapping[str, tuple[int, int]] = {
 class Shape:
     """One piece on one layer: outline and holes [nm], its net (None: no copper, or none), what it is.
 
-    ``role`` is one of line, pair, radial, pad, strip, land (round copper of a via), ground (copper between
-    a ground pad and its vias), pour, plane, opening, paste, legend, profile, cutout. Shapes of one net may
-    overlap; together they are the copper. Outlines run counter-clockwise, holes clockwise.
+    ``role`` is one of line, pair, radial, pad, strip, land (round copper of a via or a plated hole), ground
+    (copper between a ground pad and its vias), pour, plane, opening, paste, legend, profile, cutout. Shapes
+    of one net may overlap; together they are the copper. A line's shape carries the first of its nets that is
+    not gnd. Outlines run counter-clockwise, holes clockwise.
     ``undercut`` has already been added to outlines of copper (they are the artwork, not the finished copper).
     """
 
@@ -60,7 +61,7 @@ class Via:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Hole:
-    """A drilled hole that is no via: middle, diameter [nm], plated or not, net (None mostly)."""
+    """A drilled hole that is no via: middle, diameter [nm], plated or not, net (gnd when plated)."""
 
     x: int
     y: int

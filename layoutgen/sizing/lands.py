@@ -5,8 +5,6 @@ from __future__ import annotations
 import math
 from collections.abc import Iterable
 
-from layoutgen.circuit import GROUND
-from layoutgen.origin import Fault
 from layoutgen.reading import CircuitFile, Footprint, Pad, Part, RuleFile
 from layoutgen.sizing.chips import (
     BODIES,
@@ -19,7 +17,7 @@ from layoutgen.sizing.chips import (
 )
 from layoutgen.sizing.records import Land, Lands
 
-__all__ = ["chip_notes", "land_faults", "part_lands"]
+__all__ = ["chip_notes", "part_lands"]
 
 Box = tuple[float, float, float, float]
 
@@ -107,33 +105,11 @@ def _land(pin: str, pad: Pad, net: str) -> Land:
 
 
 def _pad_nets(part: Part, footprint: Footprint) -> dict[str, str]:
-    """Return pin -> net: of a part with pins as written, of one with two nets in the order of the nets.
-
-    The two pads take the nets in file order, but a ground pad takes ``gnd`` wherever it stands.
-    """
+    """Return pin -> net: of a part with pins as written, of one with two nets in the pads' file order."""
     if part.pins is not None:
         return dict(part.pins)
     assert part.nets is not None
-    pads = list(footprint.pads)
-    if footprint.pads[pads[part.nets[0] == GROUND]].ground is not None and GROUND in part.nets:
-        pads.reverse()
-    return dict(zip(pads, part.nets, strict=True))
-
-
-def land_faults(file: CircuitFile) -> list[Fault]:
-    """Return a fault for each part of two nets whose footprint's ground pads do not fit them."""
-    faults = []
-    for name, part in file.parts.items():
-        footprint = file.footprints.get(part.footprint or "")
-        if footprint is None or part.nets is None:
-            continue
-        grounds = sum(pad.ground is not None for pad in footprint.pads.values())
-        if grounds > part.nets.count(GROUND):
-            key = f"parts.{name}.footprint"
-            nets = ", ".join(part.nets)
-            found = f'"{part.footprint}" with ground pads ({grounds}) on nets {nets}'
-            faults.append(Fault(file.location(key), key, found, "a ground pad only for the net gnd"))
-    return faults
+    return dict(zip(footprint.pads, part.nets, strict=True))
 
 
 def chip_notes(file: CircuitFile, rules: RuleFile) -> list[str]:

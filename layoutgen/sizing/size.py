@@ -9,7 +9,7 @@ from layoutgen.circuit import Circuit, solve_dc, with_dc
 from layoutgen.errors import WrongInputError
 from layoutgen.origin import Fault
 from layoutgen.sizing.kinds import radial_names
-from layoutgen.sizing.lands import chip_notes, land_faults, part_lands
+from layoutgen.sizing.lands import chip_notes, part_lands
 from layoutgen.sizing.lines import line_faults, rf_widths, sized_lines
 from layoutgen.sizing.pairs import pair_fault, pair_sizes, sized_pair
 from layoutgen.sizing.pours import pour_distances
@@ -44,7 +44,7 @@ def size_circuit(
     widths = rf_widths(file, stackup, pours.gaps)
     pairs = pair_sizes(file, stackup, pours.gaps)
     found = [pair_fault(file, stackup, name, pours.gaps[name], size) for name, size in pairs.items()]
-    _raise_any([*land_faults(file), *line_faults(file, stackup, pours.gaps, widths), *found])
+    _raise_any([*line_faults(file, stackup, pours.gaps, widths), *found])
     widths |= {name: size[0] for name, size in pairs.items()}
     circuit, widths = with_supplies(circuit, stackup, pours.gaps, widths)
     _raise_any([radial_fault(circuit, stackup, name, widths) for name in radial_names(file)])

@@ -14,6 +14,7 @@ from layoutgen.geometry import Point
 from layoutgen.numbers import fixed, mm_short
 from layoutgen.reading import CircuitFile
 from layoutgen.units import quantity_text, to_nm
+from layoutgen.writers.plain import many
 from layoutgen.writers.records import Result
 from layoutgen.writers.xnc import hits_of
 
@@ -142,6 +143,8 @@ def _longest(path: tuple[Point, ...]) -> Point:
 def notes(result: Result) -> Iterator[str]:
     """Yield what is to be made, and what must not be touched."""
     file, rules = result.circuit.file, result.circuit.rules
+    if result.count("error"):
+        yield f"NOT TO BE MADE: {many(result.count('error'), 'finding')} of severity error; see the report."
     copper, source = rules.copper, f" (source: {rules.source})" if rules.source else ""
     yield (
         f"Drawn for the rule file “{rules.name}”{source}: copper at least {_mm_or(copper.min_width)} wide, "

@@ -6,13 +6,15 @@ import html
 import re
 from collections.abc import Iterable, Sequence
 
-__all__ = ["Cell", "cell", "escape", "items", "section", "table"]
+__all__ = ["Cell", "cell", "escape", "items", "section", "table", "zoom_link"]
 
 Cell = str
 """A table cell's HTML, escaped already."""
 
 _LONG = 40
 """Characters from which on a column's text may break [-]."""
+
+_LINK = re.compile(r"</?a\b[^>]*>")
 
 _NUMBERS = re.compile(r"([−-]?\d|–, )[\d.,−– ]*(\s?[A-Za-zΩ/%^]+\d?)?(<br>.*|\s<small>.*)?")
 """A cell of numbers: digits with a unit at most, then perhaps a line or a word about them."""
@@ -26,6 +28,11 @@ def escape(text: object) -> str:
 def cell(value: object) -> Cell:
     """Return a value as a cell; None is a dash."""
     return "–" if value is None or value == "" else escape(value)
+
+
+def zoom_link(key: str, text: object) -> Cell:
+    """Return a text that leads to the board and, where scripts run, shows the item with that key there."""
+    return f'<a href="#board" data-zoom="{escape(key)}">{escape(text)}</a>'
 
 
 def table(caption: str, heads: Sequence[str], rows: Iterable[Sequence[Cell]], ids: Sequence[str] = ()) -> str:
@@ -51,7 +58,7 @@ def table(caption: str, heads: Sequence[str], rows: Iterable[Sequence[Cell]], id
 
 def _kind(column: Sequence[Cell]) -> str:
     """Return the class attribute of a column: numbers stand to the right, long text may break."""
-    filled = [content for content in column if content not in ("", "–")]
+    filled = [_LINK.sub("", content) for content in column if content not in ("", "–")]
     if any(len(content) > _LONG for content in filled):
         return ' class="t"'
     return ' class="n"' if filled and all(map(_NUMBERS.fullmatch, filled)) else ""

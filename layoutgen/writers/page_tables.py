@@ -11,12 +11,23 @@ from layoutgen.placement import PlacedLine, PlacedPair, PlacedRadial
 from layoutgen.reading import Part, Port
 from layoutgen.sizing import BudgetEntry
 from layoutgen.units import quantity_text
-from layoutgen.writers.html import Cell, cell, escape, table
+from layoutgen.writers.html import Cell, cell, escape, table, zoom_link
 from layoutgen.writers.records import Result
 
-__all__ = ["bias_tables", "line_tables", "part_table", "port_table", "strip_table"]
+__all__ = [
+    "CAUSES",
+    "bias_tables",
+    "gaps_text",
+    "line_tables",
+    "mm_text",
+    "part_table",
+    "port_table",
+    "port_value",
+    "strip_table",
+    "value_text",
+]
 
-_CAUSES = {
+CAUSES = {
     "line": "line",
     "bend": "bends",
     "step": "steps",
@@ -28,6 +39,7 @@ _CAUSES = {
     "port": "port",
     "response_correction": "correction",
 }
+"""What the causes of budget entries are called."""
 _VALUE_DIMENSIONS = {"resistor": "resistance", "capacitor": "capacitance", "inductor": "inductance"}
 
 
@@ -65,14 +77,14 @@ def _line_row(result: Result, line: PlacedLine) -> list[Cell]:
     if asked is not None and abs(asked - sized.impedance) >= 0.005:
         impedance += f"<br><small>asked {fixed(asked, 2)}</small>"
     return [
-        escape(line.name),
+        zoom_link(f"line:{line.name}", line.name),
         _path_of_nets((*line.nets, "open")[:2]),
         impedance,
-        _mm(line.width),
+        mm_text(line.width),
         fixed(math.degrees(line.angle), 2) + (" <small>free</small>" if sized.free else ""),
-        _mm(line.centre_line),
+        mm_text(line.centre_line),
         str(len(line.bends)),
-        _gaps(result.artwork.line_copper.get(line.name)),
+        gaps_text(result.artwork.line_copper.get(line.name)),
         fixed(sized.effective_permittivity, 4),
         fixed(abs(sized.current), 3),
         fixed(sized.loss * line.centre_line * 1e-9, 4),
@@ -82,34 +94,40 @@ def _line_row(result: Result, line: PlacedLine) -> list[Cell]:
 def _pair_row(result: Result, pair: PlacedPair) -> list[Cell]:
     sized = result.sized.pairs[pair.name]
     return [
-        escape(pair.name),
+        zoom_link(f"pair:{pair.name}", pair.name),
         escape(", ".join(pair.nets)),
         f"{fixed(sized.even_impedance, 2)}, {fixed(sized.odd_impedance, 2)}",
-        _mm(pair.width),
-        _mm(pair.gap),
+        mm_text(pair.width),
+        mm_text(pair.gap),
         fixed(math.degrees(pair.angle), 2),
-        _mm(pair.centre_line),
+        mm_text(pair.centre_line),
         f"{fixed(sized.permittivity_even, 4)}, {fixed(sized.permittivity_odd, 4)}",
         ", ".join(fixed(abs(current), 3) for current in sized.currents),
     ]
 
 
 def _radial_row(radial: PlacedRadial) -> list[Cell]:
-    radii = _mm(radial.inner_radius), _mm(radial.outer_radius)
-    return [escape(radial.name), escape(radial.nets[0]), fixed(radial.sector_deg, 2), *radii]
+    name = zoom_link(f"radial:{radial.name}", radial.name)
+    radii = mm_text(radial.inner_radius), mm_text(radial.outer_radius)
+    return [name, escape(radial.nets[0]), fixed(radial.sector_deg, 2), *radii]
 
 
 def _budgets(lines: Sequence[PlacedLine | PlacedPair]) -> str:
     """Return the budgets, one column for each cause that occurs."""
-    causes = [c for c in _CAUSES if any(entry.cause == c for line in lines for entry in line.budget)]
+    causes = [c for c in CAUSES if any(entry.cause == c for line in lines for entry in line.budget)]
     rows = (
-        [escape(line.name), fixed(math.degrees(line.angle), 3)]
+        [_line_link(line), fixed(math.degrees(line.angle), 3)]
         + [_entries([e for e in line.budget if e.cause == cause]) for cause in causes]
         + [fixed(math.degrees(math.fsum(e.angle for e in line.budget)), 3)]
         for line in lines
     )
-    heads = ["Line", "Angle (deg)", *(_CAUSES[cause] for cause in causes), "Sum (deg)"]
+    heads = ["Line", "Angle (deg)", *(CAUSES[cause] for cause in causes), "Sum (deg)"]
     return table("Length budgets in degrees", heads, rows)
+
+
+def _line_link(line: PlacedLine | PlacedPair) -> Cell:
+    kind = "line" if isinstance(line, PlacedLine) else "pair"
+    return zoom_link(f"{kind}:{line.name}", line.name)
 
 
 def _entries(entries: Sequence[BudgetEntry]) -> Cell:
@@ -131,7 +149,14 @@ def strip_table(result: Result) -> str:
     if not strips:
         return ""
     rows = (
-        (escape(s.name), escape(s.net), _mm(s.width), _path(s.path), fixed(abs(s.current), 3)) for s in strips
+        (
+            zoom_link(f"strip:{s.origin.element}:{s.net}", s.name),
+            escape(s.net),
+            mm_text(s.width),
+            _path(s.path),
+            fixed(abs(s.current), 3),
+        )
+        for s in strips
     )
     heads = ("Strip", "Net", "Width (mm)", "Path (mm)", "Current (A)")
     return "<h3>Strips</h3><p>Copper between pads that the circuit has no line for.</p>" + table(
@@ -144,13 +169,13 @@ def part_table(result: Result) -> str:
     given = result.circuit.file.parts
     rows = (
         (
-            escape(part.name),
+            zoom_link(f"part:{part.name}", part.name),
             escape(given[part.name].kind),
-            _value(given[part.name]),
+            cell(value_text(given[part.name])),
             cell(given[part.name].case or given[part.name].footprint),
             _nets(given[part.name]),
-            _mm(part.x),
-            _mm(part.y),
+            mm_text(part.x),
+            mm_text(part.y),
             fixed(part.heading % 360.0, 1),
         )
         for part in result.placement.parts.values()
@@ -159,11 +184,12 @@ def part_table(result: Result) -> str:
     return table("Parts: place between the pads, or of the footprint's origin", heads, rows)
 
 
-def _value(part: Part) -> Cell:
+def value_text(part: Part) -> str | None:
+    """Return a part's value with its unit, or the file that stands for it."""
     dimension = _VALUE_DIMENSIONS.get(part.kind)
     if part.value is None or dimension is None:
-        return cell(part.data)
-    return escape(quantity_text(part.value, dimension))  # type: ignore[arg-type]
+        return part.data
+    return quantity_text(part.value, dimension)  # type: ignore[arg-type]
 
 
 def _nets(part: Part) -> Cell:
@@ -177,12 +203,12 @@ def port_table(result: Result) -> str:
     given = result.circuit.file.ports
     rows = (
         (
-            escape(port.name),
+            zoom_link(f"port:{port.name}", port.name),
             given[port.name].kind,
             escape(port.net),
-            _port_value(given[port.name]),
-            _mm(port.x),
-            _mm(port.y),
+            cell(port_value(given[port.name])),
+            mm_text(port.x),
+            mm_text(port.y),
             fixed(port.heading % 360.0, 1),
         )
         for port in result.placement.ports.values()
@@ -191,13 +217,11 @@ def port_table(result: Result) -> str:
     return table("Ports: the end of their copper; the heading points into the board", heads, rows)
 
 
-def _port_value(port: Port) -> Cell:
-    text = None
+def port_value(port: Port) -> str | None:
+    """Return a port's voltage or impedance, None when it has neither."""
     if port.voltage is not None:
-        text = quantity_text(port.voltage, "voltage").replace("-", "−")
-    elif port.impedance is not None:
-        text = quantity_text(port.impedance, "impedance")
-    return cell(text)
+        return quantity_text(port.voltage, "voltage").replace("-", "−")
+    return None if port.impedance is None else quantity_text(port.impedance, "impedance")
 
 
 def bias_tables(result: Result) -> Iterator[str]:
@@ -220,15 +244,17 @@ def _path_of_nets(nets: Sequence[str]) -> Cell:
     return escape("\u00a0– ".join(nets))
 
 
-def _gaps(copper: LineCopper | None) -> Cell:
+def gaps_text(copper: LineCopper | None) -> str:
+    """Return how far the pour is from a line, left and right [mm]; a dash where it is out of reach."""
     if copper is None or (copper.gap_left is None and copper.gap_right is None):
-        return cell(None)
-    return ", ".join("–" if gap is None else _mm(gap) for gap in (copper.gap_left, copper.gap_right))
+        return "–"
+    return ", ".join("–" if gap is None else mm_text(gap) for gap in (copper.gap_left, copper.gap_right))
 
 
-def _mm(nm: float) -> str:
+def mm_text(nm: float) -> str:
+    """Return a length [nm] as millimetres with three decimals and a true minus."""
     return fixed(nm / 1e6, 3).replace("-", "−")
 
 
 def _path(points: Sequence[tuple[int, int]]) -> Cell:
-    return escape(" → ".join(f"({_mm(x)}, {_mm(y)})" for x, y in points))
+    return escape(" → ".join(f"({mm_text(x)}, {mm_text(y)})" for x, y in points))

@@ -1,7 +1,7 @@
 """What each piece of copper is, for the designer who takes it over: net, size, and what may be touched.
 
-A width that the circuit file gives is to be kept; one that follows from an impedance may be adjusted by whoever
-has a better model of the stackup, as long as the impedance stays.
+A width that the circuit file gives is to be kept; one that follows from an impedance may be adjusted by
+whoever has a better model of the stackup, as long as the impedance stays.
 """
 
 from __future__ import annotations
@@ -15,7 +15,8 @@ from layoutgen.writers.records import Job, Result
 __all__ = ["SHAPE_HEADS", "shape_rows", "write_shape_table"]
 
 SHAPE_HEADS = (
-    "Shape", "Kind", "Layer", "Net", "Conductor", "Width (mm)", "Gap (mm)", "Impedance (ohm)", "May be changed"
+    "Shape", "Kind", "Layer", "Net", "Conductor", "Width (mm)", "Gap (mm)", "Impedance (ohm)",
+    "May be changed",
 )  # fmt: skip
 """Headings of :func:`shape_rows`."""
 
