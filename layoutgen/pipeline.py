@@ -113,7 +113,7 @@ def _settled(circuit: Circuit, clock: _Clock, fit: Fit | None) -> tuple[Artwork,
                 return _uncorrected(circuit, clock, f"no placement with corrected lengths ({error})")
             choices = placement.choices
         with clock("artwork"):
-            artwork = draw(placement)
+            artwork = draw(placement, draft=True)
         with clock("sizing"):
             again = size_circuit(circuit, measured_gaps(artwork))
         if fit is not None:
@@ -127,6 +127,10 @@ def _settled(circuit: Circuit, clock: _Clock, fit: Fit | None) -> tuple[Artwork,
     if found.now > found.uncorrected:
         text = f"corrected lengths gave a difference of {found.now:.4f} instead of {found.uncorrected:.4f}"
         return _uncorrected(circuit, clock, text)
+    with clock("artwork"):
+        artwork = draw(placement)
+    with clock("sizing"):  # a piece of pour that holds no vias is dropped from the final drawing only
+        moved = largest_move(sized, size_circuit(circuit, measured_gaps(artwork)))
     return artwork, (*_unsettled_widths(moved), *_unsettled_lengths(found))
 
 

@@ -22,6 +22,8 @@ ORDER: tuple[tuple[str, ...], ...] = (
     ("placement",),
     ("artwork",),
     ("checks", "response"),
+    ("foreign",),
+    ("compare",),
     ("writers",),
     ("size_report", "pipeline", "terminal"),
     ("cli",),

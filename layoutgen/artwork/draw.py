@@ -25,12 +25,17 @@ from layoutgen.placement import Placement
 __all__ = ["draw"]
 
 
-def draw(placement: Placement) -> Artwork:
+def draw(placement: Placement, *, draft: bool = False) -> Artwork:
     """Return the artwork of a placed board: copper, vias, mask, paste, legend, profile, names.
 
     The signal copper is drawn as placed, cut back only at cut-outs and the profile; the ground pour, its vias
     and all that is printed follow from it and from the rule file. The same placement gives the same artwork,
     shape by shape.
+
+    Args:
+        placement: The placed board.
+        draft: Stop when the pour is drawn, without its vias and without what is printed: for looking at what
+            the pour does to the lines before the drawing is final.
     """
     limits = limits_of(placement.sized)
     conductors = conductors_of(placement, limits)
@@ -40,6 +45,8 @@ def draw(placement: Placement) -> Artwork:
     bare += [ring for ring, _ in hole_lands(placement, limits)]
     area = legal_area(placement, limits, pour, conductors, bare)
     pour = stitchable(pour, area, limits, placement)
+    if draft:
+        return _draft(placement, limits, conductors, pour)
     drills = Drills(area, limits, [(via.x, via.y, via.drill) for via in placement.vias])
     sides = fence(pour, conductors, limits, drills)
     count = len(drills.added)
@@ -73,6 +80,21 @@ def draw(placement: Placement) -> Artwork:
         line_copper=measured_gaps(placement, limits, pour),
         title_anchor=legend.title_anchor,
         notes=(*_cutout_notes(placement, limits, conductors), *legend.notes),
+    )
+
+
+def _draft(
+    placement: Placement, limits: Limits, conductors: Sequence[Conductor], pour: Sequence[shapely.Polygon]
+) -> Artwork:
+    """Return the copper and the pour alone, with the pour's distances."""
+    return Artwork(
+        placement=placement,
+        shapes=(*copper_shapes(conductors), *_pour_shapes(limits, pour)),
+        vias=tuple(_placed_vias(placement)),
+        holes=holes_of(placement),
+        labels=(),
+        line_copper=measured_gaps(placement, limits, pour),
+        title_anchor=(0, 0),
     )
 
 

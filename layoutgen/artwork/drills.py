@@ -65,6 +65,7 @@ class Drills:
         shapely.prepare(area)
         self._limits = limits
         self._drill = limits.via_drill
+        self.least_inset = math.ceil(limits.via_land / 2) + 2 * _ROUNDING_NM
         placed = tuple(placed)
         most = max((drill for _, _, drill in placed), default=0)
         self._square = max(limits.via_pitch, math.ceil((most + self._drill) / 2) + limits.hole_web, 1)

@@ -25,12 +25,12 @@ from layoutgen.geometry import Point, lettering, lettering_size, pieces, printab
 from layoutgen.origin import Origin
 from layoutgen.placement import PlacedPart, PlacedPort, Placement
 
-__all__ = ["Legend", "draw_legend"]
+__all__ = ["NO_LEGEND", "Legend", "draw_legend"]
 
 _LEAST_UNITS = 6.0
 """Height of a capital over the pen [-] below which letters run together."""
 _NAME_HEIGHTS = (1_000_000, 850_000, 720_000)
-_TITLE_HEIGHTS = (1_500_000, 1_250_000, 1_000_000, 850_000, 720_000)
+_TITLE_HEIGHTS = ((1_500_000, 1_250_000, 1_000_000), (850_000, 720_000))
 _NEAR_NM = (0, 150_000, 300_000, 500_000, 750_000, 1_000_000)
 _FAR_NM = (1_300_000, 1_600_000, 2_000_000, 2_400_000, 2_900_000, 3_500_000)
 _PART_TRIES = ((True, _NEAR_NM), (False, _NEAR_NM), (True, _FAR_NM), (False, _FAR_NM))
@@ -162,8 +162,8 @@ class _Printer:
         revision = "" if design.revision is None else f"rev {design.revision}"
         title = printable(design.title)
         wordings = list(_wrapped(title, printable(revision)))
-        for tidy, height in itertools.product((True, False), self._heights(_TITLE_HEIGHTS)):
-            for lines in wordings:
+        for tidy, heights in itertools.product((True, False), _TITLE_HEIGHTS):
+            for lines, height in itertools.product(wordings, self._heights(heights)):
                 anchor = self._print_block(lines, height, tidy)
                 if anchor is not None:
                     return anchor
@@ -296,7 +296,8 @@ def _wrapped(title: str, revision: str) -> Iterator[list[str]]:
         yield [f"{title}  {revision}"]
     for count in range(1, _TITLE_LINES + 1):
         widths = range(-(-len(title) // count), len(title) + 1)
-        lines = next((w for width in widths if len(w := textwrap.wrap(title, width)) <= count), [])
+        wrapped = (textwrap.wrap(title, width, break_long_words=False) for width in widths)
+        lines = next((found for found in wrapped if len(found) <= count), [])
         if len(lines) == count:
             yield [*lines, revision] if revision else lines
 

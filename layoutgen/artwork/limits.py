@@ -97,7 +97,7 @@ def limits_of(sized: SizedCircuit) -> Limits:
         via_drill=drill,
         via_land=land,
         via_pitch=pitch,
-        row=max(min_width, min(land // 2 + _ROOM_NM, max(reach, land // 2 + 1))),
+        row=max(min_width, min(land // 2 + _ROOM_NM, max(math.floor(reach / math.sqrt(2.0)), land // 2 + 1))),
         fence_reach=reach,
         fence_pitch=max(pitch, _fence_pitch(sized, slab)),
         stitch_pitch=max(pitch, min(to_nm(_STITCH_WAVELENGTHS * slab), _STITCH_MOST_NM)),

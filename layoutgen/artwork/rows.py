@@ -26,6 +26,7 @@ _SAMPLE_NM = 100_000
 _STEP_NM = 50_000
 _ROUNDING_NM = 2.0
 _CORNER_DEG = 40.0
+_ASIDE = 0.05
 
 Floats = NDArray[np.float64]
 Bools = NDArray[np.bool_]
@@ -48,6 +49,13 @@ class Side:
         """Length [nm]."""
         return float(self.along[-1])
 
+    def spots(self, t: float, drills: Drills) -> tuple[tuple[float, float], tuple[float, float]]:
+        """Return where a via may be tried at an arc length [nm]: in the row, and nearest to the edge."""
+        x, y = self.at(t)
+        nx, ny = self.outward[min(int(np.searchsorted(self.along, t)), len(self.along) - 1)].tolist()
+        shift = max(0, self.inset - drills.least_inset)
+        return (x, y), (x + nx * shift, y + ny * shift)
+
     def at(self, t: float) -> tuple[float, float]:
         """Return the point at an arc length [nm]."""
         return (
@@ -58,16 +66,11 @@ class Side:
 
 @dataclass(frozen=True, slots=True)
 class Facing:
-    """What rows are asked for: targets to be faced, within which distance of the edge, and the pitch [nm].
-
-    ``widened`` is how far the pour's edge may reach beyond the faced stretch for the row to go with it to
-    the corner.
-    """
+    """What rows are asked for: targets to be faced, within which distance of the edge, and the pitch [nm]."""
 
     targets: Sequence[BaseGeometry]
     distance: int
     pitch: int
-    widened: int
 
 
 def sides_of(pour: Iterable[shapely.Polygon], inset: int) -> list[Side]:
@@ -122,7 +125,7 @@ def set_rows(sides: Sequence[Side], facing: Facing, drills: Drills, reach: int) 
     stretches = [
         (side, a, b)
         for side, faced in zip(sides, _faced(sides, facing), strict=True)
-        for a, b in _stretches(side, faced, facing.widened)
+        for a, b in _stretches(side, faced)
     ]
     for side, a, b in stretches:
         for t in (a, b):
@@ -133,43 +136,44 @@ def set_rows(sides: Sequence[Side], facing: Facing, drills: Drills, reach: int) 
 
 
 def _faced(sides: Sequence[Side], facing: Facing) -> list[Bools]:
-    """Return for each side which of its points see a target through the pour's edge."""
+    """Return for each side at which of its points the pour's edge looks at a target within reach.
+
+    It does when the nearest place of a target lies on the outer side of the edge, not across the pour.
+    """
     if not sides or not facing.targets:
         return [np.zeros(len(side.points), dtype=bool) for side in sides]
-    starts = np.vstack([side.points for side in sides])
-    outward = np.vstack([side.outward * (side.inset + facing.distance) for side in sides])
-    rays = shapely.linestrings(np.stack([starts, starts + outward], axis=1))
-    tree = shapely.STRtree(list(facing.targets))
-    seen = np.zeros(len(starts), dtype=bool)
-    seen[tree.query(rays, predicate="intersects")[0]] = True
+    outward = np.vstack([side.outward for side in sides])
+    edge = np.vstack([side.points + side.outward * side.inset for side in sides])
+    targets = np.asarray(facing.targets, dtype=object)
+    spots = shapely.points(edge)
+    spot, target = shapely.STRtree(targets).query(spots, predicate="dwithin", distance=facing.distance)
+    way = shapely.get_coordinates(shapely.shortest_line(np.asarray(spots)[spot], targets[target]))
+    ahead = way[1::2] - way[::2]
+    seen = np.zeros(len(edge), dtype=bool)
+    looks = np.sum(ahead * outward[spot], axis=1) > _ASIDE * np.hypot(ahead[:, 0], ahead[:, 1])
+    seen[spot[looks]] = True
     return np.split(seen, np.cumsum([len(side.points) for side in sides])[:-1])
 
 
-def _stretches(side: Side, faced: Bools, widened: int) -> Iterator[tuple[float, float]]:
-    """Yield the stretches [nm] of a side that face something, widened and merged."""
-    reach = widened + side.inset + 2 * _SAMPLE_NM
-    current: tuple[float, float] | None = None
-    for t in side.along[faced]:
-        a, b = max(0.0, float(t) - reach), min(side.length, float(t) + reach)
-        if current is not None and a <= current[1] + _SAMPLE_NM:
-            current = (current[0], b)
-        else:
-            if current is not None:
-                yield current
-            current = (a, b)
-    if current is not None:
-        yield current
+def _stretches(side: Side, faced: Bools) -> Iterator[tuple[float, float]]:
+    """Yield the stretches [nm] of a side that face something, to its ends where these are one sample off."""
+    marks = np.flatnonzero(np.diff(np.concatenate([[False], faced, [False]]).astype(int)))
+    for first, behind in zip(marks[::2], marks[1::2], strict=True):
+        yield float(side.along[max(0, first - 1)]), float(side.along[min(behind, len(faced) - 1)])
 
 
 def _put_near(
     side: Side, t: float, bounds: tuple[float, float], tolerance: float, drills: Drills
 ) -> float | None:
-    """Set a via at t [nm], or as near to it as it may stand within a tolerance and bounds; return where."""
+    """Set a via at t [nm], or as near to it as it may stand within a tolerance and bounds; return where.
+
+    Where the row itself is blocked, a place as near to the pour's edge as a land may come is tried as well.
+    """
     places = [t]
     for k in range(1, math.floor(tolerance / _STEP_NM) + 1):
         places += [t + k * _STEP_NM, t - k * _STEP_NM]
     for place in places:
-        if bounds[0] <= place <= bounds[1] and drills.put(*side.at(place)):
+        if bounds[0] <= place <= bounds[1] and any(drills.put(x, y) for x, y in side.spots(place, drills)):
             return place
     return None
 

@@ -58,7 +58,7 @@ def fence(
     guarded = [piece for piece in conductors if piece.guarded]
     if limits.fence and guarded:
         widest = max(piece.gap for piece in guarded)
-        facing = Facing([c.copper for c in guarded], 2 * widest, limits.fence_pitch, widest)
+        facing = Facing([c.copper for c in guarded], 2 * widest, limits.fence_pitch)
         set_rows(sides, facing, drills, limits.fence_reach)
     return sides
 
@@ -66,7 +66,7 @@ def fence(
 def stitch_cutouts(placement: Placement, sides: Sequence[Side], limits: Limits, drills: Drills) -> None:
     """Set rows along the cut-outs, at the fence's pitch: they lead the ground to the carrier."""
     slots = [ring.polygon() for _, ring in cutouts_of(placement)]
-    facing = Facing(slots, 2 * limits.edge, limits.fence_pitch, limits.edge)
+    facing = Facing(slots, 2 * limits.edge, limits.fence_pitch)
     set_rows(sides, facing, drills, limits.fence_reach)
 
 
@@ -79,7 +79,7 @@ def stitch_rest(
 ) -> None:
     """Set rows along the board's edge and a square grid inside, then hold pieces that have too few vias."""
     profile = board_area(placement).exterior
-    at_edge = Facing([profile], limits.margin + limits.edge, limits.stitch_pitch, limits.margin)
+    at_edge = Facing([profile], limits.margin + limits.edge, limits.stitch_pitch)
     set_rows(sides, at_edge, drills, 2 * limits.hole_edge + limits.via_land)
     for x, y in _grid(placement, limits.stitch_pitch, drills):
         if not drills.near(x, y, _GRID_CLEAR * limits.stitch_pitch):

@@ -15,7 +15,7 @@ from layoutgen.checks.nodes import GROUND, drawn_conductors, joined_nets, tail_o
 from layoutgen.checks.planar import CHORD_NM, CORNER_LIMITS, TOLERANCE_NM, Geometry, merge, parts, within
 from layoutgen.geometry import Ring
 
-__all__ = ["board_of", "pour_gaps"]
+__all__ = ["board_of", "bored", "etched", "pour_gaps"]
 
 _POUR_ROLES = ("pour", "plane")
 
@@ -76,8 +76,8 @@ def _layer(
         pieces.extend(_pieces(shape, nodes, names, tails))
     undercut = limits.nm("copper.undercut") or 0.0
     if undercut > 0.0:
-        pieces = _etched(pieces, undercut)
-    return Layer(name, tuple(_bored(pieces, drills)))
+        pieces = etched(pieces, undercut)
+    return Layer(name, tuple(bored(pieces, drills)))
 
 
 def _tails(artwork: Artwork, limits: Limits) -> Mapping[str, tuple[str, shapely.Polygon]]:
@@ -158,7 +158,7 @@ def _without_buried_lands(shapes: Sequence[Shape], nodes: Mapping[str, str]) -> 
     return [shape for k, shape in enumerate(shapes) if k not in buried]
 
 
-def _etched(pieces: Sequence[Piece], undercut: float) -> list[Piece]:
+def etched(pieces: Sequence[Piece], undercut: float) -> list[Piece]:
     """Return the pieces as they are left after etching: every outline of the joined copper moved inwards."""
     layer = Layer("", tuple(pieces))
     shrunk = shapely.buffer(layer.merged, -undercut, join_style="mitre", mitre_limit=5.0)
@@ -170,7 +170,7 @@ def _etched(pieces: Sequence[Piece], undercut: float) -> list[Piece]:
     ]
 
 
-def _bored(pieces: Sequence[Piece], drills: Iterable[Drill]) -> list[Piece]:
+def bored(pieces: Sequence[Piece], drills: Iterable[Drill]) -> list[Piece]:
     """Return the pieces with the copper that unplated holes take away removed."""
     discs = [disc(drill) for drill in drills if not drill.plated]
     if not discs or not pieces:

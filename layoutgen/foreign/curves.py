@@ -15,6 +15,8 @@ _FEWEST = 8
 """Chords of a whole turn at least [-]."""
 _MOST = 100_000
 """Chords of one curve at most [-]."""
+_WIDEST_GAP = 1.0
+"""Widest angle between neighbouring vertices of what counts as a circle [rad]."""
 
 
 def _steps(radius: float, sweep: float, tolerance: float) -> int:
@@ -89,8 +91,6 @@ def _bulge_arc(start: Floats, end: Floats, bulge: float, tolerance: float) -> Fl
     middle = (mx - offset * dy, my + offset * dx)
     first = math.atan2(float(start[1]) - middle[1], float(start[0]) - middle[0])
     points = arc(middle, radius, first, sweep, tolerance)
-    if len(points) == 2:
-        points = arc(middle, radius, first, sweep, tolerance / 8.0)
     points[0], points[-1] = start, end
     return points
 
@@ -114,7 +114,8 @@ def fitted_circle(points: Floats, off: float) -> tuple[float, float, float] | No
     middle = solved[:2]
     radii = np.hypot(*(local - middle).T)
     radius = float(radii.mean())
-    gaps = np.diff(np.sort(np.arctan2(*(local - middle).T)))
-    if float(np.abs(radii - radius).max()) > off or float(gaps.max()) > 2.0:
+    turns = np.sort(np.arctan2(*(local - middle).T))
+    gaps = np.diff(np.append(turns, turns[0] + 2.0 * np.pi))
+    if float(np.abs(radii - radius).max()) > off or float(gaps.max()) > _WIDEST_GAP:
         return None
     return float(centre[0] + middle[0]), float(centre[1] + middle[1]), 2.0 * radius

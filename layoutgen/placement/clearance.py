@@ -113,7 +113,7 @@ def edge_margins(limits: Limits, pour_gap: int, ground_ring: int, *, tight: bool
         Kind.SUPPLY: limits.margin + (0 if tight else ring),
         Kind.PAD: limits.margin + (0 if tight else ring),
         Kind.STRIP: limits.margin + (0 if tight else ring),
-        Kind.GROUND: max(limits.margin, limits.hole_edge - (limits.land - limits.drill) // 2),
+        Kind.GROUND: limits.margin,
         Kind.BODY: limits.margin,
         Kind.CUTOUT: limits.margin + max(ring, limits.margin),
         Kind.HOLE: max(limits.hole_edge, limits.margin, limits.margin + limits.hole + ring),

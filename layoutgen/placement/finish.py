@@ -136,7 +136,7 @@ class _Maker:
             word = tuple(-turn for turn in reversed(word))
         mitres = self.lengths.turns(laid.name, word)
         centre_line = path_length(path)
-        angle, budget = self.lengths.budget(laid.name, word, centre_line)
+        angle, budget = self.lengths.budget(laid.name, word, centre_line, self.state.roles)
         return PlacedLine(
             name=laid.name,
             nets=self.model.file.lines[laid.name].nets,
@@ -215,7 +215,7 @@ class _Maker:
         width, gap = to_nm(record.width), to_nm(record.gap)
         offset = laid.side * (width + gap)
         paths = tuple((to_world(pose, 0, side), to_world(pose, laid.length, side)) for side in (0, offset))
-        angle, budget = self.lengths.pair_budget(laid.name, laid.length)
+        angle, budget = self.lengths.pair_budget(laid.name, laid.length, self.state.roles)
         return PlacedPair(
             name=laid.name,
             nets=self.model.file.coupled[laid.name].nets,
@@ -249,7 +249,9 @@ class _Maker:
     def _strip(self, laid: LaidStrip) -> Strip:
         path = [self.frame.moved(point) for point in laid.points]
         if laid.open_edge is not None:
-            path[-1] = self._on_edge(path[-1], laid.open_edge, self.model.limits.edge)
+            path[-1] = self._on_edge(path[-1], laid.open_edge, laid.inset)
+        if laid.root_edge is not None:
+            path[0] = self._on_edge(path[0], laid.root_edge, laid.inset)
         return self._named_strip(laid.net, laid.width, tuple(path))
 
     def _named_strip(self, net: str, width: int, path: tuple[Point, ...]) -> Strip:

@@ -15,6 +15,8 @@ from layoutgen.placement.state import Growth, LaidLine, leg_boxes
 
 __all__ = ["Neighbours"]
 
+_GRID = 10  # [nm]: rounding of odd widths must not decide
+
 
 @dataclass(slots=True)
 class Neighbours:
@@ -104,7 +106,7 @@ class Neighbours:
         radials = self.model.sized.radials
         spreads = any(end.kind is EndKind.COUPLED or end.element in radials for end in ends)
         factor = 2 if spreads else 1
-        return factor * self.model.limits.spacing + self.model.reach_at(net)
+        return factor * self.model.limits.spacing + self.model.reach_at(net) + _GRID
 
     def _folds_on_itself(self, line: LaidLine) -> bool:
         boxes = leg_boxes(line.points, self.model.widths[line.name])

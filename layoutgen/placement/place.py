@@ -65,7 +65,7 @@ def _again(model: Model, tour: Tour, lengths: LineLengths, like: Choices) -> Sta
     if len(tour.roots) > 1:
         return None
     search = Search(model, tour, lengths, _EFFORTS[like.effort])
-    starts = first_states(model, tour, search.layer, search.margins)
+    starts = first_states(model, tour, search.ways.layer, search.margins)
     start = next(islice(starts, like.start, None), None)
     return None if start is None else search.replay(start, like)
 
@@ -77,7 +77,7 @@ def _attempt(
     best: tuple[float, State] | None = None
     failure: Failure | None = None
     search = Search(model, tour, lengths, effort)
-    starts = first_states(model, tour, search.layer, search.margins, sized_board=sized_board)
+    starts = first_states(model, tour, search.ways.layer, search.margins, sized_board=sized_board)
     for number, start in enumerate(starts):
         for state in _all_trees(search, replace(start, start=number)):
             frame = frame_of(state)
@@ -98,7 +98,7 @@ def _all_trees(search: Search, start: State) -> Iterator[State]:
         for shift in _SHIFTS:
             for state in states[:2]:
                 joined = join_root(
-                    search.model, search.tour, search.layer, search.margins, state, root, shift
+                    search.model, search.tour, search.ways.layer, search.margins, state, root, shift
                 )
                 following = search.run(joined)
                 if following:

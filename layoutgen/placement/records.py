@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Hashable, Mapping
 from dataclasses import dataclass
 
 from layoutgen.geometry import Point, Ring
@@ -166,18 +166,27 @@ class PlacedHole:
 
 @dataclass(frozen=True, slots=True)
 class Choice:
-    """How one element was laid: turn off its node [deg], side of banks or pairs, word, legs [nm]."""
+    """How one element was laid: turn off its node [deg], side of banks or pairs, word, legs [nm].
+
+    ``plan`` is the drawing of a loop cluster, laid as it is (``side`` 1) or mirrored (-1).
+    """
 
     turn: float
     side: int
     word: tuple[float, ...] = ()
     legs: tuple[int, ...] = ()
     edge: str | None = None
+    plan: Hashable = None
 
     @property
     def shape(self) -> tuple[object, ...]:
         """What stays the same when only lengths change."""
-        return self.turn, self.side, self.word, self.edge
+        return self.turn, self.side, self.word, self.edge, self.plan
+
+    @property
+    def mirrored(self) -> tuple[object, ...]:
+        """The shape of the mirror image, for lines and what hangs on them; edges follow from the words."""
+        return -self.turn, -self.side, tuple(-turn for turn in self.word)
 
 
 @dataclass(frozen=True, slots=True)

@@ -12,7 +12,7 @@ from layoutgen.geometry import mitre_for_turn, mitre_reach
 from layoutgen.placement.budgets import LineLengths
 from layoutgen.placement.frame import Pose, unit
 from layoutgen.placement.model import GROUND, Model
-from layoutgen.placement.state import EDGES, Bounds
+from layoutgen.placement.state import EDGES, State
 from layoutgen.placement.tour import Tour
 from layoutgen.placement.words import (
     LegRules,
@@ -21,6 +21,7 @@ from layoutgen.placement.words import (
     Word,
     fixed_shapes,
     least_legs,
+    meeting_routes,
     route_points,
     solve_legs,
 )
@@ -47,6 +48,19 @@ _TARGET_WORDS: tuple[Word, ...] = (
     (90.0, -90.0, -90.0, 90.0),
     (-90.0, 90.0, 90.0, -90.0),
 )
+_ROUND_WORDS: tuple[Word, ...] = (
+    (90.0, 90.0, 90.0),
+    (-90.0, -90.0, -90.0),
+    (90.0, -90.0, 90.0),
+    (-90.0, 90.0, -90.0),
+    (90.0, 90.0, -90.0, -90.0),
+    (-90.0, -90.0, 90.0, 90.0),
+    (90.0, 90.0, 90.0, -90.0),
+    (-90.0, -90.0, -90.0, 90.0),
+    (90.0, -90.0, -90.0, -90.0),
+    (-90.0, 90.0, 90.0, 90.0),
+)
+"""Further words for lines between two placed nodes."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -65,13 +79,13 @@ class Router:
     tour: Tour
     lengths: LineLengths
 
-    def choices(self, end: End, start: Pose, bounds: Bounds, *, straight: bool) -> Iterator[RouteChoice]:
+    def choices(self, end: End, start: Pose, state: State, *, straight: bool) -> Iterator[RouteChoice]:
         """Yield routes for a line from one end, the plainest first.
 
         Args:
             end: The line's end at the start.
             start: Node point and heading out of it.
-            bounds: What is known of the board.
+            state: What is laid so far, and what is known of the board.
             straight: Only the straight route, where the line need not turn to its port.
         """
         name = end.element
@@ -79,19 +93,64 @@ class Router:
         hinted = self._hinted_word(end)
         port = self._port_at(far)
         if hinted is not None:
-            yield from self._hinted(end, start, hinted, bounds, port)
+            yield from self._hinted(end, start, hinted, state, port)
         elif port is not None:
-            yield from self._to_port(end, start, bounds, port, straight=straight)
-        elif (target := self._pinned_target(far, start, bounds)) is not None:
-            yield from self._to_pose(end, start, target)
+            yield from self._to_port(end, start, state, port, straight=straight)
+        elif (target := self._pinned_target(far, start, state)) is not None:
+            yield from self._to_pose(end, start, target, state)
         elif self.model.sized.lines[name].free:
             yield from self._free(end, straight=straight)
         else:
-            lengths = self.lengths.by_bends(name)
+            lengths = self.lengths.by_bends(name, state.roles)
             shapes = fixed_shapes(lengths, self.rules(end))
             for route in shapes:
                 if not straight or not route.word:
                     yield RouteChoice(route)
+
+    def closing(self, end: End, start: Pose, target: Pose, state: State) -> Iterator[RouteChoice]:
+        """Yield routes for a line between two placed nodes, that of fewest bends first.
+
+        Args:
+            end: The line's end at the start.
+            start: Node point and heading out of it.
+            target: The other node, and the heading on arriving there.
+            state: What is laid so far.
+        """
+        hinted = self._hinted_word(end)
+        words = [hinted[0]] if hinted is not None else [*_TARGET_WORDS, *_ROUND_WORDS]
+        for word in words:
+            if (start.heading + sum(word)) % 360.0 != target.heading:
+                continue
+            for route in self._closing(end, start, target, state, word, hinted):
+                if route_points(start, route)[1] == target:
+                    yield RouteChoice(route)
+
+    def _closing(
+        self,
+        end: End,
+        start: Pose,
+        target: Pose,
+        state: State,
+        word: Word,
+        hinted: tuple[Word, tuple[int | None, ...]] | None,
+    ) -> Iterator[Route]:
+        name = end.element
+        if self.model.sized.lines[name].free and hinted is None:
+            yield from meeting_routes(word, self._least(end, word), start, target.x, target.y, _STRETCHES)
+            return
+        total = None
+        if not self.model.sized.lines[name].free:
+            lengths = self.lengths.by_bends(name, state.roles)
+            if len(word) >= len(lengths):
+                return
+            total = self.lengths.length(name, word, state.roles)
+        fixed = () if hinted is None else hinted[1]
+        least = self._fixed_least(end, word)
+        if fixed:
+            least = tuple(m if leg is None else 1 for leg, m in zip(fixed, least, strict=True))
+        route = solve_legs(word, least, start, total=total, x=target.x, y=target.y, fixed=fixed)
+        if route is not None:
+            yield route
 
     def leaves_as_hinted(self, end: End, first_heading: float, last_heading: float) -> bool:
         """True when a line keeps its ``leave`` hint; headings [deg] are those of travel."""
@@ -101,6 +160,11 @@ class Router:
         wanted = hint.leave % 360.0
         leaving = first_heading if end.index == 0 else (last_heading + 180.0) % 360.0
         return leaving == wanted
+
+    def hinted_turns(self, name: str) -> Word | None:
+        """Return a line's hinted turns as seen from its first net."""
+        hint = self._hint(name)
+        return None if hint is None or hint.route is None else hint.route.turns
 
     def rules(self, end: End) -> LegRules:
         """Return what the legs of a line, travelled from one end, must keep."""
@@ -184,9 +248,20 @@ class Router:
         for turn in (90.0, -90.0):
             for more in _STRETCHES:
                 yield RouteChoice(Route((turn,), (rules.first + more, rules.last)))
+                if more and self._meets_closer(end):
+                    yield RouteChoice(Route((turn,), (rules.first, rules.last + more)))
+                    yield RouteChoice(Route((turn,), (rules.first + more, rules.last + more)))
+
+    def _meets_closer(self, end: End) -> bool:
+        """True when a line leads to a net where another line is to close a loop, and so needs room."""
+        far = self._far(end)
+        if far is None or far[1] == GROUND:
+            return False
+        closers = self.tour.loops.closers
+        return any(other.element in closers for other in self.model.circuit.nets[far[1]].ends)
 
     def _to_port(
-        self, end: End, start: Pose, bounds: Bounds, port: str, *, straight: bool
+        self, end: End, start: Pose, state: State, port: str, *, straight: bool
     ) -> Iterator[RouteChoice]:
         asked = self.model.file.ports[port].edge
         edges = (
@@ -196,19 +271,19 @@ class Router:
             turn = (EDGES[edge] - start.heading) % 360.0
             if turn % 90.0:
                 continue
-            yield from self._to_edge(end, start, bounds, port, edge, straight=straight and turn == 0.0)
+            yield from self._to_edge(end, start, state, port, edge, straight=straight and turn == 0.0)
 
     def _to_edge(
-        self, end: End, start: Pose, bounds: Bounds, port: str, edge: str, *, straight: bool
+        self, end: End, start: Pose, state: State, port: str, edge: str, *, straight: bool
     ) -> Iterator[RouteChoice]:
         name = end.element
-        across, along = self._port_targets(bounds, port, edge)
+        across, along = self._port_targets(state, port, edge)
         words = [w for w in _TARGET_WORDS if (start.heading + sum(w)) % 360.0 == EDGES[edge]]
         if straight:
             words = [w for w in words if not w]
         x, y = (along, across) if unit(EDGES[edge])[0] else (across, along)
         if not self.model.sized.lines[name].free:
-            yield from self._fixed_to_edge(end, start, words, (x, y), edge)
+            yield from self._fixed_to_edge(end, start, state, words, (x, y), edge)
             return
         for word in words:
             if across is not None:
@@ -237,17 +312,23 @@ class Router:
                 yield Route(word, (least[0] + more, *(leg + jog for leg in least[1:-1]), least[-1]))
 
     def _fixed_to_edge(
-        self, end: End, start: Pose, words: list[Word], target: tuple[int | None, int | None], edge: str
+        self,
+        end: End,
+        start: Pose,
+        state: State,
+        words: list[Word],
+        target: tuple[int | None, int | None],
+        edge: str,
     ) -> Iterator[RouteChoice]:
         """Yield routes of given length that end at an edge, or settle where it is."""
         name = end.element
         x, y = target
         if x is None and y is None:
-            for route in fixed_shapes(self.lengths.by_bends(name), self.rules(end)):
+            for route in fixed_shapes(self.lengths.by_bends(name, state.roles), self.rules(end)):
                 if route.word in words:
                     yield RouteChoice(route, edge)
             return
-        lengths = self.lengths.by_bends(name)
+        lengths = self.lengths.by_bends(name, state.roles)
         for word in words:
             if len(word) < len(lengths):
                 solved = solve_legs(
@@ -259,23 +340,27 @@ class Router:
     def _fixed_least(self, end: End, word: Word) -> tuple[int, ...]:
         return least_legs(word, self.rules(end))
 
-    def _port_targets(self, bounds: Bounds, port: str, edge: str) -> tuple[int | None, int | None]:
+    def _port_targets(self, state: State, port: str, edge: str) -> tuple[int | None, int | None]:
         """Return the port's coordinates across and along its edge's heading, where they are settled [nm]."""
         record = self.model.file.ports[port]
         ux, uy = unit(EDGES[edge])
         along = None
-        if bounds.known(edge):
+        if state.bounds.known(edge):
             inset = 0 if record.to_edge else self.model.limits.edge
-            along = round(bounds.at(edge) - (ux + uy) * inset)
+            along = round(state.bounds.at(edge) - (ux + uy) * inset)
         across = None
         low = "south" if ux else "west"
-        if record.at is not None and bounds.known(low):
-            across = round(bounds.at(low)) + to_nm(record.at)
+        if record.at is not None and state.bounds.known(low):
+            across = round(state.bounds.at(low)) + to_nm(record.at)
         return across, along
 
-    def _pinned_target(self, far: tuple[End, str] | None, start: Pose, bounds: Bounds) -> Pose | None:
+    def _pinned_target(self, far: tuple[End, str] | None, start: Pose, state: State) -> Pose | None:
         """Return where a line must end, heading that way, for the pinned part it leads to."""
-        if far is None or far[1] == GROUND or not (bounds.known("west") and bounds.known("south")):
+        if (
+            far is None
+            or far[1] == GROUND
+            or not (state.bounds.known("west") and state.bounds.known("south"))
+        ):
             return None
         hub = self.tour.hubs[far[1]]
         if hub.arrival != far[0] or hub.bank or len(hub.arms) != 1 or hub.arms[0].end.kind is not EndKind.PAD:
@@ -287,16 +372,20 @@ class Router:
         land = self.model.bodies[end.element].land_at(end)
         straight_on = start.heading + 180.0 - land.heading
         heading = straight_on if hint.heading is None else hint.heading
-        at = Pose(round(bounds.x0) + to_nm(hint.at[0]), round(bounds.y0) + to_nm(hint.at[1]), heading % 360.0)
+        at = Pose(
+            round(state.bounds.x0) + to_nm(hint.at[0]),
+            round(state.bounds.y0) + to_nm(hint.at[1]),
+            heading % 360.0,
+        )
         ux, uy = unit(at.heading)
         inner = land.inner
         x, y = at.x + inner.x * ux - inner.y * uy, at.y + inner.x * uy + inner.y * ux
         return Pose(round(x), round(y), (at.heading + land.heading + 180.0) % 360.0)
 
-    def _to_pose(self, end: End, start: Pose, target: Pose) -> Iterator[RouteChoice]:
+    def _to_pose(self, end: End, start: Pose, target: Pose, state: State) -> Iterator[RouteChoice]:
         name = end.element
         free = self.model.sized.lines[name].free
-        lengths = None if free else self.lengths.by_bends(name)
+        lengths = None if free else self.lengths.by_bends(name, state.roles)
         for word in _TARGET_WORDS:
             if (start.heading + sum(word)) % 360.0 != target.heading:
                 continue
@@ -326,20 +415,20 @@ class Router:
         end: End,
         start: Pose,
         hinted: tuple[Word, tuple[int | None, ...]],
-        bounds: Bounds,
+        state: State,
         port: str | None,
     ) -> Iterator[RouteChoice]:
         word, legs = hinted
         name = end.element
         free = self.model.sized.lines[name].free
-        total = None if free else self.lengths.length(name, word)
+        total = None if free else self.lengths.length(name, word, state.roles)
         edge = None
         x = y = None
         if port is not None:
             out = (start.heading + sum(word)) % 360.0
             edge = next((e for e, heading in EDGES.items() if heading == out), None)
             if edge is not None:
-                across, along = self._port_targets(bounds, port, edge)
+                across, along = self._port_targets(state, port, edge)
                 x, y = (along, across) if unit(out)[0] else (across, along)
         least = tuple(
             1 if leg is not None else m

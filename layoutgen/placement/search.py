@@ -10,22 +10,20 @@ from __future__ import annotations
 import heapq
 from collections.abc import Callable, Iterator, Mapping
 from dataclasses import dataclass, field, replace
-from functools import partial
 from itertools import islice
 
 from layoutgen.circuit import End, EndKind
-from layoutgen.circuit.queries import ends_of, is_shunt
+from layoutgen.circuit.queries import is_shunt, net_of
 from layoutgen.placement.budgets import LineLengths
 from layoutgen.placement.clearance import Kind, clearance_table, edge_margins
-from layoutgen.placement.frame import Pose
-from layoutgen.placement.lay import Layer, PinnedError
-from layoutgen.placement.model import GROUND, Model
+from layoutgen.placement.cluster import ClusterPlan
+from layoutgen.placement.kit import PinnedError
+from layoutgen.placement.model import Model
 from layoutgen.placement.neighbours import Neighbours
 from layoutgen.placement.records import Choice, Choices
-from layoutgen.placement.routes import RouteChoice, Router
-from layoutgen.placement.state import EDGES, Growth, Pending, State
-from layoutgen.placement.tour import Tour
-from layoutgen.placement.words import route_points
+from layoutgen.placement.state import Growth, Pending, State
+from layoutgen.placement.tour import Tour, end_key
+from layoutgen.placement.ways import Way, Ways
 
 __all__ = ["Effort", "Failure", "Search", "drawing_cost"]
 
@@ -34,7 +32,6 @@ _BEND_AREA = 10e12  # [nm^2] for each bend besides: on a small board, too, a str
 _CROSSING_COST = 0.05  # for each element of an input that lies beside an output, or the other way round
 
 
-_CROWDING = 3.0  # bends that a stub is worth on the side away from the feeds
 _LOOK_AHEAD = 60  # ways tried for what leads to a port before a candidate is taken as shut in
 
 
@@ -63,18 +60,6 @@ class Failure:
     depth: int
 
 
-@dataclass(frozen=True, slots=True)
-class Way:
-    """One way to lay an element: the choice made, the least extent and bends it brings, how to lay it."""
-
-    element: str
-    choice: Choice
-    extent: tuple[float, float, float, float]
-    bends: float
-    lay: Callable[[Growth], None]
-    crowding: float = 0.0
-
-
 @dataclass(slots=True)
 class Search:
     """One run of the search over one circuit."""
@@ -83,15 +68,14 @@ class Search:
     tour: Tour
     lengths: LineLengths
     effort: Effort
-    layer: Layer = field(init=False)
-    router: Router = field(init=False)
+    ways: Ways = field(init=False)
     neighbours: Neighbours = field(init=False)
     failure: Failure | None = field(init=False, default=None)
 
     def __post_init__(self) -> None:
         """Set the helpers up."""
-        self.layer = Layer(self.model, self.tour, self.lengths)
-        self.router = Router(self.model, self.tour, self.lengths)
+        self.ways = Ways(self.model, self.tour, self.lengths)
+        self.ways.fold_spine, self.ways.any_side = self.effort.fold_spine, self.effort.any_side
         table = clearance_table(self.model.limits, self.model.default_gap)
         self.neighbours = Neighbours(self.model, self.lengths, table)
         self.margins = edge_margins(
@@ -123,40 +107,62 @@ class Search:
         state = start
         while state.pending:
             pending = self._next(state)
-            chosen = choices.ways.get(_key(pending.end))
+            chosen = choices.ways.get(end_key(pending.end))
             if chosen is None:
                 return None
-            base = replace(state, pending=tuple(p for p in state.pending if p is not pending))
-            ways = [w for w in self._ways_to_lay(pending, base) if w.choice.shape == chosen.shape]
-            if not ways:
-                return None
-            way = min(ways, key=lambda w: _difference(w.choice, chosen))
-            growth = self._built(base, way, 0)
-            if growth is None or self._conflict(growth) is not None:
+            base = self._without(state, pending)
+            way = self._way_like(pending, state, chosen)
+            growth = None if way is None else self._built(base, way, 0)
+            if way is None or growth is None or self._conflict(growth) is not None:
                 return None
             extent, crossings = growth.extent(self.margins), self._crossings(growth)
             cost = self._cost(base, extent, growth.bends, crossings)
-            state = growth.applied(extent, cost, crossings, (_key(pending.end), way.choice))
+            state = growth.applied(extent, cost, crossings, (end_key(pending.end), way.choice))
         return state
+
+    def _way_like(self, pending: Pending, state: State, chosen: Choice) -> Way | None:
+        """Return the way of a shape chosen earlier whose legs are nearest to what they were."""
+        if pending.cluster is not None and isinstance(chosen.plan, ClusterPlan):
+            return self.ways.cluster_way(pending, state, chosen.plan, chosen.side)
+        ways = [way for way in self.ways.of(pending, state) if way.choice.shape == chosen.shape]
+        return min(ways, key=lambda way: _difference(way.choice, chosen), default=None)
+
+    def _without(self, state: State, pending: Pending) -> State:
+        """Return a state without a pending thing, and without its other end where it closes a loop."""
+        gone = (pending, self.ways.mate(pending, state))
+        return replace(state, pending=tuple(p for p in state.pending if p not in gone))
 
     def _next(self, state: State) -> Pending:
         """Return the pending thing to lay next: the same for all states of one depth."""
-        return min(state.pending, key=lambda p: self._priority(p.end))
+        ready = [pending for pending in state.pending if self.ways.is_ready(pending, state)]
+        return min(ready, key=self._priority)
 
-    def _priority(self, end: End) -> tuple[int, int, int, str, int]:
-        file = self.model.file
+    def _priority(self, pending: Pending) -> tuple[int, int, int, str, int]:
+        end, file = pending.end, self.model.file
         weight = self.tour.weight.get((end.element, end.index), 0)
-        if end.element in self._spine:
+        if pending.cluster is not None:
+            group, order = self._cluster_order(pending.cluster)
+        elif end.element in self.tour.loops.closers:
+            group, order = 3, 1
+        elif end.element in self._spine:
             group, order = 0, self.model.circuit.spine.index(end.element)
         elif end.kind is EndKind.PAD and is_shunt(file.parts[end.element]):
             group, order = 1, 0
-        elif weight <= 1:
+        elif weight <= 1 and end.kind is not EndKind.PORT:
             group, order = 2, 0
         elif self._ends_in_port(end):
             group, order = 4, 0
         else:
             group, order = 3, -weight
         return group, order, self._file_order(end), end.element, end.index
+
+    def _cluster_order(self, number: int) -> tuple[int, int]:
+        """Return when a cluster is laid: as its first element on the straight path, else by its weight."""
+        names = self.tour.loops.clusters[number].elements
+        on_path = [self.model.circuit.spine.index(name) for name in names if name in self._spine]
+        return (
+            (0, min(on_path)) if on_path else (3, -self.tour.weight.get((self.tour.entries[number], -1), 0))
+        )
 
     def _ends_in_port(self, end: End) -> bool:
         """True for a line or port that only leads to a port."""
@@ -177,15 +183,13 @@ class Search:
         checked for clearance only when, built, it comes to the top again.
         """
         pending = next(p for p in state.pending if p.end == element)
-        base = replace(state, pending=tuple(p for p in state.pending if p is not pending))
+        base = self._without(state, pending)
         heap: list[tuple[float, int, Way, Growth | None]] = [
             (self._cost(base, way.extent, way.bends, base.crossings), order, way, None)
-            for order, way in enumerate(self._ways_to_lay(pending, base))
+            for order, way in enumerate(self.ways.of(pending, state))
         ]
         if not heap:
-            self._fail(
-                depth, element.element, "no route leads where it must, or as its hint asks"
-            )
+            self._fail(depth, element.element, "no route leads where it must, or as its hint asks")
         heapq.heapify(heap)
         accepted = 0
         while heap and accepted < self.effort.accepted:
@@ -197,7 +201,7 @@ class Search:
                     cost = self._cost(base, extent, growth.bends, self._crossings(growth))
                     heapq.heappush(heap, (cost, order, way, growth))
                 continue
-            extent, key = growth.extent(self.margins), _key(element)
+            extent, key = growth.extent(self.margins), end_key(element)
             grown = growth.applied(extent, cost, self._crossings(growth), (key, way.choice))
             conflict = self._conflict(growth) or self._shut_in(grown, growth)
             if conflict is None:
@@ -210,23 +214,39 @@ class Search:
         return self._port_order(growth) or self.neighbours.conflict(growth)
 
     def _shut_in(self, grown: State, growth: Growth) -> str | None:
-        """Return what is wrong when something new that leads to a port would have no way out."""
-        for pending in growth.pending:
-            if self._ends_in_port(pending.end) and not self._has_way(grown, pending):
+        """Return what is wrong when something that leads to a port, or closes a loop, would have no way."""
+        closing = any(name in self.tour.loops.closers for name in growth.lines)
+        for pending in grown.pending if closing else growth.pending:
+            if self.ways.mate(pending, grown) is not None:
+                if not self._has_way(grown, pending, self._leaves_ports_open):
+                    return f"{pending.end.element} would have no way to close its loop"
+            elif self._ends_in_port(pending.end) and not self._has_way(grown, pending):
                 return f"{pending.end.element} would have no way to its edge"
         return None
 
-    def _has_way(self, state: State, pending: Pending) -> bool:
-        """True when at least one way of laying a pending thing is clear."""
-        for way in islice(self._ways_to_lay(pending, state), _LOOK_AHEAD):
-            trial = Growth(state=state, bounds=state.bounds)
+    def _has_way(
+        self, state: State, pending: Pending, suits: Callable[[State, Growth], bool] | None = None
+    ) -> bool:
+        """True when at least one way of laying a pending thing is clear, and suits."""
+        base = self._without(state, pending)
+        for way in islice(self.ways.of(pending, state), _LOOK_AHEAD):
+            trial = Growth(state=base, bounds=state.bounds)
             try:
                 way.lay(trial)
             except PinnedError:
                 continue
-            if trial.bounds.holds(trial.extent(self.margins)) and self._conflict(trial) is None:
+            if not trial.bounds.holds(trial.extent(self.margins)) or self._conflict(trial) is not None:
+                continue
+            if suits is None or suits(base, trial):
                 return True
         return False
+
+    def _leaves_ports_open(self, base: State, trial: Growth) -> bool:
+        """True when a line that closes a loop leaves a way to their edges for ports beside it."""
+        grown = trial.applied(trial.extent(self.margins), 0.0)
+        nets = set(self.model.owner_nets[next(iter(trial.lines))])
+        near = [p for p in base.pending if net_of(self.model.file, p.end) in nets]
+        return all(self._has_way(grown, p) for p in near if self._ends_in_port(p.end))
 
     def _built(self, base: State, way: Way, depth: int) -> Growth | None:
         """Return a way as a candidate inside what is known of the board, or None."""
@@ -284,111 +304,6 @@ class Search:
         stages = {self.tour.stages[net] for net in self.model.owner_nets.get(owner, ())}
         return stages.pop() if len(stages) == 1 else None
 
-    def _ways_to_lay(self, pending: Pending, state: State) -> Iterator[Way]:
-        """Yield the ways open to a pending thing."""
-        used = state.used.get(self._net(pending.end), ())
-        for turn in pending.turns:
-            heading = (pending.at.heading + turn) % 360.0
-            if heading in used or self._leads_away(pending, heading):
-                continue
-            crowding = _CROWDING if self._joins_feeds(pending, heading) else 0.0
-            for way in self._ways(pending, turn, state):
-                yield replace(way, bends=way.bends + crowding, crowding=crowding) if crowding else way
-
-    def _joins_feeds(self, pending: Pending, heading: float) -> bool:
-        """True when a stub or shunt part would leave to the side where the feeds go, and has a choice."""
-        key = (pending.end.element, pending.end.index)
-        if len(pending.turns) < 2 or self.tour.leads_to_port.get(key, False):
-            return False
-        asked = {port.edge for port in self.model.file.ports.values() if port.kind == "dc" and port.edge}
-        return any(EDGES[edge] == heading for edge in asked)
-
-    def _leads_away(self, pending: Pending, heading: float) -> bool:
-        """True when an arm could leave towards the edge that its ports ask for, and this is not the way."""
-        edges = self.tour.edges.get((pending.end.element, pending.end.index), frozenset())
-        if self.effort.any_side or len(edges) != 1 or len(pending.turns) < 2:
-            return False
-        wanted = EDGES[next(iter(edges))]
-        choices = [(pending.at.heading + turn) % 360.0 for turn in pending.turns]
-        return wanted in choices and heading == (wanted + 180.0) % 360.0
-
-    def _net(self, end: End) -> str:
-        return next(net for found, net in ends_of(self.model.file, end.element) if found.index == end.index)
-
-    def _ways(self, pending: Pending, turn: float, state: State) -> Iterator[Way]:
-        end, layer, extent = pending.end, self.layer, state.extent
-        if end.kind is EndKind.LINE and self.model.file.lines[end.element].shape == "radial":
-            yield Way(
-                end.element, Choice(turn, 1), extent, 0.0, partial(layer.radial, pending=pending, turn=turn)
-            )
-        elif end.kind is EndKind.LINE:
-            yield from self._line_ways(pending, turn, state)
-        elif end.kind is EndKind.COUPLED:
-            length, start = self.lengths.pair_length(end.element), pending.at.turned(turn)
-            for side in (1, -1):
-                lay_pair = partial(layer.pair, end=end, start=start, side=side, length=length)
-                yield Way(end.element, Choice(turn, side), extent, 0.0, lay_pair)
-        elif end.kind is EndKind.PORT:
-            yield Way(
-                end.element, Choice(turn, 1), extent, 0.0, partial(layer.port_arm, pending=pending, turn=turn)
-            )
-        else:
-            for side in (1, -1) if self._meets_bank(end) else (1,):
-                lay_part = partial(layer.pad_arm, pending=pending, turn=turn, bank_side=side)
-                yield Way(end.element, Choice(turn, side), extent, 0.0, lay_part)
-
-    def _line_ways(self, pending: Pending, turn: float, state: State) -> Iterator[Way]:
-        end, start = pending.end, pending.at.turned(turn)
-        straight = end.element in self._spine and not self.effort.fold_spine
-        sides = (1, -1) if self._meets_bank(end) else (1,)
-        weight = self.layer.bend_weight(end)
-        for choice in self.router.choices(end, start, state.bounds, straight=straight):
-            last = (start.heading + sum(choice.route.word)) % 360.0
-            if not self.router.leaves_as_hinted(end, start.heading, last):
-                continue
-            extent = self._line_extent(end, start, choice, state)
-            for side in sides:
-                lay = partial(
-                    self.layer.line,
-                    end=end,
-                    start=start,
-                    route=choice.route,
-                    edge=choice.edge,
-                    bank_side=side,
-                )
-                made = Choice(turn, side, choice.route.word, choice.route.legs, choice.edge)
-                yield Way(end.element, made, extent, weight * len(choice.route.word), lay)
-
-    def _line_extent(
-        self, end: End, start: Pose, choice: RouteChoice, state: State
-    ) -> tuple[float, float, float, float]:
-        """Return the least extent [nm] that a route brings about: a bound for the cost of building it."""
-        points = route_points(start, choice.route)[0]
-        x0, y0, x1, y1 = state.extent
-        half = self.model.widths[end.element] / 2
-        return (
-            min(x0, *(p[0] - half for p in points)),
-            min(y0, *(p[1] - half for p in points)),
-            max(x1, *(p[0] + half for p in points)),
-            max(y1, *(p[1] + half for p in points)),
-        )
-
-    def _meets_bank(self, end: End) -> bool:
-        """True when an element leads straight, or through parts, into a bank: its side is then a choice."""
-        seen, stack = set(), [end]
-        while stack:
-            here = stack.pop()
-            for far, net in ends_of(self.model.file, here.element):
-                if far.index == here.index or net == GROUND or net in seen:
-                    continue
-                seen.add(net)
-                hub = self.tour.hubs[net]
-                if hub.bank:
-                    return True
-                if hub.arrival == far and len(hub.arms) == 1 and hub.arms[0].end.kind is EndKind.PAD:
-                    stack.append(hub.arms[0].end)
-        return False
-
     # -- ports ---------------------------------------------------------------------------------------
 
     def _port_order(self, growth: Growth) -> str | None:
@@ -406,11 +321,6 @@ class Search:
                 if (step > 0) != (order.index(name) > order.index(other)):
                     return f"port {name} would not come in file order with {other} on the {laid.edge} edge"
         return None
-
-
-def _key(end: End) -> str:
-    """Return the name under which a choice is kept."""
-    return f"{end.element}:{end.index}"
 
 
 def _difference(a: Choice, b: Choice) -> int:

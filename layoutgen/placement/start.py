@@ -9,7 +9,8 @@ from layoutgen.circuit import End, EndKind
 from layoutgen.circuit.queries import ends_of
 from layoutgen.placement.clearance import Kind, Obstacle, Obstacles
 from layoutgen.placement.frame import Pose, unit
-from layoutgen.placement.lay import Layer, root_edge
+from layoutgen.placement.kit import root_edge
+from layoutgen.placement.lay import Layer
 from layoutgen.placement.model import Model
 from layoutgen.placement.state import EDGES, Bounds, Growth, LaidPort, State
 from layoutgen.placement.tour import Tour
@@ -171,7 +172,7 @@ def _lay_root(model: Model, tour: Tour, layer: Layer, growth: Growth, root: End,
         layer.begin_without_port(growth, root, pose)
         return
     edge = root_edge(model, root.element)
-    movable = not growth.bounds.known(edge) and layer.root_can_move(hub)
+    movable = not growth.bounds.known(edge) and layer.ports.root_can_move(hub)
     if not movable and not growth.bounds.known(edge):
         inset = 0 if model.file.ports[root.element].to_edge else model.limits.edge
         ux, uy = unit(EDGES[edge])

@@ -11,8 +11,8 @@ from layoutgen.geometry import Point
 from layoutgen.placement.clearance import Kind, Obstacle, Obstacles
 from layoutgen.placement.frame import Box, Pose, box_around, unit
 from layoutgen.placement.records import Choice
+from layoutgen.placement.tour import Headings
 from layoutgen.placement.words import Route
-from layoutgen.sizing import BudgetEntry
 
 __all__ = [
     "EDGES",
@@ -97,7 +97,6 @@ class LaidLine:
     start: int
     points: tuple[Point, ...]
     route: Route
-    ends: tuple[BudgetEntry, ...]
     open_edge: str | None = None
     root_edge: str | None = None
 
@@ -122,12 +121,14 @@ class LaidRadial:
 
 @dataclass(frozen=True, slots=True)
 class LaidStrip:
-    """A strip between pads or along a bank; ``open_edge`` as for lines."""
+    """A strip between pads or along a bank; edges as for lines, ``inset`` short of the profile [nm]."""
 
     net: str
     width: int
     points: tuple[Point, ...]
     open_edge: str | None = None
+    root_edge: str | None = None
+    inset: int = 0
 
 
 @dataclass(frozen=True, slots=True)
@@ -162,12 +163,17 @@ class Device:
 
 @dataclass(frozen=True, slots=True)
 class Pending:
-    """Something that leaves a placed point and is not laid yet; ``turns`` are the choices left [deg]."""
+    """Something that leaves a placed point and is not laid yet; ``turns`` are the choices left [deg].
+
+    ``offset`` is how far from the node a pad begins [nm]; ``cluster`` the number of the loop cluster that is
+    entered here as a whole.
+    """
 
     end: End
     at: Pose
     turns: tuple[float, ...]
     offset: int = 0
+    cluster: int | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -193,6 +199,7 @@ class State:
     cost: float = 0.0
     start: int = 0
     ways: Mapping[str, Choice] = field(default_factory=dict)
+    roles: Mapping[str, Headings] = field(default_factory=dict)
 
 
 @dataclass(slots=True, kw_only=True)
@@ -215,6 +222,7 @@ class Growth:
     bounds: Bounds = field(default_factory=Bounds)
     bends: float = 0.0
     devices: list[Device] = field(default_factory=list)
+    roles: dict[str, Headings] = field(default_factory=dict)
 
     def use(self, net: str, heading: float) -> None:
         """Note that an arm leaves a net's node with a heading [deg]."""
@@ -260,6 +268,7 @@ class Growth:
             cost=cost,
             start=state.start,
             ways=state.ways if way is None else {**state.ways, way[0]: way[1]},
+            roles={**state.roles, **self.roles} if self.roles else state.roles,
         )
 
 

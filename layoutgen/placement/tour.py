@@ -2,7 +2,8 @@
 
 Which arm of a junction continues straight and which leave at right angles follows from the schematic alone,
 so the corrections at a line's ends are known before anything has a place; left or right is the search's
-choice.
+choice. Only the nets of a cluster (``loops``) wait for its drawing. Loops are cut at their closers, so the
+walk itself meets none.
 """
 
 from __future__ import annotations
@@ -11,14 +12,19 @@ from collections.abc import Mapping
 from dataclasses import dataclass
 
 from layoutgen.circuit import Circuit, End, EndKind, Net
-from layoutgen.circuit.queries import ends_of, is_shunt
-from layoutgen.errors import InfeasibleError, WrongInputError
+from layoutgen.circuit.queries import element_key, ends_of, is_shunt, net_of
+from layoutgen.errors import WrongInputError
 from layoutgen.origin import Fault
+from layoutgen.placement.loops import Cluster, Loops, find_loops
 from layoutgen.placement.model import GROUND, Model
+from layoutgen.placement.twins import find_twins
 
-__all__ = ["ArmPlan", "Hub", "Tour", "plan_tour"]
+__all__ = ["ArmPlan", "Headings", "Hub", "Tour", "end_key", "plan_tour"]
 
 MOST_ARMS = 4
+
+Headings = tuple[tuple[End, float], ...]
+"""The ends that meet in a net, each with its outgoing heading [deg] in some common frame."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -31,16 +37,25 @@ class ArmPlan:
 
 @dataclass(frozen=True, slots=True)
 class Hub:
-    """A net as the walk meets it: by which end it arrives, and the arms that leave."""
+    """A net as the walk meets it: by which end it arrives, and the arms that leave.
+
+    For a net of a cluster, ``cluster`` is its number and ``inner`` are the ends of the cluster's elements;
+    the arms are what leaves the cluster, and their headings come with its drawing.
+    """
 
     net: str
     arrival: End | None
     arms: tuple[ArmPlan, ...]
     bank: tuple[End, ...] = ()
+    cluster: int | None = None
+    inner: tuple[End, ...] = ()
 
-    def canonical_headings(self) -> tuple[tuple[End, float], ...]:
+    def canonical_headings(self) -> Headings:
         """Return every end with its outgoing heading [deg] seen by the arriving traveller."""
         out: list[tuple[End, float]] = [] if self.arrival is None else [(self.arrival, 180.0)]
+        if self.cluster is not None:
+            rest = [end for end in (*self.inner, *(arm.end for arm in self.arms)) if end != self.arrival]
+            return (*out, *zip(rest, (0.0, 90.0, 270.0), strict=False))
         sides = [90.0, 270.0]
         out.extend((arm.end, arm.turn if arm.turn is not None else sides.pop(0)) for arm in self.arms)
         return tuple(out)
@@ -52,7 +67,8 @@ class Tour:
 
     ``weight`` counts the elements beyond an end, ``leads_to_port`` tells whether there is a port among them,
     ``edges`` names the edges asked for by those ports; ``stages`` counts, for each net, the transistors that
-    the walk passed on its way.
+    the walk passed on its way. ``entries`` are, by cluster, the nets at which the walk enters them. ``twins``
+    maps the key of an end to that of its counterpart in an equal branch that is laid before it.
     """
 
     hubs: Mapping[str, Hub]
@@ -61,38 +77,56 @@ class Tour:
     leads_to_port: Mapping[tuple[str, int], bool]
     edges: Mapping[tuple[str, int], frozenset[str]]
     stages: Mapping[str, int]
+    loops: Loops
+    entries: tuple[str, ...]
+    twins: Mapping[str, str]
 
 
-def plan_tour(model: Model) -> Tour:
+def end_key(end: End) -> str:
+    """Return the name under which an end's choice is kept."""
+    return f"{end.element}:{end.index}"
+
+
+def plan_tour(model: Model, cut: frozenset[str] = frozenset()) -> Tour:
     """Return the walk over a circuit.
 
+    Args:
+        model: The circuit.
+        cut: Elements of clusters that are to be cut at a line, because no drawing of them was found.
+
     Raises:
-        InfeasibleError: The circuit holds a loop, which this version does not place.
+        InfeasibleError: A loop that cannot be drawn in any way.
         WrongInputError: A junction has more than four arms.
     """
-    circuit = model.circuit
-    if circuit.loops:
-        loop = circuit.loops[0]
-        raise InfeasibleError(
-            loop[0],
-            f"it lies on a loop ({', '.join(loop[:8])}{', ...' if len(loop) > 8 else ''}), "
-            "and this version places circuits without loops only",
-            "open the loop, or draw its two halves as separate circuits",
-        )
-    walk = _Walk(circuit)
+    loops = find_loops(model.sized, cut)
+    walk = _Walk(model.circuit, loops)
     walk.run()
     faults = walk.crowded()
     if faults:
         raise WrongInputError(faults)
-    return Tour(walk.hubs, tuple(walk.roots), walk.weight, walk.to_port, walk.edges, walk.stages)
+    return Tour(
+        walk.hubs,
+        tuple(walk.roots),
+        walk.weight,
+        walk.to_port,
+        walk.edges,
+        walk.stages,
+        loops,
+        tuple(walk.entries[k] for k in range(len(loops.clusters))),
+        find_twins(model.circuit, walk.hubs, walk.order, loops),
+    )
 
 
 class _Walk:
     """State of one walk: depth first, with an own stack so that deep circuits are no trouble."""
 
-    def __init__(self, circuit: Circuit) -> None:
+    def __init__(self, circuit: Circuit, loops: Loops) -> None:
         self.circuit = circuit
         self.file = circuit.file
+        self.loops = loops
+        self.skipped = loops.companions
+        self.cluster_of = _by_net(loops.clusters)
+        self.in_cluster = _by_element(loops.clusters)
         self.spine = {name: i for i, name in enumerate(circuit.spine)}
         self.arrivals: dict[str, End] = {}
         self.order: list[str] = []
@@ -102,11 +136,12 @@ class _Walk:
         self.to_port: dict[tuple[str, int], bool] = {}
         self.edges: dict[tuple[str, int], frozenset[str]] = {}
         self.stages: dict[str, int] = {}
+        self.entries: dict[int, str] = {}
 
     def run(self) -> None:
         """Visit everything, then weigh the branches from the leaves up and plan each net's arms."""
         for root in self._root_candidates():
-            net = self._net_of(root)
+            net = net_of(self.file, root)
             if net in self.arrivals:
                 continue
             self.roots.append(root)
@@ -115,28 +150,24 @@ class _Walk:
             self._weigh(net)
         for net in self.order:
             self.hubs[net] = self._hub(self.circuit.nets[net], self.arrivals[net])
+            for k in self.cluster_of.get(net, ()):
+                self.entries.setdefault(k, net)
 
     def crowded(self) -> list[Fault]:
         """Return a fault for each junction with more arms than can be drawn."""
         faults = []
         for hub in self.hubs.values():
-            arms = len(hub.arms) + 1
-            if not hub.bank and arms > MOST_ARMS:
-                element = hub.arms[-1].end.element
-                origin = next(
-                    f"{table}.{element}"
-                    for table in ("ports", "lines", "coupled", "parts")
-                    if element in getattr(self.file, table)
-                )
-                faults.append(
-                    Fault(
-                        self.file.location(f"{origin}.nets"),
-                        f"{origin}.nets",
-                        f"net {hub.net} with {arms} arms",
-                        f"at most {MOST_ARMS} arms at a junction, banks excepted",
-                    )
-                )
+            ends = self._ends(hub.net)
+            if not hub.bank and len(ends) > MOST_ARMS:
+                key = f"{element_key(self.file, ends[-1].element)}.nets"
+                found = f"net {hub.net} with {len(ends)} arms"
+                allowed = f"at most {MOST_ARMS} arms at a junction, banks excepted"
+                faults.append(Fault(self.file.location(key), key, found, allowed))
         return faults
+
+    def _ends(self, net: str) -> list[End]:
+        """Return the ends that are arms of a net: those of parts laid beside another are not."""
+        return [end for end in self.circuit.nets[net].ends if end.element not in self.skipped]
 
     def _root_candidates(self) -> list[End]:
         names = [
@@ -148,17 +179,14 @@ class _Walk:
         ]
         return [ends[0][0] for name in names if (ends := ends_of(self.file, name)) and ends[0][1] != GROUND]
 
-    def _net_of(self, end: End) -> str:
-        return next(net for found, net in ends_of(self.file, end.element) if found.index == end.index)
-
     def _visit(self, root: End, net: str) -> None:
         stack = [(net, root)]
         self.arrivals[net], self.stages[net] = root, 0
         while stack:
             here, arrival = stack.pop()
             self.order.append(here)
-            for end in self.circuit.nets[here].ends:
-                if end == arrival:
+            for end in self._ends(here):
+                if end == arrival or end.element in self.loops.closers:
                     continue
                 for far, far_net in ends_of(self.file, end.element):
                     if far.index != end.index and far_net != GROUND and far_net not in self.arrivals:
@@ -173,13 +201,20 @@ class _Walk:
         edge = self.file.ports[end.element].edge if end.kind is EndKind.PORT else None
         return frozenset() if edge is None else frozenset([edge])
 
+    def _edges_on(self, net: str) -> frozenset[str]:
+        """Return the edges asked for by the ports on a net."""
+        asked = [self._asked_edge(end) for end in self._ends(net)]
+        return frozenset[str]().union(*asked)
+
     def _weigh(self, net: str) -> None:
         arrival = self.arrivals[net]
-        for end in self.circuit.nets[net].ends:
+        for end in self._ends(net):
             if end == arrival:
                 continue
             weight, port, edges = 1, end.kind is EndKind.PORT, self._asked_edge(end)
             for far, far_net in ends_of(self.file, end.element):
+                if far != end and end.element in self.loops.closers:
+                    edges |= self._edges_on(far_net)
                 if self.arrivals.get(far_net) == far and far != end:
                     weight += self.weight.get((far_net, -1), 0)
                     port = port or self.to_port.get((far_net, -1), False)
@@ -191,10 +226,15 @@ class _Walk:
             self.to_port[(net, -1)] = self.to_port.get((net, -1), False) or port
 
     def _hub(self, net: Net, arrival: End) -> Hub:
+        cluster = self._cluster_at(net.name)
+        if cluster is not None:
+            inner = tuple(end for end in self._ends(net.name) if self.in_cluster.get(end.element) == cluster)
+            arms = [end for end in self._ends(net.name) if end != arrival and end not in inner]
+            return Hub(net.name, arrival, tuple(ArmPlan(e, None) for e in arms), (), cluster, inner)
         bank = tuple(end for name in net.bank for end in net.ends if end.element == name)
         if bank and net.feed is not None and net.feed != arrival:
             bank = bank[::-1]
-        others = [end for end in net.ends if end != arrival and end not in bank]
+        others = [end for end in self._ends(net.name) if end != arrival and end not in bank]
         if not others:
             return Hub(net.name, arrival, (), bank)
         through = min(others, key=self._straightness)
@@ -202,6 +242,10 @@ class _Walk:
         if self._splits_evenly(through, rest):
             return Hub(net.name, arrival, tuple(ArmPlan(end, None) for end in others), bank)
         return Hub(net.name, arrival, (ArmPlan(through, 0.0), *(ArmPlan(end, None) for end in rest)), bank)
+
+    def _cluster_at(self, net: str) -> int | None:
+        """Return the number of the cluster that a net belongs to."""
+        return next(iter(self.cluster_of.get(net, ())), None)
 
     def _straightness(self, end: End) -> tuple[int, int, int, int, int]:
         """Return a key that is least for the arm which should go straight on."""
@@ -237,3 +281,17 @@ class _Walk:
     def _has_one_way_spine(self) -> bool:
         """True when the user named the spine: a named path is drawn straight, never split."""
         return self.file.layout is not None and self.file.layout.spine is not None
+
+
+def _by_net(clusters: tuple[Cluster, ...]) -> dict[str, tuple[int, ...]]:
+    """Return the clusters of each net."""
+    out: dict[str, tuple[int, ...]] = {}
+    for k, cluster in enumerate(clusters):
+        for net in cluster.nets:
+            out[net] = (*out.get(net, ()), k)
+    return out
+
+
+def _by_element(clusters: tuple[Cluster, ...]) -> dict[str, int]:
+    """Return the cluster of each element that belongs to one."""
+    return {name: k for k, cluster in enumerate(clusters) for name in cluster.elements}

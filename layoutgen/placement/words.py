@@ -21,6 +21,8 @@ __all__ = [
     "fixed_shapes",
     "headings_of",
     "least_legs",
+    "meeting_routes",
+    "reversed_word",
     "route_points",
     "solve_legs",
 ]
@@ -98,6 +100,11 @@ class LegRules:
 def headings_of(start: float, word: Word) -> tuple[float, ...]:
     """Return the heading [deg] of every leg."""
     return tuple(itertools.accumulate(word, lambda h, t: (h + t) % 360.0, initial=start % 360.0))
+
+
+def reversed_word(word: Word) -> Word:
+    """Return a word as travelled from its other end."""
+    return tuple(-turn for turn in reversed(word))
 
 
 def route_points(start: Pose, route: Route) -> tuple[tuple[Point, ...], Pose]:
@@ -279,6 +286,53 @@ def solve_legs(
     end = route_points(start, route)[1]
     off = max(abs(end.x - x) if x is not None else 0, abs(end.y - y) if y is not None else 0)
     return route if off <= _SOLVER_TOLERANCE_NM else None
+
+
+def meeting_routes(
+    word: Word, least: Sequence[int], start: Pose, x: int, y: int, jogs: Sequence[int]
+) -> Iterator[Route]:
+    """Yield routes of free length that end at a point, the shortest first.
+
+    Legs keep their least lengths; what is missing along an axis goes into one of the legs that run the right
+    way, each of them in turn, or in halves into two of them.
+
+    Args:
+        word: Turns [deg]; quarter turns only.
+        least: Least length of each leg [nm].
+        start: Where the line starts and where it is heading.
+        x: East coordinate of the end [nm].
+        y: North coordinate of the end [nm].
+        jogs: How much farther to go round things, where the word turns back [nm].
+    """
+    directions = [unit(heading) for heading in headings_of(start.heading, word)]
+    for jog in jogs:
+        fills = []
+        for axis, goal in ((0, x - start.x), (1, y - start.y)):
+            signs = [round(d[axis]) for d in directions]
+            fills.append(list(_axis_fills(signs, least, goal, jog)))
+        for along, across in itertools.product(*fills):
+            yield Route(word, tuple(a + b for a, b in zip(along, across, strict=True)))
+
+
+def _axis_fills(signs: Sequence[int], least: Sequence[int], goal: int, jog: int) -> Iterator[list[int]]:
+    """Yield the legs along one axis (0 for the others) that add up to a displacement [nm]."""
+    legs = [leg if sign else 0 for sign, leg in zip(signs, least, strict=True)]
+    if jog:
+        turns_back = 1 in signs and -1 in signs
+        if turns_back:
+            legs[signs.index(1)] += jog
+            legs[signs.index(-1)] += jog
+    missing = goal - sum(sign * leg for sign, leg in zip(signs, legs, strict=True))
+    if missing == 0:
+        yield legs
+        return
+    open_legs = [i for i, sign in enumerate(signs) if sign * missing > 0]
+    for i in open_legs:
+        yield [leg + (abs(missing) if j == i else 0) for j, leg in enumerate(legs)]
+    if len(open_legs) > 1:
+        half = abs(missing) // 2
+        more = {open_legs[0]: half, open_legs[-1]: abs(missing) - half}
+        yield [leg + more.get(j, 0) for j, leg in enumerate(legs)]
 
 
 def _mend_total(legs: list[int], total: int, free: Sequence[int]) -> list[int]:

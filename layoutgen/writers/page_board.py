@@ -1,8 +1,8 @@
 """The board as data for the page's canvas: whole nanometres, one flat list of numbers for each layer.
 
-A layer's ``shapes`` is, one after the other: item, style, number of outlines, and for each outline its number of
-vertices, the first vertex and the steps to the next ones. Its ``circles`` is: item, style, step of the middle
-from the last circle's, radius. Items and styles are numbered in the lists that stand beside the layers.
+A layer's ``shapes`` is, one after the other: item, style, number of outlines, and for each outline its number
+of vertices, the first vertex and the steps to the next ones. Its ``circles`` is: item, style, step of the
+middle from the last circle's, radius. Items and styles are numbered in the lists that stand beside the layers.
 """
 
 from __future__ import annotations

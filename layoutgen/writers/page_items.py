@@ -239,7 +239,9 @@ def _port(port: PlacedPort, given: Port) -> Item:
 def _strips(result: Result) -> Iterator[Item]:
     """Yield the strips; an element's strips on one net share an item."""
     for strip in result.placement.strips:
-        yield Item(f"strip:{strip.origin.element}:{strip.net}", f"strip {strip.name}", _strip_facts(strip))
+        yield Item(
+            f"strip:{strip.origin.element}:{strip.net}", f"strip on net {strip.net}", _strip_facts(strip)
+        )
 
 
 def _strip_facts(strip: Strip) -> tuple[Fact, ...]:

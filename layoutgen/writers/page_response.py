@@ -1,16 +1,23 @@
-"""The response on the report page: charts over the sweep, a table at the band's edges and the middle."""
+"""The response on the report page: plots over the sweep, a table at the band's edges, what limits the match."""
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+import math
+from collections.abc import Iterator, Sequence
 
-from layoutgen.response import Response
-from layoutgen.writers.charts import chart, match_traces, transmission_traces
-from layoutgen.writers.html import escape, table
+from layoutgen.numbers import fixed
+from layoutgen.response import CLOSE_ENOUGH, Correction, DeviceView, Doubt, Response
+from layoutgen.units import quantity_text
+from layoutgen.writers.charts import Trace, match_traces, transmission_traces
+from layoutgen.writers.html import Cell, cell, escape, items, table, zoom_link
+from layoutgen.writers.page_items import element_keys
+from layoutgen.writers.page_plots import level_plot, phase_plot, plot_data, smith_plot
 from layoutgen.writers.records import Result
 from layoutgen.writers.response_files import trace_values
 
-__all__ = ["response_section"]
+__all__ = ["response_numbers", "response_section"]
+
+Groups = list[tuple[str, Sequence[Trace]]]
 
 
 def response_section(result: Result) -> Iterator[str]:
@@ -23,14 +30,37 @@ def response_section(result: Result) -> Iterator[str]:
         "<p>Dashed: the schematic with lossless lines. Solid: the board as drawn, with loss, junctions, "
         "bends, pads and vias. Levels are to the ports' own impedances; the shaded band is the design's.</p>"
     )
-    band = result.circuit.file.design.band
-    match, through = match_traces(response), transmission_traces(response)
-    yield "<h3>Reflection at each port</h3>" + chart("Reflection", response.frequencies, match, band)
-    if through:
-        yield "<h3>Transmission between ports</h3>" + chart(
-            "Transmission", response.frequencies, through, band
-        )
+    yield '<div id="plots">' + "".join(_plots(result, response)) + "</div>"
     yield _numbers(response)
+    if response.correction is not None:
+        yield from _correction(response.correction)
+    if response.device is not None:
+        yield from _device(response.device)
+    if response.doubts:
+        yield _doubts(result, response.doubts)
+
+
+def response_numbers(response: Response) -> dict[str, object]:
+    """Return the numbers behind the plots, for the cursor."""
+    return plot_data(response, _groups(response))
+
+
+def _groups(response: Response) -> Groups:
+    groups: Groups = [("Reflection", match_traces(response))]
+    through = transmission_traces(response)
+    return [*groups, ("Transmission", through)] if through else groups
+
+
+def _plots(result: Result, response: Response) -> Iterator[str]:
+    band = result.circuit.file.design.band
+    headings = {"Reflection": "Reflection at each port", "Transmission": "Transmission between ports"}
+    for number, (name, traces) in enumerate(_groups(response)):
+        yield f'<h3>{headings[name]}</h3><div class="plots" data-group="{number}">'
+        yield level_plot(f"{name}, level", response, traces, band)
+        yield phase_plot(f"{name}, phase", response, traces, band)
+        if name == "Reflection":
+            yield smith_plot("Reflection on a Smith chart", response, traces)
+        yield "</div>"
 
 
 def _numbers(response: Response) -> str:
@@ -43,3 +73,83 @@ def _numbers(response: Response) -> str:
         "Wanted (deg)", "As drawn (deg)", "Change (deg)",
     )  # fmt: skip
     return table("Wanted and as drawn, at the band's edges and the design frequency", heads, rows)
+
+
+def _correction(correction: Correction) -> Iterator[str]:
+    """Yield what adjusting the lengths has done, and what holds the rest."""
+    yield (
+        "<h3>Lengths adjusted to the response</h3><p>Largest difference of an S-parameter between wanted and "
+        f"as drawn in the band, without losses: {fixed(correction.before, 4)} with the lengths of the "
+        f"budgets alone, {fixed(correction.after, 4)} as drawn. Losses change an S-parameter by "
+        f"{fixed(correction.losses, 4)} at most.</p>"
+    )
+    if correction.reachable > CLOSE_ENOUGH:
+        yield (
+            f"<p>No lengths bring it below {fixed(correction.reachable, 4)}; {CLOSE_ENOUGH:g} would count as "
+            "close.</p>"
+        )
+        yield items(
+            f"{escape(holder.element)}: {escape(holder.what)}; without it {fixed(holder.without, 4)}"
+            for holder in correction.holders
+        )
+
+
+def _device(view: DeviceView) -> Iterator[str]:
+    """Yield what transistor pins and bias feeds see, and where a transistor is least stable."""
+    heads = [f"{quantity_text(f, 'frequency')}" for f in view.frequencies]
+    if view.pins:
+        rows = [
+            [
+                escape(pin.pin),
+                cell(_ohms(pin.device) if pin.device is not None else None),
+                kind,
+                *map(_ohms, seen),
+            ]
+            for pin in view.pins
+            for kind, seen in (("wanted", pin.wanted), ("as drawn", pin.as_drawn))
+        ]
+        yield "<h3>What the transistor sees</h3>"
+        yield table("Impedance into the board (ohm)", ("Pin", "Device (ohm)", "", *heads), rows)
+    if view.feeds:
+        rows = [
+            [escape(feed.net), escape(", ".join(feed.ports)), kind, *(_size(z) for z in seen)]
+            for feed in view.feeds
+            for kind, seen in (("wanted", feed.wanted), ("as drawn", feed.as_drawn))
+        ]
+        yield "<h3>How nearly open the bias feeds look</h3>"
+        yield table("Magnitude of the impedance into the feed (ohm)", ("Net", "Ports", "", *heads), rows)
+    for stability in view.stability:
+        where = quantity_text(stability.at, "frequency")
+        yield (
+            f"<p>{escape(stability.part)}: least stable at {where}, K {fixed(stability.k, 3)}, "
+            f"mu {fixed(stability.mu, 3)}.</p>"
+        )
+
+
+def _ohms(z: complex) -> Cell:
+    """Return an impedance with two decimals, with four digits when large."""
+    if abs(z) >= 1e4:
+        return escape(f"{abs(z):.3g} (magnitude)")
+    return f"{fixed(z.real, 2)} {'+' if z.imag >= 0 else '−'} {fixed(abs(z.imag), 2)}j".replace("-", "−")
+
+
+def _size(z: complex) -> Cell:
+    size = abs(z)
+    if not math.isfinite(size):
+        return cell(None)
+    return "above 100 k" if size >= 1e5 else fixed(size, 1)
+
+
+def _doubts(result: Result, doubts: Sequence[Doubt]) -> str:
+    keys = element_keys(result)
+    rows = (
+        [
+            ", ".join(zoom_link(keys[name], name) if name in keys else escape(name) for name in doubt.items)
+            or "–",
+            escape(doubt.reason),
+        ]
+        for doubt in doubts
+    )
+    return "<h3>Where the circuit model is doubtful</h3>" + table(
+        "Places that a field solution would be worth its time for", ("Where", "Why"), rows
+    )

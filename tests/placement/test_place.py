@@ -196,20 +196,6 @@ class TestInfeasible:
         assert second[0] < first[0] and second[1] == first[1]
         assert faults(placement) == []
 
-    def test_a_loop_says_so(self) -> None:
-        """Catches a loop drawn as if it were open."""
-        data = base(
-            ports=two_ports(),
-            lines={
-                "in": free("a", "n"),
-                "one": line("n", "m", angle="90 deg"),
-                "two": line("n", "m", angle="90 deg"),
-                "out": free("m", "z"),
-            },
-        )
-        with pytest.raises(InfeasibleError, match="loop"):
-            placed(data)
-
 
 def test_too_short_a_line_is_wrong_input() -> None:
     """Catches a line drawn with no length because its corrections eat it."""

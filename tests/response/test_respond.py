@@ -18,7 +18,9 @@ from layoutgen.response.chain import series
 from layoutgen.response.drawn import drawn_network
 from layoutgen.response.network import GROUND, Network, Port, between
 from layoutgen.response.solve import solve
+from layoutgen.response.sweep import part_data
 from layoutgen.response.trace import trace_copper
+from layoutgen.response.wanted import wanted_network
 
 MAKER = Callable[..., Artwork]
 PORTS = dict[str, Any]
@@ -119,7 +121,7 @@ class TestTerminations:
         response = respond(artwork)
         assert response.ports == ("p1", "p2", "Q1.drain", "Q1.gate")
         assert response.impedances == (50.0, 50.0, 7 + 4j, 45.0)
-        assert response.notes == ()
+        assert [note[1] for note in response.notes] == ["Q1"]  # its drain pad, 4 mm wide, is no 45 ohm line
         spot = response.wanted_at_spots[1]
         z = 45.0 * (50.0 + 45.0j * np.tan(np.pi / 6)) / (45.0 + 50.0j * np.tan(np.pi / 6))
         assert spot[3, 3] == pytest.approx((z - 45.0) / (z + 45.0), abs=1e-9)
@@ -158,6 +160,18 @@ class TestData:
             lengths[planes] = (lines, len([p for p in copper.pieces if p.far.startswith("pad")]))
         assert lengths["pad_inner"][1] == 2 and lengths["pad_outer"][1] == 0
 
+    def test_a_line_ends_where_the_data_begin(self, artwork_of: MAKER, ports: PORTS, tmp_path: Path) -> None:
+        """The budget takes the pads out of the lines: with ideal data nothing is left between both responses.
+
+        Pads counted twice, or planes read the other way round, are 0.85 mm on each side, 0.04 in S.
+        """
+        write_data(tmp_path / "r.s2p", WIDE, series_data(WIDE, 5.0))
+        part = {**CHIP, "value": "5 ohm", "data": "r.s2p", "planes": "pad_outer"}
+        artwork = artwork_of({"ports": ports, "lines": LINES, "parts": {"R1": part}}, tmp_path)
+        data, f = part_data(artwork.placement.sized.circuit.file, tmp_path), np.array([2.245e9])
+        drawn = solve(drawn_network(artwork, f, data, lossless=True))
+        assert drawn == pytest.approx(solve(wanted_network(artwork.placement, f, data)), abs=2e-6)
+
     def test_a_one_port_stands_on_its_vias(self, artwork_of: MAKER, ports: PORTS, tmp_path: Path) -> None:
         """Data of one port between the pad and the via, not between the pad and perfect ground."""
         write_data(tmp_path / "short.s1p", WIDE, np.full((46, 1, 1), -1.0 + 0.0j))
@@ -193,7 +207,7 @@ class TestData:
         assert response.ports == ("p1", "p2")
         assert np.abs(response.wanted_at_spots[1]) == pytest.approx(np.abs(s[0]), abs=1e-9)
         assert abs(response.as_drawn_at_spots[1, 1, 0]) == pytest.approx(4.0, rel=0.1)
-        assert response.notes == ()
+        assert [note[1] for note in response.notes] == ["Q1"]
 
 
 class TestRange:

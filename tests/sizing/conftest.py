@@ -40,11 +40,12 @@ RULES: dict[str, Any] = {
 def build() -> Callable[..., Circuit]:
     """Builds a circuit; tables given replace those of the base, ``substrate`` and ``design`` are merged."""
 
-    def built(rules: dict[str, Any] | None = None, **tables: Any) -> Circuit:
+    def built(rules: dict[str, Any] | None = None, folder: Path | None = None, **tables: Any) -> Circuit:
         data = copy.deepcopy(BASE)
         for name in ("substrate", "design"):
             data[name].update(tables.pop(name, {}))
-        found = inputs_from_data({**data, **tables}, rules={**RULES, **(rules or {})}, name="c.toml")
+        both = {**RULES, **(rules or {})}
+        found = inputs_from_data({**data, **tables}, rules=both, folder=folder, name="c.toml")
         return build_circuit(found.circuit, found.rules)
 
     return built

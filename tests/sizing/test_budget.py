@@ -334,3 +334,66 @@ class TestDefaults:
         assert sorted(entry.cause for entry in entries) == ["line", "open_end", "open_end", "step", "step"]
         assert total(entries) == pytest.approx(math.pi / 2, abs=1e-12)
         assert 0.0 < length < math.pi / 2 / sized.pairs["k"].beta
+
+
+class TestPlanes:
+    """Where a part's data were measured decides whose the pad is."""
+
+    @pytest.fixture
+    def held(self, build, tmp_path):
+        """Sizes two lines with a resistor between them, whose data were measured at the given planes."""
+        (tmp_path / "r.s2p").write_text("# GHz S RI R 50\n1 0 0 1 0 1 0 0 0\n3 0 0 1 0 1 0 0 0\n")
+
+        def sized(**more):
+            part = {"kind": "resistor", "nets": ["c", "d"], "value": "5 ohm", "case": "0603", **more}
+            tables = {"lines": {"x": line("a", "c"), "y": line("d", "b")}, "parts": {"R": part}}
+            return size_circuit(build(folder=tmp_path, **tables))
+
+        return sized
+
+    def test_a_pad_within_the_data_takes_its_length_off(self, held):
+        """Would catch a pad counted in the line and in the data: 0.85 mm too much on each side."""
+        sized = held(data="r.s2p", planes="pad_outer")
+        entry = pad_correction(sized, "x", "c", 0.95e-3, 0.85e-3)
+        assert entry == BudgetEntry("pad", -sized.lines["x"].beta * 0.85e-3, "c")
+
+    def test_the_outer_edge_is_where_data_are_measured_when_nothing_is_said(self, held):
+        said, unsaid = held(data="r.s2p", planes="pad_outer"), held(data="r.s2p")
+        assert pad_correction(unsaid, "x", "c", 1e-3, 1e-3) == pad_correction(said, "x", "c", 1e-3, 1e-3)
+
+    @pytest.mark.parametrize("more", [{}, {"data": "r.s2p", "planes": "pad_inner"}])
+    def test_a_pad_outside_the_data_belongs_to_the_line(self, held, more):
+        """Would catch planes read the other way round, or planes that count without data."""
+        sized = held(**more)
+        u = sized.lines["x"].width / H
+        expected = sized.lines["x"].beta * H * float(pad_excess(u, 2.4e-3 / H, 2e-3 / H, ER, T))
+        assert pad_correction(sized, "x", "c", 2.4e-3, 2e-3).angle == pytest.approx(expected, rel=1e-12)
+
+
+class TestResponseCorrection:
+    def test_it_is_an_entry_and_the_sum_stays(self, build):
+        """Would catch a correction that moves the angle asked for instead of the copper."""
+        circuit = build(lines={"x": line("a", "b")})
+        plain, corrected = size_circuit(circuit), size_circuit(circuit, corrections={"x": 0.1})
+        length, entries = line_budget(corrected, "x", ())
+        assert [entry.cause for entry in entries] == ["line", "response_correction"]
+        assert total(entries) == pytest.approx(math.radians(40.0), rel=1e-12)
+        assert line_budget(plain, "x", ())[0] - length == pytest.approx(0.1 / plain.lines["x"].beta, rel=1e-9)
+
+    def test_nothing_changes_without_one(self, build):
+        circuit = build(lines={"x": line("a", "b")})
+        assert line_budget(size_circuit(circuit, corrections={}), "x", ()) == line_budget(
+            size_circuit(circuit), "x", ()
+        )
+
+    def test_lines_by_length_have_none(self, build):
+        """Would catch a line drawn as written with an entry that says otherwise."""
+        circuit = build(lines={"x": {"nets": ["a", "b"], "impedance": "50 ohm", "length": "9 mm"}})
+        entries = budget_for_length(size_circuit(circuit, corrections={"x": 0.1}), "x", 9e-3, ())[1]
+        assert [entry.cause for entry in entries] == ["line"]
+
+    def test_it_can_leave_no_length(self, build):
+        """Would catch a negative length handed on to the placement."""
+        sized = size_circuit(build(lines={"x": line("a", "b")}), corrections={"x": 0.8})
+        with pytest.raises(WrongInputError, match=r"lines\.x\.angle"):
+            line_budget(sized, "x", ())

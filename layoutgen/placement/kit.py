@@ -1,0 +1,162 @@
+"""What every laying of things needs: the circuit, the walk, lengths; strips, part bodies, ways kept clear."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, field
+
+from layoutgen.circuit import End
+from layoutgen.circuit.queries import net_of
+from layoutgen.geometry import Point
+from layoutgen.placement.bodies import OVERLAP, BodyLand, PartBody
+from layoutgen.placement.budgets import LineLengths, strip_width
+from layoutgen.placement.clearance import Kind, Obstacle
+from layoutgen.placement.frame import Box, Pose, box_to_world, to_world
+from layoutgen.placement.model import GROUND, Model, strip_owner
+from layoutgen.placement.state import EDGES, Growth, LaidStrip, corridor_box, leg_boxes
+from layoutgen.placement.tour import Hub, Tour
+
+__all__ = ["Kit", "PinnedError", "beyond", "part_obstacles", "root_edge", "span_along", "world"]
+
+PIN_TOLERANCE = 5  # [nm]: rounding of solved legs
+
+
+class PinnedError(Exception):
+    """A candidate cannot be laid as something asks; carries element and what was wrong."""
+
+    def __init__(self, element: str, what: str) -> None:
+        """Keep both."""
+        super().__init__(what)
+        self.element, self.what = element, what
+
+
+@dataclass(slots=True)
+class Kit:
+    """Lays single pieces into a growing candidate; knows the circuit, remembers turned bodies only."""
+
+    model: Model
+    tour: Tour
+    lengths: LineLengths
+    _turned: dict[tuple[str, float], list[Obstacle]] = field(default_factory=dict)
+    _spans: dict[tuple[str, float], tuple[int, int]] = field(default_factory=dict)
+
+    def net(self, end: End) -> str:
+        """Return the net of an end."""
+        return net_of(self.model.file, end)
+
+    def part_obstacles(self, body: PartBody, pose: Pose) -> list[Obstacle]:
+        """Return a part's boxes at a pose; turned once per heading, then only moved."""
+        key = (body.name, pose.heading)
+        if key not in self._turned:
+            self._turned[key] = part_obstacles(body, Pose(0, 0, pose.heading))
+        x, y = pose.x, pose.y
+        return [
+            Obstacle((b[0] + x, b[1] + y, b[2] + x, b[3] + y), item.kind, item.owner, net=item.net)
+            for item in self._turned[key]
+            for b in (item.box,)
+        ]
+
+    def span(self, body: PartBody, land: BodyLand, side: float) -> tuple[int, int]:
+        """Return a bank part's reach along the strip, remembered (see :func:`span_along`)."""
+        key = (body.name, side)
+        if key not in self._spans:
+            self._spans[key] = span_along(body, land, side)
+        return self._spans[key]
+
+    def strip(self, growth: Growth, net: str, width: int, points: tuple[Point, ...]) -> None:
+        """Lay a strip of a net; nothing where it has no length."""
+        if points[0] == points[-1]:
+            return
+        growth.strips.append(LaidStrip(net, width, points))
+        owner = strip_owner(net)
+        growth.obstacles += [Obstacle(box, Kind.STRIP, owner) for box in leg_boxes(points, width)]
+
+    def keep_way(self, growth: Growth, owner: str, kind: Kind, point: Point, edge: str, width: int) -> None:
+        """Keep the way from a point to the board's edge clear."""
+        box = corridor_box(point, EDGES[edge], width)
+        growth.obstacles.append(Obstacle(box, kind, owner, corridor=True))
+
+    def leaves_as_hinted(self, end: End, heading: float) -> bool:
+        """True when a line whose first end leaves with a heading [deg] keeps its ``leave`` hint."""
+        layout = self.model.file.layout
+        hint = layout.hints.get(end.element) if layout is not None else None
+        return hint is None or hint.leave is None or heading == hint.leave % 360.0
+
+    def beside(self, across: list[int]) -> int:
+        """Return how far from a node a pad begins [nm], for the half widths of the lines that run across.
+
+        It begins in the edge of the widest; where another is a little narrower, in that one's edge, so that
+        no slit too narrow for etching is left.
+        """
+        widest, least = max(across, default=0), min(across, default=0)
+        near = widest - least < 2 * self.model.limits.gap + OVERLAP
+        return max(0, (least if near else widest) - OVERLAP)
+
+    def inset(self, port: str) -> int:
+        """Return how far short of the profile a port's copper ends [nm]."""
+        return 0 if self.model.file.ports[port].to_edge else self.model.limits.edge
+
+    def carries_port(self, net: str) -> str | None:
+        """Return the first port on a net."""
+        return next((name for name, port in self.model.file.ports.items() if port.net == net), None)
+
+    def hub_strip_width(self, hub: Hub) -> int:
+        """Return the width [nm] of the strip that joins a net to its port."""
+        return self.bank_width(hub) if hub.bank else strip_width(self.model, hub.net)
+
+    def bank_width(self, hub: Hub) -> int:
+        """Return a bank's strip width [nm]: as wide as feed, pads and current need."""
+        widths = [
+            self.model.widths[end.element]
+            for end in self.model.circuit.nets[hub.net].ends
+            if end.element in self.model.widths
+        ]
+        pads = [self.model.bodies[end.element].land_at(end).along for end in hub.bank]
+        return max([*widths, min(pads)])
+
+
+def world(pose: Pose, local: Pose) -> Pose:
+    """Return a pose given in a part's frame as a pose of the board."""
+    x, y = to_world(pose, local.x, local.y)
+    return Pose(x, y, (pose.heading + local.heading) % 360.0)
+
+
+def beyond(body: PartBody, land: BodyLand) -> int:
+    """Return how far the courtyard reaches beyond a pad's outer edge [nm]."""
+    turned = Pose(0, 0, -land.heading % 360.0)
+    courtyard = box_to_world(turned, body.courtyard)
+    edge = to_world(turned, land.outer.x, land.outer.y)[0]
+    return max(0, courtyard[2] - edge)
+
+
+def span_along(body: PartBody, land: BodyLand, side: float) -> tuple[int, int]:
+    """Return a bank part's reach [nm] along the strip, from its axis, back and forth.
+
+    ``side`` [deg] is the turn from the strip's heading to the part.
+    """
+    pose = Pose(0, 0, (180.0 + side - land.heading) % 360.0)
+    x0, _, x1, _ = body.extent(pose)
+    axis = to_world(pose, land.x, land.y)[0]
+    return x0 - axis, x1 - axis
+
+
+def part_obstacles(body: PartBody, pose: Pose) -> list[Obstacle]:
+    """Return a part's boxes at a pose: pads, ground copper, courtyard, cut-out, holes."""
+    name = body.name
+    out = [Obstacle(box_to_world(pose, box), Kind.BODY, name) for box in body.solid]
+    for land in body.lands:
+        if land.has_copper:
+            kind = Kind.GROUND if land.net == GROUND else Kind.PAD
+            out.append(Obstacle(box_to_world(pose, land.box), kind, name, net=land.net))
+    out += [Obstacle(box_to_world(pose, box), Kind.GROUND, name) for box in body.grounds]
+    if body.cutout is not None:
+        out.append(Obstacle(box_to_world(pose, body.cutout), Kind.CUTOUT, name))
+    for hole in body.holes:
+        r = hole.diameter // 2 + 1
+        box: Box = (hole.x - r, hole.y - r, hole.x + r, hole.y + r)
+        out.append(Obstacle(box_to_world(pose, box), Kind.HOLE, name))
+    return out
+
+
+def root_edge(model: Model, port: str) -> str:
+    """Return the edge of the port where the walk begins: as written, else west."""
+    return model.file.ports[port].edge or "west"

@@ -1,0 +1,273 @@
+"""The ways open to each thing that is to be laid: sides, routes, drawings; how each would be built."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass, field, replace
+from functools import partial
+
+from layoutgen.circuit import End, EndKind
+from layoutgen.circuit.queries import ends_of
+from layoutgen.placement.budgets import LineLengths
+from layoutgen.placement.cluster import ClusterPlan, ClusterSolver, Solution
+from layoutgen.placement.frame import Pose
+from layoutgen.placement.kit import Kit
+from layoutgen.placement.lay import Layer
+from layoutgen.placement.lay_cluster import Pinning, lay_cluster
+from layoutgen.placement.model import GROUND, Model
+from layoutgen.placement.records import Choice
+from layoutgen.placement.routes import RouteChoice, Router
+from layoutgen.placement.state import EDGES, Growth, Pending, State
+from layoutgen.placement.tour import Tour, end_key
+from layoutgen.placement.words import route_points
+
+__all__ = ["Way", "Ways"]
+
+_CROWDING = 3.0  # bends that a stub is worth on the side away from the feeds
+_CLUSTER_BENDS = 3.0  # what a bend inside a loop counts for
+_LOPSIDED = 12.0  # bends that a symmetric drawing of a symmetric loop is worth
+_SLENDER = 2.0  # bends for each unit by which a loop is more slender than
+_PLAIN_SLENDERNESS = 2.0  # this: long against wide [-]
+
+Extent = tuple[float, float, float, float]
+
+
+@dataclass(frozen=True, slots=True)
+class Way:
+    """One way to lay an element: the choice made, the least extent and bends it brings, how to lay it."""
+
+    element: str
+    choice: Choice
+    extent: Extent
+    bends: float
+    lay: Callable[[Growth], None]
+    crowding: float = 0.0
+
+
+@dataclass(slots=True)
+class Ways:
+    """Lists the ways; holds the circuit, and what was worked out for its loop clusters."""
+
+    model: Model
+    tour: Tour
+    lengths: LineLengths
+    layer: Layer = field(init=False)
+    router: Router = field(init=False)
+    clusters: list[ClusterSolver] = field(init=False)
+    fold_spine: bool = False
+    any_side: bool = False
+    _spine: frozenset[str] = field(init=False)
+
+    def __post_init__(self) -> None:
+        """Set the helpers up."""
+        kit = Kit(self.model, self.tour, self.lengths)
+        self.layer = Layer(kit)
+        self.router = Router(self.model, self.tour, self.lengths)
+        self.clusters = [ClusterSolver(kit, self.router, k) for k in range(len(self.tour.loops.clusters))]
+        self._spine = frozenset(self.model.circuit.spine)
+
+    def mate(self, pending: Pending, state: State) -> Pending | None:
+        """Return the other end of a line that closes a loop, where that waits too."""
+        if pending.end.element not in self.tour.loops.closers:
+            return None
+        both = (p for p in state.pending if p.end.element == pending.end.element)
+        return next((p for p in both if p.end != pending.end), None)
+
+    def is_ready(self, pending: Pending, state: State) -> bool:
+        """True unless something closes a loop and its other node has no place yet."""
+        closes = pending.end.element in self.tour.loops.closers
+        return not closes or self.mate(pending, state) is not None
+
+    # -- listing -------------------------------------------------------------------------------------
+
+    def of(self, pending: Pending, state: State) -> Iterator[Way]:
+        """Yield the ways open to a pending thing; ``state`` may hold it still, or not any more."""
+        if pending.cluster is not None:
+            yield from self._cluster_ways(pending, state)
+            return
+        mate = self.mate(pending, state)
+        used = state.used.get(self._net(pending.end), ())
+        for turn in pending.turns:
+            heading = (pending.at.heading + turn) % 360.0
+            if heading in used or self._leads_away(pending, heading):
+                continue
+            crowding = _CROWDING if self._joins_feeds(pending, heading) else 0.0
+            ways = self._ways(pending, turn, state)
+            if mate is not None:
+                ways = self._closing_ways(pending, mate, turn, state)
+            for way in ways:
+                yield replace(way, bends=way.bends + crowding, crowding=crowding) if crowding else way
+
+    def _joins_feeds(self, pending: Pending, heading: float) -> bool:
+        """True when a stub or shunt part would leave to the side where the feeds go, and has a choice."""
+        key = (pending.end.element, pending.end.index)
+        if len(pending.turns) < 2 or self.tour.leads_to_port.get(key, False):
+            return False
+        asked = {port.edge for port in self.model.file.ports.values() if port.kind == "dc" and port.edge}
+        return any(EDGES[edge] == heading for edge in asked)
+
+    def _leads_away(self, pending: Pending, heading: float) -> bool:
+        """True when an arm could leave towards the edge that its ports ask for, and this is not the way."""
+        edges = self.tour.edges.get((pending.end.element, pending.end.index), frozenset())
+        if self.any_side or len(edges) != 1 or len(pending.turns) < 2:
+            return False
+        wanted = EDGES[next(iter(edges))]
+        choices = [(pending.at.heading + turn) % 360.0 for turn in pending.turns]
+        return wanted in choices and heading == (wanted + 180.0) % 360.0
+
+    def _net(self, end: End) -> str:
+        return next(net for found, net in ends_of(self.model.file, end.element) if found.index == end.index)
+
+    def _ways(self, pending: Pending, turn: float, state: State) -> Iterator[Way]:
+        end, layer, extent = pending.end, self.layer, state.extent
+        if end.kind is EndKind.LINE and self.model.file.lines[end.element].shape == "radial":
+            yield Way(
+                end.element, Choice(turn, 1), extent, 0.0, partial(layer.radial, pending=pending, turn=turn)
+            )
+        elif end.kind is EndKind.LINE:
+            yield from self._line_ways(pending, turn, state)
+        elif end.kind is EndKind.COUPLED:
+            length, start = self.lengths.pair_length(end.element, state.roles), pending.at.turned(turn)
+            for side in (1, -1):
+                lay_pair = partial(layer.pair, end=end, start=start, side=side, length=length)
+                yield Way(end.element, Choice(turn, side), extent, 0.0, lay_pair)
+        elif end.kind is EndKind.PORT:
+            yield Way(
+                end.element,
+                Choice(turn, 1),
+                extent,
+                0.0,
+                partial(layer.ports.arm, pending=pending, turn=turn),
+            )
+        else:
+            for side in (1, -1) if self._meets_bank(end) else (1,):
+                lay_part = partial(layer.pad_arm, pending=pending, turn=turn, bank_side=side)
+                yield Way(end.element, Choice(turn, side), extent, 0.0, lay_part)
+
+    def _line_ways(self, pending: Pending, turn: float, state: State) -> Iterator[Way]:
+        end, start = pending.end, pending.at.turned(turn)
+        straight = self._goes_straight(end) and not self.fold_spine
+        sides = (1, -1) if self._meets_bank(end) else (1,)
+        weight = self.layer.bend_weight(end)
+        for choice in self.router.choices(end, start, state, straight=straight):
+            last = (start.heading + sum(choice.route.word)) % 360.0
+            if not self.router.leaves_as_hinted(end, start.heading, last):
+                continue
+            extent = self._line_extent(end, start, choice, state)
+            for side in sides:
+                lay = partial(
+                    self.layer.line,
+                    end=end,
+                    start=start,
+                    route=choice.route,
+                    edge=choice.edge,
+                    bank_side=side,
+                )
+                made = Choice(turn, side, choice.route.word, choice.route.legs, choice.edge)
+                yield Way(end.element, made, extent, weight * len(choice.route.word), lay)
+
+    def _line_extent(
+        self, end: End, start: Pose, choice: RouteChoice, state: State
+    ) -> tuple[float, float, float, float]:
+        """Return the least extent [nm] that a route brings about: a bound for the cost of building it."""
+        points = route_points(start, choice.route)[0]
+        x0, y0, x1, y1 = state.extent
+        half = self.model.widths[end.element] / 2
+        return (
+            min(x0, *(p[0] - half for p in points)),
+            min(y0, *(p[1] - half for p in points)),
+            max(x1, *(p[0] + half for p in points)),
+            max(y1, *(p[1] + half for p in points)),
+        )
+
+    def _meets_bank(self, end: End) -> bool:
+        """True when an element leads straight, or through parts, into a bank: its side is then a choice."""
+        seen, stack = set(), [end]
+        while stack:
+            here = stack.pop()
+            for far, net in ends_of(self.model.file, here.element):
+                if far.index == here.index or net == GROUND or net in seen:
+                    continue
+                seen.add(net)
+                hub = self.tour.hubs[net]
+                if hub.bank:
+                    return True
+                if hub.arrival == far and len(hub.arms) == 1 and hub.arms[0].end.kind is EndKind.PAD:
+                    stack.append(hub.arms[0].end)
+        return False
+
+    def _goes_straight(self, end: End) -> bool:
+        """True for an element of the straight path, unless it is one of two equal arms."""
+        key = end_key(end)
+        return end.element in self._spine and key not in self.tour.twins and key not in self._firsts
+
+    @property
+    def _firsts(self) -> frozenset[str]:
+        """The ends that others follow."""
+        if self._twinned is None:
+            self._twinned = frozenset(self.tour.twins.values())
+        return self._twinned
+
+    _twinned: frozenset[str] | None = field(init=False, default=None)
+
+    # -- loops ---------------------------------------------------------------------------------------
+
+    def _closing_ways(self, pending: Pending, mate: Pending, turn: float, state: State) -> Iterator[Way]:
+        """Yield the ways of a line between two placed nodes."""
+        end, start = pending.end, pending.at.turned(turn)
+        weight = self.layer.bend_weight(end)
+        used = state.used.get(self._net(mate.end), ())
+        for other in mate.turns:
+            out = (mate.at.heading + other) % 360.0
+            if out in used:
+                continue
+            target = mate.at.turned(other + 180.0)
+            for choice in self.router.closing(end, start, target, state):
+                if not self.router.leaves_as_hinted(end, start.heading, target.heading):
+                    continue
+                lay = partial(self.layer.closing, end=end, mate=mate, start=start, route=choice.route)
+                made = Choice(turn, 1, choice.route.word, choice.route.legs)
+                extent = self._line_extent(end, start, choice, state)
+                yield Way(end.element, made, extent, weight * len(choice.route.word), lay)
+
+    def _cluster_ways(self, pending: Pending, state: State) -> Iterator[Way]:
+        """Yield the drawings of a loop cluster, each also mirrored."""
+        assert pending.cluster is not None  # asked for clusters only
+        solver = self.clusters[pending.cluster]
+        for solution in solver.solutions():
+            for mirror in (1, -1):
+                yield self._cluster_way(pending, state, solver, solution, mirror)
+
+    def cluster_way(self, pending: Pending, state: State, plan: ClusterPlan, mirror: int) -> Way | None:
+        """Return the way of a drawing chosen earlier, None where it no longer closes."""
+        assert pending.cluster is not None  # asked for clusters only
+        solver = self.clusters[pending.cluster]
+        solution = solver.solve(plan)
+        return None if solution is None else self._cluster_way(pending, state, solver, solution, mirror)
+
+    def _cluster_way(
+        self, pending: Pending, state: State, solver: ClusterSolver, solution: Solution, mirror: int
+    ) -> Way:
+        pinning = Pinning.of(solver, solution, pending.at, mirror)
+        points = [pinning.point(point) for path in solver.paths(solution) for point in path]
+        x0, y0, x1, y1 = state.extent
+        extent = (
+            min(x0, *(p[0] for p in points)),
+            min(y0, *(p[1] for p in points)),
+            max(x1, *(p[0] for p in points)),
+            max(y1, *(p[1] for p in points)),
+        )
+        legs = tuple(leg for found in solution.shape.legs for leg in found)
+        lopsided = 0.0 if solution.symmetric or not solver.may_be_symmetric else _LOPSIDED
+        lopsided += _SLENDER * max(0.0, solution.slenderness - _PLAIN_SLENDERNESS)
+        lay = partial(
+            lay_cluster, layer=self.layer, solver=solver, solution=solution, at=pending.at, mirror=mirror
+        )
+        return Way(
+            pending.end.element,
+            Choice(0.0, mirror, (), legs, plan=solution.plan),
+            extent,
+            _CLUSTER_BENDS * solution.plan.drawing.bends + lopsided,
+            lay,
+            crowding=lopsided,
+        )

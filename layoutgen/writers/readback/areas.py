@@ -1,0 +1,155 @@
+"""Areas of the model and of what was read, and how much they differ.
+
+Everything is in nanometres. Circles are told apart from other outlines and drawn as the same polygon on both
+sides, so that chords do not blur a comparison; other arcs are chords within 5 nm.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Iterable, Sequence
+from dataclasses import dataclass, field
+
+import numpy as np
+import numpy.typing as npt
+import shapely
+from shapely.geometry.base import BaseGeometry
+
+from layoutgen.artwork import Shape
+from layoutgen.geometry import Ring
+from layoutgen.writers.outlines import as_circle, bulge_radius
+from layoutgen.writers.readback.records import Check
+
+__all__ = [
+    "FINE_NM",
+    "Area",
+    "arc_length",
+    "area_check",
+    "circle_check",
+    "count_check",
+    "discs",
+    "model_area",
+]
+
+FINE_NM = 5.0
+"""Largest distance of a chord from its arc [nm], where arcs are compared as arcs."""
+FLOOR_MM2 = 1e-5
+"""Difference in area [mm^2] that is always allowed: half a nanometre along 20 mm of edge."""
+_SIDES = 64
+_NM2_PER_MM2 = 1e12
+
+Circle = tuple[float, float, float]
+"""Middle and diameter [nm]."""
+
+
+@dataclass(slots=True)
+class Area:
+    """Polygons and circles [nm] of one layer; ``even_odd`` when they are not simply added."""
+
+    polygons: list[BaseGeometry] = field(default_factory=list)
+    circles: list[Circle] = field(default_factory=list)
+    even_odd: bool = False
+
+    def region(self) -> BaseGeometry:
+        """Return all of it as one geometry."""
+        pieces = [*self.polygons, *discs(self.circles)]
+        if not self.even_odd:
+            return shapely.union_all(pieces)
+        region: BaseGeometry = shapely.Polygon()
+        for piece in pieces:
+            region = shapely.symmetric_difference(region, piece)
+        return region
+
+
+def discs(circles: Sequence[Circle]) -> list[BaseGeometry]:
+    """Return circles as regular polygons, all of the same number of sides."""
+    angle = np.arange(_SIDES) * (2.0 * np.pi / _SIDES)
+    unit = np.column_stack([np.cos(angle), np.sin(angle)])
+    return [shapely.Polygon(unit * (d / 2.0) + np.array([x, y])) for x, y, d in circles]
+
+
+def model_area(shapes: Iterable[Shape], tolerance: float = FINE_NM, split_circles: bool = True) -> Area:
+    """Return the area of a layer's shapes.
+
+    Args:
+        shapes: Shapes of one layer.
+        tolerance: Largest distance of chords from arcs [nm].
+        split_circles: Whether circles are kept as circles; else they are chords like all arcs.
+    """
+    area = Area()
+    for shape in shapes:
+        circle = as_circle(shape.outline) if split_circles and not shape.holes else None
+        if circle:
+            area.circles.append((float(circle[0]), float(circle[1]), 2.0 * circle[2]))
+        else:
+            area.polygons.append(_polygon(shape, tolerance))
+        area.even_odd |= shape.layer == "profile"
+    return area
+
+
+def _polygon(shape: Shape, tolerance: float) -> BaseGeometry:
+    holes = [_points(hole, tolerance) for hole in shape.holes]
+    return shapely.Polygon(_points(shape.outline, tolerance), holes)
+
+
+def _points(ring: Ring, tolerance: float) -> npt.NDArray[np.float64]:
+    return np.array(ring.chords(tolerance), dtype=float)
+
+
+def arc_length(shapes: Iterable[Shape]) -> float:
+    """Return the length [mm] of all arcs that are no circles."""
+    total = 0.0
+    for shape in shapes:
+        rings = shape.holes if as_circle(shape.outline) and not shape.holes else (shape.outline, *shape.holes)
+        for ring in rings:
+            after = (*ring.points[1:], ring.points[0])
+            total += math.fsum(
+                abs(4.0 * math.atan(bulge)) * bulge_radius(p, q, bulge)
+                for p, q, bulge in zip(ring.points, after, ring.bulges or (0.0,) * len(after), strict=True)
+                if bulge
+            )
+    return total * 1e-6
+
+
+def area_check(file: str, reader: str, what: str, found: Area, wanted: Area, arcs: float = 0.0) -> Check:
+    """Return the area of the symmetric difference; the limit grows with the length of arcs [mm]."""
+    difference = shapely.symmetric_difference(found.region(), wanted.region()).area / _NM2_PER_MM2
+    limit = FLOOR_MM2 + 2.0 * FINE_NM * 1e-6 * arcs
+    return Check(
+        file=file,
+        reader=reader,
+        what=f"{what}: area of the symmetric difference",
+        measured=difference,
+        limit=limit,
+        unit="mm^2",
+    )
+
+
+def count_check(file: str, reader: str, what: str, found: int, wanted: int) -> Check:
+    """Return by how much a count is off; none is allowed."""
+    return Check(
+        file=file,
+        reader=reader,
+        what=what,
+        measured=abs(found - wanted),
+        limit=0,
+        detail=f"found {found}, wanted {wanted}",
+    )
+
+
+def circle_check(
+    file: str, reader: str, what: str, found: Iterable[Circle], wanted: Iterable[Circle]
+) -> Check:
+    """Return how many circles are on one side only, compared in whole nanometres."""
+    left, right = _counted(found), _counted(wanted)
+    odd = sum(abs(left.get(key, 0) - right.get(key, 0)) for key in {*left, *right})
+    detail = f"found {sum(left.values())}, wanted {sum(right.values())}"
+    return Check(file=file, reader=reader, what=what, measured=odd, limit=0, detail=detail)
+
+
+def _counted(circles: Iterable[Circle]) -> dict[tuple[int, int, int], int]:
+    counts: dict[tuple[int, int, int], int] = {}
+    for x, y, diameter in circles:
+        key = (round(x), round(y), round(diameter))
+        counts[key] = counts.get(key, 0) + 1
+    return counts

@@ -1,0 +1,149 @@
+"""Gerber read back by gerbonara: file attributes, unit, polarity, flashes, areas, nets of flashed pads."""
+
+from __future__ import annotations
+
+import math
+import warnings
+from collections import Counter
+from collections.abc import Iterable
+from pathlib import Path
+from typing import Any
+
+import numpy as np
+import shapely
+from shapely.geometry.base import BaseGeometry
+
+from layoutgen.writers.gerber import GERBER_FUNCTIONS
+from layoutgen.writers.gerber_objects import Flash, objects_of
+from layoutgen.writers.readback.areas import (
+    FINE_NM,
+    Area,
+    arc_length,
+    area_check,
+    count_check,
+    model_area,
+)
+from layoutgen.writers.readback.records import Check, Evidence, NotProved, optional_library
+from layoutgen.writers.records import Result
+from layoutgen.writers.scene import layers_of
+
+__all__ = ["layer_of", "read_gerber"]
+
+_READER = "gerbonara"
+_NM = 1e6
+_FINE_MM = FINE_NM / _NM
+
+
+def layer_of(file: str) -> str | None:
+    """Return the layer that a Gerber file's name ends with, None for another name."""
+    return next((layer for layer in GERBER_FUNCTIONS if file.endswith(f"_{layer}.gbr")), None)
+
+
+def read_gerber(file: str, data: bytes, result: Result) -> Evidence:
+    """Yield what gerbonara finds in a Gerber file."""
+    layer, library = layer_of(file), optional_library("gerbonara")
+    if layer is None:
+        yield NotProved(file, "its name tells no layer of the model")
+        return
+    if library is None:
+        yield NotProved(file, "no independent reader for Gerber is installed (gerbonara)")
+        return
+    with warnings.catch_warnings(record=True) as told:
+        warnings.simplefilter("always")
+        text = data.decode("utf-8")
+        read = library.GerberFile.from_string(text, filename=Path(file))
+    yield count_check(file, _READER, "warnings of the reader", len(told), 0)
+    yield from _attributes(file, read, layer)
+    shapes = layers_of(result)[layer]
+    objects = list(read.objects)
+    clear = sum(not item.polarity_dark for item in objects)
+    yield count_check(file, _READER, "objects that take away", clear, 0)
+    arcs = arc_length(shapes)
+    if layer == "profile":
+        found = Area([shapely.Polygon(loop) for loop in _loops(objects)], even_odd=True)
+        yield count_check(file, _READER, "outlines", len(found.polygons), len(shapes))
+        yield area_check(file, _READER, layer, found, model_area(shapes, split_circles=False), arcs)
+        return
+    yield count_check(file, _READER, "objects", len(objects), len(shapes))
+    yield area_check(file, _READER, layer, _area(objects), model_area(shapes), arcs)
+    wanted = [item for item in objects_of(result, shapes) if isinstance(item, Flash)]
+    yield _flashes(file, objects, wanted)
+    if layer.startswith("copper") and len(wanted) < len(shapes):
+        yield NotProved(file, "nets and functions of regions: the reader does not keep them")
+
+
+def _attributes(file: str, read: Any, layer: str) -> Evidence:
+    """Yield whether function and polarity of the file are those of its layer."""
+    attributes = read.file_attrs
+    function = ",".join(attributes.get(".FileFunction", ()))
+    wrong = function != GERBER_FUNCTIONS[layer]
+    yield count_check(file, _READER, f"file function is {GERBER_FUNCTIONS[layer]}", int(wrong), 0)
+    polarity = "Negative" if layer.startswith("soldermask") else "Positive"
+    wrong = attributes.get(".FilePolarity") != (polarity,)
+    yield count_check(file, _READER, f"file polarity is {polarity}", int(wrong), 0)
+
+
+def _area(objects: Iterable[Any]) -> Area:
+    """Return the area of flashes and regions [nm]."""
+    area = Area()
+    for item in objects:
+        kind = type(item.aperture).__name__ if hasattr(item, "aperture") else "Region"
+        if kind == "CircleAperture":
+            x, y = _mm(item, item.x), _mm(item, item.y)
+            area.circles.append((x, y, _mm(item.aperture, item.aperture.diameter)))
+        else:
+            area.polygons += [_polygon(piece) for piece in item.to_primitives("mm")]
+    return area
+
+
+def _mm(owner: Any, value: float) -> float:
+    """Return a length of the reader [nm]."""
+    return float(owner.unit.convert_to("mm", value)) * _NM
+
+
+def _polygon(primitive: Any) -> BaseGeometry:
+    """Return a primitive [nm] as an area; an outline that touches itself along cuts is opened again."""
+    outline = primitive if hasattr(primitive, "arc_centers") else primitive.to_arc_poly()
+    points = [(x * _NM, y * _NM) for x, y in outline.approximate_arcs(max_error=_FINE_MM).outline]
+    polygon = shapely.Polygon(points)
+    return polygon if polygon.is_valid else shapely.make_valid(polygon)
+
+
+def _loops(objects: Iterable[Any]) -> list[np.ndarray[Any, Any]]:
+    """Return the closed outlines [nm] that draws follow; what does not join ends an outline."""
+    loops: list[list[tuple[float, float]]] = []
+    end: tuple[float, float] | None = None
+    for item in objects:
+        points = _drawn(item)
+        if end is None or math.dist(points[0], end) > 0.5:
+            loops.append([])
+        loops[-1] += points[:-1]
+        end = points[-1]
+    return [np.array(loop) for loop in loops]
+
+
+def _drawn(item: Any) -> list[tuple[float, float]]:
+    """Return a draw or an arc as points [nm]."""
+    pieces = item.approximate(max_error=_FINE_MM, unit="mm") if hasattr(item, "clockwise") else [item]
+    first = pieces[0]
+    points = [(_mm(first, first.x1), _mm(first, first.y1))]
+    return points + [(_mm(piece, piece.x2), _mm(piece, piece.y2)) for piece in pieces]
+
+
+def _flashes(file: str, objects: Iterable[Any], wanted: Iterable[Flash]) -> Check:
+    """Return how many flashes differ in place, net or pin."""
+    found = Counter(
+        (
+            round(_mm(item, item.x)),
+            round(_mm(item, item.y)),
+            ",".join(item.attrs.get(".N", ())),
+            ",".join(item.attrs.get(".P", ())),
+        )
+        for item in objects
+        if type(item).__name__ == "Flash"
+    )
+    asked = Counter(
+        (flash.x, flash.y, flash.marks.net or "", ",".join(flash.marks.pin or ())) for flash in wanted
+    )
+    odd = sum(((found - asked) + (asked - found)).values())
+    return count_check(file, _READER, "flashes that differ in place, net or pin", odd, 0)
