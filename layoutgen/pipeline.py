@@ -7,9 +7,9 @@ from __future__ import annotations
 
 import math
 import time
-from collections.abc import Callable, Iterator, Mapping
+from collections.abc import Callable, Iterator, Mapping, Sequence
 from contextlib import contextmanager
-from dataclasses import replace
+from dataclasses import dataclass, replace
 from functools import partial
 from pathlib import Path
 
@@ -17,7 +17,7 @@ from layoutgen.artwork import Artwork, draw
 from layoutgen.checks import check
 from layoutgen.circuit import Circuit, build_circuit
 from layoutgen.errors import LayoutgenError
-from layoutgen.placement import Placement, place
+from layoutgen.placement import Choices, Placement, place
 from layoutgen.reading import CircuitFile, RuleFile, read_inputs
 from layoutgen.response import NOTE_RULE, LengthFit, correct_lengths, respond
 from layoutgen.sizing import SizedCircuit, placed_dc, size_circuit
@@ -102,36 +102,69 @@ def _settled(circuit: Circuit, clock: _Clock, fit: Fit | None) -> tuple[Artwork,
     """
     with clock("sizing"):
         sized = size_circuit(circuit)
-    choices, found = None, LengthFit({})
-    for _ in range(MAX_ROUNDS):
-        with clock("placement"):
-            try:
-                placement = with_placed_bias(place(sized, choices))
-            except LayoutgenError as error:
-                if not sized.corrections:
-                    raise
-                return _uncorrected(circuit, clock, f"no placement with corrected lengths ({error})")
-            choices = placement.choices
-        with clock("artwork"):
-            artwork = draw(placement, draft=True)
-        with clock("sizing"):
-            again = size_circuit(circuit, measured_gaps(artwork))
-        if fit is not None:
-            with clock("correction"):
-                found = fit(artwork, sized=again)
-        again = replace(again, corrections=found.corrections)
-        moved = largest_move(sized, again)
-        if moved[1] < SETTLED and again.corrections == sized.corrections:
+    rounds: list[_Round] = []
+    while len(rounds) < MAX_ROUNDS:
+        try:
+            draft = _draft(sized, rounds[-1].draft.placement.choices if rounds else None, clock)
+        except LayoutgenError as error:
+            if not sized.corrections:
+                raise
+            return _uncorrected(circuit, clock, f"no placement with corrected lengths ({error})")
+        rounds.append(_asked(sized, draft, clock, fit))
+        if rounds[-1].settled:
             break
-        sized = again
-    if found.now > found.uncorrected:
-        text = f"corrected lengths gave a difference of {found.now:.4f} instead of {found.uncorrected:.4f}"
+        sized = rounds[-1].again
+    best = _best(rounds)
+    if best.found.now > best.found.uncorrected:
+        text = f"corrected lengths give a difference of {best.found.now:.4f}, the budgets' own less"
         return _uncorrected(circuit, clock, text)
     with clock("artwork"):
-        artwork = draw(placement)
+        artwork = draw(best.draft.placement)
     with clock("sizing"):  # a piece of pour that holds no vias is dropped from the final drawing only
-        moved = largest_move(sized, size_circuit(circuit, measured_gaps(artwork)))
-    return artwork, (*_unsettled_widths(moved), *_unsettled_lengths(found))
+        moved = largest_move(artwork.placement.sized, size_circuit(circuit, measured_gaps(artwork)))
+    return artwork, (*_unsettled_widths(moved), *_unsettled_lengths(best.found))
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class _Round:
+    """A draft, the sizes that it asks for, and what its response says of its lengths."""
+
+    draft: Artwork
+    again: SizedCircuit
+    found: LengthFit
+
+    @property
+    def settled(self) -> bool:
+        """Whether the draft is as it asks to be."""
+        drawn = self.draft.placement.sized
+        return largest_move(drawn, self.again)[1] < SETTLED and self.again.corrections == drawn.corrections
+
+
+def _draft(sized: SizedCircuit, choices: Choices | None, clock: _Clock) -> Artwork:
+    """Place and draw as far as pour and lines go; ``choices`` are those of the draft before."""
+    with clock("placement"):
+        placement = with_placed_bias(place(sized, choices))
+    with clock("artwork"):
+        return draw(placement, draft=True)
+
+
+def _asked(sized: SizedCircuit, draft: Artwork, clock: _Clock, fit: Fit | None) -> _Round:
+    """Return a draft with the sizes that its pour and its response ask for."""
+    with clock("sizing"):
+        again = size_circuit(sized.circuit, measured_gaps(draft))
+    found = LengthFit({})
+    if fit is not None:
+        with clock("correction"):
+            found = fit(draft, sized=again)
+    return _Round(draft, replace(again, corrections=found.corrections), found)
+
+
+def _best(rounds: Sequence[_Round]) -> _Round:
+    """Return the last draft when its lengths settled, else the one nearest to the schematic."""
+    last = rounds[-1]
+    if last.found.expected >= last.found.now:
+        return last
+    return min(reversed(rounds), key=lambda drawn: drawn.found.now)
 
 
 def _uncorrected(circuit: Circuit, clock: _Clock, reason: str) -> tuple[Artwork, tuple[Note, ...]]:
@@ -141,7 +174,7 @@ def _uncorrected(circuit: Circuit, clock: _Clock, reason: str) -> tuple[Artwork,
 
 
 def _unsettled_widths(moved: tuple[str, float]) -> tuple[Note, ...]:
-    """Return a note when the last drawing would still move a width, by ``moved`` (name, [m])."""
+    """Return a note when the drawing's pour would still move a width, by ``moved`` (name, [m])."""
     if moved[1] < SETTLED:
         return ()
     text = (
@@ -152,7 +185,7 @@ def _unsettled_widths(moved: tuple[str, float]) -> tuple[Note, ...]:
 
 
 def _unsettled_lengths(found: LengthFit) -> tuple[Note, ...]:
-    """Return a note when other lengths would still bring the last drawing nearer to the schematic."""
+    """Return a note when other lengths promise to bring a drawing nearer to the schematic."""
     if found.expected >= found.now:
         return ()
     text = (

@@ -116,12 +116,12 @@ def restless(monkeypatch: pytest.MonkeyPatch) -> Iterator[list[float]]:
 
 @pytest.fixture
 def drawings(monkeypatch: pytest.MonkeyPatch) -> list[Artwork]:
-    """Every artwork that the loop draws."""
+    """Every artwork that the loop draws, the drafts and the final one."""
     made: list[Artwork] = []
     real = pipeline.draw
 
-    def drawing(placement: layoutgen.Placement) -> Artwork:
-        made.append(real(placement))
+    def drawing(placement: layoutgen.Placement, *, draft: bool = False) -> Artwork:
+        made.append(real(placement, draft=draft))
         return made[-1]
 
     monkeypatch.setattr(pipeline, "draw", drawing)
@@ -132,10 +132,11 @@ def test_it_draws_again_until_widths_rest(
     notch: layoutgen.Inputs, restless: list[float], drawings: list[Artwork]
 ) -> None:
     """Stopped one round early, the copper drawn is not the copper sized."""
-    restless += [4e-6, 1.5e-6, 0.4e-6]
+    restless += [4e-6, 1.5e-6, 0.4e-6, 0.0]
     result = pipeline.run_inputs(notch.circuit, notch.rules, correction=False)
-    assert len(drawings) == 3
+    assert len(drawings) == 3 + 1
     assert result.artwork is drawings[-1]
+    assert [bool(artwork.on("profile")) for artwork in drawings] == [False, False, False, True]
     assert result.notes == ()
     assert result.placement.lines["left"].width == round(result.sized.lines["left"].width * 1e9)
 
@@ -143,10 +144,10 @@ def test_it_draws_again_until_widths_rest(
 def test_it_says_when_widths_do_not_settle(
     notch: layoutgen.Inputs, restless: list[float], drawings: list[Artwork]
 ) -> None:
-    """After four drawings the last one stands, with a note that names the line and how far off it is."""
+    """After four drafts the drawing of the last one stands, with a note that names the line and how far off it is."""
     restless += [5e-6] * 9
     result = pipeline.run_inputs(notch.circuit, notch.rules, correction=False)
-    assert len(drawings) == pipeline.MAX_ROUNDS == 4
+    assert len(drawings) == pipeline.MAX_ROUNDS + 1 == 5
     (note,) = result.notes
     assert note[0] == "assumption.pour"
     assert note[1] in result.sized.lines

@@ -116,7 +116,7 @@ class _Reader:
             file: The file's name for messages.
         """
         self.document, self.tolerance, self.file = document, tolerance, file
-        self.skipped: Counter[str] = Counter()
+        self.skipped: Counter[tuple[str, str]] = Counter()
         self._blocks: dict[tuple[str, float], tuple[list[Primitive], list[Any]]] = {}
         self._count = self._points = 0
 

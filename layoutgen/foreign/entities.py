@@ -29,20 +29,20 @@ _SILENT = frozenset(("VIEWPORT", "ATTDEF"))
 _CONTROL_VERTEX = 16
 
 
-def primitives_of(entity: Any, tolerance: float, skipped: Counter[str]) -> list[Primitive]:
+def primitives_of(entity: Any, tolerance: float, skipped: Counter[tuple[str, str]]) -> list[Primitive]:
     """Return what one entity stands for; an unknown kind is counted in ``skipped``.
 
     Args:
         entity: The library's entity, no INSERT.
         tolerance: Largest distance of a chord from its curve, in the file's unit.
-        skipped: Counts by "TYPE on layer".
+        skipped: Counts by kind and layer.
     """
     kind = entity.dxftype()
     read = _READERS.get(kind)
     found = None if read is None or not _is_flat(entity) else read(entity, tolerance)
     if found is None:
         if kind not in _SILENT:
-            skipped[f"{kind} on {entity.dxf.get('layer', '0')}"] += 1
+            skipped[kind, str(entity.dxf.get("layer", "0"))] += 1
         return []
     return [primitive for primitive in found if _is_finite(primitive, entity, skipped)]
 
@@ -55,11 +55,11 @@ def _is_flat(entity: Any) -> bool:
     return math.hypot(x, y) < 1e-9
 
 
-def _is_finite(primitive: Primitive, entity: Any, skipped: Counter[str]) -> bool:
+def _is_finite(primitive: Primitive, entity: Any, skipped: Counter[tuple[str, str]]) -> bool:
     """Tell whether all coordinates are numbers."""
     if all(np.isfinite(ring).all() for ring in primitive.rings):
         return True
-    skipped[f"{entity.dxftype()} without finite coordinates on {primitive.layer}"] += 1
+    skipped[f"{entity.dxftype()} without finite coordinates", str(primitive.layer)] += 1
     return False
 
 

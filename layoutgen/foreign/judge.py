@@ -38,15 +38,29 @@ def check_foreign(
     skipped = (*_UNKNOWN, *_unread(artwork))
     return replace(
         result,
-        findings=(*result.findings, *_notes(artwork)),
+        findings=(*(_weighed(finding, artwork.chord) for finding in result.findings), *_notes(artwork)),
         not_checked=(*skipped, *result.not_checked),
     )
+
+
+def _weighed(finding: Finding, chord: float) -> Finding:
+    """Return a finding as a note where it is no more than what chords may be off their curves [nm]."""
+    measured, limit = finding.measured, finding.limit
+    if not chord or finding.unit != "mm" or measured is None or limit is None:
+        return finding
+    if not 0.0 < limit - measured <= chord / 1e6:
+        return finding
+    text = f"{finding.text}; no more than chords may lie off curves in this format ({chord / 1e3:g} um)"
+    return replace(finding, severity="note", text=text)
 
 
 def _unread(artwork: ForeignArtwork) -> Iterator[NotChecked]:
     """Yield a line for each kind of thing that was not read."""
     for what, count in artwork.unread.items():
         yield NotChecked("foreign artwork", f"{count} x {what}: not read")
+    if artwork.chord:
+        reason = f"curves in this format are chords: shortfalls up to {artwork.chord / 1e3:g} um are notes"
+        yield NotChecked("lengths to a micrometre", reason)
     open_ends = sum(note.rule == "foreign.left_open" for note in artwork.notes)
     if open_ends:
         yield NotChecked("foreign artwork", f"{open_ends} x lines without width that close no outline: not read")

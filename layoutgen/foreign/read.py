@@ -93,7 +93,7 @@ def _artwork(file: str, raw: Raw, mapping: LayerMap, given: bool) -> ForeignArtw
     """Return what was read on our layers."""
     by_layer = _by_layer(raw.primitives)
     notes = list(raw.notes)
-    unread = Counter(dict(raw.skipped))
+    unread = Counter({f"{kind} on {layer}": n for (kind, layer), n in _told(raw.skipped, mapping).items()})
     read: dict[str, tuple[shapely.Polygon, ...]] = {}
     used: set[LayerKey] = set()
     for name in LAYERS:
@@ -113,8 +113,21 @@ def _artwork(file: str, raw: Raw, mapping: LayerMap, given: bool) -> ForeignArtw
     holes = tuple(_holes(read, notes, unread))
     profile = tuple(sorted(read["profile"], key=lambda polygon: -polygon.area))
     return ForeignArtwork(
-        file=file, unit=raw.unit, layers=read, profile=profile, holes=holes, notes=tuple(notes), unread=unread
+        file=file,
+        unit=raw.unit,
+        layers=read,
+        profile=profile,
+        holes=holes,
+        notes=tuple(notes),
+        unread=unread,
+        chord=raw.chord,
     )
+
+
+def _told(skipped: Mapping[tuple[str, str], int], mapping: LayerMap) -> dict[tuple[str, str], int]:
+    """Return what was not read, but for the layers that are for people only."""
+    for_people = {_plain(key) for name in _OURS_ONLY for key in mapping.get(name, ())}
+    return {what: count for what, count in skipped.items() if _plain(what[1]) not in for_people}
 
 
 def _plain(key: LayerKey) -> LayerKey:
@@ -164,8 +177,9 @@ def _polygons(name: str, primitives: Sequence[Primitive], notes: list[ForeignNot
         for part in _valid(primitive.rings)
     ]
     loops += [Loop(part, 0) for ring in chains.loops for part in _valid((ring,))]
-    loops = _without_edges_of(areas, loops)
-    return areas + areas_of(loops, directed=name != "profile")
+    if name == "profile":  # the outline and each cut-out, every second one a hole, filled or not
+        return areas_of([*(Loop(area, 0) for area in areas), *loops], directed=False)
+    return areas + areas_of(_without_edges_of(areas, loops))
 
 
 def _valid(rings: tuple[Floats, ...]) -> list[shapely.Polygon]:

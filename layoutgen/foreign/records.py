@@ -38,12 +38,14 @@ class Primitive:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Raw:
-    """A file's contents in nanometres: primitives, the unit's name, entities not read (what -> how many)."""
+    """A file's contents in nanometres: primitives, the unit's name, entities not read by kind and
+    layer; ``chord`` [nm] is how far its straight edges may lie off the curves they stand for."""
 
     primitives: tuple[Primitive, ...]
     unit: str
-    skipped: Mapping[str, int] = field(default_factory=dict)
+    skipped: Mapping[tuple[str, str], int] = field(default_factory=dict)
     notes: tuple[ForeignNote, ...] = ()
+    chord: float = 0.0
 
 
 @dataclass(frozen=True, slots=True)
@@ -72,7 +74,8 @@ class ForeignArtwork:
 
     ``layers`` holds the polygons [nm] of each layer as drawn, overlapping ones not joined; ``profile`` the
     board's outlines with their cut-outs as holes, the largest first; ``holes`` the drilled holes in file
-    order; ``unit`` is the file's; ``unread`` what was left out: text -> how many.
+    order; ``unit`` is the file's; ``unread`` what was left out: text -> how many; ``chord`` [nm] is how far straight
+    edges may lie off the curves that they stand for, 0 where the file has true curves.
     """
 
     file: str
@@ -82,6 +85,7 @@ class ForeignArtwork:
     holes: tuple[RoundHole, ...]
     notes: tuple[ForeignNote, ...]
     unread: Mapping[str, int]
+    chord: float = 0.0
 
 
 def refused(file: str, found: str, allowed: str) -> WrongInputError:

@@ -15,7 +15,10 @@ import numpy as np
 
 from layoutgen.foreign.records import ForeignNote, Primitive, Raw, refused
 
-__all__ = ["read_stream"]
+__all__ = ["CHORD_NM", "read_stream"]
+
+CHORD_NM = 1_000.0
+"""How far chords may lie off their curves in these formats [nm]: our own files' figure, common practice."""
 
 _SECONDS = 300.0
 _HEADS = {".gds": b"\x00\x06\x00\x02", ".oas": b"%SEMI-OASIS\r\n"}
@@ -76,4 +79,4 @@ def _raw(counts: np.ndarray, points: np.ndarray, layers: np.ndarray, tops: int) 
     if tops > 1:
         text = f"the file has {tops} top cells; all of them are taken together"
         notes = (ForeignNote("foreign.cells", "", None, text),)
-    return Raw(primitives=primitives, unit="the file's own", notes=notes)
+    return Raw(primitives=primitives, unit="the file's own", notes=notes, chord=CHORD_NM)

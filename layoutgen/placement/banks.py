@@ -5,9 +5,9 @@ from __future__ import annotations
 from dataclasses import dataclass
 
 from layoutgen.circuit import End, EndKind
-from layoutgen.placement.bodies import OVERLAP, BodyLand, PartBody
+from layoutgen.placement.bodies import OVERLAP, BodyLand, PartBody, beyond
 from layoutgen.placement.frame import Pose, ahead
-from layoutgen.placement.kit import Kit, beyond
+from layoutgen.placement.kit import Kit
 from layoutgen.placement.state import Growth, Pending
 from layoutgen.placement.tour import Hub
 

@@ -6,14 +6,14 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from layoutgen.circuit import End
-from layoutgen.placement.frame import Box, Pose, ahead, box_to_world, grown, unit
+from layoutgen.placement.frame import Box, Pose, ahead, box_to_world, grown, to_world, unit
 from layoutgen.sizing import Land, Lands
 from layoutgen.units import to_nm
 
 if TYPE_CHECKING:
     from layoutgen.placement.model import Limits
 
-__all__ = ["OVERLAP", "BodyHole", "BodyLand", "PartBody", "part_body"]
+__all__ = ["OVERLAP", "BodyHole", "BodyLand", "PartBody", "beyond", "part_body"]
 
 OVERLAP = 10_000
 """How far [nm] pieces of one net that meet edge to edge are pushed into each other."""
@@ -126,6 +126,14 @@ class PartBody:
             max(b[2] for b in boxes),
             max(b[3] for b in boxes),
         )
+
+
+def beyond(body: PartBody, land: BodyLand) -> int:
+    """Return how far the courtyard reaches beyond a pad's outer edge [nm]."""
+    turned = Pose(0, 0, -land.heading % 360.0)
+    courtyard = box_to_world(turned, body.courtyard)
+    edge = to_world(turned, land.outer.x, land.outer.y)[0]
+    return max(0, courtyard[2] - edge)
 
 
 def part_body(lands: Lands, limits: Limits) -> PartBody:

@@ -11,10 +11,11 @@ from layoutgen.circuit import End, EndKind
 from layoutgen.circuit.queries import ends_of
 from layoutgen.errors import WrongInputError
 from layoutgen.geometry import Point
+from layoutgen.placement.bodies import beyond
 from layoutgen.placement.closure import Bar, Shape, Strain, solve_closure, strain
 from layoutgen.placement.drawings import MOST_BENDS, Drawing, Piece, Range, Scheme, drawings
 from layoutgen.placement.frame import Pose, unit
-from layoutgen.placement.kit import Kit, beyond, world
+from layoutgen.placement.kit import Kit, world
 from layoutgen.placement.routes import Router
 from layoutgen.placement.tour import Headings
 from layoutgen.placement.words import Word, headings_of, least_legs

@@ -15,7 +15,7 @@ from layoutgen.placement.model import GROUND, Model, strip_owner
 from layoutgen.placement.state import EDGES, Growth, LaidStrip, corridor_box, leg_boxes
 from layoutgen.placement.tour import Hub, Tour
 
-__all__ = ["Kit", "PinnedError", "beyond", "part_obstacles", "root_edge", "span_along", "world"]
+__all__ = ["Kit", "PinnedError", "part_obstacles", "root_edge", "span_along", "world"]
 
 PIN_TOLERANCE = 5  # [nm]: rounding of solved legs
 
@@ -118,14 +118,6 @@ def world(pose: Pose, local: Pose) -> Pose:
     """Return a pose given in a part's frame as a pose of the board."""
     x, y = to_world(pose, local.x, local.y)
     return Pose(x, y, (pose.heading + local.heading) % 360.0)
-
-
-def beyond(body: PartBody, land: BodyLand) -> int:
-    """Return how far the courtyard reaches beyond a pad's outer edge [nm]."""
-    turned = Pose(0, 0, -land.heading % 360.0)
-    courtyard = box_to_world(turned, body.courtyard)
-    edge = to_world(turned, land.outer.x, land.outer.y)[0]
-    return max(0, courtyard[2] - edge)
 
 
 def span_along(body: PartBody, land: BodyLand, side: float) -> tuple[int, int]:

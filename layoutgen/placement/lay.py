@@ -10,11 +10,11 @@ from layoutgen.circuit.queries import ends_of
 from layoutgen.geometry import Point
 from layoutgen.placement.banks import Banks
 from layoutgen.placement.beside import lay_beside
-from layoutgen.placement.bodies import OVERLAP, BodyLand, PartBody
+from layoutgen.placement.bodies import OVERLAP, BodyLand, PartBody, beyond
 from layoutgen.placement.budgets import strip_width
 from layoutgen.placement.clearance import Kind, Obstacle
 from layoutgen.placement.frame import Box, Pose, ahead, box_to_world, to_world, unit
-from layoutgen.placement.kit import PIN_TOLERANCE, Kit, PinnedError, beyond, root_edge, world
+from layoutgen.placement.kit import PIN_TOLERANCE, Kit, PinnedError, root_edge, world
 from layoutgen.placement.model import GROUND, strip_owner
 from layoutgen.placement.ports import Ports
 from layoutgen.placement.state import (

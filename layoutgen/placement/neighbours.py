@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 from layoutgen.circuit import EndKind
 from layoutgen.circuit.queries import ends_of
@@ -52,9 +52,14 @@ class Neighbours:
             return False
         if a.kind != Kind.BODY and b.kind != Kind.BODY and not self._is_line(growth, a, b):
             return Kind.GROUND in (a.kind, b.kind) and a.kind != b.kind
-        left = self._trimmed(growth, a, nets_a)
-        right = self._trimmed(growth, b, nets_b)
+        left = self._trimmed(growth, self._softened(a, nets_b), nets_a)
+        right = self._trimmed(growth, self._softened(b, nets_a), nets_b)
         return bool(Obstacles.empty().plus(right).conflicts(left, self.table)) if left and right else False
+
+    def _softened(self, item: Obstacle, nets: frozenset[str]) -> Obstacle:
+        """Return a pad on a shared net as a body: a line that it ends may pass it as it may pass a part."""
+        joined = item.kind == Kind.PAD and item.net in nets
+        return replace(item, kind=Kind.BODY) if joined else item
 
     def _too_close(self, a: Obstacle, b: Obstacle) -> bool:
         """True when copper of different nets is nearer than may be etched: no allowance mends that."""

@@ -17,6 +17,8 @@ from layoutgen.units import to_nm
 
 __all__ = ["Ports"]
 
+_LEAST_STRIP = 100_000  # between a pair's end and the profile [nm]
+
 
 @dataclass(slots=True)
 class Ports:
@@ -35,15 +37,16 @@ class Ports:
         growth.ports[end.element] = LaidPort(end.element, at.point, edge, width, line, movable)
 
     def at_pair(self, growth: Growth, end: End, at: Pose, pair: str) -> None:
-        """Put a port at the end of a coupled pair; a strip carries it on where the edge is farther away."""
+        """Put a port at the end of a coupled pair, carried on by a strip to where the edge will be."""
         edge = self._edge(end, at)
         width = self.kit.model.widths[pair]
-        if not growth.bounds.known(edge) and not self._is_placed(growth, end, edge):
-            self._settle(growth, end, at, edge)
-        if self._distance(growth, end, at, edge) > 0 or self._off(growth, end, at, edge):
-            self.by_strip(growth, end, at, at.point, width)
+        if growth.bounds.known(edge) and not self._distance(growth, end, at, edge):
+            if self._off(growth, end, at, edge):
+                raise PinnedError(end.element, "its pair ends at the edge, away from the port's place")
+            growth.ports[end.element] = LaidPort(end.element, at.point, edge, width, pair, movable=False)
             return
-        growth.ports[end.element] = LaidPort(end.element, at.point, edge, width, pair, movable=False)
+        start = at if growth.bounds.known(edge) else ahead(at, _LEAST_STRIP)
+        self.by_strip(growth, end, start, at.point, width)
 
     def by_strip(self, growth: Growth, end: End, start: Pose, back: Point, width: int) -> None:
         """Run a strip to the board's edge for a port.

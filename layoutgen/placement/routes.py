@@ -9,6 +9,7 @@ from dataclasses import dataclass
 from layoutgen.circuit import End, EndKind
 from layoutgen.circuit.queries import ends_of
 from layoutgen.geometry import mitre_for_turn, mitre_reach
+from layoutgen.placement.bodies import beyond
 from layoutgen.placement.budgets import LineLengths
 from layoutgen.placement.frame import Pose, unit
 from layoutgen.placement.model import GROUND, Model
@@ -219,7 +220,8 @@ class Router:
             along = max(pad.along for pad in pads)
             return Reach(half, half + limits.height, max(along, self._widest(others)) // 2)
         if len(others) == 1 and pads:
-            return Reach(pads[0].along, pads[0].along + limits.height, pads[0].across // 2)
+            outside = beyond(model.bodies[others[0].element], pads[0])
+            return Reach(pads[0].along, pads[0].along + outside + limits.height, pads[0].across // 2)
         half = max([self._widest(others), *(pad.across for pad in pads)]) // 2
         return Reach(half, half + limits.spacing if half else 0, half)
 

@@ -32,6 +32,7 @@ Word = tuple[float, ...]
 _L, _R = 90.0, -90.0
 _MEANDER_ROWS = (2, 3, 4, 5, 6, 8)
 _SOLVER_TOLERANCE_NM = 5.0
+_GRID = 10  # [nm]: rounding of odd widths must not decide
 
 
 @dataclass(frozen=True, slots=True)
@@ -90,8 +91,8 @@ class LegRules:
             last: Copper and clearance at the far end.
             clear: Roomier first leg [nm].
         """
-        start = max(first.copper + reach, first.beside + width // 2)
-        finish = max(last.copper + reach, last.beside + width // 2)
+        start = max(first.copper + reach, first.beside + width // 2 + _GRID)
+        finish = max(last.copper + reach, last.beside + width // 2 + _GRID)
         fold = max(width + spacing, 2 * reach + width // 4)
         last_fold = max(fold, width // 2 + spacing + last.half)
         return cls(width, start, finish, max(clear, start), fold, last_fold, reach)

@@ -11,20 +11,17 @@ bytes with any number of processes.
 from __future__ import annotations
 
 import itertools
-from collections.abc import Callable, Iterator, Sequence
-from concurrent.futures import ProcessPoolExecutor
-from contextlib import contextmanager
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, replace
-from importlib import import_module
 from pathlib import Path
-from typing import Any
 
 import numpy as np
 import numpy.typing as npt
 
 from layoutgen.artwork import Artwork
 from layoutgen.errors import WrongInputError
-from layoutgen.origin import Fault, Location
+from layoutgen.origin import Fault
+from layoutgen.response.batches import workers
 from layoutgen.response.chain import FloatArray
 from layoutgen.response.drawn import drawing_of
 from layoutgen.response.limits import Limit, read_limits
@@ -39,8 +36,6 @@ __all__ = ["BATCH_POINTS", "Contributor", "Corner", "LimitYield", "Tolerance", "
 
 BATCH_POINTS = 20_000
 """Samples times frequencies of one batch [-]: small enough to stay in a processor's cache."""
-
-_Run = Callable[[Callable[[FloatArray], Found], Sequence[FloatArray]], list[Found]]
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -126,7 +121,7 @@ def tolerance(
         folder: What the paths of data files start from; None: the folder of the circuit file.
 
     Raises:
-        WrongInputError: No ``[tolerance]``, nothing in it, or limits that leave no substrate or line; faulty
+        WrongInputError: No ``[tolerance]``, nothing in it, or limits that leave no line; faulty
             ``limits``; data files that cannot be used; a scheduler that is not there.
     """
     job = _job(artwork, limits, points, folder)
@@ -138,7 +133,7 @@ def tolerance(
     size = max(1, BATCH_POINTS // points)
     fixed = np.concatenate([np.zeros((1, count)), alone, corners])
     batches = [part[k : k + size] for part in (fixed, drawn) for k in range(0, len(part), size)]
-    with _workers(processes, scheduler) as run:
+    with workers(processes, scheduler) as run:
         found = run(job.run, batches)
     first = -(-len(fixed) // size)
     head, tail = _joined(found[:first]), _joined(found[first:])
@@ -174,7 +169,7 @@ def _job(artwork: Artwork, limits: Sequence[str], points: int, folder: Path | No
 
 
 def _refuse(artwork: Artwork, spread: dict[str, float]) -> None:
-    """Raise when nothing varies, or a limit leaves no substrate or no line.
+    """Raise when nothing varies, or etching leaves no line.
 
     Raises:
         WrongInputError: With every fault.
@@ -185,8 +180,6 @@ def _refuse(artwork: Artwork, spread: dict[str, float]) -> None:
         faults.append(("ports", "no RF port and no termination", "a circuit with a response"))
     if not spread:
         faults.append(("tolerance", "no limits to vary within", "a [tolerance] table with a value above 0"))
-    if spread.get(HEIGHT, 0.0) >= file.substrate.height:
-        faults.append(("tolerance.height", f"{spread[HEIGHT] * 1e3:g} mm", "less than substrate.height"))
     widths = [line.width for line in artwork.placement.lines.values()]
     widths += [pair.width for pair in artwork.placement.pairs.values()]
     least = min(widths, default=0) * 1e-9
@@ -250,47 +243,6 @@ def _by_change(
         for pick, change, row in zip(signs, off, kept, strict=True)
     ]
     return tuple(sorted(found, key=lambda corner: -corner.change))
-
-
-@contextmanager
-def _workers(processes: int, scheduler: str | None) -> Iterator[_Run]:
-    """Give a function that works out batches in order: here, in other processes, or on a cluster."""
-    if scheduler is not None:
-        with _cluster(scheduler) as run:
-            yield run
-    elif processes > 1:
-        from multiprocessing import get_context
-
-        with ProcessPoolExecutor(processes, mp_context=get_context("spawn")) as pool:
-            yield lambda work, batches: list(pool.map(work, batches))
-    else:
-        yield lambda work, batches: [work(batch) for batch in batches]
-
-
-@contextmanager
-def _cluster(address: str) -> Iterator[_Run]:
-    """Give a function that sends batches to a dask.distributed scheduler.
-
-    Raises:
-        WrongInputError: The library is not installed, or nothing answers there.
-    """
-    try:
-        library: Any = import_module("distributed")
-    except ImportError:
-        found = "dask.distributed is not installed"
-        raise _no_cluster(address, found, "pip install distributed") from None
-    try:
-        client = library.Client(address, timeout="10s", set_as_default=False)
-    except (OSError, ValueError) as error:
-        found = f"no scheduler ({error})"
-        raise _no_cluster(address, found, "the address of a running scheduler") from None
-    with client:
-        yield lambda work, batches: list(client.gather(client.map(work, batches, pure=False)))
-
-
-def _no_cluster(address: str, found: str, allowed: str) -> WrongInputError:
-    """Return the error for a cluster that cannot be used."""
-    return WrongInputError([Fault(Location(address, 0), "scheduler", found, allowed)])
 
 
 def _frozen(values: FloatArray) -> FloatArray:

@@ -2,7 +2,7 @@
 
 A layer's ``shapes`` is, one after the other: item, style, number of outlines, and for each outline its number
 of vertices, the first vertex and the steps to the next ones. Its ``circles`` is: item, style, step of the
-middle from the last circle's, radius. Items and styles are numbered in the lists that stand beside the layers.
+middle from the last circle's, radius. Items and styles are numbered in the lists beside the layers.
 """
 
 from __future__ import annotations
@@ -100,7 +100,7 @@ def board_data(result: Result) -> dict[str, object]:
         "styles": list(STYLES),
         "layers": [_layer_data(layer) for layer in layers if layer.shapes or layer.circles],
         "items": [_item_data(item) for item in catalogue.items],
-        "texts": list(_texts(result.placement)),
+        "texts": list(_texts(result)),
         "marks": marks,
         "targets": _targets(result),
     }
@@ -231,18 +231,20 @@ def _at_edge(port: PlacedPort, placement: Placement) -> Point:
     return edges.get(port.edge, (port.x, placement.height))
 
 
-def _texts(placement: Placement) -> Iterator[list[object]]:
+def _texts(result: Result) -> Iterator[list[object]]:
     """Yield names to write: text, middle [nm], capital height [nm], turn [deg], anchor, style."""
+    placement = result.placement
     unit = _unit(placement)
-    for line in placement.lines.values():
-        yield _line_text(line)
+    yield from (_line_text(line) for line in placement.lines.values())
+    printed = {shape.origin.element for shape in result.artwork.on("legend_top")}
     for part in placement.parts.values():
-        yield [part.name, part.x, part.y, unit * 6 // 10, 0, "middle", "name"]
+        if part.name not in printed:
+            yield [part.name, part.x, part.y, unit * 6 // 10, 0, "middle", "name"]
     for port in placement.ports.values():
         (x, y), c, s = _at_edge(port, placement), *_direction(port)
         anchor = "end" if c > 0.5 else "start" if c < -0.5 else "middle"
         reach = 1.6 * unit if abs(c) > 0.5 else 2.0 * unit
-        yield [port.name, round(x - c * reach), round(y - s * reach), unit, 0, anchor, "port"]
+        yield [port.name, round(x - c * reach), round(y - s * reach), unit * 8 // 10, 0, anchor, "port"]
 
 
 def _line_text(line: PlacedLine) -> list[object]:
@@ -250,5 +252,6 @@ def _line_text(line: PlacedLine) -> list[object]:
     (x0, y0), (x1, y1) = max(zip(line.path, line.path[1:], strict=False), key=lambda leg: math.dist(*leg))
     turn = round(math.degrees(math.atan2(y1 - y0, x1 - x0)))
     turn = turn - 180 if turn > 90 else turn + 180 if turn <= -90 else turn
-    height = min(line.width * 5 // 10, 900_000)
+    room = round(math.dist((x0, y0), (x1, y1)) / (0.9 * len(line.name)))
+    height = min(line.width * 5 // 10, 900_000, room)
     return [line.name, (x0 + x1) // 2, (y0 + y1) // 2, height, turn, "middle", "line"]

@@ -18,7 +18,7 @@ from layoutgen.placement import PlacedLine, PlacedPad, PlacedPair, PlacedPart, P
 from layoutgen.reading import Part, Port
 from layoutgen.sizing import BudgetEntry
 from layoutgen.units import quantity_text
-from layoutgen.writers.page_tables import CAUSES, gaps_text, mm_text, port_value, value_text
+from layoutgen.writers.page_tables import gaps_text, mm_text, port_value, value_text
 from layoutgen.writers.records import Result
 
 __all__ = ["Catalogue", "Fact", "Item", "element_keys"]
@@ -182,9 +182,15 @@ def _budget(entries: tuple[BudgetEntry, ...]) -> Iterator[Fact]:
         return
     yield "Length budget", ""
     for entry in shown:
-        place = "" if entry.cause == "line" or not entry.at else f" at {entry.at}"
-        yield CAUSES[entry.cause] + place, _degrees(entry.angle)
+        yield _entry_name(entry), _degrees(entry.angle)
     yield "sum", _degrees(math.fsum(entry.angle for entry in entries))
+
+
+def _entry_name(entry: BudgetEntry) -> str:
+    cause = entry.cause.replace("_", " ")
+    if entry.at.startswith(cause):
+        return entry.at
+    return cause if entry.cause == "line" or not entry.at else f"{cause} at {entry.at}"
 
 
 def _degrees(angle: float) -> str:

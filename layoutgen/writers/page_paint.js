@@ -1,6 +1,7 @@
 // Painting the board on a canvas: copper as copper on a paper-like ground, marks for findings in our own symbols.
 
-const PENS = { board: 1.4, cutout: 1.2, maskb: 1, opening: 1, paste: 1, via: 1, hole: 1.2, body: 1.2, pad: 0.8 };
+/** Widths of pens in nanometres; on the screen never below a hair nor above a firm line. */
+const PENS = { board: 120e3, cutout: 80e3, maskb: 60e3, opening: 50e3, paste: 50e3, via: 40e3, hole: 60e3, body: 80e3, pad: 40e3 };
 const CHUNK = 400;
 
 /** Return the colours of the theme in force, by name. */
@@ -13,8 +14,6 @@ function themeColours(styles) {
 
 /** Paint all layers that are on; `view` turns nanometres into pixels. */
 function paintBoard(ctx, board, view, colours) {
-  ctx.fillStyle = colours.paper;
-  ctx.fillRect(0, 0, view.width, view.height);
   for (const layer of board.layers) {
     if (layer.on) paintLayer(ctx, board, layer, view, colours);
   }
@@ -27,13 +26,13 @@ function paintLayer(ctx, board, layer, view, colours) {
   while (at < layer.to) {
     const style = board.shapes[at].style;
     const name = board.styles[style];
-    const paint = { fill: colours[name], pen: colours[`${name}-pen`], width: PENS[name] || 0 };
+    const paint = { fill: colours[name], pen: colours[`${name}-pen`], width: penWidth(name, view) };
     let open = 0;
     for (; at < layer.to && board.shapes[at].style === style; at++) {
       const shape = board.shapes[at];
       if (shape.x1 < seen.x0 || shape.x0 > seen.x1 || shape.y1 < seen.y0 || shape.y0 > seen.y1) continue;
       const size = Math.max(shape.x1 - shape.x0, shape.y1 - shape.y0) * view.scale;
-      if (size < 3) {
+      if (size < 2) {
         paintSpeck(ctx, shape, size, view, paint);
         continue;
       }
@@ -46,9 +45,13 @@ function paintLayer(ctx, board, layer, view, colours) {
   }
 }
 
+function penWidth(name, view) {
+  return PENS[name] ? Math.max(0.4, Math.min(1.8, PENS[name] * view.scale)) : 0;
+}
+
 /** Paint a shape that is too small for its outline to be seen. */
 function paintSpeck(ctx, shape, size, view, paint) {
-  ctx.fillStyle = paint.width && size > 1 ? paint.pen : paint.fill || paint.pen;
+  ctx.fillStyle = paint.pen ? paint.pen : paint.fill || paint.pen;
   const across = Math.max(size, 0.6);
   ctx.fillRect(view.x((shape.x0 + shape.x1) / 2) - across / 2, view.y((shape.y0 + shape.y1) / 2) - across / 2, across, across);
 }
@@ -102,7 +105,7 @@ const FONT = '"Source Sans 3","Segoe UI",Helvetica,Arial,"DejaVu Sans",sans-seri
 function paintMark(ctx, [number, kind, nmX, nmY], view, colours, chosen) {
   const x = view.x(nmX);
   const y = view.y(nmY);
-  const half = MARK[kind] + (chosen ? 3 : 0);
+  const half = MARK[kind] * (view.width < 500 ? 0.8 : 1) + (chosen ? 3 : 0);
   ctx.beginPath();
   if (kind === "note") {
     ctx.arc(x, y, half * 0.8, 0, 2 * Math.PI);

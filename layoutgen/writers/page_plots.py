@@ -213,7 +213,8 @@ def _smith_grid(half: int) -> Iterator[str]:
     yield f'<line class="g" x1="{half - _RADIUS}" x2="{half + _RADIUS}" y1="{half}" y2="{half}"/>'
     for r in (0.2, 0.5, 1.0, 2.0, 5.0):
         radius = _RADIUS / (1.0 + r)
-        yield f'<circle class="g f" cx="{fixed(half + _RADIUS - radius, 1)}" cy="{half}" r="{fixed(radius, 1)}"/>'
+        middle = fixed(half + _RADIUS - radius, 1)
+        yield f'<circle class="g f" cx="{middle}" cy="{half}" r="{fixed(radius, 1)}"/>'
         x = half + _RADIUS - 2.0 * radius
         yield f'<text class="s" x="{fixed(x + 2.0, 1)}" y="{half - 3}">{r:g}</text>'
     for x in (0.2, 0.5, 1.0, 2.0, 5.0):
@@ -236,7 +237,8 @@ def _reactance(half: int, x: float) -> str:
 
 def _key(index: int, colour: str, name: str, x: int) -> Iterator[str]:
     y = _TOP + 10 + 18 * index
-    yield f'<g class="key" data-key="{index}"><line class="d {colour}" x1="{x}" x2="{x + 18}" y1="{y}" y2="{y}"/>'
+    stroke = f'<line class="d {colour}" x1="{x}" x2="{x + 18}" y1="{y}" y2="{y}"/>'
+    yield f'<g class="key" data-key="{index}">{stroke}'
     yield f'<text x="{x + 23}" y="{y + 4}">{escape(name)}</text></g>'
 
 

@@ -1,4 +1,4 @@
-"""The response on the report page: plots over the sweep, a table at the band's edges, what limits the match."""
+"""The response on the report page: plots, a table at the band's edges, what limits the match."""
 
 from __future__ import annotations
 

@@ -15,7 +15,6 @@ from layoutgen.writers.html import Cell, cell, escape, table, zoom_link
 from layoutgen.writers.records import Result
 
 __all__ = [
-    "CAUSES",
     "bias_tables",
     "gaps_text",
     "line_tables",
@@ -27,7 +26,7 @@ __all__ = [
     "value_text",
 ]
 
-CAUSES = {
+_CAUSES = {
     "line": "line",
     "bend": "bends",
     "step": "steps",
@@ -39,7 +38,6 @@ CAUSES = {
     "port": "port",
     "response_correction": "correction",
 }
-"""What the causes of budget entries are called."""
 _VALUE_DIMENSIONS = {"resistor": "resistance", "capacitor": "capacitance", "inductor": "inductance"}
 
 
@@ -114,14 +112,14 @@ def _radial_row(radial: PlacedRadial) -> list[Cell]:
 
 def _budgets(lines: Sequence[PlacedLine | PlacedPair]) -> str:
     """Return the budgets, one column for each cause that occurs."""
-    causes = [c for c in CAUSES if any(entry.cause == c for line in lines for entry in line.budget)]
+    causes = [c for c in _CAUSES if any(entry.cause == c for line in lines for entry in line.budget)]
     rows = (
         [_line_link(line), fixed(math.degrees(line.angle), 3)]
         + [_entries([e for e in line.budget if e.cause == cause]) for cause in causes]
         + [fixed(math.degrees(math.fsum(e.angle for e in line.budget)), 3)]
         for line in lines
     )
-    heads = ["Line", "Angle (deg)", *(CAUSES[cause] for cause in causes), "Sum (deg)"]
+    heads = ["Line", "Angle (deg)", *(_CAUSES[cause] for cause in causes), "Sum (deg)"]
     return table("Length budgets in degrees", heads, rows)
 
 

@@ -9,7 +9,7 @@ class BoardView {
     Object.assign(this, { board, canvas, tell, width: 0, height: 0, x0: 0, y0: 0, scale: 1e-5 });
     this.ctx = canvas.getContext("2d");
     this.still = document.createElement("canvas");
-    this.stale = true;
+    this.stale = "all";
     this.cost = 0;
     this.hovered = null;
     this.chosen = [];
@@ -42,7 +42,7 @@ class BoardView {
   /** Take the canvas's size on the page; the first time, show the whole board. */
   resize() {
     const box = this.canvas.getBoundingClientRect();
-    if (!box.width || !box.height) return;
+    if (!box.width || !box.height || (box.width === this.width && box.height === this.height)) return;
     const first = !this.width;
     this.width = box.width;
     this.height = box.height;
@@ -96,13 +96,14 @@ class BoardView {
     const { x0, y0, x1, y1 } = this.board.extent;
     this.x0 = Math.max(x0, Math.min(x1, this.x0));
     this.y0 = Math.max(y0, Math.min(y1, this.y0));
-    this.repaint();
+    this.stale ||= "moved";
+    this.refresh();
     this.tell("look");
   }
 
   /** Paint everything anew at the next frame. */
   repaint() {
-    this.stale = true;
+    this.stale = "all";
     this.refresh();
   }
 
@@ -121,31 +122,36 @@ class BoardView {
 
   paint() {
     if (!this.width) return;
-    if (this.stale && this.pointers.size && this.cost > 40) {
+    if (this.stale === "moved" && this.cost > 40) {
       // a board of very many shapes follows the finger as a picture, and is painted when it rests
       clearTimeout(this.later);
-      this.later = setTimeout(() => this.paintStill() || this.refresh(), 120);
+      this.later = setTimeout(() => this.repaint(), 120);
     } else if (this.stale) {
       this.paintStill();
     }
     const ctx = this.ctx;
+    this.clear(ctx);
+    const { scale, corner } = this.stillView;
+    const grown = this.scale / scale / this.ratio;
+    ctx.drawImage(this.still, this.x(corner.x), this.y(corner.y), this.still.width * grown, this.still.height * grown);
+    this.paintOver(ctx);
+  }
+
+  /** Leave nothing but the ground, and measure in the page's pixels. */
+  clear(ctx) {
     ctx.setTransform(1, 0, 0, 1, 0, 0);
     ctx.fillStyle = this.colours.paper;
     ctx.fillRect(0, 0, this.canvas.width, this.canvas.height);
-    const grown = this.scale / this.stillView.scale;
     ctx.setTransform(this.ratio, 0, 0, this.ratio, 0, 0);
-    const corner = this.stillView.corner;
-    ctx.drawImage(this.still, this.x(corner.x), this.y(corner.y), this.width * grown, this.height * grown);
-    this.paintOver(ctx);
   }
 
   paintStill() {
     const start = performance.now();
     const ctx = this.still.getContext("2d", { alpha: false });
-    ctx.setTransform(this.ratio, 0, 0, this.ratio, 0, 0);
+    this.clear(ctx);
     paintBoard(ctx, this.board, this, this.colours);
     this.stillView = { scale: this.scale, corner: this.at(0, 0) };
-    this.stale = false;
+    this.stale = "";
     this.cost = performance.now() - start;
   }
 

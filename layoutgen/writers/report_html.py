@@ -11,14 +11,16 @@ from collections.abc import Iterator
 from layoutgen.checks import Finding
 from layoutgen.numbers import fixed, mm_short
 from layoutgen.units import quantity_text
-from layoutgen.writers.html import Cell, cell, escape, items, section, table
-from layoutgen.writers.page_response import response_section
+from layoutgen.writers.html import Cell, cell, escape, items, section, table, zoom_link
+from layoutgen.writers.page_board import board_data, finding_target, inline_json
+from layoutgen.writers.page_response import response_numbers, response_section
+from layoutgen.writers.page_script import content_policy, script
 from layoutgen.writers.page_style import STYLE
 from layoutgen.writers.page_tables import bias_tables, line_tables, part_table, port_table, strip_table
+from layoutgen.writers.page_viewer import board_figure
 from layoutgen.writers.records import Job, Result
-from layoutgen.writers.svg import artwork_svg
 
-__all__ = ["write_report_html"]
+__all__ = ["empty_page", "report_page", "write_report_html"]
 
 _CAUTIONS = (
     "Radio-frequency power burns, and the burn goes deep before it hurts: never touch or probe a powered "
@@ -42,6 +44,9 @@ _FOOTER = (
     "see what was not checked.</p></footer>"
 )
 
+_THEME = '<button type="button" id="theme" aria-pressed="false">Dark</button>'
+"""The theme's switch; it is seen where scripts run."""
+
 _SECTIONS = (
     ("board", "Board"),
     ("findings", "Findings"),
@@ -58,12 +63,43 @@ _SECTIONS = (
 
 def write_report_html(result: Result, job: Job) -> bytes:
     """Return the page; ``job.files`` gives the picture, and the files' names and sizes."""
-    title = escape(result.circuit.file.design.title)
+    return report_page(result, job)
+
+
+def report_page(result: Result, job: Job, version: str = "") -> bytes:
+    """Return the page, for a server that draws anew with the drawing's version.
+
+    Args:
+        result: Every stage's result.
+        job: As for any writer.
+        version: Not empty: the page asks the server it came from for another version, at ``events``.
+    """
+    data = [_data("board-data", board_data(result))]
+    if result.response is not None:
+        data.append(_data("plot-data", response_numbers(result.response)))
     body = "".join(_body(result, job))
+    return _page(result.circuit.file.design.title, body, "".join(data), version or None)
+
+
+def empty_page(title: str) -> bytes:
+    """Return the page of a server that has no drawing yet; it asks for the first one, at ``events``."""
+    body = f"<header>{_THEME}<h1>{escape(title)}</h1></header><main><p>Nothing has been drawn yet.</p></main>"
+    return _page(title, body, "", "")
+
+
+def _data(name: str, data: object) -> str:
+    return f'<script type="application/json" id="{name}">{inline_json(data)}</script>\n'
+
+
+def _page(title: str, body: str, data: str, version: str | None) -> bytes:
+    """Return a whole page; ``version`` None is one that asks nobody for news."""
+    live = "" if version is None else f'<meta name="layoutgen-watch" content="{escape(version)}">'
+    policy = content_policy(STYLE, live=version is not None)
     page = (
-        f'<!DOCTYPE html>\n<html lang="en"><head><meta charset="utf-8"><title>{title}</title>'
-        '<meta name="viewport" content="width=device-width, initial-scale=1">'
-        f"<style>{STYLE}</style></head>\n<body>{body}</body></html>\n"
+        f'<!DOCTYPE html>\n<html lang="en"><head><meta charset="utf-8"><title>{escape(title)}</title>'
+        f'<meta http-equiv="Content-Security-Policy" content="{policy}">'
+        f'<meta name="viewport" content="width=device-width, initial-scale=1">{live}'
+        f"<style>{STYLE}</style></head>\n<body>{body}\n{data}<script>{script()}</script></body></html>\n"
     )
     return page.encode("utf-8")
 
@@ -71,7 +107,7 @@ def write_report_html(result: Result, job: Job) -> bytes:
 def _body(result: Result, job: Job) -> Iterator[str]:
     yield _header(result)
     yield "<main>"
-    yield section("board", "Board", _figure(result, job), _board_text(result))
+    yield section("board", "Board", board_figure(result, job), _board_text(result))
     yield section("findings", "Findings", *_findings(result))
     yield section("not-checked", "Not checked", *_not_checked(result))
     yield section("lines", "Lines", *line_tables(result), strip_table(result))
@@ -92,7 +128,7 @@ def _header(result: Result) -> str:
     middle = quantity_text(design.frequency, "frequency")
     links = "".join(f'<a href="#{anchor}">{name}</a>' for anchor, name in _SECTIONS)
     return (
-        f"<header><h1>{escape(design.title)}{revision}</h1>"
+        f"<header>{_THEME}<h1>{escape(design.title)}{revision}</h1>"
         f'<p class="soft">{low} to {high}, designed at {middle}</p>{_verdict(result)}'
         f'<nav aria-label="Sections">{links}</nav></header>'
     )
@@ -120,13 +156,6 @@ def _many(count: int, noun: str) -> str:
     return f"{count} {noun}{'' if count == 1 else 's'}"
 
 
-def _figure(result: Result, job: Job) -> str:
-    """Return the picture, taken from the SVG file when that has been written already."""
-    data = job.files.get(f"{job.stem}.svg")
-    svg = data.decode("utf-8") if data else artwork_svg(result.artwork, result.findings)
-    return f"<figure>{svg}</figure>"
-
-
 def _board_text(result: Result) -> str:
     file, rules, placement = result.circuit.file, result.circuit.rules, result.placement
     substrate = file.substrate
@@ -150,12 +179,12 @@ def _findings(result: Result) -> Iterator[str]:
     yield table(
         "Findings, numbered as in the picture",
         ("No.", "Severity", "Rule", "Items", "Measured", "Limit", "At (mm)", "What"),
-        (_finding_row(number, finding) for number, finding in enumerate(result.findings, start=1)),
+        (_finding_row(result, number, finding) for number, finding in enumerate(result.findings, start=1)),
         [f"finding-{number}" for number in range(1, len(result.findings) + 1)],
     )
 
 
-def _finding_row(number: int, finding: Finding) -> list[Cell]:
+def _finding_row(result: Result, number: int, finding: Finding) -> list[Cell]:
     severity = f'<span class="{finding.severity}">{finding.severity}</span>'
     if finding.waived is not None:
         severity = f"waived {finding.severity}"
@@ -163,8 +192,9 @@ def _finding_row(number: int, finding: Finding) -> list[Cell]:
         f"<br><small>waived: {escape(finding.waived)}</small>" if finding.waived else ""
     )
     at = None if finding.at is None else f"{fixed(finding.at[0] / 1e6, 3)}, {fixed(finding.at[1] / 1e6, 3)}"
+    has_place = finding.at is not None or finding_target(result, finding)
     return [
-        str(number),
+        zoom_link(f"finding:{number}", number) if has_place else str(number),
         severity,
         escape(finding.rule),
         cell(", ".join(finding.items)),

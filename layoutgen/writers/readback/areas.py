@@ -114,7 +114,7 @@ def arc_length(shapes: Iterable[Shape]) -> float:
 def area_check(file: str, reader: str, what: str, found: Area, wanted: Area, arcs: float = 0.0) -> Check:
     """Return the area of the symmetric difference; the limit grows with the length of arcs [mm]."""
     difference = shapely.symmetric_difference(found.region(), wanted.region()).area / _NM2_PER_MM2
-    limit = FLOOR_MM2 + 2.0 * FINE_NM * 1e-6 * arcs
+    limit = FLOOR_MM2 + FINE_NM * 1e-6 * arcs
     return Check(
         file=file,
         reader=reader,

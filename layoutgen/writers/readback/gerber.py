@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import hashlib
 import math
 import warnings
 from collections import Counter
@@ -32,6 +33,9 @@ __all__ = ["layer_of", "read_gerber"]
 _READER = "gerbonara"
 _NM = 1e6
 _FINE_MM = FINE_NM / _NM
+_JOIN_MM = 5e-7
+
+Point = tuple[float, float]
 
 
 def layer_of(file: str) -> str | None:
@@ -54,6 +58,7 @@ def read_gerber(file: str, data: bytes, result: Result) -> Evidence:
         read = library.GerberFile.from_string(text, filename=Path(file))
     yield count_check(file, _READER, "warnings of the reader", len(told), 0)
     yield from _attributes(file, read, layer)
+    yield count_check(file, "MD5 of the file itself", "digests that differ", int(not _digest_holds(data)), 0)
     shapes = layers_of(result)[layer]
     objects = list(read.objects)
     clear = sum(not item.polarity_dark for item in objects)
@@ -70,6 +75,13 @@ def read_gerber(file: str, data: bytes, result: Result) -> Evidence:
     yield _flashes(file, objects, wanted)
     if layer.startswith("copper") and len(wanted) < len(shapes):
         yield NotProved(file, "nets and functions of regions: the reader does not keep them")
+
+
+def _digest_holds(data: bytes) -> bool:
+    """Tell whether the file's own digest, of all before it without line ends, is right."""
+    body, mark, rest = data.partition(b"%TF.MD5,")
+    digest = hashlib.md5(body.translate(None, b"\r\n"), usedforsecurity=False).hexdigest()
+    return bool(mark) and rest.startswith(digest.encode("ascii"))
 
 
 def _attributes(file: str, read: Any, layer: str) -> Evidence:
@@ -104,30 +116,37 @@ def _mm(owner: Any, value: float) -> float:
 def _polygon(primitive: Any) -> BaseGeometry:
     """Return a primitive [nm] as an area; an outline that touches itself along cuts is opened again."""
     outline = primitive if hasattr(primitive, "arc_centers") else primitive.to_arc_poly()
-    points = [(x * _NM, y * _NM) for x, y in outline.approximate_arcs(max_error=_FINE_MM).outline]
-    polygon = shapely.Polygon(points)
+    points: list[Point] = []
+    for start, end, (clockwise, centre) in outline.segments:
+        points += [start] if clockwise is None else _arc(start, end, centre, clockwise)
+    polygon = shapely.Polygon(np.array(points) * _NM)
     return polygon if polygon.is_valid else shapely.make_valid(polygon)
 
 
+def _arc(start: Point, end: Point, centre: Point, clockwise: bool) -> list[Point]:
+    """Return an arc as points [mm], its end left out."""
+    radius = math.dist(start, centre)
+    first = math.atan2(start[1] - centre[1], start[0] - centre[0])
+    sweep = (math.atan2(end[1] - centre[1], end[0] - centre[0]) - first) % (2.0 * math.pi)
+    if clockwise:
+        sweep -= 2.0 * math.pi
+    count = max(1, math.ceil(abs(sweep) / (2.0 * math.acos(max(0.0, 1.0 - _FINE_MM / radius)))))
+    angles = [first + sweep * k / count for k in range(1, count)]
+    return [start, *((centre[0] + radius * math.cos(a), centre[1] + radius * math.sin(a)) for a in angles)]
+
+
 def _loops(objects: Iterable[Any]) -> list[np.ndarray[Any, Any]]:
-    """Return the closed outlines [nm] that draws follow; what does not join ends an outline."""
-    loops: list[list[tuple[float, float]]] = []
-    end: tuple[float, float] | None = None
-    for item in objects:
-        points = _drawn(item)
-        if end is None or math.dist(points[0], end) > 0.5:
+    """Return the closed outlines [nm] that draws follow; what does not join on to the last begins another."""
+    loops: list[list[Point]] = []
+    end: Point | None = None
+    for item in (draw.converted("mm") for draw in objects):
+        start, last = (item.x1, item.y1), (item.x2, item.y2)
+        if end is None or math.dist(start, end) > _JOIN_MM:
             loops.append([])
-        loops[-1] += points[:-1]
-        end = points[-1]
-    return [np.array(loop) for loop in loops]
-
-
-def _drawn(item: Any) -> list[tuple[float, float]]:
-    """Return a draw or an arc as points [nm]."""
-    pieces = item.approximate(max_error=_FINE_MM, unit="mm") if hasattr(item, "clockwise") else [item]
-    first = pieces[0]
-    points = [(_mm(first, first.x1), _mm(first, first.y1))]
-    return points + [(_mm(piece, piece.x2), _mm(piece, piece.y2)) for piece in pieces]
+        arc = hasattr(item, "clockwise")
+        loops[-1] += _arc(start, last, item.center, item.clockwise) if arc else [start]
+        end = last
+    return [np.array(loop) * _NM for loop in loops]
 
 
 def _flashes(file: str, objects: Iterable[Any], wanted: Iterable[Flash]) -> Check:
