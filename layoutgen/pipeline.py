@@ -29,6 +29,11 @@ MAX_ROUNDS = 4
 """Most drawings made to let widths, corrected lengths and the pour's measured distances agree [-]."""
 SETTLED = 1e-6
 """Widths that move by less than this [m] count as settled."""
+WORTH_A_NOTE = 0.002
+"""Share of its width [-] by which a line may miss what its pour asks for without a note: 0.1 % of impedance.
+
+A pour that drops or gains a piece as the board grows by a step can keep a wide line from settling for good.
+"""
 
 Fit = Callable[..., LengthFit]
 Tell = Callable[[str], None]
@@ -121,8 +126,9 @@ def _settled(circuit: Circuit, clock: _Clock, fit: Fit | None) -> tuple[Artwork,
     with clock("artwork"):
         artwork = draw(best.draft.placement)
     with clock("sizing"):  # a piece of pour that holds no vias is dropped from the final drawing only
-        moved = largest_move(artwork.placement.sized, size_circuit(circuit, measured_gaps(artwork)))
-    return artwork, (*_unsettled_widths(moved), *_unsettled_lengths(best.found))
+        asked = size_circuit(circuit, measured_gaps(artwork))
+    widths = _unsettled_widths(artwork.placement.sized, asked)
+    return artwork, (*widths, *_unsettled_lengths(best.found))
 
 
 @dataclass(frozen=True, slots=True, eq=False)
@@ -173,9 +179,10 @@ def _uncorrected(circuit: Circuit, clock: _Clock, reason: str) -> tuple[Artwork,
     return artwork, (*notes, (NOTE_RULE, "", f"{reason}; no length is corrected"))
 
 
-def _unsettled_widths(moved: tuple[str, float]) -> tuple[Note, ...]:
-    """Return a note when the drawing's pour would still move a width, by ``moved`` (name, [m])."""
-    if moved[1] < SETTLED:
+def _unsettled_widths(drawn: SizedCircuit, asked: SizedCircuit) -> tuple[Note, ...]:
+    """Return a note when the drawing's pour asks for a width that is worth one."""
+    moved = largest_move(drawn, asked)
+    if moved[1] < SETTLED or moved[1] < WORTH_A_NOTE * _widths(drawn)[moved[0]]:
         return ()
     text = (
         f"widths had not settled after {MAX_ROUNDS} drawings: with the pour as drawn, {moved[0]} would be "

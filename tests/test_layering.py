@@ -26,6 +26,7 @@ ORDER: tuple[tuple[str, ...], ...] = (
     ("compare",),
     ("writers",),
     ("size_report", "pipeline", "terminal"),
+    ("watch",),
     ("cli",),
 )
 """Modules and folders of the package; each may import those of earlier rows and, within a folder, itself."""

@@ -25,32 +25,47 @@ Floats = npt.NDArray[np.float64]
 
 _MM = 1e6
 _SPREAD = 0.02  # what the least surplus of a leg counts against the size of the box
+_PLAY = 10.0  # what a strip beside a part counts
+_STRAIN = 1e3  # what a wrong length counts
+_PART_STRAIN = 5e3  # what a wrong part counts: lines are more easily changed
 
 
 @dataclass(frozen=True, slots=True)
 class Bar:
-    """What a drawing asks of one piece [nm]: a line's length and least legs, or a part's fixed vector."""
+    """What a drawing asks of one piece [nm]: a line's length and least legs, or a part's fixed vector.
+
+    ``play`` is by how much a part's nodes may lie farther apart, a strip filling the rest.
+    """
 
     length: int = 0
     least: tuple[int, ...] = ()
     vector: tuple[int, int] | None = None
+    play: int = 0
 
 
 @dataclass(frozen=True, slots=True)
 class Shape:
-    """A solved cluster [nm]: hubs, each line's legs from its first end (empty for parts), hubs and bends."""
+    """A solved cluster [nm]: hubs, each line's legs from its first end (empty for parts), hubs and bends.
+
+    ``more`` is by how much the nodes of each part lie farther apart than they must.
+    """
 
     hubs: tuple[Point, ...]
     legs: tuple[tuple[int, ...], ...]
     vertices: tuple[Point, ...]
+    more: tuple[int, ...]
 
 
 @dataclass(frozen=True, slots=True)
 class Strain:
-    """How much longer (positive) or shorter one piece would have to be [nm] for its loop to close."""
+    """How much longer (positive) or shorter each piece would have to be [nm] for the loops to close."""
 
-    piece: int
-    change: float
+    changes: tuple[float, ...]
+
+    @property
+    def total(self) -> float:
+        """All changes together [nm]."""
+        return sum(abs(change) for change in self.changes)
 
 
 class _Program:
@@ -124,7 +139,9 @@ class _Program:
         for axis, weight in enumerate(aim):
             cost[self.box_at + 2 * axis], cost[self.box_at + 2 * axis + 1] = -weight, weight
         cost[self.spread_at] = -_SPREAD
-        cost[self.strain_at :] = 1e3
+        for k, bar in enumerate(self.bars):
+            at = self.strain_at + 2 * k
+            cost[at : at + 2] = _STRAIN if bar.vector is None else _PART_STRAIN
         bounds: list[tuple[float | None, float | None]] = [(None, None)] * self.size
         bounds[0] = bounds[len(self.scheme.outer)] = (0.0, 0.0)
         for k, bar in enumerate(self.bars):
@@ -133,6 +150,10 @@ class _Program:
         bounds[self.spread_at] = (0.0, 1e3)
         for v in range(self.strain_at, self.size):
             bounds[v] = (0.0, most)
+        for k, bar in enumerate(self.bars):
+            if bar.play and most is not None:
+                cost[self.strain_at + 2 * k] = _PLAY
+                bounds[self.strain_at + 2 * k] = (0.0, max(bar.play / _MM, most))
         equal, wanted = _matrix(self.equal, self.size)
         below, limits = _matrix(self.below, self.size)
         found = linprog(cost, A_ub=below, b_ub=limits, A_eq=equal, b_eq=wanted, bounds=bounds, method="highs")
@@ -177,16 +198,15 @@ def solve_closure(
     return None if found is None else _rounded(program, found)
 
 
-def strain(scheme: Scheme, drawing: Drawing, bars: Sequence[Bar]) -> tuple[float, Strain]:
-    """Return the least total change of lengths [nm] at which a drawing closes, and its largest part."""
+def strain(scheme: Scheme, drawing: Drawing, bars: Sequence[Bar]) -> Strain | None:
+    """Return the least changes of lengths at which a drawing closes, None where none would do."""
     program = _Program(scheme, drawing, bars)
     program.build(())
     found = program.solve((1.0, 1.0), None)
     if found is None:
-        return float("inf"), Strain(0, 0.0)
+        return None
     changes = (found[program.strain_at :: 2] - found[program.strain_at + 1 :: 2]) * _MM
-    worst = int(np.argmax(np.abs(changes)))
-    return float(np.abs(changes).sum()), Strain(worst, float(changes[worst]))
+    return Strain(tuple(float(change) for change in changes))
 
 
 def _rounded(program: _Program, found: Floats) -> Shape:
@@ -212,7 +232,16 @@ def _rounded(program: _Program, found: Floats) -> Shape:
             for a, b in itertools.pairwise(chain)
         ]
         legs.append(tuple(sizes) if program.bars[k].least else ())
-    return Shape(tuple(vertices[:hubs]), tuple(legs), tuple(vertices))
+    more = tuple(_more(program.bars[k], vertices[p.a], vertices[p.b]) for k, p in enumerate(scheme.pieces))
+    return Shape(tuple(vertices[:hubs]), tuple(legs), tuple(vertices), more)
+
+
+def _more(bar: Bar, start: Point, stop: Point) -> int:
+    """Return by how much a part's nodes lie farther apart than its vector is long [nm]."""
+    if bar.vector is None or not bar.play:
+        return 0
+    apart = abs(stop[0] - start[0]) + abs(stop[1] - start[1])
+    return max(0, apart - abs(bar.vector[0]) - abs(bar.vector[1]))
 
 
 def _snapped(

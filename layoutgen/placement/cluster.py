@@ -5,7 +5,7 @@ from __future__ import annotations
 import itertools
 import math
 from collections.abc import Iterator, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 
 from layoutgen.circuit import End, EndKind
 from layoutgen.circuit.queries import ends_of
@@ -25,12 +25,14 @@ __all__ = ["ClusterPlan", "ClusterSolver", "Solution"]
 MOST_DRAWINGS = 6
 """Drawings of a cluster for which roles and aims are varied [-]."""
 
-MOST_PROGRAMS = 250
+MOST_PROGRAMS = 200
 """Linear programs spent on finding them [-]."""
 
 _MORE_BENDS = 1  # how many bends more than the fewest are looked at
 _AIMS = ((1.0, 1.0), (1.0, 0.15), (0.15, 1.0))
 _MOST_ROLES = 16
+_MOST_STRAINED = 60  # drawings looked at to say why a loop does not close
+_PLAY_HEIGHTS = 4  # by how many heights a part's nodes may lie farther apart than they must
 _SLACK = 20.0  # [nm]: what a length may be off when loops close; under 0.001 deg to 100 GHz
 _ROUGH_HEIGHTS = 3.0  # by how many heights roles of junctions may change a length, at most
 
@@ -71,16 +73,19 @@ class Solution:
 
 @dataclass(slots=True)
 class ClusterSolver:
-    """One cluster of a circuit: its scheme, and its solutions when they are first asked for."""
+    """One cluster of a circuit: its scheme, and its solutions when they are first asked for.
+
+    ``known`` holds what was found for clusters like it.
+    """
 
     kit: Kit
     router: Router
     number: int
+    known: dict[object, list[Solution]] = field(default_factory=dict)
     scheme: Scheme = field(init=False)
     nets: tuple[str, ...] = field(init=False)
     ends: tuple[tuple[End, End], ...] = field(init=False)
     outer: tuple[tuple[End, ...], ...] = field(init=False)
-    strained: tuple[float, Strain] | None = field(init=False, default=None)
     _found: list[Solution] | None = field(init=False, default=None)
 
     def __post_init__(self) -> None:
@@ -122,11 +127,31 @@ class ClusterSolver:
     def solutions(self) -> list[Solution]:
         """Return the cluster's solutions, symmetric ones first, then by fewest bends and size."""
         if self._found is None:
-            seen: dict[object, Solution] = {}
-            for solution in self._all():
-                seen.setdefault((solution.plan.outer, solution.shape), solution)
-            self._found = sorted(seen.values(), key=_rank)
+            key = self._key()
+            if key in self.known:
+                self._found = [self._adopted(solution) for solution in self.known[key]]
+            else:
+                self._found = self.known[key] = self._searched()
         return self._found
+
+    def _searched(self) -> list[Solution]:
+        seen: dict[object, Solution] = {}
+        for solution in self._all():
+            seen.setdefault((solution.plan.outer, solution.shape), solution)
+        return sorted(seen.values(), key=_rank)
+
+    def _adopted(self, solution: Solution) -> Solution:
+        """Return the solution of a like cluster as one of this cluster."""
+        return replace(solution, roles=self._roles(solution.plan.drawing, solution.plan.outer))
+
+    def _key(self) -> object:
+        """Return what makes two clusters alike: pieces without names, what leaves, what legs must keep."""
+        pieces = [(p.a, p.b, p.is_line, p.turn, p.data, p.word) for p in self.scheme.pieces]
+        ends = [[(e.kind, e.index, self.kit.across(e)) for e in found] for found in self.outer]
+        rules = [
+            self.router.rules(self.ends[k][0]) if p.is_line else 0 for k, p in enumerate(self.scheme.pieces)
+        ]
+        return repr((pieces, ends, rules, self.entry))
 
     def solve(self, plan: ClusterPlan) -> Solution | None:
         """Return a plan with its lengths, None where its loops cannot close."""
@@ -169,16 +194,39 @@ class ClusterSolver:
                 yield from found
                 if found:
                     drawn, fewest = drawn + 1, bends if fewest is None else fewest
-                elif not drawn:
-                    self._note_strain(drawing)
 
-    def _note_strain(self, drawing: Drawing) -> None:
-        """Keep the least strained of the drawings that do not close."""
-        bars = self._bars(drawing, self._roles(drawing, self._any_outer(drawing)))
-        if bars is not None:
-            total, worst = strain(self.scheme, drawing, bars)
-            if self.strained is None or total < self.strained[0]:
-                self.strained = (total, worst)
+    def strained(self) -> Strain | None:
+        """Return the least changes of lengths with which a cluster without solution would close."""
+        best: Strain | None = None
+        tried = 0
+        for bends in range(MOST_BENDS + 1):
+            some = list(drawings(self.scheme, self.entry, self._any_reach, bends))
+            some.sort(key=lambda drawing: self._mirror(drawing) is None)
+            for drawing in some[: _MOST_STRAINED - tried]:
+                tried += 1
+                bars = self._bars(drawing, self._roles(drawing, self._any_outer(drawing)))
+                found = None if bars is None else strain(self.scheme, drawing, bars)
+                if found is not None and (best is None or found.total < best.total):
+                    best = found
+        return best
+
+    def _any_reach(self, k: int, word: Word, heading: float) -> Range | None:
+        """Return the range of a piece that may be as long as it likes [nm]."""
+        far = 1e9
+        directions = [unit(h) for h in headings_of(heading, word)]
+        found = [
+            bound
+            for axis in (0, 1)
+            for bound in (
+                min(0.0, *(far * d[axis] for d in directions)),
+                max(0.0, *(far * d[axis] for d in directions)),
+            )
+        ]
+        return (
+            (found[0], found[1], found[2], found[3])
+            if self.scheme.pieces[k].is_line
+            else (-far, far, -far, far)
+        )
 
     def _vary(self, drawing: Drawing) -> Iterator[Solution]:
         """Yield solutions of one drawing with all sensible headings of what leaves it, and several aims."""
@@ -256,7 +304,7 @@ class ClusterSolver:
         bars = []
         for k, piece in enumerate(self.scheme.pieces):
             if not piece.is_line:
-                bars.append(Bar(vector=self.vector(k, drawing.headings[k][0], roles)))
+                bars.append(self._rigid(k, drawing.headings[k][0], roles))
                 continue
             word = drawing.words[k]
             try:
@@ -265,6 +313,12 @@ class ClusterSolver:
                 return None
             bars.append(Bar(length, self._least(k, word)))
         return bars
+
+    def _rigid(self, k: int, heading: float, roles: tuple[Headings, ...]) -> Bar:
+        """Return what a part asks: its vector, with play where both its pads are arms of junctions."""
+        vector, piece = self.vector(k, heading, roles), self.scheme.pieces[k]
+        loose = all(len(roles[hub]) > 2 for hub in (piece.a, piece.b)) and 0 in vector
+        return Bar(vector=vector, play=_PLAY_HEIGHTS * self.kit.model.limits.height if loose else 0)
 
     def _least(self, k: int, word: Word) -> tuple[int, ...]:
         return least_legs(word, self.router.rules(self.ends[k][0]))
@@ -280,12 +334,12 @@ class ClusterSolver:
         ux, uy = unit(outer.heading)
         return round(outer.x + ux * offset), round(outer.y + uy * offset)
 
-    def part_pose(self, k: int, start: Pose, roles: Sequence[Headings]) -> Pose:
-        """Return a part's pose for the pose at its first node, heading into it."""
+    def part_pose(self, k: int, start: Pose, roles: Sequence[Headings], more: int = 0) -> Pose:
+        """Return a part's pose for the pose at its first node, heading into it; ``more`` is split evenly."""
         end = self.ends[k][0]
         body = self.kit.model.bodies[end.element]
         land = body.land_at(end)
-        offset = self.offset(end, roles[self.scheme.pieces[k].a])
+        offset = self.offset(end, roles[self.scheme.pieces[k].a]) + more // 2
         ux, uy = unit(start.heading)
         at = Pose(round(start.x + ux * offset), round(start.y + uy * offset), start.heading)
         return body.entered_by(land, at, edge="outer")

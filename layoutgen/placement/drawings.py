@@ -14,10 +14,10 @@ from layoutgen.placement.words import Word, reversed_word
 
 __all__ = ["Drawing", "Piece", "Scheme", "drawings"]
 
-MOST_BENDS = 10
+MOST_BENDS = 8
 """Most bends of a whole cluster [-]; with four a line can take up any surplus."""
 
-MOST_STEPS = 60_000
+MOST_STEPS = 25_000
 """Steps of the walk for one number of bends after which the rest is left out."""
 
 _L, _R = 90.0, -90.0

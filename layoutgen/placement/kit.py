@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from dataclasses import dataclass, field
 
-from layoutgen.circuit import End
+from layoutgen.circuit import End, EndKind
 from layoutgen.circuit.queries import net_of
 from layoutgen.geometry import Point
 from layoutgen.placement.bodies import OVERLAP, BodyLand, PartBody
@@ -80,6 +80,12 @@ class Kit:
         layout = self.model.file.layout
         hint = layout.hints.get(end.element) if layout is not None else None
         return hint is None or hint.leave is None or heading == hint.leave % 360.0
+
+    def across(self, end: End) -> int:
+        """Return how wide the copper of an end is [nm], 0 for a port."""
+        if end.kind is EndKind.PAD:
+            return self.model.bodies[end.element].land_at(end).across
+        return self.model.widths.get(end.element, 0)
 
     def beside(self, across: list[int]) -> int:
         """Return how far from a node a pad begins [nm], for the half widths of the lines that run across.

@@ -340,7 +340,7 @@ class Layer:
     def _junction_beyond(self, growth: Growth, hub: Hub, land: BodyLand, outer: Pose) -> None:
         """Put a junction's node just beyond a pad and leave its arms, or its cluster, pending."""
         sides = [*(arm.end for arm in hub.arms if arm.turn is None), *hub.inner]
-        half = max((self._half_width(end) for end in sides), default=0)
+        half = max((self.kit.across(end) // 2 for end in sides), default=0)
         node = ahead(outer, max(0, half - OVERLAP))
         if half:
             width = min(strip_width(self.kit.model, hub.net), land.across)
@@ -349,11 +349,6 @@ class Layer:
             self._enter_cluster(growth, hub, node)
         else:
             self._leave_arms(growth, hub, node)
-
-    def _half_width(self, end: End) -> int:
-        if end.kind is EndKind.PAD:
-            return self.kit.model.bodies[end.element].land_at(end).across // 2
-        return self.kit.model.widths.get(end.element, 0) // 2
 
     # -- where the walk begins -----------------------------------------------------------------------
 

@@ -97,7 +97,7 @@ def _part(
 ) -> None:
     """Lay a part of a loop."""
     end = solver.ends[k][0]
-    layer.part_alone(growth, end, solver.part_pose(k, start, solution.roles))
+    layer.part_alone(growth, end, solver.part_pose(k, start, solution.roles, solution.shape.more[k]))
 
 
 def _hub(
@@ -108,7 +108,10 @@ def _hub(
     point = solution.shape.hubs[hub]
     for end, heading in role:
         if end.kind is EndKind.PAD and end not in solver.outer[hub]:
-            _strip_to_pad(growth, layer, solver, role, (end, pinning.pose(point, heading)), net)
+            k = next(i for i, ends in enumerate(solver.ends) if end in ends)
+            _strip_to_pad(
+                growth, layer, solver, role, (end, pinning.pose(point, heading)), solution.shape.more[k]
+            )
     arrival = layer.kit.tour.hubs[net].arrival
     for end, heading in zip(solver.outer[hub], solution.plan.outer[hub], strict=True):
         if end != arrival:
@@ -117,15 +120,15 @@ def _hub(
 
 
 def _strip_to_pad(
-    growth: Growth, layer: Layer, solver: ClusterSolver, role: Headings, pad: tuple[End, Pose], net: str
+    growth: Growth, layer: Layer, solver: ClusterSolver, role: Headings, pad: tuple[End, Pose], more: int
 ) -> None:
     """Lay a strip from a node to a pad's edge, unless a line runs through between the two."""
     end, node = pad
-    offset = solver.offset(end, role)
-    if offset <= 0 or _is_crossed(role, end):
+    offset = solver.offset(end, role) + (more + 1) // 2
+    if offset <= 0 or (_is_crossed(role, end) and not more):
         return
-    land = layer.kit.model.bodies[end.element].land_at(end)
-    width = min(strip_width(layer.kit.model, net), land.across)
+    net = layer.kit.net(end)
+    width = min(strip_width(layer.kit.model, net), layer.kit.across(end))
     layer.kit.strip(growth, net, width, (node.point, ahead(node, offset + OVERLAP).point))
 
 

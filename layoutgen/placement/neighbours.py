@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 import math
 from dataclasses import dataclass, field, replace
 
@@ -153,6 +154,7 @@ class Neighbours:
         for name in (*file.parts, *file.lines):
             nets = [net for _, net in ends_of(file, name)]
             if len(nets) != 2 or GROUND in nets:
+                out += self._near_pins(name) if name in file.parts else []
                 continue
             if name in file.parts or self._is_short(name):
                 out.append((nets[0], nets[1]))
@@ -160,6 +162,15 @@ class Neighbours:
             a1, a2, b1, b2 = pair.nets
             out += [(a1, b1), (a2, b2)]
         return out
+
+    def _near_pins(self, name: str) -> list[tuple[str, str]]:
+        """Return the pairs of nets whose pads on one part lie within twice the spacing rule."""
+        lands = [land for land in self.model.bodies[name].lands if land.net != GROUND and land.has_copper]
+        return [
+            (a.net, b.net)
+            for a, b in itertools.combinations(lands, 2)
+            if math.dist((a.x, a.y), (b.x, b.y)) < 2 * self.model.limits.spacing
+        ]
 
     def _is_short(self, name: str) -> bool:
         line = self.model.sized.lines.get(name)

@@ -8,13 +8,15 @@ from itertools import islice
 
 from layoutgen.errors import InfeasibleError
 from layoutgen.placement.budgets import LineLengths
+from layoutgen.placement.explain import explain_loop
 from layoutgen.placement.finish import finish, frame_of
 from layoutgen.placement.model import Model
 from layoutgen.placement.records import Choices, Placement
 from layoutgen.placement.search import Effort, Failure, Search, drawing_cost
 from layoutgen.placement.start import first_states, join_root
 from layoutgen.placement.state import State
-from layoutgen.placement.tour import Tour, plan_tour
+from layoutgen.placement.tour import plan_tour
+from layoutgen.placement.ways import Ways
 from layoutgen.sizing import SizedCircuit
 
 __all__ = ["place"]
@@ -44,40 +46,52 @@ def place(sized: SizedCircuit, like: Choices | None = None) -> Placement:
         WrongInputError: A line has no positive length after its corrections, or a junction too many arms.
     """
     model = Model(sized)
-    tour = plan_tour(model)
-    lengths = LineLengths(model, tour)
-    for name in sized.lines:
-        if not sized.lines[name].free:
-            lengths.by_bends(name)
-    if like is not None and (again := _again(model, tour, lengths, like)) is not None:
-        return finish(model, lengths, again, like.effort)
+    ways, open_loop = _prepared(model)
+    if like is not None and (again := _again(ways, like)) is not None:
+        return finish(model, ways.lengths, again, like.effort)
     failure: Failure | None = None
     for number, effort in enumerate(_EFFORTS):
-        best, found = _attempt(model, tour, lengths, effort)
+        best, found = _attempt(ways, effort)
         if best is not None:
-            return finish(model, lengths, best, number)
+            return finish(model, ways.lengths, best, number)
         failure = failure or found  # the plainest drawing's reason is the one to tell
-    raise _infeasible(model, tour, lengths, failure)
+    raise open_loop or _infeasible(ways, failure)
 
 
-def _again(model: Model, tour: Tour, lengths: LineLengths, like: Choices) -> State | None:
+def _prepared(model: Model) -> tuple[Ways, InfeasibleError | None]:
+    """Return the walk with its ways; loops that no drawing closes are cut, and the first reason is kept."""
+    cut: frozenset[str] = frozenset()
+    reason: InfeasibleError | None = None
+    while True:
+        tour = plan_tour(model, cut)
+        lengths = LineLengths(model, tour)
+        for name, line in model.sized.lines.items():
+            if not line.free:
+                lengths.by_bends(name)
+        ways = Ways(model, tour, lengths)
+        wrong = next((solver for solver in ways.clusters if not solver.solutions()), None)
+        if wrong is None:
+            return ways, reason
+        reason = reason or explain_loop(wrong)
+        cut |= set(tour.loops.clusters[wrong.number].elements)
+
+
+def _again(ways: Ways, like: Choices) -> State | None:
     """Return the state that earlier choices give, None where they no longer fit."""
-    if len(tour.roots) > 1:
+    if len(ways.tour.roots) > 1:
         return None
-    search = Search(model, tour, lengths, _EFFORTS[like.effort])
-    starts = first_states(model, tour, search.ways.layer, search.margins)
+    search = Search(ways, _EFFORTS[like.effort])
+    starts = first_states(ways.model, ways.tour, ways.layer, search.margins)
     start = next(islice(starts, like.start, None), None)
     return None if start is None else search.replay(start, like)
 
 
-def _attempt(
-    model: Model, tour: Tour, lengths: LineLengths, effort: Effort, *, sized_board: bool = True
-) -> tuple[State | None, Failure | None]:
+def _attempt(ways: Ways, effort: Effort, *, sized_board: bool = True) -> tuple[State | None, Failure | None]:
     """Return the best finished state of one effort over all starting frames, or why there is none."""
     best: tuple[float, State] | None = None
     failure: Failure | None = None
-    search = Search(model, tour, lengths, effort)
-    starts = first_states(model, tour, search.ways.layer, search.margins, sized_board=sized_board)
+    search = Search(ways, effort)
+    starts = first_states(ways.model, ways.tour, ways.layer, search.margins, sized_board=sized_board)
     for number, start in enumerate(starts):
         for state in _all_trees(search, replace(start, start=number)):
             frame = frame_of(state)
@@ -85,21 +99,20 @@ def _attempt(
             if best is None or cost < best[0]:
                 best = (cost, state)
         failure = search.failure
-        if best is not None and model.file.board.size is not None:
+        if best is not None and ways.model.file.board.size is not None:
             break
     return (None if best is None else best[1]), failure
 
 
 def _all_trees(search: Search, start: State) -> Iterator[State]:
     """Yield finished states holding every separate tree of the circuit."""
+    ways = search.ways
     states = search.run(start)
-    for root in search.tour.roots[1:]:
+    for root in ways.tour.roots[1:]:
         following: list[State] = []
         for shift in _SHIFTS:
             for state in states[:2]:
-                joined = join_root(
-                    search.model, search.tour, search.ways.layer, search.margins, state, root, shift
-                )
+                joined = join_root(ways.model, ways.tour, ways.layer, search.margins, state, root, shift)
                 following = search.run(joined)
                 if following:
                     break
@@ -109,13 +122,14 @@ def _all_trees(search: Search, start: State) -> Iterator[State]:
     yield from states
 
 
-def _infeasible(model: Model, tour: Tour, lengths: LineLengths, failure: Failure | None) -> InfeasibleError:
+def _infeasible(ways: Ways, failure: Failure | None) -> InfeasibleError:
     """Return the error for a circuit without a place, with the nearest remedy that was found."""
+    model = ways.model
     element = failure.element if failure is not None else model.circuit.spine[0]
     reason = failure.reason if failure is not None else "no placement was found"
     if model.file.board.size is not None:
         for effort in _EFFORTS[:2]:
-            roomy, _ = _attempt(model, tour, lengths, effort, sized_board=False)
+            roomy, _ = _attempt(ways, effort, sized_board=False)
             if roomy is not None:
                 frame = frame_of(roomy)
                 size = f"{frame.width / 1e6:.1f} mm x {frame.height / 1e6:.1f} mm"

@@ -14,7 +14,6 @@ from itertools import islice
 
 from layoutgen.circuit import End, EndKind
 from layoutgen.circuit.queries import is_shunt, net_of
-from layoutgen.placement.budgets import LineLengths
 from layoutgen.placement.clearance import Kind, clearance_table, edge_margins
 from layoutgen.placement.cluster import ClusterPlan
 from layoutgen.placement.kit import PinnedError
@@ -64,24 +63,30 @@ class Failure:
 class Search:
     """One run of the search over one circuit."""
 
-    model: Model
-    tour: Tour
-    lengths: LineLengths
+    ways: Ways
     effort: Effort
-    ways: Ways = field(init=False)
     neighbours: Neighbours = field(init=False)
     failure: Failure | None = field(init=False, default=None)
 
     def __post_init__(self) -> None:
         """Set the helpers up."""
-        self.ways = Ways(self.model, self.tour, self.lengths)
         self.ways.fold_spine, self.ways.any_side = self.effort.fold_spine, self.effort.any_side
         table = clearance_table(self.model.limits, self.model.default_gap)
-        self.neighbours = Neighbours(self.model, self.lengths, table)
+        self.neighbours = Neighbours(self.model, self.ways.lengths, table)
         self.margins = edge_margins(
             self.model.limits, self.model.default_gap, self.model.ground_ring, tight=self.effort.tight_edges
         )
         self._spine = frozenset(self.model.circuit.spine)
+
+    @property
+    def model(self) -> Model:
+        """The circuit."""
+        return self.ways.model
+
+    @property
+    def tour(self) -> Tour:
+        """The walk over it."""
+        return self.ways.tour
 
     margins: Mapping[Kind, int] = field(init=False)
     _spine: frozenset[str] = field(init=False)

@@ -63,7 +63,9 @@ class Ways:
         kit = Kit(self.model, self.tour, self.lengths)
         self.layer = Layer(kit)
         self.router = Router(self.model, self.tour, self.lengths)
-        self.clusters = [ClusterSolver(kit, self.router, k) for k in range(len(self.tour.loops.clusters))]
+        known: dict[object, list[Solution]] = {}
+        count = len(self.tour.loops.clusters)
+        self.clusters = [ClusterSolver(kit, self.router, k, known) for k in range(count)]
         self._spine = frozenset(self.model.circuit.spine)
 
     def mate(self, pending: Pending, state: State) -> Pending | None:

@@ -30,7 +30,7 @@ MOST_CHANGE = math.radians(15.0)
 _PRICE = 4e-3  # what a change of a radian costs, as a difference of S [-]
 _ROUNDS = 6
 _SETTLED = 0.02  # of the cost, relative
-_WORTH = 1e-3  # of the largest difference of S [-]; less is not worth another drawing
+_WORTH = 2e-3  # of the largest difference of S [-]; less is not worth another drawing
 _LEAST = 1e-4  # corrections below are left out [rad]
 
 
@@ -54,7 +54,7 @@ def correct_lengths(
     """Return the corrections that a next drawing should have.
 
     They are those of this drawing, unchanged, when others would lower the largest difference by less
-    than 0.001.
+    than 0.002.
 
     Args:
         artwork: The drawing, with the corrections it was made with.

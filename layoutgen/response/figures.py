@@ -33,7 +33,7 @@ def correction_figures(
     after, before = (float(np.max(np.abs(found), initial=0.0)) for found in (here, undone))
     lossy = solve(drawn_network(artwork, match.frequencies, data, copper=match.copper))
     short = after > CLOSE_ENOUGH
-    best = reachable(match) if short else after
+    best = min(after, reachable(match)) if short else after
     return Correction(
         before=before,
         after=after,

@@ -88,7 +88,7 @@ def _remainder(correction: Correction) -> tuple[tuple[str, str, str], ...]:
     if not correction.holders:
         return ((NOTE_RULE, "", f"{text}; no single element holds it"),)
     first = correction.holders[0]
-    return ((NOTE_RULE, first.element, f"{text}; without {first.what} it would be {first.without:.3f}"),)
+    return ((NOTE_RULE, first.element, f"{text}; {first.without:.3f} without {first.what}"),)
 
 
 def _frozen(values: ArrayType) -> ArrayType:

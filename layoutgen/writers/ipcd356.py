@@ -16,6 +16,7 @@ from dataclasses import dataclass
 import numpy as np
 import shapely
 
+from layoutgen.circuit import OPEN
 from layoutgen.errors import WrongInputError
 from layoutgen.geometry import Point, Ring
 from layoutgen.origin import Fault, Location
@@ -162,7 +163,8 @@ def _line_ends(result: Result) -> Iterator[tuple[str, str, Point, int]]:
     for pair in placement.pairs.values():
         ends = (pair.paths[0][0], pair.paths[0][-1], pair.paths[1][0], pair.paths[1][-1])
         for net, at in zip(pair.nets, ends, strict=True):
-            yield net, pair.name, at, pair.width
+            if net != OPEN:
+                yield net, pair.name, at, pair.width
     for radial in placement.radials.values():
         yield radial.nets[0], radial.name, radial.apex, radial.inner_radius
 

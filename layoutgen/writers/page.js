@@ -84,8 +84,8 @@ class Board {
     this.buttons();
     this.tables();
     this.view.resize();
-    this.recall();
     this.panelFor("");
+    this.recall();
   }
 
   told(what, value) {
@@ -119,11 +119,12 @@ class Board {
   /** Choose an item (or nothing), and show its place if asked to. */
   choose(key, look) {
     this.chosen = this.board.numbers.has(key) ? key : "";
+    this.hovered = "";
     const number = this.board.numbers.get(this.chosen);
     this.view.chosen = number === undefined ? [] : shapesOf(this.board, number);
     this.view.chosenKey = this.chosen;
     const place = look && this.chosen ? placeOf(this.board, this.chosen) : null;
-    if (place) this.view.lookAt(place, 0.35, 3e6);
+    if (place) this.view.lookAt(place, 0.3, 6e6);
     this.panelFor(this.chosen);
     this.markRows();
     if (this.chosen) this.say(`${this.summary(this.chosen)}${place || !look ? "" : ", without a place on the board"}`);

@@ -9,11 +9,13 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
+from pathlib import PurePath
 
 from layoutgen.artwork import Hole, Shape, Via
 from layoutgen.checks import Finding
 from layoutgen.geometry import Ring
 from layoutgen.numbers import fixed
+from layoutgen.origin import Location
 from layoutgen.placement import PlacedLine, PlacedPad, PlacedPair, PlacedPart, PlacedPort, PlacedRadial, Strip
 from layoutgen.reading import Part, Port
 from layoutgen.sizing import BudgetEntry
@@ -272,13 +274,19 @@ def _severity(finding: Finding) -> str:
 def _finding_facts(finding: Finding) -> tuple[Fact, ...]:
     figures = ((name, value) for name, value in (("Measured", finding.measured), ("Limit", finding.limit)))
     lines = ((name, f"{value:.4g} {finding.unit}".strip()) for name, value in figures if value is not None)
-    where = ", ".join(str(location) for location in finding.sources)
+    where = ", ".join(map(_place, finding.sources))
     return (
         ("Rule", finding.rule),
         ("What", finding.text),
         *lines,
         *((("Items", ", ".join(finding.items)),) if finding.items else ()),
         *((("Written at", where),) if where else ()),
-        *((("Limit set at", str(finding.limit_from)),) if finding.limit_from else ()),
+        *((("Limit set at", _place(finding.limit_from)),) if finding.limit_from else ()),
         *((("Waived", finding.waived),) if finding.waived else ()),
     )
+
+
+def _place(location: Location) -> str:
+    """Return a line of a file without the file's folder, which is another on every machine."""
+    name = PurePath(location.file).name
+    return f"{name}, line {location.line}" if location.line else name

@@ -86,7 +86,7 @@ function finish(ctx, paint) {
 }
 
 function paintText(ctx, [text, x, y, height, turn, anchor, style], view, colours) {
-  const size = (height * view.scale) / 0.72;
+  const size = Math.max((height * view.scale) / 0.72, style === "port" ? 11 : 0);
   if (size < 7) return;
   ctx.save();
   ctx.translate(view.x(x), view.y(y));

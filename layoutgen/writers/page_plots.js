@@ -25,7 +25,7 @@ function livePlots(root, data) {
     output.replaceChildren(readings(data, at));
   };
   slider.addEventListener("input", show);
-  slide(Math.floor(data.frequencies.length / 2));
+  slide(data.first);
 }
 
 function gigahertz(data, at) {

@@ -88,9 +88,18 @@ def smith_plot(title: str, response: Response, traces: Sequence[Trace]) -> str:
     return "".join([*parts, *_styles(len(traces), _SMITH + 4), "</svg>"])
 
 
-def plot_data(response: Response, groups: Sequence[tuple[str, Sequence[Trace]]]) -> dict[str, object]:
-    """Return the numbers under the cursor: frequencies [Hz], real and imaginary parts in millionths."""
+def plot_data(
+    response: Response, groups: Sequence[tuple[str, Sequence[Trace]]], first: float
+) -> dict[str, object]:
+    """Return the numbers under the cursor: frequencies [Hz], real and imaginary parts in millionths.
+
+    Args:
+        response: What is plotted.
+        groups: The traces of each block of plots, with its name.
+        first: The frequency that the cursor stands at first [Hz].
+    """
     return {
+        "first": int(np.argmin(np.abs(response.frequencies - first))),
         "frequencies": [round(f) for f in response.frequencies.tolist()],
         "groups": [
             {

@@ -40,9 +40,9 @@ def response_section(result: Result) -> Iterator[str]:
         yield _doubts(result, response.doubts)
 
 
-def response_numbers(response: Response) -> dict[str, object]:
-    """Return the numbers behind the plots, for the cursor."""
-    return plot_data(response, _groups(response))
+def response_numbers(response: Response, frequency: float) -> dict[str, object]:
+    """Return the numbers behind the plots, for the cursor, which begins at a frequency [Hz]."""
+    return plot_data(response, _groups(response), frequency)
 
 
 def _groups(response: Response) -> Groups:

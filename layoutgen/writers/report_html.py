@@ -76,7 +76,8 @@ def report_page(result: Result, job: Job, version: str = "") -> bytes:
     """
     data = [_data("board-data", board_data(result))]
     if result.response is not None:
-        data.append(_data("plot-data", response_numbers(result.response)))
+        middle = result.circuit.file.design.frequency
+        data.append(_data("plot-data", response_numbers(result.response, middle)))
     body = "".join(_body(result, job))
     return _page(result.circuit.file.design.title, body, "".join(data), version or None)
 

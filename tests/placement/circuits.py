@@ -235,3 +235,156 @@ CIRCUITS: dict[str, Data] = {
     ),
 }
 del CIRCUITS["two trees"]["lines"]["stub"], CIRCUITS["two trees"]["lines"]["three"]
+
+
+def divider(z_1: str = "70.7 ohm", z_2: str = "70.7 ohm", resistor: str = "100 ohm", **extra: Any) -> Data:
+    """Return a power divider: two quarter waves whose ends a resistor bridges."""
+    return base(
+        ports={"p1": port("a", edge="west"), "p2": port("y", edge="east"), "p3": port("z", edge="east")},
+        lines={
+            "in": free("a", "t"),
+            "arm_1": line("t", "m1", angle="90 deg", z=z_1),
+            "arm_2": line("t", "m2", angle="90 deg", z=z_2),
+            "out_1": free("m1", "y"),
+            "out_2": free("m2", "z"),
+        },
+        parts={"R1": chip("resistor", resistor, "m1", "m2")},
+        **extra,
+    )
+
+
+def hybrid(series: str = "35.36 ohm", across: str = "50 ohm", **extra: Any) -> Data:
+    """Return a branch-line hybrid."""
+    return base(
+        ports={
+            "p1": port("a", edge="west"),
+            "p2": port("b", edge="east"),
+            "p3": port("c", edge="east"),
+            "p4": port("d", edge="west"),
+        },
+        lines={
+            "in": free("a", "n1"),
+            "s1": line("n1", "n2", angle="90 deg", z=series),
+            "v2": line("n2", "n3", angle="90 deg", z=across),
+            "s2": line("n4", "n3", angle="90 deg", z=series),
+            "v1": line("n1", "n4", angle="90 deg", z=across),
+            "o2": free("n2", "b"),
+            "o3": free("n3", "c"),
+            "o4": free("n4", "d"),
+        },
+        **extra,
+    )
+
+
+def ring(**extra: Any) -> Data:
+    """Return a ring hybrid: three quarters of a wave between two neighbours, a quarter between the others."""
+    return base(
+        ports={
+            "p1": port("a", edge="west"),
+            "p2": port("b", edge="west"),
+            "p4": port("d", edge="east"),
+            "p3": port("c", edge="east"),
+        },
+        lines={
+            "in": free("a", "n1"),
+            "q1": line("n1", "n2", angle="90 deg", z="70.7 ohm"),
+            "q2": line("n2", "n3", angle="90 deg", z="70.7 ohm"),
+            "q3": line("n3", "n4", angle="90 deg", z="70.7 ohm"),
+            "q4": line("n4", "n1", angle="270 deg", z="70.7 ohm"),
+            "o2": free("n2", "b"),
+            "o3": free("n3", "c"),
+            "o4": free("n4", "d"),
+        },
+        **extra,
+    )
+
+
+SUPPLY: Data = {"kind": "dc", "net": "v", "voltage": "5 V", "edge": "north"}
+FEEDBACK: Data = {
+    "pads": {
+        "b": {"at": ["-1 mm", "0 mm"], "size": ["0.8 mm", "0.6 mm"], "heading": "west"},
+        "c": {"at": ["1 mm", "0 mm"], "size": ["0.8 mm", "0.6 mm"], "heading": "east"},
+        "e": {"at": ["0 mm", "-1 mm"], "size": ["0.8 mm", "0.6 mm"], "ground": "vias", "heading": "south"},
+    }
+}
+
+LOOPS: dict[str, Data] = {
+    "equal divider": divider(),
+    "unequal divider": divider("51.5 ohm", "103 ohm", "106 ohm"),
+    "branch-line hybrid": hybrid(),
+    "unequal hybrid": hybrid("40.8 ohm", "70.7 ohm"),
+    "ring": ring(),
+    "two lines between two nets": through_with(
+        {"one": line("n", "m", angle="90 deg"), "two": line("n", "m", angle="60 deg", z="70 ohm")}
+    ),
+    "loop with parts": through_with(
+        {
+            "one": line("n", "m", angle="80 deg"),
+            "two": line("n", "k", angle="70 deg", z="70 ohm"),
+            "three": line("l", "m", angle="75 deg", z="70 ohm"),
+        },
+        {"C1": chip("capacitor", "10 pF", "k", "l")},
+    ),
+    "loop with parts end to end": through_with(
+        {
+            "one": line("n", "m", angle="80 deg"),
+            "two": line("n", "k", angle="70 deg", z="70 ohm"),
+            "three": line("l", "m", angle="75 deg", z="70 ohm"),
+        },
+        {"C1": chip("capacitor", "10 pF", "k", "x"), "R1": chip("resistor", "5 ohm", "x", "l", case="0402")},
+    ),
+    "two-stage divider": base(
+        ports={"p1": port("a", edge="west"), "p2": port("y", edge="east"), "p3": port("z", edge="east")},
+        lines={
+            "in": free("a", "t"),
+            "a1": line("t", "m1", angle="90 deg", z="82 ohm"),
+            "a2": line("t", "m2", angle="90 deg", z="82 ohm"),
+            "b1": line("m1", "n1", angle="90 deg", z="61 ohm"),
+            "b2": line("m2", "n2", angle="90 deg", z="61 ohm"),
+            "out_1": free("n1", "y"),
+            "out_2": free("n2", "z"),
+        },
+        parts={"R1": chip("resistor", "100 ohm", "m1", "m2"), "R2": chip("resistor", "240 ohm", "n1", "n2")},
+    ),
+    "two supplies from one": through_with(
+        {
+            "mid": line("n", "m", angle="60 deg"),
+            "f1": line("n", "k1", angle="90 deg", z="90 ohm"),
+            "f2": line("m", "k2", angle="90 deg", z="90 ohm"),
+            "s1": free("k1", "v", z=""),
+            "s2": free("k2", "v", z=""),
+        },
+        {"C1": chip("capacitor", "22 pF", "k1", "gnd"), "C2": chip("capacitor", "22 pF", "k2", "gnd")},
+        {**two_ports(), "v": SUPPLY},
+    ),
+    "side by side": base(
+        ports=two_ports(),
+        lines={"in": free("a", "n"), "out": free("m", "z")},
+        parts={
+            "C1": chip("capacitor", "22 pF", "n", "m"),
+            "R1": chip("resistor", "10 ohm", "n", "m"),
+            "C2": chip("capacitor", "2 pF", "m", "n", case="0402"),
+        },
+    ),
+    "feedback": base(
+        ports=two_ports(),
+        lines={
+            "in": free("a", "n"),
+            "base": line("n", "b", angle="10 deg"),
+            "collector": line("c", "m", angle="10 deg"),
+            "out": free("m", "z"),
+            "back": line("n", "k", angle="20 deg", z="90 ohm"),
+            "forth": free("l", "m", z="90 ohm"),
+        },
+        parts={
+            "Q1": {
+                "kind": "transistor",
+                "footprint": "small",
+                "pins": {"b": "b", "c": "c", "e": "gnd"},
+            },
+            "R1": chip("resistor", "300 ohm", "k", "l"),
+        },
+        footprints={"small": FEEDBACK},
+    ),
+}
+"""Circuits with loops."""

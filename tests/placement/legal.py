@@ -65,6 +65,24 @@ def loose_ends(placement: Placement) -> list[str]:
     return out
 
 
+def parted_ends(placement: Placement) -> list[str]:
+    """Return nets, banks excepted, whose lines do not end in one and the same point, to the nanometre."""
+    circuit = placement.sized.circuit
+    out = []
+    for net in circuit.nets.values():
+        if net.name == "gnd" or net.bank:
+            continue
+        ends = {
+            line.path[0 if index == 0 else -1]
+            for line in placement.lines.values()
+            for index, name in enumerate(line.nets)
+            if name == net.name
+        }
+        if len(ends) > 1:
+            out.append(f"{net.name}: {sorted(ends)}")
+    return out
+
+
 def outside(placement: Placement) -> list[str]:
     """Return items that reach over the edge distance, ports' copper at their own edge excepted by nothing."""
     edge = placement.sized.circuit.rules.copper.min_edge_distance * 1e9  # type: ignore[union-attr, operator]
@@ -113,6 +131,7 @@ def faults(placement: Placement) -> list[str]:
     return [
         *overlaps(placement),
         *(f"loose: {name}" for name in loose_ends(placement)),
+        *(f"parted: {text}" for text in parted_ends(placement)),
         *(f"outside: {name}" for name in outside(placement)),
         *(f"length: {text}" for text in wrong_lengths(placement)),
         *(f"fold: {text}" for text in tight_folds(placement)),

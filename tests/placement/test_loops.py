@@ -1,0 +1,75 @@
+"""Circuits with loops: legal, closed to the nanometre, symmetric where the circuit is."""
+
+from __future__ import annotations
+
+import re
+from typing import Any
+
+import pytest
+
+from layoutgen.circuit import build_circuit
+from layoutgen.errors import InfeasibleError
+from layoutgen.placement import Placement, place
+from layoutgen.reading import inputs_from_data
+from layoutgen.sizing import size_circuit
+from tests.placement.circuits import LOOPS, divider, hybrid
+from tests.placement.legal import faults
+
+
+def placed(data: dict[str, Any]) -> Placement:
+    inputs = inputs_from_data(data)
+    return place(size_circuit(build_circuit(inputs.circuit, inputs.rules)))
+
+
+@pytest.mark.parametrize("name", LOOPS)
+def test_every_kind_of_loop_is_legal(name: str) -> None:
+    """Catches a loop that does not close, a wrong length, overlaps, parts apart from their lines."""
+    assert faults(placed(LOOPS[name])) == []
+
+
+def test_an_equal_divider_is_its_own_mirror_image() -> None:
+    """Catches arms of different shape, or outputs that are not opposite each other."""
+    placement = placed(LOOPS["equal divider"])
+    axis = placement.ports["p1"].y
+    for first, second in (("arm_1", "arm_2"), ("out_1", "out_2")):
+        mirrored = tuple((x, 2 * axis - y) for x, y in placement.lines[first].path)
+        assert mirrored == placement.lines[second].path
+
+
+def test_a_hybrid_is_a_rectangle() -> None:
+    """Catches needless bends: four straight lines close a hybrid."""
+    placement = placed(LOOPS["branch-line hybrid"])
+    assert all(not placement.lines[name].bends for name in ("s1", "s2", "v1", "v2"))
+
+
+def test_the_same_loop_gives_the_same_placement() -> None:
+    """Catches a dependence on hash order."""
+    assert repr(placed(LOOPS["ring"]).lines) == repr(placed(LOOPS["ring"]).lines)
+
+
+def test_a_loop_too_short_for_its_part_says_so() -> None:
+    """Catches a reason that names neither the loop, nor what stands in the way, nor what would do."""
+    data = divider()
+    data["parts"]["R1"]["case"] = "2512"
+    for name in ("arm_1", "arm_2"):
+        data["lines"][name]["angle"] = "9 deg"
+    with pytest.raises(InfeasibleError) as caught:
+        placed(data)
+    assert all(name in caught.value.reason for name in ("arm_1", "arm_2", "R1", "mm"))
+    for angle, name in re.findall(r'angle = "([0-9.]+) deg" for (\w+)', caught.value.remedy):
+        data["lines"][name]["angle"] = f"{angle} deg"
+    assert faults(placed(data)) == []
+
+
+def test_a_hybrid_of_unequal_sides_names_the_length_that_would_close_it() -> None:
+    """Catches a remedy that does not close a loop of straight lines: the angles named are tried."""
+    data = hybrid()
+    for name, angle in (("s1", 25.0), ("s2", 27.0), ("v1", 25.0), ("v2", 25.0)):
+        data["lines"][name]["angle"] = f"{angle} deg"
+    with pytest.raises(InfeasibleError) as caught:
+        placed(data)
+    found = re.findall(r'angle = "([0-9.]+) deg" for (\w+)', caught.value.remedy)
+    assert found
+    for angle, name in found:
+        data["lines"][name]["angle"] = f"{angle} deg"
+    assert faults(placed(data)) == []
