@@ -11,6 +11,9 @@ import os
 import signal
 import sys
 from collections.abc import Callable, Sequence
+from dataclasses import replace
+from datetime import date
+from functools import partial
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
@@ -20,8 +23,8 @@ from layoutgen.errors import InfeasibleError, LayoutgenError, WrongInputError
 from layoutgen.origin import Fault, Location
 
 if TYPE_CHECKING:
-    from layoutgen.checks import Finding
-    from layoutgen.writers import Result
+    from layoutgen.checks import Finding, NotChecked
+    from layoutgen.writers import Job, Result
 
 __all__ = ["cli", "main", "status_of"]
 
@@ -80,6 +83,11 @@ def _verbosity(command: Callable[..., Any]) -> Callable[..., Any]:
     return quiet(verbose(command))
 
 
+_no_correction = click.option(
+    "--no-correction", is_flag=True, help="Leave lengths as the budgets alone give them."
+)
+
+
 @cli.command()
 @click.argument("circuit", type=click.Path(path_type=Path))
 @click.option("--out", type=click.Path(path_type=Path), help="Folder for the files; default out/STEM.")
@@ -91,27 +99,91 @@ def _verbosity(command: Callable[..., Any]) -> Callable[..., Any]:
     show_default=True,
     help="Resolution of the PNG, whose longer side is ten inches.",
 )
+@click.option(
+    "--for",
+    "receivers",
+    metavar="LIST",
+    help="Also write packages for these receivers, with commas: pcb-designer, board-house, mask-house, "
+    "assembly, test, reviewer; or all.",
+)
+@click.option("--prove", is_flag=True, help="Read every file back and compare it with the model.")
+@_no_correction
 @_verbosity
-def draw(circuit: Path, out: Path | None, repeatable: bool, dpi: int, quiet: bool, verbose: bool) -> int:
+def draw(
+    circuit: Path,
+    out: Path | None,
+    repeatable: bool,
+    dpi: int,
+    receivers: str | None,
+    prove: bool,
+    no_correction: bool,
+    quiet: bool,
+    verbose: bool,
+) -> int:
     """Size, place, draw, check and write the artwork of CIRCUIT.
 
     Exit status: 1 findings of severity error (the files are written), 2 wrong input, 3 no placement.
     """
-    from layoutgen.writers import Job, file_names, prepare_folder, write
+    from layoutgen.writers import Job, encode, file_names, prepare_folder, write_files
 
     folder = out if out is not None else Path("out", circuit.stem)
-    prepare_folder(folder, file_names(circuit.stem))
-    result = _run(circuit, quiet)
-    paths = write(result, folder, Job(stem=circuit.stem, dpi=dpi, repeatable=repeatable))
+    chosen = _receivers(receivers)
+    for place in (folder, *(folder / name for name in chosen)):
+        prepare_folder(place, file_names(circuit.stem) if place == folder else ())
+    result = _run(circuit, quiet, correction=not no_correction)
+    job = Job(stem=circuit.stem, dpi=dpi, repeatable=repeatable)
+    files = encode(result, job)
+    packages = _packages(result, replace(job, files=files), chosen)
+    write_files(folder, files)
+    for name, package in packages.items():
+        write_files(folder / name, package)
     if not quiet:
         click.echo(f"open {folder / 'report.html'} for the picture, the tables and the findings", err=True)
         click.echo(_summary(result))
         _print_findings(result.findings, verbose)
-        for path in paths:
-            click.echo(f"wrote {path}")
+        for path in (*files, *(f"{name}/{file}" for name, package in packages.items() for file in package)):
+            click.echo(f"wrote {folder / path}")
     if verbose:
         _print_seconds(result)
-    return FINDINGS if result.count("error") else CLEAN
+    flat = {f"{name}/{file}": data for name, package in packages.items() for file, data in package.items()}
+    proved = not prove or _proved(result, {**files, **flat}, quiet, verbose)
+    return FINDINGS if result.count("error") or not proved else CLEAN
+
+
+def _receivers(text: str | None) -> tuple[str, ...]:
+    """Return the receivers asked for; none when the option is not given."""
+    if text is None:
+        return ()
+    from layoutgen.writers.packages import RECEIVERS, receivers_from
+
+    return tuple(RECEIVERS) if text.strip() == "all" else receivers_from(text)
+
+
+def _packages(result: Result, job: Job, receivers: Sequence[str]) -> dict[str, dict[str, bytes]]:
+    """Return each receiver's files by name."""
+    if not receivers:
+        return {}
+    from layoutgen.writers.packages import encode_packages
+
+    packages: dict[str, dict[str, bytes]] = {name: {} for name in receivers}
+    for path, data in encode_packages(result, job, receivers).items():
+        name, file = path.split("/", 1)
+        packages[name][file] = data
+    return packages
+
+
+def _proved(result: Result, files: dict[str, bytes], quiet: bool, verbose: bool) -> bool:
+    """Read all files back and print what was found; return whether they hold the model."""
+    from layoutgen.writers.proof import proof_rows, prove
+
+    proof = prove(result, files)
+    rows = [row for row in proof_rows(proof) if verbose or row[0] != "ok"]
+    if not quiet:
+        _print_table("Proof", ("verdict", "file", "reader", "what", "measured", "limit"), rows)
+        click.echo(f"{len(proof.checks)} read-back checks, {len(proof.failures)} failed")
+        for item in proof.not_proved:
+            click.echo(f"not proved: {item.file}: {item.reason}")
+    return proof.passed
 
 
 @cli.command()
@@ -144,25 +216,151 @@ def size(circuit: Path, as_json: bool, quiet: bool, verbose: bool) -> int:
 
 
 @cli.command()
-@click.argument("circuit", type=click.Path(path_type=Path))
+@click.argument("circuit", metavar="CIRCUIT|ARTWORK", type=click.Path(path_type=Path))
 @click.option("--json", "as_json", is_flag=True, help="Print JSON with the keys of report.json.")
+@click.option("--junit", type=click.Path(path_type=Path), help="Also write the findings as JUnit XML.")
+@click.option("--rules", help="For artwork: the rule file, or the name of a shipped one.")
+@click.option("--layers", type=click.Path(path_type=Path), help="For artwork: which layer is which (TOML).")
+@click.option("--unit", type=click.Choice(("mm", "in", "um")), help="For a DXF file that states no unit.")
 @_verbosity
-def check(circuit: Path, as_json: bool, quiet: bool, verbose: bool) -> int:
-    """Print the findings of CIRCUIT as it would be drawn; write nothing."""
-    from layoutgen.writers import findings_report
+def check(
+    circuit: Path,
+    as_json: bool,
+    junit: Path | None,
+    rules: str | None,
+    layers: Path | None,
+    unit: str | None,
+    quiet: bool,
+    verbose: bool,
+) -> int:
+    """Print the findings of CIRCUIT as it would be drawn, or of ARTWORK (.gds, .oas, .dxf) by a rule file."""
+    from layoutgen.writers.report_json import findings_json
 
-    _refuse_artwork(circuit)
-    result = _run(circuit, quiet)
+    if circuit.suffix.lower() in _ARTWORK_SUFFIXES:
+        findings, not_checked = _foreign(circuit, rules, layers, unit)
+        head = f"{circuit.name}: {_counts(findings)}; {len(not_checked)} not checked"
+    else:
+        _refuse_artwork_options(circuit, rules, layers, unit)
+        result = _run(circuit, quiet)
+        findings, not_checked, head = result.findings, result.checks.not_checked, _summary(result)
+    if junit is not None:
+        _write_junit(junit, findings, not_checked)
     if as_json:
-        click.echo(findings_report(result))
+        click.echo(findings_json(findings, not_checked))
     elif not quiet:
-        click.echo(_summary(result))
-        _print_findings(result.findings, notes=True)
-        rows = [(item.rule, item.reason) for item in result.checks.not_checked]
+        click.echo(head)
+        _print_findings(findings, notes=True)
+        rows = [(item.rule, item.reason) for item in not_checked]
         _print_table("Not checked", ("not checked", "reason"), rows)
+    return FINDINGS if any(finding.counts for finding in findings) else CLEAN
+
+
+def _foreign(
+    path: Path, rules: str | None, layers: Path | None, unit: str | None
+) -> tuple[tuple[Finding, ...], tuple[NotChecked, ...]]:
+    """Judge artwork of any origin by a rule file."""
+    from layoutgen.foreign import check_foreign, read_artwork
+    from layoutgen.reading import read_rules
+
+    if rules is None:
+        raise _wrong(path, "an artwork file without rules", "--rules with a rule file or its shipped name")
+    found = check_foreign(read_artwork(path, layers, unit), read_rules(rules), date.today())
+    return found.findings, found.not_checked
+
+
+def _refuse_artwork_options(path: Path, rules: str | None, layers: Path | None, unit: str | None) -> None:
+    """Refuse options that a circuit file makes no use of: it names its own rules."""
+    given = {"--rules": rules, "--layers": layers, "--unit": unit}
+    named = [option for option, value in given.items() if value is not None]
+    if named:
+        raise _wrong(path, f"{named[0]} with a circuit file", "it with artwork only (.gds, .oas, .dxf)")
+
+
+def _write_junit(path: Path, findings: Sequence[Finding], not_checked: Sequence[NotChecked]) -> None:
+    """Write the findings for a build server."""
+    from layoutgen.checks import CheckResult
+    from layoutgen.writers import prepare_folder, write_files
+    from layoutgen.writers.junit import junit as junit_xml
+
+    prepare_folder(path.parent)
+    result = CheckResult(findings=tuple(findings), not_checked=tuple(not_checked))
+    write_files(path.parent, {path.name: junit_xml(result)})
+
+
+@cli.command()
+@click.argument("first", metavar="A", type=click.Path(path_type=Path))
+@click.argument("second", metavar="B", type=click.Path(path_type=Path))
+@click.option("--picture", type=click.Path(path_type=Path), help="Write an overlay of both as PNG.")
+@click.option("-q", "--quiet", is_flag=True, help="Say nothing but errors.")
+def compare(first: Path, second: Path, picture: Path | None, quiet: bool) -> int:
+    """Print what differs between artworks A and B (.gds, .oas, .dxf); exit status 0 equal, 1 differs."""
+    from layoutgen.compare import compare as compare_artworks
+    from layoutgen.compare import overlay
+    from layoutgen.foreign import read_artwork
+    from layoutgen.writers import prepare_folder, write_files
+
+    a, b = read_artwork(first), read_artwork(second)
+    comparison = compare_artworks(a, b)
+    if picture is not None:
+        prepare_folder(picture.parent)
+        write_files(picture.parent, {picture.name: overlay(comparison, a, b)})
+    if not quiet:
+        click.echo(comparison.summary())
+        _print_table("Changes", ("severity", "layer", "kind", "net", "what"), comparison.rows())
+    return CLEAN if comparison.equal else FINDINGS
+
+
+@cli.command()
+@click.argument("circuit", type=click.Path(path_type=Path))
+@click.option("-n", "--samples", type=click.IntRange(1, 1_000_000), default=1000, show_default=True)
+@click.option("--seed", type=click.IntRange(0), default=1, show_default=True)
+@click.option("--limit", "limits", multiple=True, help='Such as "change <= 0.05"; repeatable.')
+@click.option("--processes", type=click.IntRange(1, 64), default=1, show_default=True)
+@click.option("--scheduler", help="Address of a dask.distributed scheduler to spread the samples over.")
+@_verbosity
+def tolerance(
+    circuit: Path,
+    samples: int,
+    seed: int,
+    limits: tuple[str, ...],
+    processes: int,
+    scheduler: str | None,
+    quiet: bool,
+    verbose: bool,
+) -> int:
+    """Print what the limits of [tolerance] do to CIRCUIT's response: yield and worst contributors."""
+    from layoutgen.response import tolerance as spread
+
+    result = _run(circuit, quiet)
+    found = spread(
+        result.artwork, samples=samples, seed=seed, limits=limits, processes=processes, scheduler=scheduler
+    )
+    if not quiet:
+        click.echo(f"yield {100.0 * found.yield_share:.1f} % of {found.samples} samples, seed {found.seed}")
+        rows = [
+            (y.limit, f"{100.0 * y.share:.1f}", f"{y.nominal:.4f}", f"{y.median:.4f}", f"{y.worst:.4f}")
+            for y in found.limits
+        ]
+        _print_table("Limits", ("limit", "kept %", "nominal", "median", "worst"), rows)
+        worst = [(c.name, f"{c.limit:g}", f"{c.change:.4f}") for c in found.contributors[:12]]
+        _print_table("Worst contributors", ("quantity", "plus-minus", "largest change of |S|"), worst)
     if verbose:
         _print_seconds(result)
-    return FINDINGS if result.count("error") else CLEAN
+    return CLEAN
+
+
+@cli.command()
+@click.argument("circuit", type=click.Path(path_type=Path))
+@click.option("--out", type=click.Path(path_type=Path), help="Folder for the files; default out/STEM.")
+@click.option("--port", type=click.IntRange(0, 65535), default=0, help="Port here; 0 takes a free one.")
+def watch(circuit: Path, out: Path | None, port: int) -> int:
+    """Draw CIRCUIT again whenever it is saved, and serve its page on this machine until interrupted."""
+    from layoutgen.watch import watch as watch_circuit
+
+    folder = out if out is not None else Path("out", circuit.stem)
+    say = partial(click.echo, err=True)
+    watch_circuit(circuit, folder, port, tell=say, ready=lambda address: say(f"open {address}"))
+    return CLEAN
 
 
 @cli.command()
@@ -203,19 +401,13 @@ def schema() -> int:
     return CLEAN
 
 
-def _run(circuit: Path, quiet: bool) -> Result:
+def _run(circuit: Path, quiet: bool, *, correction: bool = True) -> Result:
     """Run all stages, with progress on a terminal."""
     from layoutgen.pipeline import run
     from layoutgen.terminal import Progress
 
     with Progress(sys.stderr, enabled=sys.stderr.isatty() and not quiet) as progress:
-        return run(circuit, tell=progress)
-
-
-def _refuse_artwork(path: Path) -> None:
-    """Refuse artwork files: they cannot be checked yet."""
-    if path.suffix.lower() in _ARTWORK_SUFFIXES:
-        raise _wrong(path, "an artwork file", "a circuit file (checking other artwork is not available yet)")
+        return run(circuit, tell=progress, correction=correction, today=date.today())
 
 
 def _wrong(path: Path, found: str, allowed: str) -> WrongInputError:
@@ -225,12 +417,17 @@ def _wrong(path: Path, found: str, allowed: str) -> WrongInputError:
 def _summary(result: Result) -> str:
     """Return one line: the board and how many findings there are."""
     placement, artwork = result.placement, result.artwork
-    counts = ", ".join(_many(result.count(kind), kind) for kind in ("error", "warning", "note"))
     return (
         f"{placement.width / 1e6:g} x {placement.height / 1e6:g} mm, {_many(len(placement.lines), 'line')}, "
-        f"{_many(len(placement.parts), 'part')}, {_many(len(artwork.vias), 'via')}; {counts}; "
-        f"{len(result.checks.not_checked)} not checked"
+        f"{_many(len(placement.parts), 'part')}, {_many(len(artwork.vias), 'via')}; "
+        f"{_counts(result.findings)}; {len(result.checks.not_checked)} not checked"
     )
+
+
+def _counts(findings: Sequence[Finding]) -> str:
+    """Return how many findings count, by severity."""
+    found = [finding.severity for finding in findings if finding.waived is None]
+    return ", ".join(_many(found.count(kind), kind) for kind in ("error", "warning", "note"))
 
 
 def _many(count: int, noun: str) -> str:

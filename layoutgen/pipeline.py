@@ -10,6 +10,7 @@ import time
 from collections.abc import Callable, Iterator, Mapping, Sequence
 from contextlib import contextmanager
 from dataclasses import dataclass, replace
+from datetime import date
 from functools import partial
 from pathlib import Path
 
@@ -40,13 +41,20 @@ Tell = Callable[[str], None]
 Note = tuple[str, str, str]
 
 
-def run(path: str | Path, tell: Tell = lambda stage: None, *, correction: bool = True) -> Result:
+def run(
+    path: str | Path,
+    tell: Tell = lambda stage: None,
+    *,
+    correction: bool = True,
+    today: date | None = None,
+) -> Result:
     """Return every stage's result for a circuit file and the rule file it names.
 
     Args:
         path: The circuit file.
         tell: Called with the name of each stage as it begins.
         correction: False leaves the lengths as their budgets alone give them, whatever the response.
+        today: The day on which waivers are judged; None takes none as expired.
 
     Raises:
         WrongInputError: A faulty file, or a circuit outside what the formulas cover.
@@ -55,7 +63,7 @@ def run(path: str | Path, tell: Tell = lambda stage: None, *, correction: bool =
     clock = _Clock(tell)
     with clock("reading"):
         inputs = read_inputs(path)
-    return _run(inputs.circuit, inputs.rules, clock, None, correction)
+    return _run(inputs.circuit, inputs.rules, clock, None, correction, today)
 
 
 def run_inputs(
@@ -65,6 +73,7 @@ def run_inputs(
     *,
     folder: Path | None = None,
     correction: bool = True,
+    today: date | None = None,
 ) -> Result:
     """Return every stage's result for records built in code; otherwise as :func:`run`.
 
@@ -75,17 +84,25 @@ def run_inputs(
         folder: What the paths of data files start from; None: the folder of the circuit file, for a circuit
             built in code the current one.
         correction: As for :func:`run`.
+        today: As for :func:`run`.
     """
-    return _run(file, rules, _Clock(tell), folder, correction)
+    return _run(file, rules, _Clock(tell), folder, correction, today)
 
 
-def _run(file: CircuitFile, rules: RuleFile, clock: _Clock, folder: Path | None, correction: bool) -> Result:
+def _run(
+    file: CircuitFile,
+    rules: RuleFile,
+    clock: _Clock,
+    folder: Path | None,
+    correction: bool,
+    today: date | None,
+) -> Result:
     with clock("circuit"):
         circuit = build_circuit(file, rules)
     fit = partial(correct_lengths, folder=folder) if correction and has_response(file) else None
     artwork, notes = _settled(circuit, clock, fit)
     with clock("checks"):
-        checks = check(artwork)
+        checks = check(artwork, today)
     with clock("response"):
         response = respond(artwork, folder) if has_response(file) else None
     return Result(artwork=artwork, checks=checks, response=response, seconds=clock.seconds, notes=notes)

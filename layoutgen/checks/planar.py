@@ -27,6 +27,7 @@ __all__ = [
     "Ints",
     "Polygons",
     "array_of",
+    "farthest",
     "merge",
     "middle",
     "near_points",
@@ -88,6 +89,17 @@ def middle(a: Geometry, b: Geometry) -> Point:
     along = np.array([-across[1], across[0]])
     (low, high), (least, most) = _flat(a, start, along, across), _flat(b, end, along, across)
     return whole(*(centre + along * (max(low, least) + min(high, most)) / 2.0).tolist())
+
+
+def farthest(a: Geometry, b: Geometry) -> float:
+    """Return the largest distance of a vertex of either outline from the other outline [nm]."""
+    return max(_farthest_vertex(a, b), _farthest_vertex(b, a))
+
+
+def _farthest_vertex(a: Geometry, b: Geometry) -> float:
+    """Return the largest distance of a vertex of one outline from another outline [nm]."""
+    shapely.prepare(b)
+    return float(shapely.distance(shapely.points(shapely.get_coordinates(a)), b).max())
 
 
 def _flat(geometry: Geometry, at: Floats, along: Floats, across: Floats) -> tuple[float, float]:

@@ -9,6 +9,7 @@ import numpy as np
 import shapely
 from shapely.affinity import translate
 
+from layoutgen.checks.planar import farthest
 from layoutgen.compare.regions import Polygons, Region
 
 __all__ = ["Move", "moves_of"]
@@ -71,7 +72,7 @@ def _matched(
             continue
         way = _way(before[i], after[j])
         back = translate(after[j], -way[0], -way[1])
-        if shapely.hausdorff_distance(back.boundary, before[i].boundary) <= tolerance:
+        if farthest(back.boundary, before[i].boundary) <= tolerance:
             moves.append(Move(before[i], after[j], way))
             taken_old.add(i)
             taken_new.add(j)

@@ -1,7 +1,7 @@
 """Run as a program of its own: read a GDSII or OASIS file with the library, write its polygons as arrays.
 
 A broken file can end the library's process, or make it ask for all memory; then only this one ends. Usage:
-``python -m layoutgen.foreign._gdstk_child FILE OUT``. The last line on standard error says what is wrong.
+``python _gdstk_child.py FILE OUT``. The last line on standard error says what is wrong.
 """
 
 from __future__ import annotations

@@ -153,7 +153,8 @@ class _Reader:
             self._count += 1
             self._points += sum(map(len, primitive.rings))
             if self._count > _MOST or self._points > _MOST_POINTS:
-                raise refused(self.file, f"more than {self._count - 1} shapes or too many vertices", _FORM)
+                found = f"{self._count} shapes, {self._points} vertices and more with all blocks resolved"
+                raise refused(self.file, found, f"at most {_MOST} and {_MOST_POINTS}")
             rings = tuple(ring @ matrix[:2, :2] + matrix[2, :2] for ring in primitive.rings)
             named = layer if layer is not None and primitive.layer == "0" else primitive.layer
             yield Primitive(named, primitive.kind, rings, primitive.turn)

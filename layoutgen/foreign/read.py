@@ -12,6 +12,7 @@ import numpy as np
 import shapely
 
 from layoutgen.artwork import LAYERS
+from layoutgen.checks.planar import farthest
 from layoutgen.foreign.chains import joined_lines
 from layoutgen.foreign.curves import fitted_circle
 from layoutgen.foreign.dxf import UNITS, read_dxf
@@ -108,7 +109,7 @@ def _artwork(file: str, raw: Raw, mapping: LayerMap, given: bool) -> ForeignArtw
     _refuse_empty(file, read, by_layer, mapping)
     for key, primitives in by_layer.items():
         if key not in used:
-            unread[f"shapes on layer {shown(key)}, which is none of ours"] += len(primitives)
+            unread[f"shapes on layer {shown(primitives[0].layer)}, which is none of ours"] += len(primitives)
     notes += _size_note(raw.unit, read)
     holes = tuple(_holes(read, notes, unread))
     profile = tuple(sorted(read["profile"], key=lambda polygon: -polygon.area))
@@ -152,7 +153,7 @@ def _refuse_empty(
     """Refuse a file with no copper on the layers asked for, or with coordinates beyond any board."""
     if not any(read[name] for name in _COPPER):
         wanted = ", ".join(shown(key) for name in _COPPER for key in mapping.get(name, ()))
-        there = ", ".join(shown(key) for key in list(by_layer)[:8]) or "none"
+        there = ", ".join(shown(group[0].layer) for group in list(by_layer.values())[:8]) or "none"
         raise refused(file, f"no copper on {wanted or 'any layer'}; layers: {there}", "a layers file (--layers)")
     for polygons in read.values():
         if polygons and float(np.abs(shapely.total_bounds(np.array(polygons, dtype=object))).max()) > _FARTHEST_NM:
@@ -206,7 +207,7 @@ def _without_edges_of(areas: Sequence[shapely.Polygon], loops: Sequence[Loop]) -
     same = {
         k
         for k, m in zip(i[like].tolist(), j[like].tolist(), strict=True)
-        if shapely.hausdorff_distance(edges[k], rings[m], densify=0.25) < _SAME_NM
+        if farthest(edges[k], rings[m]) < _SAME_NM
     }
     return [loop for k, loop in enumerate(loops) if k not in same]
 

@@ -20,10 +20,12 @@ __all__ = ["CHORD_NM", "read_stream"]
 CHORD_NM = 1_000.0
 """How far chords may lie off their curves in these formats [nm]: our own files' figure, common practice."""
 
-_SECONDS = 300.0
+_SECONDS = 120.0
 _HEADS = {".gds": b"\x00\x06\x00\x02", ".oas": b"%SEMI-OASIS\r\n"}
 _FORMS = {".gds": "a complete GDSII file", ".oas": "a complete OASIS file"}
 _GDS_END = b"\x00\x04\x04\x00"
+_OASIS_END, _OASIS_END_RECORD = 256, 2
+"""An OASIS file ends with a record of type 2 that is 256 bytes long."""
 _TAIL = 1 << 16
 
 
@@ -37,7 +39,8 @@ def read_stream(path: Path) -> Raw:
     _refuse_torn(path, kind)
     with tempfile.TemporaryDirectory() as folder:
         target = Path(folder, "polygons.npz")
-        command = [sys.executable, "-m", "layoutgen.foreign._gdstk_child", str(path.resolve()), str(target)]
+        child = Path(__file__).with_name("_gdstk_child.py")
+        command = [sys.executable, "-P", str(child), str(path.resolve()), str(target)]
         try:
             run = subprocess.run(command, capture_output=True, timeout=_SECONDS, check=False)
         except subprocess.TimeoutExpired:
@@ -58,6 +61,8 @@ def _refuse_torn(path: Path, kind: str) -> None:
     if head != _HEADS[kind]:
         raise refused(str(path), "another format", _FORMS[kind])
     if kind == ".gds" and not tail.rstrip(b"\x00").endswith(_GDS_END.rstrip(b"\x00")):
+        raise refused(str(path), "a file that is cut off", _FORMS[kind])
+    if kind == ".oas" and not (size >= _OASIS_END and tail[-_OASIS_END] == _OASIS_END_RECORD):
         raise refused(str(path), "a file that is cut off", _FORMS[kind])
 
 

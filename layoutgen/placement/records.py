@@ -168,7 +168,8 @@ class PlacedHole:
 class Choice:
     """How one element was laid: turn off its node [deg], side of banks or pairs, word, legs [nm].
 
-    ``plan`` is the drawing of a loop cluster, laid as it is (``side`` 1) or mirrored (-1).
+    ``plan`` is the drawing of a loop cluster, laid as it is (``side`` 1) or mirrored (-1); ``heading`` is
+    that of the traveller who arrived at the node [deg].
     """
 
     turn: float
@@ -177,6 +178,7 @@ class Choice:
     legs: tuple[int, ...] = ()
     edge: str | None = None
     plan: Hashable = None
+    heading: float = 0.0
 
     @property
     def shape(self) -> tuple[object, ...]:

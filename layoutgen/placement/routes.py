@@ -11,7 +11,7 @@ from layoutgen.circuit.queries import ends_of
 from layoutgen.geometry import mitre_for_turn, mitre_reach
 from layoutgen.placement.bodies import beyond
 from layoutgen.placement.budgets import LineLengths
-from layoutgen.placement.frame import Pose, unit
+from layoutgen.placement.frame import Box, Pose, unit
 from layoutgen.placement.model import GROUND, Model
 from layoutgen.placement.state import EDGES, State
 from layoutgen.placement.tour import Tour
@@ -66,10 +66,14 @@ _ROUND_WORDS: tuple[Word, ...] = (
 
 @dataclass(frozen=True, slots=True)
 class RouteChoice:
-    """A route to try, and the edge it ends at for a line to a port."""
+    """A route to try, and the edge it ends at for a line to a port.
+
+    ``forecast`` are boxes [nm] where what hangs on the line is known to come to lie.
+    """
 
     route: Route
     edge: str | None = None
+    forecast: tuple[Box, ...] = ()
 
 
 @dataclass(slots=True)

@@ -8,6 +8,7 @@ cheapest on and rejected by clearance, and the best states by board area and ben
 from __future__ import annotations
 
 import heapq
+import itertools
 from collections.abc import Callable, Iterator, Mapping
 from dataclasses import dataclass, field, replace
 from itertools import islice
@@ -16,10 +17,12 @@ from layoutgen.circuit import End, EndKind
 from layoutgen.circuit.queries import is_shunt, net_of
 from layoutgen.placement.clearance import Kind, clearance_table, edge_margins
 from layoutgen.placement.cluster import ClusterPlan
+from layoutgen.placement.frame import Pose
 from layoutgen.placement.kit import PinnedError
 from layoutgen.placement.model import Model
 from layoutgen.placement.neighbours import Neighbours
 from layoutgen.placement.records import Choice, Choices
+from layoutgen.placement.rooms import Rooms
 from layoutgen.placement.state import Growth, Pending, State
 from layoutgen.placement.tour import Tour, end_key
 from layoutgen.placement.ways import Way, Ways
@@ -28,6 +31,7 @@ __all__ = ["Effort", "Failure", "Search", "drawing_cost"]
 
 _BEND_COST = 0.02  # of the board's area for each bend: a fold must save at least that
 _BEND_AREA = 10e12  # [nm^2] for each bend besides: on a small board, too, a straight stub is worth its room
+_DISORDER = 6.0  # bends that arms in the file order of their ports are worth
 _CROSSING_COST = 0.05  # for each element of an input that lies beside an output, or the other way round
 
 
@@ -76,6 +80,7 @@ class Search:
         self.margins = edge_margins(
             self.model.limits, self.model.default_gap, self.model.ground_ring, tight=self.effort.tight_edges
         )
+        self.ways.rooms = Rooms(self.tour, self.ways.router, self._best, self._arrive)
         self._spine = frozenset(self.model.circuit.spine)
 
     @property
@@ -107,6 +112,17 @@ class Search:
             depth += 1
         return states
 
+    def _best(self, start: State) -> State | None:
+        """Return the best state that finishes one, for a branch laid by itself."""
+        kept = self.failure
+        found = self.run(start)
+        self.failure = kept
+        return found[0] if found else None
+
+    def _arrive(self, growth: Growth, net: str, at: Pose) -> None:
+        """Leave pending what follows in a net."""
+        self.ways.layer.arrive(growth, self.tour.hubs[net], at)
+
     def replay(self, start: State, choices: Choices) -> State | None:
         """Return the state that earlier choices give with this circuit's lengths, None if they do not fit."""
         state = start
@@ -120,9 +136,7 @@ class Search:
             growth = None if way is None else self._built(base, way, 0)
             if way is None or growth is None or self._conflict(growth) is not None:
                 return None
-            extent, crossings = growth.extent(self.margins), self._crossings(growth)
-            cost = self._cost(base, extent, growth.bends, crossings)
-            state = growth.applied(extent, cost, crossings, (end_key(pending.end), way.choice))
+            state = self._grown(base, growth, way, end_key(pending.end))
         return state
 
     def _way_like(self, pending: Pending, state: State, chosen: Choice) -> Way | None:
@@ -189,6 +203,10 @@ class Search:
         """
         pending = next(p for p in state.pending if p.end == element)
         base = self._without(state, pending)
+        alike = self._as_before(pending, state, base, depth)
+        if alike is not None:
+            yield alike
+            return
         heap: list[tuple[float, int, Way, Growth | None]] = [
             (self._cost(base, way.extent, way.bends, base.crossings), order, way, None)
             for order, way in enumerate(self.ways.of(pending, state))
@@ -214,6 +232,36 @@ class Search:
                 yield grown
             else:
                 self._fail(depth, element.element, conflict)
+
+    def _as_before(self, pending: Pending, state: State, base: State, depth: int) -> State | None:
+        """Return the state that lays a thing as its twin was, mirrored, or as in the branch by itself."""
+        key = end_key(pending.end)
+        twin = self.tour.twins.get(key)
+        first = None if twin is None else state.ways.get(twin.key)
+        rooms = self.ways.rooms
+        before = rooms.chosen.get((key, pending.at.heading)) if rooms is not None else None
+        way = None
+        if twin is not None and first is not None and twin.mirrors:
+            way = self._mirrored_way(pending, state, first)
+        elif (like := first or before) is not None:
+            way = self._way_like(pending, state, like)
+        growth = None if way is None else self._built(base, way, depth)
+        if way is None or growth is None or self._conflict(growth) is not None:
+            return None
+        return self._grown(base, growth, way, key)
+
+    def _mirrored_way(self, pending: Pending, state: State, twin: Choice) -> Way | None:
+        """Return the mirror image of the way in which a twin was laid."""
+        if pending.cluster is not None and isinstance(twin.plan, ClusterPlan):
+            return self.ways.cluster_way(pending, state, twin.plan, -twin.side)
+        found = [way for way in self.ways.of(pending, state) if _answers(way.choice, twin)]
+        return min(found, key=lambda way: _difference(way.choice, twin), default=None)
+
+    def _grown(self, base: State, growth: Growth, way: Way, key: str) -> State:
+        """Return the state with a candidate laid."""
+        extent, crossings = growth.extent(self.margins), self._crossings(growth)
+        cost = self._cost(base, extent, growth.bends, crossings)
+        return growth.applied(extent, cost, crossings, (key, way.choice))
 
     def _conflict(self, growth: Growth) -> str | None:
         return self._port_order(growth) or self.neighbours.conflict(growth)
@@ -255,10 +303,10 @@ class Search:
 
     def _built(self, base: State, way: Way, depth: int) -> Growth | None:
         """Return a way as a candidate inside what is known of the board, or None."""
-        growth = Growth(state=base, bounds=base.bounds)
+        growth = Growth(state=base, bounds=base.bounds, forecast=way.forecast)
         try:
             way.lay(growth)
-            growth.bends += way.crowding
+            growth.bends += way.crowding + _DISORDER * self._disorder(growth)
         except PinnedError as error:
             self._fail(depth, error.element, error.what)
             return None
@@ -309,6 +357,22 @@ class Search:
         stages = {self.tour.stages[net] for net in self.model.owner_nets.get(owner, ())}
         return stages.pop() if len(stages) == 1 else None
 
+    def _disorder(self, growth: Growth) -> int:
+        """Return how many arms that leave side by side towards ports stand against the ports' file order."""
+        arms = [
+            (self.tour.first_port[key], pending.at, (pending.at.heading + pending.turns[0]) % 360.0)
+            for pending in growth.pending
+            if len(pending.turns) == 1
+            for key in ((pending.end.element, pending.end.index),)
+            if key in self.tour.first_port
+        ]
+        wrong = 0
+        for (first, a, out), (second, b, other) in itertools.combinations(arms, 2):
+            if out == other:
+                step = b.y - a.y if out in (0.0, 180.0) else b.x - a.x
+                wrong += step * (second - first) < 0
+        return wrong
+
     # -- ports ---------------------------------------------------------------------------------------
 
     def _port_order(self, growth: Growth) -> str | None:
@@ -326,6 +390,13 @@ class Search:
                 if (step > 0) != (order.index(name) > order.index(other)):
                     return f"port {name} would not come in file order with {other} on the {laid.edge} edge"
         return None
+
+
+def _answers(choice: Choice, twin: Choice) -> bool:
+    """True for a choice that is the mirror image of a twin's; a lone turn or side may be as it comes."""
+    turn, side, word = twin.mirrored
+    same_turn = choice.turn == turn or choice.turn == 0.0
+    return choice.word == word and same_turn and choice.side in (side, twin.side)
 
 
 def _difference(a: Choice, b: Choice) -> int:

@@ -223,6 +223,7 @@ class Growth:
     bends: float = 0.0
     devices: list[Device] = field(default_factory=list)
     roles: dict[str, Headings] = field(default_factory=dict)
+    forecast: tuple[Box, ...] = ()
 
     def use(self, net: str, heading: float) -> None:
         """Note that an arm leaves a net's node with a heading [deg]."""
@@ -237,6 +238,8 @@ class Growth:
                 continue
             bx0, by0, bx1, by1 = item.reach(margins)
             x0, y0, x1, y1 = min(x0, bx0), min(y0, by0), max(x1, bx1), max(y1, by1)
+        for box in self.forecast:
+            x0, y0, x1, y1 = min(x0, box[0]), min(y0, box[1]), max(x1, box[2]), max(y1, box[3])
         return x0, y0, x1, y1
 
     def applied(

@@ -17,7 +17,7 @@ from layoutgen.errors import WrongInputError
 from layoutgen.origin import Fault
 from layoutgen.placement.loops import Cluster, Loops, find_loops
 from layoutgen.placement.model import GROUND, Model
-from layoutgen.placement.twins import find_twins
+from layoutgen.placement.twins import Twin, find_twins
 
 __all__ = ["ArmPlan", "Headings", "Hub", "Tour", "end_key", "plan_tour"]
 
@@ -68,7 +68,9 @@ class Tour:
     ``weight`` counts the elements beyond an end, ``leads_to_port`` tells whether there is a port among them,
     ``edges`` names the edges asked for by those ports; ``stages`` counts, for each net, the transistors that
     the walk passed on its way. ``entries`` are, by cluster, the nets at which the walk enters them. ``twins``
-    maps the key of an end to that of its counterpart in an equal branch that is laid before it.
+    maps the key of an end to its counterpart in an equal branch that is laid before it; arms of one
+    ``likeness`` hold equal branches. ``first_port`` is the least position in the file of the ports beyond;
+    ``siblings`` name, for either of two equal arms of one net or cluster, the key of the other.
     """
 
     hubs: Mapping[str, Hub]
@@ -79,7 +81,10 @@ class Tour:
     stages: Mapping[str, int]
     loops: Loops
     entries: tuple[str, ...]
-    twins: Mapping[str, str]
+    twins: Mapping[str, Twin]
+    likeness: Mapping[str, int]
+    first_port: Mapping[tuple[str, int], int]
+    siblings: Mapping[str, str]
 
 
 def end_key(end: End) -> str:
@@ -104,6 +109,7 @@ def plan_tour(model: Model, cut: frozenset[str] = frozenset()) -> Tour:
     faults = walk.crowded()
     if faults:
         raise WrongInputError(faults)
+    twins, likeness, siblings = find_twins(model.circuit, walk.hubs, walk.order, loops, walk.port_count)
     return Tour(
         walk.hubs,
         tuple(walk.roots),
@@ -113,7 +119,10 @@ def plan_tour(model: Model, cut: frozenset[str] = frozenset()) -> Tour:
         walk.stages,
         loops,
         tuple(walk.entries[k] for k in range(len(loops.clusters))),
-        find_twins(model.circuit, walk.hubs, walk.order, loops),
+        twins,
+        likeness,
+        walk.first_port,
+        siblings,
     )
 
 
@@ -137,6 +146,9 @@ class _Walk:
         self.edges: dict[tuple[str, int], frozenset[str]] = {}
         self.stages: dict[str, int] = {}
         self.entries: dict[int, str] = {}
+        self.first_port: dict[tuple[str, int], int] = {}
+        self.port_count: dict[tuple[str, int], int] = {}
+        self.port_order = {name: i for i, name in enumerate(self.file.ports)}
 
     def run(self) -> None:
         """Visit everything, then weigh the branches from the leaves up and plan each net's arms."""
@@ -212,6 +224,7 @@ class _Walk:
             if end == arrival:
                 continue
             weight, port, edges = 1, end.kind is EndKind.PORT, self._asked_edge(end)
+            self._note_ports(end)
             for far, far_net in ends_of(self.file, end.element):
                 if far != end and end.element in self.loops.closers:
                     edges |= self._edges_on(far_net)
@@ -224,6 +237,21 @@ class _Walk:
             self.edges[whole] = self.edges.get(whole, frozenset()) | edges
             self.weight[(net, -1)] = self.weight.get((net, -1), 0) + weight
             self.to_port[(net, -1)] = self.to_port.get((net, -1), False) or port
+
+    def _note_ports(self, end: End) -> None:
+        """Note how many ports lie beyond an end, and the first of them."""
+        found = [(self.port_order[end.element], 1)] if end.kind is EndKind.PORT else []
+        for far, net in ends_of(self.file, end.element):
+            if far != end and self.arrivals.get(net) == far and (net, -1) in self.port_count:
+                found.append((self.first_port[net, -1], self.port_count[net, -1]))
+        if not found:
+            return
+        net = net_of(self.file, end)
+        for key in ((end.element, end.index), (net, -1)):
+            first, count = self.first_port.get(key), self.port_count.get(key, 0)
+            least = min(index for index, _ in found)
+            self.first_port[key] = least if first is None else min(first, least)
+            self.port_count[key] = count + sum(number for _, number in found)
 
     def _hub(self, net: Net, arrival: End) -> Hub:
         cluster = self._cluster_at(net.name)

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Mapping, Sequence
+from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from layoutgen.circuit import Circuit, End
@@ -12,30 +13,56 @@ from layoutgen.placement.loops import Loops
 if TYPE_CHECKING:
     from layoutgen.placement.tour import Hub
 
-__all__ = ["find_twins"]
+__all__ = ["Twin", "find_twins"]
+
+
+@dataclass(frozen=True, slots=True)
+class Twin:
+    """The key of a counterpart, and whether to mirror it or to copy it as it lies."""
+
+    key: str
+    mirrors: bool
+
 
 _PLACE_FIELDS = {"nets", "net", "pins", "edge", "at"}
 
 
 def find_twins(
-    circuit: Circuit, hubs: Mapping[str, Hub], order: Sequence[str], loops: Loops
-) -> dict[str, str]:
-    """Return, by the key of an end, the key of its counterpart in an equal branch that comes before it.
+    circuit: Circuit,
+    hubs: Mapping[str, Hub],
+    order: Sequence[str],
+    loops: Loops,
+    ports: Mapping[tuple[str, int], int],
+) -> tuple[dict[str, Twin], dict[str, int], dict[str, str]]:
+    """Return, by the key of an end, its counterpart in an equal branch that comes before it.
+
+    The two arms themselves mirror each other. What hangs on them does too, but for branches with several
+    ports: ports come in file order along an edge, so the second branch is a copy of the first.
+
+    The second result gives every arm a number: equal numbers, equal branches. The third names, for either of
+    two equal arms, the other one.
 
     Args:
         circuit: The circuit.
         hubs: Every net as the walk meets it.
         order: Nets in the order of the walk.
         loops: How its loops are laid.
+        ports: Number of ports beyond an end.
     """
     finder = _Finder(circuit, hubs, loops)
     for net in reversed(order):
         finder.sign(net)
-    twins: dict[str, str] = {}
+    twins: dict[str, Twin] = {}
+    siblings: dict[str, str] = {}
     for net in order:
         for first, second in finder.equal_arms(hubs[net]):
-            twins.update(finder.counterparts(first, second))
-    return twins
+            mirrors = ports.get((first.element, first.index), 0) <= 1
+            found = list(finder.counterparts(first, second))
+            twins.update((own, Twin(other, mirrors)) for own, other in found)
+            own, other = found[0]
+            twins[own] = Twin(other, mirrors=True)
+            siblings |= {own: other, other: own}
+    return twins, finder.likeness(), siblings
 
 
 class _Finder:
@@ -65,6 +92,11 @@ class _Finder:
                 nets = self.inside.get(hub.cluster, [])
                 inner = (*inner, *(self.nets[other] for other in nets))
         self.nets[net] = self._number((arms, bank, inner))
+
+    def likeness(self) -> dict[str, int]:
+        """Return the number of every arm by its key."""
+        arms = [arm.end for hub in self.hubs.values() for arm in hub.arms]
+        return {f"{end.element}:{end.index}": self._of(end) for end in arms}
 
     def equal_arms(self, hub: Hub) -> Iterator[tuple[End, End]]:
         """Yield the two arms of a net, or of a cluster, that hold equal branches."""

@@ -10,12 +10,13 @@ from layoutgen.circuit import End, EndKind
 from layoutgen.circuit.queries import ends_of
 from layoutgen.placement.budgets import LineLengths
 from layoutgen.placement.cluster import ClusterPlan, ClusterSolver, Solution
-from layoutgen.placement.frame import Pose
+from layoutgen.placement.frame import Box, Pose
 from layoutgen.placement.kit import Kit
 from layoutgen.placement.lay import Layer
 from layoutgen.placement.lay_cluster import Pinning, lay_cluster
 from layoutgen.placement.model import GROUND, Model
 from layoutgen.placement.records import Choice
+from layoutgen.placement.rooms import Rooms
 from layoutgen.placement.routes import RouteChoice, Router
 from layoutgen.placement.state import EDGES, Growth, Pending, State
 from layoutgen.placement.tour import Tour, end_key
@@ -42,6 +43,7 @@ class Way:
     bends: float
     lay: Callable[[Growth], None]
     crowding: float = 0.0
+    forecast: tuple[Box, ...] = ()
 
 
 @dataclass(slots=True)
@@ -56,6 +58,7 @@ class Ways:
     clusters: list[ClusterSolver] = field(init=False)
     fold_spine: bool = False
     any_side: bool = False
+    rooms: Rooms | None = field(init=False, default=None)
     _spine: frozenset[str] = field(init=False)
 
     def __post_init__(self) -> None:
@@ -98,7 +101,8 @@ class Ways:
             if mate is not None:
                 ways = self._closing_ways(pending, mate, turn, state)
             for way in ways:
-                yield replace(way, bends=way.bends + crowding, crowding=crowding) if crowding else way
+                choice = replace(way.choice, heading=pending.at.heading)
+                yield replace(way, choice=choice, bends=way.bends + crowding, crowding=crowding)
 
     def _joins_feeds(self, pending: Pending, heading: float) -> bool:
         """True when a stub or shunt part would leave to the side where the feeds go, and has a choice."""
@@ -151,7 +155,9 @@ class Ways:
         straight = self._goes_straight(end) and not self.fold_spine
         sides = (1, -1) if self._meets_bank(end) else (1,)
         weight = self.layer.bend_weight(end)
-        for choice in self.router.choices(end, start, state, straight=straight):
+        spread = self.rooms.routes(pending, start, state) if self.rooms is not None else None
+        choices = self.router.choices(end, start, state, straight=straight) if spread is None else spread
+        for choice in choices:
             last = (start.heading + sum(choice.route.word)) % 360.0
             if not self.router.leaves_as_hinted(end, start.heading, last):
                 continue
@@ -166,13 +172,15 @@ class Ways:
                     bank_side=side,
                 )
                 made = Choice(turn, side, choice.route.word, choice.route.legs, choice.edge)
-                yield Way(end.element, made, extent, weight * len(choice.route.word), lay)
+                bends = weight * len(choice.route.word)
+                yield Way(end.element, made, extent, bends, lay, forecast=choice.forecast)
 
     def _line_extent(
         self, end: End, start: Pose, choice: RouteChoice, state: State
     ) -> tuple[float, float, float, float]:
         """Return the least extent [nm] that a route brings about: a bound for the cost of building it."""
-        points = route_points(start, choice.route)[0]
+        points = list(route_points(start, choice.route)[0])
+        points += [corner for box in choice.forecast for corner in (box[:2], box[2:])]
         x0, y0, x1, y1 = state.extent
         half = self.model.widths[end.element] / 2
         return (
@@ -200,17 +208,7 @@ class Ways:
 
     def _goes_straight(self, end: End) -> bool:
         """True for an element of the straight path, unless it is one of two equal arms."""
-        key = end_key(end)
-        return end.element in self._spine and key not in self.tour.twins and key not in self._firsts
-
-    @property
-    def _firsts(self) -> frozenset[str]:
-        """The ends that others follow."""
-        if self._twinned is None:
-            self._twinned = frozenset(self.tour.twins.values())
-        return self._twinned
-
-    _twinned: frozenset[str] | None = field(init=False, default=None)
+        return end.element in self._spine and end_key(end) not in self.tour.siblings
 
     # -- loops ---------------------------------------------------------------------------------------
 
@@ -267,7 +265,7 @@ class Ways:
         )
         return Way(
             pending.end.element,
-            Choice(0.0, mirror, (), legs, plan=solution.plan),
+            Choice(0.0, mirror, (), legs, plan=solution.plan, heading=pending.at.heading),
             extent,
             _CLUSTER_BENDS * solution.plan.drawing.bends + lopsided,
             lay,

@@ -18,7 +18,7 @@ import numpy as np
 from layoutgen.artwork import Artwork
 from layoutgen.formulas.pads import chip_gap
 from layoutgen.reading import Part
-from layoutgen.response.chain import Chain, FloatArray, series
+from layoutgen.response.chain import FloatArray, series
 from layoutgen.response.copper import ChipGap, Copper
 from layoutgen.response.junctions import junction_effect, own_change, post_impedance
 from layoutgen.response.medium import LineSection, Medium, medium_of
@@ -174,25 +174,17 @@ class DrawnBoard:
             frequencies = self.medium.frequencies
             own, measured = part_elements(part, nodes, data.get(name), frequencies, scales.get(name, 1.0))
             blocks += measured
-            self._others += own
             if own and name in copper.gaps:
-                self._add_gap(copper.gaps[name])
+                own = (self._across(copper.gaps[name], own[0]),)
+            self._others += own
         return blocks
 
-    def _add_gap(self, gap: ChipGap) -> None:
-        """Add the capacitances of the gap under a chip part."""
+    def _across(self, gap: ChipGap, part: Branch) -> Branch:
+        """Return a chip part with the capacitance of the gap under it in parallel; add those to ground."""
         medium = self.medium
         width, apart = gap.width + medium.width_change, gap.gap - medium.width_change
         found = chip_gap(width, apart, medium.height, medium.er)
-        across = _capacitor(medium, found.series)
-        if across is not None:
-            self._others.append(between(*gap.nodes, across))
         ends = [node for node in gap.nodes if node != GROUND]
         self._shunts += [Shunt.susceptance(node, medium.omega * found.shunt) for node in ends]
-
-
-def _capacitor(medium: Medium, capacitance: FloatArray) -> Chain | None:
-    """Return a series capacitance [F], None where there is none."""
-    if not np.all(capacitance > 0.0):
-        return None
-    return series(1.0 / (1j * medium.omega * capacitance))
+        z = part.chain.b
+        return between(*gap.nodes, series(z / (1.0 + z * 1j * medium.omega * found.series)))

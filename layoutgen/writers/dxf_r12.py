@@ -9,7 +9,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
 
-from layoutgen.artwork import LAYERS, Label, Shape
+from layoutgen.artwork import Label, Shape
 from layoutgen.geometry import Point, Ring
 from layoutgen.numbers import fixed, mm
 from layoutgen.writers.outlines import as_circle, distinct_vertices, turned
@@ -149,6 +149,3 @@ def _line(layer: str, ends: Sequence[Point]) -> Iterator[str]:
     (x0, y0), (x1, y1) = ends
     yield from ("  0", "LINE", "  8", layer, " 10", mm(x0), " 20", mm(y0), " 30", "0.0")
     yield from (" 11", mm(x1), " 21", mm(y1), " 31", "0.0")
-
-
-assert set(LAYERS) <= set(_COLOURS), "a layer without a colour"

@@ -60,7 +60,7 @@ function themeSwitch(changed) {
 function printSwitch() {
   const figure = byId("still");
   const fill = () => {
-    const picture = figure.querySelector("noscript");
+    const picture = figure?.querySelector("noscript");
     if (!picture) return;
     figure.insertAdjacentHTML("beforeend", picture.textContent);
     picture.remove();

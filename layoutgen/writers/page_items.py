@@ -106,9 +106,16 @@ class Catalogue:
         """Return the item of a piece that no element of the circuit stands for."""
         name, net = shape.origin.element, shape.net or "none"
         title = _ROLE_TITLES.get(shape.role, shape.role)
-        facts = (("Net", net), ("Belongs to", name)) if shape.net else (("Belongs to", name),)
+        facts: list[Fact] = [("Net", net)] if shape.net else []
+        facts += [("Belongs to", name)] if name in self._keys else []
+        facts += self._board_facts() if shape.role == "profile" else []
         key = f"{shape.layer}:{shape.role}:{name}:{net}"
-        return self.add(Item(key, title, facts, self._keys.get(name, "")))
+        return self.add(Item(key, title, tuple(facts), self._keys.get(name, "")))
+
+    def _board_facts(self) -> list[Fact]:
+        placement = self.result.placement
+        size = f"{mm_text(placement.width)} x {mm_text(placement.height)} mm"
+        return [("Size", size), ("Corner radius", f"{mm_text(placement.corner_radius)} mm")]
 
 
 _ROLE_TITLES = {

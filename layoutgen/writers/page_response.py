@@ -137,7 +137,7 @@ def _size(z: complex) -> Cell:
     size = abs(z)
     if not math.isfinite(size):
         return cell(None)
-    return "above 100 k" if size >= 1e5 else fixed(size, 1)
+    return fixed(size, 1) if size < 1e5 else f"{size / 1e6:.4g} M"
 
 
 def _doubts(result: Result, doubts: Sequence[Doubt]) -> str:

@@ -128,6 +128,7 @@ footer{padding:2rem 1.2rem;color:var(--soft);font-size:.88rem}
 .side{margin-top:.6rem}#panel{flex:none;height:13rem}canvas{min-height:15rem;max-height:60vh}}
 @media (max-width:40rem){body{font-size:14px}h1{font-size:1.35rem}
 main,header,footer{padding-left:.7rem;padding-right:.7rem}}
+@page{margin:14mm}
 @media print{:root{--paper:#fff;--card:#fff;--ink:#000;--soft:#444;--rule:#bbb;--head:#eee;--copper:#7a3d14;
 --good:#1d5033;--warn:#6b4b00;--bad:#8f1514}
 .live .viewer,.live #theme,.watch,.reading,.cursor,.dot{display:none}

@@ -59,12 +59,17 @@ def write_report_json(result: Result, job: Job) -> bytes:
 
 
 def findings_report(result: Result) -> str:
-    """Return the findings alone in the report's shape, as JSON text."""
+    """Return a result's findings alone in the report's shape, as JSON text."""
+    return findings_json(result.findings, result.checks.not_checked)
+
+
+def findings_json(findings: Sequence[Finding], not_checked: Sequence[NotChecked]) -> str:
+    """Return findings alone in the report's shape, as JSON text: for artwork of any origin."""
     return json_text(
         {
             "format": FORMAT,
-            "findings": [_finding(finding) for finding in result.findings],
-            "not_checked": [_not_checked(item) for item in result.checks.not_checked],
+            "findings": [_finding(finding) for finding in findings],
+            "not_checked": [_not_checked(item) for item in not_checked],
         }
     )
 

@@ -10,6 +10,7 @@ import pytest
 import shapely
 from shapely.affinity import scale
 
+from layoutgen.checks.planar import farthest
 from layoutgen.errors import WrongInputError
 from layoutgen.foreign import ForeignArtwork, read_artwork
 from tests.foreign.drawings import NEW, OLD, SLOT, SLOT_BULGES, Pen, Way, document, save, slot_polygon
@@ -42,7 +43,7 @@ def test_one_outline_however_drawn(way: Way, version: str, unit: str | None, tmp
     artwork = read(doc, tmp_path, None if stated else (unit or "mm"))
     got, wanted = copper(artwork), slot_polygon()
     limit = 1.1e-2 if way.__name__ == "by_gap" else HALF_UM / 1e6
-    assert shapely.hausdorff_distance(got.boundary, wanted.boundary, densify=0.001) < limit
+    assert farthest(got.boundary, wanted.boundary) < limit
     assert got.area == pytest.approx(wanted.area, abs=2e-2 if way.__name__ == "by_gap" else 2e-4)
 
 
@@ -142,7 +143,7 @@ def test_curved_hatch_edges(tmp_path: Path) -> None:
     path.add_spline(control_points=[(2, 5), (5, 5), (8, 5)], degree=2, knot_values=[0, 0, 0, 1, 1, 1])
     got = copper(read(doc, tmp_path))
     assert got.area == pytest.approx(np.pi * 3 / 2, abs=1e-4)
-    assert got.bounds == pytest.approx((2, 5, 8, 6), abs=1e-6)
+    assert got.bounds == pytest.approx((2, 5, 8, 6), abs=1e-5)
 
 
 def test_arrays_of_blocks(tmp_path: Path) -> None:

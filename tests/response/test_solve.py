@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable
+from dataclasses import replace
 
 import numpy as np
 import pytest
@@ -12,7 +13,17 @@ from hypothesis import strategies as st
 
 from layoutgen.response import solve as solve_module
 from layoutgen.response.chain import Chain, line, series, shunt
-from layoutgen.response.network import GROUND, Block, Branch, Network, Port, Shunt, between, coupled_pair
+from layoutgen.response.network import (
+    GROUND,
+    Block,
+    Branch,
+    Network,
+    Port,
+    Shunt,
+    between,
+    coupled_pair,
+    spread,
+)
 from layoutgen.response.reduce import reduce_network
 from layoutgen.response.solve import solve
 
@@ -215,6 +226,76 @@ class TestReduction:
         arms = [between("a", x, line(70.7, [math.pi / 2])) for x in ("b", "c")]
         network = Network(1, tuple(Port(n, 50.0) for n in "abc"), (*arms, between("b", "c", series([100.0]))))
         assert len(reduce_network(network).branches) == 3
+
+    def test_a_bank_becomes_one_admittance(self) -> None:
+        """Shunt parts on a strip, and a supply line beyond them that ends open: all at the feed's tee."""
+        rng = np.random.default_rng(1)
+        ladder = [between(f"s{k}", f"s{k + 1}", random_element(rng, True)) for k in range(4)]
+        shunts = [between(GROUND, f"s{k}", series([3.0 + 5.0j * k])) for k in range(1, 4)]
+        feed = between("m", "s0", line(90.0, 1.4 * FREQUENCIES / 2e9))
+        through = (between("a", "m", line(50.0, [0.4])), between("m", "b", line(60.0, [0.7])))
+        network = Network(FREQUENCIES.size, two_ports(), (*through, feed, *ladder, *shunts))
+        small = reduce_network(network)
+        assert len(small.branches) == 1 and small.shunts == ()
+        watched = replace(network, ports=(*network.ports, *(Port(f"s{k}", 1e12) for k in range(5))))
+        assert solve(network) == pytest.approx(solve(watched)[:, :2, :2], abs=1e-9)
+
+    def test_a_stub_that_shorts_its_node_stays(self) -> None:
+        """At a quarter wave its admittance has no end: the two-port's own equations must be kept."""
+        stub = between("m", "end", line(50.0, 0.5 * np.pi * np.array([0.9, 1.0, 1.1])))
+        through = (between("a", "m", line(50.0, [0.4])), between("m", "b", line(60.0, [0.7])))
+        network = Network(3, two_ports(), (*through, stub))
+        assert len(reduce_network(network).branches) == 3
+        assert abs(solve(network)[1, 1, 0]) < 1e-12
+        short = between("m", GROUND, series([0.0]))
+        assert solve(network)[1] == pytest.approx(
+            solve(Network(1, two_ports(), (*through, short)))[0], abs=1e-12
+        )
+
+    def test_parts_that_only_ground_joins_are_solved_apart(self) -> None:
+        """Input and output of an amplifier without its device: nothing passes, each is as if alone."""
+        left, right = random_network(3, pairs=0), random_network(4, pairs=1)
+        moved = [renamed(branch, "r ") for branch in right.branches]
+        ports = (left.ports[0], *(replace(port, node=f"r {port.node}") for port in right.ports))
+        both = Network(FREQUENCIES.size, (*ports, *left.ports[1:]), (*left.branches, *moved))
+        s = solve(both)
+        here, there = [0, 4, 5], [1, 2, 3]
+        assert s[:, here][:, :, here] == pytest.approx(solve(left), abs=1e-12)
+        assert s[:, there][:, :, there] == pytest.approx(solve(right), abs=1e-12)
+        assert np.max(np.abs(s[:, here][:, :, there])) == 0.0
+
+
+def two_ports() -> tuple[Port, Port]:
+    """Return ports of 50 ohm at the nodes a and b."""
+    return Port("a", 50.0), Port("b", 50.0)
+
+
+def renamed(branch: Branch, prefix: str) -> Branch:
+    """Return a branch between nodes of other names."""
+    near, far = (
+        tuple((node if node == GROUND else prefix + node, weight) for node, weight in side)
+        for side in (branch.near, branch.far)
+    )
+    return Branch(near, far, branch.chain)
+
+
+class TestSpread:
+    def test_samples_beside_frequencies(self) -> None:
+        """Samples along the wrong axis, or numbers spread where they need not be."""
+        impedances, angles = np.array([[40.0], [70.0]]), np.array([0.3, 0.9, 1.5])
+        stub = Shunt("b", np.array([0.01j, 0.02j, 0.03j]))
+        network = Network(6, two_ports(), (between("a", "b", line(impedances, angles)),), (stub,))
+        s = solve(spread(network, (2, 3))).reshape(2, 3, 2, 2)
+        for i, impedance in enumerate(impedances[:, 0]):
+            alone = Network(3, two_ports(), (between("a", "b", line(impedance, angles)),), (stub,))
+            assert s[i] == pytest.approx(solve(alone), abs=1e-14)
+
+    def test_real_functions_give_the_complex_line(self) -> None:
+        """The quick way for lossy lines against numpy's own complex functions."""
+        angle = np.linspace(-1.0, 40.0, 50) * (1.0 - 0.02j)
+        chain = line(60.0, angle)
+        assert chain.a == pytest.approx(np.cos(angle), rel=1e-13)
+        assert chain.b == pytest.approx(60.0j * np.sin(angle), rel=1e-13)
 
 
 class TestBlocks:

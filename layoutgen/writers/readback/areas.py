@@ -7,6 +7,7 @@ sides, so that chords do not blur a comparison; other arcs are chords within 5 n
 from __future__ import annotations
 
 import math
+from collections import Counter
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, field
 
@@ -44,21 +45,31 @@ Circle = tuple[float, float, float]
 
 @dataclass(slots=True)
 class Area:
-    """Polygons and circles [nm] of one layer; ``even_odd`` when they are not simply added."""
+    """Polygons and circles [nm] of one layer.
+
+    They are laid over each other by even-odd, so that each one counts: a pad under a line or an outline
+    inside a pour changes the region when it is lost, moved or bent, as it would not in a union.
+    """
 
     polygons: list[BaseGeometry] = field(default_factory=list)
     circles: list[Circle] = field(default_factory=list)
-    even_odd: bool = False
+
+    def pieces(self) -> npt.NDArray[np.object_]:
+        """Return polygons and circles as polygons."""
+        found = np.empty(len(self.polygons) + len(self.circles), dtype=object)
+        found[:] = [*self.polygons, *discs(self.circles)]
+        return found
 
     def region(self) -> BaseGeometry:
-        """Return all of it as one geometry."""
-        pieces = [*self.polygons, *discs(self.circles)]
-        if not self.even_odd:
-            return shapely.union_all(pieces)
-        region: BaseGeometry = shapely.Polygon()
-        for piece in pieces:
-            region = shapely.symmetric_difference(region, piece)
-        return region
+        """Return where an odd number of them lies."""
+        pieces = self.pieces()
+        while len(pieces) > 1:
+            odd = pieces[len(pieces) & ~1 :]
+            pairs = shapely.symmetric_difference(
+                pieces[: len(pieces) & ~1 : 2], pieces[1 : len(pieces) & ~1 : 2]
+            )
+            pieces = np.concatenate([pairs, odd])
+        return pieces[0] if len(pieces) else shapely.Polygon()
 
 
 def discs(circles: Sequence[Circle]) -> list[BaseGeometry]:
@@ -83,7 +94,6 @@ def model_area(shapes: Iterable[Shape], tolerance: float = FINE_NM, split_circle
             area.circles.append((float(circle[0]), float(circle[1]), 2.0 * circle[2]))
         else:
             area.polygons.append(_polygon(shape, tolerance))
-        area.even_odd |= shape.layer == "profile"
     return area
 
 
@@ -113,7 +123,8 @@ def arc_length(shapes: Iterable[Shape]) -> float:
 
 def area_check(file: str, reader: str, what: str, found: Area, wanted: Area, arcs: float = 0.0) -> Check:
     """Return the area of the symmetric difference; the limit grows with the length of arcs [mm]."""
-    difference = shapely.symmetric_difference(found.region(), wanted.region()).area / _NM2_PER_MM2
+    left, right = _without_common(found, wanted)
+    difference = shapely.symmetric_difference(left.region(), right.region()).area / _NM2_PER_MM2
     limit = FLOOR_MM2 + FINE_NM * 1e-6 * arcs
     return Check(
         file=file,
@@ -123,6 +134,31 @@ def area_check(file: str, reader: str, what: str, found: Area, wanted: Area, arc
         limit=limit,
         unit="mm^2",
     )
+
+
+def _without_common(first: Area, second: Area) -> tuple[Area, Area]:
+    """Return what is left of two areas without the polygons that both have, vertex by vertex [nm]."""
+    pieces = first.pieces(), second.pieces()
+    keys = [_keys(polygons) for polygons in pieces]
+    common = Counter(keys[0]) & Counter(keys[1])
+    rests = []
+    for polygons, names in zip(pieces, keys, strict=True):
+        spare, rest = Counter(common), Area()
+        for polygon, name in zip(polygons, names, strict=True):
+            if spare[name] > 0:
+                spare[name] -= 1
+            else:
+                rest.polygons.append(polygon)
+        rests.append(rest)
+    return rests[0], rests[1]
+
+
+def _keys(polygons: npt.NDArray[np.object_]) -> list[bytes]:
+    """Return for each polygon what equal ones have in common: vertices in whole nanometres, in one order."""
+    if not len(polygons):
+        return []
+    whole = shapely.normalize(shapely.transform(polygons, np.rint))
+    return [bytes(key) for key in shapely.to_wkb(whole)]
 
 
 def count_check(file: str, reader: str, what: str, found: int, wanted: int) -> Check:

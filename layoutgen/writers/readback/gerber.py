@@ -65,7 +65,7 @@ def read_gerber(file: str, data: bytes, result: Result) -> Evidence:
     yield count_check(file, _READER, "objects that take away", clear, 0)
     arcs = arc_length(shapes)
     if layer == "profile":
-        found = Area([shapely.Polygon(loop) for loop in _loops(objects)], even_odd=True)
+        found = Area([shapely.Polygon(loop) for loop in _loops(objects)])
         yield count_check(file, _READER, "outlines", len(found.polygons), len(shapes))
         yield area_check(file, _READER, layer, found, model_area(shapes, split_circles=False), arcs)
         return

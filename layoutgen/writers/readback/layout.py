@@ -49,9 +49,7 @@ def _compared(file: str, reader: str, layout: Layout, result: Result) -> Evidenc
     areas, texts = layout
     for name, shapes in layers_of(result).items():
         wanted = model_area(shapes, CHORD_TOLERANCE_NM, split_circles=False)
-        found = areas.pop(LAYERS[name], Area())
-        found.even_odd = wanted.even_odd
-        yield area_check(file, reader, name, found, wanted)
+        yield area_check(file, reader, name, areas.pop(LAYERS[name], Area()), wanted)
     yield count_check(file, reader, "layers that are not the model's", len(areas), 0)
     labels = labels_of(result)
     for name, numbers in LAYERS.items():
