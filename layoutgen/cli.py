@@ -355,11 +355,12 @@ def tolerance(
 @click.option("--port", type=click.IntRange(0, 65535), default=0, help="Port here; 0 takes a free one.")
 def watch(circuit: Path, out: Path | None, port: int) -> int:
     """Draw CIRCUIT again whenever it is saved, and serve its page on this machine until interrupted."""
+    from layoutgen.pipeline import run
     from layoutgen.watch import watch as watch_circuit
 
     folder = out if out is not None else Path("out", circuit.stem)
     say = partial(click.echo, err=True)
-    watch_circuit(circuit, folder, port, tell=say, ready=lambda address: say(f"open {address}"))
+    watch_circuit(circuit, folder, port, draw=partial(run, today=date.today()), tell=say)
     return CLEAN
 
 

@@ -133,7 +133,7 @@ def _settled(circuit: Circuit, clock: _Clock, fit: Fit | None) -> tuple[Artwork,
                 raise
             return _uncorrected(circuit, clock, f"no placement with corrected lengths ({error})")
         rounds.append(_asked(sized, draft, clock, fit))
-        if rounds[-1].settled:
+        if rounds[-1].settled or _goes_round(rounds):
             break
         sized = rounds[-1].again
     best = _best(rounds)
@@ -161,6 +161,18 @@ class _Round:
         """Whether the draft is as it asks to be."""
         drawn = self.draft.placement.sized
         return largest_move(drawn, self.again)[1] < SETTLED and self.again.corrections == drawn.corrections
+
+
+def _goes_round(rounds: Sequence[_Round]) -> bool:
+    """Tell whether the last draft asks for the sizes of an earlier one: more drafts would only repeat them.
+
+    A piece of pour that comes and goes with a step of the board's size can do that.
+    """
+    asked = rounds[-1].again
+    drawn = [earlier.draft.placement.sized for earlier in rounds]
+    return any(
+        sized.corrections == asked.corrections and largest_move(sized, asked)[1] < SETTLED for sized in drawn
+    )
 
 
 def _draft(sized: SizedCircuit, choices: Choices | None, clock: _Clock) -> Artwork:

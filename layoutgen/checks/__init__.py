@@ -8,6 +8,16 @@ RF behaviour, print, or exit.
 """
 
 from layoutgen.checks.records import CheckResult, Finding, NotChecked
-from layoutgen.checks.run import check, check_board
+from layoutgen.checks.run import check, check_board, current_map
+from layoutgen.checks.sheet import NetSheet, Sheets
 
-__all__ = ["CheckResult", "Finding", "NotChecked", "check", "check_board"]
+__all__ = [
+    "CheckResult",
+    "Finding",
+    "NetSheet",
+    "NotChecked",
+    "Sheets",
+    "check",
+    "check_board",
+    "current_map",
+]

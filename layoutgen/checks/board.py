@@ -17,6 +17,7 @@ from layoutgen.artwork import Artwork
 from layoutgen.checks.facing import Edges, Places, edges_of, facing
 from layoutgen.checks.limits import Limits
 from layoutgen.checks.planar import CORNER_LIMITS, TOLERANCE_NM, array_of, merge, points_of
+from layoutgen.checks.sheet import Sheets, sheets_of
 from layoutgen.geometry import Point
 
 __all__ = ["Area", "Board", "Drill", "Layer", "Piece"]
@@ -165,6 +166,11 @@ class Board:
     def layers(self) -> tuple[Layer, Layer]:
         """Both copper layers, top first."""
         return self.top, self.bottom
+
+    @cached_property
+    def sheets(self) -> Sheets:
+        """The direct current in every piece of copper off gnd, solved once for all rules."""
+        return sheets_of(self)
 
     @cached_property
     def vias(self) -> tuple[Drill, ...]:

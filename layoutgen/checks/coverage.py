@@ -15,9 +15,8 @@ PARAMETERS = ("copper.undercut", "vias.plating", "land_pattern.density")
 
 UNCOVERED = (
     NotChecked(
-        "current crowding",
-        "currents are judged by the narrowest place and by equal shares of vias, not by a "
-        "solution of the copper's sheet; crowding at tees, pads, corners and in the ground is not looked at",
+        "current in the ground",
+        "the sheet is solved for nets off gnd; the plane, the pour and the vias' unequal shares are not",
     ),
     NotChecked("RF voltage and current", "the circuit file gives no power; only the bias is judged"),
     NotChecked("3-D coupling", "coupling through tall parts, housing, lid and cavity modes has no rule"),

@@ -14,10 +14,16 @@ from layoutgen.checks.outcome import Hit
 from layoutgen.checks.policy import judged
 from layoutgen.checks.records import CheckResult, Finding, NotChecked
 from layoutgen.checks.rules import RULES
+from layoutgen.checks.sheet import Sheets, sheets_of
 from layoutgen.checks.worst import worst_of_each
 from layoutgen.origin import Location
 
-__all__ = ["check", "check_board"]
+__all__ = ["check", "check_board", "current_map"]
+
+
+def current_map(artwork: Artwork) -> Sheets:
+    """Return the direct current in an artwork's copper: densities by triangle, voltage drops, heat by net."""
+    return sheets_of(board_of(artwork))
 
 
 def check(artwork: Artwork, today: datetime.date | None = None) -> CheckResult:

@@ -7,7 +7,7 @@ Needs the libraries of the extra ``watch``.
 """
 
 from layoutgen.watch.files import watched_files
-from layoutgen.watch.redraw import Drawing, redraw
+from layoutgen.watch.redraw import Draw, Drawing, redraw
 from layoutgen.watch.watch import watch
 
-__all__ = ["Drawing", "redraw", "watch", "watched_files"]
+__all__ = ["Draw", "Drawing", "redraw", "watch", "watched_files"]

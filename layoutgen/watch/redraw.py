@@ -3,15 +3,16 @@
 from __future__ import annotations
 
 import hashlib
+from collections.abc import Callable
 from dataclasses import dataclass, replace
 from pathlib import Path
 
 from layoutgen.errors import InfeasibleError, LayoutgenError, WrongInputError
 from layoutgen.pipeline import run
-from layoutgen.writers import Job, encode, write_files
+from layoutgen.writers import Job, Result, encode, write_files
 from layoutgen.writers.report_html import report_page
 
-__all__ = ["Drawing", "redraw"]
+__all__ = ["Draw", "Drawing", "redraw"]
 
 
 @dataclass(frozen=True, slots=True)
@@ -23,16 +24,20 @@ class Drawing:
     faults: tuple[str, ...] = ()
 
 
-def redraw(circuit: Path, folder: Path, job: Job) -> Drawing:
+Draw = Callable[[Path], Result]
+
+
+def redraw(circuit: Path, folder: Path, job: Job, draw: Draw = run) -> Drawing:
     """Draw a circuit file and write its files, all or none; a faulty one changes no file.
 
     Args:
         circuit: The circuit file.
         folder: Where the files go.
         job: Stem, resolution, and whether to leave out what differs from run to run.
+        draw: Makes every stage's result of a circuit file, as the pipeline does.
     """
     try:
-        result = run(circuit)
+        result = draw(circuit)
         files = encode(result, job)
         write_files(folder, files)
     except LayoutgenError as error:

@@ -8,13 +8,15 @@ import importlib.util
 import socket
 import time
 from collections.abc import Callable
+from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING
 
 from layoutgen.errors import WrongInputError
 from layoutgen.origin import Fault, Location
+from layoutgen.pipeline import run
 from layoutgen.watch.files import Mark, folders_of, marks_of, watched_files
-from layoutgen.watch.redraw import Drawing, redraw
+from layoutgen.watch.redraw import Draw, Drawing, redraw
 from layoutgen.watch.server import LOOPBACK, Stage, application
 from layoutgen.writers import Job, file_names, prepare_folder
 
@@ -34,6 +36,7 @@ def watch(
     port: int = 0,
     *,
     job: Job | None = None,
+    draw: Draw = run,
     tell: Tell = lambda text: None,
     ready: Callable[[str], None] = lambda address: None,
 ) -> None:
@@ -46,7 +49,8 @@ def watch(
         folder: Where the files go, at every drawing that can be made.
         port: The server's port on this machine; 0 takes a free one.
         job: How the files are written; None takes the circuit file's stem.
-        tell: Called with one line of text for each thing that happens.
+        draw: Makes every stage's result of a circuit file; give one that knows the day when waivers end.
+        tell: Called with a text of one or more lines for each thing that happens.
         ready: Called once with the page's address, when it can be opened.
 
     Raises:
@@ -59,7 +63,7 @@ def watch(
     job = job or Job(stem=path.stem)
     prepare_folder(target, file_names(job.stem))
     with _listening(port) as listener, contextlib.suppress(KeyboardInterrupt):
-        asyncio.run(_serve(path, target, job, listener, tell, ready))
+        asyncio.run(_serve(_Task(path, target, job, draw, tell), listener, ready))
 
 
 def _require_libraries() -> None:
@@ -92,25 +96,33 @@ def _listening(port: int) -> socket.socket:
     return listener
 
 
-async def _serve(
-    circuit: Path,
-    folder: Path,
-    job: Job,
-    listener: socket.socket,
-    tell: Tell,
-    ready: Callable[[str], None],
-) -> None:
+@dataclass(frozen=True, slots=True)
+class _Task:
+    """What is drawn, where to, how, and who is told."""
+
+    circuit: Path
+    folder: Path
+    job: Job
+    draw: Draw
+    tell: Tell
+
+    def redraw(self) -> Drawing:
+        """Draw once."""
+        return redraw(self.circuit, self.folder, self.job, self.draw)
+
+
+async def _serve(task: _Task, listener: socket.socket, ready: Callable[[str], None]) -> None:
     """Serve the page and follow the files until the server is told to end."""
     from uvicorn import Config, Server
 
-    stage = Stage(circuit.name)
+    stage = Stage(task.circuit.name)
     config = Config(application(stage), log_level="error", lifespan="off", timeout_graceful_shutdown=1)
     server = Server(config)
     serving = asyncio.create_task(server.serve(sockets=[listener]))
-    following = asyncio.create_task(_follow(circuit, folder, job, stage, tell))
+    following = asyncio.create_task(_follow(task, stage))
     closing = asyncio.create_task(_close_with(server, stage))
     address = f"http://{LOOPBACK}:{listener.getsockname()[1]}/"
-    tell(f"open {address}; it follows {circuit}, interrupt to end")
+    task.tell(f"open {address}; it follows {task.circuit}, interrupt to end")
     ready(address)
     await asyncio.wait({serving, following}, return_when=asyncio.FIRST_COMPLETED)
     server.should_exit = True
@@ -127,18 +139,18 @@ async def _close_with(server: Server, stage: Stage) -> None:
     await stage.close()
 
 
-async def _follow(circuit: Path, folder: Path, job: Job, stage: Stage, tell: Tell) -> None:
+async def _follow(task: _Task, stage: Stage) -> None:
     """Draw now and after every change of a file the circuit depends on."""
-    files = frozenset({circuit.absolute()})
+    own = files = frozenset({task.circuit.absolute()})
     while True:
-        seen = marks_of(frozenset({circuit.absolute()}))
-        files = watched_files(circuit) or files
+        seen = marks_of(own)
+        files = watched_files(task.circuit) or files
         seen = marks_of(files) | seen
         await stage.begin()
         start = time.perf_counter()
-        drawing = await asyncio.to_thread(redraw, circuit, folder, job)
+        drawing = await asyncio.to_thread(task.redraw)
         await stage.finish(drawing)
-        tell(_outcome(drawing, time.perf_counter() - start))
+        task.tell(_outcome(drawing, time.perf_counter() - start))
         await _change(files, seen)
 
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 
@@ -102,6 +103,26 @@ class TestCorrection:
         result = pipeline.run_inputs(stubbed.circuit, stubbed.rules)
         (note,) = result.notes
         assert "not settled after 4 drawings" in note[2] and "0.0100" in note[2]
+
+    def test_sizes_that_go_round_are_drawn_once(
+        self, stubbed: Inputs, monkeypatch: pytest.MonkeyPatch
+    ) -> None:
+        """Two states of the pour that call for each other: a fourth draft would be the second again."""
+        real, asked = pipeline.size_circuit, []
+
+        def sizing(circuit: Any, gaps: Any = None) -> Any:
+            asked.append(gaps)
+            sized = real(circuit)
+            more = (0.0, 5e-6, 0.0, 5e-6, 0.0, 5e-6)[len(asked) - 1]
+            lines = {name: replace(line, width=line.width + more) for name, line in sized.lines.items()}
+            return replace(sized, lines=lines)
+
+        monkeypatch.setattr(pipeline, "size_circuit", sizing)
+        drafts = []
+        draw = pipeline.draw
+        monkeypatch.setattr(pipeline, "draw", lambda *a, **k: drafts.append(k) or draw(*a, **k))
+        pipeline.run_inputs(stubbed.circuit, stubbed.rules, correction=False)
+        assert [bool(k.get("draft")) for k in drafts] == [True, True, False]
 
     def test_what_the_board_takes_back_does_not_run_away(self) -> None:
         """All lengths given, the board in steps of 0.5 mm: a strip makes up for whatever a line gives.

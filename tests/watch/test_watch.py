@@ -16,10 +16,10 @@ from typing import Any
 
 import pytest
 
-from layoutgen.errors import WrongInputError
+from layoutgen.errors import InfeasibleError, WrongInputError
 from layoutgen.watch import redraw, watch, watched_files
 from layoutgen.watch.files import folders_of, marks_of
-from layoutgen.writers import Job
+from layoutgen.writers import Job, Result
 
 for library in ("starlette", "uvicorn", "watchfiles"):
     pytest.importorskip(library)
@@ -100,6 +100,16 @@ def test_faults_are_told_and_nothing_is_written(tmp_path: Path) -> None:
     assert len(drawing.faults) == 2
     assert all(fault.startswith(f"{circuit}:") for fault in drawing.faults)
     assert not (tmp_path / "out").exists()
+
+
+def test_the_caller_says_how_to_draw(tmp_path: Path) -> None:
+    """The command line's options, and the day on which waivers end, must reach every drawing."""
+
+    def refuse(circuit: Path) -> Result:
+        raise InfeasibleError(circuit.name, "not today", "tomorrow would do")
+
+    drawing = redraw(EXAMPLE, tmp_path / "out", Job(stem="q"), refuse)
+    assert drawing.faults == (f"no placement: {EXAMPLE.name}: not today; tomorrow would do",)
 
 
 def test_no_such_file_is_an_error_at_once(tmp_path: Path) -> None:

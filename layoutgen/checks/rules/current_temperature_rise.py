@@ -6,8 +6,10 @@ Why: hot copper ages the laminate and moves the bias of what is soldered to it.
 How measured: I = 0.048 dT^0.44 A^0.725 (A in square mils) for lines at the narrowest place of their drawn
 copper, between facing edges; barrels as pi t (d - t) with the drill d taken as drilled and the constant
 0.024 of conductors inside the board. Currents come from the DC solution, vias share equally. A current
-beyond the chart's 35 A is a finding whatever the width. A width 10 nm short passes. Crowding of current
-at tees, pads and corners is not looked at, nor the current of the ground's own copper.
+beyond the chart's 35 A is a finding whatever the width. A width 10 nm short passes. Besides, every line of
+one potential across the solved sheet of a net (see ``current.max_density``) is taken as a conductor of its
+length that carries the current through it; half a per cent short passes there. The current of the ground's
+own copper is not looked at.
 Source: IPC-2221, as independent public code and pages quote it; the standard's text was not read.
 """
 
@@ -17,6 +19,7 @@ from collections.abc import Iterator
 
 from layoutgen.checks.board import Board
 from layoutgen.checks.carriers import Carrier, carriers, necks
+from layoutgen.checks.crowding import CUT_ERROR, crowded
 from layoutgen.checks.grounding import via_currents
 from layoutgen.checks.outcome import Hit, Outcome, Rule, mm
 from layoutgen.checks.planar import TOLERANCE_NM
@@ -43,7 +46,23 @@ def find(board: Board) -> Iterator[Outcome]:
             yield _hit(text, carrier.current, IPC2221_MAX_CURRENT, "A", carrier.at, (carrier.item,))
         else:
             yield from _lines(board, carrier, limit, board.thickness * 1e-9)
+    yield from _sheets(board, limit, board.thickness * 1e-9)
     yield from _barrels(board, limit)
+
+
+def _sheets(board: Board, limit: float, thickness: float) -> Iterator[Outcome]:
+    """Yield the hits of cuts across the solved sheets, and what could not be solved."""
+
+    def needed(current: float) -> float:
+        return float(ipc2221_width(min(current, IPC2221_MAX_CURRENT), thickness, limit)) * 1e9
+
+    yield from board.sheets.skipped
+    for place in crowded(board, lambda sheet: sheet.largest / needed(sheet.largest)):
+        cut = place.cut
+        if cut.current <= IPC2221_MAX_CURRENT and cut.length < needed(cut.current) * (1.0 - CUT_ERROR):
+            rise = float(ipc2221_rise(cut.current, cut.length * 1e-9, thickness))
+            text = f"{place.item} warms by {rise:.1f} K at a cut of {mm(cut.length)} that {cut.current:.3f} A pass"
+            yield _hit(f"{text}, at most {limit:g} K", rise, limit, "K", place.at, (place.item,))
 
 
 def _lines(board: Board, carrier: Carrier, limit: float, thickness: float) -> Iterator[Hit]:
