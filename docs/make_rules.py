@@ -28,6 +28,10 @@ Rules look at *finished* copper: the artwork less `copper.undercut` on every edg
 arcs are judged as chords within 5 nm, and a distance 10 nm short of its limit passes (rounding to whole
 nanometres), so that a board at the limit passes and one a micrometre below it does not. Where a rule
 allows more, it says so.
+
+Beside each rule stand two boards, one that passes and one that does not (the finding ringed in red): copper
+orange, the plane grey, mask openings green, legend dark. They are made by `docs/make_rule_pictures.py` from
+boards that the tests judge.
 """
 
 CLOSING = """\
@@ -63,7 +67,11 @@ def _section(module: ModuleType) -> str:
     title = ", ".join(f"`{name}`" for name in names)
     chunks = re.split(r"\n(?=(?:Why|How measured|Source):)", body.strip().replace("``", "`"))
     wrapped = [_wrapped(f"- {' '.join(chunk.split())}") for chunk in chunks]
-    return "\n".join([f"## {title}", "", f"{head.strip()} ({severity})", "", *wrapped, ""])
+    stem = names[0].replace(".", "_")
+    pictures = (
+        f"![passes](rules/{stem}_pass.svg) ![fails](rules/{stem}_fail.svg)"  # docs/make_rule_pictures.py
+    )
+    return "\n".join([f"## {title}", "", f"{head.strip()} ({severity})", "", *wrapped, "", pictures, ""])
 
 
 def _wrapped(row: str) -> str:

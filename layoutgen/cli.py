@@ -358,6 +358,7 @@ def watch(circuit: Path, out: Path | None, port: int) -> int:
     from layoutgen.pipeline import run
     from layoutgen.watch import watch as watch_circuit
 
+    signal.signal(signal.SIGTERM, signal.SIG_IGN)  # the server takes it itself, and ends
     folder = out if out is not None else Path("out", circuit.stem)
     say = partial(click.echo, err=True)
     watch_circuit(circuit, folder, port, draw=partial(run, today=date.today()), tell=say)
@@ -419,7 +420,7 @@ def _summary(result: Result) -> str:
     """Return one line: the board and how many findings there are."""
     placement, artwork = result.placement, result.artwork
     return (
-        f"{placement.width / 1e6:g} x {placement.height / 1e6:g} mm, {_many(len(placement.lines), 'line')}, "
+        f"{placement.width / 1e6:g} x {placement.height / 1e6:g} mm, {_many(len(result.circuit.file.lines), 'line')}, "
         f"{_many(len(placement.parts), 'part')}, {_many(len(artwork.vias), 'via')}; "
         f"{_counts(result.findings)}; {len(result.checks.not_checked)} not checked"
     )

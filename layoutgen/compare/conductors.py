@@ -86,9 +86,15 @@ class Conductors:
     def _net_change(self, kind: str, net: str, text: str, board: int, nets: list[str]) -> Change:
         """Return the change of nets, placed between two of their pieces."""
         layers = self._boards[board].layers
-        layer = next((one for one in layers if len(_pieces(one, nets[0])) and len(_pieces(one, nets[1]))), layers[0])
+        layer = next(
+            (one for one in layers if len(_pieces(one, nets[0])) and len(_pieces(one, nets[1]))), layers[0]
+        )
         first, second = _pieces(layer, nets[0]), _pieces(layer, nets[1])
-        at = middle(shapely.union_all(first), shapely.union_all(second)) if len(first) and len(second) else (0, 0)
+        at = (
+            middle(shapely.union_all(first), shapely.union_all(second))
+            if len(first) and len(second)
+            else (0, 0)
+        )
         return Change(
             kind="joined" if kind == "joined" else "parted",
             layer=layer.name,

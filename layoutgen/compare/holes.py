@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
-from typing import Literal
+from typing import Any, Literal
 
 import numpy as np
 
@@ -50,7 +50,7 @@ def _pairs(before: Sequence[RoundHole], after: Sequence[RoundHole]) -> list[tupl
     from scipy.spatial import cKDTree
 
     count = min(8, len(after))
-    tree = cKDTree(np.array([(hole.x, hole.y) for hole in after]))
+    tree: Any = cKDTree(np.array([(hole.x, hole.y) for hole in after]))
     places = np.array([(hole.x, hole.y) for hole in before])
     distance, other = tree.query(places, k=count, distance_upper_bound=_FARTHEST_NM)
     distance, other = distance.reshape(len(before), count), other.reshape(len(before), count)

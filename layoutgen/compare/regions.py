@@ -7,6 +7,7 @@ from dataclasses import dataclass
 import numpy as np
 import numpy.typing as npt
 import shapely
+from shapely.geometry.base import BaseGeometry
 
 from layoutgen.checks.planar import merge, parts
 
@@ -41,12 +42,11 @@ def regions(mine: Polygons, other: Polygons, tolerance: float) -> list[Region]:
     inside = shapely.covers(grown, mine)
     found = []
     for polygon in mine[~inside]:
-        for part in parts(polygon.difference(grown)):
-            found.append(Region(part, _reach(part, all_other)))
+        found += [Region(part, _reach(part, all_other)) for part in parts(polygon.difference(grown))]
     return found
 
 
-def _reach(part: shapely.Polygon, other: shapely.Geometry) -> float:
+def _reach(part: shapely.Polygon, other: BaseGeometry) -> float:
     """Return how far a region's corners lie from the other artwork [nm]; its own size where there is none."""
     if other.is_empty:
         x0, y0, x1, y1 = part.bounds

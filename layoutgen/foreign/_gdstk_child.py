@@ -28,11 +28,11 @@ def main() -> int:
     try:
         reader = gdstk.read_oas if source.lower().endswith(".oas") else gdstk.read_gds
         library = reader(source, unit=_NM, tolerance=_CHORD_NM)
-        tops = library.top_level()
+        tops: Any = library.top_level()
         _refuse_too_many(library.cells, tops)
         polygons = [polygon for cell in tops for polygon in cell.get_polygons()]
     except (OSError, RuntimeError, ValueError, MemoryError) as error:
-        print(error or type(error).__name__, file=sys.stderr)
+        sys.stderr.write(f"{error or type(error).__name__}\n")
         return 1
     counts = np.array([len(polygon.points) for polygon in polygons], dtype=np.int64)
     points = np.concatenate([polygon.points for polygon in polygons]) if polygons else np.zeros((0, 2))

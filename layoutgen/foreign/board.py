@@ -1,4 +1,4 @@
-"""From foreign artwork to the board that the rules look at: copper joined, conductors found, vias recognised."""
+"""From foreign artwork to the board the rules look at: copper joined, conductors found, vias recognised."""
 
 from __future__ import annotations
 
@@ -80,7 +80,8 @@ def _drills(artwork: ForeignArtwork, limits: Limits) -> list[Drill]:
     vias = [(hole, lands[k]) for k, hole in enumerate(artwork.holes) if k in lands]
     others = [hole for k, hole in enumerate(artwork.holes) if k not in lands]
     found = [
-        Drill(f"via:{n}", hole.x, hole.y, hole.diameter, True, land=land) for n, (hole, land) in enumerate(vias)
+        Drill(f"via:{n}", hole.x, hole.y, hole.diameter, True, land=land)
+        for n, (hole, land) in enumerate(vias)
     ]
     return found + [
         Drill(f"hole:{n}", hole.x, hole.y, hole.diameter, hole.plated) for n, hole in enumerate(others)
@@ -124,7 +125,8 @@ def _named(artwork: ForeignArtwork, limits: Limits, plain: Board) -> Board:
     for layer, shift in ((plain.top, 0), (plain.bottom, count)):
         nets = [net[cluster[shift + k]] for k in range(len(layer.pieces))]
         pieces = [
-            Piece(piece.polygon, f"copper:{shift + k}", nets[k], nets[k]) for k, piece in enumerate(layer.pieces)
+            Piece(piece.polygon, f"copper:{shift + k}", nets[k], nets[k])
+            for k, piece in enumerate(layer.pieces)
         ]
         layers.append(Layer(layer.name, tuple(pieces)))
     barrels = iter(cluster[count + len(plain.bottom.pieces) :])
@@ -134,4 +136,4 @@ def _named(artwork: ForeignArtwork, limits: Limits, plain: Board) -> Board:
         else d
         for d in plain.drills
     ]
-    return _board(artwork, limits, *layers, tuple(drills))
+    return _board(artwork, limits, layers[0], layers[1], tuple(drills))

@@ -8,6 +8,7 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 import numpy.typing as npt
@@ -59,7 +60,8 @@ def _near_ends(ends: Floats, lengths: Floats) -> Iterator[tuple[float, int, int]
     from scipy.spatial import cKDTree
 
     count = min(_NEIGHBOURS, len(ends))
-    distance, other = cKDTree(ends).query(ends, k=count, distance_upper_bound=GAP_NM)
+    tree: Any = cKDTree(ends)
+    distance, other = tree.query(ends, k=count, distance_upper_bound=GAP_NM)
     found = set()
     for a in range(len(ends)):
         for d, b in zip(np.atleast_1d(distance[a]).tolist(), np.atleast_1d(other[a]).tolist(), strict=True):

@@ -53,9 +53,7 @@ def ellipse(
     longest = math.hypot(*major) * max(1.0, abs(ratio))
     t = start + sweep * np.linspace(0.0, 1.0, _steps(longest, sweep, tolerance) + 1)
     minor = (-major[1] * ratio, major[0] * ratio)
-    return np.column_stack(
-        [middle[k] + major[k] * np.cos(t) + minor[k] * np.sin(t) for k in (0, 1)]
-    )
+    return np.column_stack([middle[k] + major[k] * np.cos(t) + minor[k] * np.sin(t) for k in (0, 1)])
 
 
 def bulged(points: Floats, bulges: list[float], closed: bool, tolerance: float) -> Floats:

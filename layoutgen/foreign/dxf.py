@@ -27,7 +27,14 @@ Floats = npt.NDArray[np.float64]
 UNITS = {"mm": 1e6, "in": 25.4e6, "um": 1e3}
 """What may be said with ``--unit``, in nanometres."""
 
-_INSUNITS = {1: ("in", 25.4e6), 4: ("mm", 1e6), 5: ("cm", 1e7), 6: ("m", 1e9), 9: ("mil", 25_400.0), 13: ("um", 1e3)}
+_INSUNITS = {
+    1: ("in", 25.4e6),
+    4: ("mm", 1e6),
+    5: ("cm", 1e7),
+    6: ("m", 1e9),
+    9: ("mil", 25_400.0),
+    13: ("um", 1e3),
+}
 _CHORD_NM = 5.0
 _DEEPEST = 64
 _MOST = 2_000_000
@@ -62,11 +69,11 @@ def read_dxf(path: Path, unit: str | None) -> Raw:
 
 def _document(path: Path) -> Any:
     """Return the file as the library reads it."""
-    import ezdxf
+    from ezdxf.filemanagement import readfile
 
     _refuse_torn(path)
     try:
-        return ezdxf.readfile(path)
+        return readfile(path)
     except Exception as error:  # likewise: struct errors, key errors, recursion, memory
         text = "".join(c for c in str(error) if c.isprintable())[:60]
         raise refused(str(path), f"a broken file ({text or type(error).__name__})", _FORM) from None

@@ -14,6 +14,7 @@ from typing import Any
 import numpy as np
 import numpy.typing as npt
 import shapely
+from shapely.geometry.base import BaseGeometry
 
 from layoutgen.foreign.curves import arc, bulged, ellipse
 from layoutgen.foreign.hatches import hatch_areas
@@ -184,7 +185,9 @@ def _wide(entity: Any, rows: Sequence[tuple[float, ...]], closed: bool, toleranc
     if len(widths) == 1:
         way = bulged(points, bulges, closed, tolerance)
         line = shapely.LinearRing(way) if closed and len(way) >= 3 else shapely.LineString(way)
-        copper = line.buffer(widths.pop() / 2.0, cap_style="flat", join_style="mitre", mitre_limit=_MITRE_LIMIT)
+        copper: BaseGeometry = line.buffer(
+            widths.pop() / 2.0, cap_style="flat", join_style="mitre", mitre_limit=_MITRE_LIMIT
+        )
     else:
         copper = shapely.union_all(list(_tapers(rows, points, closed, tolerance)))
     return [_area(entity, part) for part in shapely.get_parts(copper) if part.area > 0.0]
@@ -192,7 +195,7 @@ def _wide(entity: Any, rows: Sequence[tuple[float, ...]], closed: bool, toleranc
 
 def _tapers(
     rows: Sequence[tuple[float, ...]], points: Floats, closed: bool, tolerance: float
-) -> Iterator[shapely.Polygon]:
+) -> Iterator[BaseGeometry]:
     """Yield the copper of each edge of a polyline whose width changes along it."""
     for k in range(len(rows) if closed else len(rows) - 1):
         ends = np.stack((points[k], points[(k + 1) % len(rows)]))

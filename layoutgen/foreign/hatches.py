@@ -26,7 +26,7 @@ _OUTER, _IGNORE = 1, 2
 def hatch_areas(entity: Any, tolerance: float) -> list[shapely.Polygon]:
     """Return the filled polygons of a hatch, in its own plane and unit."""
     loops = [_ring(path, tolerance) for path in entity.paths.paths]
-    polygons = [shapely.make_valid(shapely.Polygon(ring)) for ring in loops if len(ring) >= 3]
+    polygons: list[Any] = [shapely.make_valid(shapely.Polygon(ring)) for ring in loops if len(ring) >= 3]
     polygons = [polygon for polygon in polygons if polygon.area > 0.0]
     if not polygons:
         return []
@@ -34,7 +34,7 @@ def hatch_areas(entity: Any, tolerance: float) -> list[shapely.Polygon]:
     return [part for part in shapely.get_parts(shapely.get_parts(filled)) if part.geom_type == "Polygon"]
 
 
-def _filled(polygons: list[shapely.Polygon], style: int) -> Any:
+def _filled(polygons: list[Any], style: int) -> Any:
     """Return what a style fills of nested outlines."""
     if style == _IGNORE:
         return shapely.union_all(polygons)

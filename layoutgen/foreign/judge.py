@@ -16,7 +16,7 @@ __all__ = ["check_foreign"]
 _UNKNOWN = (
     NotChecked(
         "connectivity against a netlist",
-        "the drawing names no nets: copper that hangs together is taken as meant, what is apart as meant apart",
+        "the drawing names no nets: what hangs together is taken as meant so, and what is apart too",
     ),
     NotChecked("substrate", "height and copper thickness are not in the drawing"),
 )
@@ -63,7 +63,9 @@ def _unread(artwork: ForeignArtwork) -> Iterator[NotChecked]:
         yield NotChecked("lengths to a micrometre", reason)
     open_ends = sum(note.rule == "foreign.left_open" for note in artwork.notes)
     if open_ends:
-        yield NotChecked("foreign artwork", f"{open_ends} x lines without width that close no outline: not read")
+        yield NotChecked(
+            "foreign artwork", f"{open_ends} x lines without width that close no outline: not read"
+        )
     for layer, polygons in artwork.layers.items():
         if not polygons:
             yield NotChecked("foreign artwork", f"nothing is drawn on {layer}")

@@ -76,12 +76,12 @@ def _head_faults(source: SourceMap, data: Mapping[str, Any]) -> Iterable[Fault]:
         if key not in _KEYS:
             yield Fault(source.location((key,)), shown(key), "an unknown key", "format, [layers]")
     if not _table(data):
-        yield Fault(source.location("layers"), "layers", "no layers", "a table [layers]: name = foreign layer")
+        yield Fault(
+            source.location("layers"), "layers", "no layers", "a table [layers]: name = foreign layer"
+        )
 
 
-def _layer_fault(
-    source: SourceMap, name: str, value: Any, keys: tuple[LayerKey, ...] | None
-) -> Fault | None:
+def _layer_fault(source: SourceMap, name: str, value: Any, keys: tuple[LayerKey, ...] | None) -> Fault | None:
     """Return what is wrong with one row, None when nothing."""
     place, path = source.location(("layers", name)), f"layers.{shown(name)}"
     if name not in LAYERS:

@@ -13,7 +13,6 @@ from dataclasses import dataclass
 
 import numpy as np
 import shapely
-from shapely.geometry.base import BaseGeometry
 
 __all__ = ["Loop", "areas_of"]
 
@@ -38,7 +37,7 @@ def areas_of(loops: Sequence[Loop], *, directed: bool = True) -> list[shapely.Po
     about = _containers(polygons)
     area = shapely.area(polygons) if len(loops) else np.zeros(0)
     sign: dict[int, int] = {}
-    holes: dict[int, dict[tuple[float, ...], BaseGeometry]] = {}
+    holes: dict[int, dict[tuple[float, ...], shapely.Polygon]] = {}
     for k in sorted(range(len(loops)), key=lambda k: (-area[k], k)):
         outer = sorted(about.get(k, ()), key=lambda j: (area[j], j))
         sign[k] = _sign(loops, k, outer, sign, directed)
@@ -71,7 +70,7 @@ def _sign(loops: Sequence[Loop], k: int, outer: list[int], sign: dict[int, int],
 
 
 def _given(
-    hole: shapely.Polygon, outer: list[int], holes: dict[int, dict[tuple[float, ...], BaseGeometry]]
+    hole: shapely.Polygon, outer: list[int], holes: dict[int, dict[tuple[float, ...], shapely.Polygon]]
 ) -> bool:
     """Give a hole to the smallest copper about it that does not have it yet; False when there is none."""
     for j in outer:
@@ -81,7 +80,9 @@ def _given(
     return False
 
 
-def _with_holes(shell: shapely.Polygon, holes: dict[tuple[float, ...], BaseGeometry]) -> list[shapely.Polygon]:
+def _with_holes(
+    shell: shapely.Polygon, holes: dict[tuple[float, ...], shapely.Polygon]
+) -> list[shapely.Polygon]:
     """Return a polygon with its holes taken out; several where they cut it in pieces."""
     if not holes:
         return [shell]

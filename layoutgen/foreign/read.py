@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import os
 import stat
 from collections import Counter
 from collections.abc import Iterable, Mapping, Sequence
@@ -12,7 +11,7 @@ import numpy as np
 import shapely
 
 from layoutgen.artwork import LAYERS
-from layoutgen.checks.planar import farthest
+from layoutgen.checks.planar import array_of, farthest, merge
 from layoutgen.foreign.chains import joined_lines
 from layoutgen.foreign.curves import fitted_circle
 from layoutgen.foreign.dxf import UNITS, read_dxf
@@ -78,7 +77,7 @@ def _refuse_unreadable(file: Path, kind: str) -> None:
     if kind not in SUFFIXES:
         raise refused(str(file), f"the suffix {kind[:20] or '(none)'}", ", ".join(SUFFIXES))
     try:
-        status = os.stat(file)
+        status = file.stat()
         if not stat.S_ISREG(status.st_mode):
             raise refused(str(file), "no regular file", "a regular file")
         with file.open("rb"):
@@ -154,9 +153,14 @@ def _refuse_empty(
     if not any(read[name] for name in _COPPER):
         wanted = ", ".join(shown(key) for name in _COPPER for key in mapping.get(name, ()))
         there = ", ".join(shown(group[0].layer) for group in list(by_layer.values())[:8]) or "none"
-        raise refused(file, f"no copper on {wanted or 'any layer'}; layers: {there}", "a layers file (--layers)")
+        raise refused(
+            file, f"no copper on {wanted or 'any layer'}; layers: {there}", "a layers file (--layers)"
+        )
     for polygons in read.values():
-        if polygons and float(np.abs(shapely.total_bounds(np.array(polygons, dtype=object))).max()) > _FARTHEST_NM:
+        if (
+            polygons
+            and float(np.abs(shapely.total_bounds(np.array(polygons, dtype=object))).max()) > _FARTHEST_NM
+        ):
             raise refused(file, "coordinates beyond 10 m", "a board; is the unit right?")
 
 
@@ -169,7 +173,9 @@ def _polygons(name: str, primitives: Sequence[Primitive], notes: list[ForeignNot
         notes.append(ForeignNote("foreign.gap_closed", name, at, text))
     for line in chains.left:
         x, y = line[0].tolist()
-        text = f"a line without width that ends at {x / 1e6:.4f}, {y / 1e6:.4f} mm is left open and not judged"
+        text = (
+            f"a line without width that ends at {x / 1e6:.4f}, {y / 1e6:.4f} mm is left open and not judged"
+        )
         notes.append(ForeignNote("foreign.left_open", name, (round(x), round(y)), text))
     loops = [
         Loop(part, primitive.turn)
@@ -228,9 +234,12 @@ def _holes(
 ) -> Iterable[RoundHole]:
     """Yield the drilled holes: outlines on the drill layers whose vertices lie on one circle."""
     for name, plated in _DRILLS.items():
-        for polygon in read[name]:
-            points = shapely.get_coordinates(polygon.exterior)[:-1]
-            circle = None if polygon.interiors else fitted_circle(points, _ROUND_NM)
+        whole = [polygon for polygon in read[name] if _circle(polygon)]
+        pieces = array_of([polygon for polygon in read[name] if not _circle(polygon)])
+        i, j = shapely.STRtree(pieces).query(pieces, predicate="intersects")
+        joined = merge(pieces, np.stack((i[i < j], j[i < j]), axis=1)) if len(pieces) else pieces
+        for polygon in (*whole, *joined):  # some programs cut circles of many corners in pieces
+            circle = _circle(polygon)
             if circle is None:
                 x, y = polygon.centroid.x, polygon.centroid.y
                 text = "a hole that is not round is not judged"
@@ -238,3 +247,9 @@ def _holes(
                 unread[f"holes on {name} that are not round"] += 1
             else:
                 yield RoundHole(round(circle[0]), round(circle[1]), float(round(circle[2])), plated)
+
+
+def _circle(polygon: shapely.Polygon) -> tuple[float, float, float] | None:
+    """Return middle and diameter [nm] of a round outline, None for others."""
+    points = shapely.get_coordinates(polygon.exterior)[:-1]
+    return None if polygon.interiors else fitted_circle(points, _ROUND_NM)

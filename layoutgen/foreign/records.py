@@ -74,8 +74,9 @@ class ForeignArtwork:
 
     ``layers`` holds the polygons [nm] of each layer as drawn, overlapping ones not joined; ``profile`` the
     board's outlines with their cut-outs as holes, the largest first; ``holes`` the drilled holes in file
-    order; ``unit`` is the file's; ``unread`` what was left out: text -> how many; ``chord`` [nm] is how far straight
-    edges may lie off the curves that they stand for, 0 where the file has true curves.
+    order; ``unit`` is the file's; ``unread`` what was left out: text -> how many;
+    ``chord`` [nm] is how far straight edges may lie off the curves that they stand for, 0 where the file has
+    true curves.
     """
 
     file: str

@@ -80,7 +80,7 @@ def _raw(counts: np.ndarray, points: np.ndarray, layers: np.ndarray, tops: int) 
         Primitive((int(layer), int(kind)), "area", (ring,))
         for ring, (layer, kind) in zip(rings, layers.tolist(), strict=True)
     )
-    notes = ()
+    notes: tuple[ForeignNote, ...] = ()
     if tops > 1:
         text = f"the file has {tops} top cells; all of them are taken together"
         notes = (ForeignNote("foreign.cells", "", None, text),)

@@ -42,7 +42,8 @@ class Obstacle:
     """One box [nm] of an element; a corridor is kept clear but does not count to the board's extent.
 
     ``at_edges`` names the board edges that the box runs up to (a port's copper): there it keeps ``inset``
-    [nm] from the profile instead of its kind's margin. ``net`` is a pad's.
+    [nm] from the profile instead of its kind's margin. ``net`` is a pad's; ``nets`` are those of one strip of
+    a coupled pair.
     """
 
     box: Box
@@ -52,6 +53,7 @@ class Obstacle:
     at_edges: tuple[str, ...] = ()
     inset: int = 0
     net: str | None = None
+    nets: frozenset[str] | None = None
 
     def reach(self, margins: Mapping[Kind, int]) -> tuple[int, int, int, int]:
         """Return the box with its margin to the profile [nm] on each side."""
@@ -113,7 +115,7 @@ def edge_margins(limits: Limits, pour_gap: int, ground_ring: int, *, tight: bool
         Kind.SUPPLY: limits.margin + (0 if tight else ring),
         Kind.PAD: limits.margin + (0 if tight else ring),
         Kind.STRIP: limits.margin + (0 if tight else ring),
-        Kind.GROUND: limits.margin,
+        Kind.GROUND: max(limits.margin, limits.hole_edge - (limits.land - limits.drill) // 2),
         Kind.BODY: limits.margin,
         Kind.CUTOUT: limits.margin + max(ring, limits.margin),
         Kind.HOLE: max(limits.hole_edge, limits.margin, limits.margin + limits.hole + ring),

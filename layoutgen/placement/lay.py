@@ -35,7 +35,7 @@ from layoutgen.units import to_nm
 __all__ = ["Layer"]
 
 _RF_BEND_WEIGHT = 10.0  # a fold in a stub must save ten times what one in a feed must
-_SLICES = 8  # boxes that stand for a radial stub's sector
+_SLICES = 24  # boxes that stand for a radial stub's sector
 
 
 @dataclass(slots=True)
@@ -223,9 +223,33 @@ class Layer:
         for other, heading in hub.canonical_headings():
             is_side = heading in (90.0, 270.0)
             crosses = not is_side if turn is None else is_side
-            if other != end and crosses and other.element in widths:
+            if other == end or not crosses:
+                continue
+            if other.element in widths:
                 across.append(widths[other.element] // 2)
-        return self.kit.beside(across)
+            elif other.kind is EndKind.PAD and turn is None:
+                across.append(min(strip_width(self.kit.model, hub.net), self.kit.across(other)) // 2)
+        offset = self.kit.beside(across)
+        if turn != 0.0:
+            return offset
+        beside = self._side_parts(hub, end)
+        return max(offset, beside + self._courtyard_beyond(end)) if beside else offset
+
+    def _side_parts(self, hub: Hub, end: End) -> int:
+        """Return how far the parts beside a junction reach along its straight path [nm], 0 without any."""
+        sides = [arm.end for arm in hub.arms if arm.turn is None and arm.end != end]
+        return max((self._breadth(side) for side in sides if side.kind is EndKind.PAD), default=0)
+
+    def _breadth(self, end: End) -> int:
+        """Return how far a part reaches to either side of the pad by which it leaves a junction [nm]."""
+        body = self.kit.model.bodies[end.element]
+        low, high = self.kit.span(body, body.land_at(end), 90.0)
+        return max(-low, high)
+
+    def _courtyard_beyond(self, end: End) -> int:
+        """Return how far a part's courtyard reaches beyond the pad at one of its ends [nm]."""
+        body = self.kit.model.bodies[end.element]
+        return beyond(body, body.land_at(end))
 
     # -- parts ---------------------------------------------------------------------------------------
 
@@ -306,7 +330,7 @@ class Layer:
         outer, inner = world(pose, land.outer), world(pose, land.inner)
         growth.use(hub.net, outer.heading + 180.0)
         if hub.cluster is not None:
-            self._junction_beyond(growth, hub, land, outer)
+            self._junction_beyond(growth, hub, (body, land), outer)
         elif hub.bank:
             self.banks.lay_beyond(growth, hub, body, land, outer)
         elif len(hub.arms) == 1 and hub.arms[0].end.kind in (EndKind.LINE, EndKind.COUPLED):
@@ -314,7 +338,7 @@ class Layer:
         elif len(hub.arms) == 1:
             self._pad_to(growth, hub, hub.arms[0].end, (body, land), outer)
         else:
-            self._junction_beyond(growth, hub, land, outer)
+            self._junction_beyond(growth, hub, (body, land), outer)
 
     def _pad_to(
         self, growth: Growth, hub: Hub, end: End, left: tuple[PartBody, BodyLand], outer: Pose
@@ -337,10 +361,16 @@ class Layer:
         """Return the distance of two pads' outer edges [nm] at which their parts' courtyards touch."""
         return max(beyond(*left) + beyond(*right), self.kit.model.limits.gap)
 
-    def _junction_beyond(self, growth: Growth, hub: Hub, land: BodyLand, outer: Pose) -> None:
+    def _junction_beyond(
+        self, growth: Growth, hub: Hub, left: tuple[PartBody, BodyLand], outer: Pose
+    ) -> None:
         """Put a junction's node just beyond a pad and leave its arms, or its cluster, pending."""
+        body, land = left
         sides = [*(arm.end for arm in hub.arms if arm.turn is None), *hub.inner]
         half = max((self.kit.across(end) // 2 for end in sides), default=0)
+        parts = max((self._breadth(end) for end in sides if end.kind is EndKind.PAD), default=0)
+        if parts:
+            half = max(half, parts + beyond(body, land))
         node = ahead(outer, max(0, half - OVERLAP))
         if half:
             width = min(strip_width(self.kit.model, hub.net), land.across)
@@ -440,7 +470,8 @@ class Layer:
                     edges.append((edge, self.kit.inset(port)))
             inset = min((value for _, value in edges), default=0)
             at_edges = tuple(edge for edge, _ in edges)
-            growth.obstacles.append(Obstacle(box, Kind.LINE, name, at_edges=at_edges, inset=inset))
+            nets = frozenset(net for index, net in ends.items() if index // 2 == line)
+            growth.obstacles.append(Obstacle(box, Kind.LINE, name, at_edges=at_edges, inset=inset, nets=nets))
 
 
 def sector_slices(stub: SizedRadial) -> list[Box]:

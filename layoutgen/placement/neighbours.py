@@ -73,6 +73,8 @@ class Neighbours:
     def _nets(self, item: Obstacle) -> frozenset[str]:
         if item.kind == Kind.GROUND:
             return frozenset((GROUND,))
+        if item.nets is not None:
+            return item.nets
         return self.model.owner_nets[item.owner] if item.net is None else frozenset((item.net,))
 
     def _is_line(self, growth: Growth, a: Obstacle, b: Obstacle) -> bool:

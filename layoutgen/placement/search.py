@@ -268,8 +268,7 @@ class Search:
 
     def _shut_in(self, grown: State, growth: Growth) -> str | None:
         """Return what is wrong when something that leads to a port, or closes a loop, would have no way."""
-        closing = any(name in self.tour.loops.closers for name in growth.lines)
-        for pending in grown.pending if closing else growth.pending:
+        for pending in grown.pending:
             if self.ways.mate(pending, grown) is not None:
                 if not self._has_way(grown, pending, self._leaves_ports_open):
                     return f"{pending.end.element} would have no way to close its loop"

@@ -24,7 +24,7 @@ from layoutgen.placement.words import route_points
 
 __all__ = ["Way", "Ways"]
 
-_CROWDING = 3.0  # bends that a stub is worth on the side away from the feeds
+_CROWDING = 6.0  # bends that a stub is worth on the side away from the feeds
 _CLUSTER_BENDS = 3.0  # what a bend inside a loop counts for
 _LOPSIDED = 12.0  # bends that a symmetric drawing of a symmetric loop is worth
 _SLENDER = 2.0  # bends for each unit by which a loop is more slender than

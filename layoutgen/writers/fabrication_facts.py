@@ -151,18 +151,7 @@ def notes(result: Result) -> Iterator[str]:
         f"gaps at least {_mm_or(copper.min_gap)}, copper to the profile at least "
         f"{_mm_or(copper.min_edge_distance)}."
     )
-    yield (
-        "Widths and gaps are those of the finished copper, measured at its foot, where it meets the "
-        "laminate: the impedances are computed for a rectangular section, and the field is strongest at "
-        "the foot (common practice, no source)."
-    )
-    if copper.undercut:
-        yield (
-            f"The artwork is drawn wider than the finished copper by {_mm_or(copper.undercut)} on each edge, "
-            "for the undercut of the rule file. Do not compensate again."
-        )
-    else:
-        yield "The artwork has the finished widths. Compensate for your own etching, and for nothing else."
+    yield from _width_notes(copper.undercut)
     yield (
         "Do not add copper for balance, teardrops or marks inside the profile, do not round or shave copper, "
         "do not remove open stubs: they are part of the circuit."
@@ -179,6 +168,22 @@ def notes(result: Result) -> Iterator[str]:
         "Electrical test to the IPC-D-356A file. It names conductors: a line of the circuit joins the "
         "nets at its ends, and a stub shorted at its end joins its net to ground."
     )
+
+
+def _width_notes(undercut: float) -> Iterator[str]:
+    """Yield where widths are measured, and whether the artwork is compensated by an undercut [m]."""
+    yield (
+        "Widths and gaps are those of the finished copper, measured at its foot, where it meets the "
+        "laminate: the impedances are computed for a rectangular section, and the field is strongest at "
+        "the foot (common practice, no source)."
+    )
+    if undercut:
+        yield (
+            f"The artwork is drawn wider than the finished copper by {_mm_or(undercut)} on each edge, "
+            "for the undercut of the rule file. Do not compensate again."
+        )
+    else:
+        yield "The artwork has the finished widths. Compensate for your own etching, and for nothing else."
 
 
 def _holes_note(result: Result) -> str:

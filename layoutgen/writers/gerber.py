@@ -9,9 +9,9 @@ are named by conductor, since the two ends of a line are one piece of copper.
 from __future__ import annotations
 
 import hashlib
+import re
 import uuid
 from collections.abc import Callable, Iterator, Sequence
-from dataclasses import dataclass
 from functools import partial
 from importlib.metadata import version
 
@@ -23,7 +23,6 @@ from layoutgen.writers.cut_ins import arc_centre
 from layoutgen.writers.gerber_objects import Aperture, Contour, Flash, Marks, objects_of
 from layoutgen.writers.outlines import distinct_vertices, turned
 from layoutgen.writers.records import Job, Result
-from layoutgen.writers.scene import layers_of
 
 __all__ = ["GERBER_FUNCTIONS", "GERBER_WRITERS", "is_drawn", "software", "write_gerber"]
 
@@ -40,7 +39,8 @@ GERBER_FUNCTIONS = {
 
 _NEGATIVE = ("soldermask_top", "soldermask_bottom")
 _PEN_MM = "0.100000"
-_LARGEST = 2_147_000_000
+_TOO_LONG = re.compile(r"[XYIJ]-?(\d{11,})")
+"""Coordinates of more than four digits before the point."""
 _FIRST_CODE = 10
 _STRAIGHT_NM = 0.5
 """Arcs that bulge less than this [nm] are written as straight edges."""
@@ -52,21 +52,19 @@ def write_gerber(result: Result, job: Job, layer: str) -> bytes:
     """Return the Gerber file of one layer, a key of :data:`GERBER_FUNCTIONS`.
 
     Raises:
-        WrongInputError: A coordinate beyond 2.147 m.
+        WrongInputError: A coordinate beyond 9.999 m.
     """
-    shapes = layers_of(result)[layer]
+    shapes = result.artwork.on(layer)
     if layer == "profile":
         pen = Aperture(f"C,{_PEN_MM}", "Profile")
-        apertures, body = [pen], _outlines([shape.outline for shape in shapes])
+        apertures, body = [pen], list(_outlines([shape.outline for shape in shapes]))
     else:
-        objects = objects_of(result, shapes)
-        apertures = list(dict.fromkeys(item.aperture for item in objects if isinstance(item, Flash)))
-        body = _Drawing(apertures).lines(objects)
-    _refuse_large([shape.outline for shape in shapes])
-    lines = [*_header(result, job, layer), *_definitions(apertures), *body]
-    text = "\n".join(lines) + "\n"
-    digest = hashlib.md5(text.replace("\n", "").encode("ascii"), usedforsecurity=False).hexdigest()
-    return f"{text}%TF.MD5,{digest}*%\nM02*\n".encode("ascii")
+        drawn = objects_of(result, shapes)
+        apertures, body = drawn.apertures, _Drawing(drawn.apertures).lines(drawn.objects)
+    _refuse_large(body)
+    lines = [*_header(result, job, layer), *_definitions(apertures), *body, ""]
+    digest = hashlib.md5("".join(lines).encode("ascii"), usedforsecurity=False).hexdigest()
+    return ("\n".join(lines) + f"%TF.MD5,{digest}*%\nM02*\n").encode("ascii")
 
 
 GERBER_WRITERS: dict[str, Callable[[Result, Job], bytes]] = {
@@ -77,7 +75,7 @@ GERBER_WRITERS: dict[str, Callable[[Result, Job], bytes]] = {
 
 def is_drawn(result: Result, layer: str) -> bool:
     """Tell whether a layer is a file: masks always, since an empty one covers all; others when not empty."""
-    return layer in _NEGATIVE or bool(layers_of(result)[layer])
+    return layer in _NEGATIVE or bool(result.artwork.on(layer))
 
 
 def software() -> str:
@@ -132,37 +130,33 @@ def _macro(code: int, aperture: Aperture) -> str:
     return f"%AMOUTLINE{code}*\n4,1,{len(aperture.outline)},\n{vertices},\n0*%"
 
 
-@dataclass(slots=True)
-class _State:
-    """What the reader of the file holds while it draws: attributes, aperture, direction of edges."""
-
-    marks: Marks
-    function: str | None = None
-    aperture: int = 0
-
-
 class _Drawing:
     """Turns objects into commands, and says only what changes."""
 
     def __init__(self, apertures: Sequence[Aperture]) -> None:
         self.codes = {aperture: code for code, aperture in enumerate(apertures, start=_FIRST_CODE)}
-        self.state = _State(Marks(""))
+        self.marks = Marks("")
+        self.function: str | None = None
 
-    def lines(self, objects: Sequence[Flash | Contour]) -> Iterator[str]:
-        """Yield the commands of all objects, and leave no attribute behind."""
+    def lines(self, objects: Sequence[Flash | Contour]) -> list[str]:
+        """Return the commands of all objects, and leave no attribute behind."""
+        out: list[str] = []
+        aperture = None
         for item in objects:
-            if item.marks is not self.state.marks:
-                yield from self._attributes(item.marks)
-            if isinstance(item, Flash):
-                yield from self._flash(item)
-            else:
-                yield from self._region(item)
-        yield from self._attributes(Marks(""))
-        yield from self._function(None)
+            if item.marks is not self.marks:
+                out += self._attributes(item.marks)
+            if isinstance(item, Contour):
+                out += self._region(item)
+                continue
+            if item.aperture is not aperture:
+                aperture = item.aperture
+                out.append(f"D{self.codes[aperture]}*")
+            out.append(f"X{item.x}Y{item.y}D03*")
+        return [*out, *self._attributes(Marks("")), *self._function(None)]
 
     def _attributes(self, marks: Marks) -> Iterator[str]:
         """Yield what is new or no longer true of the objects that follow."""
-        old, self.state.marks = self.state.marks, marks
+        old, self.marks = self.marks, marks
         for name, before, now in (
             (".N", old.net, marks.net),
             (".P", _pin(old), _pin(marks)),
@@ -175,16 +169,9 @@ class _Drawing:
 
     def _function(self, function: str | None) -> Iterator[str]:
         """Yield the function of the regions that follow; flashes have that of their aperture."""
-        if function != self.state.function:
-            self.state.function = function
+        if function != self.function:
+            self.function = function
             yield f"%TA.AperFunction,{function}*%" if function else "%TD.AperFunction*%"
-
-    def _flash(self, flash: Flash) -> Iterator[str]:
-        code = self.codes[flash.aperture]
-        if code != self.state.aperture:
-            self.state.aperture = code
-            yield f"D{code}*"
-        yield f"X{flash.x}Y{flash.y}D03*"
 
     def _region(self, contour: Contour) -> Iterator[str]:
         yield from self._function(contour.marks.function)
@@ -228,9 +215,9 @@ def _from_start(start: tuple[int, int], end: tuple[int, int], bulge: float) -> s
     return f"I{round(x - start[0])}J{round(y - start[1])}"
 
 
-def _refuse_large(rings: Sequence[Ring]) -> None:
-    """Refuse coordinates that need more than four digits before the point, with room for arcs' centres."""
-    reach = max((abs(c) for ring in rings for point in ring.points for c in point), default=0)
-    if reach > _LARGEST:
-        fault = Fault(Location("artwork", 0), "", f"a coordinate of {reach / 1e9:.3f} m", "up to 2.147 m")
-        raise WrongInputError([fault])
+def _refuse_large(lines: Sequence[str]) -> None:
+    """Refuse coordinates that need more than four digits before the point."""
+    found = _TOO_LONG.search("".join(lines))
+    if found:
+        metres = f"a coordinate of {int(found.group(1)) / 1e9:.3f} m"
+        raise WrongInputError([Fault(Location("artwork", 0), "", metres, "up to 9.999 m")])

@@ -8,8 +8,9 @@ that nothing has to be taken away again.
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass
+from typing import NamedTuple
 
 from layoutgen.artwork import Shape
 from layoutgen.geometry import Ring
@@ -20,7 +21,7 @@ from layoutgen.writers.cut_ins import one_outline
 from layoutgen.writers.outlines import as_circle
 from layoutgen.writers.records import Result
 
-__all__ = ["Aperture", "Contour", "Flash", "Marks", "objects_of", "pad_of"]
+__all__ = ["Aperture", "Contour", "Drawn", "Flash", "Marks", "objects_of", "pad_of"]
 
 _FLASHED = ("pad", "land", "opening", "paste")
 _COPPER_FUNCTIONS = {"pad": "SMDPad,CuDef", "land": "ViaPad"}
@@ -46,8 +47,7 @@ class Aperture:
     outline: tuple[tuple[int, int], ...] = ()
 
 
-@dataclass(frozen=True, slots=True)
-class Flash:
+class Flash(NamedTuple):
     """An aperture at a point [nm]."""
 
     x: int
@@ -56,18 +56,25 @@ class Flash:
     marks: Marks
 
 
-@dataclass(frozen=True, slots=True)
-class Contour:
+class Contour(NamedTuple):
     """A closed outline [nm] filled as a region."""
 
     ring: Ring
     marks: Marks
 
 
-def objects_of(result: Result, shapes: Sequence[Shape]) -> list[Flash | Contour]:
+class Drawn(NamedTuple):
+    """What a layer is drawn with: objects in their order, apertures in that of their first use."""
+
+    objects: list[Flash | Contour]
+    apertures: list[Aperture]
+
+
+def objects_of(result: Result, shapes: Sequence[Shape]) -> Drawn:
     """Return the shapes of one layer as objects, in drawing order."""
-    conductors = copper_nets(result.circuit.file, tuple(result.circuit.nets))
-    return [_object(shape, _marks(result, shape, conductors)) for shape in shapes]
+    maker = _Maker(result)
+    objects = [maker.object(shape) for shape in shapes]
+    return Drawn(objects, list(maker.apertures.values()))
 
 
 def pad_of(result: Result, shape: Shape) -> PlacedPad | None:
@@ -81,43 +88,66 @@ def pad_of(result: Result, shape: Shape) -> PlacedPad | None:
     return min(part.pads, key=lambda pad: math.dist(middle, (pad.x, pad.y)), default=None)
 
 
-def _marks(result: Result, shape: Shape, conductors: Mapping[str, str]) -> Marks:
-    if not shape.layer.startswith("copper"):
+class _Maker:
+    """Makes objects out of shapes; equal marks and apertures are made once, since there may be many."""
+
+    def __init__(self, result: Result) -> None:
+        self.result = result
+        self.conductors = copper_nets(result.circuit.file, tuple(result.circuit.nets))
+        self.known: dict[tuple[str, str | None], Marks] = {}
+        self.apertures: dict[tuple[object, str], Aperture] = {}
+
+    def object(self, shape: Shape) -> Flash | Contour:
+        """Return a shape as a flash where an aperture is exactly like it, else as a contour."""
+        marks = self.known.get((shape.role, shape.net)) or self.marks(shape)
+        if shape.role in _FLASHED and not shape.holes:
+            circle = as_circle(shape.outline)
+            if circle:
+                aperture = self.apertures.get((circle[2], marks.function))
+                aperture = aperture or self.aperture(circle[2], marks.function)
+                return Flash(circle[0], circle[1], aperture, marks)
+            flash = self.flash(shape, marks)
+            if flash is not None:
+                return flash
+        return Contour(one_outline(shape.outline, shape.holes), marks)
+
+    def marks(self, shape: Shape) -> Marks:
+        """Return what is said of a shape; pads and what lies on other layers belong to parts."""
+        if shape.role == "pad" or not shape.layer.startswith("copper"):
+            return self._part_marks(shape)
+        function = _COPPER_FUNCTIONS.get(shape.role, _CONDUCTOR)
+        marks = Marks(function, copper_net(self.conductors, shape.net))
+        return self.known.setdefault((shape.role, shape.net), marks)
+
+    def _part_marks(self, shape: Shape) -> Marks:
         element = shape.origin.element
-        return Marks(_MATERIAL, part=element if element in result.placement.parts else None)
-    net = copper_net(conductors, shape.net)
-    pad = pad_of(result, shape) if shape.role == "pad" else None
-    if pad is None:
-        return Marks(_COPPER_FUNCTIONS.get(shape.role, _CONDUCTOR), net)
-    function = _HEATSINK if pad.ground == "vias" else _COPPER_FUNCTIONS["pad"]
-    return Marks(function, net, (shape.origin.element, pad.pin))
+        if not shape.layer.startswith("copper"):
+            return Marks(_MATERIAL, part=element if element in self.result.placement.parts else None)
+        net, pad = copper_net(self.conductors, shape.net), pad_of(self.result, shape)
+        if pad is None:
+            return Marks(_CONDUCTOR, net)
+        function = _HEATSINK if pad.ground == "vias" else _COPPER_FUNCTIONS["pad"]
+        return Marks(function, net, (element, pad.pin))
 
+    def aperture(self, radius: int, function: str) -> Aperture:
+        """Return the round aperture of a radius [nm]."""
+        aperture = Aperture(f"C,{mm(2 * radius)}", function)
+        return self.apertures.setdefault((radius, function), aperture)
 
-def _object(shape: Shape, marks: Marks) -> Flash | Contour:
-    if shape.role in _FLASHED and not shape.holes:
-        flash = _flash(shape.outline, marks, shape.role == "pad")
-        if flash is not None:
-            return flash
-    return Contour(one_outline(shape.outline, shape.holes), marks)
-
-
-def _flash(ring: Ring, marks: Marks, macro: bool) -> Flash | None:
-    """Return an outline as a flash; None when no aperture is exactly like it, or none but a macro."""
-    circle = as_circle(ring)
-    if circle:
-        x, y, radius = circle
-        return Flash(x, y, Aperture(f"C,{mm(2 * radius)}", marks.function), marks)
-    if not ring.is_straight:
-        return None
-    xs, ys = [x for x, _ in ring.points], [y for _, y in ring.points]
-    x0, x1, y0, y1 = min(xs), max(xs), min(ys), max(ys)
-    box = set(ring.points) == {(x0, y0), (x1, y0), (x1, y1), (x0, y1)} and len(ring.points) == 4
-    if box and (x1 - x0) % 2 == 0 and (y1 - y0) % 2 == 0:
-        aperture = Aperture(f"R,{mm(x1 - x0)}X{mm(y1 - y0)}", marks.function)
-    elif macro:
+    def flash(self, shape: Shape, marks: Marks) -> Flash | None:
+        """Return a straight outline as a flash: of a box on the grid, or of a pad's own macro; else None."""
+        points = shape.outline.points
+        xs, ys = [x for x, _ in points], [y for _, y in points]
+        x0, x1, y0, y1 = min(xs), max(xs), min(ys), max(ys)
         x, y = (x0 + x1) // 2, (y0 + y1) // 2
-        outline = tuple((px - x, py - y) for px, py in ring.points)
-        aperture = Aperture("", marks.function, outline)
-    else:
-        return None
-    return Flash((x0 + x1) // 2, (y0 + y1) // 2, aperture, marks)
+        if not shape.outline.is_straight:
+            return None
+        box = len(points) == 4 and set(points) == {(x0, y0), (x1, y0), (x1, y1), (x0, y1)}
+        if box and (x1 - x0) % 2 == 0 and (y1 - y0) % 2 == 0:
+            aperture = Aperture(f"R,{mm(x1 - x0)}X{mm(y1 - y0)}", marks.function)
+        elif shape.role == "pad":
+            aperture = Aperture("", marks.function, tuple((px - x, py - y) for px, py in points))
+        else:
+            return None
+        key = (aperture.template or aperture.outline, marks.function)
+        return Flash(x, y, self.apertures.setdefault(key, aperture), marks)

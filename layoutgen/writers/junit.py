@@ -88,4 +88,7 @@ def _text(text: str) -> str:
 
 def _printable(text: str) -> str:
     """Return text without the characters that XML forbids."""
-    return "".join(c if c in "\t\n" or (c >= " " and not "\ud800" <= c <= "\udfff" and c not in "\ufffe\uffff") else "?" for c in text)
+    return "".join(
+        c if c in "\t\n" or (c >= " " and not "\ud800" <= c <= "\udfff" and c not in "\ufffe\uffff") else "?"
+        for c in text
+    )

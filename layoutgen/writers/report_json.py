@@ -8,7 +8,7 @@ from __future__ import annotations
 
 import hashlib
 import math
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 
 import numpy as np
 import numpy.typing as npt
@@ -163,9 +163,9 @@ def _strips(result: Result) -> list[Entry]:
 
 
 def _part(result: Result, part: PlacedPart) -> Entry:
-    """Return a part, with ``nets`` for one with two pads and ``pins`` for one with a pin map."""
+    """Return a part: ``nets`` is a list for one with two pads, a pin map (also as ``pins``) for others."""
     given = result.circuit.file.parts[part.name]
-    ends: Entry = {"nets": list(given.nets)} if given.nets else {"pins": dict(given.pins or {})}
+    ends: Entry = {"nets": list(given.nets)} if given.nets else _pin_map(given.pins)
     return {
         "name": part.name,
         "x_mm": mm(part.x),
@@ -174,6 +174,10 @@ def _part(result: Result, part: PlacedPart) -> Entry:
         **ends,
         "pads": [_pad(pad) for pad in part.pads],
     }
+
+
+def _pin_map(pins: Mapping[str, str] | None) -> Entry:
+    return {"nets": dict(pins or {}), "pins": dict(pins or {})}
 
 
 def _pad(pad: PlacedPad) -> Entry:

@@ -2,19 +2,25 @@
 
 from __future__ import annotations
 
+import functools
 import itertools
+import math
 import random
 
 import numpy as np
 import pytest
 import shapely
 
-from layoutgen.checks import Finding
+from layoutgen.checks import Finding, check
+from layoutgen.checks.board import Board
 from layoutgen.checks.drawn import board_of
+from layoutgen.checks.drills import near_drills
 from layoutgen.checks.facing import edges_of, facing
+from layoutgen.checks.near import near_nets
 from tests.checks.boards import Sheet, box, polygon
+from tests.seeded_faults.harness import QUICK, drawn
 
-SEEDS = range(40)
+SEEDS = range(200)
 NETS = ("a", "b", "v")
 ELEMENTS = {"a": "la", "b": "lb", "v": "lv"}
 
@@ -42,6 +48,18 @@ def random_sheet(seed: int) -> Sheet:
     return sheet
 
 
+@functools.cache
+def judged(seed: int) -> tuple[Board, tuple[Finding, ...]]:
+    """Return a random board and its findings, notes left out."""
+    artwork = random_sheet(seed).artwork()
+    return board_of(artwork), tuple(f for f in check(artwork).findings if f.severity != "note")
+
+
+def found(seed: int, rule: str) -> list[Finding]:
+    """Return the findings of one rule on a random board."""
+    return [finding for finding in judged(seed)[1] if finding.rule == rule]
+
+
 def pairs(findings: list[Finding]) -> dict[frozenset[str], float]:
     """Return the measured values by pair of items; slits within one piece or one net left out."""
     return {
@@ -54,44 +72,41 @@ def pairs(findings: list[Finding]) -> dict[frozenset[str], float]:
 @pytest.mark.parametrize("seed", SEEDS)
 def test_gaps(seed: int) -> None:
     """Catches a pair of nets the tree search misses or invents, and a distance that is not the least."""
-    sheet = random_sheet(seed)
-    board = board_of(sheet.artwork())
+    board, _ = judged(seed)
     expected: dict[frozenset[str], float] = {}
     for p, q in itertools.combinations(board.top.pieces, 2):
         gap = p.polygon.distance(q.polygon) / 1e6
         if p.node != q.node and 0.0 < gap < 0.4 - 1e-5:
             key = frozenset((p.item, q.item))
             expected[key] = min(gap, expected.get(key, 1.0))
-    found = pairs(sheet.found("copper.min_gap"))
-    assert found.keys() == expected.keys()
-    assert all(found[key] == pytest.approx(expected[key], abs=1e-6) for key in expected)
+    measured = pairs(found(seed, "copper.min_gap"))
+    assert measured.keys() == expected.keys()
+    assert all(measured[key] == pytest.approx(expected[key], abs=1e-6) for key in expected)
 
 
 @pytest.mark.parametrize("seed", SEEDS)
 def test_hole_distances(seed: int) -> None:
     """Catches a pair of holes, or of hole and copper, that the search misses or invents."""
-    sheet = random_sheet(seed)
-    board = board_of(sheet.artwork())
+    board, _ = judged(seed)
     webs: dict[frozenset[str], float] = {}
     for a, b in itertools.combinations(board.drills, 2):
         web = shapely.Point(a.x, a.y).distance(shapely.Point(b.x, b.y)) - (a.diameter + b.diameter) / 2
         if web < 0.5e6 - 1:
             webs[frozenset((a.item, b.item))] = web / 1e6
-    assert pairs(sheet.found("holes.min_web")) == pytest.approx(webs, abs=1e-6)
+    assert pairs(found(seed, "holes.min_web")) == pytest.approx(webs, abs=1e-6)
     copper: dict[frozenset[str], float] = {}
     for drill, piece in itertools.product(board.drills, board.top.pieces):
         gap = (shapely.Point(drill.x, drill.y).distance(piece.polygon) - drill.diameter / 2) / 1e6
         foreign = not drill.plated or (gap > 0.0 and piece.node != drill.node)
         if foreign and gap < 0.3 - 1e-5:
             copper[frozenset((drill.item, piece.item))] = max(gap, 0.0)
-    assert pairs(sheet.found("holes.min_copper_distance")) == pytest.approx(copper, abs=2e-5)
+    assert pairs(found(seed, "holes.min_copper_distance")) == pytest.approx(copper, abs=2e-5)
 
 
 @pytest.mark.parametrize("seed", SEEDS)
 def test_edge_distances(seed: int) -> None:
     """Catches copper or a hole near the profile that the search misses or invents."""
-    sheet = random_sheet(seed)
-    board = board_of(sheet.artwork())
+    board, _ = judged(seed)
     assert board.outline is not None
     rim = board.outline.boundary
     copper = {
@@ -99,13 +114,39 @@ def test_edge_distances(seed: int) -> None:
         for p in board.top.pieces
         if p.polygon.distance(rim) < 0.5e6 - 10 or not board.outline.covers(p.polygon)
     }
-    assert pairs(sheet.found("copper.min_edge_distance")).keys() == copper.keys()
+    assert pairs(found(seed, "copper.min_edge_distance")).keys() == copper.keys()
     holes = {
         frozenset((d.item, "board")): (shapely.Point(d.x, d.y).distance(rim) - d.diameter / 2) / 1e6
         for d in board.drills
     }
     near = {key: value for key, value in holes.items() if value < 0.5 - 1e-5}
-    assert pairs(sheet.found("holes.min_edge_distance")) == pytest.approx(near, abs=1e-6)
+    assert pairs(found(seed, "holes.min_edge_distance")) == pytest.approx(near, abs=1e-6)
+
+
+@pytest.mark.parametrize("stem", QUICK)
+def test_gaps_of_the_examples(stem: str) -> None:
+    """Catches a pair of nets or holes of an example that the searches miss or invent."""
+    artwork = drawn(stem)
+    board = board_of(artwork)
+    limit, web = 1.1e6, 0.8e6
+    expected: dict[tuple[int, int], float] = {}
+    for i, p in enumerate(board.top.pieces):
+        apart = shapely.distance(p.polygon, board.top.polygons)
+        for j in np.flatnonzero((apart > 0.0) & (apart < limit - 10.0)).tolist():
+            if i < j and board.top.nodes[i] != board.top.nodes[j]:
+                expected[i, j] = float(apart[j])
+    fast = {(pair.first, pair.second): pair.distance for pair in near_nets(board.top, limit)}
+    assert fast == pytest.approx(expected, abs=1e-3)
+    webs = {}
+    for a, b in itertools.combinations(board.drills, 2):
+        gap = math.hypot(a.x - b.x, a.y - b.y) - (a.diameter + b.diameter) / 2.0
+        if gap < web:
+            webs[a.item, b.item] = gap
+    near = near_drills(board, web)
+    found_webs = {
+        (n.first.item, n.second.item): n.pitch - (n.first.diameter + n.second.diameter) / 2 for n in near
+    }
+    assert found_webs == pytest.approx(webs, abs=1e-3)
 
 
 def blob(rng: random.Random) -> shapely.Polygon:

@@ -28,7 +28,9 @@ def document(version: str = "R2010", unit: str | None = "mm") -> Any:
 class Pen:
     """Draws on one layer, coordinates in millimetres whatever the drawing's unit is."""
 
-    def __init__(self, doc: Any, unit: str | None = "mm", layer: str = "copper_top", space: Any = None) -> None:
+    def __init__(
+        self, doc: Any, unit: str | None = "mm", layer: str = "copper_top", space: Any = None
+    ) -> None:
         self.doc, self.layer = doc, layer
         self.space = doc.modelspace() if space is None else space
         self.per = 1.0 / MM_PER[unit]

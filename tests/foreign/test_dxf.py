@@ -34,9 +34,11 @@ COMBINATIONS = [
 ]
 
 
-@pytest.mark.parametrize(("way", "version", "unit"), COMBINATIONS, ids=lambda v: getattr(v, "__name__", str(v)))
+@pytest.mark.parametrize(
+    ("way", "version", "unit"), COMBINATIONS, ids=lambda v: getattr(v, "__name__", str(v))
+)
 def test_one_outline_however_drawn(way: Way, version: str, unit: str | None, tmp_path: Path) -> None:
-    """Catches an entity, format, block or unit that reads to another polygon by more than half a micrometre."""
+    """Catches an entity, format, block or unit that reads to a polygon 0.5 um off."""
     doc = document(version, unit)
     way(Pen(doc, unit))
     stated = unit is not None and version != "R12"
@@ -199,7 +201,9 @@ def test_profile_and_drills(tmp_path: Path) -> None:
     Pen(doc, layer="drill_nonplated").polyline(SLOT, SLOT_BULGES)
     artwork = read(doc, tmp_path)
     assert [p.area / 1e12 for p in artwork.profile] == [pytest.approx(200 - 16)]
-    assert [(h.x, h.y, h.diameter, h.plated) for h in artwork.holes] == [(3_000_000, 3_000_000, 300_000.0, True)]
+    assert [(h.x, h.y, h.diameter, h.plated) for h in artwork.holes] == [
+        (3_000_000, 3_000_000, 300_000.0, True)
+    ]
     assert [note.rule for note in artwork.notes] == ["foreign.slot"]
 
 

@@ -172,14 +172,14 @@ CIRCUITS: dict[str, Data] = {
         coupled={
             "first": {
                 "nets": ["i", "open", "open", "k"],
-                "even_impedance": "70.61 ohm",
-                "odd_impedance": "39.24 ohm",
+                "even_impedance": "63.54 ohm",
+                "odd_impedance": "41.36 ohm",
                 "angle": "90 deg",
             },
             "second": {
                 "nets": ["k", "open", "open", "o"],
-                "even_impedance": "70.61 ohm",
-                "odd_impedance": "39.24 ohm",
+                "even_impedance": "63.54 ohm",
+                "odd_impedance": "41.36 ohm",
                 "angle": "90 deg",
             },
         },

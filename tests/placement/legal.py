@@ -19,6 +19,9 @@ def copper(placement: Placement) -> dict[str, tuple[str, shapely.Polygon]]:
     for line in placement.lines.values():
         ring = stroke(line.path, line.width, [bend.mitre_percent for bend in line.bends])
         out[line.name] = (line.name, ring.polygon())
+    for pair in placement.pairs.values():
+        for side, path in zip("ab", pair.paths, strict=True):
+            out[f"{pair.name}.{side}"] = (pair.name, stroke(path, pair.width).polygon())
     for strip in placement.strips:
         out[strip.name] = (strip.net, stroke(strip.path, strip.width).polygon())
     for part in placement.parts.values():
@@ -37,6 +40,9 @@ def nets_of(placement: Placement, name: str) -> set[str]:
     if strip is not None:
         return {strip.net}
     part, pin = name.rsplit(".", 1)
+    if part in placement.pairs:
+        start = 2 * "ab".index(pin)
+        return set(placement.pairs[part].nets[start : start + 2]) - {"open"}
     return {next(pad.net for pad in placement.parts[part].pads if pad.pin == pin)}
 
 

@@ -178,6 +178,14 @@ class TestConductors:
         shorted = file.model_copy(update={"lines": {**file.lines, "left": line}})
         assert copper_nets(shorted, ("m", "k", SECOND, "gnd"))["m"] == "gnd"
 
+    def test_each_strip_of_a_pair_joins_its_own_ends(self) -> None:
+        """The first two nets are one strip, the last two the other; crossed, a short would be a coupler."""
+        file = coupled_board().circuit.file
+        pair = file.coupled["pair"].model_copy(update={"nets": ("p", "q", "r", "s")})
+        both = file.model_copy(update={"coupled": {"pair": pair}})
+        nets = copper_nets(both, ("p", "q", "r", "s", "m", "k", FIRST, SECOND))
+        assert (nets["p"], nets["q"], nets["r"], nets["s"]) == ("p", "p", "r", "r")
+
     def test_a_net_that_is_none(self) -> None:
         """Shapes without a net, or with a name of their own, keep it."""
         assert copper_net({"a": "b"}, None) is None

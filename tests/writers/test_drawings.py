@@ -121,9 +121,9 @@ class TestFabrication:
         assert rows["pair"][2:5] == (f"{pair.width / 1e6:.4f}", "+/-0.0200", f"{pair.gap / 1e6:.4f}")
         assert not any("Width tolerance" in text for text in open_points(result))
 
-    def test_open_points_are_named(self, driver: Result) -> None:
+    def test_open_points_are_named(self, handmade: Result) -> None:
         """What the circuit file does not say must not look as if it were settled."""
-        told = " ".join(open_points(driver))
+        told = " ".join(open_points(handmade))
         assert "Finish: not stated" in told
         assert "Width tolerance: not stated" in told
 

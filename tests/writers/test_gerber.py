@@ -186,10 +186,10 @@ class TestCoordinates:
             assert points <= drawn or middle in flashed
 
     def test_a_board_beyond_the_digits_is_refused(self, handmade: Result) -> None:
-        """Such coordinates would need a fifth digit before the point once arcs are added."""
-        far = Ring.box(0, 0, 2_200_000_000, 1_000_000)
+        """Such coordinates need a fifth digit before the point, which the format statement has not."""
+        far = Ring.box(0, 0, 12_000_000_000, 1_000_000)
         artwork = replace(handmade.artwork, shapes=(replace(handmade.artwork.shapes[0], outline=far),))
-        with pytest.raises(WrongInputError, match=r"2\.200 m"):
+        with pytest.raises(WrongInputError, match=r"12\.000 m"):
             write_gerber(replace(handmade, artwork=artwork), JOB, "copper_top")
 
 

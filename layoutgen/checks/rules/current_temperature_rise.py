@@ -61,7 +61,8 @@ def _sheets(board: Board, limit: float, thickness: float) -> Iterator[Outcome]:
         cut = place.cut
         if cut.current <= IPC2221_MAX_CURRENT and cut.length < needed(cut.current) * (1.0 - CUT_ERROR):
             rise = float(ipc2221_rise(cut.current, cut.length * 1e-9, thickness))
-            text = f"{place.item} warms by {rise:.1f} K at a cut of {mm(cut.length)} that {cut.current:.3f} A pass"
+            carried = f"a cut of {mm(cut.length)} that {cut.current:.3f} A pass"
+            text = f"{place.item} warms by {rise:.1f} K at {carried}"
             yield _hit(f"{text}, at most {limit:g} K", rise, limit, "K", place.at, (place.item,))
 
 

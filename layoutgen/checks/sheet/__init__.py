@@ -1,8 +1,8 @@
 """Direct current in drawn copper: the sheet's potential by finite elements, net by net.
 
-In: a :class:`~layoutgen.checks.board.Board` with a circuit behind it. Out: potentials, sheet currents, voltage
-drops (:func:`sheets_of`), and cuts across the current for the rules to judge. The ground's own copper is not
-solved.
+In: a :class:`~layoutgen.checks.board.Board` with a circuit behind it. Out: potentials, sheet currents,
+voltage drops (:func:`sheets_of`), and cuts across the current for the rules to judge. The ground's own copper
+is not solved.
 """
 
 from layoutgen.checks.sheet.cuts import Cut, cuts

@@ -1,8 +1,8 @@
 """Cuts across a current along lines of one potential: how much passes, over what length.
 
 A line of one potential is a cross-section: all current crosses it at a right angle. The mean density over it
-is what a neck, a tee, a taper or the rim of a pad carries, and does not depend on how fine the mesh is, as the
-largest density at an inner corner does.
+is what a neck, a tee, a taper or the rim of a pad carries, and does not depend on how fine the mesh is, as
+the largest density at an inner corner does.
 """
 
 from __future__ import annotations

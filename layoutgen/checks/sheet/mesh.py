@@ -7,6 +7,7 @@ holds them all, so that the triangles cover the polygon exactly.
 from __future__ import annotations
 
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 import numpy.typing as npt
@@ -87,7 +88,8 @@ def mesh_of(polygon: shapely.Polygon, fine: Floats | None = None, fineness: floa
         fine: Places (K, 3) where triangles are to be small: x, y, edge [nm].
         fineness: How many times smaller than usual the triangles are [-].
     """
-    simple = polygon.simplify(_SIMPLE_NM)
+    simplified = polygon.simplify(_SIMPLE_NM)
+    simple = simplified if isinstance(simplified, shapely.Polygon) else polygon
     rings = [_open_ring(ring) for ring in (simple.exterior, *simple.interiors)]
     sizes = _sizes(rings, simple.area, fine, fineness)
     points, edges = _outline(rings, sizes)
@@ -137,7 +139,7 @@ def _governing(sizes: _Sizes) -> _Sizes:
 def _spans(rings: list[Floats]) -> list[slice]:
     """Return each ring's place in the list of all vertices."""
     ends = np.cumsum([0, *map(len, rings)]).tolist()
-    return [slice(a, b) for a, b in zip(ends, ends[1:], strict=False)]
+    return [slice(a, b) for a, b in pairwise(ends)]
 
 
 def _is_left(ring: Floats) -> bool:
@@ -203,7 +205,9 @@ def _inner_points(polygon: shapely.Polygon, sizes: _Sizes) -> Floats:
         shifts = np.array(((-1, -1), (1, -1), (1, 1), (-1, 1))) * quarter
         middles = (middles[~small][:, None, :] + shifts[None]).reshape(-1, 2)
         cell /= 2.0
-        middles = middles[shapely.dwithin(polygon, shapely.points(middles), cell)] if len(middles) else middles
+        middles = (
+            middles[shapely.dwithin(polygon, shapely.points(middles), cell)] if len(middles) else middles
+        )
     found = np.concatenate(done)
     inside = shapely.contains_xy(polygon, found[:, 0], found[:, 1])
     found = found[inside]

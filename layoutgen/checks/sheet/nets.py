@@ -12,6 +12,7 @@ from typing import TYPE_CHECKING
 
 import numpy as np
 import shapely
+from shapely.geometry.base import BaseGeometry
 
 from layoutgen.checks.nodes import GROUND, ground_end, joined_nets
 from layoutgen.checks.planar import CHORD_NM, array_of, parts
@@ -40,7 +41,7 @@ class Terminal:
     """A place where current enters copper (negative: leaves): element, region [nm], current [A]."""
 
     item: str
-    region: shapely.Geometry
+    region: BaseGeometry
     current: float
 
 
@@ -49,8 +50,7 @@ class NetSheet:
     """One piece of copper with its flow: the first of its nets, its terminals, currents through it.
 
     ``drop`` [V] is the largest difference of potential between two terminals (mean over each), ``power`` [W]
-    the heat in the copper, ``density`` (M,) [A/m] the sheet current density in each triangle of ``flow``;
-    None where sheet resistance is not known.
+    the heat in the copper; ``flow.density`` (M,) is the sheet current density in each triangle [A/nm].
     """
 
     net: str
@@ -74,7 +74,7 @@ class Sheets:
 
 
 def sheets_of(board: Board) -> Sheets:
-    """Return the flow in every piece of copper off gnd that carries direct current; none without a circuit."""
+    """Return the flow in every piece of copper off gnd that carries current; none without a circuit."""
     if board.artwork is None or board.thickness is None:
         return Sheets((), ())
     found = _terminals(board, board.artwork)
@@ -185,7 +185,7 @@ def _solved(
     return NetSheet(node, terminals, flow, ohms * (max(levels) - min(levels)), ohms * flow.power)
 
 
-def _middle(region: shapely.Geometry) -> tuple[float, float]:
+def _middle(region: BaseGeometry) -> tuple[float, float]:
     """Return the middle of a region [nm]."""
     return region.centroid.x, region.centroid.y
 

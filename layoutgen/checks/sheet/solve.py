@@ -14,6 +14,7 @@ from typing import Any
 import numpy as np
 import numpy.typing as npt
 import shapely
+from shapely.geometry.base import BaseGeometry
 
 from layoutgen.checks.sheet.mesh import Mesh, mesh_of
 
@@ -37,7 +38,7 @@ class Flow:
         return float((self.density**2 * self.mesh.areas).sum())
 
 
-def loads_on(mesh: Mesh, region: shapely.Geometry, current: float) -> Floats:
+def loads_on(mesh: Mesh, region: BaseGeometry, current: float) -> Floats:
     """Return the current (N,) [A] into each point where a current enters evenly over a region [nm].
 
     The region is taken as the triangles whose middles lie in it; where it holds none, as the point nearest
@@ -109,8 +110,8 @@ def _gradients(mesh: Mesh, potential: Floats) -> Floats:
 
 def sheet_resistance(
     polygon: shapely.Polygon,
-    first: shapely.Geometry,
-    second: shapely.Geometry,
+    first: BaseGeometry,
+    second: BaseGeometry,
     reach: float = 1.0,
     fineness: float = 1.0,
 ) -> float:
@@ -129,7 +130,7 @@ def sheet_resistance(
     mesh = mesh_of(polygon, fineness=fineness)
     if mesh is None:
         raise ValueError("no mesh fits the outline")
-    points = shapely.points(mesh.points)
+    points = np.asarray(shapely.points(mesh.points), dtype=object)
     groups = [np.flatnonzero(shapely.dwithin(points, one, reach)) for one in (first, second)]
     if not all(len(group) for group in groups):
         raise ValueError("an electrode meets no point of the sheet")

@@ -71,7 +71,7 @@ def read_gerber(file: str, data: bytes, result: Result) -> Evidence:
         return
     yield count_check(file, _READER, "objects", len(objects), len(shapes))
     yield area_check(file, _READER, layer, _area(objects), model_area(shapes), arcs)
-    wanted = [item for item in objects_of(result, shapes) if isinstance(item, Flash)]
+    wanted = [item for item in objects_of(result, shapes).objects if isinstance(item, Flash)]
     yield _flashes(file, objects, wanted)
     if layer.startswith("copper") and len(wanted) < len(shapes):
         yield NotProved(file, "nets and functions of regions: the reader does not keep them")

@@ -42,6 +42,8 @@ def as_shapes(shape: Shape, geometry: shapely.geometry.base.BaseGeometry) -> lis
     """Return a geometry as shapes like another one, on whole nanometres."""
     out = []
     for part in shapely.get_parts(geometry):
+        if part.area < 1.0:
+            continue
         rings = [
             Ring(tuple((round(x), round(y)) for x, y in ring.coords[:-1]))
             for ring in (shapely.geometry.polygon.orient(part).exterior, *part.interiors)

@@ -1,0 +1,31 @@
+"""Every seeded fault is found at the right place by the right rule, and nothing on the unharmed boards."""
+
+from __future__ import annotations
+
+import os
+
+import pytest
+
+from layoutgen.checks import check
+from tests.seeded_faults.harness import KINDS, QUICK, choice, drawn, missed
+
+SEEDS = int(os.environ.get("SEEDED_FAULTS", "300"))
+
+
+@pytest.mark.parametrize("first", range(len(KINDS)), ids=lambda n: KINDS[n].__name__)
+def test_every_fault_is_found(first: int) -> None:
+    """Catches a kind of fault that goes unseen, is seen elsewhere, or by the wrong rule."""
+    assert [text for seed in range(first, SEEDS, len(KINDS)) if (text := missed(seed))] == []
+
+
+def test_at_least_25_kinds_and_every_example() -> None:
+    """Catches kinds or examples left out of the harness."""
+    assert len(KINDS) >= 25
+    assert {choice(seed)[1] for seed in range(SEEDS)} == set(KINDS)
+    assert {choice(seed)[0] for seed in range(SEEDS)} == set(QUICK)
+
+
+@pytest.mark.parametrize("stem", QUICK)
+def test_unharmed_boards_have_no_finding_of_error(stem: str) -> None:
+    """Catches rules that find faults where there are none: 100 % of the seeds would then mean nothing."""
+    assert [f.text for f in check(drawn(stem)).findings if f.severity == "error"] == []
