@@ -418,9 +418,9 @@ def _wrong(path: Path, found: str, allowed: str) -> WrongInputError:
 
 def _summary(result: Result) -> str:
     """Return one line: the board and how many findings there are."""
-    placement, artwork = result.placement, result.artwork
+    placement, artwork, file = result.placement, result.artwork, result.circuit.file
     return (
-        f"{placement.width / 1e6:g} x {placement.height / 1e6:g} mm, {_many(len(result.circuit.file.lines), 'line')}, "
+        f"{placement.width / 1e6:g} x {placement.height / 1e6:g} mm, {_many(len(file.lines), 'line')}, "
         f"{_many(len(placement.parts), 'part')}, {_many(len(artwork.vias), 'via')}; "
         f"{_counts(result.findings)}; {len(result.checks.not_checked)} not checked"
     )

@@ -25,7 +25,7 @@ from layoutgen.geometry import Point, lettering, lettering_size, pieces, printab
 from layoutgen.origin import Origin
 from layoutgen.placement import PlacedPart, PlacedPort, Placement
 
-__all__ = ["NO_LEGEND", "Legend", "draw_legend"]
+__all__ = ["Legend", "draw_legend"]
 
 _LEAST_UNITS = 6.0
 """Height of a capital over the pen [-] below which letters run together."""

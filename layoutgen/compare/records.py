@@ -21,8 +21,8 @@ class Change:
 
     ``kind``: added and removed areas or holes; pieces of copper or holes moved as a whole; holes resized;
     nets joined or parted. ``at`` [nm] is its place, ``net`` a conductor's name in the first artwork
-    (``new:N`` for one that only the second has, empty off copper), ``size`` [nm] how far the change reaches from the
-    other artwork's outline, or how far a thing was moved. ``shape`` is the area in question, None for nets.
+    (``new:N`` for one that only the second has, empty off copper), ``size`` [nm] how far the change reaches
+    from the other artwork's outline, or how far a thing was moved. ``shape`` is the area, None for nets.
     """
 
     kind: Kind

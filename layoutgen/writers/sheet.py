@@ -66,7 +66,7 @@ def document(kind: str, title: str, details: Sequence[str] = ()) -> Iterator[Boo
     """
     import matplotlib as mpl
 
-    defaults = {key: value for key, value in mpl.rcParamsDefault.items() if key != "backend"}
+    defaults: dict[Any, Any] = {k: value for k, value in mpl.rcParamsDefault.items() if k != "backend"}
     with mpl.rc_context({**defaults, "pdf.fonttype": 3}):
         yield Book(kind, title, details)
 
@@ -138,7 +138,7 @@ class Sheet:
         """Draw a line through points."""
         from matplotlib.lines import Line2D
 
-        style = (0, (dash * _POINTS_PER_MM, 0.6 * dash * _POINTS_PER_MM)) if dash else "-"
+        style: Any = (0, (dash * _POINTS_PER_MM, 0.6 * dash * _POINTS_PER_MM)) if dash else "-"
         xs, ys = zip(*points, strict=True)
         artist = Line2D(
             xs,
