@@ -268,13 +268,39 @@ def test_schema_is_of_both_files(capsys: pytest.CaptureFixture[str]) -> None:
 
 
 @pytest.mark.parametrize("name", ["board.gds", "board.oas", "board.DXF"])
-def test_other_artwork_is_refused_clearly(
+def test_broken_artwork_is_refused_clearly(
     name: str, tmp_path: Path, capsys: pytest.CaptureFixture[str]
 ) -> None:
-    """Read as a circuit file it would give a hundred faults of TOML."""
-    (tmp_path / name).write_bytes(b"\0\6\0\2")
-    assert status_of(["check", str(tmp_path / name)]) == 2
-    assert "not available yet" in capsys.readouterr().err
+    """Read as a circuit file it would give a hundred faults of TOML; without rules it cannot be judged."""
+    path = tmp_path / name
+    path.write_bytes(b"\0\6\0\2")
+    assert status_of(["check", str(path)]) == 2
+    assert "--rules" in capsys.readouterr().err
+    assert status_of(["check", str(path), "--rules", "two-layer-standard"]) == 2
+    printed = capsys.readouterr().err
+    assert name in printed
+    assert printed.count("\n") == 1
+
+
+def test_written_artwork_is_judged_and_compared(circuit: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    """The drawing's own files, read as anybody's, break no rule and equal each other."""
+    out = circuit.parent / "out"
+    assert status_of(["draw", str(circuit), "--out", str(out), "-q"]) == 0
+    dxf, gds = str(out / "circuit.dxf"), str(out / "circuit.gds")
+    assert status_of(["check", dxf, "--rules", "two-layer-standard"]) == 0
+    assert status_of(["compare", dxf, gds]) == 0
+    assert "equal" in capsys.readouterr().out
+
+
+def test_packages_are_written_and_proved(circuit: Path, capsys: pytest.CaptureFixture[str]) -> None:
+    """A receiver's folder that is missing, or a file that does not hold the model."""
+    out = circuit.parent / "out"
+    asked = ["draw", str(circuit), "--out", str(out), "--for", "test,assembly", "--prove"]
+    assert status_of(asked) == 0
+    assert " 0 failed" in capsys.readouterr().out
+    assert (out / "assembly" / "README.txt").is_file()
+    assert (out / "test" / "README.txt").is_file()
+    assert status_of(["draw", str(circuit), "--out", str(out), "--for", "nobody"]) == 2
 
 
 @pytest.mark.parametrize(

@@ -102,10 +102,22 @@ class _Room:
         """Return finished copper and its outlines, cut back from cut-outs and the profile."""
         whole = _valid(ring)
         limit = self.board if self.to_edge.intersection(nets) else self.inset
-        if ring.polygon().is_valid and limit.covers(whole) and self.cutouts.disjoint(whole):
+        off = joined([*pieces(self.cutouts), *self._other_strips(nets)])
+        if ring.polygon().is_valid and limit.covers(whole) and off.disjoint(whole):
             return whole, (ring,)
-        left = cut(overlap(whole, limit), self.cutouts)
+        left = cut(overlap(whole, limit), off)
         return left, tuple(rings_of(piece)[0] for piece in pieces(left))
+
+    def _other_strips(self, nets: Sequence[str]) -> Iterator[BaseGeometry]:
+        """Yield what copper that meets one strip of a coupled pair must keep off: the other one, and a gap.
+
+        A line wider than the strip it feeds is notched there, at its end, by less than that gap's length.
+        """
+        for pair in self.placement.pairs.values():
+            own = [set(nets).intersection(pair.nets[2 * i : 2 * i + 2]) for i in (0, 1)]
+            for i in (0, 1):
+                if own[1 - i] and not own[i]:
+                    yield grow(stroke(pair.paths[i], pair.width).polygon(), self.limits.min_gap)
 
     def drawn(self, rings: Sequence[Ring]) -> tuple[Ring, ...]:
         """Return the artwork of finished outlines: grown by the undercut, but not off the board."""

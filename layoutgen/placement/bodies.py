@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from layoutgen.circuit import End
@@ -191,20 +191,11 @@ def _row_of_vias(land: BodyLand, limits: Limits) -> tuple[list[tuple[int, int]],
 
 
 def _thermal_vias(land: BodyLand, limits: Limits) -> tuple[list[tuple[int, int]], list[Box]]:
-    """Return the grid of vias that fits under an exposed pad, lands inside it; a row beside a small one."""
+    """Return the grid of vias that fits under an exposed pad, lands inside it."""
     x0, y0, x1, y1 = land.box
     columns = _grid(x0, x1, limits)
     rows = _grid(y0, y1, limits)
-    if len(columns) * len(rows) < limits.ground_vias and (land.x or land.y):
-        return _row_of_vias(replace(land, heading=_outward(land)), limits)
     return [(x, y) for y in rows for x in columns], []
-
-
-def _outward(land: BodyLand) -> float:
-    """Return the quarter-turn heading [deg] from a footprint's origin towards a pad."""
-    if abs(land.x) >= abs(land.y):
-        return 0.0 if land.x > 0 else 180.0
-    return 90.0 if land.y > 0 else 270.0
 
 
 def _grid(low: int, high: int, limits: Limits) -> list[int]:

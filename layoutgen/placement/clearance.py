@@ -115,7 +115,7 @@ def edge_margins(limits: Limits, pour_gap: int, ground_ring: int, *, tight: bool
         Kind.SUPPLY: limits.margin + (0 if tight else ring),
         Kind.PAD: limits.margin + (0 if tight else ring),
         Kind.STRIP: limits.margin + (0 if tight else ring),
-        Kind.GROUND: max(limits.margin, limits.hole_edge - (limits.land - limits.drill) // 2),
+        Kind.GROUND: limits.margin,
         Kind.BODY: limits.margin,
         Kind.CUTOUT: limits.margin + max(ring, limits.margin),
         Kind.HOLE: max(limits.hole_edge, limits.margin, limits.margin + limits.hole + ring),
@@ -152,11 +152,22 @@ class Obstacles:
         if not new or not self.items:
             return []
         boxes, kinds, _ = _arrays(new)
-        need = table[kinds[:, None], self.kinds[None, :]]
-        near = _squared_distance(boxes, self.boxes) < need * need
-        touching = _overlaps(boxes, self.boxes) & (need == 0)
+        near_by = self._within(boxes, int(table.max()))
+        old, old_kinds = self.boxes[near_by], self.kinds[near_by]
+        need = table[kinds[:, None], old_kinds[None, :]]
+        near = _squared_distance(boxes, old) < need * need
+        touching = _overlaps(boxes, old) & (need == 0)
         rows, columns = np.nonzero(near | touching)
-        return [(new[i], self.items[j]) for i, j in zip(rows.tolist(), columns.tolist(), strict=True)]
+        found = near_by[columns]
+        return [(new[i], self.items[j]) for i, j in zip(rows.tolist(), found.tolist(), strict=True)]
+
+    def _within(self, boxes: Ints, reach: int) -> Ints:
+        """Return the numbers of the boxes that lie within a reach [nm] of the box around some."""
+        x0, y0 = boxes[:, 0].min() - reach, boxes[:, 1].min() - reach
+        x1, y1 = boxes[:, 2].max() + reach, boxes[:, 3].max() + reach
+        mine = self.boxes
+        inside = (mine[:, 0] < x1) & (mine[:, 2] > x0) & (mine[:, 1] < y1) & (mine[:, 3] > y0)
+        return np.nonzero(inside)[0]
 
 
 def _arrays(items: Sequence[Obstacle]) -> tuple[Ints, Ints, Ints]:

@@ -144,14 +144,44 @@ class ClusterSolver:
         """Return the solution of a like cluster as one of this cluster."""
         return replace(solution, roles=self._roles(solution.plan.drawing, solution.plan.outer))
 
-    def _key(self) -> object:
+    def _key(self) -> str:
         """Return what makes two clusters alike: pieces without names, what leaves, what legs must keep."""
+        if self._own_key is None:
+            self._own_key = self._written_key()
+        return self._own_key
+
+    _own_key: str | None = field(init=False, default=None)
+
+    def _written_key(self) -> str:
         pieces = [(p.a, p.b, p.is_line, p.turn, p.data, p.word) for p in self.scheme.pieces]
         ends = [[(e.kind, e.index, self.kit.across(e)) for e in found] for found in self.outer]
         rules = [
             self.router.rules(self.ends[k][0]) if p.is_line else 0 for k, p in enumerate(self.scheme.pieces)
         ]
         return repr((pieces, ends, rules, self.entry))
+
+    def entry_roles(self) -> list[Headings]:
+        """Return the ways in which the arriving end may stand at the entry, the best solution's first."""
+        found: dict[object, Headings] = {}
+        for solution in self.solutions():
+            role = solution.roles[self.entry]
+            found.setdefault(self.role_key(role), role)
+        return list(found.values())
+
+    def role_key(self, role: Headings) -> object:
+        """Return what two headings of the entry's ends have in common when they are alike for lengths."""
+        base = role[0][1]
+        turns = [(end, (heading - base) % 360.0) for end, heading in role]
+        mirror = [(end, -turn % 360.0) for end, turn in turns]
+        return min(tuple(sorted(turns)), tuple(sorted(mirror)))
+
+    def solve_again(self, plan: ClusterPlan) -> Solution | None:
+        """Return a plan with its lengths as :meth:`solve` does, remembered for clusters like this one."""
+        key = (self._key(), plan)
+        if key not in self.known:
+            found = self.solve(plan)
+            self.known[key] = [] if found is None else [found]
+        return next((self._adopted(solution) for solution in self.known[key]), None)
 
     def solve(self, plan: ClusterPlan) -> Solution | None:
         """Return a plan with its lengths, None where its loops cannot close."""

@@ -35,7 +35,7 @@ from layoutgen.units import to_nm
 __all__ = ["Layer"]
 
 _RF_BEND_WEIGHT = 10.0  # a fold in a stub must save ten times what one in a feed must
-_SLICES = 24  # boxes that stand for a radial stub's sector
+_SLICES = 8  # boxes that stand for a radial stub's sector
 
 
 @dataclass(slots=True)

@@ -16,8 +16,6 @@ __all__ = ["GROUND", "Limits", "Model", "strip_owner"]
 
 GROUND = "gnd"
 _DEFAULT_SPACING_HEIGHTS = 3.0  # used to place when the rule file is silent; common practice, no source
-_EDGE = 300_000  # [nm] from copper to the profile where no rule says it; common practice, no source
-_HOLE_EDGE = 500_000  # [nm] from a hole's wall to the profile; common practice, no source
 _DEFAULT_GROUND_VIAS = 2  # per ground pad; common practice, no source
 
 
@@ -51,7 +49,7 @@ class Limits:
         height = to_nm(file.substrate.height)
         copper, holes, vias = rules.copper, rules.holes, rules.vias
         gap = _nm(None if copper is None else copper.min_gap)
-        edge = _EDGE if copper.min_edge_distance is None else to_nm(copper.min_edge_distance)
+        edge = _nm(None if copper is None else copper.min_edge_distance)
         heights = _DEFAULT_SPACING_HEIGHTS
         if rules.spacing is not None and rules.spacing.min_line_heights is not None:
             heights = rules.spacing.min_line_heights
@@ -63,7 +61,7 @@ class Limits:
             gap=gap,
             edge=edge,
             hole=_nm(holes.min_copper_distance),
-            hole_edge=_HOLE_EDGE if holes.min_edge_distance is None else to_nm(holes.min_edge_distance),
+            hole_edge=_nm(holes.min_edge_distance),
             margin=max(edge, _nm(file.board.margin)),
             neck=_nm(None if copper is None else copper.min_width),
             expansion=_nm(None if rules.mask is None else rules.mask.expansion),

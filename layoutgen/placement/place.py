@@ -10,7 +10,6 @@ from layoutgen.errors import InfeasibleError
 from layoutgen.placement.budgets import LineLengths
 from layoutgen.placement.explain import explain_loop
 from layoutgen.placement.finish import finish, frame_of
-from layoutgen.placement.kit import PinnedError
 from layoutgen.placement.model import Model
 from layoutgen.placement.records import Choices, Placement
 from layoutgen.placement.search import Effort, Failure, Search, drawing_cost
@@ -93,18 +92,15 @@ def _attempt(ways: Ways, effort: Effort, *, sized_board: bool = True) -> tuple[S
     failure: Failure | None = None
     search = Search(ways, effort)
     starts = first_states(ways.model, ways.tour, ways.layer, search.margins, sized_board=sized_board)
-    try:
-        for number, start in enumerate(starts):
-            for state in _all_trees(search, replace(start, start=number)):
-                frame = frame_of(state)
-                cost = drawing_cost(frame.width * frame.height, state.bends, state.crossings)
-                if best is None or cost < best[0]:
-                    best = (cost, state)
-            failure = search.failure
-            if best is not None and ways.model.file.board.size is not None:
-                break
-    except PinnedError as error:  # what hangs on the first port cannot be laid at all
-        failure = Failure(error.element, error.what, 0)
+    for number, start in enumerate(starts):
+        for state in _all_trees(search, replace(start, start=number)):
+            frame = frame_of(state)
+            cost = drawing_cost(frame.width * frame.height, state.bends, state.crossings)
+            if best is None or cost < best[0]:
+                best = (cost, state)
+        failure = search.failure
+        if best is not None and ways.model.file.board.size is not None:
+            break
     return (None if best is None else best[1]), failure
 
 
@@ -138,8 +134,6 @@ def _infeasible(ways: Ways, failure: Failure | None) -> InfeasibleError:
                 frame = frame_of(roomy)
                 size = f"{frame.width / 1e6:.1f} mm x {frame.height / 1e6:.1f} mm"
                 return InfeasibleError(element, reason, f"a board of {size} would do")
-    if element in model.file.ports:
-        return InfeasibleError(element, reason, f"ask for another edge for {element}, or lead a line to it")
     return InfeasibleError(
         element,
         reason,

@@ -186,7 +186,7 @@ class Choice:
         return self.turn, self.side, self.word, self.edge, self.plan
 
     @property
-    def mirrored(self) -> tuple[object, ...]:
+    def mirrored(self) -> tuple[float, int, tuple[float, ...]]:
         """The shape of the mirror image, for lines and what hangs on them; edges follow from the words."""
         return -self.turn, -self.side, tuple(-turn for turn in self.word)
 

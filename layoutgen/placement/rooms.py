@@ -18,13 +18,14 @@ from layoutgen.placement.frame import Box, Pose, box_around, unit
 from layoutgen.placement.model import GROUND
 from layoutgen.placement.records import Choice
 from layoutgen.placement.routes import RouteChoice, Router
-from layoutgen.placement.state import Bounds, Growth, Pending, State
+from layoutgen.placement.state import EDGES, Bounds, Growth, Pending, State
 from layoutgen.placement.tour import Tour, end_key
 from layoutgen.placement.words import Route, least_legs, route_points
 
 __all__ = ["Rooms"]
 
 _LEAST_WEIGHT = 4  # elements beyond a free line from which on it makes room
+_HEAVY = 12  # elements
 _EXTRA = (0, 1_000_000, 3_000_000)  # more than needed [nm]
 _GRID = 20  # [nm]
 
@@ -143,10 +144,17 @@ class Rooms:
 
     def _box(self, end: End, heading: float) -> Box | None:
         """Return the box around what hangs on a line that arrives at the origin with a heading."""
+        edges = self.tour.edges.get((end.element, end.index), frozenset())
+        if len(edges) == 1 and heading != EDGES[next(iter(edges))] and self._is_heavy(end):
+            return None
         key = (self.tour.likeness.get(end_key(end), -1), heading)
         if key not in self._boxes:
             self._boxes[key] = self._measured(end, heading)
         return self._boxes[key]
+
+    def _is_heavy(self, end: End) -> bool:
+        """True for a branch so large that it is only laid towards the edge of its ports."""
+        return self.tour.weight.get((end.element, end.index), 0) > _HEAVY
 
     def _measured(self, end: End, heading: float) -> Box | None:
         far = (item for item in ends_of(self.router.model.file, end.element) if item[0].index != end.index)

@@ -17,7 +17,7 @@ from layoutgen.circuit import End, EndKind
 from layoutgen.circuit.queries import is_shunt, net_of
 from layoutgen.placement.clearance import Kind, clearance_table, edge_margins
 from layoutgen.placement.cluster import ClusterPlan
-from layoutgen.placement.frame import Pose
+from layoutgen.placement.frame import Pose, box_around
 from layoutgen.placement.kit import PinnedError
 from layoutgen.placement.model import Model
 from layoutgen.placement.neighbours import Neighbours
@@ -35,6 +35,9 @@ _DISORDER = 6.0  # bends that arms in the file order of their ports are worth
 _CROSSING_COST = 0.05  # for each element of an input that lies beside an output, or the other way round
 
 
+_NEARBY = 40_000_000  # [nm]: farther away nothing is looked at again
+_CROWD = 300  # boxes from which on fewer drawings are kept, so that time grows with the circuit only
+_CROWDED_BEAM = 2
 _LOOK_AHEAD = 60  # ways tried for what leads to a port before a candidate is taken as shut in
 
 
@@ -81,7 +84,10 @@ class Search:
             self.model.limits, self.model.default_gap, self.model.ground_ring, tight=self.effort.tight_edges
         )
         self.ways.rooms = Rooms(self.tour, self.ways.router, self._best, self._arrive)
-        self._spine = frozenset(self.model.circuit.spine)
+        self._spine = {name: i for i, name in enumerate(self.model.circuit.spine)}
+        file = self.model.file
+        names = [*file.lines, *file.coupled, *file.parts, *file.ports]
+        self._positions = {name: i for i, name in enumerate(names)}
 
     @property
     def model(self) -> Model:
@@ -94,7 +100,8 @@ class Search:
         return self.ways.tour
 
     margins: Mapping[Kind, int] = field(init=False)
-    _spine: frozenset[str] = field(init=False)
+    _spine: dict[str, int] = field(init=False)
+    _positions: dict[str, int] = field(init=False)
 
     def run(self, start: State) -> list[State]:
         """Return finished states, the best first; empty when there is no place (see ``failure``)."""
@@ -108,7 +115,8 @@ class Search:
             if not grown:
                 return []
             grown.sort(key=lambda state: state.cost)
-            states = grown[: self.effort.beam]
+            crowded = len(grown[0].obstacles.items) > _CROWD
+            states = grown[: min(self.effort.beam, _CROWDED_BEAM) if crowded else self.effort.beam]
             depth += 1
         return states
 
@@ -143,7 +151,8 @@ class Search:
         """Return the way of a shape chosen earlier whose legs are nearest to what they were."""
         if pending.cluster is not None and isinstance(chosen.plan, ClusterPlan):
             return self.ways.cluster_way(pending, state, chosen.plan, chosen.side)
-        ways = [way for way in self.ways.of(pending, state) if way.choice.shape == chosen.shape]
+        some = self.ways.of(pending, state, chosen.word)
+        ways = [way for way in some if way.choice.shape == chosen.shape]
         return min(ways, key=lambda way: _difference(way.choice, chosen), default=None)
 
     def _without(self, state: State, pending: Pending) -> State:
@@ -164,7 +173,7 @@ class Search:
         elif end.element in self.tour.loops.closers:
             group, order = 3, 1
         elif end.element in self._spine:
-            group, order = 0, self.model.circuit.spine.index(end.element)
+            group, order = 0, self._spine[end.element]
         elif end.kind is EndKind.PAD and is_shunt(file.parts[end.element]):
             group, order = 1, 0
         elif weight <= 1 and end.kind is not EndKind.PORT:
@@ -178,7 +187,7 @@ class Search:
     def _cluster_order(self, number: int) -> tuple[int, int]:
         """Return when a cluster is laid: as its first element on the straight path, else by its weight."""
         names = self.tour.loops.clusters[number].elements
-        on_path = [self.model.circuit.spine.index(name) for name in names if name in self._spine]
+        on_path = [self._spine[name] for name in names if name in self._spine]
         return (
             (0, min(on_path)) if on_path else (3, -self.tour.weight.get((self.tour.entries[number], -1), 0))
         )
@@ -189,9 +198,7 @@ class Search:
         return weight <= 2 and self.tour.leads_to_port.get((end.element, end.index), False)
 
     def _file_order(self, end: End) -> int:
-        file = self.model.file
-        names = [*file.lines, *file.coupled, *file.parts, *file.ports]
-        return names.index(end.element)
+        return self._positions[end.element]
 
     # -- extending -----------------------------------------------------------------------------------
 
@@ -254,7 +261,8 @@ class Search:
         """Return the mirror image of the way in which a twin was laid."""
         if pending.cluster is not None and isinstance(twin.plan, ClusterPlan):
             return self.ways.cluster_way(pending, state, twin.plan, -twin.side)
-        found = [way for way in self.ways.of(pending, state) if _answers(way.choice, twin)]
+        some = self.ways.of(pending, state, twin.mirrored[2])
+        found = [way for way in some if _answers(way.choice, twin)]
         return min(found, key=lambda way: _difference(way.choice, twin), default=None)
 
     def _grown(self, base: State, growth: Growth, way: Way, key: str) -> State:
@@ -268,13 +276,24 @@ class Search:
 
     def _shut_in(self, grown: State, growth: Growth) -> str | None:
         """Return what is wrong when something that leads to a port, or closes a loop, would have no way."""
-        for pending in grown.pending:
+        for pending in self._nearby(grown, growth):
             if self.ways.mate(pending, grown) is not None:
                 if not self._has_way(grown, pending, self._leaves_ports_open):
                     return f"{pending.end.element} would have no way to close its loop"
             elif self._ends_in_port(pending.end) and not self._has_way(grown, pending):
                 return f"{pending.end.element} would have no way to its edge"
         return None
+
+    def _nearby(self, grown: State, growth: Growth) -> Iterator[Pending]:
+        """Yield the pending things that something new may shut in: its own, and those not far from it."""
+        boxes = [item.box for item in growth.obstacles if not item.corridor]
+        if not boxes:
+            return
+        x0, y0, x1, y1 = box_around([corner for box in boxes for corner in (box[:2], box[2:])])
+        for pending in grown.pending:
+            near_x = x0 - _NEARBY <= pending.at.x <= x1 + _NEARBY
+            if near_x and y0 - _NEARBY <= pending.at.y <= y1 + _NEARBY:
+                yield pending
 
     def _has_way(
         self, state: State, pending: Pending, suits: Callable[[State, Growth], bool] | None = None
@@ -357,17 +376,17 @@ class Search:
         return stages.pop() if len(stages) == 1 else None
 
     def _disorder(self, growth: Growth) -> int:
-        """Return how many arms that leave side by side towards ports stand against the ports' file order."""
+        """Return how many arms side by side towards one edge stand against its ports' file order."""
         arms = [
-            (self.tour.first_port[key], pending.at, (pending.at.heading + pending.turns[0]) % 360.0)
+            (self.tour.first_port[key], self.tour.edges[key], pending.at, _out(pending))
             for pending in growth.pending
             if len(pending.turns) == 1
             for key in ((pending.end.element, pending.end.index),)
             if key in self.tour.first_port
         ]
         wrong = 0
-        for (first, a, out), (second, b, other) in itertools.combinations(arms, 2):
-            if out == other:
+        for (first, edges, a, out), (second, others, b, other) in itertools.combinations(arms, 2):
+            if out == other and edges == others and len(edges) <= 1:
                 step = b.y - a.y if out in (0.0, 180.0) else b.x - a.x
                 wrong += step * (second - first) < 0
         return wrong
@@ -389,6 +408,11 @@ class Search:
                 if (step > 0) != (order.index(name) > order.index(other)):
                     return f"port {name} would not come in file order with {other} on the {laid.edge} edge"
         return None
+
+
+def _out(pending: Pending) -> float:
+    """Return the heading [deg] with which a pending thing of one turn leaves."""
+    return (pending.at.heading + pending.turns[0]) % 360.0
 
 
 def _answers(choice: Choice, twin: Choice) -> bool:

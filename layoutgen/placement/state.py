@@ -285,11 +285,12 @@ def leg_boxes(points: tuple[Point, ...], width: int) -> list[Box]:
         ux, uy = (b[0] - a[0]) / length, (b[1] - a[1]) / length
         before, after = half if i else 0.0, half if i + 2 < len(points) else 0.0
         corners = [
-            (math.floor(p[0] + s * ux * e + t * uy * half), math.floor(p[1] + s * uy * e - t * ux * half))
+            (p[0] + s * ux * e + t * uy * half, p[1] + s * uy * e - t * ux * half)
             for p, s, e in ((a, -1.0, before), (b, 1.0, after))
             for t in (-1.0, 1.0)
         ]
-        boxes.append(box_around(corners))
+        xs, ys = [c[0] for c in corners], [c[1] for c in corners]
+        boxes.append((math.floor(min(xs)), math.floor(min(ys)), math.ceil(max(xs)), math.ceil(max(ys))))
     return boxes
 
 

@@ -19,8 +19,8 @@ from layoutgen.placement.records import Choice
 from layoutgen.placement.rooms import Rooms
 from layoutgen.placement.routes import RouteChoice, Router
 from layoutgen.placement.state import EDGES, Growth, Pending, State
-from layoutgen.placement.tour import Tour, end_key
-from layoutgen.placement.words import route_points
+from layoutgen.placement.tour import Headings, Tour, end_key
+from layoutgen.placement.words import Word, route_points
 
 __all__ = ["Way", "Ways"]
 
@@ -85,8 +85,11 @@ class Ways:
 
     # -- listing -------------------------------------------------------------------------------------
 
-    def of(self, pending: Pending, state: State) -> Iterator[Way]:
-        """Yield the ways open to a pending thing; ``state`` may hold it still, or not any more."""
+    def of(self, pending: Pending, state: State, word: Word | None = None) -> Iterator[Way]:
+        """Yield the ways open to a pending thing; ``state`` may hold it still, or not any more.
+
+        With a ``word``, only lines that take these turns are listed, and all else.
+        """
         if pending.cluster is not None:
             yield from self._cluster_ways(pending, state)
             return
@@ -97,7 +100,7 @@ class Ways:
             if heading in used or self._leads_away(pending, heading):
                 continue
             crowding = _CROWDING if self._joins_feeds(pending, heading) else 0.0
-            ways = self._ways(pending, turn, state)
+            ways = self._ways(pending, turn, state, word)
             if mate is not None:
                 ways = self._closing_ways(pending, mate, turn, state)
             for way in ways:
@@ -124,14 +127,14 @@ class Ways:
     def _net(self, end: End) -> str:
         return next(net for found, net in ends_of(self.model.file, end.element) if found.index == end.index)
 
-    def _ways(self, pending: Pending, turn: float, state: State) -> Iterator[Way]:
+    def _ways(self, pending: Pending, turn: float, state: State, word: Word | None) -> Iterator[Way]:
         end, layer, extent = pending.end, self.layer, state.extent
         if end.kind is EndKind.LINE and self.model.file.lines[end.element].shape == "radial":
             yield Way(
                 end.element, Choice(turn, 1), extent, 0.0, partial(layer.radial, pending=pending, turn=turn)
             )
         elif end.kind is EndKind.LINE:
-            yield from self._line_ways(pending, turn, state)
+            yield from self._line_ways(pending, turn, state, word)
         elif end.kind is EndKind.COUPLED:
             length, start = self.lengths.pair_length(end.element, state.roles), pending.at.turned(turn)
             for side in (1, -1):
@@ -150,7 +153,35 @@ class Ways:
                 lay_part = partial(layer.pad_arm, pending=pending, turn=turn, bank_side=side)
                 yield Way(end.element, Choice(turn, side), extent, 0.0, lay_part)
 
-    def _line_ways(self, pending: Pending, turn: float, state: State) -> Iterator[Way]:
+    def _line_ways(self, pending: Pending, turn: float, state: State, word: Word | None) -> Iterator[Way]:
+        """Yield the ways of a line, for each role that it may have at a cluster it leads to."""
+        entered = self._cluster_beyond(pending.end)
+        if entered is None:
+            yield from self._lines_of(pending, turn, state, word, None)
+            return
+        net = entered.nets[entered.entry]
+        for role in entered.entry_roles():
+            promising = replace(state, roles={**state.roles, net: role})
+            yield from self._lines_of(pending, turn, promising, word, (net, role))
+
+    def _cluster_beyond(self, end: End) -> ClusterSolver | None:
+        """Return the cluster that a line of given length enters: its length depends on how it is met."""
+        if self.model.sized.lines[end.element].free:
+            return None
+        for far, net in ends_of(self.model.file, end.element):
+            hub = self.tour.hubs.get(net)
+            if far != end and hub is not None and hub.cluster is not None and hub.arrival == far:
+                return self.clusters[hub.cluster]
+        return None
+
+    def _lines_of(
+        self,
+        pending: Pending,
+        turn: float,
+        state: State,
+        word: Word | None,
+        promise: tuple[str, Headings] | None,
+    ) -> Iterator[Way]:
         end, start = pending.end, pending.at.turned(turn)
         straight = self._goes_straight(end) and not self.fold_spine
         sides = (1, -1) if self._meets_bank(end) else (1,)
@@ -158,22 +189,33 @@ class Ways:
         spread = self.rooms.routes(pending, start, state) if self.rooms is not None else None
         choices = self.router.choices(end, start, state, straight=straight) if spread is None else spread
         for choice in choices:
+            if word is not None and choice.route.word != word:
+                continue
             last = (start.heading + sum(choice.route.word)) % 360.0
             if not self.router.leaves_as_hinted(end, start.heading, last):
                 continue
             extent = self._line_extent(end, start, choice, state)
             for side in sides:
                 lay = partial(
-                    self.layer.line,
-                    end=end,
-                    start=start,
-                    route=choice.route,
-                    edge=choice.edge,
-                    bank_side=side,
+                    self._lay_line, end=end, start=start, choice=choice, bank_side=side, promise=promise
                 )
-                made = Choice(turn, side, choice.route.word, choice.route.legs, choice.edge)
+                made = Choice(turn, side, choice.route.word, choice.route.legs, choice.edge, promise)
                 bends = weight * len(choice.route.word)
                 yield Way(end.element, made, extent, bends, lay, forecast=choice.forecast)
+
+    def _lay_line(
+        self,
+        growth: Growth,
+        end: End,
+        start: Pose,
+        choice: RouteChoice,
+        bank_side: int,
+        promise: tuple[str, Headings] | None,
+    ) -> None:
+        """Lay a line, and note the role at a cluster for which it has its length."""
+        if promise is not None:
+            growth.roles[promise[0]] = promise[1]
+        self.layer.line(growth, end, start, choice.route, choice.edge, bank_side)
 
     def _line_extent(
         self, end: End, start: Pose, choice: RouteChoice, state: State
@@ -235,6 +277,8 @@ class Ways:
         assert pending.cluster is not None  # asked for clusters only
         solver = self.clusters[pending.cluster]
         for solution in solver.solutions():
+            if not self._keeps_promise(solver, solution, state):
+                continue
             for mirror in (1, -1):
                 yield self._cluster_way(pending, state, solver, solution, mirror)
 
@@ -242,8 +286,17 @@ class Ways:
         """Return the way of a drawing chosen earlier, None where it no longer closes."""
         assert pending.cluster is not None  # asked for clusters only
         solver = self.clusters[pending.cluster]
-        solution = solver.solve(plan)
-        return None if solution is None else self._cluster_way(pending, state, solver, solution, mirror)
+        solution = solver.solve_again(plan)
+        if solution is None or not self._keeps_promise(solver, solution, state):
+            return None
+        return self._cluster_way(pending, state, solver, solution, mirror)
+
+    def _keeps_promise(self, solver: ClusterSolver, solution: Solution, state: State) -> bool:
+        """True unless the line that arrives was given its length for another role at the entry."""
+        promised = state.roles.get(solver.nets[solver.entry])
+        if promised is None:
+            return True
+        return solver.role_key(promised) == solver.role_key(solution.roles[solver.entry])
 
     def _cluster_way(
         self, pending: Pending, state: State, solver: ClusterSolver, solution: Solution, mirror: int

@@ -67,6 +67,7 @@ def test_every_line_is_drawn_whole(artwork: Artwork) -> None:
 
 
 def test_everything_is_named(artwork: Artwork) -> None:
-    """Would catch a part that nobody can find on the board."""
+    """Would catch a part that nobody can find on the board, and a text left out without a word."""
     printed = {shape.origin.element for shape in artwork.on("legend_top")}
-    assert {*artwork.placement.parts, *artwork.placement.ports, "board"} <= printed
+    told = {element for rule, element, _ in artwork.notes if rule == "legend.min_distance"}
+    assert {*artwork.placement.parts, *artwork.placement.ports, "board"} <= printed | told

@@ -11,7 +11,7 @@ import io
 import math
 import tempfile
 from collections import Counter
-from collections.abc import Iterable, Sequence
+from collections.abc import Sequence
 from dataclasses import dataclass, field
 from pathlib import Path
 from typing import Any
@@ -43,8 +43,11 @@ __all__ = ["read_dxf"]
 _MILLIMETRES = 4
 _GDAL = "GDAL"
 _NM = 1e6
-_GDAL_STEP_DEG = "0.2"
+_GDAL_STEP_DEG = 0.2
+"""Angle of the chords that GDAL is asked to make of arcs [deg]."""
 _SAME_NM = 0.5
+_ROUND_POINTS = 100
+"""Outlines of fewer points are no circles drawn as chords within 5 nm [-]."""
 
 Loop = npt.NDArray[np.float64]
 
@@ -60,8 +63,15 @@ class _Drawn:
 
     def turning(self, sense: int) -> Area:
         """Return the outlines that run counter-clockwise (1) or clockwise (-1)."""
-        loops = [loop for loop in self.loops if _signed_area(loop) * sense > 0]
-        return Area([shapely.Polygon(loop) for loop in loops])
+        area = Area()
+        for loop in self.loops:
+            if _signed_area(loop) * sense > 0:
+                circle = _round(loop)
+                if circle is None:
+                    area.polygons.append(shapely.Polygon(loop))
+                else:
+                    area.circles.append(circle)
+        return area
 
 
 def read_dxf(file: str, data: bytes, result: Result) -> Evidence:
@@ -122,12 +132,17 @@ def _outlines(
     outer = [turned(s.outline, 1) for s in plain if s.role != "cutout"]
     inner = [turned(hole, -1) for s in plain for hole in s.holes]
     inner += [turned(s.outline, -1) for s in plain if s.role == "cutout"]
-    arcs = 0.0 if chords else arc_length(plain) + _round_length(plain)
+    step = math.radians(_GDAL_STEP_DEG) if reader == _GDAL else 0.0
+    arcs = 0.0 if chords else arc_length(plain, step)
     tolerance = CHORD_TOLERANCE_NM if chords else FINE_NM
     for sense, rings, what in ((1, outer, "outlines"), (-1, inner, "holes")):
-        wanted = Area([shapely.Polygon(ring.chords(tolerance)) for ring in rings])
+        circles = [] if chords else [circle for ring in rings if (circle := as_circle(ring))]
+        wanted = Area(
+            [shapely.Polygon(ring.chords(tolerance)) for ring in rings if chords or not as_circle(ring)],
+            [(float(x), float(y), 2.0 * radius) for x, y, radius in circles],
+        )
         area = found.turning(sense)
-        yield count_check(file, reader, f"{name}: number of {what}", len(area.polygons), len(rings))
+        yield count_check(file, reader, f"{name}: number of {what}", len(area.pieces()), len(rings))
         yield area_check(file, reader, f"{name}, {what}", area, wanted, arcs)
     if reader != _GDAL:  # its chords begin with the arc's end that is there already
         yield _repeated(file, reader, name, found)
@@ -139,16 +154,21 @@ def _repeated(file: str, reader: str, name: str, found: _Drawn) -> Check:
     return count_check(file, reader, f"{name}: repeated vertices", count, 0)
 
 
-def _round_length(shapes: Iterable[Shape]) -> float:
-    """Return the length [mm] of round outlines that are no drills."""
-    circles = (as_circle(shape.outline) for shape in shapes if not shape.holes)
-    return math.fsum(2.0 * math.pi * circle[2] for circle in circles if circle) / _NM
-
-
 def _drill(shape: Shape) -> Circle | None:
     """Return a drill's circle: drills alone are circles in the file."""
     circle = as_circle(shape.outline) if shape.role == "drill" else None
     return None if circle is None else (float(circle[0]), float(circle[1]), 2.0 * circle[2])
+
+
+def _round(loop: Loop) -> Circle | None:
+    """Return an outline of many points on one circle as that circle, None for any other."""
+    if len(loop) < _ROUND_POINTS:
+        return None
+    middle = (loop.min(axis=0) + loop.max(axis=0)) / 2.0
+    reach = np.hypot(*(loop - middle).T)
+    if float(np.ptp(reach)) > _SAME_NM:
+        return None
+    return float(middle[0]), float(middle[1]), 2.0 * float(reach.mean())
 
 
 def _signed_area(loop: Loop) -> float:
@@ -205,7 +225,7 @@ def _by_gdal(data: bytes) -> dict[str, _Drawn]:
     """Return the contents of a file by layer, arcs and circles as GDAL's chords."""
     pyogrio = importlib.import_module("pyogrio")
     before = pyogrio.get_gdal_config_option("OGR_ARC_STEPSIZE")
-    pyogrio.set_gdal_config_options({"OGR_ARC_STEPSIZE": _GDAL_STEP_DEG})
+    pyogrio.set_gdal_config_options({"OGR_ARC_STEPSIZE": str(_GDAL_STEP_DEG)})
     try:
         with tempfile.TemporaryDirectory() as folder:
             path = Path(folder, "in.dxf")
