@@ -17,10 +17,11 @@ import numpy.typing as npt
 from layoutgen.placement.frame import Box
 from layoutgen.placement.model import Limits
 
-__all__ = ["Kind", "Obstacle", "Obstacles", "clearance_table", "edge_margins"]
+__all__ = ["Kind", "Obstacle", "Obstacles", "clearance_table", "edge_margins", "too_near"]
 
 Ints = npt.NDArray[np.int64]
 
+_MANY = 150  # boxes from which on those far away are left out first
 _ROUNDING = 2  # [nm]: edges of odd widths are rounded to the grid
 
 
@@ -58,6 +59,9 @@ class Obstacle:
     def reach(self, margins: Mapping[Kind, int]) -> tuple[int, int, int, int]:
         """Return the box with its margin to the profile [nm] on each side."""
         plain = margins[self.kind]
+        if not self.at_edges:
+            x0, y0, x1, y1 = self.box
+            return x0 - plain, y0 - plain, x1 + plain, y1 + plain
         west, south, east, north = (
             self.inset if edge in self.at_edges else plain for edge in ("west", "south", "east", "north")
         )
@@ -152,13 +156,14 @@ class Obstacles:
         if not new or not self.items:
             return []
         boxes, kinds, _ = _arrays(new)
-        near_by = self._within(boxes, int(table.max()))
-        old, old_kinds = self.boxes[near_by], self.kinds[near_by]
+        near_by = self._within(boxes, int(table.max())) if len(self.items) > _MANY else None
+        old = self.boxes if near_by is None else self.boxes[near_by]
+        old_kinds = self.kinds if near_by is None else self.kinds[near_by]
         need = table[kinds[:, None], old_kinds[None, :]]
         near = _squared_distance(boxes, old) < need * need
         touching = _overlaps(boxes, old) & (need == 0)
         rows, columns = np.nonzero(near | touching)
-        found = near_by[columns]
+        found = columns if near_by is None else near_by[columns]
         return [(new[i], self.items[j]) for i, j in zip(rows.tolist(), found.tolist(), strict=True)]
 
     def _within(self, boxes: Ints, reach: int) -> Ints:
@@ -168,6 +173,21 @@ class Obstacles:
         mine = self.boxes
         inside = (mine[:, 0] < x1) & (mine[:, 2] > x0) & (mine[:, 1] < y1) & (mine[:, 3] > y0)
         return np.nonzero(inside)[0]
+
+
+def too_near(left: Sequence[Obstacle], right: Sequence[Obstacle], table: Ints) -> bool:
+    """Return whether any of a few boxes is nearer to any of others than the table [nm] allows."""
+    for a in left:
+        for b in right:
+            need = int(table[a.kind, b.kind])
+            dx = max(a.box[0] - b.box[2], b.box[0] - a.box[2])
+            dy = max(a.box[1] - b.box[3], b.box[1] - a.box[3])
+            if need == 0:
+                if dx < 0 and dy < 0:
+                    return True
+            elif max(dx, 0) ** 2 + max(dy, 0) ** 2 < need * need:
+                return True
+    return False
 
 
 def _arrays(items: Sequence[Obstacle]) -> tuple[Ints, Ints, Ints]:

@@ -10,7 +10,7 @@ from layoutgen.circuit import EndKind
 from layoutgen.circuit.queries import ends_of
 from layoutgen.geometry import Point
 from layoutgen.placement.budgets import LineLengths
-from layoutgen.placement.clearance import Ints, Kind, Obstacle, Obstacles
+from layoutgen.placement.clearance import Ints, Kind, Obstacle, Obstacles, too_near
 from layoutgen.placement.model import GROUND, Model
 from layoutgen.placement.state import Growth, LaidLine, leg_boxes
 
@@ -55,7 +55,7 @@ class Neighbours:
             return Kind.GROUND in (a.kind, b.kind) and a.kind != b.kind
         left = self._trimmed(growth, self._softened(a, nets_b), nets_a)
         right = self._trimmed(growth, self._softened(b, nets_a), nets_b)
-        return bool(Obstacles.empty().plus(right).conflicts(left, self.table)) if left and right else False
+        return too_near(left, right, self.table)
 
     def _softened(self, item: Obstacle, nets: frozenset[str]) -> Obstacle:
         """Return a pad on a shared net as a body: a line that it ends may pass it as it may pass a part."""
@@ -64,17 +64,11 @@ class Neighbours:
 
     def _too_close(self, a: Obstacle, b: Obstacle) -> bool:
         """True when copper of different nets is nearer than may be etched: no allowance mends that."""
-        if Kind.BODY in (a.kind, b.kind) or self._nets(a) & self._nets(b) or self._feeds_pair(a, b):
+        if Kind.BODY in (a.kind, b.kind) or self._nets(a) & self._nets(b):
             return False
         dx = max(a.box[0] - b.box[2], b.box[0] - a.box[2], 0)
         dy = max(a.box[1] - b.box[3], b.box[1] - a.box[3], 0)
         return math.hypot(dx, dy) < self.model.limits.gap
-
-    def _feeds_pair(self, a: Obstacle, b: Obstacle) -> bool:
-        """True for a coupled pair and a line at one of its ends: the artwork notches the line if need be."""
-        pairs = self.model.sized.pairs
-        meet = self.model.owner_nets[a.owner] & self.model.owner_nets[b.owner]
-        return bool(meet) and (a.owner in pairs) != (b.owner in pairs)
 
     def _nets(self, item: Obstacle) -> frozenset[str]:
         if item.kind == Kind.GROUND:

@@ -101,6 +101,8 @@ class Search:
 
     margins: Mapping[Kind, int] = field(init=False)
     _spine: dict[str, int] = field(init=False)
+    _stages: dict[str, int | None] = field(init=False, default_factory=dict)
+    _witness: dict[tuple[End, Pose], Way] = field(init=False, default_factory=dict)
     _positions: dict[str, int] = field(init=False)
 
     def run(self, start: State) -> list[State]:
@@ -299,8 +301,9 @@ class Search:
         self, state: State, pending: Pending, suits: Callable[[State, Growth], bool] | None = None
     ) -> bool:
         """True when at least one way of laying a pending thing is clear, and suits."""
-        base = self._without(state, pending)
-        for way in islice(self.ways.of(pending, state), _LOOK_AHEAD):
+        base, spot = self._without(state, pending), (pending.end, pending.at)
+        before = [self._witness[spot]] if spot in self._witness else []
+        for way in itertools.chain(before, islice(self.ways.of(pending, state), _LOOK_AHEAD)):
             trial = Growth(state=base, bounds=state.bounds)
             try:
                 way.lay(trial)
@@ -309,6 +312,7 @@ class Search:
             if not trial.bounds.holds(trial.extent(self.margins)) or self._conflict(trial) is not None:
                 continue
             if suits is None or suits(base, trial):
+                self._witness[spot] = way
                 return True
         return False
 
@@ -372,8 +376,10 @@ class Search:
 
     def _stage(self, owner: str) -> int | None:
         """Return an element's stage; None for one that joins two, such as a transistor or feedback."""
-        stages = {self.tour.stages[net] for net in self.model.owner_nets.get(owner, ())}
-        return stages.pop() if len(stages) == 1 else None
+        if owner not in self._stages:
+            stages = {self.tour.stages[net] for net in self.model.owner_nets.get(owner, ())}
+            self._stages[owner] = stages.pop() if len(stages) == 1 else None
+        return self._stages[owner]
 
     def _disorder(self, growth: Growth) -> int:
         """Return how many arms side by side towards one edge stand against its ports' file order."""

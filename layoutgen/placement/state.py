@@ -277,21 +277,42 @@ class Growth:
 
 def leg_boxes(points: tuple[Point, ...], width: int) -> list[Box]:
     """Return a box [nm] for each leg of a line, corners of bends included (exact for quarter turns)."""
+    last = len(points) - 2
+    return [
+        _leg_box(points[i], points[i + 1], width, bend_before=i > 0, bend_after=i < last)
+        for i in range(len(points) - 1)
+    ]
+
+
+def _leg_box(a: Point, b: Point, width: int, *, bend_before: bool, bend_after: bool) -> Box:
+    """Return the box of one leg, half a width longer where it ends in a bend."""
     half = width / 2.0
-    boxes = []
-    for i in range(len(points) - 1):
-        a, b = points[i], points[i + 1]
-        length = math.dist(a, b) or 1.0
-        ux, uy = (b[0] - a[0]) / length, (b[1] - a[1]) / length
-        before, after = half if i else 0.0, half if i + 2 < len(points) else 0.0
-        corners = [
-            (p[0] + s * ux * e + t * uy * half, p[1] + s * uy * e - t * ux * half)
-            for p, s, e in ((a, -1.0, before), (b, 1.0, after))
-            for t in (-1.0, 1.0)
-        ]
-        xs, ys = [c[0] for c in corners], [c[1] for c in corners]
-        boxes.append((math.floor(min(xs)), math.floor(min(ys)), math.ceil(max(xs)), math.ceil(max(ys))))
-    return boxes
+    before, after = half if bend_before else 0.0, half if bend_after else 0.0
+    (ax, ay), (bx, by) = a, b
+    if ay == by:
+        x0, x1 = (ax - before, bx + after) if bx >= ax else (bx - after, ax + before)
+        y0, y1 = ay - half, ay + half
+    elif ax == bx:
+        y0, y1 = (ay - before, by + after) if by >= ay else (by - after, ay + before)
+        x0, x1 = ax - half, ax + half
+    else:
+        x0, y0, x1, y1 = _slanted_box(a, b, half, before, after)
+    return math.floor(x0), math.floor(y0), math.ceil(x1), math.ceil(y1)
+
+
+def _slanted_box(
+    a: Point, b: Point, half: float, before: float, after: float
+) -> tuple[float, float, float, float]:
+    """Return the box around a leg at an angle."""
+    length = math.dist(a, b)
+    ux, uy = (b[0] - a[0]) / length, (b[1] - a[1]) / length
+    corners = [
+        (p[0] + s * ux * e + t * uy * half, p[1] + s * uy * e - t * ux * half)
+        for p, s, e in ((a, -1.0, before), (b, 1.0, after))
+        for t in (-1.0, 1.0)
+    ]
+    xs, ys = [c[0] for c in corners], [c[1] for c in corners]
+    return min(xs), min(ys), max(xs), max(ys)
 
 
 def corridor_box(point: Point, heading: float, width: int) -> Box:

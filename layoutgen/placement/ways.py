@@ -104,8 +104,7 @@ class Ways:
             if mate is not None:
                 ways = self._closing_ways(pending, mate, turn, state)
             for way in ways:
-                choice = replace(way.choice, heading=pending.at.heading)
-                yield replace(way, choice=choice, bends=way.bends + crowding, crowding=crowding)
+                yield replace(way, bends=way.bends + crowding, crowding=crowding) if crowding else way
 
     def _joins_feeds(self, pending: Pending, heading: float) -> bool:
         """True when a stub or shunt part would leave to the side where the feeds go, and has a choice."""
@@ -128,10 +127,14 @@ class Ways:
         return next(net for found, net in ends_of(self.model.file, end.element) if found.index == end.index)
 
     def _ways(self, pending: Pending, turn: float, state: State, word: Word | None) -> Iterator[Way]:
-        end, layer, extent = pending.end, self.layer, state.extent
+        end, layer, extent, here = pending.end, self.layer, state.extent, pending.at.heading
         if end.kind is EndKind.LINE and self.model.file.lines[end.element].shape == "radial":
             yield Way(
-                end.element, Choice(turn, 1), extent, 0.0, partial(layer.radial, pending=pending, turn=turn)
+                end.element,
+                Choice(turn, 1, heading=here),
+                extent,
+                0.0,
+                partial(layer.radial, pending=pending, turn=turn),
             )
         elif end.kind is EndKind.LINE:
             yield from self._line_ways(pending, turn, state, word)
@@ -139,11 +142,11 @@ class Ways:
             length, start = self.lengths.pair_length(end.element, state.roles), pending.at.turned(turn)
             for side in (1, -1):
                 lay_pair = partial(layer.pair, end=end, start=start, side=side, length=length)
-                yield Way(end.element, Choice(turn, side), extent, 0.0, lay_pair)
+                yield Way(end.element, Choice(turn, side, heading=here), extent, 0.0, lay_pair)
         elif end.kind is EndKind.PORT:
             yield Way(
                 end.element,
-                Choice(turn, 1),
+                Choice(turn, 1, heading=here),
                 extent,
                 0.0,
                 partial(layer.ports.arm, pending=pending, turn=turn),
@@ -151,7 +154,7 @@ class Ways:
         else:
             for side in (1, -1) if self._meets_bank(end) else (1,):
                 lay_part = partial(layer.pad_arm, pending=pending, turn=turn, bank_side=side)
-                yield Way(end.element, Choice(turn, side), extent, 0.0, lay_part)
+                yield Way(end.element, Choice(turn, side, heading=here), extent, 0.0, lay_part)
 
     def _line_ways(self, pending: Pending, turn: float, state: State, word: Word | None) -> Iterator[Way]:
         """Yield the ways of a line, for each role that it may have at a cluster it leads to."""
@@ -199,7 +202,15 @@ class Ways:
                 lay = partial(
                     self._lay_line, end=end, start=start, choice=choice, bank_side=side, promise=promise
                 )
-                made = Choice(turn, side, choice.route.word, choice.route.legs, choice.edge, promise)
+                made = Choice(
+                    turn,
+                    side,
+                    choice.route.word,
+                    choice.route.legs,
+                    choice.edge,
+                    promise,
+                    pending.at.heading,
+                )
                 bends = weight * len(choice.route.word)
                 yield Way(end.element, made, extent, bends, lay, forecast=choice.forecast)
 
@@ -268,7 +279,7 @@ class Ways:
                 if not self.router.leaves_as_hinted(end, start.heading, target.heading):
                     continue
                 lay = partial(self.layer.closing, end=end, mate=mate, start=start, route=choice.route)
-                made = Choice(turn, 1, choice.route.word, choice.route.legs)
+                made = Choice(turn, 1, choice.route.word, choice.route.legs, heading=pending.at.heading)
                 extent = self._line_extent(end, start, choice, state)
                 yield Way(end.element, made, extent, weight * len(choice.route.word), lay)
 

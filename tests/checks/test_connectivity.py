@@ -70,6 +70,21 @@ def test_vias_join_the_layers() -> None:
     assert sheet.found("connectivity.open") == []
 
 
+@pytest.mark.parametrize(("cut", "faults"), [(0.0, 0), (0.01, 1)])
+def test_a_cut_in_a_ring(cut: float, faults: int) -> None:
+    """Catches a cut line passed because its halves hang together the other way round a ring."""
+    circuit = {"lines": {"l1": {"nets": ["a", "b"], "width": "1 mm", "length": "9 mm"}}}
+    sheet = Sheet(circuit=circuit)
+    sheet.copper(box(4, 4, 8, 5), "a", "line", "l1")
+    sheet.copper(box(8 + cut, 4, 12, 5), "a", "line", "l1")
+    sheet.copper(box(4, 4, 5, 12), "a", "line", "la")
+    sheet.copper(box(4, 11, 12, 12), "c", "line", "la")
+    sheet.copper(box(11, 4, 12, 12), "c", "strip", "strip-c")
+    found = [f for f in sheet.found("connectivity.open") if "cut through" in f.text]
+    assert [f.items for f in found] == [("l1",)] * faults
+    assert all(near(f, 8.005, 4.5, 0.51) for f in found)
+
+
 def test_unplated_hole_cuts_a_line() -> None:
     """Catches copper under an unplated hole taken as still there."""
     sheet = joined()

@@ -7,7 +7,7 @@ from __future__ import annotations
 
 import math
 import random
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from dataclasses import dataclass, replace
 from itertools import pairwise
 
@@ -31,6 +31,16 @@ class Seeded:
 
 
 Fault = Callable[[Artwork, random.Random], Seeded]
+
+
+def tries() -> Iterator[int]:
+    """Yield a number for each try to find a place.
+
+    Raises:
+        LookupError: after 200 of them: the board has no such place.
+    """
+    yield from range(200)
+    raise LookupError("the board has no place for this fault")
 
 
 def as_polygon(shape: Shape) -> shapely.Polygon:
@@ -88,6 +98,8 @@ def straight(artwork: Artwork, rng: random.Random) -> tuple[str, float, XY, XY]:
         for a, b in pairwise(line.path)
         if math.dist(a, b) > 3.0 * line.width + 2e6 and "gnd" not in line.nets
     ]
+    if not legs:
+        raise LookupError("no leg is long enough")
     for _ in range(200):
         name, width, a, b = rng.choice(legs)
         share, length = rng.uniform(0.3, 0.7), math.dist(a, b)
@@ -111,7 +123,7 @@ def gap_of(artwork: Artwork, name: str) -> float:
 def bridge(artwork: Artwork, rng: random.Random) -> Seeded:
     """A strip of 20 um from a line to the pour."""
     pour = pour_of(artwork)
-    while True:
+    for _ in tries():
         name, width, at, (ux, uy) = straight(artwork, rng)
         side, gap = rng.choice((1.0, -1.0)), gap_of(artwork, name)
         across = (-uy * side, ux * side)
@@ -176,7 +188,7 @@ def narrow_gap(artwork: Artwork, rng: random.Random) -> Seeded:
 def near_pour(artwork: Artwork, rng: random.Random) -> Seeded:
     """Pour drawn two micrometres nearer to a line than set."""
     lines = shapely.union_all([as_polygon(s) for s in artwork.shapes if s.role == "line"])
-    while True:
+    for _ in tries():
         name, width, at, (ux, uy) = straight(artwork, rng)
         gap = gap_of(artwork, name) - 2_000.0
         away = width / 2.0 + gap
@@ -199,7 +211,7 @@ def sliver(artwork: Artwork, rng: random.Random) -> Seeded:
 
 def slot(artwork: Artwork, rng: random.Random) -> Seeded:
     """A slot of 10 um in the plane under a line."""
-    while True:
+    for _ in tries():
         name, width, at, along = straight(artwork, rng)
         if artwork.placement.sized.lines[name].rf:
             break
@@ -238,7 +250,7 @@ def double_via(artwork: Artwork, rng: random.Random) -> Seeded:
 
 def stray_via(artwork: Artwork, rng: random.Random) -> Seeded:
     """A via moved into a line."""
-    while True:
+    for _ in tries():
         _, width, at, _ = straight(artwork, rng)
         if width > 300_000:
             break
@@ -251,7 +263,7 @@ def stray_via(artwork: Artwork, rng: random.Random) -> Seeded:
 def lost_fence(artwork: Artwork, rng: random.Random) -> Seeded:
     """A via that stands beside a line, and its two neighbours, left out."""
     rim = pour_of(artwork).boundary
-    while True:
+    for _ in tries():
         name, width, at, (ux, uy) = straight(artwork, rng)
         reach = rng.choice((1.0, -1.0)) * (width / 2.0 + gap_of(artwork, name))
         edge = (at[0] - uy * reach, at[1] + ux * reach)
@@ -338,7 +350,7 @@ def swapped_pair(artwork: Artwork, rng: random.Random) -> Seeded:
 def thin_feed(artwork: Artwork, rng: random.Random) -> Seeded:
     """A line that carries direct current narrowed to 30 um at one place."""
     currents = artwork.placement.sized.circuit.dc.currents
-    while True:
+    for _ in tries():
         name, width, at, (ux, uy) = straight(artwork, rng)
         if abs(currents.get(name, 0.0)) > 0.2:
             break

@@ -22,6 +22,7 @@ from tests.seeded_faults.faults import (
     pick_via,
     pour_of,
     straight,
+    tries,
     with_cut,
     with_shape,
 )
@@ -36,7 +37,7 @@ def limit(artwork: Artwork, key: str) -> float:
 def wide_line(artwork: Artwork, rng: random.Random) -> Seeded:
     """A line 3 % wider than sized, so nearer to the pour than set."""
     pour = pour_of(artwork)
-    while True:
+    for _ in tries():
         name, width, at, (ux, uy) = straight(artwork, rng)
         more = 0.015 * width
         reach = width / 2.0 + gap_of(artwork, name)
@@ -91,7 +92,7 @@ def thin_mask(artwork: Artwork, rng: random.Random) -> Seeded:
     """Two openings with a web of mask between them a micrometre too narrow."""
     web = limit(artwork, "mask.min_web") - 1_000.0
     openings = shapely.union_all([as_polygon(shape) for shape in artwork.on("soldermask_top")])
-    while True:
+    for _ in tries():
         x, y = (rng.uniform(0.1, 0.9) * side for side in (artwork.placement.width, artwork.placement.height))
         if not openings.intersects(shapely.box(x - 2e5, y - 2e5, x + 1.4e6, y + 7e5)):
             break
@@ -133,7 +134,7 @@ def slit(artwork: Artwork, rng: random.Random) -> Seeded:
     wide = limit(artwork, "copper.min_gap") - 1_000.0
     plane = shapely.union_all([as_polygon(s) for s in artwork.shapes if s.role == "plane"])
     holes = [shapely.Point(hole.x, hole.y).buffer(hole.diameter / 2.0) for hole in artwork.holes]
-    while True:
+    for _ in tries():
         x, y = (rng.uniform(0.1, 0.8) * side for side in (artwork.placement.width, artwork.placement.height))
         gash = shapely.box(x, y, x + 2e6, y + wide)
         if plane.contains(gash.buffer(2e5)) and not gash.intersects(shapely.union_all(holes)):
@@ -145,17 +146,15 @@ def slit(artwork: Artwork, rng: random.Random) -> Seeded:
 def whisker(artwork: Artwork, rng: random.Random) -> Seeded:
     """A sliver of copper left standing from the pour, thinner than can be etched."""
     rim = pour_of(artwork).boundary
-    name, width, at, (ux, uy) = straight(artwork, rng)
-    gap = gap_of(artwork, name)
-    for side in (1.0, -1.0):
+    thin = limit(artwork, "copper.min_width") - 1_000.0
+    for _ in tries():
+        name, width, at, (ux, uy) = straight(artwork, rng)
+        gap, side = gap_of(artwork, name), rng.choice((1.0, -1.0))
         edge = (at[0] - side * uy * (width / 2 + gap), at[1] + side * ux * (width / 2 + gap))
-        if rim.distance(shapely.Point(edge)) < 1_000.0:
-            break
-    else:
-        return whisker(artwork, rng)
+        if gap > 4.0 * thin and rim.distance(shapely.Point(edge)) < 1_000.0:
+            break  # shorter ones are corners, by the rule's own words
     inward = (side * uy, -side * ux)
     start = (edge[0] - 200_000.0 * inward[0], edge[1] - 200_000.0 * inward[1])
-    thin = limit(artwork, "copper.min_width") - 1_000.0
     finger = beam(start, inward, 200_000.0 + 0.5 * gap, thin)
     seeded = with_shape(artwork, "copper_top", finger, "gnd", "pour", "pour")
     place = (edge[0] + 0.25 * gap * inward[0], edge[1] + 0.25 * gap * inward[1])
@@ -240,7 +239,7 @@ def lone_copper(artwork: Artwork, rng: random.Random) -> Seeded:
     vias = [shapely.Point(via.x, via.y) for via in artwork.vias]
     plane = next(shape for shape in artwork.shapes if shape.role == "plane")
     inside = as_polygon(plane)
-    while True:
+    for _ in tries():
         x = rng.uniform(0.1, 0.9) * artwork.placement.width
         y = rng.uniform(0.1, 0.9) * artwork.placement.height
         island = shapely.box(x, y, x + 600_000.0, y + 600_000.0)

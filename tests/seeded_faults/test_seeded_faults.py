@@ -7,7 +7,7 @@ import os
 import pytest
 
 from layoutgen.checks import check
-from tests.seeded_faults.harness import KINDS, QUICK, choice, drawn, missed
+from tests.seeded_faults.harness import KINDS, QUICK, drawn, kind_of, missed, seeded
 
 SEEDS = int(os.environ.get("SEEDED_FAULTS", "300"))
 
@@ -21,8 +21,8 @@ def test_every_fault_is_found(first: int) -> None:
 def test_at_least_25_kinds_and_every_example() -> None:
     """Catches kinds or examples left out of the harness."""
     assert len(KINDS) >= 25
-    assert {choice(seed)[1] for seed in range(SEEDS)} == set(KINDS)
-    assert {choice(seed)[0] for seed in range(SEEDS)} == set(QUICK)
+    assert {kind_of(seed) for seed in range(SEEDS)} == set(KINDS)
+    assert {seeded(seed)[0] for seed in range(40)} == set(QUICK)
 
 
 @pytest.mark.parametrize("stem", QUICK)

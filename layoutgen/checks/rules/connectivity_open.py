@@ -1,12 +1,13 @@
 """Every net of the circuit hangs together.
 
-What: all copper of a net (of nets that lines join, of gnd) is one piece; each pad, port and line end has
-copper.
+What: all copper of a net (of nets that lines join, of gnd) is one piece, and so is each line's own; each
+pad, port and line end has copper.
 Why: what is not joined does not work.
 How measured: from finished polygons and plated holes alone; touching is joining, also through other
 copper. Pads, ports and the legs of lines are looked for at their places, so that copper left out
-altogether is found. Pour that hangs on nothing is ``connectivity.floating``. The place is the middle of
-the shortest way between the pieces.
+altogether is found. A line cut through is found also where its halves hang together another way round, as
+in a ring; copper that touches both halves joins them. Pour that hangs on nothing is
+``connectivity.floating``. The place is the middle of the shortest way between the pieces.
 Source: the circuit file.
 """
 
@@ -16,11 +17,13 @@ from collections.abc import Iterator
 from itertools import pairwise
 
 import numpy as np
+import numpy.typing as npt
 import shapely
 
 from layoutgen.artwork import Artwork
 from layoutgen.checks.board import Board
 from layoutgen.checks.connections import Connections
+from layoutgen.checks.netgraph import clusters
 from layoutgen.checks.outcome import Hit, Outcome, Rule, mm, named
 from layoutgen.checks.planar import whole
 from layoutgen.geometry import Point
@@ -38,7 +41,10 @@ def find(board: Board) -> Iterator[Outcome]:
     """Yield a hit for each net in pieces and for each place without copper."""
     if board.artwork is None:
         return
-    broken = list(_broken(Connections(board)))
+    joined = Connections(board)
+    broken = list(_broken(joined))
+    told = {item for hit in broken for item in hit.items}
+    broken += [hit for hit in _parted(joined) if not told.intersection(hit.items)]
     yield from broken
     named_already = {item for hit in broken for item in hit.items}
     yield from (hit for hit in _missing(board, board.artwork) if not named_already.intersection(hit.items))
@@ -65,6 +71,42 @@ def _broken(joined: Connections) -> Iterator[Hit]:
                 unit="mm",
                 nets=named(a.net or "", b.net or ""),
             )
+
+
+def _parted(joined: Connections) -> Iterator[Hit]:
+    """Yield a hit for each line whose own copper is in pieces that no other copper bridges."""
+    own: dict[tuple[str, str], list[int]] = {}
+    for k, piece in enumerate(joined.board.top.pieces):
+        if piece.role == "line" and piece.node is not None:
+            own.setdefault((piece.item, piece.node), []).append(k)
+    several = {key: members for key, members in own.items() if len(members) > 1}
+    if not several:
+        return
+    touching = joined.board.top.touching
+    for members in several.values():
+        one, other = _halves(members, touching)
+        if other:
+            a, b, at, distance = joined.nearest(other, one)
+            yield Hit(
+                rule=NAME,
+                text=f"{a.item} is cut through, {mm(distance)} wide",
+                items=(a.item,),
+                at=at,
+                measured=distance / 1e6,
+                limit=0.0,
+                unit="mm",
+                nets=named(a.net or "", b.net or ""),
+            )
+
+
+def _halves(members: list[int], touching: npt.NDArray[np.intp]) -> tuple[list[int], list[int]]:
+    """Return the pieces that hang together with the first, and the others; one piece may lie between."""
+    near = touching[np.isin(touching, members).any(axis=1)]
+    known = {k: n for n, k in enumerate(dict.fromkeys([*members, *near.ravel().tolist()]))}
+    pairs = np.array([(known[a], known[b]) for a, b in near.tolist()], dtype=np.intp).reshape(-1, 2)
+    label = clusters(len(known), pairs)
+    first = [k for k in members if label[known[k]] == label[known[members[0]]]]
+    return first, [k for k in members if k not in first]
 
 
 def _missing(board: Board, artwork: Artwork) -> Iterator[Hit]:
