@@ -4,9 +4,14 @@ In: a :class:`~layoutgen.sizing.SizedCircuit`. Out: a :class:`Placement`: poses 
 lines with their final length budgets, strips, ports on their edges, vias that belong to parts and lines, all
 in whole nanometres with the origin at the board's south-west corner. It draws no copper and no ground.
 
-The walk (``tour``) decides from the schematic what goes straight on at each net; ``routes`` and ``words`` say
-which shapes a line may take; ``lay`` adds one thing and what follows from it to a candidate; ``search`` keeps
-the best drawings so far, rejecting by ``clearance``; ``finish`` settles the board's frame.
+The walk (``tour``) decides from the schematic what goes straight on at each net; ``loops`` sorts out how
+loops are laid, and ``likes`` gives like lines at loops one cross-section. ``routes`` and ``words`` say which
+shapes a line may take; ``drawings`` and ``closure`` which shapes a loop (``cluster``) may take, its legs from
+one linear program. ``lay``, ``ports``, ``banks``, ``beside`` and ``lay_cluster`` add one thing, and what
+follows from it, to a candidate; ``ways`` lists the choices, ``search`` keeps the best drawings so far,
+rejecting by ``clearance`` and ``neighbours``. ``twins`` finds equal branches, which are laid alike, and
+``rooms`` makes room for them. ``finish`` settles the board's frame, ``explain`` says why a loop cannot be
+drawn.
 """
 
 from layoutgen.placement.place import place

@@ -10,6 +10,7 @@ from layoutgen.errors import InfeasibleError
 from layoutgen.placement.budgets import LineLengths
 from layoutgen.placement.explain import explain_loop
 from layoutgen.placement.finish import finish, frame_of
+from layoutgen.placement.likes import with_like_lines
 from layoutgen.placement.model import Model
 from layoutgen.placement.records import Choices, Placement
 from layoutgen.placement.search import Effort, Failure, Search, drawing_cost
@@ -45,7 +46,13 @@ def place(sized: SizedCircuit, like: Choices | None = None) -> Placement:
             its way, and the nearest size or hint that would do.
         WrongInputError: A line has no positive length after its corrections, or a junction too many arms.
     """
-    model = Model(sized)
+    sized, notes = with_like_lines(sized)
+    placement = _placed(Model(sized), like)
+    return replace(placement, notes=placement.notes + notes) if notes else placement
+
+
+def _placed(model: Model, like: Choices | None) -> Placement:
+    """Return the placement of a circuit as it is sized."""
     ways, open_loop = _prepared(model)
     if like is not None and (again := _again(ways, like)) is not None:
         return finish(model, ways.lengths, again, like.effort)

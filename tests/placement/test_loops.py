@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 import re
 from typing import Any
 
@@ -40,6 +41,17 @@ def test_a_hybrid_is_a_rectangle() -> None:
     """Catches needless bends: four straight lines close a hybrid."""
     placement = placed(LOOPS["branch-line hybrid"])
     assert all(not placement.lines[name].bends for name in ("s1", "s2", "v1", "v2"))
+
+
+def test_lines_alike_at_a_loop_are_drawn_alike() -> None:
+    """Catches a hybrid that no longer closes once the pour as drawn gives its sides different widths."""
+    inputs = inputs_from_data(LOOPS["branch-line hybrid"])
+    circuit = build_circuit(inputs.circuit, inputs.rules)
+    gaps = {"s1": (1e-3, 1.2e-3), "v1": (math.inf, 1.1e-3), "in": (math.inf, math.inf)}
+    placement = place(size_circuit(circuit, gaps=gaps))
+    assert faults(placement) == []
+    assert placement.lines["s1"].width == placement.lines["s2"].width
+    assert {element for rule, element, _ in placement.notes if rule == "assumption.pour"} >= {"s2"}
 
 
 def test_the_same_loop_gives_the_same_placement() -> None:
