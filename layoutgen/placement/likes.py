@@ -2,9 +2,9 @@
 
 The pour beside the lines of a loop is not the same everywhere, and with it the width that gives the impedance
 asked for differs a little from line to line, and the tees at the loop's corners with it. Opposite sides of a
-hybrid would then differ in length, and four straight lines would no longer meet. So lines in and at loops of
-which the same is asked share the cross-section of the first of them; what the others' own pour would have
-asked for is told in a note.
+hybrid would then differ in length, and four straight lines would no longer meet. Where a loop does not
+close for that reason, lines in and at loops of which the same is asked share the cross-section of the first
+of them; what the others' own pour would have asked for is told in a note.
 """
 
 from __future__ import annotations

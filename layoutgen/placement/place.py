@@ -10,7 +10,7 @@ from layoutgen.errors import InfeasibleError
 from layoutgen.placement.budgets import LineLengths
 from layoutgen.placement.explain import explain_loop
 from layoutgen.placement.finish import finish, frame_of
-from layoutgen.placement.likes import with_like_lines
+from layoutgen.placement.likes import Note, with_like_lines
 from layoutgen.placement.model import Model
 from layoutgen.placement.records import Choices, Placement
 from layoutgen.placement.search import Effort, Failure, Search, drawing_cost
@@ -46,14 +46,18 @@ def place(sized: SizedCircuit, like: Choices | None = None) -> Placement:
             its way, and the nearest size or hint that would do.
         WrongInputError: A line has no positive length after its corrections, or a junction too many arms.
     """
-    sized, notes = with_like_lines(sized)
-    placement = _placed(Model(sized), like)
-    return replace(placement, notes=placement.notes + notes) if notes else placement
+    notes: tuple[Note, ...] = ()
+    ways, open_loop = _prepared(Model(sized))
+    if open_loop is not None:
+        alike, notes = with_like_lines(sized)
+        ways, open_loop = _prepared(Model(alike)) if notes else (ways, open_loop)
+    placement = _placed(ways, open_loop, like)
+    return replace(placement, notes=placement.notes + notes)
 
 
-def _placed(model: Model, like: Choices | None) -> Placement:
-    """Return the placement of a circuit as it is sized."""
-    ways, open_loop = _prepared(model)
+def _placed(ways: Ways, open_loop: InfeasibleError | None, like: Choices | None) -> Placement:
+    """Return the placement by the first effort that finds one; ``open_loop`` is told when none does."""
+    model = ways.model
     if like is not None and (again := _again(ways, like)) is not None:
         return finish(model, ways.lengths, again, like.effort)
     failure: Failure | None = None

@@ -4,17 +4,22 @@ from __future__ import annotations
 
 import math
 import re
+from pathlib import Path
 from typing import Any
 
 import pytest
 
+from layoutgen.artwork import draw
 from layoutgen.circuit import build_circuit
 from layoutgen.errors import InfeasibleError
+from layoutgen.pipeline import measured_gaps
 from layoutgen.placement import Placement, place
-from layoutgen.reading import inputs_from_data
+from layoutgen.reading import inputs_from_data, read_inputs
 from layoutgen.sizing import size_circuit
 from tests.placement.circuits import LOOPS, divider, hybrid
 from tests.placement.legal import faults
+
+BOARDS = sorted((Path(__file__).parent / "boards").glob("*.toml"))
 
 
 def placed(data: dict[str, Any]) -> Placement:
@@ -26,6 +31,17 @@ def placed(data: dict[str, Any]) -> Placement:
 def test_every_kind_of_loop_is_legal(name: str) -> None:
     """Catches a loop that does not close, a wrong length, overlaps, parts apart from their lines."""
     assert faults(placed(LOOPS[name])) == []
+
+
+@pytest.mark.parametrize("path", BOARDS, ids=lambda path: path.stem)
+def test_whole_boards_with_loops_are_legal(path: Path) -> None:
+    """Catches clusters, closing lines and pairs that work alone but not together, once the pour is known."""
+    inputs = read_inputs(path)
+    circuit = build_circuit(inputs.circuit, inputs.rules)
+    first = place(size_circuit(circuit))
+    assert faults(first) == []
+    again = place(size_circuit(circuit, gaps=measured_gaps(draw(first))), first.choices)
+    assert faults(again) == []
 
 
 def test_an_equal_divider_is_its_own_mirror_image() -> None:
