@@ -12,10 +12,14 @@ from layoutgen.geometry.ring import Point, Ring
 __all__ = ["sector_cover", "sector_ring"]
 
 _COVER_STEP_DEG = 10.0
+_ARC_DEG = 30.0
 
 
 def sector_ring(apex: Point, heading: float, sector: float, inner: int, outer: int, extra: int = 0) -> Ring:
-    """Return the outline of a radial stub, its outer edge a true arc about the apex.
+    """Return the outline of a radial stub, its outer edge true arcs about the apex, of 30 degrees at most.
+
+    Readers that take an arc as one cubic curve are off by the sixth power of its angle: half a micrometre
+    for 70 degrees at 9 mm, next to nothing for 30.
 
     From the inner radius inwards the sector goes on as a neck as wide as its chord there, down to the apex,
     so that it joins a host line of any width.
@@ -34,10 +38,14 @@ def sector_ring(apex: Point, heading: float, sector: float, inner: int, outer: i
     if not 0.0 < sector < 180.0 or not 0 < inner < outer:
         raise ValueError(f"no sector of {sector} degrees between the radii {inner} and {outer}")
     corners = _right_side(math.radians(sector) / 2.0, inner, outer, extra)
-    around = [(x, -y) for x, y in corners] + [(x, y) for x, y in reversed(corners)]
     turn = 2.0 * math.atan2(corners[-1][1], corners[-1][0])
+    count = math.ceil(math.degrees(turn) / _ARC_DEG)
+    reach, steps = math.hypot(*corners[-1]), (turn * (k / count - 0.5) for k in range(1, count))
+    arc = [(reach * math.cos(a), reach * math.sin(a)) for a in steps]
+    around = [*((x, -y) for x, y in corners), *arc, *reversed(corners)]
     bulges = [0.0] * len(around)
-    bulges[len(corners) - 1] = math.tan(turn / 4.0)
+    first = len(corners) - 1
+    bulges[first : first + count] = [math.tan(turn / count / 4.0)] * count
     return Ring(tuple(_placed(apex, heading, x, y) for x, y in around), tuple(bulges))
 
 

@@ -64,11 +64,17 @@ class Neighbours:
 
     def _too_close(self, a: Obstacle, b: Obstacle) -> bool:
         """True when copper of different nets is nearer than may be etched: no allowance mends that."""
-        if Kind.BODY in (a.kind, b.kind) or self._nets(a) & self._nets(b):
+        if Kind.BODY in (a.kind, b.kind) or self._nets(a) & self._nets(b) or self._feeds_pair(a, b):
             return False
         dx = max(a.box[0] - b.box[2], b.box[0] - a.box[2], 0)
         dy = max(a.box[1] - b.box[3], b.box[1] - a.box[3], 0)
         return math.hypot(dx, dy) < self.model.limits.gap
+
+    def _feeds_pair(self, a: Obstacle, b: Obstacle) -> bool:
+        """True for a coupled pair and a line at one of its ends: the artwork notches the line if need be."""
+        pairs = self.model.sized.pairs
+        meet = self.model.owner_nets[a.owner] & self.model.owner_nets[b.owner]
+        return bool(meet) and (a.owner in pairs) != (b.owner in pairs)
 
     def _nets(self, item: Obstacle) -> frozenset[str]:
         if item.kind == Kind.GROUND:

@@ -104,6 +104,12 @@ class Tab:
                 "#" + [0, 1, 2].map(i => d[4 * k + i].toString(16).padStart(2, "0")).join("")) }"""
         return list(self.page.evaluate(code, dx))
 
+    def hear(self, message: Any) -> None:
+        """Note what the console says, but for a news stream cut in a reload: the page asks for a new one."""
+        cut = "ERR_INCOMPLETE_CHUNKED_ENCODING" in message.text
+        if not (cut and str(message.location.get("url", "")).endswith("/events")):
+            self.complaints.append(f"{message.type}: {message.text}")
+
     def theme(self, name: str) -> str:
         """The colour of a style of the board in the theme in force."""
         code = "n => getComputedStyle(document.documentElement).getPropertyValue('--b-' + n).trim()"
@@ -128,7 +134,7 @@ def open_tab(browser: Any) -> Iterator[Callable[..., Tab]]:
         tab = Tab(context.new_page())
         tabs.append(tab)
         context.on("request", lambda request: tab.requests.append(request.url))
-        tab.page.on("console", lambda message: tab.complaints.append(f"{message.type}: {message.text}"))
+        tab.page.on("console", tab.hear)
         tab.page.on("pageerror", lambda error: tab.complaints.append(str(error)))
         tab.page.goto(address)
         return tab

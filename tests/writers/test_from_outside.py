@@ -81,6 +81,17 @@ def samples(path: list[list[float]], width: float) -> Iterator[tuple[float, floa
                 yield x0 + ux * along, y0 + uy * along, -uy, ux
 
 
+def conductors(report: dict[str, Any]) -> Iterator[tuple[str, list[str | None], list[list[float]], float]]:
+    """Yield (name, nets at both ends, path, width) of lines, and of each strip of coupled pairs."""
+    for line in report["lines"]:
+        if line["width_mm"] is not None:
+            yield line["name"], [*line["nets"], None][:2], line["path_mm"], line["width_mm"]
+    for pair in report["coupled"]:
+        nets = [None if net == "open" else net for net in pair["nets"]]
+        for k, path in enumerate(pair["path_mm"]):
+            yield pair["name"], nets[2 * k : 2 * k + 2], path, pair["width_mm"]
+
+
 def others(report: dict[str, Any], name: str) -> BaseGeometry:
     """Return all that may widen a line's copper: other lines, strips, pads, each with a little room."""
     shapes: list[BaseGeometry] = []
@@ -89,6 +100,10 @@ def others(report: dict[str, Any], name: str) -> BaseGeometry:
             shapes.append(shapely.LineString(line["path_mm"]).buffer(line["width_mm"] / 2 + 0.05))
         elif line["name"] != name:
             shapes.append(shapely.Point(line["path_mm"][0]).buffer(line["outer_radius_mm"] + 0.05))
+    for pair in report["coupled"]:
+        if pair["name"] != name:
+            half = pair["width_mm"] / 2 + 0.05
+            shapes += [shapely.LineString(path).buffer(half) for path in pair["path_mm"]]
     shapes += [
         shapely.LineString(strip["path_mm"]).buffer(strip["width_mm"] / 2 + 0.05, cap_style="square")
         for strip in report["strips"]
@@ -104,17 +119,15 @@ def test_every_line_is_as_wide_as_the_report_says(
     """Copper lost to a boolean, a wrong scale, a pour that touches: any changes a width somewhere."""
     copper = shapely.union_all(layers["copper_top"])
     measured = 0
-    for line in report["lines"]:
-        if line["width_mm"] is None:
-            continue
-        width, beside = line["width_mm"], others(report, line["name"])
+    for name, _, path, width in conductors(report):
+        beside = others(report, name)
         shapely.prepare(beside)
-        for x, y, nx, ny in samples(line["path_mm"], width):
+        for x, y, nx, ny in samples(path, width):
             across = shapely.LineString([(x - nx * width, y - ny * width), (x + nx * width, y + ny * width)])
             if beside.intersects(across):
                 continue
             found = nearest_width(copper, x, y, nx, ny, 2 * width)
-            assert abs(found - width) <= TOLERANCE_MM, (line["name"], x, y, found, width)
+            assert abs(found - width) <= TOLERANCE_MM, (name, x, y, found, width)
             measured += 1
     assert measured > 20
 
@@ -141,12 +154,11 @@ def net_places(report: dict[str, Any]) -> Iterator[tuple[str, str, float, float]
         for pad in part["pads"]:
             if shapely.Polygon(pad["polygon_mm"]).area > 0:
                 yield pad["net"], f"{part['name']}.{pad['pin']}", pad["x_mm"], pad["y_mm"]
-    for line in report["lines"]:
-        nets, path = [*line["nets"], None][:2], line["path_mm"]
+    for name, nets, path, _ in conductors(report):
         for net, (x0, y0), (x1, y1) in ((nets[0], path[0], path[1]), (nets[1], path[-1], path[-2])):
             if net is not None and net != "gnd":
                 inside = min(0.05, math.dist((x0, y0), (x1, y1)) / 2) / math.dist((x0, y0), (x1, y1))
-                yield net, line["name"], x0 + (x1 - x0) * inside, y0 + (y1 - y0) * inside
+                yield net, name, x0 + (x1 - x0) * inside, y0 + (y1 - y0) * inside
     for port in report["ports"]:
         turn = math.radians(port["heading_deg"])
         yield (

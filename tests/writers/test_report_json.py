@@ -84,11 +84,11 @@ def test_line_keys(report: dict[str, Any]) -> None:
 
 
 def test_part_keys(report: dict[str, Any]) -> None:
-    """A part of two pads has nets, one with a footprint its pin map."""
+    """A part of two pads has a list of nets, one with a footprint its pin map, under both names."""
     chip, can = report["parts"]
     assert list(chip) == ["name", "x_mm", "y_mm", "heading_deg", "nets", "pads"]
-    assert list(can) == ["name", "x_mm", "y_mm", "heading_deg", "pins", "pads"]
-    assert can["pins"] == {"top": "b", "base": "gnd"}
+    assert list(can) == ["name", "x_mm", "y_mm", "heading_deg", "nets", "pins", "pads"]
+    assert can["nets"] == can["pins"] == {"top": "b", "base": "gnd"}
     assert all(list(pad) == PAD for part in report["parts"] for pad in part["pads"])
     assert chip["pads"][0]["polygon_mm"][0] == [7.8, 3.55]
 
