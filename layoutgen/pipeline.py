@@ -14,11 +14,12 @@ from datetime import date
 from functools import partial
 from pathlib import Path
 
-from layoutgen.artwork import Artwork, draw
+from layoutgen.artwork import Artwork, Sketch, complete, sketch
 from layoutgen.checks import check
 from layoutgen.circuit import Circuit, build_circuit
 from layoutgen.errors import LayoutgenError
 from layoutgen.placement import Choices, Placement, place
+from layoutgen.placement.likes import with_like_lines
 from layoutgen.reading import CircuitFile, RuleFile, read_inputs
 from layoutgen.response import NOTE_RULE, LengthFit, correct_lengths, respond
 from layoutgen.sizing import SizedCircuit, placed_dc, size_circuit
@@ -132,7 +133,7 @@ def _settled(circuit: Circuit, clock: _Clock, fit: Fit | None) -> tuple[Artwork,
             if not sized.corrections:
                 raise
             return _uncorrected(circuit, clock, f"no placement with corrected lengths ({error})")
-        rounds.append(_asked(sized, draft, clock, fit))
+        rounds.append(_asked(sized, draft, clock, fit, bool(rounds) and rounds[-1].alike))
         if rounds[-1].settled or _goes_round(rounds):
             break
         sized = rounds[-1].again
@@ -141,20 +142,26 @@ def _settled(circuit: Circuit, clock: _Clock, fit: Fit | None) -> tuple[Artwork,
         text = f"corrected lengths give a difference of {best.found.now:.4f}, the budgets' own less"
         return _uncorrected(circuit, clock, text)
     with clock("artwork"):
-        artwork = draw(best.draft.placement)
+        artwork = complete(best.draft)
     with clock("sizing"):  # a piece of pour that holds no vias is dropped from the final drawing only
-        asked = size_circuit(circuit, measured_gaps(artwork))
+        asked, alike = _sizes_by_pour(artwork, best.alike)
+    told = {note[1] for note in artwork.placement.notes}
     widths = _unsettled_widths(artwork.placement.sized, asked)
-    return artwork, (*widths, *_unsettled_lengths(best.found))
+    notes = (note for note in alike if note[1] not in told)
+    return artwork, (*notes, *widths, *_unsettled_lengths(best.found))
 
 
 @dataclass(frozen=True, slots=True, eq=False)
 class _Round:
-    """A draft, the sizes that it asks for, and what its response says of its lengths."""
+    """A draft, the sizes that it asks for, and what its response says of its lengths.
 
-    draft: Artwork
+    ``alike`` is True from the draft on whose loops close only with one cross-section for like lines.
+    """
+
+    draft: Sketch
     again: SizedCircuit
     found: LengthFit
+    alike: bool
 
     @property
     def settled(self) -> bool:
@@ -175,23 +182,37 @@ def _goes_round(rounds: Sequence[_Round]) -> bool:
     )
 
 
-def _draft(sized: SizedCircuit, choices: Choices | None, clock: _Clock) -> Artwork:
+def _draft(sized: SizedCircuit, choices: Choices | None, clock: _Clock) -> Sketch:
     """Place and draw as far as pour and lines go; ``choices`` are those of the draft before."""
     with clock("placement"):
         placement = with_placed_bias(place(sized, choices))
     with clock("artwork"):
-        return draw(placement, draft=True)
+        return sketch(placement)
 
 
-def _asked(sized: SizedCircuit, draft: Artwork, clock: _Clock, fit: Fit | None) -> _Round:
-    """Return a draft with the sizes that its pour and its response ask for."""
+def _asked(sized: SizedCircuit, draft: Sketch, clock: _Clock, fit: Fit | None, alike: bool) -> _Round:
+    """Return a draft with the sizes that its pour and its response ask for; ``alike`` is the last one's."""
+    with clock("artwork"):
+        artwork = draft.artwork
     with clock("sizing"):
-        again = size_circuit(sized.circuit, measured_gaps(draft))
+        alike = alike or largest_move(sized, artwork.placement.sized)[1] > 0.0
+        again, _ = _sizes_by_pour(artwork, alike)
     found = LengthFit({})
     if fit is not None:
         with clock("correction"):
-            found = fit(draft, sized=again)
-    return _Round(draft, replace(again, corrections=found.corrections), found)
+            found = fit(artwork, sized=again)
+    return _Round(draft, replace(again, corrections=found.corrections), found, alike)
+
+
+def _sizes_by_pour(artwork: Artwork, alike: bool) -> tuple[SizedCircuit, tuple[Note, ...]]:
+    """Return the sizes that a drawing's pour asks for, with a note for each line that is drawn otherwise.
+
+    Args:
+        artwork: The drawing.
+        alike: Whether like lines at loops were given one cross-section, which they then keep.
+    """
+    again = size_circuit(artwork.placement.sized.circuit, measured_gaps(artwork))
+    return with_like_lines(again) if alike else (again, ())
 
 
 def _best(rounds: Sequence[_Round]) -> _Round:

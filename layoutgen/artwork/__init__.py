@@ -6,7 +6,7 @@ judging it against the rules (checks), what it does at RF (response), files (wri
 where the placement puts it; only the ground pour and what is printed find their own places.
 """
 
-from layoutgen.artwork.draw import draw
+from layoutgen.artwork.draw import Sketch, complete, draw, sketch
 from layoutgen.artwork.records import (
     LAYERS,
     Artwork,
@@ -24,6 +24,9 @@ __all__ = [
     "Label",
     "LineCopper",
     "Shape",
+    "Sketch",
     "Via",
+    "complete",
     "draw",
+    "sketch",
 ]

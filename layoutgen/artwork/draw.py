@@ -3,8 +3,10 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Iterator, Sequence
+from dataclasses import dataclass
 
 import shapely
+from shapely.geometry.base import BaseGeometry
 
 from layoutgen.artwork.board import GND, cutouts_of, hole_lands, holes_of, profile_shapes
 from layoutgen.artwork.conductors import Conductor, conductors_of, copper_shapes
@@ -22,10 +24,35 @@ from layoutgen.geometry import Point, Ring, offset_ring, offset_rings
 from layoutgen.origin import Origin
 from layoutgen.placement import Placement
 
-__all__ = ["draw"]
+__all__ = ["Sketch", "complete", "draw", "sketch"]
 
 
-def draw(placement: Placement, *, draft: bool = False) -> Artwork:
+@dataclass(frozen=True, slots=True, eq=False)
+class Sketch:
+    """A placed board with its copper and its pour, before vias decide which pieces of pour stay."""
+
+    placement: Placement
+    limits: Limits
+    conductors: Sequence[Conductor]
+    openings: Sequence[Shape]
+    area: BaseGeometry
+    pour: Sequence[shapely.Polygon]
+
+    @property
+    def artwork(self) -> Artwork:
+        """The copper and the pour alone, with the pour's distances."""
+        return Artwork(
+            placement=self.placement,
+            shapes=(*copper_shapes(self.conductors), *_pour_shapes(self.limits, self.pour)),
+            vias=tuple(_placed_vias(self.placement)),
+            holes=holes_of(self.placement),
+            labels=(),
+            line_copper=measured_gaps(self.placement, self.limits, self.pour),
+            title_anchor=(0, 0),
+        )
+
+
+def draw(placement: Placement) -> Artwork:
     """Return the artwork of a placed board: copper, vias, mask, paste, legend, profile, names.
 
     The signal copper is drawn as placed, cut back only at cut-outs and the profile; the ground pour, its vias
@@ -34,26 +61,46 @@ def draw(placement: Placement, *, draft: bool = False) -> Artwork:
 
     Args:
         placement: The placed board.
-        draft: Stop when the pour is drawn, without its vias and without what is printed: for looking at what
-            the pour does to the lines before the drawing is final.
+    """
+    return complete(sketch(placement))
+
+
+def sketch(placement: Placement) -> Sketch:
+    """Return a placed board drawn as far as the pour: enough to see what the pour does to the lines.
+
+    Args:
+        placement: The placed board.
     """
     limits = limits_of(placement.sized)
     conductors = conductors_of(placement, limits)
-    openings = top_openings(placement, limits, conductors)
     pour = pour_of(placement, limits, conductors) if limits.pour else []
     bare = [pad.outline for _, pad in soldered_pads(placement)]
     bare += [ring for ring, _ in hole_lands(placement, limits)]
     area = legal_area(placement, limits, pour, conductors, bare)
-    pour = stitchable(pour, area, limits, placement)
-    if draft:
-        return _draft(placement, limits, conductors, pour)
-    drills = Drills(area, limits, [(via.x, via.y, via.drill) for via in placement.vias])
+    return Sketch(
+        placement=placement,
+        limits=limits,
+        conductors=conductors,
+        openings=top_openings(placement, limits, conductors),
+        area=area,
+        pour=stitchable(pour, area, limits, placement),
+    )
+
+
+def complete(drawn: Sketch) -> Artwork:
+    """Return the artwork that a sketch becomes: with the pour's vias, and with all that is printed.
+
+    Args:
+        drawn: The sketch.
+    """
+    placement, limits, conductors, pour = drawn.placement, drawn.limits, drawn.conductors, drawn.pour
+    drills = Drills(drawn.area, limits, [(via.x, via.y, via.drill) for via in placement.vias])
     sides = fence(pour, conductors, limits, drills)
     count = len(drills.added)
     stitch_cutouts(placement, sides, limits, drills)
     holes = holes_of(placement)
     legend = draw_legend(
-        placement, limits, openings, conductors, _all_drills(placement, limits, holes, drills)
+        placement, limits, drawn.openings, conductors, _all_drills(placement, limits, holes, drills)
     )
     drills.keep_off(legend.areas, limits.legend_distance)
     stitch_rest(placement, pour, sides, limits, drills)
@@ -64,7 +111,7 @@ def draw(placement: Placement, *, draft: bool = False) -> Artwork:
         *_ground_shapes(placement, limits, vias),
         *_pour_shapes(limits, pour),
         *plane_shapes(placement, limits),
-        *openings,
+        *drawn.openings,
         *bottom_openings(placement, limits),
         *paste_shapes(placement),
         *legend.shapes,
@@ -80,21 +127,6 @@ def draw(placement: Placement, *, draft: bool = False) -> Artwork:
         line_copper=measured_gaps(placement, limits, pour),
         title_anchor=legend.title_anchor,
         notes=(*_cutout_notes(placement, limits, conductors), *legend.notes),
-    )
-
-
-def _draft(
-    placement: Placement, limits: Limits, conductors: Sequence[Conductor], pour: Sequence[shapely.Polygon]
-) -> Artwork:
-    """Return the copper and the pour alone, with the pour's distances."""
-    return Artwork(
-        placement=placement,
-        shapes=(*copper_shapes(conductors), *_pour_shapes(limits, pour)),
-        vias=tuple(_placed_vias(placement)),
-        holes=holes_of(placement),
-        labels=(),
-        line_copper=measured_gaps(placement, limits, pour),
-        title_anchor=(0, 0),
     )
 
 

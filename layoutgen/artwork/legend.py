@@ -36,12 +36,14 @@ _FAR_NM = (1_300_000, 1_600_000, 2_000_000, 2_400_000, 2_900_000, 3_500_000)
 _PART_TRIES = ((True, _NEAR_NM), (False, _NEAR_NM), (True, _FAR_NM), (False, _FAR_NM))
 _PORT_TRIES = ((True, _NEAR_NM), (True, _FAR_NM), (False, _NEAR_NM), (False, _FAR_NM))
 _SLIDES = tuple(sign * k / 8.0 for k in range(10) for sign in ((1.0, -1.0) if k else (1.0,)))
+_AT_ONCE = 64
 _TITLE_STEP_NM = 500_000
 _TITLE_LINES = 4
 _PORT_LENGTH_NM = 1_500_000
 _EDGE_NM = 500_000
 _RULE = "legend.min_distance"
 
+Box = tuple[float, float, float, float]
 Boxes = NDArray[np.float64]
 Bools = NDArray[np.bool_]
 Geometries = NDArray[np.object_]
@@ -62,7 +64,7 @@ class _Text:
     """One text to place: its wording, the box it belongs to (x0, y0, x1, y1) [nm], its origin."""
 
     text: str
-    home: tuple[float, float, float, float]
+    home: Box
     origin: Origin
 
 
@@ -74,7 +76,7 @@ class _Spot:
     y: float
     height: int
     upright: bool
-    box: tuple[float, float, float, float]
+    box: Box
 
 
 def draw_legend(
@@ -107,14 +109,14 @@ def draw_legend(
     )
 
 
-def _part_box(part: PlacedPart) -> tuple[float, float, float, float]:
+def _part_box(part: PlacedPart) -> Box:
     """Return the box around a part's outline and pads [nm]."""
     rings = (part.outline, *(pad.outline for pad in part.pads))
     x, y = zip(*(point for ring in rings for point in ring.chords()), strict=True)
     return min(x), min(y), max(x), max(y)
 
 
-def _port_box(port: PlacedPort) -> tuple[float, float, float, float]:
+def _port_box(port: PlacedPort) -> Box:
     """Return the box around the end of a port's copper [nm]."""
     angle = math.radians(port.heading)
     ux, uy = math.cos(angle), math.sin(angle)
@@ -137,6 +139,7 @@ class _Printer:
         self._homes = [_part_box(part) for part in placement.parts.values()]
         self.shapes: list[Shape] = []
         self.areas: list[shapely.Polygon] = []
+        self._taken: list[Box] = []
         self.notes: list[tuple[str, str, str]] = []
 
     def print_near(self, text: _Text, tries: Sequence[tuple[bool, Sequence[int]]]) -> None:
@@ -147,13 +150,13 @@ class _Printer:
             tries: In what order to look: whether on tidy ground only, and the distances [nm].
         """
         wording = printable(text.text)
-        for (tidy, steps), upright in itertools.product(tries, (False, True)):
-            for height in self._heights(_NAME_HEIGHTS):
-                spots = list(self._spots(wording, text.home, height, steps, upright))
-                spot = self._first_free(spots, text.home, tidy)
-                if spot is not None:
-                    self._ink(wording, spot, text.origin)
-                    return
+        heights = self._heights(_NAME_HEIGHTS)
+        for (tidy, steps), upright, height in itertools.product(tries, (False, True), heights):
+            boxes = self._boxes(wording, text.home, height, steps, upright)
+            box = self._first_free(boxes, text.home, tidy)
+            if box is not None:
+                self._ink(wording, self._spot(wording, height, upright, box), text.origin)
+                return
         self.notes.append((_RULE, text.origin.element, "its name is left off the legend: no room beside it"))
 
     def print_title(self) -> Point:
@@ -204,35 +207,43 @@ class _Printer:
                 return float(xs[free[0]]), float(y)
         return None
 
-    def _spots(
+    def _boxes(
         self,
         wording: str,
-        home: tuple[float, float, float, float],
+        home: Box,
         height: int,
         steps: Sequence[int],
         upright: bool,
-    ) -> Iterator[_Spot]:
-        """Yield places around a box, near ones first: above, below, beside."""
+    ) -> Boxes:
+        """Return the boxes (N, 4) of a text around a home, near ones first: above, below, beside."""
         width, depth, above = lettering_size(wording, height, self._pen)
         w, h = (depth + above, width) if upright else (width, depth + above)
         x0, y0, x1, y1 = home
-        for step, slide in itertools.product(steps, _SLIDES):
-            away = step + self._limits.legend_distance
-            mx = (x0 + x1 - w) / 2.0 + slide * (x1 - x0 + w) / 2.0
-            my = (y0 + y1 - h) / 2.0 + slide * (y1 - y0 + h) / 2.0
-            for x, y in ((mx, y1 + away), (mx, y0 - away - h), (x1 + away, my), (x0 - away - w, my)):
-                base = (x + above, y) if upright else (x, y + depth)
-                yield _Spot(*base, height, upright, (x, y, x + w, y + h))
+        away = np.repeat(np.array(steps, dtype=float) + self._limits.legend_distance, len(_SLIDES))
+        slides = np.tile(_SLIDES, len(steps))
+        mx = (x0 + x1 - w) / 2.0 + slides * (x1 - x0 + w) / 2.0
+        my = (y0 + y1 - h) / 2.0 + slides * (y1 - y0 + h) / 2.0
+        x = np.stack((mx, mx, x1 + away, x0 - away - w), axis=1).ravel()
+        y = np.stack((y1 + away, y0 - away - h, my, my), axis=1).ravel()
+        return np.stack((x, y, x + w, y + h), axis=1)
 
-    def _first_free(
-        self, spots: Sequence[_Spot], home: tuple[float, float, float, float], tidy: bool
-    ) -> _Spot | None:
-        """Return the first place that is free and not nearer to another part than to its own."""
-        boxes = np.array([spot.box for spot in spots])
-        for k in np.flatnonzero(self._open(boxes, tidy)).tolist():
-            own = _box_distance(spots[k].box, home)
-            if all(_box_distance(spots[k].box, other) >= own for other in self._homes if other != home):
-                return spots[k]
+    def _spot(self, wording: str, height: int, upright: bool, box: Box) -> _Spot:
+        """Return a text in a box that was made for it."""
+        _, depth, above = lettering_size(wording, height, self._pen)
+        x, y = (box[0] + above, box[1]) if upright else (box[0], box[1] + depth)
+        return _Spot(x, y, height, upright, box)
+
+    def _first_free(self, boxes: Boxes, home: Box, tidy: bool) -> Box | None:
+        """Return the first box that is free and not nearer to another part than to its own."""
+        others = np.array([other for other in self._homes if other != home]).reshape(-1, 4)
+        own = _box_distances(boxes, np.array([home]))
+        near = boxes[(_box_distances(boxes, others) >= own).all(axis=1)]
+        for k in range(0, len(near), _AT_ONCE):
+            some = near[k : k + _AT_ONCE]
+            free = np.flatnonzero(self._open(some, tidy))
+            if len(free):
+                x0, y0, x1, y1 = some[free[0]].tolist()
+                return x0, y0, x1, y1
         return None
 
     def _open(self, boxes: Boxes, tidy: bool) -> Bools:
@@ -240,11 +251,11 @@ class _Printer:
         if not len(boxes):
             return np.zeros(0, dtype=bool)
         away = self._limits.legend_distance + 2
-        wide = shapely.box(boxes[:, 0] - away, boxes[:, 1] - away, boxes[:, 2] + away, boxes[:, 3] + away)
-        fits = self._ground.open(boxes, wide, tidy)
-        if self.areas:
-            fits[shapely.STRtree(self.areas).query(wide, predicate="intersects")[0]] = False
-        return fits
+        grown = boxes + np.array((-away, -away, away, away))
+        taken = np.array(self._taken).reshape(-1, 4)
+        apart: Bools = np.asarray((_box_distances(grown, taken) > 0.0).all(axis=1))
+        apart[apart] = self._ground.open(boxes[apart], grown[apart], tidy)
+        return apart
 
     def _ink(self, wording: str, spot: _Spot, origin: Origin) -> None:
         """Print a text and take its box."""
@@ -255,6 +266,7 @@ class _Printer:
                 Shape(layer="legend_top", outline=outline, holes=holes, role="legend", origin=origin)
             )
         self.areas.append(shapely.box(*spot.box))
+        self._taken.append(spot.box)
 
 
 class _Ground:
@@ -275,19 +287,26 @@ class _Ground:
         had_better = [*_obstacles(placement, (), drills, ring), *(piece.keepout for piece in conductors)]
         self._must, self._had_better = shapely.STRtree(must), shapely.STRtree(had_better)
 
-    def open(self, boxes: Boxes, wide: Geometries, tidy: bool) -> Bools:
+    def open(self, boxes: Boxes, grown: Boxes, tidy: bool) -> Bools:
         """Return which texts stand on free ground, given their boxes (N, 4) [nm] and the same grown.
 
         Args:
             boxes: Boxes of the texts.
-            wide: The same, grown by the distance to keep.
+            grown: The same, grown by the distance to keep.
             tidy: Also off the lands of vias and off the gaps beside lines.
         """
-        fits: Bools = np.asarray(shapely.contains(self._inside, shapely.box(*boxes.T)))
-        fits[self._must.query(wide, predicate="intersects")[0]] = False
+        areas = np.asarray(shapely.box(*boxes.T), dtype=object)
+        fits: Bools = np.asarray(shapely.contains(self._inside, areas))
+        _strike(fits, self._must, np.asarray(shapely.box(*grown.T), dtype=object))
         if tidy:
-            fits[self._had_better.query(shapely.box(*boxes.T), predicate="intersects")[0]] = False
+            _strike(fits, self._had_better, areas)
         return fits
+
+
+def _strike(fits: Bools, tree: shapely.STRtree, areas: Geometries) -> None:
+    """Take out of what fits the areas (N,) that meet something of a tree."""
+    left = np.flatnonzero(fits)
+    fits[left[tree.query(areas[left], predicate="intersects")[0]]] = False
 
 
 def _wrapped(title: str, revision: str) -> Iterator[list[str]]:
@@ -316,6 +335,8 @@ def _obstacles(
         yield from np.asarray(shapely.box(x - reach, y - reach, x + reach, y + reach), dtype=object).tolist()
 
 
-def _box_distance(a: tuple[float, float, float, float], b: tuple[float, float, float, float]) -> float:
-    """Return the distance of two boxes [nm]."""
-    return math.hypot(max(a[0] - b[2], b[0] - a[2], 0.0), max(a[1] - b[3], b[1] - a[3], 0.0))
+def _box_distances(a: Boxes, b: Boxes) -> Boxes:
+    """Return the distances (N, M) of boxes (N, 4) from boxes (M, 4) [nm]."""
+    dx = np.maximum(a[:, None, 0] - b[:, 2], b[:, 0] - a[:, None, 2])
+    dy = np.maximum(a[:, None, 1] - b[:, 3], b[:, 1] - a[:, None, 3])
+    return np.asarray(np.hypot(np.maximum(dx, 0.0), np.maximum(dy, 0.0)))

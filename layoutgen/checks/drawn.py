@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Iterator, Mapping, Sequence
+from typing import Any
 
 import numpy as np
 import numpy.typing as npt
@@ -12,12 +13,25 @@ from layoutgen.artwork import Artwork, Shape
 from layoutgen.checks.board import Area, Board, Drill, Layer, Piece
 from layoutgen.checks.limits import Limits
 from layoutgen.checks.nodes import GROUND, drawn_conductors, joined_nets, tail_of
-from layoutgen.checks.planar import CHORD_NM, CORNER_LIMITS, TOLERANCE_NM, Geometry, merge, parts, within
+from layoutgen.checks.planar import (
+    CHORD_NM,
+    CORNER_LIMITS,
+    TOLERANCE_NM,
+    Geometry,
+    Polygons,
+    array_of,
+    merge,
+    parts,
+    within,
+)
 from layoutgen.geometry import Ring
 
 __all__ = ["board_of", "bored", "etched", "pour_gaps"]
 
 _POUR_ROLES = ("pour", "plane")
+_SEAM_NM = 2.0
+"""How far pieces that meet end to end are left overlapping after etching, and how wide a tongue may be that
+goes with that [nm]."""
 
 
 def board_of(artwork: Artwork) -> Board:
@@ -159,15 +173,41 @@ def _without_buried_lands(shapes: Sequence[Shape], nodes: Mapping[str, str]) -> 
 
 
 def etched(pieces: Sequence[Piece], undercut: float) -> list[Piece]:
-    """Return the pieces as they are left after etching: every outline of the joined copper moved inwards."""
+    """Return the pieces as they are left after etching: every outline of the joined copper moved inwards.
+
+    Each piece gets its own outline moved inwards, and what is left of the seam between that and its drawn
+    outline where no other piece's finished copper lies: so an end buried in other copper is not left longer
+    by the undercut, and pieces drawn side by side stay joined.
+    """
     layer = Layer("", tuple(pieces))
-    shrunk = shapely.buffer(layer.merged, -undercut, join_style="mitre", mitre_limit=5.0)
-    copper = shapely.union_all(shrunk)
+    left = _shares(layer.polygons, _shrunk(layer.merged, undercut))
+    own, deep = _shrunk(layer.polygons, undercut), _shrunk(layer.polygons, undercut + _SEAM_NM)
+    neighbours: dict[int, list[int]] = {}
+    for i, j in layer.touching.tolist():
+        neighbours.setdefault(i, []).append(j)
+        neighbours.setdefault(j, []).append(i)
+    for i, others in neighbours.items():
+        kept = left[i].difference(shapely.union_all(deep[others]).difference(own[i]))
+        left[i] = _shrunk(_shrunk(kept, _SEAM_NM), -_SEAM_NM)
     return [
         Piece(part, piece.item, piece.net, piece.node, piece.role)
-        for piece in pieces
-        for part in parts(piece.polygon.intersection(copper))
+        for piece, polygon in zip(pieces, left, strict=True)
+        for part in parts(polygon)
     ]
+
+
+def _shares(polygons: Polygons, copper: Polygons) -> Polygons:
+    """Return what of each polygon lies on copper, given as geometries that do not meet."""
+    piece, part = shapely.STRtree(copper).query(polygons, predicate="intersects")
+    found: list[list[Geometry]] = [[] for _ in polygons]
+    for k, share in zip(piece.tolist(), shapely.intersection(polygons[piece], copper[part]), strict=True):
+        found[k].append(share)
+    return array_of([shares[0] if len(shares) == 1 else shapely.union_all(shares) for shares in found])
+
+
+def _shrunk(copper: Any, by: float) -> Any:
+    """Return a geometry, or an array of them, with all outlines moved inwards [nm], corners kept."""
+    return shapely.buffer(copper, -by, join_style="mitre", mitre_limit=5.0)
 
 
 def bored(pieces: Sequence[Piece], drills: Iterable[Drill]) -> list[Piece]:

@@ -2,9 +2,10 @@
 
 A place is counted for a pair of lines only where it is farther along its line from each node the two
 share than 3 h beyond what else reaches out from that node (half the widest line there, a pad). Nodes
-joined by a part, or by a line no longer than 3 h, count as one. Between legs of one line the bends
-between them take the place of the node. Lines of a coupled pair are meant to couple; a radial stub is not
-judged against lines it meets.
+joined by a part, or by a line no longer than 3 h, count as one, and so do the two ends of a coupled pair that
+lie beside each other with a gap of up to 3 h: an open end there lies at its partner's node. Between legs of
+one line the bends between them take the place of the node. Lines of a coupled pair are meant to couple; a
+radial stub is not judged against lines it meets.
 """
 
 from __future__ import annotations
@@ -34,7 +35,8 @@ class Leg:
     """A straight piece of a line (or a radial stub as a whole), from ``start`` to ``end`` [nm].
 
     ``line`` is the element, ``strip`` tells the strips of a pair apart; ``before`` and ``after`` [nm] are the
-    ways along the line from its ends to this leg's; ``nets`` are those at the line's two ends.
+    ways along the line from its ends to this leg's; ``nets`` are those at the line's two ends, ``nodes`` the
+    nets of the nodes those ends lie at: of an open end of a pair its partner's.
     """
 
     line: str
@@ -46,6 +48,7 @@ class Leg:
     before: float
     after: float
     nets: tuple[str, str]
+    nodes: tuple[str, str]
     shape: shapely.Polygon | None = None
 
     @property
@@ -84,25 +87,38 @@ def legs_of(placement: Placement) -> list[Leg]:
     legs: list[Leg] = []
     for line in placement.lines.values():
         nets = (line.nets[0], line.nets[1] if len(line.nets) > 1 else OPEN)
-        legs.extend(_legs(line.name, 0, line.path, line.width, nets))
+        legs.extend(_legs(line.name, 0, line.path, line.width, nets, nets))
     for pair in placement.pairs.values():
         for strip, path in enumerate(pair.paths):
-            nets = (pair.nets[2 * strip], pair.nets[2 * strip + 1])
-            legs.extend(_legs(pair.name, strip, path, pair.width, nets))
+            nets, nodes = _of_strip(pair.nets, strip)
+            legs.extend(_legs(pair.name, strip, path, pair.width, nets, nodes))
     for stub in placement.radials.values():
         shape = _sector(stub.apex, stub.heading, stub.sector_deg, stub.outer_radius)
-        legs.append(Leg(stub.name, 0, 0, stub.apex, stub.apex, 0.0, 0.0, 0.0, (stub.nets[0], OPEN), shape))
+        nets = (stub.nets[0], OPEN)
+        legs.append(Leg(stub.name, 0, 0, stub.apex, stub.apex, 0.0, 0.0, 0.0, nets, nets, shape))
     return legs
 
 
+def _of_strip(nets: tuple[str, ...], strip: int) -> tuple[tuple[str, str], tuple[str, str]]:
+    """Return the nets at the two ends of a pair's strip, and the nets of the nodes they lie at."""
+    own, beside = nets[2 * strip : 2 * strip + 2], nets[2 - 2 * strip : 4 - 2 * strip]
+    at = [partner if net == OPEN else net for net, partner in zip(own, beside, strict=True)]
+    return (own[0], own[1]), (at[0], at[1])
+
+
 def _legs(
-    line: str, strip: int, path: tuple[Point, ...], width: float, nets: tuple[str, str]
+    line: str,
+    strip: int,
+    path: tuple[Point, ...],
+    width: float,
+    nets: tuple[str, str],
+    nodes: tuple[str, str],
 ) -> Iterator[Leg]:
     """Yield the legs of one centre-line."""
     lengths = [float(np.hypot(b[0] - a[0], b[1] - a[1])) for a, b in pairwise(path)]
     total, done = sum(lengths), 0.0
     for k, length in enumerate(lengths):
-        yield Leg(line, strip, k, path[k], path[k + 1], width, done, total - done - length, nets)
+        yield Leg(line, strip, k, path[k], path[k + 1], width, done, total - done - length, nets, nodes)
         done += length
 
 
@@ -143,7 +159,7 @@ def _counted(a: Leg, b: Leg, nodes: _Nodes) -> tuple[shapely.Polygon | None, sha
     cuts = []
     for leg, other in ((a, b), (b, a)):
         cuts.append(
-            [nodes.kept_off(leg.nets[end], other) - way for end, way in ((0, leg.before), (1, leg.after))]
+            [nodes.kept_off(leg.nodes[end], other) - way for end, way in ((0, leg.before), (1, leg.after))]
         )
     return a.copper(*cuts[0]), b.copper(*cuts[1])
 
@@ -161,7 +177,7 @@ class _Nodes:
     """Which nets count as one node, and how far from it lines may be near each other."""
 
     def __init__(self, artwork: Artwork, reach: float) -> None:
-        """Join the nets of each part and of each short line.
+        """Join the nets of each part, of each short line, and those beside each other in a narrow pair.
 
         Args:
             artwork: The drawing.
@@ -176,11 +192,15 @@ class _Nodes:
         for line in placement.lines.values():
             if line.centre_line <= reach:
                 self._join(line.nets)
+        for pair in placement.pairs.values():
+            if pair.gap <= reach:
+                self._join((pair.nets[0], pair.nets[2]))
+                self._join((pair.nets[1], pair.nets[3]))
         self._out = self._outreach(placement, file.parts)
 
     def _join(self, nets: tuple[str, ...]) -> None:
-        """Make one node of nets, gnd left out."""
-        live = [net for net in nets if net != GROUND]
+        """Make one node of nets, gnd and open ends left out."""
+        live = [net for net in nets if net not in (GROUND, OPEN)]
         for net in live[1:]:
             if self._root(net) != self._root(live[0]):
                 self._parent[self._root(net)] = self._root(live[0])
@@ -212,7 +232,7 @@ class _Nodes:
         if net in (GROUND, OPEN):
             return -np.inf
         node = self._root(net)
-        if node not in {self._root(far) for far in other.nets if far not in (GROUND, OPEN)}:
+        if node not in {self._root(far) for far in other.nodes if far not in (GROUND, OPEN)}:
             return -np.inf
         return self.reach + self._out.get(node, 0.0)
 

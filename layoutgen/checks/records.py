@@ -2,10 +2,14 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, field
+from typing import TYPE_CHECKING
 
 from layoutgen.geometry import Point
 from layoutgen.origin import Location
+
+if TYPE_CHECKING:
+    from layoutgen.checks.sheet import Sheets
 
 __all__ = ["CheckResult", "Finding", "NotChecked"]
 
@@ -50,7 +54,12 @@ class NotChecked:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class CheckResult:
-    """All findings in a fixed order (rule, place), and all that was not checked."""
+    """All findings in a fixed order (rule, place), and all that was not checked.
+
+    ``currents`` are the direct currents in the copper as the rules on current solved them, for maps; None
+    where the rule file has no such rule. They take no part in comparing results.
+    """
 
     findings: tuple[Finding, ...]
     not_checked: tuple[NotChecked, ...]
+    currents: Sheets | None = field(default=None, compare=False, repr=False)

@@ -20,6 +20,8 @@ from layoutgen.origin import Location
 
 __all__ = ["check", "check_board", "current_map"]
 
+_ON_CURRENT = ("current.temperature_rise", "current.max_density")
+
 
 def current_map(artwork: Artwork) -> Sheets:
     """Return the direct current in an artwork's copper: densities by triangle, voltage drops, heat by net."""
@@ -51,8 +53,12 @@ def check_board(board: Board, today: datetime.date | None = None) -> CheckResult
         hits.extend(worst_of_each(outcome for outcome in found if isinstance(outcome, Hit)))
     if today is None and any(waiver.until is not None for waiver in board.limits.rules.waive.values()):
         skipped.append(NotChecked("waive.expired", "no date was given"))
-    findings = judged(board.limits, hits, today)
-    return CheckResult(findings=tuple(findings), not_checked=tuple(dict.fromkeys((*skipped, *UNCOVERED))))
+    judges_current = any(board.limits.get(name) is not None for name in _ON_CURRENT)
+    return CheckResult(
+        findings=tuple(judged(board.limits, hits, today)),
+        not_checked=tuple(dict.fromkeys((*skipped, *UNCOVERED))),
+        currents=board.sheets if judges_current else None,
+    )
 
 
 def _notes(artwork: Artwork) -> Iterator[Finding]:

@@ -89,8 +89,8 @@ def step(u1: ArrayLike, u2: ArrayLike, er: ArrayLike, t: ArrayLike = 0.0) -> Ste
     wide, narrow = np.maximum(u1, u2), np.minimum(u1, u2)
     l_wide, c_wide = line_constants(wide, er, t)
     l_narrow, c_narrow = line_constants(narrow, er, t)
-    excess_l = _inductance(wide, narrow, l_wide / l_narrow)
-    excess_c = _capacitance(wide, narrow, er, c_wide)
+    excess_l = step_inductance(wide, narrow, l_wide / l_narrow)
+    excess_c = step_capacitance(wide, narrow, er, c_wide)
     determinant = l_wide * c_narrow - l_narrow * c_wide
     equal = np.abs(determinant) < 1e-9 * l_narrow * c_wide
     determinant = np.where(equal, 1.0, determinant)
@@ -105,7 +105,7 @@ def step(u1: ArrayLike, u2: ArrayLike, er: ArrayLike, t: ArrayLike = 0.0) -> Ste
     )
 
 
-def _inductance(wide: Array, narrow: Array, ratio: Array) -> Array:
+def step_inductance(wide: Array, narrow: Array, ratio: Array) -> Array:
     """Return the excess inductance over MU0 h [-]; ratio is that of the equivalent plate widths."""
     a = np.clip(ratio, 1e-9, 1.0 - 1e-9)
     plates = (a + 1.0 / a) * np.log((1.0 + a) / (1.0 - a)) - 2.0 * np.log(4.0 * a / (1.0 - a * a))
@@ -113,7 +113,7 @@ def _inductance(wide: Array, narrow: Array, ratio: Array) -> Array:
     return np.asarray(np.where(wide == narrow, 0.0, plates / (2.0 * math.pi) * np.maximum(share, 0.0)))
 
 
-def _capacitance(wide: Array, narrow: Array, er: Array, c_wide: Array) -> Array:
+def step_capacitance(wide: Array, narrow: Array, er: Array, c_wide: Array) -> Array:
     """Return the excess capacitance over EPS0 h [-]."""
     near = -np.expm1(-0.818 * (0.5 * (wide - narrow)) ** 1.0121)
     return np.asarray(c_wide * hammerstad_open_end(wide, er) * (1.0 - narrow / wide) * near)

@@ -15,7 +15,7 @@ from numpy.typing import ArrayLike, NDArray
 from layoutgen.formulas.constants import C0, EPS0, ETA0, MU0
 from layoutgen.formulas.microstrip import hammerstad_jensen_1980, hammerstad_jensen_1980_widening
 from layoutgen.formulas.numeric import Array, Flags, floats, within
-from layoutgen.formulas.steps import line_constants, step
+from layoutgen.formulas.steps import line_constants, step_capacitance, step_inductance
 
 __all__ = ["FIELD_FIT", "HAMMERSTAD_1981", "CrossResult", "TeeResult", "cross", "hammerstad_1981_tee", "tee"]
 
@@ -116,6 +116,8 @@ def tee(
     in_range = substrate & np.all(within(widths, *_WIDTHS), axis=0)
     usable = substrate & np.all(within(widths, *_WIDTHS_OF_USE), axis=0)
     fit = _fit(np.clip(widths, *_WIDTHS_OF_USE), np.clip(er, 1.0, 13.0), fh, np.clip(t, 0.0, 0.2))
+    if np.all(usable):
+        return TeeResult(*fit, in_range, _names(usable))
     old = hammerstad_1981_tee(u_a, u_b, u_side, er, fh, t)
     d_a, d_b, d_side, susceptance = (
         np.where(usable, new, published)
@@ -131,29 +133,35 @@ def _names(fitted: Flags) -> NDArray[np.str_]:
 
 def _fit(widths: Array, er: Array, fh: Array, t: Array) -> tuple[Array, Array, Array, Array]:
     """Return planes [-] and susceptance [S] of the fit."""
-    u_a, u_b, u_side = (u + hammerstad_jensen_1980_widening(u, 1.0, t) for u in widths)
-    wide, narrow = np.maximum(u_a, u_b), np.minimum(u_a, u_b)
-    d_wide, d_narrow, d_side = _planes(wide, narrow, u_side)
-    c = 0.5 * (_excess_capacitance(wide, u_side, er) + _excess_capacitance(narrow, u_side, er))
-    c = c + 0.5 * step(wide, narrow, er).C
-    c_wide, c_narrow, c_side = (line_constants(u, er)[1] for u in (wide, narrow, u_side))
+    u_a, u_b, u_side = widths + hammerstad_jensen_1980_widening(widths, 1.0, t)
+    lines = np.stack([np.maximum(u_a, u_b), np.minimum(u_a, u_b), u_side])
+    wide, narrow, _ = lines
+    planes = _planes(lines)
+    c_wide, c_narrow, c_side = line_constants(lines, er)[1]
+    c = 0.5 * (
+        _excess_capacitance(wide, u_side, er, c_wide, c_side)
+        + _excess_capacitance(narrow, u_side, er, c_narrow, c_side)
+    )
+    c = c + 0.5 * step_capacitance(wide, narrow, er, c_wide)
+    d_wide, d_narrow, d_side = planes
     c = c + c_wide * d_wide + c_narrow * d_narrow + c_side * d_side
     swapped = u_a < u_b
     d_a, d_b = np.where(swapped, d_narrow, d_wide), np.where(swapped, d_wide, d_narrow)
     return d_a, d_b, d_side, np.asarray(2.0 * math.pi * EPS0 * np.clip(fh, 0.0, 1e12) * c)
 
 
-def _planes(wide: Array, narrow: Array, u_side: Array) -> tuple[Array, Array, Array]:
-    """Return the planes [-] of the wide main, the narrow main and the side line.
+def _planes(lines: Array) -> tuple[Array, Array, Array]:
+    """Return the planes [-] of the wide main, the narrow main and the side line, whose widths are stacked.
 
     Each main starts from its tee with equal mains, the side line from the narrow main's; what the step
     between the mains adds is split by two fitted shares, one of the step's own inductance and one of what
     separates the side line's two values.
     """
-    d_wide, far = _equal_mains(wide, u_side)
-    d_narrow, near = _equal_mains(narrow, u_side)
-    l_wide, l_narrow, l_side = (line_constants(u, 1.0)[0] for u in (wide, narrow, u_side))
-    own, apart = step(wide, narrow, 1.0).L, (far - near) * l_side
+    wide, narrow, u_side = lines
+    l_wide, l_narrow, l_side = line_constants(lines, 1.0)[0]
+    d_wide, far = _equal_mains(wide, u_side, l_wide, l_side)
+    d_narrow, near = _equal_mains(narrow, u_side, l_narrow, l_side)
+    own, apart = step_inductance(wide, narrow, l_wide / l_narrow), (far - near) * l_side
     place = u_side / (u_side + 0.5 * (wide - narrow))
     logs = np.log(u_side), np.log(wide), np.log(narrow)
     more = [
@@ -173,20 +181,19 @@ def _share(coefficients: tuple[float, ...], place: Array, side: Array, wide: Arr
     return np.asarray(constant + by_place * place + by_side * side + by_wide * wide + by_narrow * narrow)
 
 
-def _equal_mains(u: Array, u_side: Array) -> tuple[Array, Array]:
+def _equal_mains(u: Array, u_side: Array, inductance: Array, l_side: Array) -> tuple[Array, Array]:
     """Return main and side plane [-] of a tee with equal main lines."""
     x, y = np.log(u), np.log(u_side)
     main = np.exp(-2.5666 - 0.5494 * x + 1.6489 * y + 0.1085 * x * y - 0.0497 * y * y - 0.1023 * x * x)
-    plate = 1.0 / line_constants(u, 1.0)[0]
-    r = line_constants(u, 1.0)[0] / line_constants(u_side, 1.0)[0]
+    plate = 1.0 / inductance
+    r = inductance / l_side
     side = plate * (-0.0629 + 0.3489 * r + 0.3678 * np.exp(-2.0 * r) + 0.0346 * x - 0.0180 * r * x)
     return np.asarray(main), np.asarray(side)
 
 
-def _excess_capacitance(u: Array, u_side: Array, er: Array) -> Array:
+def _excess_capacitance(u: Array, u_side: Array, er: Array, c: Array, c_side: Array) -> Array:
     """Return the excess capacitance over EPS0 h with all planes at the crossing [-]."""
     x, y = np.log(u), np.log(u_side)
-    c, c_side = line_constants(u, er)[1], line_constants(u_side, er)[1]
     overlap = -0.5 * c_side * u - 0.5 * (c - er * u) * u_side
     shape = -2.3678 - 0.6329 * x - 0.3728 * y - 0.2912 * x * y + 0.2264 * y * y - 0.2540 * x * y * y
     return np.asarray(overlap + shape - er * (0.4892 + 0.0168 * x))

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from layoutgen.circuit import End
-from layoutgen.circuit.queries import ends_of
 from layoutgen.placement.bodies import PartBody
 from layoutgen.placement.frame import Box, Pose, ahead, box_to_world, to_world
 from layoutgen.placement.kit import Kit
@@ -15,7 +14,7 @@ __all__ = ["lay_beside"]
 def lay_beside(kit: Kit, growth: Growth, body: PartBody, pose: Pose) -> None:
     """Lay the parts that stand beside one just laid, alternately to both sides, courtyards touching."""
     names = kit.tour.loops.beside.get(body.name, ())
-    ends = {net: end for end, net in ends_of(kit.model.file, body.name)}
+    ends = {net: end for end, net in kit.model.ends[body.name]}
     across = (body.lands[0].heading + 90.0) % 360.0
     reach = {1: _lateral(body, across)[1], -1: -_lateral(body, across)[0]}
     for k, name in enumerate(names):
@@ -30,7 +29,7 @@ def lay_beside(kit: Kit, growth: Growth, body: PartBody, pose: Pose) -> None:
         reach[side] += near + far
         growth.parts[name] = at
         growth.obstacles += kit.part_obstacles(other, at)
-        for end, net in ends_of(kit.model.file, name):
+        for end, net in kit.model.ends[name]:
             _join(kit, growth, net, (body, pose, ends[net]), (other, at, end))
 
 

@@ -8,8 +8,8 @@ the spacing rule of the shared node: there they are meant to be near.
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
 from enum import IntEnum
+from typing import NamedTuple
 
 import numpy as np
 import numpy.typing as npt
@@ -38,8 +38,7 @@ class Kind(IntEnum):
     HOLE = 7
 
 
-@dataclass(frozen=True, slots=True)
-class Obstacle:
+class Obstacle(NamedTuple):
     """One box [nm] of an element; a corridor is kept clear but does not count to the board's extent.
 
     ``at_edges`` names the board edges that the box runs up to (a port's copper): there it keeps ``inset``
@@ -160,9 +159,7 @@ class Obstacles:
         old = self.boxes if near_by is None else self.boxes[near_by]
         old_kinds = self.kinds if near_by is None else self.kinds[near_by]
         need = table[kinds[:, None], old_kinds[None, :]]
-        near = _squared_distance(boxes, old) < need * need
-        touching = _overlaps(boxes, old) & (need == 0)
-        rows, columns = np.nonzero(near | touching)
+        rows, columns = np.nonzero(_nearer(boxes, old, need))
         found = columns if near_by is None else near_by[columns]
         return [(new[i], self.items[j]) for i, j in zip(rows.tolist(), found.tolist(), strict=True)]
 
@@ -197,17 +194,11 @@ def _arrays(items: Sequence[Obstacle]) -> tuple[Ints, Ints, Ints]:
     return boxes, kinds, corridors
 
 
-def _squared_distance(a: Ints, b: Ints) -> npt.NDArray[np.float64]:
-    """Return the squared distances (N, M) between boxes."""
-    dx = np.maximum(a[:, None, 0] - b[None, :, 2], b[None, :, 0] - a[:, None, 2]).clip(min=0)
-    dy = np.maximum(a[:, None, 1] - b[None, :, 3], b[None, :, 1] - a[:, None, 3]).clip(min=0)
-    squared: npt.NDArray[np.float64] = dx.astype(np.float64) ** 2 + dy.astype(np.float64) ** 2
-    return squared
-
-
-def _overlaps(a: Ints, b: Ints) -> npt.NDArray[np.bool_]:
-    """Return where the interiors of boxes overlap (N, M)."""
-    x = (a[:, None, 0] < b[None, :, 2]) & (b[None, :, 0] < a[:, None, 2])
-    y = (a[:, None, 1] < b[None, :, 3]) & (b[None, :, 1] < a[:, None, 3])
-    result: npt.NDArray[np.bool_] = x & y
+def _nearer(a: Ints, b: Ints, need: Ints) -> npt.NDArray[np.bool_]:
+    """Return where boxes (N, 4) and (M, 4) are nearer than ``need`` (N, M) [nm]; where that is 0, overlap."""
+    dx = np.maximum(a[:, None, 0] - b[:, 2], b[:, 0] - a[:, None, 2])
+    dy = np.maximum(a[:, None, 1] - b[:, 3], b[:, 1] - a[:, None, 3])
+    overlap = (dx < 0) & (dy < 0) & (need == 0)
+    x, y = np.maximum(dx, 0).astype(np.float64), np.maximum(dy, 0).astype(np.float64)
+    result: npt.NDArray[np.bool_] = (x * x + y * y < need * need) | overlap
     return result

@@ -6,7 +6,6 @@ import math
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
 
-from layoutgen.circuit.queries import ends_of
 from layoutgen.geometry import Point, Ring, path_length, turn_degrees
 from layoutgen.origin import Origin
 from layoutgen.placement.bodies import BodyLand
@@ -154,7 +153,7 @@ class _Maker:
 
     def _inset(self, element: str) -> int:
         """Return how far short of the profile a port's copper ends [nm]."""
-        nets = {net for _, net in ends_of(self.model.file, element)}
+        nets = {net for _, net in self.model.ends[element]}
         to_edge = any(p.to_edge for p in self.model.file.ports.values() if p.net in nets)
         return 0 if to_edge else self.model.limits.edge
 

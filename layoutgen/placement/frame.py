@@ -3,19 +3,30 @@
 from __future__ import annotations
 
 import math
-from dataclasses import dataclass
+from collections.abc import Iterable
+from typing import NamedTuple
 
 from layoutgen.geometry import Point, Ring
 
-__all__ = ["Box", "Pose", "ahead", "box_around", "box_to_world", "grown", "ring_to_world", "to_world", "unit"]
+__all__ = [
+    "Box",
+    "Pose",
+    "ahead",
+    "box_around",
+    "box_to_world",
+    "grown",
+    "hull",
+    "ring_to_world",
+    "to_world",
+    "unit",
+]
 
 Box = tuple[int, int, int, int]
 
 _QUARTERS = {0.0: (1.0, 0.0), 90.0: (0.0, 1.0), 180.0: (-1.0, 0.0), 270.0: (0.0, -1.0)}
 
 
-@dataclass(frozen=True, slots=True)
-class Pose:
+class Pose(NamedTuple):
     """A point [nm] and a heading [deg] counter-clockwise from east, 0 <= heading < 360."""
 
     x: int
@@ -64,6 +75,12 @@ def ring_to_world(pose: Pose, box: Box) -> Ring:
     """Return the outline of a box given in the frame of a pose, counter-clockwise."""
     x0, y0, x1, y1 = box
     return Ring(tuple(to_world(pose, x, y) for x, y in ((x0, y0), (x1, y0), (x1, y1), (x0, y1))))
+
+
+def hull(boxes: Iterable[tuple[float, float, float, float]]) -> tuple[float, float, float, float]:
+    """Return the box around boxes."""
+    x0, y0, x1, y1 = zip(*boxes, strict=True)
+    return min(x0), min(y0), max(x1), max(y1)
 
 
 def box_around(points: list[Point]) -> Box:

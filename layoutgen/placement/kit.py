@@ -5,7 +5,6 @@ from __future__ import annotations
 from dataclasses import dataclass, field
 
 from layoutgen.circuit import End, EndKind
-from layoutgen.circuit.queries import net_of
 from layoutgen.geometry import Point
 from layoutgen.placement.bodies import OVERLAP, BodyLand, PartBody
 from layoutgen.placement.budgets import LineLengths, strip_width
@@ -41,7 +40,7 @@ class Kit:
 
     def net(self, end: End) -> str:
         """Return the net of an end."""
-        return net_of(self.model.file, end)
+        return self.model.net_of(end)
 
     def part_obstacles(self, body: PartBody, pose: Pose) -> list[Obstacle]:
         """Return a part's boxes at a pose; turned once per heading, then only moved."""

@@ -6,7 +6,6 @@ import math
 from dataclasses import dataclass, field
 
 from layoutgen.circuit import End, EndKind
-from layoutgen.circuit.queries import ends_of
 from layoutgen.geometry import Point
 from layoutgen.placement.banks import Banks
 from layoutgen.placement.beside import lay_beside
@@ -112,8 +111,7 @@ class Layer:
         growth.use(self.kit.net(mate.end), arrival.heading + 180.0)
 
     def _far(self, end: End) -> tuple[End, str] | None:
-        found = ends_of(self.kit.model.file, end.element)
-        return next((item for item in found if item[0].index != end.index), None)
+        return self.kit.model.far_end(end)
 
     def bend_weight(self, end: End) -> float:
         """Return what a bend counts for: a feed or supply may fold, a stub or matching line better not."""
@@ -277,7 +275,7 @@ class Layer:
         """Lay a part at a pose, and go on from its other pads."""
         body = self.kit.model.bodies[entered.element]
         self.part_alone(growth, entered, pose)
-        for end, net in ends_of(self.kit.model.file, body.name):
+        for end, net in self.kit.model.ends[body.name]:
             if end.index == entered.index or net == GROUND:
                 continue
             hub = self.kit.tour.hubs[net]
@@ -446,7 +444,7 @@ class Layer:
         b_side = -lateral if second else lateral
         growth.pairs[end.element] = LaidPair(end.element, pose, b_side, length)
         self._pair_obstacles(growth, end.element, pose, b_side * pitch, length)
-        for other, net in ends_of(self.kit.model.file, end.element):
+        for other, net in self.kit.model.ends[end.element]:
             if other.index == end.index or net == GROUND:
                 continue
             hub = self.kit.tour.hubs[net]
@@ -459,7 +457,7 @@ class Layer:
     def _pair_obstacles(self, growth: Growth, name: str, pose: Pose, offset: int, length: int) -> None:
         """Add the boxes of both strips; where a strip ends in a port it may run up to the edge."""
         width = to_nm(self.kit.model.sized.pairs[name].width)
-        ends = {end.index: net for end, net in ends_of(self.kit.model.file, name)}
+        ends = {end.index: net for end, net in self.kit.model.ends[name]}
         for line, sideways in ((0, 0), (1, offset)):
             box = box_to_world(pose, (0, sideways - width // 2, length, sideways + width // 2))
             edges = []

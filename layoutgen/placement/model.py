@@ -6,7 +6,8 @@ import math
 from dataclasses import dataclass
 from functools import cached_property
 
-from layoutgen.circuit import EndKind
+from layoutgen.circuit import End, EndKind
+from layoutgen.circuit.queries import elements, ends_of
 from layoutgen.origin import Origin
 from layoutgen.placement.bodies import PartBody, part_body
 from layoutgen.sizing import SizedCircuit
@@ -92,6 +93,8 @@ class Model:
         self.bodies: dict[str, PartBody] = {
             name: part_body(lands, self.limits) for name, lands in sized.lands.items()
         }
+        self.ends = {name: ends_of(self.file, name) for name in elements(self.file)}
+        self._nets_of = {(end.element, end.index): net for found in self.ends.values() for end, net in found}
         self.owner_nets = self._owner_nets()
         self._reaches: dict[str, int] = {}
 
@@ -105,6 +108,14 @@ class Model:
                 nets.setdefault(end.element, set()).add(net.name)
             nets[strip_owner(net.name)] = {net.name}
         return {name: frozenset(found) for name, found in nets.items()}
+
+    def net_of(self, end: End) -> str:
+        """Return the net of an end."""
+        return self._nets_of[end.element, end.index]
+
+    def far_end(self, end: End) -> tuple[End, str] | None:
+        """Return the first other end of an element with its net; None where there is no other."""
+        return next((item for item in self.ends[end.element] if item[0].index != end.index), None)
 
     def pour_gap(self, name: str) -> int:
         """Return the distance [nm] that ground copper keeps from a line, pair or radial stub."""

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import itertools
 import math
-from dataclasses import dataclass, field, replace
+from dataclasses import dataclass, field
 
 from layoutgen.circuit import EndKind
 from layoutgen.circuit.queries import ends_of
@@ -60,7 +60,7 @@ class Neighbours:
     def _softened(self, item: Obstacle, nets: frozenset[str]) -> Obstacle:
         """Return a pad on a shared net as a body: a line that it ends may pass it as it may pass a part."""
         joined = item.kind == Kind.PAD and item.net in nets
-        return replace(item, kind=Kind.BODY) if joined else item
+        return item._replace(kind=Kind.BODY) if joined else item
 
     def _too_close(self, a: Obstacle, b: Obstacle) -> bool:
         """True when copper of different nets is nearer than may be etched: no allowance mends that."""
@@ -71,10 +71,14 @@ class Neighbours:
         return math.hypot(dx, dy) < self.model.limits.gap
 
     def _feeds_pair(self, a: Obstacle, b: Obstacle) -> bool:
-        """True for a coupled pair and a line at one of its ends: the artwork notches the line if need be."""
+        """True for a coupled pair and a line that ends at one of its ends: the artwork notches the line.
+
+        A line that runs past the end, or a pad, cannot be notched.
+        """
         pairs = self.model.sized.pairs
         meet = self.model.owner_nets[a.owner] & self.model.owner_nets[b.owner]
-        return bool(meet) and (a.owner in pairs) != (b.owner in pairs)
+        ends_there = Kind.PAD not in (a.kind, b.kind) and not _overlap(a, b)
+        return bool(meet) and (a.owner in pairs) != (b.owner in pairs) and ends_there
 
     def _nets(self, item: Obstacle) -> frozenset[str]:
         if item.kind == Kind.GROUND:
@@ -185,6 +189,12 @@ class Neighbours:
         if line is None or line.free:
             return False
         return self.lengths.by_bends(name)[0] < 2 * self.model.limits.spacing
+
+
+def _overlap(a: Obstacle, b: Obstacle) -> bool:
+    """True when the interiors of two boxes overlap."""
+    x = a.box[0] < b.box[2] and b.box[0] < a.box[2]
+    return x and a.box[1] < b.box[3] and b.box[1] < a.box[3]
 
 
 def _cut(points: tuple[Point, ...], amount: int, *, at_start: bool) -> tuple[Point, ...]:

@@ -23,7 +23,7 @@ from layoutgen.sizing import SizedCircuit
 __all__ = ["place"]
 
 _EFFORTS = (
-    Effort(),
+    Effort(beam=4),
     Effort(beam=16, accepted=5, any_side=True),
     Effort(beam=16, accepted=5, any_side=True, tight_edges=True),
     Effort(beam=24, accepted=6, any_side=True, tight_edges=True, fold_spine=True),

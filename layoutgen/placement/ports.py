@@ -86,7 +86,7 @@ class Ports:
         known = growth.bounds.known(edge)
         self.kit.strip(growth, hub.net, width, (pose.point, ahead(out, OVERLAP).point))
         first = growth.obstacles[-1]
-        growth.obstacles[-1] = replace(first, at_edges=(edge,), inset=self.kit.inset(port))
+        growth.obstacles[-1] = first._replace(at_edges=(edge,), inset=self.kit.inset(port))
         if not known:
             growth.strips[-1] = replace(growth.strips[-1], root_edge=edge, inset=self.kit.inset(port))
             self.kit.keep_way(growth, strip_owner(hub.net), Kind.STRIP, pose.point, edge, width)
@@ -153,7 +153,7 @@ class Ports:
         """Let the last strip end at an edge, open while that has no place yet."""
         inset = self.kit.inset(end.element)
         growth.strips[-1] = replace(growth.strips[-1], open_edge=open_edge, inset=inset)
-        growth.obstacles[-1] = replace(growth.obstacles[-1], at_edges=(edge,), inset=inset)
+        growth.obstacles[-1] = growth.obstacles[-1]._replace(at_edges=(edge,), inset=inset)
 
     def root_can_move(self, hub: Hub) -> bool:
         """True when the first port's edge may still be moved outward: a free line or a strip leaves it."""

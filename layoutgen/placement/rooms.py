@@ -11,7 +11,6 @@ from collections.abc import Callable, Iterator, Mapping
 from dataclasses import dataclass, field
 
 from layoutgen.circuit import End, EndKind
-from layoutgen.circuit.queries import ends_of
 from layoutgen.geometry import Point
 from layoutgen.placement.clearance import Obstacles
 from layoutgen.placement.frame import Box, Pose, box_around, unit
@@ -157,7 +156,7 @@ class Rooms:
         return self.tour.weight.get((end.element, end.index), 0) > _HEAVY
 
     def _measured(self, end: End, heading: float) -> Box | None:
-        far = (item for item in ends_of(self.router.model.file, end.element) if item[0].index != end.index)
+        far = (item for item in self.router.model.ends[end.element] if item[0].index != end.index)
         net = next(net for _, net in far if net != GROUND)
         growth = Growth(state=_nothing(), bounds=Bounds())
         self.arrive(growth, net, Pose(0, 0, heading))

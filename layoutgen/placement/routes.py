@@ -7,7 +7,6 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 
 from layoutgen.circuit import End, EndKind
-from layoutgen.circuit.queries import ends_of
 from layoutgen.geometry import mitre_for_turn, mitre_reach
 from layoutgen.placement.bodies import beyond
 from layoutgen.placement.budgets import LineLengths
@@ -187,12 +186,10 @@ class Router:
     # -- what a line meets ---------------------------------------------------------------------------
 
     def _net(self, end: End) -> str:
-        return next(net for found, net in ends_of(self.model.file, end.element) if found.index == end.index)
+        return self.model.net_of(end)
 
     def _far(self, end: End) -> tuple[End, str] | None:
-        return next(
-            (found for found in ends_of(self.model.file, end.element) if found[0].index != end.index), None
-        )
+        return next((found for found in self.model.ends[end.element] if found[0].index != end.index), None)
 
     def _hint(self, name: str) -> Hint | None:
         layout = self.model.file.layout

@@ -14,7 +14,7 @@ from dataclasses import dataclass, field, replace
 from itertools import islice
 
 from layoutgen.circuit import End, EndKind
-from layoutgen.circuit.queries import is_shunt, net_of
+from layoutgen.circuit.queries import is_shunt
 from layoutgen.placement.clearance import Kind, clearance_table, edge_margins
 from layoutgen.placement.cluster import ClusterPlan
 from layoutgen.placement.frame import Pose, box_around
@@ -320,7 +320,7 @@ class Search:
         """True when a line that closes a loop leaves a way to their edges for ports beside it."""
         grown = trial.applied(trial.extent(self.margins), 0.0)
         nets = set(self.model.owner_nets[next(iter(trial.lines))])
-        near = [p for p in base.pending if net_of(self.model.file, p.end) in nets]
+        near = [p for p in base.pending if self.model.net_of(p.end) in nets]
         return all(self._has_way(grown, p) for p in near if self._ends_in_port(p.end))
 
     def _built(self, base: State, way: Way, depth: int) -> Growth | None:

@@ -6,7 +6,6 @@ from collections.abc import Iterator, Mapping
 from dataclasses import replace
 
 from layoutgen.circuit import End, EndKind
-from layoutgen.circuit.queries import ends_of
 from layoutgen.placement.clearance import Kind, Obstacle, Obstacles
 from layoutgen.placement.frame import Pose, unit
 from layoutgen.placement.kit import root_edge
@@ -166,7 +165,7 @@ def _holes_extent(model: Model, state: State, holes: list[Obstacle]) -> tuple[fl
 
 def _lay_root(model: Model, tour: Tour, layer: Layer, growth: Growth, root: End, pose: Pose) -> None:
     """Lay the first port and leave what follows pending; or begin at an element where there is no port."""
-    net = next(net for end, net in ends_of(model.file, root.element) if end.index == root.index)
+    net = next(net for end, net in model.ends[root.element] if end.index == root.index)
     hub = tour.hubs[net]
     if root.kind is not EndKind.PORT:
         layer.begin_without_port(growth, root, pose)

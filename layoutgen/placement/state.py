@@ -9,7 +9,7 @@ from dataclasses import dataclass, field, replace
 from layoutgen.circuit import End
 from layoutgen.geometry import Point
 from layoutgen.placement.clearance import Kind, Obstacle, Obstacles
-from layoutgen.placement.frame import Box, Pose, box_around, unit
+from layoutgen.placement.frame import Box, Pose, box_around, hull, unit
 from layoutgen.placement.records import Choice
 from layoutgen.placement.tour import Headings
 from layoutgen.placement.words import Route
@@ -232,15 +232,8 @@ class Growth:
 
     def extent(self, margins: Mapping[Kind, int]) -> tuple[float, float, float, float]:
         """Return the state's extent [nm] with this candidate's boxes and their margins."""
-        x0, y0, x1, y1 = self.state.extent
-        for item in self.obstacles:
-            if item.corridor:
-                continue
-            bx0, by0, bx1, by1 = item.reach(margins)
-            x0, y0, x1, y1 = min(x0, bx0), min(y0, by0), max(x1, bx1), max(y1, by1)
-        for box in self.forecast:
-            x0, y0, x1, y1 = min(x0, box[0]), min(y0, box[1]), max(x1, box[2]), max(y1, box[3])
-        return x0, y0, x1, y1
+        reaches = [item.reach(margins) for item in self.obstacles if not item.corridor]
+        return hull((self.state.extent, *reaches, *self.forecast))
 
     def applied(
         self,

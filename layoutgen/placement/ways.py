@@ -7,10 +7,9 @@ from dataclasses import dataclass, field, replace
 from functools import partial
 
 from layoutgen.circuit import End, EndKind
-from layoutgen.circuit.queries import ends_of
 from layoutgen.placement.budgets import LineLengths
 from layoutgen.placement.cluster import ClusterPlan, ClusterSolver, Solution
-from layoutgen.placement.frame import Box, Pose
+from layoutgen.placement.frame import Box, Pose, hull
 from layoutgen.placement.kit import Kit
 from layoutgen.placement.lay import Layer
 from layoutgen.placement.lay_cluster import Pinning, lay_cluster
@@ -124,7 +123,7 @@ class Ways:
         return wanted in choices and heading == (wanted + 180.0) % 360.0
 
     def _net(self, end: End) -> str:
-        return next(net for found, net in ends_of(self.model.file, end.element) if found.index == end.index)
+        return self.model.net_of(end)
 
     def _ways(self, pending: Pending, turn: float, state: State, word: Word | None) -> Iterator[Way]:
         end, layer, extent, here = pending.end, self.layer, state.extent, pending.at.heading
@@ -171,7 +170,7 @@ class Ways:
         """Return the cluster that a line of given length enters: its length depends on how it is met."""
         if self.model.sized.lines[end.element].free:
             return None
-        for far, net in ends_of(self.model.file, end.element):
+        for far, net in self.model.ends[end.element]:
             hub = self.tour.hubs.get(net)
             if far != end and hub is not None and hub.cluster is not None and hub.arrival == far:
                 return self.clusters[hub.cluster]
@@ -232,23 +231,18 @@ class Ways:
         self, end: End, start: Pose, choice: RouteChoice, state: State
     ) -> tuple[float, float, float, float]:
         """Return the least extent [nm] that a route brings about: a bound for the cost of building it."""
-        points = list(route_points(start, choice.route)[0])
-        points += [corner for box in choice.forecast for corner in (box[:2], box[2:])]
-        x0, y0, x1, y1 = state.extent
+        x, y = zip(*route_points(start, choice.route)[0], strict=True)
         half = self.model.widths[end.element] / 2
-        return (
-            min(x0, *(p[0] - half for p in points)),
-            min(y0, *(p[1] - half for p in points)),
-            max(x1, *(p[0] + half for p in points)),
-            max(y1, *(p[1] + half for p in points)),
-        )
+        route = (min(x) - half, min(y) - half, max(x) + half, max(y) + half)
+        forecast = ((x0 - half, y0 - half, x1 + half, y1 + half) for x0, y0, x1, y1 in choice.forecast)
+        return hull((state.extent, route, *forecast))
 
     def _meets_bank(self, end: End) -> bool:
         """True when an element leads straight, or through parts, into a bank: its side is then a choice."""
         seen, stack = set(), [end]
         while stack:
             here = stack.pop()
-            for far, net in ends_of(self.model.file, here.element):
+            for far, net in self.model.ends[here.element]:
                 if far.index == here.index or net == GROUND or net in seen:
                     continue
                 seen.add(net)

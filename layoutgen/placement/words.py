@@ -110,14 +110,14 @@ def reversed_word(word: Word) -> Word:
 
 def route_points(start: Pose, route: Route) -> tuple[tuple[Point, ...], Pose]:
     """Return the vertices [nm] of a route and the pose at its end."""
-    x, y = float(start.x), float(start.y)
+    x, y, heading = float(start.x), float(start.y), start.heading % 360.0
     points = [start.point]
-    headings = headings_of(start.heading, route.word)
-    for heading, leg in zip(headings, route.legs, strict=True):
+    for leg, turn in zip(route.legs, (*route.word, 0.0), strict=True):
         ux, uy = unit(heading)
         x, y = x + ux * leg, y + uy * leg
         points.append((round(x), round(y)))
-    return tuple(points), Pose(points[-1][0], points[-1][1], headings[-1])
+        arrived, heading = heading, (heading + turn) % 360.0
+    return tuple(points), Pose(*points[-1], arrived)
 
 
 def least_legs(word: Word, rules: LegRules) -> tuple[int, ...]:

@@ -1,9 +1,8 @@
 """The response correction: lengths at which the drawing does what the schematic did.
 
 In: an artwork. Out: by line and pair given by angle, the correction [rad] for ``size_circuit``; bounded least
-squares over the S-parameters in the band, without losses; mirror images get equal corrections. A line is
-drawn longer or shorter by a quarter of its angle and by 15 degrees at most, and only as far as it helps:
-a small price on every change leaves alone what the response does not feel.
+squares over the S-parameters in the band, without losses (``fit``); mirror images get equal corrections. A
+line is drawn longer or shorter by half its angle and by 15 degrees at most, and only as far as it helps.
 """
 
 from __future__ import annotations
@@ -17,6 +16,7 @@ import numpy as np
 
 from layoutgen.artwork import Artwork
 from layoutgen.response.chain import FloatArray
+from layoutgen.response.fit import fitted
 from layoutgen.response.match import Match, resized
 from layoutgen.response.sweep import part_data
 from layoutgen.response.trace import trace_copper
@@ -25,11 +25,8 @@ from layoutgen.sizing import SizedCircuit
 __all__ = ["MOST_CHANGE", "LengthFit", "correct_lengths"]
 
 MOST_CHANGE = math.radians(15.0)
-"""Bound of a correction [rad]; a quarter of the line's angle and half its copper are others."""
+"""Bound of a correction [rad]; half the line's angle and half its copper are others."""
 
-_PRICE = 4e-3  # what a change of a radian costs, as a difference of S [-]
-_ROUNDS = 6
-_SETTLED = 0.02  # of the cost, relative
 _WORTH = 2e-3  # of the largest difference of S [-]; less is not worth another drawing
 _LEAST = 1e-4  # corrections below are left out [rad]
 
@@ -69,7 +66,7 @@ def correct_lengths(
     match = Match(artwork, part_data(old.circuit.file, folder), copper)
     if not match.groups or not match.wanted.size:
         return LengthFit(old.corrections)
-    x = _fitted(match)
+    x = fitted(match, *_bounds(match))
     found = match.difference(np.array([0.0 * x, -match.total, x]))
     now, uncorrected, expected = np.max(np.abs(found), axis=(1, 2, 3)).tolist()
     if expected > now - _WORTH:
@@ -87,59 +84,10 @@ def _by_name(match: Match, total: FloatArray) -> dict[str, float]:
     }
 
 
-def _fitted(match: Match) -> FloatArray:
-    """Return the change (G,) [rad] of least cost."""
-    low, high = _bounds(match)
-    x = np.clip(np.zeros(low.size), low, high)
-    cost = np.inf
-    for _ in range(_ROUNDS):
-        difference, slope = match.around(x)
-        before, cost = cost, _cost(match, x, difference)
-        if cost > before * (1.0 - _SETTLED):
-            break
-        price = _PRICE**2 * difference.size
-        curve = (slope.conj().T @ slope).real + price * np.eye(x.size)
-        fall = (slope.conj().T @ difference).real + price * (match.total + x)
-        step = _bounded_step(curve, fall, low - x, high - x)
-        x = x + _shortened(match, x, step, cost) * step
-    return x
-
-
-def _cost(match: Match, x: FloatArray, difference: np.ndarray[tuple[int], np.dtype[np.complex128]]) -> float:
-    """Return the sum of squares with the price of the changes."""
-    squares = float(np.sum(np.abs(difference) ** 2))
-    return squares + _PRICE**2 * difference.size * float(np.sum((match.total + x) ** 2))
-
-
-def _shortened(match: Match, x: FloatArray, step: FloatArray, cost: float) -> float:
-    """Return the largest share of a step that lowers the cost: 1, a half, a quarter, or none."""
-    shares = np.array([1.0, 0.5, 0.25])
-    tried = match.difference(x + shares[:, None] * step)
-    for share, difference in zip(shares.tolist(), tried, strict=True):
-        if _cost(match, x + share * step, difference.ravel()) < cost:
-            return float(share)
-    return 0.0
-
-
 def _bounds(match: Match) -> tuple[FloatArray, FloatArray]:
     """Return the least and the largest change (G,) [rad], counted from the drawing."""
     sized = match.artwork.placement.sized
     asked = np.array([(sized.lines.get(g[0]) or sized.pairs[g[0]]).angle for g in match.groups], dtype=float)
-    most = np.minimum(0.25 * asked, MOST_CHANGE)
+    most = np.minimum(0.5 * asked, MOST_CHANGE)
     low = np.maximum(-most, match.total - 0.5 * match.own)
     return np.minimum(low - match.total, 0.0), np.maximum(most - match.total, 0.0)
-
-
-def _bounded_step(curve: FloatArray, fall: FloatArray, low: FloatArray, high: FloatArray) -> FloatArray:
-    """Return the minimum of half d curve d + fall d with low <= d <= high; what meets a bound stays there."""
-    step = np.zeros(fall.size)
-    free = np.ones(fall.size, dtype=np.bool_)
-    while np.any(free):
-        right = -fall[free] - curve[np.ix_(free, ~free)] @ step[~free]
-        step[free] = np.linalg.solve(curve[np.ix_(free, free)], right)
-        beyond = free & ((step < low) | (step > high))
-        if not np.any(beyond):
-            break
-        step = np.where(beyond, np.clip(step, low, high), step)
-        free &= ~beyond
-    return step

@@ -9,6 +9,7 @@ import numpy as np
 from layoutgen.artwork import Artwork
 from layoutgen.response.copper import Copper
 from layoutgen.response.drawn import drawn_network
+from layoutgen.response.fit import largest
 from layoutgen.response.holders import holders, reachable
 from layoutgen.response.match import Match
 from layoutgen.response.records import CLOSE_ENOUGH, Correction
@@ -30,15 +31,16 @@ def correction_figures(
     """
     match = Match(artwork, data, copper)
     here, undone = match.difference(np.array([0.0 * match.total, -match.total]))
-    after, before = (float(np.max(np.abs(found), initial=0.0)) for found in (here, undone))
+    after, before = largest(here), largest(undone)
     lossy = solve(drawn_network(artwork, match.frequencies, data, copper=match.copper))
     short = after > CLOSE_ENOUGH
     best = min(after, reachable(match)) if short else after
     return Correction(
         before=before,
         after=after,
-        losses=float(np.max(np.abs(lossy - match.wanted - here), initial=0.0)),
+        unallowed=largest(match.unallowed()),
+        losses=largest(lossy - match.wanted - here),
         angles=dict(artwork.placement.sized.corrections),
         reachable=best,
-        holders=holders(match) if best > CLOSE_ENOUGH else (),
+        holders=holders(match, best) if best > CLOSE_ENOUGH else (),
     )

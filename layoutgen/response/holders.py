@@ -1,113 +1,175 @@
 """What holds the difference that lengths cannot remove: each cause made ideal in turn, lengths fitted anew.
 
-In: a :class:`Match`. Out: for each element, how large the difference would be without what it adds: a
-junction its susceptance and strips, a part its pads, the gap under it and its vias, a grounded line its vias,
-a coupled pair the unequal speeds of its modes. Lengths are fitted along their derivatives only, which is
-enough for a comparison.
+In: a :class:`Match`. Out: for each element, together with its mirror images, how large the difference would
+be without what it adds: a junction its susceptance and strips, a part its pads, the gap under it and its
+vias, a grounded line its vias, a coupled pair the unequal speeds of its modes.
 """
 
 from __future__ import annotations
 
-from collections.abc import Iterator
-from dataclasses import replace
+from collections.abc import Callable, Iterable, Iterator, Mapping
+from dataclasses import dataclass, replace
+from functools import reduce
 
 import numpy as np
 
-from layoutgen.response.chain import ComplexArray
 from layoutgen.response.copper import Copper, Piece
+from layoutgen.response.fit import fitted, largest
 from layoutgen.response.match import Match
+from layoutgen.response.mirror import grouped, mirror_images
 from layoutgen.response.network import GROUND
-from layoutgen.response.records import Holder
+from layoutgen.response.records import CLOSE_ENOUGH, Holder
 
 __all__ = ["holders", "reachable"]
 
-_PRICE = 4e-3  # what a change of a radian costs, as a difference of S [-]
 _NAMED = 3  # elements named
 _HELPS = 0.95  # a cause counts when the difference falls below this share without it [-]
+_REACH = 1.0  # changes of length that are tried [rad]
 
 
 def reachable(match: Match) -> float:
     """Return the largest difference [-] that the best lengths would leave, whatever their bounds."""
-    return _largest(_fitted(*match.around(np.zeros(len(match.groups)))))
+    most = np.full(len(match.groups), _REACH)
+    return largest(match.difference(fitted(match, -most, most)[None]))
 
 
-def holders(match: Match) -> tuple[Holder, ...]:
-    """Return what holds the difference that no lengths remove, the strongest first, at most three.
+def holders(match: Match, best: float) -> tuple[Holder, ...]:
+    """Return what holds the difference that no lengths remove, the strongest first, at most four.
 
-    Without each, the largest difference in the band would be the holder's ``without`` [-].
+    Without each, the largest difference in the band would be the holder's ``without`` [-]. When no element
+    with its mirror images holds it alone, the strongest kind of cause is named last, with all its elements.
+
+    Args:
+        match: As drawn against wanted.
+        best: What the best lengths leave of the drawing as it is [-].
     """
-    here, slope = match.around(np.zeros(len(match.groups)))
-    limit = _HELPS * _largest(_fitted(here, slope))
-    zero = np.zeros((1, len(match.groups)))
+    causes = _causes(match)
+    found = _helping(match, causes, _HELPS * best)[:_NAMED]
+    if found and found[0].without <= CLOSE_ENOUGH:
+        return tuple(found)
+    limit = _HELPS * (found[0].without if found else best)
+    return (*found, *_helping(match, _kinds(causes), limit)[:1])
+
+
+def _helping(match: Match, causes: Iterable[_Cause], limit: float) -> list[Holder]:
+    """Return the causes without which less than a limit [-] would be left, the strongest first."""
     found = []
-    for element, what, bare in _idealised(match.copper):
-        left = _largest(_fitted(match.difference(zero, bare).ravel(), slope))
-        found.append(Holder(element=element, what=what, without=left))
-    real = [holder for holder in found if holder.without < limit]
-    return tuple(sorted(real, key=lambda holder: holder.without)[:_NAMED])
+    for cause in causes:
+        left = reachable(match.with_copper(cause.removed(match.copper)))
+        if left < limit:
+            first, *alike = cause.names
+            found.append(Holder(element=first, what=cause.what, without=left, alike=tuple(alike)))
+    return sorted(found, key=lambda holder: holder.without)
 
 
-def _largest(difference: ComplexArray) -> float:
-    """Return the largest magnitude [-], zero of nothing."""
-    return float(np.max(np.abs(difference), initial=0.0))
+@dataclass(frozen=True, slots=True)
+class _Cause:
+    """What elements add, and how the copper is without that: a function of copper and an element."""
+
+    kind: str
+    names: tuple[str, ...]
+    what: str
+    without: Callable[[Copper, str], Copper]
+
+    def removed(self, copper: Copper) -> Copper:
+        """Return the copper without what all the elements add."""
+        return reduce(self.without, self.names, copper)
 
 
-def _fitted(difference: ComplexArray, slope: ComplexArray) -> ComplexArray:
-    """Return what small changes of the lengths leave of a difference."""
-    if not slope.shape[1]:
-        return difference
-    curve = (slope.conj().T @ slope).real + _PRICE**2 * difference.size * np.eye(slope.shape[1])
-    x = np.linalg.solve(curve, -(slope.conj().T @ difference).real)
-    return np.asarray(difference + slope @ x)
-
-
-def _idealised(copper: Copper) -> Iterator[tuple[str, str, Copper]]:
-    """Yield an element, what it adds, and the copper without that."""
-    for net in dict.fromkeys(joint.net for joint in copper.joints):
-        yield from _without_junctions(copper, net)
-    for part in dict.fromkeys(key.partition(".")[0] for key in copper.terminals):
-        yield from _without_lands(copper, part)
-    grounded = {post.node for post in copper.posts}
-    names = [piece.line for piece in copper.pieces if piece.line] + [pair.line for pair in copper.pairs]
-    for line in dict.fromkeys(names):
-        feet = {f"foot {end} of {line}" for end in range(4)}
-        if feet & grounded:
-            yield line, "its ground vias", _grounded(copper, feet)
-    for pair in copper.pairs:
-        equal = tuple(replace(p, equal_modes=True) if p is pair else p for p in copper.pairs)
-        yield pair.line, "the unequal speeds of its modes", replace(copper, pairs=equal)
-
-
-def _without_junctions(copper: Copper, net: str) -> Iterator[tuple[str, str, Copper]]:
-    """Yield a net's junctions without susceptance and its strips without length."""
-    nodes = {joint.node for joint in copper.joints if joint.net == net}
-    strips = [
-        piece for piece in copper.pieces if piece.near in nodes and piece.far in nodes and not piece.line
+def _causes(match: Match) -> list[_Cause]:
+    """Return what may hold a difference, elements that are mirror images together."""
+    elements, nets = mirror_images(match.artwork.placement.sized.circuit.file)
+    found = [
+        *_junction_causes(match.copper, nets),
+        *_land_causes(match.copper, elements),
+        *_foot_causes(match.copper, elements),
     ]
-    busy = any(len(joint.arms) > 2 for joint in copper.joints if joint.net == net)
-    if not strips and not busy:
-        return
-    pieces = tuple(replace(p, length=0.0) if p in strips else p for p in copper.pieces)
-    joints = tuple(replace(joint, lump=False) if joint.net == net else joint for joint in copper.joints)
-    what = " and ".join(["the junction's susceptance"] * busy + ["its strips"] * bool(strips))
-    yield net, what, replace(copper, pieces=pieces, joints=joints)
+    for names in grouped([pair.line for pair in match.copper.pairs], elements):
+        found.append(_Cause("pair", names, "the unequal speeds of its modes", _with_equal_modes))
+    return found
 
 
-def _without_lands(copper: Copper, part: str) -> Iterator[tuple[str, str, Copper]]:
-    """Yield the copper without what a part's lands add: pads, gap and vias."""
-    ends = {node for key, node in copper.terminals.items() if key.partition(".")[0] == part}
-    feet = {f"foot of {key}" for key in copper.terminals if key.partition(".")[0] == part}
-    pieces = tuple(
-        _without_pad(copper, number, piece) if not piece.line and ends & {piece.near, piece.far} else piece
+def _kinds(causes: Iterable[_Cause]) -> Iterator[_Cause]:
+    """Yield the causes of each kind joined, where there are several."""
+    by_kind: dict[str, list[_Cause]] = {}
+    for cause in causes:
+        by_kind.setdefault(cause.kind, []).append(cause)
+    for held in by_kind.values():
+        if len(held) > 1:
+            names = tuple(name for cause in held for name in cause.names)
+            longest = max(held, key=lambda cause: len(cause.what))
+            yield replace(longest, names=names)
+
+
+def _junction_causes(copper: Copper, nets: Mapping[str, int]) -> Iterator[_Cause]:
+    """Yield the nets whose junctions have a susceptance, or strips."""
+    for names in grouped(dict.fromkeys(joint.net for joint in copper.joints), nets):
+        busy = any(len(joint.arms) > 2 for joint in copper.joints if joint.net == names[0])
+        what = ["the junction's susceptance"] * busy + ["its strips"] * bool(_strips(copper, names[0]))
+        if what:
+            yield _Cause("junction", names, " and ".join(what), _without_junctions)
+
+
+def _land_causes(copper: Copper, elements: Mapping[str, int]) -> Iterator[_Cause]:
+    """Yield the parts with what their lands add: pads, gap and vias."""
+    parts = dict.fromkeys(key.partition(".")[0] for key in copper.terminals)
+    for names in grouped(parts, elements):
+        part = names[0]
+        has_gap = part in copper.gaps
+        has_vias = any(post.node in _feet(copper, part) for post in copper.posts)
+        if has_gap or has_vias or _pads(copper, part):
+            what = "its pads" + ", the gap under it" * has_gap + ", its ground vias" * has_vias
+            yield _Cause("part", names, what, _without_lands)
+
+
+def _foot_causes(copper: Copper, elements: Mapping[str, int]) -> Iterator[_Cause]:
+    """Yield the lines and pairs that end on ground vias."""
+    grounded = {post.node for post in copper.posts}
+    lines = [piece.line for piece in copper.pieces if piece.line] + [pair.line for pair in copper.pairs]
+    for names in grouped(dict.fromkeys(lines), elements):
+        if _line_feet(names[0]) & grounded:
+            yield _Cause("foot", names, "its ground vias", _without_line_feet)
+
+
+def _strips(copper: Copper, net: str) -> set[int]:
+    """Return the numbers of the pieces that are strips of a net."""
+    nodes = {joint.node for joint in copper.joints if joint.net == net}
+    return {
+        number
         for number, piece in enumerate(copper.pieces)
-    )
-    has_gap = part in copper.gaps
-    has_vias = any(post.node in feet for post in copper.posts)
-    if pieces == copper.pieces and not has_gap and not has_vias:
-        return
+        if piece.near in nodes and piece.far in nodes and not piece.line
+    }
+
+
+def _without_junctions(copper: Copper, net: str) -> Copper:
+    """Return the copper with a net's junctions without susceptance and its strips without length."""
+    strips = _strips(copper, net)
+    pieces = tuple(replace(p, length=0.0) if k in strips else p for k, p in enumerate(copper.pieces))
+    joints = tuple(replace(joint, lump=False) if joint.net == net else joint for joint in copper.joints)
+    return replace(copper, pieces=pieces, joints=joints)
+
+
+def _pads(copper: Copper, part: str) -> set[int]:
+    """Return the numbers of the pieces that are pads of a part."""
+    ends = {node for key, node in copper.terminals.items() if key.partition(".")[0] == part}
+    return {
+        number
+        for number, piece in enumerate(copper.pieces)
+        if not piece.line and ends & {piece.near, piece.far}
+    }
+
+
+def _feet(copper: Copper, part: str) -> set[str]:
+    """Return the nodes at which a part's pads may end on ground vias."""
+    return {f"foot of {key}" for key in copper.terminals if key.partition(".")[0] == part}
+
+
+def _without_lands(copper: Copper, part: str) -> Copper:
+    """Return the copper without what a part's lands add: pads, gap and vias."""
+    pads = _pads(copper, part)
+    pieces = tuple(_without_pad(copper, k, p) if k in pads else p for k, p in enumerate(copper.pieces))
     gaps = {name: gap for name, gap in copper.gaps.items() if name != part}
-    bare = replace(_grounded(copper, feet), pieces=pieces, gaps=gaps)
-    yield part, "its pads" + ", the gap under it" * has_gap + ", its ground vias" * has_vias, bare
+    return replace(_grounded(copper, _feet(copper, part)), pieces=pieces, gaps=gaps)
 
 
 def _without_pad(copper: Copper, number: int, piece: Piece) -> Piece:
@@ -117,6 +179,22 @@ def _without_pad(copper: Copper, number: int, piece: Piece) -> Piece:
     if len(others) == 1 and others[0].line:
         return replace(piece, width=others[0].width, gaps=others[0].gaps)
     return replace(piece, length=0.0)
+
+
+def _line_feet(line: str) -> set[str]:
+    """Return the nodes at which a line or pair may end on ground vias."""
+    return {f"foot {end} of {line}" for end in range(4)}
+
+
+def _without_line_feet(copper: Copper, line: str) -> Copper:
+    """Return the copper with a line's ground vias replaced by perfect ground."""
+    return _grounded(copper, _line_feet(line))
+
+
+def _with_equal_modes(copper: Copper, line: str) -> Copper:
+    """Return the copper with equal speeds of a pair's modes."""
+    pairs = tuple(replace(pair, equal_modes=True) if pair.line == line else pair for pair in copper.pairs)
+    return replace(copper, pairs=pairs)
 
 
 def _grounded(copper: Copper, feet: set[str]) -> Copper:

@@ -8,6 +8,7 @@ to the traced copper.
 from __future__ import annotations
 
 from collections.abc import Mapping
+from copy import copy as shallow_copy
 from dataclasses import replace
 
 import numpy as np
@@ -105,25 +106,44 @@ class Match:
         lengths |= {name: pair.centre_line for name, pair in placement.pairs.items()}
         return min(self._beta(name) * lengths[name] * 1e-9 for name in group)
 
-    def difference(self, changes: FloatArray, copper: Copper | None = None) -> ComplexArray:
+    def with_copper(self, copper: Copper) -> Match:
+        """Return the same with other copper: what if that were drawn."""
+        other = shallow_copy(self)
+        other.copper, other._board = copper, self._board_of(copper)
+        return other
+
+    def difference(self, changes: FloatArray) -> ComplexArray:
         """Return as drawn minus wanted, (V, F, N, N) [-], for changes (V, G) [rad]."""
-        return np.concatenate([self._drawn(part, copper) for part in self._batches(changes)]) - self.wanted
+        return np.concatenate([self._drawn(part) for part in self._batches(changes)]) - self.wanted
 
     def _batches(self, changes: FloatArray) -> list[FloatArray]:
         """Return the changes in parts whose results fit into memory."""
         count = max(1, _BATCH // max(1, self.wanted.size))
         return [changes[start : start + count] for start in range(0, len(changes), count)]
 
-    def _drawn(self, changes: FloatArray, copper: Copper | None) -> ComplexArray:
+    def _drawn(self, changes: FloatArray) -> ComplexArray:
         """Return the lossless S-parameters as drawn, (V, F, N, N) [-]."""
         longer = {
             name: changes[:, k, None] / self._beta(name)
             for k, group in enumerate(self.groups)
             for name in group
         }
-        board = self._board if copper is None else self._board_of(copper)
-        s = solve(board.network({"": np.zeros((len(changes), 1)), **longer}))
+        s = solve(self._board.network({"": np.zeros((len(changes), 1)), **longer}))
         return s.reshape(len(changes), self.frequencies.size, *s.shape[1:])
+
+    def unallowed(self) -> ComplexArray:
+        """Return as drawn minus wanted, (F, N, N) [-], were every length just what the schematic asks for.
+
+        Nothing is then taken off or added for tees, steps, bends, open ends, pads and vias.
+        """
+        sized, placement = self.artwork.placement.sized, self.artwork.placement
+        longer = {}
+        for name in (name for group in self.groups for name in group):
+            placed = placement.lines.get(name) or placement.pairs[name]
+            asked = sized.lines.get(name) or sized.pairs[name]
+            change = (asked.angle or 0.0) / asked.beta - placed.centre_line * 1e-9
+            longer[name] = np.full(self.frequencies.shape, change)
+        return solve(self._board.network(longer)) - self.wanted
 
     def _board_of(self, copper: Copper) -> DrawnBoard:
         """Return the artwork's lossless board with some other copper."""
@@ -131,8 +151,8 @@ class Match:
         medium = medium_of(circuit, self.frequencies, lossless=True)
         return DrawnBoard(drawing_of(self.artwork, copper), medium, self.data)
 
-    def around(self, x: FloatArray, copper: Copper | None = None) -> tuple[ComplexArray, ComplexArray]:
+    def around(self, x: FloatArray) -> tuple[ComplexArray, ComplexArray]:
         """Return the difference at x, as a vector (M,), and its derivatives (M, G) [1/rad]."""
         steps = np.vstack([x, x + _STEP * np.eye(x.size)])
-        found = self.difference(steps, copper).reshape(len(steps), -1)
+        found = self.difference(steps).reshape(len(steps), -1)
         return found[0], ((found[1:] - found[0]) / _STEP).T

@@ -8,13 +8,13 @@ elements and nets numbers and refining them by their neighbours' until nothing m
 from __future__ import annotations
 
 import itertools
-from collections.abc import Hashable, Iterable
+from collections.abc import Hashable, Iterable, Mapping
 from dataclasses import dataclass
 
 from layoutgen.circuit import GROUND, OPEN
 from layoutgen.reading import CircuitFile, Part
 
-__all__ = ["mirror_groups"]
+__all__ = ["grouped", "mirror_groups", "mirror_images"]
 
 _PLAIN = ((0, 1), (1, 0))
 _PAIR = ((0, 1, 2, 3), (1, 0, 3, 2), (2, 3, 0, 1), (3, 2, 1, 0))
@@ -36,13 +36,23 @@ def mirror_groups(file: CircuitFile) -> tuple[tuple[str, ...], ...]:
     Returns:
         Names in file order within a group, groups in the order of their first names.
     """
-    elements = _elements(file)
-    colours = _refined(elements)
+    colours, _ = mirror_images(file)
+    given = [
+        name for name in (*file.lines, *file.coupled) if (file.lines.get(name) or file.coupled[name]).angle
+    ]
+    return grouped(given, colours)
+
+
+def mirror_images(file: CircuitFile) -> tuple[dict[str, int], dict[str, int]]:
+    """Return a number for each element and for each net, the same for those that are mirror images."""
+    return _refined(_elements(file))
+
+
+def grouped(names: Iterable[str], colours: Mapping[str, int]) -> tuple[tuple[str, ...], ...]:
+    """Return names in groups of the same number, in the order of their first names."""
     groups: dict[int, list[str]] = {}
-    for name in (*file.lines, *file.coupled):
-        held = file.lines.get(name) or file.coupled[name]
-        if held.angle is not None:
-            groups.setdefault(colours[name], []).append(name)
+    for name in names:
+        groups.setdefault(colours[name], []).append(name)
     return tuple(tuple(group) for group in groups.values())
 
 
@@ -74,8 +84,8 @@ def _part_orders(part: Part, ends: int) -> tuple[tuple[int, ...], ...]:
     return _PLAIN if part.nets is not None and part.data is None else (tuple(range(ends)),)
 
 
-def _refined(elements: dict[str, _Element]) -> dict[str, int]:
-    """Return a number for each element; equal numbers for those that cannot be told apart."""
+def _refined(elements: dict[str, _Element]) -> tuple[dict[str, int], dict[str, int]]:
+    """Return a number for each element and each net; equal numbers for those that cannot be told apart."""
     nets = dict.fromkeys(itertools.chain.from_iterable(e.nets for e in elements.values()), 0)
     nets |= {OPEN: 1, GROUND: 2}
     colours = _numbered((name, element.kind) for name, element in elements.items())
@@ -91,7 +101,7 @@ def _refined(elements: dict[str, _Element]) -> dict[str, int]:
         nets = _numbered(signs.items())
         colours = _numbered((name, (colours[name], _seen(e, nets))) for name, e in elements.items())
         if (len(set(colours.values())), len(set(nets.values()))) == before:
-            return colours
+            return colours, nets
 
 
 def _seen(element: _Element, nets: dict[str, int]) -> tuple[int, ...]:

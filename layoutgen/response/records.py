@@ -24,6 +24,8 @@ __all__ = [
 CLOSE_ENOUGH = 0.02
 """Largest |as drawn - wanted| in the band up to which the drawing counts as the schematic [-]."""
 
+_FEW = 3  # names in one sentence
+
 NOTE_RULE = "response"
 """The name that the response's notes stand under in the list of findings."""
 
@@ -40,11 +42,22 @@ def _no_matrices() -> npt.NDArray[np.complex128]:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Holder:
-    """An element that holds the difference: its name, what it adds, and how large it were ``without`` [-]."""
+    """What holds the difference: an element, what it adds, and how large it were ``without`` [-].
+
+    ``alike`` are further elements of which the same is meant: its mirror images, or all of its kind.
+    """
 
     element: str
     what: str
     without: float
+    alike: tuple[str, ...] = ()
+
+    @property
+    def cause(self) -> str:
+        """What is added, for a sentence on the element."""
+        if len(self.alike) > _FEW:
+            return f"{self.what}, and those of {len(self.alike)} more"
+        return f"{self.what}, and those of {', '.join(self.alike)}" if self.alike else self.what
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)
@@ -52,7 +65,8 @@ class Correction:
     """What adjusting the lengths has done for the band.
 
     ``after`` is the largest |as drawn - wanted| of all S-parameters in the band, without losses [-], and
-    ``before`` what it would be were the same drawing's lengths not adjusted; ``losses`` is the largest
+    ``before`` what it would be were the same drawing's lengths not adjusted, and ``unallowed`` what it would
+    be were they just the schematic's, with nothing allowed for at ends and bends. ``losses`` is the largest
     change of an S-parameter in the band by the losses of lines and vias [-]; ``angles`` are the budget
     entries ``response_correction`` by line or pair [rad]. ``reachable`` is ``after`` when that is at most
     ``CLOSE_ENOUGH``, else what the best lengths would leave [-]; when that is still above, ``holders`` name
@@ -65,6 +79,7 @@ class Correction:
     angles: Mapping[str, float]
     reachable: float
     holders: tuple[Holder, ...] = ()
+    unallowed: float | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -87,8 +87,8 @@ def _remainder(correction: Correction) -> tuple[tuple[str, str, str], ...]:
         return ((NOTE_RULE, "", f"{text}; other lengths would bring that to {correction.reachable:.3f}"),)
     if not correction.holders:
         return ((NOTE_RULE, "", f"{text}; no single element holds it"),)
-    first = correction.holders[0]
-    return ((NOTE_RULE, first.element, f"{text}; {first.without:.3f} without {first.what}"),)
+    held = "; ".join(f"{h.without:.3f} without {h.cause}" for h in correction.holders[:1])
+    return ((NOTE_RULE, correction.holders[0].element, f"{text}; {held}"),)
 
 
 def _frozen(values: ArrayType) -> ArrayType:

@@ -36,7 +36,7 @@ SPARSE_FROM = 300
 _R = 50.0  # scale of all impedances [ohm]
 _STIFF = 1e3  # largest scaled admittance between two nodes: costs three digits
 _STIFF_TO_GROUND = 1e9  # on the diagonal alone it costs none
-_CHUNK_BYTES = 32e6
+_CHUNK_BYTES = 1e6  # of matrices at once: they stay in a processor's cache
 _BLOCK = 16  # right-hand sides of one sparse solution
 
 _Rows = npt.NDArray[np.intp]
@@ -170,7 +170,11 @@ def _assemble(network: Network, rows: _Rows | slice, unknowns: _Unknowns) -> _St
     for element in network.shunts:
         k = unknowns.node[element.node]
         _add(stamps, k, k, _R * _pick(element.admittance, rows))
-    for number, branch in enumerate(network.branches):
+    at_once = [k for k in range(len(network.branches)) if _is_usual(network, k, unknowns)]
+    if at_once:
+        _stamp_usual(stamps, network, at_once, rows, unknowns)
+    for number in sorted(set(range(len(network.branches))) - set(at_once)):
+        branch = network.branches[number]
         chain = Chain(*(_pick(value, rows) for value in branch.chain))
         near, far = _numbered(branch.near, unknowns), _numbered(branch.far, unknowns)
         if number in unknowns.current:
@@ -180,6 +184,34 @@ def _assemble(network: Network, rows: _Rows | slice, unknowns: _Unknowns) -> _St
     for number, block in enumerate(network.blocks):
         _stamp_block(stamps, block, rows, unknowns, unknowns.wave[number])
     return stamps
+
+
+def _is_usual(network: Network, number: int, unknowns: _Unknowns) -> bool:
+    """Tell whether a branch is a plain two-port between nodes of weight 1, known at every frequency."""
+    branch = network.branches[number]
+    if number in unknowns.current or len(branch.near) + len(branch.far) != 2:
+        return False
+    plain = branch.near[0][1] == branch.far[0][1] == 1.0
+    return plain and all(np.shape(value) == (network.size,) for value in branch.chain)
+
+
+def _stamp_usual(
+    stamps: _Stamps, network: Network, numbers: Sequence[int], rows: _Rows | slice, unknowns: _Unknowns
+) -> None:
+    """Add plain two-ports by their admittances, (1/b) [[d, -1], [-1, a]], worked out for all at once."""
+    branches = [network.branches[number] for number in numbers]
+    a, b, d = (np.array([getattr(branch.chain, key) for branch in branches])[:, rows] for key in "abd")
+    transfer = -_R / b
+    far_own, near_own = -transfer * a, -transfer * d
+    for k, branch in enumerate(branches):
+        i, j = (unknowns.node.get(side[0][0], -1) for side in (branch.near, branch.far))
+        if i >= 0:
+            _add(stamps, i, i, near_own[k])
+        if j >= 0:
+            _add(stamps, j, j, far_own[k])
+        if i >= 0 and j >= 0:
+            _add(stamps, i, j, transfer[k])
+            _add(stamps, j, i, transfer[k])
 
 
 def _pick(value: npt.ArrayLike, rows: _Rows | slice) -> ComplexArray:
@@ -196,8 +228,10 @@ def _numbered(ends: Ends, unknowns: _Unknowns) -> list[tuple[int, float]]:
 def _add(stamps: _Stamps, row: int, column: int, value: _Values) -> None:
     """Add a value to one place of the matrix."""
     place = (row, column)
-    added = np.asarray(value, dtype=np.complex128)
-    stamps[place] = stamps[place] + added if place in stamps else added
+    if place in stamps:
+        stamps[place] = stamps[place] + value
+    else:
+        stamps[place] = np.asarray(value, dtype=np.complex128)
 
 
 def _stamp_admittance(
@@ -258,14 +292,15 @@ def _solve_dense(positions: _Rows, values: ComplexArray, right: ComplexArray, at
     (n, N) the right-hand sides.
     """
     n, count = right.shape[0], values.shape[1]
-    flat = positions[:, 0] * n + positions[:, 1]
+    flat = positions[:, 1] * n + positions[:, 0]  # column by column, as the library's solver wants them
     chunk = max(1, int(_CHUNK_BYTES / (16 * n * n)))
     solution = np.empty((count, at.size, right.shape[1]), dtype=np.complex128)
+    matrix = np.zeros((min(chunk, count), n * n), dtype=np.complex128)
     for start in range(0, count, chunk):
         part = values[:, start : start + chunk].T
-        matrix = np.zeros((part.shape[0], n * n), dtype=np.complex128)
-        matrix[:, flat] = part
-        solution[start : start + chunk] = _solve_batch(matrix.reshape(-1, n, n), right)[:, at]
+        matrix[: len(part), flat] = part  # the same places every time
+        stack = matrix[: len(part)].reshape(-1, n, n).swapaxes(1, 2)
+        solution[start : start + chunk] = _solve_batch(stack, right)[:, at]
     return solution
 
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Mapping, Sequence
+from dataclasses import replace
 
 import numpy as np
 
@@ -11,11 +12,14 @@ from layoutgen.circuit import Circuit
 from layoutgen.formulas.limits import ipc2221_rise
 from layoutgen.origin import Fault
 from layoutgen.reading import CircuitFile, Line
+from layoutgen.sizing.junctions import bend_change
 from layoutgen.sizing.kinds import is_rf, single_lines
+from layoutgen.sizing.necks import RIGHT_ANGLE, mitre_for_neck
 from layoutgen.sizing.pours import Gaps
 from layoutgen.sizing.records import SizedLine
 from layoutgen.sizing.sections import MAX_U, MIN_U, Section, impedance_limits, sections, widths_for
 from layoutgen.sizing.stackup import NM, Stackup
+from layoutgen.sizing.supplies import current_width
 
 __all__ = ["line_faults", "rf_widths", "sized_lines"]
 
@@ -107,6 +111,10 @@ def sized_lines(
         [gaps[name][2] for name in names],
     )
     rises = _rises(circuit, stackup, [widths[name] for name in names], names)
+    worth = [
+        _with_neck(circuit, stackup, name, widths[name], section)
+        for name, section in zip(names, worth, strict=True)
+    ]
     return {
         name: _sized(circuit, name, lines[name], gaps[name], widths[name], section, rise)
         for name, section, rise in zip(names, worth, rises, strict=True)
@@ -119,6 +127,22 @@ def _rises(circuit: Circuit, stackup: Stackup, widths: Sequence[float], names: S
         return []
     currents = np.array([circuit.dc.currents[name] for name in names])
     return [float(rise) for rise in ipc2221_rise(currents, np.asarray(widths), stackup.thickness)]
+
+
+def _with_neck(circuit: Circuit, stackup: Stackup, name: str, width: float, section: Section) -> Section:
+    """Return a line's cross-section, its mitre reduced where the neck of a bend would not carry the current.
+
+    Bends are right angles, unless a hint names the turns.
+    """
+    layout = circuit.file.layout
+    hint = layout.hints.get(name) if layout is not None else None
+    turns = (RIGHT_ANGLE,) if hint is None or hint.route is None else hint.route.turns
+    neck = current_width(circuit.rules, stackup, circuit.dc.currents[name])
+    percent = mitre_for_neck(section.mitre_percent, turns, width, neck)
+    if percent == section.mitre_percent:
+        return section
+    change = bend_change(width / stackup.height, stackup.er, percent, RIGHT_ANGLE, stackup.t)
+    return replace(section, mitre_percent=percent, bend_length=change * stackup.height)
 
 
 def _sized(

@@ -35,7 +35,8 @@ class SizedLine:
     (infinity: none); ``loss`` [dB/m]; ``spread`` [-] the relative impedance difference of the second,
     independent model; ``rf`` is False for a line that joins DC nets only and of which nothing of RF is asked;
     ``current`` [A] is a magnitude, ``temperature_rise`` [K] by IPC-2221; ``flags`` say which formulas are
-    used outside their range.
+    used outside their range. ``mitre_percent`` [%] is that of a right-angle bend, already reduced where the
+    neck it leaves would be narrower than the current asks for, and ``bend_length`` [m] what such a bend adds.
     """
 
     name: str

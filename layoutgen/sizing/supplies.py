@@ -13,7 +13,7 @@ from layoutgen.sizing.pours import Gaps
 from layoutgen.sizing.sections import sections
 from layoutgen.sizing.stackup import Stackup, rounded_up
 
-__all__ = ["NOMINAL_FREE_LENGTH", "dc_resistances", "supply_width", "with_supplies"]
+__all__ = ["NOMINAL_FREE_LENGTH", "current_width", "dc_resistances", "supply_width", "with_supplies"]
 
 NOMINAL_FREE_LENGTH = 10e-3
 """Length of a line with ``length = "free"`` in the bias point before it is placed [m]."""
@@ -24,18 +24,26 @@ SUPPLY_STEP = 10e-6
 _ROUNDS = 8
 
 
-def supply_width(rules: RuleFile, stackup: Stackup, current: float) -> float:
-    """Return the narrowest width [m] that carries a current [A], rounded up to 10 um.
+def current_width(rules: RuleFile, stackup: Stackup, current: float) -> float:
+    """Return the width [m] that a current [A] asks for, exactly; 0 where no rule or no current asks.
 
-    The largest of ``copper.min_width``, the IPC-2221 width at ``current.temperature_rise`` and the width at
+    The larger of the IPC-2221 width at ``current.temperature_rise`` and the width at
     ``current.max_density``; rules that are absent ask for nothing.
     """
-    least, rule = stackup.min_width, rules.current
+    least, rule = 0.0, rules.current
     if rule is not None and rule.temperature_rise is not None:
         least = max(least, float(ipc2221_width(current, stackup.thickness, rule.temperature_rise)))
     if rule is not None and rule.max_density is not None:
         least = max(least, abs(current) / (rule.max_density * stackup.thickness))
-    return rounded_up(least, SUPPLY_STEP)
+    return least
+
+
+def supply_width(rules: RuleFile, stackup: Stackup, current: float) -> float:
+    """Return the narrowest width [m] that carries a current [A], rounded up to 10 um.
+
+    The larger of ``copper.min_width`` and :func:`current_width`.
+    """
+    return rounded_up(max(stackup.min_width, current_width(rules, stackup, current)), SUPPLY_STEP)
 
 
 def with_supplies(

@@ -1,9 +1,10 @@
-"""DXF R2010 in millimetres: closed polylines with true arcs, circles for drills, texts.
+"""DXF R2010 in millimetres: closed polylines with true arcs, circles for all that is round, texts.
 
 No hatches, no blocks. Outlines run counter-clockwise, holes and the profile's cut-outs clockwise; copper is
-where the outlines wind round more often counter-clockwise than clockwise (every shape keeps its own outlines,
-also where shapes of one net overlap). The header, tables and objects are the library's; the entities are
-written here as text, since the library takes more than linear time for many.
+where circles and outlines wind round more often counter-clockwise than clockwise (every shape keeps its own
+outlines, also where shapes of one net overlap). Circles add: round holes in copper are polylines of two arcs.
+No vertex is repeated and no edge is below 1 um. The header, tables and objects are the library's; the
+entities are written here as text, since the library takes more than linear time for many.
 """
 
 from __future__ import annotations
@@ -16,9 +17,10 @@ from typing import Any
 from layoutgen.artwork import LAYERS, Label, Shape
 from layoutgen.geometry import Ring
 from layoutgen.numbers import fixed, mm
-from layoutgen.writers.outlines import distinct_vertices, turned
+from layoutgen.writers.long_edges import long_edges
+from layoutgen.writers.outlines import turned
 from layoutgen.writers.records import Job, Result
-from layoutgen.writers.scene import labels_of, layers_of
+from layoutgen.writers.scene import Drawn, drawn_layers, labels_of
 
 __all__ = ["write_dxf"]
 
@@ -39,6 +41,10 @@ _COLOURS = {
 
 _MILLIMETRES, _METRIC = 4, 1
 _ENTITIES = "  2\nENTITIES\n"
+_NM = 1e6
+"""Nanometres in a millimetre; quotients of whole ones have six exact decimals up to 4,000 km."""
+_VERTEX = " 10\n%.6f\n 20\n%.6f\n"
+_CIRCLE = f"{_VERTEX} 30\n0.0\n 40\n%.6f\n"
 
 
 def write_dxf(result: Result, job: Job) -> bytes:
@@ -82,25 +88,36 @@ def _entities(result: Result, document: Any) -> str:
     """Return all entities as text, and move the document's handle counter past theirs."""
     handles = document.entitydb.handles
     first = int(str(handles), 16)
-    owner = document.modelspace().layout_key
-    bodies = list(_bodies(result))
-    handles.reset(f"{first + len(bodies):X}")
-    return "".join(
-        f"  0\n{kind}\n  5\n{first + i:X}\n330\n{owner}\n100\nAcDbEntity\n{body}"
-        for i, (kind, body) in enumerate(bodies)
-    )
+    writer = _Writer(document.modelspace().layout_key, first)
+    texts = [text for name, drawn in drawn_layers(result).items() for text in writer.layer(name, drawn)]
+    texts += [writer.entity("TEXT", _text(label)) for label in labels_of(result)]
+    handles.reset(f"{writer.handle:X}")
+    return "".join(texts)
 
 
-def _bodies(result: Result) -> Iterator[tuple[str, str]]:
-    """Yield type and body of every entity, layer by layer."""
-    for name, shapes in layers_of(result).items():
-        for shape in shapes:
-            if shape.role == "drill":
-                yield "CIRCLE", _circle(name, shape.outline)
-            else:
-                yield from (("LWPOLYLINE", _polyline(name, ring)) for ring in _rings(shape))
-    for label in labels_of(result):
-        yield "TEXT", _text(label)
+class _Writer:
+    """Writes entities one after another, each with the next handle."""
+
+    def __init__(self, owner: str, handle: int) -> None:
+        self.head = f"  0\n%s\n  5\n%X\n330\n{owner}\n100\nAcDbEntity\n"
+        self.handle = handle
+
+    def layer(self, name: str, drawn: Drawn) -> Iterator[str]:
+        """Yield outlines, then circles."""
+        for shape in drawn.shapes:
+            yield from (self.entity("LWPOLYLINE", _polyline(name, ring)) for ring in _rings(shape))
+        circle = f"{self.head}  8\n{name}\n100\nAcDbCircle\n{_CIRCLE}"
+        first, self.handle = self.handle, self.handle + len(drawn.circles)
+        yield from (
+            circle % ("CIRCLE", handle, x / _NM, y / _NM, radius / _NM)
+            for handle, (x, y, radius) in enumerate(drawn.circles, start=first)
+        )
+
+    def entity(self, kind: str, body: str) -> str:
+        """Return an entity."""
+        text = self.head % (kind, self.handle)
+        self.handle += 1
+        return text + body
 
 
 def _rings(shape: Shape) -> list[Ring]:
@@ -111,21 +128,14 @@ def _rings(shape: Shape) -> list[Ring]:
 
 
 def _polyline(layer: str, ring: Ring) -> str:
-    """Return the body of a closed polyline; a vertex that repeats the one before it is left out."""
-    vertices = distinct_vertices(ring)
+    """Return the body of a closed polyline without repeated vertices or edges below a micrometre."""
+    vertices = long_edges(ring)
     lines = [f"  8\n{layer}\n100\nAcDbPolyline\n 90\n{len(vertices)}\n 70\n1\n"]
     for (x, y), bulge in vertices:
-        lines.append(f" 10\n{mm(x)}\n 20\n{mm(y)}\n")
+        lines.append(_VERTEX % (x / _NM, y / _NM))
         if bulge:
             lines.append(f" 42\n{fixed(bulge, 12)}\n")
     return "".join(lines)
-
-
-def _circle(layer: str, ring: Ring) -> str:
-    """Return the body of a drill's circle from its two half-circle arcs."""
-    (x0, y0), (x1, _) = ring.points
-    middle, radius = (x0 + x1) // 2, (x1 - x0) // 2
-    return f"  8\n{layer}\n100\nAcDbCircle\n 10\n{mm(middle)}\n 20\n{mm(y0)}\n 30\n0.0\n 40\n{mm(radius)}\n"
 
 
 def _text(label: Label) -> str:

@@ -2,19 +2,21 @@
 
 The layers are those of the R2010 file, and ``keepout`` with the parts' courtyards. R12 cannot say that its
 numbers are millimetres: the square on ``reference``, south-west of the board, has sides of 10.000 mm, and a
-cross lies on the origin. Outlines run counter-clockwise, holes and cut-outs clockwise.
+cross lies on the origin. Outlines run counter-clockwise, holes and cut-outs clockwise; all that is round and
+no hole is a circle. No vertex is repeated and no edge is below 1 um.
 """
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterator
 
-from layoutgen.artwork import Label, Shape
+from layoutgen.artwork import Label
 from layoutgen.geometry import Point, Ring
 from layoutgen.numbers import fixed, mm
-from layoutgen.writers.outlines import as_circle, distinct_vertices, turned
+from layoutgen.writers.long_edges import long_edges
+from layoutgen.writers.outlines import turned
 from layoutgen.writers.records import Job, Result
-from layoutgen.writers.scene import labels_of, layers_of
+from layoutgen.writers.scene import drawn_layers, labels_of
 
 __all__ = ["KEEPOUT", "REFERENCE_SIDE", "reference_square", "write_dxf_r12"]
 
@@ -30,11 +32,15 @@ _COLOURS = {
 }  # fmt: skip
 """Colour index of each layer on screen [-]; those of the R2010 file."""
 
+_NM = 1e6
+"""Nanometres in a millimetre; quotients of whole ones have six exact decimals up to 4,000 km."""
+_PLACE = " 10\n%.6f\n 20\n%.6f\n 30\n0.0\n"
+
 
 def write_dxf_r12(result: Result, job: Job) -> bytes:
     """Return the DXF file; it is the same for equal results (``job`` changes nothing)."""
-    lines = [*_header(result), *_tables(), *_entities(result), "  0", "EOF"]
-    return ("\n".join(lines) + "\n").encode("ascii", "replace")
+    texts = [_header(result), *_tables(), *_entities(result), "  0\nEOF\n"]
+    return "".join(texts).encode("ascii", "replace")
 
 
 def reference_square() -> Ring:
@@ -43,109 +49,77 @@ def reference_square() -> Ring:
     return Ring.box(low, low, -_AWAY, -_AWAY)
 
 
-def _header(result: Result) -> Iterator[str]:
-    """Yield the version and the extents."""
+def _header(result: Result) -> str:
+    """Return the version and the extents."""
     width, height = result.placement.width, result.placement.height
     low = mm(-_AWAY - REFERENCE_SIDE)
-    yield from ("  0", "SECTION", "  2", "HEADER", "  9", "$ACADVER", "  1", "AC1009")
-    yield from ("  9", "$EXTMIN", " 10", low, " 20", low, " 30", "0.0")
-    yield from ("  9", "$EXTMAX", " 10", mm(width), " 20", mm(height), " 30", "0.0")
-    yield from ("  0", "ENDSEC")
+    return (
+        "  0\nSECTION\n  2\nHEADER\n  9\n$ACADVER\n  1\nAC1009\n"
+        f"  9\n$EXTMIN\n 10\n{low}\n 20\n{low}\n 30\n0.0\n"
+        f"  9\n$EXTMAX\n 10\n{mm(width)}\n 20\n{mm(height)}\n 30\n0.0\n  0\nENDSEC\n"
+    )
 
 
 def _tables() -> Iterator[str]:
     """Yield the line type and the layers."""
-    yield from ("  0", "SECTION", "  2", "TABLES")
-    yield from ("  0", "TABLE", "  2", "LTYPE", " 70", "1", "  0", "LTYPE", "  2", "CONTINUOUS", " 70", "0")
-    yield from ("  3", "solid", " 72", "65", " 73", "0", " 40", "0.0", "  0", "ENDTAB")
-    yield from ("  0", "TABLE", "  2", "LAYER", " 70", str(len(_COLOURS)))
+    yield "  0\nSECTION\n  2\nTABLES\n"
+    yield "  0\nTABLE\n  2\nLTYPE\n 70\n1\n  0\nLTYPE\n  2\nCONTINUOUS\n 70\n0\n"
+    yield "  3\nsolid\n 72\n65\n 73\n0\n 40\n0.0\n  0\nENDTAB\n"
+    yield f"  0\nTABLE\n  2\nLAYER\n 70\n{len(_COLOURS)}\n"
     for name, colour in _COLOURS.items():
-        yield from ("  0", "LAYER", "  2", name, " 70", "0", " 62", str(colour), "  6", "CONTINUOUS")
-    yield from ("  0", "ENDTAB", "  0", "ENDSEC")
+        yield f"  0\nLAYER\n  2\n{name}\n 70\n0\n 62\n{colour}\n  6\nCONTINUOUS\n"
+    yield "  0\nENDTAB\n  0\nENDSEC\n"
 
 
 def _entities(result: Result) -> Iterator[str]:
     """Yield shapes and texts, then keep-outs and what tells the scale."""
-    yield from ("  0", "SECTION", "  2", "ENTITIES")
-    for layer, shapes in layers_of(result).items():
-        for shape in shapes:
-            yield from _shape(layer, shape)
+    yield "  0\nSECTION\n  2\nENTITIES\n"
+    for layer, drawn in drawn_layers(result).items():
+        for shape in drawn.shapes:
+            yield _polyline(layer, turned(shape.outline, -1 if shape.role == "cutout" else 1))
+            yield from (_polyline(layer, turned(hole, -1)) for hole in shape.holes)
+        circle = f"  0\nCIRCLE\n  8\n{layer}\n{_PLACE} 40\n%.6f\n"
+        yield from (circle % (x / _NM, y / _NM, radius / _NM) for x, y, radius in drawn.circles)
     for label in labels_of(result):
-        yield from _text(label.layer, label)
+        yield _text(label.layer, label)
     for part in result.placement.parts.values():
-        yield from _polyline(KEEPOUT, part.courtyard)
+        yield _polyline(KEEPOUT, part.courtyard)
     yield from _marks()
-    yield from ("  0", "ENDSEC")
+    yield "  0\nENDSEC\n"
 
 
-def _shape(layer: str, shape: Shape) -> Iterator[str]:
-    circle = as_circle(shape.outline) if shape.role == "drill" else None
-    if circle:
-        x, y, radius = circle
-        yield from (
-            "  0",
-            "CIRCLE",
-            "  8",
-            layer,
-            " 10",
-            mm(x),
-            " 20",
-            mm(y),
-            " 30",
-            "0.0",
-            " 40",
-            mm(radius),
-        )
-        return
-    yield from _polyline(layer, turned(shape.outline, -1 if shape.role == "cutout" else 1))
-    for hole in shape.holes:
-        yield from _polyline(layer, turned(hole, -1))
+def _polyline(layer: str, ring: Ring) -> str:
+    """Return a closed polyline with straight edges, none below a micrometre."""
+    vertex = f"  0\nVERTEX\n  8\n{layer}\n{_PLACE}"
+    vertices = "".join(vertex % (x / _NM, y / _NM) for (x, y), _ in long_edges(Ring(ring.chords())))
+    head = f"  0\nPOLYLINE\n  8\n{layer}\n 66\n1\n 10\n0.0\n 20\n0.0\n 30\n0.0\n 70\n1\n"
+    return f"{head}{vertices}  0\nSEQEND\n  8\n{layer}\n"
 
 
-def _polyline(layer: str, ring: Ring) -> Iterator[str]:
-    """Yield a closed polyline with straight edges, no vertex twice in a row."""
-    points = [point for point, _ in distinct_vertices(Ring(ring.chords()))]
-    yield from (
-        "  0",
-        "POLYLINE",
-        "  8",
-        layer,
-        " 66",
-        "1",
-        " 10",
-        "0.0",
-        " 20",
-        "0.0",
-        " 30",
-        "0.0",
-        " 70",
-        "1",
-    )
-    for x, y in points:
-        yield from ("  0", "VERTEX", "  8", layer, " 10", mm(x), " 20", mm(y), " 30", "0.0")
-    yield from ("  0", "SEQEND", "  8", layer)
-
-
-def _text(layer: str, label: Label) -> Iterator[str]:
-    """Yield a text, its middle on its anchor."""
+def _text(layer: str, label: Label) -> str:
+    """Return a text, its middle on its anchor."""
     x, y = mm(label.x), mm(label.y)
-    yield from ("  0", "TEXT", "  8", layer, " 10", x, " 20", y, " 30", "0.0", " 40", mm(label.height))
-    yield from ("  1", label.text, " 50", fixed(label.rotation), " 72", "1", " 11", x, " 21", y, " 31", "0.0")
-    yield from (" 73", "2")
+    return (
+        f"  0\nTEXT\n  8\n{layer}\n 10\n{x}\n 20\n{y}\n 30\n0.0\n 40\n{mm(label.height)}\n"
+        f"  1\n{label.text}\n 50\n{fixed(label.rotation)}\n"
+        f" 72\n1\n 11\n{x}\n 21\n{y}\n 31\n0.0\n 73\n2\n"
+    )
 
 
 def _marks() -> Iterator[str]:
     """Yield the square of 10 mm with its size beside it, and the cross on the origin."""
     square = reference_square()
-    yield from _polyline("reference", square)
+    yield _polyline("reference", square)
     x, y = square.points[0]
-    at = ("  0", "TEXT", "  8", "reference", " 10", mm(x), " 20", mm(y - 2 * _TEXT), " 30", "0.0")
-    yield from (*at, " 40", mm(_TEXT), "  1", "10.000 mm")
-    for ends in (((-_ARM, 0), (_ARM, 0)), ((0, -_ARM), (0, _ARM))):
-        yield from _line("reference", ends)
+    at = f" 10\n{mm(x)}\n 20\n{mm(y - 2 * _TEXT)}\n 30\n0.0\n"
+    yield f"  0\nTEXT\n  8\nreference\n{at} 40\n{mm(_TEXT)}\n  1\n10.000 mm\n"
+    yield _line("reference", (-_ARM, 0), (_ARM, 0))
+    yield _line("reference", (0, -_ARM), (0, _ARM))
 
 
-def _line(layer: str, ends: Sequence[Point]) -> Iterator[str]:
-    (x0, y0), (x1, y1) = ends
-    yield from ("  0", "LINE", "  8", layer, " 10", mm(x0), " 20", mm(y0), " 30", "0.0")
-    yield from (" 11", mm(x1), " 21", mm(y1), " 31", "0.0")
+def _line(layer: str, start: Point, end: Point) -> str:
+    (x0, y0), (x1, y1) = start, end
+    return (
+        f"  0\nLINE\n  8\n{layer}\n 10\n{mm(x0)}\n 20\n{mm(y0)}\n 30\n0.0\n"
+        f" 11\n{mm(x1)}\n 21\n{mm(y1)}\n 31\n0.0\n"
+    )

@@ -11,7 +11,7 @@ import datetime
 import math
 import re
 import tempfile
-from collections.abc import Iterable, Mapping, Sequence
+from collections.abc import Mapping, Sequence
 from pathlib import Path
 from typing import Any
 
@@ -22,10 +22,9 @@ from layoutgen.artwork import LAYERS, Shape
 from layoutgen.errors import WrongInputError
 from layoutgen.geometry import Point, Ring
 from layoutgen.origin import Fault, Location
-from layoutgen.writers.outlines import as_circle
 from layoutgen.writers.pieces import MAX_VERTICES, clean_pieces
 from layoutgen.writers.records import Job, Result
-from layoutgen.writers.scene import labels_of, layers_of
+from layoutgen.writers.scene import Drawn, drawn_layers, labels_of
 
 __all__ = ["write_gds"]
 
@@ -34,8 +33,6 @@ _NM_PER_UNIT = 1000.0
 _LARGEST = 2**31 - 1
 _NO_TIME = datetime.datetime(2000, 1, 1)
 _NAME_LENGTH = 32
-
-Circles = dict[tuple[str, int], list[Point]]
 
 
 def write_gds(result: Result, job: Job) -> bytes:
@@ -46,15 +43,14 @@ def write_gds(result: Result, job: Job) -> bytes:
     """
     import gdstk
 
-    layers = layers_of(result)
+    layers = drawn_layers(result)
     _refuse_large(layers, result)
     library = gdstk.Library("layoutgen", unit=_UNIT, precision=_PRECISION)
     top = library.new_cell(_cell_name(job.stem))
-    circles: Circles = {}
-    for name, shapes in layers.items():
-        for shape in shapes:
-            _add(top, shape, *LAYERS[name], circles)
-    _add_circles(library, top, circles)
+    for name, drawn in layers.items():
+        polygons = [points for shape in drawn.shapes for points in _outlines(shape)]
+        top.add(*(gdstk.Polygon(_in_units(points), *LAYERS[name]) for points in polygons))
+        _add_circles(library, top, name, drawn.circles)
     for label in labels_of(result):
         layer, kind = LAYERS[label.layer]
         at = (label.x / _NM_PER_UNIT, label.y / _NM_PER_UNIT)
@@ -71,18 +67,6 @@ def _bytes_of(library: Any) -> bytes:
         return path.read_bytes()
 
 
-def _add(cell: Any, shape: Shape, layer: int, datatype: int, circles: Circles) -> None:
-    """Add one shape to a cell; a circle is only noted, as the layer, the radius and the middle."""
-    circle = None if shape.holes else as_circle(shape.outline)
-    if circle:
-        circles.setdefault((shape.layer, circle[2]), []).append(circle[:2])
-        return
-    import gdstk
-
-    for points in _outlines(shape):
-        cell.add(gdstk.Polygon(_in_units(points), layer, datatype))
-
-
 def _outlines(shape: Shape) -> list[tuple[Point, ...]]:
     """Return a shape as outlines without holes and of a legal number of vertices."""
     outer = shape.outline.chords()
@@ -91,36 +75,41 @@ def _outlines(shape: Shape) -> list[tuple[Point, ...]]:
     return clean_pieces(shapely.Polygon(outer, [hole.chords() for hole in shape.holes]))
 
 
-def _in_units(points: Sequence[Point]) -> Any:
+def _in_units(points: Any) -> Any:
     """Return vertices [nm] in the file's user units."""
     return np.array(points) / _NM_PER_UNIT
 
 
-def _add_circles(library: Any, top: Any, circles: Mapping[tuple[str, int], list[Point]]) -> None:
-    """Add one cell for each layer and radius, and a reference to it for each circle."""
+def _add_circles(library: Any, top: Any, name: str, circles: Sequence[tuple[int, int, int]]) -> None:
+    """Add one cell for each radius on a layer, and a reference to it for each circle."""
     import gdstk
 
-    for (name, radius), places in circles.items():
-        layer, datatype = LAYERS[name]
+    rounds = np.array(circles, dtype=np.int64).reshape(-1, 3)
+    for radius in np.unique(rounds[:, 2]).tolist():
         cell = library.new_cell(f"round_{2 * radius}_{name}"[:_NAME_LENGTH])
-        cell.add(gdstk.Polygon(_in_units(Ring.circle(0, 0, radius).chords()), layer, datatype))
-        top.add(*(gdstk.Reference(cell, (x / _NM_PER_UNIT, y / _NM_PER_UNIT)) for x, y in places))
+        cell.add(gdstk.Polygon(_in_units(Ring.circle(0, 0, radius).chords()), *LAYERS[name]))
+        places = _in_units(rounds[rounds[:, 2] == radius, :2])
+        reference = gdstk.Reference(cell, tuple(places[0]))
+        if len(places) > 1:  # in the file, each is a reference of its own
+            reference.repetition = gdstk.Repetition(offsets=places[1:] - places[0])
+        top.add(reference)
 
 
-def _refuse_large(layers: Mapping[str, Iterable[Shape]], result: Result) -> None:
+def _refuse_large(layers: Mapping[str, Drawn], result: Result) -> None:
     """Refuse coordinates that the format would silently wrap round."""
     reach = max(
-        (abs(c) for shapes in layers.values() for s in shapes for p in s.outline.points for c in p), default=0
+        *(_reach(drawn.circles) for drawn in layers.values()),
+        *(_reach(shape.outline.points) for drawn in layers.values() for shape in drawn.shapes),
+        _reach([(label.x, label.y) for label in labels_of(result)]),
     )
-    reach = max(reach, *(abs(c) for label in labels_of(result) for c in (label.x, label.y)), 0)
     if reach > _LARGEST:
-        fault = Fault(
-            Location("artwork", 0),
-            "",
-            f"a coordinate of {reach / 1e9:.3f} m",
-            "up to 2.147 m (32 bits of 1 nm)",
-        )
-        raise WrongInputError([fault])
+        found = f"a coordinate of {reach / 1e9:.3f} m"
+        raise WrongInputError([Fault(Location("artwork", 0), "", found, "up to 2.147 m (32 bits of 1 nm)")])
+
+
+def _reach(places: Sequence[tuple[int, ...]]) -> int:
+    """Return the largest coordinate [nm], whatever its sign."""
+    return int(np.abs(np.array(places, dtype=np.int64)).max(initial=0))
 
 
 def _cell_name(stem: str) -> str:

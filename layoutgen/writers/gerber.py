@@ -14,13 +14,14 @@ import uuid
 from collections.abc import Callable, Iterator, Sequence
 from functools import partial
 from importlib.metadata import version
+from itertools import chain
 
 from layoutgen.errors import WrongInputError
 from layoutgen.geometry import Ring
 from layoutgen.numbers import mm
 from layoutgen.origin import Fault, Location
 from layoutgen.writers.cut_ins import arc_centre
-from layoutgen.writers.gerber_objects import Aperture, Contour, Flash, Marks, objects_of
+from layoutgen.writers.gerber_objects import Aperture, Contour, Drawn, Flashes, Marks, objects_of
 from layoutgen.writers.outlines import distinct_vertices, turned
 from layoutgen.writers.records import Job, Result
 
@@ -39,8 +40,10 @@ GERBER_FUNCTIONS = {
 
 _NEGATIVE = ("soldermask_top", "soldermask_bottom")
 _PEN_MM = "0.100000"
-_TOO_LONG = re.compile(r"[XYIJ]-?(\d{11,})")
-"""Coordinates of more than four digits before the point."""
+_DIGITS = re.compile(r"\d+")
+_TOO_FAR = 10_000_000_000
+"""The first coordinate [nm] with more than four digits before the point."""
+_FLASH = "D03*"
 _FIRST_CODE = 10
 _STRAIGHT_NM = 0.5
 """Arcs that bulge less than this [nm] are written as straight edges."""
@@ -57,14 +60,14 @@ def write_gerber(result: Result, job: Job, layer: str) -> bytes:
     shapes = result.artwork.on(layer)
     if layer == "profile":
         pen = Aperture(f"C,{_PEN_MM}", "Profile")
-        apertures, body = [pen], list(_outlines([shape.outline for shape in shapes]))
+        drawn, body = Drawn([], [pen]), list(_outlines([shape.outline for shape in shapes]))
     else:
         drawn = objects_of(result, shapes)
-        apertures, body = drawn.apertures, _Drawing(drawn.apertures).lines(drawn.objects)
-    _refuse_large(body)
-    lines = [*_header(result, job, layer), *_definitions(apertures), *body, ""]
-    digest = hashlib.md5("".join(lines).encode("ascii"), usedforsecurity=False).hexdigest()
-    return ("\n".join(lines) + f"%TF.MD5,{digest}*%\nM02*\n").encode("ascii")
+        body = _Drawing(drawn.apertures).lines(drawn.objects)
+    _refuse_large(drawn, body)
+    text = "\n".join([*_header(result, job, layer), *_definitions(drawn.apertures), *body, ""])
+    digest = hashlib.md5(text.replace("\n", "").encode("ascii"), usedforsecurity=False).hexdigest()
+    return f"{text}%TF.MD5,{digest}*%\nM02*\n".encode("ascii")
 
 
 GERBER_WRITERS: dict[str, Callable[[Result, Job], bytes]] = {
@@ -138,7 +141,7 @@ class _Drawing:
         self.marks = Marks("")
         self.function: str | None = None
 
-    def lines(self, objects: Sequence[Flash | Contour]) -> list[str]:
+    def lines(self, objects: Sequence[Flashes | Contour]) -> list[str]:
         """Return the commands of all objects, and leave no attribute behind."""
         out: list[str] = []
         aperture = None
@@ -151,7 +154,7 @@ class _Drawing:
             if item.aperture is not aperture:
                 aperture = item.aperture
                 out.append(f"D{self.codes[aperture]}*")
-            out.append(f"X{item.x}Y{item.y}D03*")
+            out += [f"X{x}Y{y}{_FLASH}" for x, y in item.places]
         return [*out, *self._attributes(Marks("")), *self._function(None)]
 
     def _attributes(self, marks: Marks) -> Iterator[str]:
@@ -215,9 +218,12 @@ def _from_start(start: tuple[int, int], end: tuple[int, int], bulge: float) -> s
     return f"I{round(x - start[0])}J{round(y - start[1])}"
 
 
-def _refuse_large(lines: Sequence[str]) -> None:
+def _refuse_large(drawn: Drawn, lines: Sequence[str]) -> None:
     """Refuse coordinates that need more than four digits before the point."""
-    found = _TOO_LONG.search("".join(lines))
-    if found:
-        metres = f"a coordinate of {int(found.group(1)) / 1e9:.3f} m"
-        raise WrongInputError([Fault(Location("artwork", 0), "", metres, "up to 9.999 m")])
+    flashes = (item.places for item in drawn.objects if isinstance(item, Flashes))
+    reach = max((max(map(abs, chain.from_iterable(places))) for places in flashes), default=0)
+    paths = "".join(line for line in lines if line[0] == "X" and not line.endswith(_FLASH))
+    reach = max((reach, *map(int, _DIGITS.findall(paths))))
+    if reach >= _TOO_FAR:
+        found = f"a coordinate of {reach / 1e9:.3f} m"
+        raise WrongInputError([Fault(Location("artwork", 0), "", found, "up to 9.999 m")])

@@ -13,7 +13,7 @@ from dataclasses import dataclass
 from typing import NamedTuple
 
 from layoutgen.artwork import Shape
-from layoutgen.geometry import Ring
+from layoutgen.geometry import Point, Ring
 from layoutgen.numbers import mm
 from layoutgen.placement import PlacedPad
 from layoutgen.writers.copper_nets import copper_net, copper_nets
@@ -21,7 +21,7 @@ from layoutgen.writers.cut_ins import one_outline
 from layoutgen.writers.outlines import as_circle
 from layoutgen.writers.records import Result
 
-__all__ = ["Aperture", "Contour", "Drawn", "Flash", "Marks", "objects_of", "pad_of"]
+__all__ = ["Aperture", "Contour", "Drawn", "Flashes", "Marks", "objects_of", "pad_of"]
 
 _FLASHED = ("pad", "land", "opening", "paste")
 _COPPER_FUNCTIONS = {"pad": "SMDPad,CuDef", "land": "ViaPad"}
@@ -47,11 +47,10 @@ class Aperture:
     outline: tuple[tuple[int, int], ...] = ()
 
 
-class Flash(NamedTuple):
-    """An aperture at a point [nm]."""
+class Flashes(NamedTuple):
+    """An aperture at one or more points [nm]."""
 
-    x: int
-    y: int
+    places: list[Point]
     aperture: Aperture
     marks: Marks
 
@@ -66,15 +65,16 @@ class Contour(NamedTuple):
 class Drawn(NamedTuple):
     """What a layer is drawn with: objects in their order, apertures in that of their first use."""
 
-    objects: list[Flash | Contour]
+    objects: list[Flashes | Contour]
     apertures: list[Aperture]
 
 
 def objects_of(result: Result, shapes: Sequence[Shape]) -> Drawn:
-    """Return the shapes of one layer as objects, in drawing order."""
+    """Return the shapes of one layer as objects, in the order of their first shapes; like flashes are one."""
     maker = _Maker(result)
-    objects = [maker.object(shape) for shape in shapes]
-    return Drawn(objects, list(maker.apertures.values()))
+    for shape in shapes:
+        maker.add(shape)
+    return Drawn(maker.objects, list(maker.apertures.values()))
 
 
 def pad_of(result: Result, shape: Shape) -> PlacedPad | None:
@@ -96,20 +96,31 @@ class _Maker:
         self.conductors = copper_nets(result.circuit.file, tuple(result.circuit.nets))
         self.known: dict[tuple[str, str | None], Marks] = {}
         self.apertures: dict[tuple[object, str], Aperture] = {}
+        self.places: dict[tuple[str, str | None, int], list[Point]] = {}
+        self.objects: list[Flashes | Contour] = []
 
-    def object(self, shape: Shape) -> Flash | Contour:
-        """Return a shape as a flash where an aperture is exactly like it, else as a contour."""
-        marks = self.known.get((shape.role, shape.net)) or self.marks(shape)
+    def add(self, shape: Shape) -> None:
+        """Add a shape as a flash where an aperture is exactly like it, else as a contour."""
+        circle = None
         if shape.role in _FLASHED and not shape.holes:
             circle = as_circle(shape.outline)
-            if circle:
-                aperture = self.apertures.get((circle[2], marks.function))
-                aperture = aperture or self.aperture(circle[2], marks.function)
-                return Flash(circle[0], circle[1], aperture, marks)
-            flash = self.flash(shape, marks)
-            if flash is not None:
-                return flash
-        return Contour(one_outline(shape.outline, shape.holes), marks)
+            places = self.places.get((shape.role, shape.net, circle[2])) if circle else None
+            if circle and places:
+                places.append(circle[:2])
+                return
+        marks = self.known.get((shape.role, shape.net)) or self.marks(shape)
+        flashes = self.round(shape, circle, marks) if circle else self.straight(shape, marks)
+        self.objects.append(flashes or Contour(one_outline(shape.outline, shape.holes), marks))
+
+    def round(self, shape: Shape, circle: tuple[int, int, int], marks: Marks) -> Flashes:
+        """Return a circle as a flash; where no part or pin tells them apart, others like it will join it."""
+        x, y, radius = circle
+        aperture = Aperture(f"C,{mm(2 * radius)}", marks.function)
+        aperture = self.apertures.setdefault((radius, marks.function), aperture)
+        flashes = Flashes([(x, y)], aperture, marks)
+        if (shape.role, shape.net) in self.known:
+            self.places[shape.role, shape.net, radius] = flashes.places
+        return flashes
 
     def marks(self, shape: Shape) -> Marks:
         """Return what is said of a shape; pads and what lies on other layers belong to parts."""
@@ -129,19 +140,14 @@ class _Maker:
         function = _HEATSINK if pad.ground == "vias" else _COPPER_FUNCTIONS["pad"]
         return Marks(function, net, (element, pad.pin))
 
-    def aperture(self, radius: int, function: str) -> Aperture:
-        """Return the round aperture of a radius [nm]."""
-        aperture = Aperture(f"C,{mm(2 * radius)}", function)
-        return self.apertures.setdefault((radius, function), aperture)
-
-    def flash(self, shape: Shape, marks: Marks) -> Flash | None:
-        """Return a straight outline as a flash: of a box on the grid, or of a pad's own macro; else None."""
+    def straight(self, shape: Shape, marks: Marks) -> Flashes | None:
+        """Return a straight outline as a flash: a box on the grid, or a pad by its own macro; else None."""
+        if shape.role not in _FLASHED or shape.holes or not shape.outline.is_straight:
+            return None
         points = shape.outline.points
         xs, ys = [x for x, _ in points], [y for _, y in points]
         x0, x1, y0, y1 = min(xs), max(xs), min(ys), max(ys)
         x, y = (x0 + x1) // 2, (y0 + y1) // 2
-        if not shape.outline.is_straight:
-            return None
         box = len(points) == 4 and set(points) == {(x0, y0), (x1, y0), (x1, y1), (x0, y1)}
         if box and (x1 - x0) % 2 == 0 and (y1 - y0) % 2 == 0:
             aperture = Aperture(f"R,{mm(x1 - x0)}X{mm(y1 - y0)}", marks.function)
@@ -150,4 +156,4 @@ class _Maker:
         else:
             return None
         key = (aperture.template or aperture.outline, marks.function)
-        return Flash(x, y, self.apertures.setdefault(key, aperture), marks)
+        return Flashes([(x, y)], self.apertures.setdefault(key, aperture), marks)

@@ -8,6 +8,8 @@ from layoutgen.geometry import Point, Ring
 
 __all__ = ["as_circle", "bulge_radius", "distinct_vertices", "doubled_area", "turned"]
 
+_FULL_TURNS = ((1.0, 1.0), (-1.0, -1.0))
+
 
 def doubled_area(ring: Ring) -> float:
     """Return twice the signed area [nm^2] of the outline, true arcs included; counter-clockwise is > 0."""
@@ -39,12 +41,14 @@ def turned(ring: Ring, sense: int) -> Ring:
 
 def as_circle(ring: Ring) -> tuple[int, int, int] | None:
     """Return middle and radius [nm] of an outline made of two half circles, None for any other."""
-    if len(ring.points) != 2 or ring.bulges not in ((1.0, 1.0), (-1.0, -1.0)):
+    points = ring.points
+    if len(points) != 2 or ring.bulges not in _FULL_TURNS:
         return None
-    (x0, y0), (x1, y1) = ring.points
-    if y0 != y1 or (x1 - x0) % 2:
+    (x0, y0), (x1, y1) = points
+    width = x1 - x0
+    if y0 != y1 or width % 2:
         return None
-    return (x0 + x1) // 2, y0, abs(x1 - x0) // 2
+    return x0 + width // 2, y0, abs(width) // 2
 
 
 def distinct_vertices(ring: Ring) -> list[tuple[Point, float]]:

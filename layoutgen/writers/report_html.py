@@ -13,6 +13,7 @@ from layoutgen.numbers import fixed, mm_short
 from layoutgen.units import quantity_text
 from layoutgen.writers.html import Cell, cell, escape, items, section, table, zoom_link
 from layoutgen.writers.page_board import board_data, finding_target, inline_json
+from layoutgen.writers.page_currents import current_map_section
 from layoutgen.writers.page_response import response_numbers, response_section
 from layoutgen.writers.page_script import content_policy, script
 from layoutgen.writers.page_style import STYLE
@@ -114,7 +115,7 @@ def _body(result: Result, job: Job) -> Iterator[str]:
     yield section("lines", "Lines", *line_tables(result), strip_table(result))
     yield section("parts", "Parts", part_table(result))
     yield section("ports", "Ports", port_table(result))
-    yield section("bias", "Bias", *bias_tables(result))
+    yield section("bias", "Bias", *bias_tables(result), *current_map_section(result))
     yield section("response", "Response", *response_section(result))
     yield section("cautions", "Cautions", f'<div class="caution">{items(map(escape, _CAUTIONS))}</div>')
     yield section("files", "Files", _files(job))

@@ -6,14 +6,16 @@ Every writer takes its layers from here, so that no format can show what another
 from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
+from dataclasses import dataclass, field
 
 from layoutgen.artwork import LAYERS, Artwork, Label, Shape
 from layoutgen.checks import Finding
 from layoutgen.geometry import Ring
 from layoutgen.origin import Origin
+from layoutgen.writers.outlines import as_circle
 from layoutgen.writers.records import Result
 
-__all__ = ["MARK_NM", "labels_of", "layers_of", "marked_findings"]
+__all__ = ["MARK_NM", "Drawn", "drawn_layers", "labels_of", "layers_of", "marked_findings"]
 
 MARK_NM = 600_000
 """Half the diagonal of a finding's mark, a diamond with a hole in it [nm]."""
@@ -25,6 +27,34 @@ def layers_of(result: Result) -> dict[str, tuple[Shape, ...]]:
     for shape in (*result.artwork.shapes, *_drills(result.artwork), *_marks(result.findings)):
         shapes[shape.layer].append(shape)
     return {name: tuple(items) for name, items in shapes.items()}
+
+
+@dataclass(frozen=True, slots=True, eq=False)
+class Drawn:
+    """What one layer holds: whole circles as middle and radius [nm], drills last, and all other shapes."""
+
+    circles: list[tuple[int, int, int]] = field(default_factory=list)
+    shapes: list[Shape] = field(default_factory=list)
+
+
+def drawn_layers(result: Result) -> dict[str, Drawn]:
+    """Return what :func:`layers_of` does, whole circles apart: there may be many, and they need no shapes.
+
+    Round cut-outs of the profile stay shapes, since a circle has no direction.
+    """
+    layers = {name: Drawn() for name in LAYERS}
+    for shape in (*result.artwork.shapes, *_marks(result.findings)):
+        circle = None if shape.holes or shape.role == "cutout" else as_circle(shape.outline)
+        if circle:
+            layers[shape.layer].circles.append(circle)
+        else:
+            layers[shape.layer].shapes.append(shape)
+    plated = layers["drill_plated"].circles
+    plated.extend((via.x, via.y, via.drill // 2) for via in result.artwork.vias)
+    for hole in result.artwork.holes:
+        name = "drill_plated" if hole.plated else "drill_nonplated"
+        layers[name].circles.append((hole.x, hole.y, hole.diameter // 2))
+    return layers
 
 
 def labels_of(result: Result) -> tuple[Label, ...]:

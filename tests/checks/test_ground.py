@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import pytest
 
+from layoutgen.checks.drawn import board_of
 from layoutgen.checks.rules.ground_vias import barrel_thermal_resistance
 from layoutgen.geometry import Ring
 from tests.checks.boards import Sheet, box, near, only, polygon
@@ -178,3 +179,54 @@ def test_no_plane_at_a_flange() -> None:
     pads = {"gate": ("a", 8.8, 10.0, 2.0, 2.0), "source": ("gnd", 12.0, 10.0, 0.0, 0.0)}
     sheet.part("C1", pads, headings={"gate": 180.0}, cutout=box(10, 5, 14, 15), ground={"source": "flange"})
     assert len(sheet.found("ground.flange")) == 1
+
+
+# -- undercut: the artwork is drawn wider than the finished copper
+
+
+def buried_end(pour: float, undercut: float = 0.03) -> Sheet:
+    """Return line la, drawn as a stroke wider by the undercut, ended on the middle of a narrow open line.
+
+    The finished pour below comes to a height [mm]; la asks for 1 mm from its end at 10 mm, lh for 0.5 mm.
+    """
+    sheet = Sheet(
+        {"copper": {"undercut": f"{undercut} mm"}},
+        {"lines": {"lh": {"nets": ["c"], "impedance": "70 ohm", "angle": "60 deg"}}},
+    )
+    sheet.line("la", [(15, 15), (15, 10)], 1.1, gap=1.0, draw=False)
+    sheet.line("lh", [(15, 10), (22, 10)], 0.4, gap=0.5, draw=False)
+    u = undercut
+    sheet.copper(box(14.45 - u, 10 - u, 15.55 + u, 15 + u), "a", "line", "la")
+    sheet.copper(box(14.8 - u, 9.8 - u, 22 + u, 10.2 + u), "c", "line", "lh")
+    sheet.copper(box(4, 4, 22, pour + u))
+    return sheet
+
+
+@pytest.mark.parametrize(("pour", "faults"), [(9.0, 0), (9.002, 1)])
+def test_end_buried_in_other_copper_is_where_it_was_finished(pour: float, faults: int) -> None:
+    """Catches an end taken as longer by the undercut where other copper hides it: a false ``ground.gap``."""
+    found = buried_end(pour).found("ground.gap")
+    assert [f.items for f in found] == [("la", "pour")] * faults
+    if found:
+        assert found[0].measured == pytest.approx(0.998, abs=1e-5)
+
+
+def test_pieces_drawn_side_by_side_stay_joined_after_etching() -> None:
+    """Catches copper parted along the seam of two pieces that touch, or a seam taken for a narrow place."""
+    sheet = Sheet({"copper": {"undercut": "30 um", "min_gap": "0.125 mm", "min_width": "0.125 mm"}})
+    sheet.copper(box(4, 4, 10, 10))
+    sheet.copper(box(10, 4, 16, 10))
+    (merged,) = board_of(sheet.artwork()).top.merged
+    assert merged.bounds == pytest.approx((4.03e6, 4.03e6, 15.97e6, 9.97e6))
+    assert merged.area == pytest.approx(11.94e6 * 5.94e6, rel=1e-9)
+    assert [f.rule for f in sheet.check().findings if f.rule.startswith("copper.")] == []
+
+
+def test_slit_that_etching_never_opens_is_a_short() -> None:
+    """Catches nets whose drawn copper runs together judged by what each would be alone."""
+    sheet = Sheet({"copper": {"undercut": "30 um"}})
+    sheet.line("la", [(5, 5), (9, 5)], 1.0, draw=False)
+    sheet.line("lb", [(9.05, 5), (14, 5)], 1.0, draw=False)
+    sheet.copper(box(4.97, 4.47, 9.03, 5.53), "a", "line", "la")
+    sheet.copper(box(9.02, 4.47, 14.03, 5.53), "d", "line", "lb")
+    assert len(sheet.found("connectivity.short")) == 1

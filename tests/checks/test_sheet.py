@@ -98,11 +98,11 @@ def test_current_is_kept_at_every_cut() -> None:
     for cut in cuts(solve(mesh, loads), 0.0):
         x, y = cut.x / MM, cut.y / MM
         if 1.0 < x < 3.0 and y < 1.0:
-            assert cut.current == pytest.approx(3.0, rel=1e-2)
+            assert cut.current == pytest.approx(3.0, rel=1e-9)
         elif 6.0 < x < 8.0:
-            assert cut.current == pytest.approx(2.0, rel=1e-2)
+            assert cut.current == pytest.approx(2.0, rel=1e-9)
         elif 2.0 < y < 5.0:
-            assert cut.current == pytest.approx(1.0, rel=1e-2)
+            assert cut.current == pytest.approx(1.0, rel=1e-9)
 
 
 # -- on boards: R1 draws 0.28 A through lv from port pv

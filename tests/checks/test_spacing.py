@@ -94,6 +94,41 @@ def test_strips_of_a_pair_are_meant_to_couple() -> None:
     assert set(only(sheet.found("spacing.min_line_heights")).items) == {"cp", "lv"}
 
 
+def fed_pair(turn: float) -> Sheet:
+    """Return a pair whose first strip ends at net c, fed there by lb at a turn [deg], the other end open."""
+    sheet = Sheet(RULES, {"coupled": {"cp": {**PAIR["coupled"]["cp"], "nets": ["a", "d", "c", "open"]}}})
+    sheet.pair("cp", 5, 15, 5, 1.0, 0.2)
+    c, s = math.cos(math.radians(turn)), math.sin(math.radians(turn))
+    sheet.line("lb", [(15, 5), (15 + 9 * c, 5 + 9 * s)], 1.0)
+    return sheet
+
+
+def test_what_goes_on_from_a_pair_begins_beside_its_open_end() -> None:
+    """Catches a feed found for lying a gap's width from the open end of the strip that it couples to."""
+    assert fed_pair(0.0).found("spacing.min_line_heights") == []
+    assert fed_pair(-90.0).found("spacing.min_line_heights") == []
+
+
+def test_a_pairs_end_is_no_licence_to_run_along_it() -> None:
+    """Catches a line that leaves a pair's end and comes back along the strips passed as part of the pair."""
+    sheet = fed_pair(0.0)
+    sheet.line("lb", [(15, 5), (20, 5), (20, 7.5), (6, 7.5)], 1.0)
+    finding = only([f for f in sheet.found("spacing.min_line_heights") if "cp" in f.items])
+    assert finding.measured == pytest.approx(0.3 / H)
+
+
+def test_two_feeds_of_one_pair() -> None:
+    """Catches feeds found where they leave the two strips, or passed where they run on side by side."""
+    sheet = Sheet(RULES, {"coupled": {"cp": {**PAIR["coupled"]["cp"], "nets": ["a", "open", "v", "open"]}}})
+    sheet.pair("cp", 5, 15, 5, 1.0, 0.2)
+    sheet.line("la", [(5, 5), (3.5, 5)], 1.0)
+    sheet.line("lv", [(5, 6.2), (3.5, 6.2)], 1.0)
+    assert sheet.found("spacing.min_line_heights") == []
+    sheet.line("la", [(5, 5), (1, 5)], 1.0)
+    sheet.line("lv", [(5, 6.2), (1, 6.2)], 1.0)
+    assert set(only(sheet.found("spacing.min_line_heights")).items) == {"la", "lv"}
+
+
 def test_radial_stub_against_other_lines() -> None:
     """Catches a radial stub left out, or found for lying near its host."""
     circuit = {"lines": {"rs": {"nets": ["a"], "shape": "radial", "sector": "60 deg", "radius": "4 mm"}}}

@@ -18,18 +18,36 @@ def copper(placement: Placement) -> dict[str, tuple[str, shapely.Polygon]]:
     out: dict[str, tuple[str, shapely.Polygon]] = {}
     for line in placement.lines.values():
         ring = stroke(line.path, line.width, [bend.mitre_percent for bend in line.bends])
-        out[line.name] = (line.name, ring.polygon())
+        out[line.name] = (line.name, _notched(placement, set(line.nets), ring.polygon()))
     for pair in placement.pairs.values():
         for side, path in zip("ab", pair.paths, strict=True):
             out[f"{pair.name}.{side}"] = (pair.name, stroke(path, pair.width).polygon())
     for strip in placement.strips:
-        out[strip.name] = (strip.net, stroke(strip.path, strip.width).polygon())
+        area = stroke(strip.path, strip.width).polygon()
+        out[strip.name] = (strip.net, _notched(placement, {strip.net}, area))
     for part in placement.parts.values():
         for pad in part.pads:
             polygon = pad.outline.polygon()
             if polygon.area > 0:
                 out[f"{part.name}.{pad.pin}"] = (pad.net, polygon)
     return out
+
+
+def _notched(placement: Placement, nets: set[str], area: shapely.Polygon) -> shapely.Polygon:
+    """Return copper that ends at one strip of a coupled pair without what lies beside the other strip.
+
+    Only its last bit may be wider than the strip that it feeds: it keeps most of its area.
+    """
+    gap = placement.sized.circuit.rules.copper.min_gap * 1e9  # type: ignore[union-attr, operator]
+    left = area
+    for pair in placement.pairs.values():
+        own = [bool(nets & set(pair.nets[2 * side : 2 * side + 2])) for side in (0, 1)]
+        for side, path in enumerate(pair.paths):
+            if own[1 - side] and not own[side]:
+                other = stroke(path, pair.width).polygon()
+                if area.intersection(other).area < 1.0:
+                    left = left.difference(other.buffer(gap, join_style="mitre"))
+    return left
 
 
 def nets_of(placement: Placement, name: str) -> set[str]:

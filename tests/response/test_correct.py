@@ -13,7 +13,8 @@ from layoutgen.artwork import Artwork
 from layoutgen.placement import place
 from layoutgen.reading import circuit_from_data
 from layoutgen.response import CLOSE_ENOUGH, correct_lengths, respond
-from layoutgen.response.correct import MOST_CHANGE, _bounded_step
+from layoutgen.response.correct import MOST_CHANGE
+from layoutgen.response.fit import _bounded
 from layoutgen.response.match import Match, resized
 from layoutgen.response.mirror import mirror_groups
 from layoutgen.response.trace import trace_copper
@@ -105,13 +106,13 @@ class TestFit:
         assert abs(fit.corrections.get("beyond", 0.0)) < math.radians(0.5)
 
     def test_bounds_hold(self, artwork_of: MAKER, ports: PORTS) -> None:
-        """Pads far wider than thin lines ask for more than is allowed: a quarter of the angle."""
+        """Pads far wider than thin lines ask for more than is allowed: half the angle."""
         lines = {"a": by_angle("in", "c", 95, 16), "b": by_angle("d", "o", 95, 16), "launch": LAUNCH}
         big = {**RESISTOR, "case": "1210"}
         fit = correct_lengths(artwork_of({"ports": ports, "lines": lines, "parts": {"R1": big}}))
         most = max(abs(angle) for angle in fit.corrections.values())
-        assert most <= min(0.25 * math.radians(16.0), MOST_CHANGE) + 1e-6
-        assert most > 0.2 * math.radians(16.0)
+        assert most <= min(0.5 * math.radians(16.0), MOST_CHANGE) + 1e-6
+        assert most > 0.4 * math.radians(16.0)
 
     def test_mirror_images_move_together(self, artwork_of: MAKER, ports: PORTS) -> None:
         lines = {
@@ -157,7 +158,7 @@ def test_a_bounded_step_is_no_worse_than_any_point_inside(seed: int) -> None:
     rng = np.random.default_rng(seed)
     a, b = rng.normal(size=(12, 4)), rng.normal(size=12)
     low, high = -rng.uniform(0.0, 0.3, 4), rng.uniform(0.0, 0.3, 4)
-    step = _bounded_step(a.T @ a, a.T @ b, low, high)
+    step = _bounded(a.T @ a, a.T @ b, low, high)
     assert np.all(step >= low) and np.all(step <= high)
     best = lsq_linear(a, -b, bounds=(low - 1e-12, high)).cost
     start = 0.5 * b @ b

@@ -118,11 +118,12 @@ class TestCorrection:
             return replace(sized, lines=lines)
 
         monkeypatch.setattr(pipeline, "size_circuit", sizing)
-        drafts = []
-        draw = pipeline.draw
-        monkeypatch.setattr(pipeline, "draw", lambda *a, **k: drafts.append(k) or draw(*a, **k))
+        drawn: list[str] = []
+        for name in ("sketch", "complete"):
+            made = getattr(pipeline, name)
+            monkeypatch.setattr(pipeline, name, lambda a, n=name, f=made: drawn.append(n) or f(a))
         pipeline.run_inputs(stubbed.circuit, stubbed.rules, correction=False)
-        assert [bool(k.get("draft")) for k in drafts] == [True, True, False]
+        assert drawn == ["sketch", "sketch", "complete"]
 
     def test_what_the_board_takes_back_does_not_run_away(self) -> None:
         """All lengths given, the board in steps of 0.5 mm: a strip makes up for whatever a line gives.

@@ -2,7 +2,8 @@
 
 A line of one potential is a cross-section: all current crosses it at a right angle. The mean density over it
 is what a neck, a tee, a taper or the rim of a pad carries, and does not depend on how fine the mesh is, as
-the largest density at an inner corner does.
+the largest density at an inner corner does. The current through it is that between the mesh's points on both
+sides, which no coarseness of the triangles loses or adds to.
 """
 
 from __future__ import annotations
@@ -13,7 +14,8 @@ import numpy as np
 import numpy.typing as npt
 
 from layoutgen.checks.netgraph import clusters
-from layoutgen.checks.sheet.solve import Flow
+from layoutgen.checks.sheet.mesh import Mesh
+from layoutgen.checks.sheet.solve import Flow, slopes
 
 __all__ = ["Cut", "cuts"]
 
@@ -61,10 +63,20 @@ def _cut(flow: Flow, triangle: int, level: float) -> Cut:
     length, middle = _segments(flow, crossed, level)
     label = _connected(flow, crossed, level)
     mine = label == label[np.searchsorted(crossed, triangle)]
-    length, middle, density = length[mine], middle[mine], flow.density[crossed[mine]]
+    length, middle = length[mine], middle[mine]
     total = float(length.sum())
     x, y = ((middle * length[:, None]).sum(axis=0) / total).tolist()
-    return Cut(x, y, total, float((density * length).sum()))
+    return Cut(x, y, total, _through(flow, crossed[mine], level))
+
+
+def _through(flow: Flow, crossed: npt.NDArray[np.intp], level: float) -> float:
+    """Return the current [A] through triangles from their points above a potential to those below."""
+    triangles = flow.mesh.triangles[crossed]
+    gradients, areas = slopes(Mesh(flow.mesh.points, triangles))
+    levels = flow.potential[triangles]
+    falling = np.einsum("mik,mi->mk", gradients, levels)
+    upper = np.einsum("mik,mi->mk", gradients, (levels > level).astype(float))
+    return float(((falling * upper).sum(axis=1) * areas).sum())
 
 
 def _segments(flow: Flow, crossed: npt.NDArray[np.intp], level: float) -> tuple[Floats, Floats]:

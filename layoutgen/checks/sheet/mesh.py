@@ -217,12 +217,10 @@ def _inner_points(polygon: shapely.Polygon, sizes: _Sizes) -> Floats:
 
 def _fitted(polygon: shapely.Polygon, points: Floats, edges: Ints, inner: Floats) -> Mesh | None:
     """Return the triangulation, with more points on the outline until all its edges are in it."""
-    from scipy.spatial import Delaunay
-
     origin = points.mean(axis=0)
     for _ in range(_ROUNDS):
         together = np.concatenate((points, inner))
-        triangles = np.asarray(Delaunay(together - origin).simplices, dtype=np.intp)
+        triangles = _delaunay(together - origin)
         missing = _missing(edges, triangles, len(together))
         if not missing.any():
             return _inside(polygon, together, triangles)
@@ -233,6 +231,15 @@ def _fitted(polygon: shapely.Polygon, points: Floats, edges: Ints, inner: Floats
         )
         points, edges = np.concatenate((points, middle)), np.concatenate((edges[~missing], halves))
     return None
+
+
+def _delaunay(points: Floats) -> Ints:
+    """Return the Delaunay triangles (M, 3) of points (N, 2), as point indices."""
+    found = shapely.delaunay_triangles(shapely.MultiPoint(points))
+    corners = shapely.get_coordinates(found).reshape(-1, 4, 2)[:, :3]
+    keys = points[:, 0] + 1j * points[:, 1]
+    order = np.argsort(keys)
+    return np.asarray(order[np.searchsorted(keys[order], corners[..., 0] + 1j * corners[..., 1])])
 
 
 def _missing(edges: Ints, triangles: Ints, count: int) -> npt.NDArray[np.bool_]:

@@ -18,7 +18,7 @@ from shapely.geometry.base import BaseGeometry
 
 from layoutgen.checks.sheet.mesh import Mesh, mesh_of
 
-__all__ = ["Flow", "loads_on", "sheet_resistance", "solve"]
+__all__ = ["Flow", "gradients", "loads_on", "sheet_resistance", "slopes", "solve"]
 
 Floats = npt.NDArray[np.float64]
 Ints = npt.NDArray[np.intp]
@@ -75,7 +75,7 @@ def solve(mesh: Mesh, loads: Floats, electrodes: Sequence[Ints] = ()) -> Flow:
     solver: Any = splu(matrix[1:, 1:], permc_spec="MMD_AT_PLUS_A", options={"SymmetricMode": True})
     solved = np.concatenate(([0.0], solver.solve(right[1:])))
     potential = solved[index] - solved[index].mean()
-    return Flow(mesh, potential, np.hypot(*_gradients(mesh, potential).T))
+    return Flow(mesh, potential, np.hypot(*gradients(mesh, potential).T))
 
 
 def _tied(count: int, electrodes: Sequence[Ints]) -> Ints:
@@ -86,7 +86,7 @@ def _tied(count: int, electrodes: Sequence[Ints]) -> Ints:
     return np.asarray(np.unique(label, return_inverse=True)[1], dtype=np.intp)
 
 
-def _slopes(mesh: Mesh) -> tuple[Floats, Floats]:
+def slopes(mesh: Mesh) -> tuple[Floats, Floats]:
     """Return for each triangle the gradients (M, 3, 2) of its points' hat functions [1/nm], and its area."""
     corners = mesh.points[mesh.triangles]
     opposite = np.roll(corners, -2, axis=1) - np.roll(corners, -1, axis=1)
@@ -96,16 +96,16 @@ def _slopes(mesh: Mesh) -> tuple[Floats, Floats]:
 
 def _stiffness(mesh: Mesh) -> tuple[Ints, Ints, Floats]:
     """Return the entries of the discrete Laplacian: rows, columns, values."""
-    slopes, areas = _slopes(mesh)
-    local = np.einsum("mik,mjk,m->mij", slopes, slopes, areas)
+    hats, areas = slopes(mesh)
+    local = np.einsum("mik,mjk,m->mij", hats, hats, areas)
     row = np.repeat(mesh.triangles, 3, axis=1)
     column = np.tile(mesh.triangles, (1, 3))
     return row.ravel(), column.ravel(), local.ravel()
 
 
-def _gradients(mesh: Mesh, potential: Floats) -> Floats:
+def gradients(mesh: Mesh, potential: Floats) -> Floats:
     """Return the gradient (M, 2) of the potential in each triangle [V/nm]."""
-    return np.asarray(np.einsum("mik,mi->mk", _slopes(mesh)[0], potential[mesh.triangles]))
+    return np.asarray(np.einsum("mik,mi->mk", slopes(mesh)[0], potential[mesh.triangles]))
 
 
 def sheet_resistance(
@@ -117,6 +117,8 @@ def sheet_resistance(
 ) -> float:
     """Return the resistance between two ideal electrodes on a sheet, in squares [-].
 
+    What linear triangles lose is put back (see :mod:`~layoutgen.checks.sheet.recovery`).
+
     Args:
         polygon: The sheet [nm].
         first: One electrode; points within ``reach`` [nm] of it are tied.
@@ -127,6 +129,8 @@ def sheet_resistance(
     Raises:
         ValueError: No mesh fits the outline, or an electrode meets no point of it.
     """
+    from layoutgen.checks.sheet.recovery import missing_power
+
     mesh = mesh_of(polygon, fineness=fineness)
     if mesh is None:
         raise ValueError("no mesh fits the outline")
@@ -137,4 +141,4 @@ def sheet_resistance(
     loads = np.zeros(len(points))
     loads[groups[0][0]], loads[groups[1][0]] = 1.0, -1.0
     flow = solve(mesh, loads, groups)
-    return float(flow.potential[groups[0][0]] - flow.potential[groups[1][0]])
+    return float(flow.potential[groups[0][0]] - flow.potential[groups[1][0]]) + missing_power(flow)

@@ -15,7 +15,7 @@ import shapely
 from shapely.geometry.base import BaseGeometry
 
 from layoutgen.writers.gerber import GERBER_FUNCTIONS
-from layoutgen.writers.gerber_objects import Flash, objects_of
+from layoutgen.writers.gerber_objects import Flashes, objects_of
 from layoutgen.writers.readback.areas import (
     FINE_NM,
     Area,
@@ -71,9 +71,9 @@ def read_gerber(file: str, data: bytes, result: Result) -> Evidence:
         return
     yield count_check(file, _READER, "objects", len(objects), len(shapes))
     yield area_check(file, _READER, layer, _area(objects), model_area(shapes), arcs)
-    wanted = [item for item in objects_of(result, shapes).objects if isinstance(item, Flash)]
+    wanted = [item for item in objects_of(result, shapes).objects if isinstance(item, Flashes)]
     yield _flashes(file, objects, wanted)
-    if layer.startswith("copper") and len(wanted) < len(shapes):
+    if layer.startswith("copper") and sum(len(item.places) for item in wanted) < len(shapes):
         yield NotProved(file, "nets and functions of regions: the reader does not keep them")
 
 
@@ -149,7 +149,7 @@ def _loops(objects: Iterable[Any]) -> list[np.ndarray[Any, Any]]:
     return [np.array(loop) * _NM for loop in loops]
 
 
-def _flashes(file: str, objects: Iterable[Any], wanted: Iterable[Flash]) -> Check:
+def _flashes(file: str, objects: Iterable[Any], wanted: Iterable[Flashes]) -> Check:
     """Return how many flashes differ in place, net or pin."""
     found = Counter(
         (
@@ -162,7 +162,9 @@ def _flashes(file: str, objects: Iterable[Any], wanted: Iterable[Flash]) -> Chec
         if type(item).__name__ == "Flash"
     )
     asked = Counter(
-        (flash.x, flash.y, flash.marks.net or "", ",".join(flash.marks.pin or ())) for flash in wanted
+        (x, y, item.marks.net or "", ",".join(item.marks.pin or ()))
+        for item in wanted
+        for x, y in item.places
     )
     odd = sum(((found - asked) + (asked - found)).values())
     return count_check(file, _READER, "flashes that differ in place, net or pin", odd, 0)
