@@ -29,11 +29,15 @@ UNITS = {"mm": 1e6, "in": 25.4e6, "um": 1e3}
 
 _INSUNITS = {
     1: ("in", 25.4e6),
+    2: ("ft", 304.8e6),
     4: ("mm", 1e6),
     5: ("cm", 1e7),
     6: ("m", 1e9),
+    8: ("microinch", 25.4),
     9: ("mil", 25_400.0),
+    12: ("nm", 1.0),
     13: ("um", 1e3),
+    14: ("dm", 1e8),
 }
 _CHORD_NM = 5.0
 _DEEPEST = 64
@@ -92,12 +96,16 @@ def _refuse_torn(path: Path) -> None:
 
 def _unit(path: Path, document: Any, unit: str | None) -> tuple[str, float, tuple[ForeignNote, ...]]:
     """Return the unit's name, its length [nm], and a note where the one given is not the file's."""
-    stated = _INSUNITS.get(int(document.header.get("$INSUNITS", 0)))
+    code = int(document.header.get("$INSUNITS", 0))
+    stated = _INSUNITS.get(code)
     if document.dxfversion <= "AC1009" and "$INSUNITS" not in document.header:
         stated = None
     if unit is None:
         if stated is None:
-            raise refused(str(path), "a drawing that states no unit", "--unit mm, --unit in or --unit um")
+            what = (
+                f"unit code {code}, which is none of a board's" if code else "a drawing that states no unit"
+            )
+            raise refused(str(path), what, "--unit mm, --unit in or --unit um")
         return *stated, ()
     if stated is not None and stated[0] != unit:
         text = f"the file says {stated[0]}, read in {unit} as asked"

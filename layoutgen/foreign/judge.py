@@ -3,11 +3,14 @@
 from __future__ import annotations
 
 import datetime
-from collections.abc import Iterator
+import math
+from collections.abc import Iterator, Sequence
 from dataclasses import replace
 
 from layoutgen.checks import CheckResult, Finding, NotChecked, check_board
+from layoutgen.checks.board import Board
 from layoutgen.foreign.board import board_of_foreign
+from layoutgen.foreign.chorded import Chords
 from layoutgen.foreign.records import ForeignArtwork
 from layoutgen.reading import RuleFile
 
@@ -34,22 +37,44 @@ def check_foreign(
         rules: The rule file, from :func:`~layoutgen.reading.read_rules`.
         today: Day on which waivers are judged; None takes no waiver as expired.
     """
-    result = check_board(board_of_foreign(artwork, rules), today)
-    skipped = (*_UNKNOWN, *_unread(artwork))
+    board = board_of_foreign(artwork, rules)
+    result = check_board(board, today)
     return replace(
         result,
-        findings=(*(_weighed(finding, artwork.chord) for finding in result.findings), *_notes(artwork)),
-        not_checked=(*skipped, *result.not_checked),
+        findings=(*_weighed(result.findings, board, artwork.chord), *_notes(artwork)),
+        not_checked=(*_UNKNOWN, *_unread(artwork), *result.not_checked),
     )
 
 
-def _weighed(finding: Finding, chord: float) -> Finding:
-    """Return a finding as a note where it is no more than what chords may be off their curves [nm]."""
-    measured, limit = finding.measured, finding.limit
-    if not chord or finding.unit != "mm" or measured is None or limit is None:
-        return finding
-    if not 0.0 < limit - measured <= chord / 1e6:
-        return finding
+def _weighed(findings: Sequence[Finding], board: Board, chord: float) -> list[Finding]:
+    """Return findings, those as notes that are no more than chords there may be off their curves [nm]."""
+    slight = [_shortfall(finding) <= chord for finding in findings]
+    if not any(slight):
+        return list(findings)
+    chords = Chords(board)
+    return [
+        _as_note(finding, chord) if small and _at_a_chord(finding, chords, chord) else finding
+        for finding, small in zip(findings, slight, strict=True)
+    ]
+
+
+def _shortfall(finding: Finding) -> float:
+    """Return by how much a length falls short of its limit [nm]; infinite where that says nothing."""
+    if finding.unit != "mm" or finding.measured is None or finding.limit is None or finding.at is None:
+        return math.inf
+    short = (finding.limit - finding.measured) * 1e6
+    return short if short > 0.0 else math.inf
+
+
+def _at_a_chord(finding: Finding, chords: Chords, chord: float) -> bool:
+    """Tell whether a chord of a curve bounds the place that was measured."""
+    assert finding.at is not None
+    assert finding.measured is not None
+    return chords.near(finding.at, finding.measured * 0.5e6 + 2.0 * chord)
+
+
+def _as_note(finding: Finding, chord: float) -> Finding:
+    """Return a finding as a note about chords that may lie so far off their curves [nm]."""
     text = f"{finding.text}; no more than chords may lie off curves in this format ({chord / 1e3:g} um)"
     return replace(finding, severity="note", text=text)
 
@@ -59,7 +84,9 @@ def _unread(artwork: ForeignArtwork) -> Iterator[NotChecked]:
     for what, count in artwork.unread.items():
         yield NotChecked("foreign artwork", f"{count} x {what}: not read")
     if artwork.chord:
-        reason = f"curves in this format are chords: shortfalls up to {artwork.chord / 1e3:g} um are notes"
+        reason = (
+            f"curves in this format are chords: at them shortfalls up to {artwork.chord / 1e3:g} um are notes"
+        )
         yield NotChecked("lengths to a micrometre", reason)
     open_ends = sum(note.rule == "foreign.left_open" for note in artwork.notes)
     if open_ends:

@@ -1,8 +1,9 @@
 """The response correction: lengths at which the drawing does what the schematic did.
 
 In: an artwork. Out: by line and pair given by angle, the correction [rad] for ``size_circuit``; bounded least
-squares over the S-parameters in the band, without losses (``fit``); mirror images get equal corrections. A
-line is drawn longer or shorter by half its angle and by 15 degrees at most, and only as far as it helps.
+squares over the S-parameters in the band, without losses (``fit``). Mirror images and like lines of a loop
+get equal corrections. A line is drawn longer or shorter by half its angle and by 15 degrees at most, and only
+as far as it helps.
 """
 
 from __future__ import annotations

@@ -84,9 +84,9 @@ def _causes(match: Match) -> list[_Cause]:
         *_land_causes(match.copper, elements),
         *_foot_causes(match.copper, elements),
     ]
-    for names in grouped([pair.line for pair in match.copper.pairs], elements):
-        found.append(_Cause("pair", names, "the unequal speeds of its modes", _with_equal_modes))
-    return found
+    pairs = grouped([pair.line for pair in match.copper.pairs], elements)
+    what = "the unequal speeds of its modes"
+    return [*found, *(_Cause("pair", names, what, _with_equal_modes) for names in pairs)]
 
 
 def _kinds(causes: Iterable[_Cause]) -> Iterator[_Cause]:

@@ -18,7 +18,7 @@ from layoutgen.response.chain import ComplexArray, FloatArray
 from layoutgen.response.copper import Copper
 from layoutgen.response.drawn import DrawnBoard, drawing_of
 from layoutgen.response.medium import medium_of
-from layoutgen.response.mirror import mirror_groups
+from layoutgen.response.mirror import length_groups
 from layoutgen.response.solve import solve
 from layoutgen.response.touchstone import PartData
 from layoutgen.response.trace import trace_copper
@@ -89,7 +89,7 @@ class Match:
         self.frequencies = in_band(design.band, len(one.ports))
         self.wanted = solve(wanted_network(artwork.placement, self.frequencies, data))
         self._board = self._board_of(self.copper)
-        self.groups = mirror_groups(sized.circuit.file)
+        self.groups = length_groups(sized.circuit.file)
         self.total = np.array([-sized.corrections.get(group[0], 0.0) for group in self.groups])
         self.own = np.array([self._copper_angle(group) for group in self.groups])
 

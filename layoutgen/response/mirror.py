@@ -13,8 +13,9 @@ from dataclasses import dataclass
 
 from layoutgen.circuit import GROUND, OPEN
 from layoutgen.reading import CircuitFile, Part
+from layoutgen.response.rings import loop_numbers
 
-__all__ = ["grouped", "mirror_groups", "mirror_images"]
+__all__ = ["grouped", "length_groups", "mirror_groups", "mirror_images"]
 
 _PLAIN = ((0, 1), (1, 0))
 _PAIR = ((0, 1, 2, 3), (1, 0, 3, 2), (2, 3, 0, 1), (3, 2, 1, 0))
@@ -41,6 +42,24 @@ def mirror_groups(file: CircuitFile) -> tuple[tuple[str, ...], ...]:
         name for name in (*file.lines, *file.coupled) if (file.lines.get(name) or file.coupled[name]).angle
     ]
     return grouped(given, colours)
+
+
+def length_groups(file: CircuitFile) -> tuple[tuple[str, ...], ...]:
+    """Return the lines and coupled pairs given by angle, those together that are drawn equally long.
+
+    These are mirror images, and lines that are alike and lie on loops: opposite sides of a hybrid are no
+    mirror images when its ports see different things, but drawn to different lengths they might not close.
+    """
+    loops = loop_numbers({name: element.nets for name, element in _elements(file).items()})
+    joined: dict[tuple[str, ...], set[Hashable]] = {}
+    for group in mirror_groups(file):
+        kinds = {
+            (loops[name], _facts(file.lines[name])) for name in group if name in loops and name in file.lines
+        }
+        met = [other for other, known in joined.items() if kinds & known]
+        known = kinds.union(*(joined.pop(other) for other in met))
+        joined[tuple(itertools.chain(*met, group))] = known
+    return tuple(joined)
 
 
 def mirror_images(file: CircuitFile) -> tuple[dict[str, int], dict[str, int]]:

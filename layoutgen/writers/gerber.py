@@ -154,7 +154,7 @@ class _Drawing:
             if item.aperture is not aperture:
                 aperture = item.aperture
                 out.append(f"D{self.codes[aperture]}*")
-            out += [f"X{x}Y{y}{_FLASH}" for x, y in item.places]
+            out.append("\n".join([f"X{x}Y{y}{_FLASH}" for x, y, _ in item.places]))
         return [*out, *self._attributes(Marks("")), *self._function(None)]
 
     def _attributes(self, marks: Marks) -> Iterator[str]:
@@ -221,7 +221,7 @@ def _from_start(start: tuple[int, int], end: tuple[int, int], bulge: float) -> s
 def _refuse_large(drawn: Drawn, lines: Sequence[str]) -> None:
     """Refuse coordinates that need more than four digits before the point."""
     flashes = (item.places for item in drawn.objects if isinstance(item, Flashes))
-    reach = max((max(map(abs, chain.from_iterable(places))) for places in flashes), default=0)
+    reach = max(map(abs, chain.from_iterable(chain.from_iterable(flashes))), default=0)
     paths = "".join(line for line in lines if line[0] == "X" and not line.endswith(_FLASH))
     reach = max((reach, *map(int, _DIGITS.findall(paths))))
     if reach >= _TOO_FAR:

@@ -13,7 +13,7 @@ from dataclasses import dataclass
 from typing import NamedTuple
 
 from layoutgen.artwork import Shape
-from layoutgen.geometry import Point, Ring
+from layoutgen.geometry import Ring
 from layoutgen.numbers import mm
 from layoutgen.placement import PlacedPad
 from layoutgen.writers.copper_nets import copper_net, copper_nets
@@ -48,9 +48,9 @@ class Aperture:
 
 
 class Flashes(NamedTuple):
-    """An aperture at one or more points [nm]."""
+    """An aperture at one or more places: middle, and half of its width [nm]."""
 
-    places: list[Point]
+    places: list[tuple[int, int, int]]
     aperture: Aperture
     marks: Marks
 
@@ -96,7 +96,7 @@ class _Maker:
         self.conductors = copper_nets(result.circuit.file, tuple(result.circuit.nets))
         self.known: dict[tuple[str, str | None], Marks] = {}
         self.apertures: dict[tuple[object, str], Aperture] = {}
-        self.places: dict[tuple[str, str | None, int], list[Point]] = {}
+        self.places: dict[tuple[str, str | None, int], list[tuple[int, int, int]]] = {}
         self.objects: list[Flashes | Contour] = []
 
     def add(self, shape: Shape) -> None:
@@ -106,7 +106,7 @@ class _Maker:
             circle = as_circle(shape.outline)
             places = self.places.get((shape.role, shape.net, circle[2])) if circle else None
             if circle and places:
-                places.append(circle[:2])
+                places.append(circle)
                 return
         marks = self.known.get((shape.role, shape.net)) or self.marks(shape)
         flashes = self.round(shape, circle, marks) if circle else self.straight(shape, marks)
@@ -114,10 +114,10 @@ class _Maker:
 
     def round(self, shape: Shape, circle: tuple[int, int, int], marks: Marks) -> Flashes:
         """Return a circle as a flash; where no part or pin tells them apart, others like it will join it."""
-        x, y, radius = circle
+        radius = circle[2]
         aperture = Aperture(f"C,{mm(2 * radius)}", marks.function)
         aperture = self.apertures.setdefault((radius, marks.function), aperture)
-        flashes = Flashes([(x, y)], aperture, marks)
+        flashes = Flashes([circle], aperture, marks)
         if (shape.role, shape.net) in self.known:
             self.places[shape.role, shape.net, radius] = flashes.places
         return flashes
@@ -156,4 +156,4 @@ class _Maker:
         else:
             return None
         key = (aperture.template or aperture.outline, marks.function)
-        return Flashes([(x, y)], self.apertures.setdefault(key, aperture), marks)
+        return Flashes([(x, y, (x1 - x0) // 2)], self.apertures.setdefault(key, aperture), marks)

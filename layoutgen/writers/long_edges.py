@@ -2,7 +2,8 @@
 
 Programs that read drawings take edges below a micrometre for repeated vertices, or lose them. Both ends of
 such an edge become one vertex: the point where its neighbours meet if they are prolonged, one of the ends,
-or, on a step in a straight edge, the point between them at which as much area is won as lost.
+or, on a step in a straight edge, the point between them at which as much area is won as lost. What one edge
+wins the next ones lose again; an arc beside an edge is bent so that nothing is.
 """
 
 from __future__ import annotations
@@ -11,7 +12,7 @@ import math
 from collections.abc import Iterator, Sequence
 
 from layoutgen.geometry import Point, Ring
-from layoutgen.writers.outlines import distinct_vertices
+from layoutgen.writers.outlines import bulge_radius, distinct_vertices
 
 __all__ = ["SHORTEST_NM", "long_edges"]
 
@@ -30,13 +31,13 @@ def long_edges(ring: Ring, shortest: int = SHORTEST_NM) -> list[Corner]:
 
     An outline that is itself no larger than that keeps the last edges it needs to be one.
     """
-    corners = distinct_vertices(ring)
+    corners, carried = distinct_vertices(ring), 0.0
     while True:
         lengths = _lengths(corners)
         least = min(lengths)
         if least >= shortest:
             return corners
-        merged = _merged(corners, lengths.index(least))
+        merged, carried = _merged(corners, lengths.index(least), carried)
         if len(merged) < (2 if any(bulge for _, bulge in merged) else 3):
             return corners
         corners = merged
@@ -48,15 +49,48 @@ def _lengths(corners: Sequence[Corner]) -> list[float]:
     return list(map(math.dist, points, (*points[1:], points[0])))
 
 
-def _merged(corners: Sequence[Corner], edge: int) -> list[Corner]:
-    """Return the outline with both ends of an edge made one vertex."""
+def _merged(corners: Sequence[Corner], edge: int, carried: float) -> tuple[list[Corner], float]:
+    """Return the outline with both ends of an edge made one vertex, and twice the area [nm^2] won so far.
+
+    Args:
+        corners: The outline.
+        edge: Number of the edge.
+        carried: What earlier edges won; this one is merged so that it is lost again.
+    """
     ring = [*corners[edge:], *corners[:edge]]
-    (start, _), (end, bulge) = ring[0], ring[1]
-    before, after = ring[-1][0], ring[2 % len(ring)][0]
+    (start, _), (end, bulge), (before, bent) = ring[0], ring[1], ring[-1]
+    after = ring[2 % len(ring)][0]
     places = [start, end, *_between(before, start, end, after)]
-    place = min(places, key=lambda point: _moved(before, start, end, after, point))
-    merged = [(place, bulge), *ring[2:]]
-    return [a for a, b in zip(merged, (*merged[1:], merged[0]), strict=True) if a[0] != b[0]]
+    won = {place: _won(before, start, end, after, place) for place in places}
+    place = min(places, key=lambda p: math.fsum(map(abs, won[p])) + abs(carried + math.fsum(won[p])))
+    total = carried + math.fsum(won[place])
+    if bent:
+        arc = _segment(before, start, bent)
+        bent, total = _rebent(before, place, bent, arc - total), 0.0
+    elif bulge:
+        arc = _segment(end, after, bulge)
+        bulge, total = _rebent(place, after, bulge, arc - total), 0.0
+    merged = [(place, bulge), *ring[2:-1], (before, bent)]
+    pairs = zip(merged, (*merged[1:], merged[0]), strict=True)
+    return [corner for corner, (point, _) in pairs if corner[0] != point], total
+
+
+def _segment(start: Point, end: Point, bulge: float) -> float:
+    """Return twice the signed area [nm^2] between an arc and its chord."""
+    angle = 4.0 * math.atan(bulge)
+    return bulge_radius(start, end, bulge) ** 2 * (angle - math.sin(angle))
+
+
+def _rebent(start: Point, end: Point, bulge: float, wanted: float) -> float:
+    """Return the bulge of an arc that is to have twice a signed area [nm^2] over its chord.
+
+    Two steps of Newton's method, enough where the ends have moved by a micrometre.
+    """
+    for _ in range(2):
+        found, nudge = _segment(start, end, bulge), 1e-6 * bulge
+        slope = (_segment(start, end, bulge + nudge) - found) / nudge
+        bulge += (wanted - found) / slope
+    return bulge
 
 
 def _between(before: Point, start: Point, end: Point, after: Point) -> Iterator[Point]:
@@ -73,10 +107,9 @@ def _between(before: Point, start: Point, end: Point, after: Point) -> Iterator[
             yield round(meeting[0]), round(meeting[1])
 
 
-def _moved(before: Point, start: Point, end: Point, after: Point, place: Point) -> float:
-    """Return the area [nm^2] that changes sides when both ends of an edge go to one place, at most."""
-    pieces = (_doubled(before, start, place), _doubled(start, end, place), _doubled(end, after, place))
-    return (math.fsum(map(abs, pieces)) + abs(math.fsum(pieces))) / 2.0
+def _won(before: Point, start: Point, end: Point, after: Point, place: Point) -> tuple[int, int, int]:
+    """Return twice the areas [nm^2] won, or lost, when both ends of an edge go to one place."""
+    return _doubled(start, before, place), _doubled(end, start, place), _doubled(after, end, place)
 
 
 def _doubled(a: Point, b: Point, c: Point) -> int:

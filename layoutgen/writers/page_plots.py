@@ -16,7 +16,7 @@ from layoutgen.response import Response
 from layoutgen.writers.charts import Trace
 from layoutgen.writers.html import escape
 
-__all__ = ["level_plot", "phase_plot", "plot_data", "smith_plot"]
+__all__ = ["level_plot", "phase_plot", "plot_data", "plot_height", "smith_height", "smith_plot"]
 
 _WIDTH, _HEIGHT, _LEFT, _RIGHT, _TOP, _BOTTOM = 760, 300, 52, 130, 14, 40
 _SMITH, _RADIUS = 360, 160
@@ -74,8 +74,9 @@ def smith_plot(title: str, response: Response, traces: Sequence[Trace]) -> str:
     half = _SMITH // 2
     width = _SMITH + _RIGHT
     parts = [
-        f'<svg class="chart smith" viewBox="0 0 {width} {_SMITH}" role="img" aria-label="{escape(title)}" '
-        f'data-middle="{half}" data-radius="{_RADIUS}"><title>{escape(title)}</title>',
+        f'<svg class="chart smith" viewBox="0 0 {width} {smith_height(len(traces))}" role="img" '
+        f'aria-label="{escape(title)}" data-middle="{half}" data-radius="{_RADIUS}">'
+        f"<title>{escape(title)}</title>",
         *_smith_grid(half),
     ]
     for k, trace in enumerate(traces):
@@ -86,6 +87,20 @@ def smith_plot(title: str, response: Response, traces: Sequence[Trace]) -> str:
             parts.append(f'<polyline class="{style} {colour}" data-trace="{k}" points="{shown}"/>')
         parts += _key(k, colour, trace.name, _SMITH + 4)
     return "".join([*parts, *_styles(len(traces), _SMITH + 4), "</svg>"])
+
+
+def plot_height(traces: int) -> int:
+    """Return the height of a plot over frequency, or of its key when there are many traces."""
+    return max(_HEIGHT, _key_height(traces))
+
+
+def smith_height(traces: int) -> int:
+    """Return the height of a Smith chart, or of its key when there are many traces."""
+    return max(_SMITH, _key_height(traces))
+
+
+def _key_height(traces: int) -> int:
+    return _TOP + 20 + 18 * traces + 32
 
 
 def plot_data(
@@ -152,8 +167,8 @@ def _plot(
     """Return a plot over frequency with its grid and key; ``curves`` are wanted and as drawn by trace."""
     x = axes.x(response.frequencies)
     parts = [
-        f'<svg class="chart" viewBox="0 0 {_WIDTH} {_HEIGHT}" role="img" aria-label="{escape(title)}" '
-        f'data-left="{_LEFT}" data-right="{_WIDTH - _RIGHT}" data-top="{_TOP}" '
+        f'<svg class="chart" viewBox="0 0 {_WIDTH} {plot_height(len(traces))}" role="img" '
+        f'aria-label="{escape(title)}" data-left="{_LEFT}" data-right="{_WIDTH - _RIGHT}" data-top="{_TOP}" '
         f'data-bottom="{_HEIGHT - _BOTTOM}"><title>{escape(title)}</title>',
         _band(axes, band),
         *_grid(axes, axis, step),

@@ -6,18 +6,17 @@ import math
 from collections.abc import Iterator, Sequence
 
 from layoutgen.numbers import fixed
-from layoutgen.response import CLOSE_ENOUGH, Correction, DeviceView, Doubt, Response
+from layoutgen.response import CLOSE_ENOUGH, Correction, DeviceView, Doubt, Response, Stability
 from layoutgen.units import quantity_text
-from layoutgen.writers.charts import Trace, match_traces, transmission_traces
+from layoutgen.writers.charts import trace_groups
 from layoutgen.writers.html import Cell, cell, escape, items, table, zoom_link
 from layoutgen.writers.page_items import element_keys
 from layoutgen.writers.page_plots import level_plot, phase_plot, plot_data, smith_plot
 from layoutgen.writers.records import Result
 from layoutgen.writers.response_files import trace_values
+from layoutgen.writers.response_tables import ohms, ohms_size
 
 __all__ = ["response_numbers", "response_section"]
-
-Groups = list[tuple[str, Sequence[Trace]]]
 
 
 def response_section(result: Result) -> Iterator[str]:
@@ -42,19 +41,13 @@ def response_section(result: Result) -> Iterator[str]:
 
 def response_numbers(response: Response, frequency: float) -> dict[str, object]:
     """Return the numbers behind the plots, for the cursor, which begins at a frequency [Hz]."""
-    return plot_data(response, _groups(response), frequency)
-
-
-def _groups(response: Response) -> Groups:
-    groups: Groups = [("Reflection", match_traces(response))]
-    through = transmission_traces(response)
-    return [*groups, ("Transmission", through)] if through else groups
+    return plot_data(response, trace_groups(response), frequency)
 
 
 def _plots(result: Result, response: Response) -> Iterator[str]:
     band = result.circuit.file.design.band
     headings = {"Reflection": "Reflection at each port", "Transmission": "Transmission between ports"}
-    for number, (name, traces) in enumerate(_groups(response)):
+    for number, (name, traces) in enumerate(trace_groups(response)):
         yield f'<h3>{headings[name]}</h3><div class="plots" data-group="{number}">'
         yield level_plot(f"{name}, level", response, traces, band)
         yield phase_plot(f"{name}, phase", response, traces, band)
@@ -77,21 +70,29 @@ def _numbers(response: Response) -> str:
 
 def _correction(correction: Correction) -> Iterator[str]:
     """Yield what adjusting the lengths has done, and what holds the rest."""
+    before = f"{fixed(correction.before, 4)} with the lengths of the budgets alone"
     yield (
         "<h3>Lengths adjusted to the response</h3><p>Largest difference of an S-parameter between wanted and "
-        f"as drawn in the band, without losses: {fixed(correction.before, 4)} with the lengths of the "
-        f"budgets alone, {fixed(correction.after, 4)} as drawn. Losses change an S-parameter by "
+        f"as drawn in the band, without losses: {_unallowed(correction)}{before}, "
+        f"{fixed(correction.after, 4)} as drawn. Losses change an S-parameter by "
         f"{fixed(correction.losses, 4)} at most.</p>"
     )
     if correction.reachable > CLOSE_ENOUGH:
         yield (
-            f"<p>No lengths bring it below {fixed(correction.reachable, 4)}; {CLOSE_ENOUGH:g} would count as "
-            "close.</p>"
+            f"<p>No lengths that were found bring it below {fixed(correction.reachable, 4)}; "
+            f"{CLOSE_ENOUGH:g} would count as close.</p>"
         )
         yield items(
-            f"{escape(holder.element)}: {escape(holder.what)}; without it {fixed(holder.without, 4)}"
+            f"{escape(holder.element)}: {escape(holder.cause)}; without it {fixed(holder.without, 4)}"
             for holder in correction.holders
         )
+
+
+def _unallowed(correction: Correction) -> str:
+    """Return the first figure of the sentence on the difference, with its comma."""
+    if correction.unallowed is None:
+        return ""
+    return f"{fixed(correction.unallowed, 4)} were nothing allowed for at the lines' ends and bends, "
 
 
 def _device(view: DeviceView) -> Iterator[str]:
@@ -122,22 +123,24 @@ def _device(view: DeviceView) -> Iterator[str]:
         where = quantity_text(stability.at, "frequency")
         yield (
             f"<p>{escape(stability.part)}: least stable at {where}, K {fixed(stability.k, 3)}, "
-            f"mu {fixed(stability.mu, 3)}.</p>"
+            f"mu {fixed(stability.mu, 3)}{_unstable(stability)}.</p>"
         )
 
 
+def _unstable(stability: Stability) -> str:
+    """Return between which frequencies a transistor may oscillate, for the end of a sentence."""
+    if stability.unstable is None:
+        return "; stable with any passive load over the sweep"
+    low, high = (quantity_text(f, "frequency") for f in stability.unstable)
+    return f"; mu is at most 1 between {low} and {high}: some passive loads let it oscillate"
+
+
 def _ohms(z: complex) -> Cell:
-    """Return an impedance with two decimals, with four digits when large."""
-    if abs(z) >= 1e4:
-        return escape(f"{abs(z):.3g} (magnitude)")
-    return f"{fixed(z.real, 2)} {'+' if z.imag >= 0 else '−'} {fixed(abs(z.imag), 2)}j".replace("-", "−")
+    return ohms(z).replace("-", "−")
 
 
 def _size(z: complex) -> Cell:
-    size = abs(z)
-    if not math.isfinite(size):
-        return cell(None)
-    return fixed(size, 1) if size < 1e5 else f"{size / 1e6:.4g} M"
+    return ohms_size(z) if math.isfinite(abs(z)) else cell(None)
 
 
 def _doubts(result: Result, doubts: Sequence[Doubt]) -> str:

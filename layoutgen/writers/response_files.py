@@ -1,15 +1,18 @@
-"""The response on its own: a table for people, a CSV of every trace, a chart as SVG, Touchstone files."""
+"""The response on its own: a table for people, a CSV of every trace, plots as SVG and PNG, Touchstone."""
 
 from __future__ import annotations
 
 import cmath
 import math
+from collections.abc import Iterator
 
 from layoutgen.numbers import fixed
 from layoutgen.response import Response
-from layoutgen.writers.charts import Trace, chart, decibels, match_traces, transmission_traces
+from layoutgen.writers.charts import Trace, decibels, match_traces, trace_groups, transmission_traces
 from layoutgen.writers.html import escape
+from layoutgen.writers.page_plots import level_plot, phase_plot, plot_height, smith_height, smith_plot
 from layoutgen.writers.records import Job, Result
+from layoutgen.writers.response_png import write_response_png
 from layoutgen.writers.touchstone import write_as_drawn, write_wanted
 
 __all__ = ["TRACE_HEADS", "response_files", "trace_values", "traces_of", "write_csv", "write_plot"]
@@ -19,16 +22,17 @@ TRACE_HEADS = (
 )  # fmt: skip
 """Headings of :func:`trace_values`."""
 
+_WIDTH = 760
 _STYLE = (
     "svg{font:12px Helvetica,Arial,'DejaVu Sans',sans-serif}text{fill:#2b261e}.m{text-anchor:middle}"
-    ".e{text-anchor:end}.g{stroke:#ddd3bf}.band{fill:#a2531f;opacity:.16}.d,.w{fill:none;stroke-width:1.8}"
+    ".f{fill:none}.s{font-size:10px;fill:#6b6252}.e{text-anchor:end}.g{stroke:#ddd3bf}.band{fill:#a2531f;opacity:.16}.d,.w{fill:none;stroke-width:1.8}"
     ".w{stroke-dasharray:6 4;stroke-width:1.3}.ink{stroke:#6b6252}.t0{stroke:#a2531f}.t1{stroke:#1f6f8b}"
     ".t2{stroke:#5b7f2b}.t3{stroke:#7a4a91}.t4{stroke:#b08900}.t5{stroke:#52606d}"
 )
 
 
 def response_files(result: Result, job: Job) -> dict[str, bytes]:
-    """Return the files of the response by name: Touchstone, CSV, chart.
+    """Return the files of the response by name: Touchstone, CSV, plots.
 
     Raises:
         ValueError: The result has no response.
@@ -41,6 +45,7 @@ def response_files(result: Result, job: Job) -> dict[str, bytes]:
         f"as_drawn.s{ports}p": write_as_drawn(result, job),
         "response.csv": write_csv(result.response),
         "response.svg": write_plot(result, result.response),
+        "response.png": write_response_png(result, result.response, job.dpi),
     }
 
 
@@ -79,19 +84,28 @@ def write_csv(response: Response) -> bytes:
 
 
 def write_plot(result: Result, response: Response) -> bytes:
-    """Return one SVG with both charts, reflection above transmission."""
+    """Return one SVG with all plots below each other: level, phase, and reflections on a Smith chart."""
     design = result.circuit.file.design
-    match, through = match_traces(response), transmission_traces(response)
-    charts = [("Reflection at each port", match), ("Transmission between ports", through)]
-    shown = [(title, traces) for title, traces in charts if traces]
-    parts = [
-        f'<svg xmlns="http://www.w3.org/2000/svg" width="780" height="{30 + 340 * len(shown)}" role="img">'
+    parts, y = [], 10
+    for title, height, plot in _plots(response, design.band):
+        parts.append(f'<text x="20" y="{y + 18}" font-size="15">{escape(title)}</text>')
+        size = f'<svg x="10" y="{y + 26}" height="{height}" width="{_WIDTH}" preserveAspectRatio="xMinYMin" '
+        parts.append(plot.replace("<svg ", size, 1))
+        y += height + 40
+    head = (
+        f'<svg xmlns="http://www.w3.org/2000/svg" width="{_WIDTH + 20}" height="{y}" role="img">'
         f"<title>{escape(design.title)}: response</title><style>{_STYLE}</style>"
         '<rect width="100%" height="100%" fill="#fbf8f1"/>'
-    ]
-    for k, (title, traces) in enumerate(shown):
-        y = 10 + 340 * k
-        parts.append(f'<text x="20" y="{y + 18}" font-size="15">{escape(title)}</text>')
-        inner = chart(title, response.frequencies, traces, design.band)
-        parts.append(inner.replace("<svg ", f'<svg x="10" y="{y + 26}" width="760" height="300" ', 1))
-    return ("".join(parts) + "</svg>\n").encode("utf-8")
+    )
+    return ("".join([head, *parts]) + "</svg>\n").encode("utf-8")
+
+
+def _plots(response: Response, band: tuple[float, float]) -> Iterator[tuple[str, int, str]]:
+    """Yield the plots with their titles and heights."""
+    for name, traces in trace_groups(response):
+        height = plot_height(len(traces))
+        yield f"{name}, level", height, level_plot(name, response, traces, band)
+        yield f"{name}, phase", height, phase_plot(name, response, traces, band)
+        if name == "Reflection":
+            height = smith_height(len(traces))
+            yield "Reflection on a Smith chart", height, smith_plot(name, response, traces)

@@ -7,8 +7,9 @@ from collections.abc import Iterator
 import numpy as np
 import numpy.typing as npt
 
-from layoutgen.numbers import fixed
+from layoutgen.numbers import fixed, mm_short
 from layoutgen.response import Response
+from layoutgen.response.pads import pad_frames
 from layoutgen.writers.records import Job, Result
 
 __all__ = ["renormalised", "write_as_drawn", "write_wanted"]
@@ -16,7 +17,7 @@ __all__ = ["renormalised", "write_as_drawn", "write_wanted"]
 REFERENCE_OHM = 50.0
 """What the files' S-parameters refer to at every port [ohm]."""
 
-_PLACES = 9
+_PLACES = 12
 _PAIRS_PER_LINE = 4
 
 Matrices = npt.NDArray[np.complex128]
@@ -80,12 +81,29 @@ def _file(result: Result, response: Response, s: Matrices, about: str, job: Job)
 
 
 def _port_texts(result: Result, response: Response) -> Iterator[str]:
-    """Yield each port's name, and its own impedance in the schematic."""
+    """Yield each port's name, its own impedance in the schematic, and where its plane is on the board."""
+    planes = _planes(result)
     for name, z in zip(response.ports, response.impedances, strict=True):
         imaginary = f" {'-' if z.imag < 0 else '+'} j{abs(z.imag):g}" if z.imag else ""
         port = result.circuit.file.ports.get(name)
         net = f", net {port.net}" if port else ""
-        yield f"{name}{net}, {z.real:g}{imaginary} ohm in the schematic"
+        plane = f"; plane at {planes[name]}" if name in planes else ""
+        yield f"{name}{net}, {z.real:g}{imaginary} ohm in the schematic{plane}"
+
+
+def _planes(result: Result) -> dict[str, str]:
+    """Return where the plane of each port and termination is: the copper's end, the pad's inner edge."""
+    found = {
+        name: f"the end of its copper, {_place(port.x, port.y)}"
+        for name, port in result.placement.ports.items()
+    }
+    for frame in pad_frames(result.placement):
+        found[frame.key] = f"the pad's inner edge, {_place(frame.x, frame.y)}"
+    return found
+
+
+def _place(x: float, y: float) -> str:
+    return f"x {mm_short(round(x))} mm, y {mm_short(round(y))} mm"
 
 
 def _rows(frequency: float, matrix: Matrices) -> Iterator[str]:

@@ -12,7 +12,7 @@ from typing import Any
 import shapely
 
 from layoutgen.circuit import Circuit, DcSolution, Net
-from layoutgen.geometry import Ring, mitre_for_turn, path_length, turn_degrees
+from layoutgen.geometry import Ring, mitre_for_turn, turn_degrees
 from layoutgen.origin import Origin
 from layoutgen.placement import (
     Bend,
@@ -29,6 +29,7 @@ from layoutgen.placement import (
 )
 from layoutgen.reading import circuit_from_data, rules_from_data
 from layoutgen.sizing import SizedCircuit, SizedLine, SizedPair, SizedRadial
+from tests.placed import changed, nm, placed_line, placed_pair, placed_port, placed_radial, sized_line
 
 RULES: dict[str, Any] = {
     "format": 1,
@@ -52,24 +53,6 @@ RULES: dict[str, Any] = {
     "mask": {"expansion": "0.05 mm", "min_web": "0.10 mm"},
     "legend": {"min_line": "0.12 mm", "min_distance": "0.15 mm"},
 }
-
-
-def nm(mm: float) -> int:
-    """Millimetres in whole nanometres."""
-    return round(mm * 1e6)
-
-
-def merged(base: dict[str, Any], changes: dict[str, Any]) -> dict[str, Any]:
-    """Return nested tables with changes; a value None takes a key out."""
-    out = dict(base)
-    for key, value in changes.items():
-        if value is None:
-            out.pop(key, None)
-        elif isinstance(value, dict) and isinstance(out.get(key), dict):
-            out[key] = merged(out[key], value)
-        else:
-            out[key] = value
-    return out
 
 
 @dataclass
@@ -112,58 +95,23 @@ class BoardBuilder:
         """Add a line along a path."""
         points = tuple((nm(x), nm(y)) for x, y in path)
         bends = tuple(_bend(points, i, mitre, nm(width)) for i in range(1, len(points) - 1))
-        self.lines[name] = PlacedLine(
-            name=name,
-            nets=nets,
-            width=nm(width),
-            path=points,
-            bends=bends,
-            centre_line=path_length(points),
-            budget=(),
-            angle=1.0,
-            origin=Origin(name),
-        )
-        pour_gap = (self.gap if gap is None else gap) * 1e-3
-        self.sized_lines[name] = SizedLine(
-            name=name,
-            nets=nets,
-            width=width * 1e-3,
-            impedance=50.0,
-            asked_impedance=50.0,
-            angle=1.0,
-            length=None,
-            free=False,
+        self.lines[name] = placed_line(name, nets, path, width, bends)
+        pour_gap = self.gap if gap is None else gap
+        self.sized_lines[name] = sized_line(
+            name,
+            nets,
+            width,
+            pour_gap if self.ground is not None else math.inf,
             rf=rf,
-            effective_permittivity=2.8,
-            beta=80.0,
-            pour_gap=pour_gap if self.ground is not None else math.inf,
-            gap_left=pour_gap,
-            gap_right=pour_gap,
-            mitre_percent=mitre,
-            bend_length=0.0,
-            current=0.0,
-            temperature_rise=0.0,
-            loss=0.0,
-            spread=0.0,
-            flags=(),
+            mitre=mitre,
+            assumed_gap=pour_gap,
         )
         return self
 
     def pair(self, name: str, x0: float, x1: float, y: float, width: float, gap: float) -> BoardBuilder:
         """Add a coupled pair heading east, its second strip north of the first."""
-        upper = y + width + gap
         nets = ("a1", "a2", "b1", "open")
-        self.pairs[name] = PlacedPair(
-            name=name,
-            nets=nets,
-            width=nm(width),
-            gap=nm(gap),
-            paths=(((nm(x0), nm(y)), (nm(x1), nm(y))), ((nm(x0), nm(upper)), (nm(x1), nm(upper)))),
-            centre_line=float(nm(x1 - x0)),
-            budget=(),
-            angle=1.0,
-            origin=Origin(name),
-        )
+        self.pairs[name] = placed_pair(name, nets, x0, x1, y, width, gap)
         self.sized_pairs[name] = SizedPair(
             name=name,
             nets=nets,
@@ -186,16 +134,7 @@ class BoardBuilder:
         self, name: str, apex: tuple[float, float], heading: float, sector: float, inner: float, outer: float
     ) -> BoardBuilder:
         """Add a radial stub."""
-        self.radials[name] = PlacedRadial(
-            name=name,
-            nets=("e",),
-            apex=(nm(apex[0]), nm(apex[1])),
-            heading=heading,
-            sector_deg=sector,
-            inner_radius=nm(inner),
-            outer_radius=nm(outer),
-            origin=Origin(name),
-        )
+        self.radials[name] = placed_radial(name, ("e",), apex, heading, sector, inner, outer)
         self.sized_radials[name] = SizedRadial(
             name=name,
             nets=("e",),
@@ -211,18 +150,7 @@ class BoardBuilder:
         self, name: str, net: str, x: float, y: float, heading: float, width: float, to_edge: bool = False
     ) -> BoardBuilder:
         """Add a port."""
-        edge = {0.0: "west", 90.0: "south", 180.0: "east", 270.0: "north"}[heading]
-        self.ports[name] = PlacedPort(
-            name=name,
-            net=net,
-            x=nm(x),
-            y=nm(y),
-            heading=heading,
-            edge=edge,
-            width=nm(width),
-            to_edge=to_edge,
-            origin=Origin(name),
-        )
+        self.ports[name] = placed_port(name, net, x, y, heading, width, to_edge=to_edge)
         return self
 
     def chip(
@@ -395,7 +323,7 @@ class BoardBuilder:
         nets = {net: Net(name=net, ends=(), voltage=None, is_dc=True) for net in sorted(self.dc_nets)}
         return Circuit(
             file=circuit_from_data(data),
-            rules=rules_from_data(merged(RULES, self.rules)),
+            rules=rules_from_data(changed(RULES, self.rules)),
             nets=nets,
             dc=DcSolution(voltages={}, currents={}, notes=()),
             spine=(),

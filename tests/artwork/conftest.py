@@ -4,12 +4,32 @@ from __future__ import annotations
 
 import importlib.util
 import sys
+from functools import cache
 from pathlib import Path
 from types import ModuleType
 
 import pytest
 
+from layoutgen.artwork import Artwork, draw
+from layoutgen.circuit import build_circuit
+from layoutgen.placement import place
+from layoutgen.reading import read_inputs
+from layoutgen.sizing import size_circuit
+
 _HERE = Path(__file__).parent
+EXAMPLES = sorted((_HERE.parents[1] / "examples").glob("*.toml"))
+
+
+@cache
+def _drawn(path: Path) -> Artwork:
+    inputs = read_inputs(path)
+    return draw(place(size_circuit(build_circuit(inputs.circuit, inputs.rules))))
+
+
+@pytest.fixture(params=EXAMPLES, ids=lambda path: path.stem)
+def artwork(request: pytest.FixtureRequest) -> Artwork:
+    """The artwork of one example, drawn once."""
+    return _drawn(request.param)
 
 
 def _load(name: str) -> ModuleType:

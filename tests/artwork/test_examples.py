@@ -3,27 +3,12 @@
 from __future__ import annotations
 
 import math
-from pathlib import Path
 from types import ModuleType
 
-import pytest
 import shapely
 import shapely.ops
 
-from layoutgen.artwork import Artwork, draw
-from layoutgen.circuit import build_circuit
-from layoutgen.placement import place
-from layoutgen.reading import read_inputs
-from layoutgen.sizing import size_circuit
-
-EXAMPLES = sorted((Path(__file__).parents[2] / "examples").glob("*.toml"))
-
-
-@pytest.fixture(scope="module", params=EXAMPLES, ids=lambda path: path.stem)
-def artwork(request: pytest.FixtureRequest) -> Artwork:
-    """The artwork of one example."""
-    inputs = read_inputs(request.param)
-    return draw(place(size_circuit(build_circuit(inputs.circuit, inputs.rules))))
+from layoutgen.artwork import Artwork
 
 
 def test_pour_keeps_the_sized_gap_to_every_line(artwork: Artwork, measures: ModuleType) -> None:

@@ -5,7 +5,6 @@ Coordinates are in millimetres. Nothing is routed, sized or poured here: a sheet
 
 from __future__ import annotations
 
-import copy
 import datetime
 import math
 from typing import Any
@@ -13,7 +12,7 @@ from typing import Any
 from layoutgen.artwork import Artwork, Hole, Shape, Via
 from layoutgen.checks import CheckResult, Finding, check
 from layoutgen.circuit import build_circuit
-from layoutgen.geometry import Ring, path_length, stroke
+from layoutgen.geometry import Ring, stroke
 from layoutgen.origin import Origin
 from layoutgen.placement import (
     PlacedLine,
@@ -27,6 +26,7 @@ from layoutgen.placement import (
 )
 from layoutgen.reading import circuit_from_data, rules_from_data
 from layoutgen.sizing import SizedCircuit, SizedLine, SizedPair, SizedRadial
+from tests.placed import changed, nm, placed_line, placed_pair, placed_port, placed_radial, sized_line
 
 XY = tuple[float, float]
 
@@ -67,24 +67,6 @@ RULES: dict[str, Any] = {
     "holes": {"drills": ["0.3 mm", "1 mm", "2 mm"]},
     "vias": {"diameter": "0.6 mm", "drill": "0.3 mm", "plating": "20 um"},
 }
-
-
-def nm(mm: float) -> int:
-    """Millimetres in whole nanometres."""
-    return round(mm * 1e6)
-
-
-def changed(base: dict[str, Any], changes: dict[str, Any]) -> dict[str, Any]:
-    """Return nested tables with changes; a value None takes a key out."""
-    out = copy.deepcopy(base)
-    for key, value in changes.items():
-        if value is None:
-            out.pop(key, None)
-        elif isinstance(value, dict) and isinstance(out.get(key), dict):
-            out[key] = changed(out[key], value)
-        else:
-            out[key] = value
-    return out
 
 
 def box(x0: float, y0: float, x1: float, y1: float) -> Ring:
@@ -168,76 +150,23 @@ class Sheet:
     ) -> None:
         """Add a line of the circuit along a path, its copper a stroke; gap is the pour's [mm]."""
         nets = self.file.lines[name].nets
-        points = tuple((nm(x), nm(y)) for x, y in path)
-        length = path_length(points)
-        self.lines[name] = PlacedLine(
-            name=name,
-            nets=nets,
-            width=nm(width),
-            path=points,
-            bends=(),
-            centre_line=length,
-            budget=(),
-            angle=1.0,
-            origin=Origin(name),
-        )
-        self.sized[name] = SizedLine(
-            name=name,
-            nets=nets,
-            width=width * 1e-3,
-            impedance=50.0,
-            asked_impedance=50.0,
-            angle=1.0,
-            length=None,
-            free=False,
-            rf=rf,
-            effective_permittivity=2.8,
-            beta=80.0,
-            pour_gap=gap * 1e-3,
-            gap_left=gap * 1e-3,
-            gap_right=gap * 1e-3,
-            mitre_percent=60.0,
-            bend_length=0.0,
-            current=0.0,
-            temperature_rise=0.0,
-            loss=0.0,
-            spread=0.0,
-            flags=(),
-        )
+        line = placed_line(name, nets, path, width)
+        self.lines[name], self.sized[name] = line, sized_line(name, nets, width, gap, rf=rf)
         if draw:
-            self.copper(stroke(points, nm(width)), next(n for n in nets if n != "gnd"), "line", name)
+            self.copper(stroke(line.path, nm(width)), next(n for n in nets if n != "gnd"), "line", name)
 
     def pair(self, name: str, x0: float, x1: float, y: float, width: float, gap: float) -> None:
         """Add a coupled pair heading east, its second strip north of the first."""
         nets = self.file.coupled[name].nets
-        rows = (y, y + width + gap)
-        paths = tuple(((nm(x0), nm(row)), (nm(x1), nm(row))) for row in rows)
-        self.pairs[name] = PlacedPair(
-            name=name,
-            nets=nets,
-            width=nm(width),
-            gap=nm(gap),
-            paths=(paths[0], paths[1]),
-            centre_line=float(nm(x1 - x0)),
-            budget=(),
-            angle=1.0,
-            origin=Origin(name),
-        )
-        for k, path in enumerate(paths):
+        pair = placed_pair(name, nets, x0, x1, y, width, gap)
+        self.pairs[name] = pair
+        for k, path in enumerate(pair.paths):
             self.copper(stroke(path, nm(width)), nets[2 * k], "pair", name)
 
     def radial(self, name: str, apex: XY, heading: float, sector: float, radius: float) -> None:
         """Add a radial stub, its arc drawn as chords of a degree, its point at the apex."""
-        self.radials[name] = PlacedRadial(
-            name=name,
-            nets=self.file.lines[name].nets,
-            apex=(nm(apex[0]), nm(apex[1])),
-            heading=heading,
-            sector_deg=sector,
-            inner_radius=nm(0.3),
-            outer_radius=nm(radius),
-            origin=Origin(name),
-        )
+        nets = self.file.lines[name].nets
+        self.radials[name] = placed_radial(name, nets, apex, heading, sector, 0.3, radius)
         turns = [math.radians(heading - sector / 2.0 + k) for k in range(round(sector) + 1)]
         rim = [(apex[0] + radius * math.cos(t), apex[1] + radius * math.sin(t)) for t in turns]
         self.copper(polygon(apex, *rim), self.file.lines[name].nets[0], "radial", name)
@@ -302,17 +231,8 @@ class Sheet:
         self, name: str, x: float, y: float, heading: float, width: float, *, to_edge: bool = False
     ) -> None:
         """Add a port."""
-        self.ports[name] = PlacedPort(
-            name=name,
-            net=self.file.ports[name].net,
-            x=nm(x),
-            y=nm(y),
-            heading=heading,
-            edge="west",
-            width=nm(width),
-            to_edge=to_edge,
-            origin=Origin(name),
-        )
+        net = self.file.ports[name].net
+        self.ports[name] = placed_port(name, net, x, y, heading, width, to_edge=to_edge)
 
     def via(
         self,

@@ -15,7 +15,7 @@ SERIES = (("capacitor", "22 pF"), ("inductor", "3.3 nH"), ("resistor", "10 ohm")
 
 @dataclass
 class RandomCircuit:
-    """Grows a circuit from net to net; ``size`` is about how many elements it gets, ``loops`` how many loops."""
+    """Grows a circuit from net to net, of about ``size`` elements, with ``loops`` loops."""
 
     chance: random.Random
     size: int
@@ -58,7 +58,10 @@ class RandomCircuit:
             if found := getattr(self, key):
                 data[key] = found
         if self.chance.random() < 0.4:
-            wide, high = self.chance.randint(15, 60 + 3 * self.size), self.chance.randint(8, 30 + 2 * self.size)
+            wide, high = (
+                self.chance.randint(15, 60 + 3 * self.size),
+                self.chance.randint(8, 30 + 2 * self.size),
+            )
             data["board"]["size"] = [f"{wide} mm", f"{high} mm"]
         if self.chance.random() < 0.2:
             del data["ground"]
@@ -123,7 +126,7 @@ class RandomCircuit:
         self.parts[f"Q{len(self.parts)}"] = {"kind": "transistor", "footprint": "small", "pins": pins}
 
     def _loop(self, here: str, there: str) -> None:
-        """Add a loop between two nets: two lines, a line and a part, a bridge, a free line, parts side by side."""
+        """Add a loop between two nets: lines, a line and a part, a bridge, a free line, parts side by side."""
         middle = self._net("m")
         kind = self.chance.choice(("ways", "part", "bridge", "free", "beside"))
         if kind == "beside":
@@ -171,7 +174,9 @@ class RandomCircuit:
         self.ports[supply] = {"kind": "dc", "net": supply, "voltage": "5 V"}
         for j in range(self.chance.randint(1, 4)):
             case = self.chance.choice(CASES[1:])
-            self.parts[f"X{len(self.parts)}"] = chip("capacitor", f"{10 ** (j + 1)} pF", bank, "gnd", case=case)
+            self.parts[f"X{len(self.parts)}"] = chip(
+                "capacitor", f"{10 ** (j + 1)} pF", bank, "gnd", case=case
+            )
 
     def _tree(self, net: str, depth: int) -> None:
         """Add a line whose far end carries one or two stubs, parts or trees of its own."""

@@ -7,15 +7,16 @@ from __future__ import annotations
 
 import math
 import random
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass, replace
 from itertools import pairwise
 
 import shapely
 
-from layoutgen.artwork import Artwork, Hole, Shape
+from layoutgen.artwork import Artwork, Hole, Shape, Via
 from layoutgen.geometry import Ring
 from layoutgen.origin import Origin
+from layoutgen.placement import PlacedPad
 
 XY = tuple[float, float]
 
@@ -89,15 +90,20 @@ def beam(at: XY, along: XY, length: float, width: float) -> shapely.Polygon:
     return shapely.Polygon([(at[0] + s * ux - n * uy, at[1] + s * uy + n * ux) for s, n in corners])
 
 
-def straight(artwork: Artwork, rng: random.Random) -> tuple[str, float, XY, XY]:
-    """Return a place amid a long leg of a line, off all other copper: name, width, place [nm], direction."""
+def straight(artwork: Artwork, rng: random.Random, *, strips: bool = False) -> tuple[str, float, XY, XY]:
+    """Return a place amid a long leg of a line, off all other copper: name, width, place [nm], direction.
+
+    With ``strips`` the strips of coupled pairs count as lines, the other strip on their right.
+    """
     others = [(shape.origin.element, as_polygon(shape)) for shape in artwork.on("copper_top")]
     legs = [
         (line.name, line.width, a, b)
         for line in artwork.placement.lines.values()
         for a, b in pairwise(line.path)
-        if math.dist(a, b) > 3.0 * line.width + 2e6 and "gnd" not in line.nets
+        if "gnd" not in line.nets
     ]
+    legs += list(_strips(artwork)) if strips else []
+    legs = [leg for leg in legs if math.dist(*leg[2:]) > 3.0 * leg[1] + 2e6]
     if not legs:
         raise LookupError("no leg is long enough")
     for _ in range(200):
@@ -110,6 +116,16 @@ def straight(artwork: Artwork, rng: random.Random) -> tuple[str, float, XY, XY]:
     raise LookupError("no leg lies off all other copper")
 
 
+def _strips(artwork: Artwork) -> Iterator[tuple[str, int, tuple[int, int], tuple[int, int]]]:
+    """Yield the strips of coupled pairs, each with the other one on its right: name, width, ends [nm]."""
+    for pair in artwork.placement.pairs.values():
+        for path, other in (pair.paths, pair.paths[::-1]):
+            a, b = path[0], path[-1]
+            away = (other[0][0] - a[0], other[0][1] - a[1])
+            left = (b[0] - a[0]) * away[1] - (b[1] - a[1]) * away[0] > 0
+            yield (pair.name, pair.width, b, a) if left else (pair.name, pair.width, a, b)
+
+
 def pour_of(artwork: Artwork) -> shapely.geometry.base.BaseGeometry:
     """Return the pour [nm]."""
     return shapely.union_all([as_polygon(s) for s in artwork.shapes if s.role == "pour"])
@@ -117,7 +133,9 @@ def pour_of(artwork: Artwork) -> shapely.geometry.base.BaseGeometry:
 
 def gap_of(artwork: Artwork, name: str) -> float:
     """Return the pour's distance from a line [nm]."""
-    return artwork.placement.sized.lines[name].pour_gap * 1e9
+    sized = artwork.placement.sized
+    held = sized.lines[name] if name in sized.lines else sized.pairs[name]
+    return held.pour_gap * 1e9
 
 
 def bridge(artwork: Artwork, rng: random.Random) -> Seeded:
@@ -138,25 +156,25 @@ def bridge(artwork: Artwork, rng: random.Random) -> Seeded:
 
 def cut(artwork: Artwork, rng: random.Random) -> Seeded:
     """A cut of 10 um through a line."""
-    _, width, at, along = straight(artwork, rng)
+    _, width, at, along = straight(artwork, rng, strips=True)
     slot = beam((at[0] - 5_000 * along[0], at[1] - 5_000 * along[1]), along, 10_000.0, 2.0 * width)
-    return Seeded(with_cut(artwork, slot, ("line",)), ("connectivity.open",), at, width)
+    return Seeded(with_cut(artwork, slot, ("line", "pair")), ("connectivity.open",), at, width)
 
 
 def neck(artwork: Artwork, rng: random.Random) -> Seeded:
     """A notch that leaves a neck a micrometre narrower than may be etched."""
-    _, width, at, (ux, uy) = straight(artwork, rng)
+    _, width, at, (ux, uy) = straight(artwork, rng, strips=True)
     least = artwork.placement.sized.circuit.rules.copper.min_width or 0.0
     left = least * 1e9 - 1_000.0
     start = (at[0] + uy * (width / 2.0 - left), at[1] - ux * (width / 2.0 - left))
     notch = beam(start, (-uy, ux), 2.0 * width, 60_000.0)
     place = (at[0] + uy * (width / 2.0 - left / 2.0), at[1] - ux * (width / 2.0 - left / 2.0))
-    return Seeded(with_cut(artwork, notch, ("line",)), ("copper.min_width",), place)
+    return Seeded(with_cut(artwork, notch, ("line", "pair")), ("copper.min_width",), place)
 
 
 def notch(artwork: Artwork, rng: random.Random) -> Seeded:
     """An acute notch of 50 degrees in a line's edge."""
-    _, width, at, (ux, uy) = straight(artwork, rng)
+    _, width, at, (ux, uy) = straight(artwork, rng, strips=True)
     depth = min(0.3 * width, 100_000.0)
     half = depth * math.tan(math.radians(25.0))
     tip = (at[0] - uy * (width / 2.0 - depth), at[1] + ux * (width / 2.0 - depth))
@@ -165,7 +183,7 @@ def notch(artwork: Artwork, rng: random.Random) -> Seeded:
         for s in (1, -1)
     ]
     return Seeded(
-        with_cut(artwork, shapely.Polygon([tip, *mouth]), ("line",)),
+        with_cut(artwork, shapely.Polygon([tip, *mouth]), ("line", "pair")),
         ("copper.min_corner_angle",),
         tip,
         5_000.0,
@@ -174,7 +192,7 @@ def notch(artwork: Artwork, rng: random.Random) -> Seeded:
 
 def narrow_gap(artwork: Artwork, rng: random.Random) -> Seeded:
     """Copper of the pour a micrometre nearer to a line than the least gap."""
-    name, width, at, (ux, uy) = straight(artwork, rng)
+    name, width, at, (ux, uy) = straight(artwork, rng, strips=True)
     least = (artwork.placement.sized.circuit.rules.copper.min_gap or 0.0) * 1e9 - 1_000.0
     away = width / 2.0 + least
     start = (at[0] - uy * away, at[1] + ux * away)
@@ -187,9 +205,9 @@ def narrow_gap(artwork: Artwork, rng: random.Random) -> Seeded:
 
 def near_pour(artwork: Artwork, rng: random.Random) -> Seeded:
     """Pour drawn two micrometres nearer to a line than set."""
-    lines = shapely.union_all([as_polygon(s) for s in artwork.shapes if s.role == "line"])
+    lines = shapely.union_all([as_polygon(s) for s in artwork.shapes if s.role in ("line", "pair")])
     for _ in tries():
-        name, width, at, (ux, uy) = straight(artwork, rng)
+        name, width, at, (ux, uy) = straight(artwork, rng, strips=True)
         gap = gap_of(artwork, name) - 2_000.0
         away = width / 2.0 + gap
         strip = beam((at[0] - uy * away, at[1] + ux * away), (-uy, ux), 50_000.0, 500_000.0)
@@ -201,7 +219,7 @@ def near_pour(artwork: Artwork, rng: random.Random) -> Seeded:
 
 def sliver(artwork: Artwork, rng: random.Random) -> Seeded:
     """A scrap of copper in the gap beside a line."""
-    name, width, at, (ux, uy) = straight(artwork, rng)
+    name, width, at, (ux, uy) = straight(artwork, rng, strips=True)
     away = width / 2.0 + gap_of(artwork, name) / 2.0
     middle = (at[0] - uy * away, at[1] + ux * away)
     scrap = shapely.Point(middle).buffer(50_000.0, quad_segs=4)
@@ -212,8 +230,8 @@ def sliver(artwork: Artwork, rng: random.Random) -> Seeded:
 def slot(artwork: Artwork, rng: random.Random) -> Seeded:
     """A slot of 10 um in the plane under a line."""
     for _ in tries():
-        name, width, at, along = straight(artwork, rng)
-        if artwork.placement.sized.lines[name].rf:
+        name, width, at, along = straight(artwork, rng, strips=True)
+        if name in artwork.placement.pairs or artwork.placement.sized.lines[name].rf:
             break
     gash = beam(at, along, 10_000.0, 3.0 * width)
     return Seeded(with_cut(artwork, gash, ("plane",), "copper_bottom"), ("ground.under_line",), at, width)
@@ -225,14 +243,31 @@ def pick_via(artwork: Artwork, rng: random.Random, purpose: str) -> int:
 
 
 def lost_via(artwork: Artwork, rng: random.Random) -> Seeded:
-    """A via of a ground pad left out, land and all."""
-    n = pick_via(artwork, rng, "part:")
-    via = artwork.vias[n]
-    part = artwork.placement.parts[via.purpose.partition(":")[2]]
-    pad = next(pad for pad in part.pads if pad.net == "gnd" and pad.ground != "flange")
-    shapes = tuple(s for s in artwork.shapes if not (s.role == "land" and is_at(s, via.x, via.y)))
-    vias = artwork.vias[:n] + artwork.vias[n + 1 :]
-    return Seeded(replace(artwork, shapes=shapes, vias=vias), ("vias.per_ground_pad",), (pad.x, pad.y))
+    """Vias of a ground pad left out, lands and all, until one is missing of those that each pad needs."""
+    owner = artwork.vias[pick_via(artwork, rng, "part:")].purpose
+    own = [via for via in artwork.vias if via.purpose == owner]
+    needed = artwork.placement.sized.circuit.rules.vias.per_ground_pad or 1
+    pad = ground_pad(artwork, owner)
+    return Seeded(
+        without_vias(artwork, rng.sample(own, len(own) - needed + 1)),
+        ("vias.per_ground_pad",),
+        (pad.x, pad.y),
+    )
+
+
+def ground_pad(artwork: Artwork, owner: str) -> PlacedPad:
+    """Return the ground pad of the part that vias with a purpose belong to; a part has one at most here."""
+    part = artwork.placement.parts[owner.partition(":")[2]]
+    (pad,) = (pad for pad in part.pads if pad.net == "gnd" and pad.ground != "flange")
+    return pad
+
+
+def without_vias(artwork: Artwork, gone: Sequence[Via]) -> Artwork:
+    """Return the drawing without some vias and their lands."""
+    shapes = tuple(
+        s for s in artwork.shapes if not (s.role == "land" and any(is_at(s, v.x, v.y) for v in gone))
+    )
+    return replace(artwork, shapes=shapes, vias=tuple(via for via in artwork.vias if via not in gone))
 
 
 def is_at(shape: Shape, x: float, y: float) -> bool:

@@ -109,7 +109,7 @@ def outcomes(count: int, processes: int) -> list[tuple[str, str]]:
     if processes < 2:
         return [judge(seed) for seed in range(count)]
     with multiprocessing.get_context("fork").Pool(processes) as pool:
-        return pool.map(judge, range(count), chunksize=8)
+        return list(pool.imap(judge, range(count), chunksize=8))
 
 
 def report(found: Sequence[tuple[str, str]], alarms: Sequence[str], seconds: float) -> dict[str, object]:

@@ -18,13 +18,14 @@ from tests.seeded_faults.faults import (
     as_shapes,
     beam,
     gap_of,
-    is_at,
+    ground_pad,
     pick_via,
     pour_of,
     straight,
     tries,
     with_cut,
     with_shape,
+    without_vias,
 )
 
 
@@ -52,7 +53,7 @@ def wide_line(artwork: Artwork, rng: random.Random) -> Seeded:
 
 def hole_at_a_line(artwork: Artwork, rng: random.Random) -> Seeded:
     """An unplated hole drilled too near a line."""
-    _, width, at, (ux, uy) = straight(artwork, rng)
+    _, width, at, (ux, uy) = straight(artwork, rng, strips=True)
     away = width / 2.0 + 500_000.0 + limit(artwork, "holes.min_copper_distance") - 5_000.0
     x, y = round(at[0] - uy * away), round(at[1] + ux * away)
     hole = Hole(x=x, y=y, diameter=1_000_000, plated=False, net=None, origin=Origin("board"))
@@ -143,6 +144,31 @@ def slit(artwork: Artwork, rng: random.Random) -> Seeded:
     return Seeded(seeded, ("copper.min_gap",), (x + 1e6, y + wide / 2.0), 1.1e6)
 
 
+def pour_slit(artwork: Artwork, rng: random.Random) -> Seeded:
+    """A slit of 10 um in the pour, such as a scratch in the film leaves."""
+    pour = pour_of(artwork)
+    x0, y0, x1, y1 = pour.bounds
+    for _ in tries():
+        x, y, length = rng.uniform(x0, x1), rng.uniform(y0, y1), 1e6
+        turn = rng.uniform(0.0, math.pi)
+        along = (math.cos(turn), math.sin(turn))
+        scratch = beam((x, y), along, length, 10_000.0)
+        if pour.contains(scratch.buffer(300_000.0)):
+            break
+    seeded = with_cut(artwork, scratch, ("pour", "land"))
+    middle = (x + along[0] * length / 2.0, y + along[1] * length / 2.0)
+    return Seeded(seeded, ("copper.min_gap",), middle, 600_000.0)
+
+
+def hole_in_a_line(artwork: Artwork, rng: random.Random) -> Seeded:
+    """An unplated hole drilled into a line's edge."""
+    _, width, at, (ux, uy) = straight(artwork, rng, strips=True)
+    x, y = round(at[0] - uy * width / 2.0), round(at[1] + ux * width / 2.0)
+    hole = Hole(x=x, y=y, diameter=300_000, plated=False, net=None, origin=Origin("board"))
+    rules = ("holes.min_copper_distance",)
+    return Seeded(replace(artwork, holes=(*artwork.holes, hole)), rules, (x, y), 600_000.0)
+
+
 def whisker(artwork: Artwork, rng: random.Random) -> Seeded:
     """A sliver of copper left standing from the pour, thinner than can be etched."""
     rim = pour_of(artwork).boundary
@@ -187,14 +213,31 @@ def bare_ground_pad(artwork: Artwork, rng: random.Random) -> Seeded:
     """A grounded part whose vias were all left out."""
     owner = rng.choice(sorted({via.purpose for via in artwork.vias if via.purpose.startswith("part:")}))
     gone = [via for via in artwork.vias if via.purpose == owner]
-    shapes = tuple(
-        s for s in artwork.shapes if not (s.role == "land" and any(is_at(s, v.x, v.y) for v in gone))
-    )
-    part = artwork.placement.parts[owner.partition(":")[2]]
-    pad = next(pad for pad in part.pads if pad.net == "gnd" and pad.ground != "flange")
-    vias = tuple(via for via in artwork.vias if via not in gone)
+    pad = ground_pad(artwork, owner)
     rules = ("vias.per_ground_pad", "ground.vias")
-    return Seeded(replace(artwork, shapes=shapes, vias=vias), rules, (pad.x, pad.y))
+    return Seeded(without_vias(artwork, gone), rules, (pad.x, pad.y))
+
+
+def cut_strip(artwork: Artwork, rng: random.Random) -> Seeded:
+    """A cut of 10 um through the strip of a bank, between two of its parts' pads."""
+    pads = shapely.union_all(
+        [pad.outline.polygon() for part in artwork.placement.parts.values() for pad in part.pads]
+    )
+    strips = [strip for strip in artwork.placement.strips if math.dist(*strip.path[:2]) > 1e6]
+    if not strips:
+        raise LookupError("no strip is long enough")
+    for _ in tries():
+        strip = rng.choice(strips)
+        a, b = strip.path[:2]
+        length, share = math.dist(a, b), rng.uniform(0.1, 0.9)
+        along = ((b[0] - a[0]) / length, (b[1] - a[1]) / length)
+        at = (a[0] + share * (b[0] - a[0]), a[1] + share * (b[1] - a[1]))
+        slot = beam(at, along, 10_000.0, 3.0 * strip.width)
+        if not slot.intersects(pads):
+            break
+    middle = (at[0] + 5_000.0 * along[0], at[1] + 5_000.0 * along[1])
+    roles = ("strip", "line", "pad")
+    return Seeded(with_cut(artwork, slot, roles), ("connectivity.open",), middle, strip.width)
 
 
 def plane_off_the_flange(artwork: Artwork, rng: random.Random) -> Seeded:
@@ -264,6 +307,8 @@ MORE_ANYWHERE: tuple[Fault, ...] = (
     small_land,
     near_vias,
     slit,
+    pour_slit,
+    hole_in_a_line,
     whisker,
     ringless_via,
     lone_copper,
@@ -274,6 +319,7 @@ MORE_WITH_PARTS: tuple[Fault, ...] = (
     lost_pad,
     lost_opening,
     bare_ground_pad,
+    cut_strip,
     plane_off_the_flange,
     far_capacitor,
 )

@@ -18,6 +18,7 @@ from layoutgen.checks.nodes import GROUND, ground_end, joined_nets
 from layoutgen.checks.planar import CHORD_NM, array_of, parts
 from layoutgen.checks.records import NotChecked
 from layoutgen.checks.sheet.mesh import mesh_of
+from layoutgen.checks.sheet.recovery import missing_power
 from layoutgen.checks.sheet.solve import Flow, loads_on, solve
 
 if TYPE_CHECKING:
@@ -50,7 +51,8 @@ class NetSheet:
     """One piece of copper with its flow: the first of its nets, its terminals, currents through it.
 
     ``drop`` [V] is the largest difference of potential between two terminals (mean over each), ``power`` [W]
-    the heat in the copper; ``flow.density`` (M,) is the sheet current density in each triangle [A/nm].
+    the heat in the copper, both with what linear triangles lose put back; ``flow.density`` (M,) is the sheet
+    current density in each triangle [A/nm].
     """
 
     net: str
@@ -181,8 +183,9 @@ def _solved(
     loads = [loads_on(mesh, terminal.region, terminal.current) for terminal in terminals]
     flow = solve(mesh, np.sum(loads, axis=0))
     levels = [float(load @ flow.potential) / t.current for load, t in zip(loads, terminals, strict=True)]
-    ohms = _sheet_ohms(board)
-    return NetSheet(node, terminals, flow, ohms * (max(levels) - min(levels)), ohms * flow.power)
+    ohms, power = _sheet_ohms(board), flow.power + missing_power(flow)
+    drop = (max(levels) - min(levels)) * (power / flow.power if flow.power > 0.0 else 1.0)
+    return NetSheet(node, terminals, flow, ohms * drop, ohms * power)
 
 
 def _middle(region: BaseGeometry) -> tuple[float, float]:

@@ -16,9 +16,9 @@ import numpy.typing as npt
 import shapely
 from shapely.geometry.base import BaseGeometry
 
-from layoutgen.checks.sheet.mesh import Mesh, mesh_of
+from layoutgen.checks.sheet.mesh import Mesh
 
-__all__ = ["Flow", "gradients", "loads_on", "sheet_resistance", "slopes", "solve"]
+__all__ = ["Flow", "gradients", "loads_on", "slopes", "solve"]
 
 Floats = npt.NDArray[np.float64]
 Ints = npt.NDArray[np.intp]
@@ -106,39 +106,3 @@ def _stiffness(mesh: Mesh) -> tuple[Ints, Ints, Floats]:
 def gradients(mesh: Mesh, potential: Floats) -> Floats:
     """Return the gradient (M, 2) of the potential in each triangle [V/nm]."""
     return np.asarray(np.einsum("mik,mi->mk", slopes(mesh)[0], potential[mesh.triangles]))
-
-
-def sheet_resistance(
-    polygon: shapely.Polygon,
-    first: BaseGeometry,
-    second: BaseGeometry,
-    reach: float = 1.0,
-    fineness: float = 1.0,
-) -> float:
-    """Return the resistance between two ideal electrodes on a sheet, in squares [-].
-
-    What linear triangles lose is put back (see :mod:`~layoutgen.checks.sheet.recovery`).
-
-    Args:
-        polygon: The sheet [nm].
-        first: One electrode; points within ``reach`` [nm] of it are tied.
-        second: The other one.
-        reach: How near a point is to count as on an electrode [nm].
-        fineness: As in :func:`~layoutgen.checks.sheet.mesh.mesh_of` [-].
-
-    Raises:
-        ValueError: No mesh fits the outline, or an electrode meets no point of it.
-    """
-    from layoutgen.checks.sheet.recovery import missing_power
-
-    mesh = mesh_of(polygon, fineness=fineness)
-    if mesh is None:
-        raise ValueError("no mesh fits the outline")
-    points = np.asarray(shapely.points(mesh.points), dtype=object)
-    groups = [np.flatnonzero(shapely.dwithin(points, one, reach)) for one in (first, second)]
-    if not all(len(group) for group in groups):
-        raise ValueError("an electrode meets no point of the sheet")
-    loads = np.zeros(len(points))
-    loads[groups[0][0]], loads[groups[1][0]] = 1.0, -1.0
-    flow = solve(mesh, loads, groups)
-    return float(flow.potential[groups[0][0]] - flow.potential[groups[1][0]]) + missing_power(flow)

@@ -132,11 +132,23 @@ def _arcs(ring: Ring) -> Iterator[tuple[float, float]]:
             yield radius, abs(4.0 * math.atan(bulge)) * radius
 
 
-def area_check(file: str, reader: str, what: str, found: Area, wanted: Area, arcs: float = 0.0) -> Check:
-    """Return the area of the symmetric difference; the limit grows with the length of arcs [mm]."""
+def area_check(
+    file: str, reader: str, what: str, found: Area, wanted: Area, arcs: float = 0.0, more: float = 0.0
+) -> Check:
+    """Return the area of the symmetric difference.
+
+    Args:
+        file: The file that was read.
+        reader: What read it.
+        what: What is compared.
+        found: The area read.
+        wanted: The area of the model.
+        arcs: Length of arcs [mm], with which the limit grows.
+        more: What else the limit grows by [mm^2].
+    """
     left, right = _without_common(found, wanted)
     difference = shapely.symmetric_difference(left.region(), right.region()).area / _NM2_PER_MM2
-    limit = FLOOR_MM2 + FINE_NM * 1e-6 * arcs
+    limit = FLOOR_MM2 + FINE_NM * 1e-6 * arcs + more
     return Check(
         file=file,
         reader=reader,

@@ -22,8 +22,9 @@ import shapely
 from shapely.geometry.base import BaseGeometry
 
 from layoutgen.artwork import LAYERS, Shape
-from layoutgen.geometry import CHORD_TOLERANCE_NM
+from layoutgen.geometry import CHORD_TOLERANCE_NM, Ring
 from layoutgen.writers.dxf_r12 import KEEPOUT, reference_square
+from layoutgen.writers.long_edges import SHORTEST_NM
 from layoutgen.writers.outlines import as_circle, turned
 from layoutgen.writers.readback.areas import (
     FINE_NM,
@@ -45,6 +46,8 @@ _GDAL = "GDAL"
 _NM = 1e6
 _GDAL_STEP_DEG = 0.2
 """Angle of the chords that GDAL is asked to make of arcs [deg]."""
+_CIRCLE_POINTS = 1500
+"""GDAL's chords of a circle are more, at that step; those of outlines in R12 are fewer up to 400 mm [-]."""
 _SAME_NM = 0.5
 _ROUND_POINTS = 100
 """Outlines of fewer points are no circles drawn as chords within 5 nm [-]."""
@@ -110,7 +113,7 @@ def _compared(file: str, reader: str, drawn: dict[str, _Drawn], result: Result, 
             continue
         yield count_check(file, reader, f"{name}: polylines that are not closed", found.unclosed, 0)
         yield from _outlines(file, reader, name, found, shapes, chords)
-        wanted = [circle for shape in shapes if (circle := _drill(shape))]
+        wanted = [circle for shape in shapes if (circle := _disc(shape))]
         if wanted or found.circles:
             yield circle_check(file, reader, f"{name}: circles that differ", found.circles, wanted)
 
@@ -128,7 +131,7 @@ def _outlines(
     file: str, reader: str, name: str, found: _Drawn, shapes: Sequence[Shape], chords: bool
 ) -> Evidence:
     """Yield the comparisons of outlines and of holes."""
-    plain = [shape for shape in shapes if _drill(shape) is None]
+    plain = [shape for shape in shapes if _disc(shape) is None]
     outer = [turned(s.outline, 1) for s in plain if s.role != "cutout"]
     inner = [turned(hole, -1) for s in plain for hole in s.holes]
     inner += [turned(s.outline, -1) for s in plain if s.role == "cutout"]
@@ -143,20 +146,33 @@ def _outlines(
         )
         area = found.turning(sense)
         yield count_check(file, reader, f"{name}: number of {what}", len(area.pieces()), len(rings))
-        yield area_check(file, reader, f"{name}, {what}", area, wanted, arcs)
-    if reader != _GDAL:  # its chords begin with the arc's end that is there already
-        yield _repeated(file, reader, name, found)
+        yield area_check(file, reader, f"{name}, {what}", area, wanted, arcs, _merged_mm2(rings))
+    if reader != _GDAL or chords:  # its chords of arcs begin with an end that is there already
+        yield _short(file, reader, name, found)
 
 
-def _repeated(file: str, reader: str, name: str, found: _Drawn) -> Check:
-    """Return how many vertices repeat the one before them."""
-    count = sum(int((np.hypot(*(np.roll(p, -1, axis=0) - p).T) < _SAME_NM).sum()) for p in found.loops)
-    return count_check(file, reader, f"{name}: repeated vertices", count, 0)
+def _merged_mm2(rings: Sequence[Ring]) -> float:
+    """Return the area [mm^2] that may change sides where edges below a micrometre are merged."""
+    total = 0.0
+    for ring in rings:
+        points = np.array(ring.points, dtype=float)
+        length = np.hypot(*(np.roll(points, -1, axis=0) - points).T)
+        before, after = np.roll(length, 1), np.roll(length, -1)
+        short = length < SHORTEST_NM
+        total += float((length * before * after / (before + after + 1.0))[short].sum())
+    return total / _NM**2
 
 
-def _drill(shape: Shape) -> Circle | None:
-    """Return a drill's circle: drills alone are circles in the file."""
-    circle = as_circle(shape.outline) if shape.role == "drill" else None
+def _short(file: str, reader: str, name: str, found: _Drawn) -> Check:
+    """Return how many edges are below a micrometre, repeated vertices among them."""
+    lengths = (np.hypot(*(np.roll(loop, -1, axis=0) - loop).T) for loop in found.loops)
+    count = sum(int((length < SHORTEST_NM - _SAME_NM).sum()) for length in lengths)
+    return count_check(file, reader, f"{name}: repeated vertices and edges below 1 um", count, 0)
+
+
+def _disc(shape: Shape) -> Circle | None:
+    """Return a round shape as the circle that it is in the file; holes and cut-outs are polylines there."""
+    circle = None if shape.holes or shape.role == "cutout" else as_circle(shape.outline)
     return None if circle is None else (float(circle[0]), float(circle[1]), 2.0 * circle[2])
 
 
@@ -233,20 +249,22 @@ def _by_gdal(data: bytes) -> dict[str, _Drawn]:
             meta, _, geometry, columns = importlib.import_module("pyogrio.raw").read(path)
     finally:
         pyogrio.set_gdal_config_options({"OGR_ARC_STEPSIZE": before})
-    names = columns[list(meta["fields"]).index("Layer")]
+    fields = list(meta["fields"])
+    names, kinds = (columns[fields.index(field)] for field in ("Layer", "SubClasses"))
+    shapes = shapely.from_wkb(geometry)
     layers: dict[str, _Drawn] = {}
-    for name, shape in zip(names, shapely.from_wkb(geometry), strict=True):
-        _add(layers.setdefault(name, _Drawn()), name, shape)
+    for name, kind, shape in zip(names, kinds, shapes, strict=True):
+        _add(layers.setdefault(name, _Drawn()), kind, shape)
     return layers
 
 
-def _add(drawn: _Drawn, layer: str, shape: BaseGeometry) -> None:
-    """Add one of GDAL's geometries to a layer; drills are known by it, since GDAL makes chords of them."""
+def _add(drawn: _Drawn, kind: str | None, shape: BaseGeometry) -> None:
+    """Add one of GDAL's geometries to a layer; R12 has no kinds, but GDAL makes many chords of a circle."""
     if shape.geom_type == "Point":
         drawn.texts += 1
         return
     points = shapely.get_coordinates(shape) * _NM
-    if layer.startswith("drill"):
+    if "AcDbCircle" in kind if kind else len(points) > _CIRCLE_POINTS:
         (x0, y0), (x1, y1) = points.min(axis=0), points.max(axis=0)
         drawn.circles.append(((x0 + x1) / 2.0, (y0 + y1) / 2.0, x1 - x0))
     else:

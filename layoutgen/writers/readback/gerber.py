@@ -164,7 +164,7 @@ def _flashes(file: str, objects: Iterable[Any], wanted: Iterable[Flashes]) -> Ch
     asked = Counter(
         (x, y, item.marks.net or "", ",".join(item.marks.pin or ()))
         for item in wanted
-        for x, y in item.places
+        for x, y, _ in item.places
     )
     odd = sum(((found - asked) + (asked - found)).values())
     return count_check(file, _READER, "flashes that differ in place, net or pin", odd, 0)
