@@ -131,25 +131,21 @@ def draw(
 
     folder = out if out is not None else Path("out", circuit.stem)
     chosen = _receivers(receivers)
-    for place in (folder, *(folder / name for name in chosen)):
-        prepare_folder(place, file_names(circuit.stem) if place == folder else ())
+    prepare_folder(folder, (*file_names(circuit.stem), *(f"{name}/README.txt" for name in chosen)))
     result = _run(circuit, quiet, correction=not no_correction)
     job = Job(stem=circuit.stem, dpi=dpi, repeatable=repeatable)
     files = encode(result, job)
-    packages = _packages(result, replace(job, files=files), chosen)
+    files |= _packages(result, replace(job, files=files), chosen)
     write_files(folder, files)
-    for name, package in packages.items():
-        write_files(folder / name, package)
     if not quiet:
         click.echo(f"open {folder / 'report.html'} for the picture, the tables and the findings", err=True)
         click.echo(_summary(result))
         _print_findings(result.findings, verbose)
-        for path in (*files, *(f"{name}/{file}" for name, package in packages.items() for file in package)):
+        for path in files:
             click.echo(f"wrote {folder / path}")
     if verbose:
         _print_seconds(result)
-    flat = {f"{name}/{file}": data for name, package in packages.items() for file, data in package.items()}
-    proved = not prove or _proved(result, {**files, **flat}, quiet, verbose)
+    proved = not prove or _proved(result, files, quiet, verbose)
     return FINDINGS if result.count("error") or not proved else CLEAN
 
 
@@ -162,17 +158,13 @@ def _receivers(text: str | None) -> tuple[str, ...]:
     return tuple(RECEIVERS) if text.strip() == "all" else receivers_from(text)
 
 
-def _packages(result: Result, job: Job, receivers: Sequence[str]) -> dict[str, dict[str, bytes]]:
-    """Return each receiver's files by name."""
+def _packages(result: Result, job: Job, receivers: Sequence[str]) -> dict[str, bytes]:
+    """Return all receivers' files by their paths."""
     if not receivers:
         return {}
     from layoutgen.writers.packages import encode_packages
 
-    packages: dict[str, dict[str, bytes]] = {name: {} for name in receivers}
-    for path, data in encode_packages(result, job, receivers).items():
-        name, file = path.split("/", 1)
-        packages[name][file] = data
-    return packages
+    return encode_packages(result, job, receivers)
 
 
 def _proved(result: Result, files: dict[str, bytes], quiet: bool, verbose: bool) -> bool:

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import math
 from dataclasses import dataclass, field
 
 from layoutgen.circuit import End, EndKind
@@ -12,29 +11,24 @@ from layoutgen.placement.beside import lay_beside
 from layoutgen.placement.bodies import OVERLAP, BodyLand, PartBody, beyond
 from layoutgen.placement.budgets import strip_width
 from layoutgen.placement.clearance import Kind, Obstacle
-from layoutgen.placement.frame import Box, Pose, ahead, box_to_world, to_world, unit
-from layoutgen.placement.kit import PIN_TOLERANCE, Kit, PinnedError, root_edge, world
+from layoutgen.placement.frame import Pose, ahead, box_to_world, unit
+from layoutgen.placement.kit import PIN_TOLERANCE, Kit, PinnedError, world
+from layoutgen.placement.lines import Lines
 from layoutgen.placement.model import GROUND, strip_owner
+from layoutgen.placement.pairs import pair_obstacles, sector_slices
 from layoutgen.placement.ports import Ports
 from layoutgen.placement.state import (
     Device,
     Growth,
-    LaidLine,
     LaidPair,
     LaidRadial,
     Pending,
-    edge_of_heading,
-    leg_boxes,
 )
 from layoutgen.placement.tour import Hub
-from layoutgen.placement.words import Route, route_points
-from layoutgen.sizing import SizedRadial
+from layoutgen.placement.words import Route
 from layoutgen.units import to_nm
 
 __all__ = ["Layer"]
-
-_RF_BEND_WEIGHT = 10.0  # a fold in a stub must save ten times what one in a feed must
-_SLICES = 8  # boxes that stand for a radial stub's sector
 
 
 @dataclass(slots=True)
@@ -42,12 +36,13 @@ class Layer:
     """Lays things into a growing candidate; knows the circuit, holds no state of its own."""
 
     kit: Kit
+    lines: Lines = field(init=False)
     ports: Ports = field(init=False)
     banks: Banks = field(init=False)
 
     def __post_init__(self) -> None:
         """Set the helpers up."""
-        self.ports, self.banks = Ports(self.kit), Banks(self.kit)
+        self.lines, self.ports, self.banks = Lines(self.kit), Ports(self.kit), Banks(self.kit)
 
     # -- lines ---------------------------------------------------------------------------------------
 
@@ -71,106 +66,17 @@ class Layer:
             bank_side: Where a bank it leads to puts its parts: 1 left of the strip, -1 right.
         """
         growth.bank_side = bank_side
-        arrival = self.line_alone(growth, end, start, route, edge)
+        arrival = self.lines.alone(growth, end, start, route, edge)
         far = self._far(end)
         if far is None:
             return
         if far[1] == GROUND:
-            self._ground_end(growth, end.element, arrival)
+            self.lines.ground_end(growth, end.element, arrival)
             return
         self.arrive(growth, self.kit.tour.hubs[far[1]], arrival)
 
-    def line_alone(
-        self,
-        growth: Growth,
-        end: End,
-        start: Pose,
-        route: Route,
-        edge: str | None = None,
-        weight: float | None = None,
-    ) -> Pose:
-        """Lay a line's copper only; return the pose at its far end.
-
-        ``weight`` is what each of its bends counts for, if not as :meth:`bend_weight` says.
-        """
-        growth.use(self.kit.net(end), start.heading)
-        points, arrival = route_points(start, route)
-        name = end.element
-        free = self.kit.model.sized.lines[name].free
-        open_edge = edge if edge is not None and free and not growth.bounds.known(edge) else None
-        root = self._root_edge(end)
-        open_root = root if root is not None and free and not growth.bounds.known(root) else None
-        growth.lines[name] = LaidLine(name, end.index, points, route, open_edge, open_root)
-        growth.bends += len(route.word) * (self.bend_weight(end) if weight is None else weight)
-        self._line_obstacles(growth, end, points, edge)
-        return arrival
-
-    def closing(self, growth: Growth, end: End, mate: Pending, start: Pose, route: Route) -> None:
-        """Lay a line that closes a loop between two placed nodes."""
-        arrival = self.line_alone(growth, end, start, route)
-        growth.use(self.kit.net(mate.end), arrival.heading + 180.0)
-
     def _far(self, end: End) -> tuple[End, str] | None:
         return self.kit.model.far_end(end)
-
-    def bend_weight(self, end: End) -> float:
-        """Return what a bend counts for: a feed or supply may fold, a stub or matching line better not."""
-        tour = self.kit.tour
-        feeds = tour.leads_to_port.get((end.element, end.index), False) or end.element in tour.loops.closers
-        off_path = end.element not in self.kit.model.circuit.spine
-        return 1.0 if off_path and feeds else _RF_BEND_WEIGHT
-
-    def _line_obstacles(self, growth: Growth, end: End, points: tuple[Point, ...], edge: str | None) -> None:
-        """Add a line's boxes; where it ends in a port it runs up to the edge, and its way is kept clear."""
-        name = end.element
-        width, kind, last = self.kit.model.widths[name], self._line_kind(name), len(points) - 2
-        root = self._root_edge(end)
-        inset = 0 if self._runs_to_edge(name) else self.kit.model.limits.edge
-        for i, box in enumerate(leg_boxes(points, width)):
-            edges = (root if i == 0 else None, edge if i == last else None)
-            at_edges = tuple(e for e in edges if e is not None)
-            growth.obstacles.append(Obstacle(box, kind, name, at_edges=at_edges, inset=inset))
-        laid = growth.lines[name]
-        if laid.open_edge is not None:
-            self.kit.keep_way(growth, name, kind, points[-1], laid.open_edge, width)
-        if laid.root_edge is not None:
-            self.kit.keep_way(growth, name, kind, points[0], laid.root_edge, width)
-
-    def _root_edge(self, end: End) -> str | None:
-        """Return the edge at which the walk begins, for the line that leaves the first port."""
-        hub = self.kit.tour.hubs[self.kit.net(end)]
-        arrival = hub.arrival
-        if arrival is None or arrival.kind is not EndKind.PORT or hub.bank or len(hub.arms) != 1:
-            return None
-        return None if hub.cluster is not None else root_edge(self.kit.model, arrival.element)
-
-    def _runs_to_edge(self, name: str) -> bool:
-        """True when a line ends in a port whose copper runs to the profile."""
-        nets = self.kit.model.file.lines[name].nets
-        return any(port.to_edge and port.net in nets for port in self.kit.model.file.ports.values())
-
-    def _line_kind(self, name: str) -> Kind:
-        return Kind.LINE if self.kit.model.sized.lines[name].rf else Kind.SUPPLY
-
-    def _ground_end(self, growth: Growth, name: str, at: Pose) -> None:
-        """Put a via on the line's end, more beside it as the width allows, or behind it, and their copper."""
-        limits = self.kit.model.limits
-        width = self.kit.model.widths[name]
-        pairs = max(0, (width - limits.land) // 2 // limits.pitch)
-        spots = [(0, 0)]
-        for k in range(1, pairs + 1):
-            spots += [(0, k * limits.pitch), (0, -k * limits.pitch)]
-        behind = 1
-        while len(spots) < limits.ground_vias:
-            spots.append((behind * limits.pitch, 0))
-            behind += 1
-        growth.line_vias += [(name, to_world(at, x, y)) for x, y in spots]
-        half = max(width // 2, limits.land // 2)
-        box = box_to_world(
-            at, (-limits.land // 2, -half, (behind - 1) * limits.pitch + limits.land // 2, half)
-        )
-        growth.line_grounds.append((name, box))
-        growth.obstacles.append(Obstacle(box, Kind.GROUND, name))
 
     # -- arriving at a net ---------------------------------------------------------------------------
 
@@ -443,7 +349,7 @@ class Layer:
         pose = ahead(along, 0, lateral * pitch) if second else along
         b_side = -lateral if second else lateral
         growth.pairs[end.element] = LaidPair(end.element, pose, b_side, length)
-        self._pair_obstacles(growth, end.element, pose, b_side * pitch, length)
+        growth.obstacles += pair_obstacles(self.kit, end.element, pose, b_side * pitch, length)
         for other, net in self.kit.model.ends[end.element]:
             if other.index == end.index or net == GROUND:
                 continue
@@ -453,34 +359,3 @@ class Layer:
                     pose, length if other.index in (1, 3) else 0, b_side * pitch if other.index > 1 else 0
                 )
                 self.arrive(growth, hub, node if other.index in (1, 3) else node.turned(180.0))
-
-    def _pair_obstacles(self, growth: Growth, name: str, pose: Pose, offset: int, length: int) -> None:
-        """Add the boxes of both strips; where a strip ends in a port it may run up to the edge."""
-        width = to_nm(self.kit.model.sized.pairs[name].width)
-        ends = {end.index: net for end, net in self.kit.model.ends[name]}
-        for line, sideways in ((0, 0), (1, offset)):
-            box = box_to_world(pose, (0, sideways - width // 2, length, sideways + width // 2))
-            edges = []
-            for index, turn in ((2 * line, 180.0), (2 * line + 1, 0.0)):
-                port = self.kit.carries_port(ends.get(index, ""))
-                edge = edge_of_heading(pose.heading + turn)
-                if port is not None and edge is not None:
-                    edges.append((edge, self.kit.inset(port)))
-            inset = min((value for _, value in edges), default=0)
-            at_edges = tuple(edge for edge, _ in edges)
-            nets = frozenset(net for index, net in ends.items() if index // 2 == line)
-            growth.obstacles.append(Obstacle(box, Kind.LINE, name, at_edges=at_edges, inset=inset, nets=nets))
-
-
-def sector_slices(stub: SizedRadial) -> list[Box]:
-    """Return boxes, in the frame of a radial stub's apex, that cover its sector [nm]."""
-    inner, outer = to_nm(stub.inner_radius), to_nm(stub.outer_radius)
-    half = min(stub.sector, math.pi) / 2.0
-    near = round(inner * math.cos(half))
-    out = []
-    for k in range(_SLICES):
-        x0 = near + (outer - near) * k // _SLICES
-        x1 = near + (outer - near) * (k + 1) // _SLICES
-        reach = outer if math.cos(half) < 1e-9 else min(outer, round(x1 * math.tan(half)) + 1)
-        out.append((x0, -reach, x1, reach))
-    return out

@@ -75,7 +75,7 @@ def lay_cluster(
         if piece.is_line:
             word = tuple(mirror * turn for turn in solution.plan.drawing.words[k])
             _check_leave(layer, solver.ends[k][0], start.heading)
-            layer.line_alone(
+            layer.lines.alone(
                 growth, solver.ends[k][0], start, Route(word, solution.shape.legs[k]), weight=_BEND_WEIGHT
             )
         else:
@@ -97,7 +97,7 @@ def _part(
 ) -> None:
     """Lay a part of a loop."""
     end = solver.ends[k][0]
-    layer.part_alone(growth, end, solver.part_pose(k, start, solution.roles, solution.shape.more[k]))
+    layer.part_alone(growth, end, solver.demands.part_pose(k, start, solution.roles, solution.shape.more[k]))
 
 
 def _hub(
@@ -115,7 +115,7 @@ def _hub(
     arrival = layer.kit.tour.hubs[net].arrival
     for end, heading in zip(solver.outer[hub], solution.plan.outer[hub], strict=True):
         if end != arrival:
-            offset = max(0, solver.offset(end, role)) if end.kind is EndKind.PAD else 0
+            offset = max(0, solver.demands.offset(end, role)) if end.kind is EndKind.PAD else 0
             growth.pending.append(Pending(end, pinning.pose(point, heading), (0.0,), offset))
 
 
@@ -124,7 +124,7 @@ def _strip_to_pad(
 ) -> None:
     """Lay a strip from a node to a pad's edge, unless a line runs through between the two."""
     end, node = pad
-    offset = solver.offset(end, role) + (more + 1) // 2
+    offset = solver.demands.offset(end, role) + (more + 1) // 2
     if offset <= 0 or (_is_crossed(role, end) and not more):
         return
     net = layer.kit.net(end)

@@ -44,6 +44,14 @@ class Neighbours:
                 return f"the legs of {line.name} would come too near to each other"
         return None
 
+    def between(self, growth: Growth, added: Obstacles, other: Growth) -> bool:
+        """Return whether two candidates would stand too near to each other; ``added`` are the first's boxes."""
+        both = Growth(state=growth.state, lines={**growth.lines, **other.lines})
+        return any(
+            new.owner != old.owner and self._really(both, new, old)
+            for new, old in added.conflicts(other.obstacles, self.table)
+        )
+
     def _really(self, growth: Growth, a: Obstacle, b: Obstacle) -> bool:
         """Return whether a conflict stands once the allowance for shared nodes is made."""
         nets_a, nets_b = self._shared(a.owner, b.owner)

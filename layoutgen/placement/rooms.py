@@ -98,7 +98,7 @@ class Rooms:
             if turn * offset <= 0:
                 yield from self._single_turns(end, start, turn, centre, beside=offset != 0.0)
         if offset == 0.0 and self._span(end, start.heading) is not None:
-            least = least_legs((90.0,), self.router.rules(end))
+            least = least_legs((90.0,), self.router.meetings.rules(end))
             for extra in _EXTRA:
                 yield Route((), (sum(least) + extra,))
 
@@ -107,7 +107,7 @@ class Rooms:
         span = self._span(end, start.heading)
         if span is None:
             return
-        first, jog, last = least_legs((turn, -turn), self.router.rules(end))
+        first, jog, last = least_legs((turn, -turn), self.router.meetings.rules(end))
         need = round((-span[0] if turn > 0 else span[1]) + self._gap - offset)
         for extra in _EXTRA:
             yield Route((turn, -turn), (first, max(jog, need + extra), last))
@@ -123,7 +123,7 @@ class Rooms:
         ux, uy = unit(start.heading)
         along = (centre[0] - start.x) * ux + (centre[1] - start.y) * uy
         need = 0 if beside else round(along + self._gap + (span[1] if turn > 0 else -span[0]))
-        rules = self.router.rules(end)
+        rules = self.router.meetings.rules(end)
         for extra in _EXTRA:
             yield Route((turn,), (max(rules.first, need) + extra, rules.last))
 

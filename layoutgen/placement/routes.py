@@ -2,21 +2,17 @@
 
 from __future__ import annotations
 
-import math
 from collections.abc import Iterator
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 from layoutgen.circuit import End, EndKind
-from layoutgen.geometry import mitre_for_turn, mitre_reach
-from layoutgen.placement.bodies import beyond
 from layoutgen.placement.budgets import LineLengths
 from layoutgen.placement.frame import Box, Pose, unit
+from layoutgen.placement.meetings import Meetings
 from layoutgen.placement.model import GROUND, Model
 from layoutgen.placement.state import EDGES, State
 from layoutgen.placement.tour import Tour
 from layoutgen.placement.words import (
-    LegRules,
-    Reach,
     Route,
     Word,
     fixed_shapes,
@@ -82,6 +78,11 @@ class Router:
     model: Model
     tour: Tour
     lengths: LineLengths
+    meetings: Meetings = field(init=False)
+
+    def __post_init__(self) -> None:
+        """Set the helper up."""
+        self.meetings = Meetings(self.model, self.tour)
 
     def choices(self, end: End, start: Pose, state: State, *, straight: bool) -> Iterator[RouteChoice]:
         """Yield routes for a line from one end, the plainest first.
@@ -93,9 +94,9 @@ class Router:
             straight: Only the straight route, where the line need not turn to its port.
         """
         name = end.element
-        far = self._far(end)
+        far = self.meetings.far(end)
         hinted = self._hinted_word(end)
-        port = self._port_at(far)
+        port = self.meetings.port_at(far)
         if hinted is not None:
             yield from self._hinted(end, start, hinted, state, port)
         elif port is not None:
@@ -106,7 +107,7 @@ class Router:
             yield from self._free(end, straight=straight)
         else:
             lengths = self.lengths.by_bends(name, state.roles)
-            shapes = fixed_shapes(lengths, self.rules(end))
+            shapes = fixed_shapes(lengths, self.meetings.rules(end))
             for route in shapes:
                 if not straight or not route.word:
                     yield RouteChoice(route)
@@ -170,98 +171,25 @@ class Router:
         hint = self._hint(name)
         return None if hint is None or hint.route is None else hint.route.turns
 
-    def rules(self, end: End) -> LegRules:
-        """Return what the legs of a line, travelled from one end, must keep."""
-        model, name = self.model, end.element
-        width, limits = model.widths[name], model.limits
-        mitre = mitre_for_turn(model.sized.lines[name].mitre_percent, 90.0, width, limits.neck)
-        bend = math.ceil(mitre_reach(mitre, 90.0, width))
-        first = self._reach(end, self._net(end))
-        far = self._far(end)
-        last = Reach(0, 0) if far is None else self._reach(far[0], far[1])
-        room = first.copper + 2 * model.pour_gap(name) + model.ground_ring + width // 2
-        clear = room if model.has_ground else 0
-        return LegRules.of(width, limits.spacing, bend, first=first, last=last, clear=clear)
-
-    # -- what a line meets ---------------------------------------------------------------------------
-
-    def _net(self, end: End) -> str:
-        return self.model.net_of(end)
-
-    def _far(self, end: End) -> tuple[End, str] | None:
-        return next((found for found in self.model.ends[end.element] if found[0].index != end.index), None)
-
     def _hint(self, name: str) -> Hint | None:
         layout = self.model.file.layout
         return layout.hints.get(name) if layout is not None else None
 
-    def _port_at(self, far: tuple[End, str] | None) -> str | None:
-        """Return the port that a line ends in, when nothing else meets there."""
-        if far is None or far[1] == GROUND:
-            return None
-        hub = self.tour.hubs[far[1]]
-        if hub.arrival == far[0] and not hub.bank and len(hub.arms) == 1:
-            end = hub.arms[0].end
-            return end.element if end.kind is EndKind.PORT else None
-        return None
-
-    def _reach(self, end: End, net: str) -> Reach:
-        """Return what lies at one end of a line."""
-        model, limits = self.model, self.model.limits
-        if net == GROUND:
-            return Reach(limits.land // 2, limits.land, limits.land // 2)
-        hub = self.tour.hubs[net]
-        others = [other for other in model.circuit.nets[net].ends if other != end]
-        pads = [model.bodies[other.element].land_at(other) for other in others if other.kind is EndKind.PAD]
-        if any(other.kind is EndKind.COUPLED for other in others):
-            return Reach(0, 0)
-        if hub.bank:
-            first = model.bodies[hub.bank[0].element]
-            half = max(first.outline[3] - first.outline[1], first.outline[2] - first.outline[0]) // 2
-            along = max(pad.along for pad in pads)
-            return Reach(half, half + limits.height, max(along, self._widest(others)) // 2)
-        if len(others) == 1 and pads:
-            outside = beyond(model.bodies[others[0].element], pads[0])
-            return Reach(pads[0].along, pads[0].along + outside + limits.height, pads[0].across // 2)
-        half = max([self._widest(others), *(pad.across for pad in pads)]) // 2
-        return Reach(half, half + limits.spacing if half else 0, half)
-
-    def _widest(self, ends: list[End]) -> int:
-        return max((self.model.widths.get(end.element, 0) for end in ends), default=0)
-
     # -- free and targeted ---------------------------------------------------------------------------
 
-    def _least_free(self, end: End, *, to_port: bool) -> int:
-        """Return the least length [nm] of a straight free line."""
-        first = self._reach(end, self._net(end))
-        far = self._far(end)
-        last = Reach(0, 0) if far is None else self._reach(far[0], far[1])
-        limits = self.model.limits
-        rf = self.model.sized.lines[end.element].rf
-        extra = max(limits.spacing, 5 * limits.height if rf else 2 * limits.height)
-        return first.copper + (extra if to_port else last.copper + limits.spacing)
-
     def _free(self, end: End, *, straight: bool) -> Iterator[RouteChoice]:
-        least = self._least_free(end, to_port=False)
+        least = self.meetings.least_free(end, to_port=False)
         for more in _STRETCHES:
             yield RouteChoice(Route((), (least + more,)))
         if straight:
             return
-        rules = self.rules(end)
+        rules = self.meetings.rules(end)
         for turn in (90.0, -90.0):
             for more in _STRETCHES:
                 yield RouteChoice(Route((turn,), (rules.first + more, rules.last)))
-                if more and self._meets_closer(end):
+                if more and self.meetings.with_closer(end):
                     yield RouteChoice(Route((turn,), (rules.first, rules.last + more)))
                     yield RouteChoice(Route((turn,), (rules.first + more, rules.last + more)))
-
-    def _meets_closer(self, end: End) -> bool:
-        """True when a line leads to a net where another line is to close a loop, and so needs room."""
-        far = self._far(end)
-        if far is None or far[1] == GROUND:
-            return False
-        closers = self.tour.loops.closers
-        return any(other.element in closers for other in self.model.circuit.nets[far[1]].ends)
 
     def _to_port(
         self, end: End, start: Pose, state: State, port: str, *, straight: bool
@@ -301,8 +229,8 @@ class Router:
 
     def _least(self, end: End, word: Word) -> tuple[int, ...]:
         if not word:
-            return (self._least_free(end, to_port=True),)
-        return least_legs(word, self.rules(end))
+            return (self.meetings.least_free(end, to_port=True),)
+        return least_legs(word, self.meetings.rules(end))
 
     def _stretched(self, end: End, word: Word) -> Iterator[Route]:
         """Yield a word with its least legs, then with longer first and middle legs to go round things."""
@@ -327,7 +255,7 @@ class Router:
         name = end.element
         x, y = target
         if x is None and y is None:
-            for route in fixed_shapes(self.lengths.by_bends(name, state.roles), self.rules(end)):
+            for route in fixed_shapes(self.lengths.by_bends(name, state.roles), self.meetings.rules(end)):
                 if route.word in words:
                     yield RouteChoice(route, edge)
             return
@@ -341,7 +269,7 @@ class Router:
                     yield RouteChoice(solved, edge)
 
     def _fixed_least(self, end: End, word: Word) -> tuple[int, ...]:
-        return least_legs(word, self.rules(end))
+        return least_legs(word, self.meetings.rules(end))
 
     def _port_targets(self, state: State, port: str, edge: str) -> tuple[int | None, int | None]:
         """Return the port's coordinates across and along its edge's heading, where they are settled [nm]."""
@@ -435,7 +363,7 @@ class Router:
                 x, y = (along, across) if unit(out)[0] else (across, along)
         least = tuple(
             1 if leg is not None else m
-            for leg, m in zip(legs, least_legs(word, self.rules(end)), strict=True)
+            for leg, m in zip(legs, least_legs(word, self.meetings.rules(end)), strict=True)
         )
         route = solve_legs(word, least, start, total=total, x=x, y=y, fixed=legs)
         if route is not None:

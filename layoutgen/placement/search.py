@@ -9,16 +9,16 @@ from __future__ import annotations
 
 import heapq
 import itertools
-from collections.abc import Callable, Iterator, Mapping
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, field, replace
-from itertools import islice
 
 from layoutgen.circuit import End, EndKind
 from layoutgen.circuit.queries import is_shunt
 from layoutgen.placement.clearance import Kind, clearance_table, edge_margins
 from layoutgen.placement.cluster import ClusterPlan
-from layoutgen.placement.frame import Pose, box_around
+from layoutgen.placement.frame import Pose
 from layoutgen.placement.kit import PinnedError
+from layoutgen.placement.lookahead import LookAhead
 from layoutgen.placement.model import Model
 from layoutgen.placement.neighbours import Neighbours
 from layoutgen.placement.records import Choice, Choices
@@ -35,10 +35,8 @@ _DISORDER = 6.0  # bends that arms in the file order of their ports are worth
 _CROSSING_COST = 0.05  # for each element of an input that lies beside an output, or the other way round
 
 
-_NEARBY = 40_000_000  # [nm]: farther away nothing is looked at again
 _CROWD = 300  # boxes from which on fewer drawings are kept, so that time grows with the circuit only
 _CROWDED_BEAM = 2
-_LOOK_AHEAD = 60  # ways tried for what leads to a port before a candidate is taken as shut in
 
 
 def drawing_cost(area: float, bends: float, crossings: int) -> float:
@@ -83,6 +81,7 @@ class Search:
         self.margins = edge_margins(
             self.model.limits, self.model.default_gap, self.model.ground_ring, tight=self.effort.tight_edges
         )
+        self._ahead = LookAhead(self.ways, self.neighbours, self.margins, self._port_order)
         self.ways.rooms = Rooms(self.tour, self.ways.router, self._best, self._arrive)
         self._spine = {name: i for i, name in enumerate(self.model.circuit.spine)}
         file = self.model.file
@@ -102,7 +101,7 @@ class Search:
     margins: Mapping[Kind, int] = field(init=False)
     _spine: dict[str, int] = field(init=False)
     _stages: dict[str, int | None] = field(init=False, default_factory=dict)
-    _witness: dict[tuple[End, Pose], Way] = field(init=False, default_factory=dict)
+    _ahead: LookAhead = field(init=False)
     _positions: dict[str, int] = field(init=False)
 
     def run(self, start: State) -> list[State]:
@@ -141,7 +140,7 @@ class Search:
             chosen = choices.ways.get(end_key(pending.end))
             if chosen is None:
                 return None
-            base = self._without(state, pending)
+            base = self.ways.without(state, pending)
             way = self._way_like(pending, state, chosen)
             growth = None if way is None else self._built(base, way, 0)
             if way is None or growth is None or self._conflict(growth) is not None:
@@ -156,11 +155,6 @@ class Search:
         some = self.ways.of(pending, state, chosen.word)
         ways = [way for way in some if way.choice.shape == chosen.shape]
         return min(ways, key=lambda way: _difference(way.choice, chosen), default=None)
-
-    def _without(self, state: State, pending: Pending) -> State:
-        """Return a state without a pending thing, and without its other end where it closes a loop."""
-        gone = (pending, self.ways.mate(pending, state))
-        return replace(state, pending=tuple(p for p in state.pending if p not in gone))
 
     def _next(self, state: State) -> Pending:
         """Return the pending thing to lay next: the same for all states of one depth."""
@@ -180,7 +174,7 @@ class Search:
             group, order = 1, 0
         elif weight <= 1 and end.kind is not EndKind.PORT:
             group, order = 2, 0
-        elif self._ends_in_port(end):
+        elif self.tour.ends_in_port(end):
             group, order = 4, 0
         else:
             group, order = 3, -weight
@@ -194,11 +188,6 @@ class Search:
             (0, min(on_path)) if on_path else (3, -self.tour.weight.get((self.tour.entries[number], -1), 0))
         )
 
-    def _ends_in_port(self, end: End) -> bool:
-        """True for a line or port that only leads to a port."""
-        weight = self.tour.weight.get((end.element, end.index), 0)
-        return weight <= 2 and self.tour.leads_to_port.get((end.element, end.index), False)
-
     def _file_order(self, end: End) -> int:
         return self._positions[end.element]
 
@@ -211,7 +200,7 @@ class Search:
         checked for clearance only when, built, it comes to the top again.
         """
         pending = next(p for p in state.pending if p.end == element)
-        base = self._without(state, pending)
+        base = self.ways.without(state, pending)
         alike = self._as_before(pending, state, base, depth)
         if alike is not None:
             yield alike
@@ -235,10 +224,12 @@ class Search:
                 continue
             extent, key = growth.extent(self.margins), end_key(element)
             grown = growth.applied(extent, cost, self._crossings(growth), (key, way.choice))
-            conflict = self._conflict(growth) or self._shut_in(grown, growth)
+            conflict, escapes = self._conflict(growth), {}
+            if conflict is None:
+                conflict, escapes = self._ahead.shut_in(grown, growth)
             if conflict is None:
                 accepted += 1
-                yield grown
+                yield replace(grown, escapes=escapes)
             else:
                 self._fail(depth, element.element, conflict)
 
@@ -275,53 +266,6 @@ class Search:
 
     def _conflict(self, growth: Growth) -> str | None:
         return self._port_order(growth) or self.neighbours.conflict(growth)
-
-    def _shut_in(self, grown: State, growth: Growth) -> str | None:
-        """Return what is wrong when something that leads to a port, or closes a loop, would have no way."""
-        for pending in self._nearby(grown, growth):
-            if self.ways.mate(pending, grown) is not None:
-                if not self._has_way(grown, pending, self._leaves_ports_open):
-                    return f"{pending.end.element} would have no way to close its loop"
-            elif self._ends_in_port(pending.end) and not self._has_way(grown, pending):
-                return f"{pending.end.element} would have no way to its edge"
-        return None
-
-    def _nearby(self, grown: State, growth: Growth) -> Iterator[Pending]:
-        """Yield the pending things that something new may shut in: its own, and those not far from it."""
-        boxes = [item.box for item in growth.obstacles if not item.corridor]
-        if not boxes:
-            return
-        x0, y0, x1, y1 = box_around([corner for box in boxes for corner in (box[:2], box[2:])])
-        for pending in grown.pending:
-            near_x = x0 - _NEARBY <= pending.at.x <= x1 + _NEARBY
-            if near_x and y0 - _NEARBY <= pending.at.y <= y1 + _NEARBY:
-                yield pending
-
-    def _has_way(
-        self, state: State, pending: Pending, suits: Callable[[State, Growth], bool] | None = None
-    ) -> bool:
-        """True when at least one way of laying a pending thing is clear, and suits."""
-        base, spot = self._without(state, pending), (pending.end, pending.at)
-        before = [self._witness[spot]] if spot in self._witness else []
-        for way in itertools.chain(before, islice(self.ways.of(pending, state), _LOOK_AHEAD)):
-            trial = Growth(state=base, bounds=state.bounds)
-            try:
-                way.lay(trial)
-            except PinnedError:
-                continue
-            if not trial.bounds.holds(trial.extent(self.margins)) or self._conflict(trial) is not None:
-                continue
-            if suits is None or suits(base, trial):
-                self._witness[spot] = way
-                return True
-        return False
-
-    def _leaves_ports_open(self, base: State, trial: Growth) -> bool:
-        """True when a line that closes a loop leaves a way to their edges for ports beside it."""
-        grown = trial.applied(trial.extent(self.margins), 0.0)
-        nets = set(self.model.owner_nets[next(iter(trial.lines))])
-        near = [p for p in base.pending if self.model.net_of(p.end) in nets]
-        return all(self._has_way(grown, p) for p in near if self._ends_in_port(p.end))
 
     def _built(self, base: State, way: Way, depth: int) -> Growth | None:
         """Return a way as a candidate inside what is known of the board, or None."""

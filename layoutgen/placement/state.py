@@ -178,7 +178,7 @@ class Pending:
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class State:
-    """Everything laid so far."""
+    """Everything laid so far; ``escapes`` are ways out that are known to be clear, by end and place."""
 
     obstacles: Obstacles
     lines: Mapping[str, LaidLine]
@@ -200,6 +200,7 @@ class State:
     start: int = 0
     ways: Mapping[str, Choice] = field(default_factory=dict)
     roles: Mapping[str, Headings] = field(default_factory=dict)
+    escapes: Mapping[tuple[End, Pose], Growth] = field(default_factory=dict, compare=False, repr=False)
 
 
 @dataclass(slots=True, kw_only=True)

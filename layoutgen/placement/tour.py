@@ -86,6 +86,11 @@ class Tour:
     first_port: Mapping[tuple[str, int], int]
     siblings: Mapping[str, str]
 
+    def ends_in_port(self, end: End) -> bool:
+        """True for a line or port that only leads to a port."""
+        weight = self.weight.get((end.element, end.index), 0)
+        return weight <= 2 and self.leads_to_port.get((end.element, end.index), False)
+
 
 def end_key(end: End) -> str:
     """Return the name under which an end's choice is kept."""

@@ -77,6 +77,11 @@ class Ways:
         both = (p for p in state.pending if p.end.element == pending.end.element)
         return next((p for p in both if p.end != pending.end), None)
 
+    def without(self, state: State, pending: Pending) -> State:
+        """Return a state without a pending thing, and without its other end where it closes a loop."""
+        gone = (pending, self.mate(pending, state))
+        return replace(state, pending=tuple(p for p in state.pending if p not in gone))
+
     def is_ready(self, pending: Pending, state: State) -> bool:
         """True unless something closes a loop and its other node has no place yet."""
         closes = pending.end.element in self.tour.loops.closers
@@ -187,7 +192,7 @@ class Ways:
         end, start = pending.end, pending.at.turned(turn)
         straight = self._goes_straight(end) and not self.fold_spine
         sides = (1, -1) if self._meets_bank(end) else (1,)
-        weight = self.layer.bend_weight(end)
+        weight = self.layer.lines.bend_weight(end)
         spread = self.rooms.routes(pending, start, state) if self.rooms is not None else None
         choices = self.router.choices(end, start, state, straight=straight) if spread is None else spread
         for choice in choices:
@@ -262,7 +267,7 @@ class Ways:
     def _closing_ways(self, pending: Pending, mate: Pending, turn: float, state: State) -> Iterator[Way]:
         """Yield the ways of a line between two placed nodes."""
         end, start = pending.end, pending.at.turned(turn)
-        weight = self.layer.bend_weight(end)
+        weight = self.layer.lines.bend_weight(end)
         used = state.used.get(self._net(mate.end), ())
         for other in mate.turns:
             out = (mate.at.heading + other) % 360.0
@@ -272,7 +277,7 @@ class Ways:
             for choice in self.router.closing(end, start, target, state):
                 if not self.router.leaves_as_hinted(end, start.heading, target.heading):
                     continue
-                lay = partial(self.layer.closing, end=end, mate=mate, start=start, route=choice.route)
+                lay = partial(self.layer.lines.closing, end=end, mate=mate, start=start, route=choice.route)
                 made = Choice(turn, 1, choice.route.word, choice.route.legs, heading=pending.at.heading)
                 extent = self._line_extent(end, start, choice, state)
                 yield Way(end.element, made, extent, weight * len(choice.route.word), lay)

@@ -249,29 +249,54 @@ def solve_legs(
         y: North coordinate of the end asked [nm], or None.
         fixed: Legs given [nm], None for free ones; empty when all are free.
     """
-    from scipy.optimize import linprog  # slow to import, and few lines need it
-
     count = len(word) + 1
+    free = [i for i in range(count) if not fixed or fixed[i] is None]
     directions = [unit(heading) for heading in headings_of(start.heading, word)]
-    rows, wanted = [], []
-    for value, row in (
+    asked = (
         (total, [1.0] * count),
         (None if x is None else x - start.x, [d[0] for d in directions]),
         (None if y is None else y - start.y, [d[1] for d in directions]),
-    ):
-        if value is not None:
-            rows.append([*row, 0.0])
-            wanted.append(float(value))
-    bounds: list[tuple[float, float | None]] = []
-    for i in range(count):
-        given = fixed[i] if fixed else None
-        bounds.append((float(least[i]), None) if given is None else (float(given), float(given)))
-    cost = [0.0] * count + [-1.0] if total is not None else [1.0] * count + [0.0]
-    spread = [[-1.0 if j == i else 0.0 for j in range(count)] + [1.0] for i in range(count)]
-    free = [i for i in range(count) if not (fixed and fixed[i] is not None)]
+    )
+    given = fixed or [None] * count
+    bounds = [
+        (float(low), None) if leg is None else (float(leg), float(leg))
+        for low, leg in zip(least, given, strict=True)
+    ]
+    found = _program(asked, bounds, least, free, spreads=total is not None)
+    if found is None:
+        return None
+    legs = found if total is None else _mend_total(found, total, free)
+    route = Route(word, tuple(legs))
+    end = route_points(start, route)[1]
+    off = max(abs(end.x - x) if x is not None else 0, abs(end.y - y) if y is not None else 0)
+    return route if off <= _SOLVER_TOLERANCE_NM else None
+
+
+def _program(
+    asked: Sequence[tuple[int | None, list[float]]],
+    bounds: Sequence[tuple[float, float | None]],
+    least: Sequence[int],
+    free: Sequence[int],
+    *,
+    spreads: bool,
+) -> list[int] | None:
+    """Return the legs [nm] that solve the linear program of :func:`solve_legs`, None where none do.
+
+    Args:
+        asked: Sums that the legs must make [nm], None for none, each with the legs' factors.
+        bounds: Least and greatest length of each leg [nm].
+        least: Least lengths, above which the surplus counts [nm].
+        free: Numbers of the legs that are not given.
+        spreads: Whether the least surplus is made as great as it can be; else the sum as small.
+    """
+    from scipy.optimize import linprog  # slow to import, and few lines need it
+
+    count = len(bounds)
+    rows = [[*row, 0.0] for value, row in asked if value is not None]
+    wanted = [float(value) for value, _ in asked if value is not None]
     result = linprog(
-        cost,
-        A_ub=[spread[i] for i in free] or None,
+        [0.0] * count + [-1.0] if spreads else [1.0] * count + [0.0],
+        A_ub=[[-1.0 if j == i else 0.0 for j in range(count)] + [1.0] for i in free] or None,
         b_ub=[-float(least[i]) for i in free] or None,
         A_eq=rows or None,
         b_eq=wanted or None,
@@ -280,13 +305,7 @@ def solve_legs(
     )
     if not result.success or result.x is None:
         return None
-    legs = [round(float(leg)) for leg in result.x[:count]]
-    if total is not None:
-        legs = _mend_total(legs, total, free)
-    route = Route(word, tuple(legs))
-    end = route_points(start, route)[1]
-    off = max(abs(end.x - x) if x is not None else 0, abs(end.y - y) if y is not None else 0)
-    return route if off <= _SOLVER_TOLERANCE_NM else None
+    return [round(float(leg)) for leg in result.x[:count]]
 
 
 def meeting_routes(

@@ -88,6 +88,7 @@ class Match:
         one = wanted_network(artwork.placement, np.array([design.frequency]), data)
         self.frequencies = in_band(design.band, len(one.ports))
         self.wanted = solve(wanted_network(artwork.placement, self.frequencies, data))
+        self._medium = medium_of(sized.circuit, self.frequencies, lossless=True)
         self._board = self._board_of(self.copper)
         self.groups = length_groups(sized.circuit.file)
         self.total = np.array([-sized.corrections.get(group[0], 0.0) for group in self.groups])
@@ -147,9 +148,7 @@ class Match:
 
     def _board_of(self, copper: Copper) -> DrawnBoard:
         """Return the artwork's lossless board with some other copper."""
-        circuit = self.artwork.placement.sized.circuit
-        medium = medium_of(circuit, self.frequencies, lossless=True)
-        return DrawnBoard(drawing_of(self.artwork, copper), medium, self.data)
+        return DrawnBoard(drawing_of(self.artwork, copper), self._medium, self.data)
 
     def around(self, x: FloatArray) -> tuple[ComplexArray, ComplexArray]:
         """Return the difference at x, as a vector (M,), and its derivatives (M, G) [1/rad]."""

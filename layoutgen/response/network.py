@@ -132,4 +132,8 @@ def spread(network: Network, shape: tuple[int, ...]) -> Network:
 
 def _flat(value: ComplexArray, shape: tuple[int, ...]) -> ComplexArray:
     """Return a value to a shape, laid out flat."""
-    return np.broadcast_to(value, shape).reshape(-1) if np.ndim(value) else value
+    if np.ndim(value) == 0:
+        return value
+    laid_out = np.empty(shape, dtype=np.complex128)
+    laid_out[...] = value
+    return laid_out.reshape(-1)

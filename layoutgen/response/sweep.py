@@ -7,7 +7,7 @@ band; never extrapolates.
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 from pathlib import Path
 
@@ -21,11 +21,19 @@ from layoutgen.reading.wording import quote
 from layoutgen.response.chain import FloatArray
 from layoutgen.response.parts import data_terminals, terminals
 from layoutgen.response.records import NOTE_RULE
-from layoutgen.response.touchstone import PartData, UnusableDataError, largest_gain, read_part_data
+from layoutgen.response.touchstone import (
+    PartData,
+    UnusableDataError,
+    largest_gain,
+    largest_one_way,
+    read_part_data,
+)
 
 __all__ = ["Sweep", "part_data", "plan_sweep"]
 
 _PASSIVE = 1.001  # rounding of four digits in a file [-]
+_RECIPROCAL = ("resistor", "capacitor", "inductor")
+_ONE_WAY = 0.01  # of S from its transpose: above the noise of a good measurement [-]
 _COARSE = 0.01  # error of the straight line between two points of data [-]
 
 
@@ -124,19 +132,25 @@ def _remarks(file: CircuitFile, data: Mapping[str, PartData]) -> list[tuple[str,
             if part.value is None and len(terminals(part)) > len(part.terminations) + _grounded(part):
                 notes.append((NOTE_RULE, name, "without value or data it is taken as open at RF"))
             continue
-        gain, at = largest_gain(measured)
-        if part.kind != "transistor" and gain > _PASSIVE:
-            text = (
-                f"{part.data} is not passive: largest singular value {gain:.4f} at {_ghz(at)}; used as it is"
-            )
-            notes.append((NOTE_RULE, name, text))
-        error = _straight_line_error(measured, file.design.band)
-        if error > _COARSE:
-            text = (
-                f"{part.data} is coarse: straight lines between its points are off by up to {error:.2g} in S"
-            )
-            notes.append((NOTE_RULE, name, text))
+        notes += [
+            (NOTE_RULE, name, f"{part.data} {text}") for text in _doubts(part, measured, file.design.band)
+        ]
     return notes
+
+
+def _doubts(part: Part, data: PartData, band: tuple[float, float]) -> Iterator[str]:
+    """Yield what looks doubtful in a part's data."""
+    gain, at = largest_gain(data)
+    if part.kind != "transistor" and gain > _PASSIVE:
+        yield f"is not passive: largest singular value {gain:.4f} at {_ghz(at)}; used as it is"
+    one_way, at = largest_one_way(data)
+    if part.kind in _RECIPROCAL and one_way > _ONE_WAY:
+        yield f"is not reciprocal: S12 and S21 differ by {one_way:.4f} at {_ghz(at)}; used as it is"
+    error = _straight_line_error(data, band)
+    if error is None:
+        yield "is coarse: its points at the band are too few to tell how far off straight lines are"
+    elif error > _COARSE:
+        yield f"is coarse: straight lines between its points are off by up to {error:.2g} in S"
 
 
 def _grounded(part: Part) -> int:
@@ -144,15 +158,18 @@ def _grounded(part: Part) -> int:
     return sum(net == GROUND for _, net in terminals(part))
 
 
-def _straight_line_error(data: PartData, band: tuple[float, float]) -> float:
-    """Return the error [-] of linear interpolation within the band, an eighth of the second difference."""
+def _straight_line_error(data: PartData, band: tuple[float, float]) -> float | None:
+    """Return the error [-] of straight lines within the band, an eighth of the second difference.
+
+    None when no three points in a row lie at the band.
+    """
     inside = (data.frequencies >= band[0]) & (data.frequencies <= band[1])
     near = np.flatnonzero(inside | np.roll(inside, 1) | np.roll(inside, -1))
     if near.size == 0:  # the band lies between two points
         near = np.searchsorted(data.frequencies, band[0]) + np.array([-1, 0])
     near = near[(near > 0) & (near < data.frequencies.size - 1)]
     if near.size == 0:
-        return 0.0
+        return None
     second = data.s[near + 1] - 2.0 * data.s[near] + data.s[near - 1]
     return float(np.max(np.abs(second)) / 8.0)
 

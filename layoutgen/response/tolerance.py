@@ -121,7 +121,7 @@ def tolerance(
         folder: What the paths of data files start from; None: the folder of the circuit file.
 
     Raises:
-        WrongInputError: No ``[tolerance]``, nothing in it, or limits that leave no line; faulty
+        WrongInputError: No ``[tolerance]``, nothing in it, or limits that leave no line or gap; faulty
             ``limits``; data files that cannot be used; a scheduler that is not there.
     """
     job = _job(artwork, limits, points, folder)
@@ -169,7 +169,7 @@ def _job(artwork: Artwork, limits: Sequence[str], points: int, folder: Path | No
 
 
 def _refuse(artwork: Artwork, spread: dict[str, float]) -> None:
-    """Raise when nothing varies, or etching leaves no line.
+    """Raise when nothing varies, or etching leaves no line or no gap.
 
     Raises:
         WrongInputError: With every fault.
@@ -180,14 +180,25 @@ def _refuse(artwork: Artwork, spread: dict[str, float]) -> None:
         faults.append(("ports", "no RF port and no termination", "a circuit with a response"))
     if not spread:
         faults.append(("tolerance", "no limits to vary within", "a [tolerance] table with a value above 0"))
-    widths = [line.width for line in artwork.placement.lines.values()]
-    widths += [pair.width for pair in artwork.placement.pairs.values()]
-    least = min(widths, default=0) * 1e-9
-    if widths and spread.get(ETCHING, 0.0) >= least:
-        found = f"{spread[ETCHING] * 1e3:g} mm"
-        faults.append(("tolerance.width", found, f"less than the narrowest line, {least * 1e3:g} mm"))
+    for what, sizes in (("narrowest line", _widths(artwork)), ("narrowest gap", _gaps(artwork))):
+        least = min(sizes, default=0) * 1e-9
+        if sizes and spread.get(ETCHING, 0.0) >= least:
+            found = f"{spread[ETCHING] * 1e3:g} mm"
+            faults.append(("tolerance.width", found, f"less than the {what}, {least * 1e3:g} mm"))
     if faults:
         raise WrongInputError([Fault(file.location(key), key, *texts) for key, *texts in faults])
+
+
+def _widths(artwork: Artwork) -> list[int]:
+    """Return the widths of all lines and pairs [nm]."""
+    lines = [line.width for line in artwork.placement.lines.values()]
+    return lines + [pair.width for pair in artwork.placement.pairs.values()]
+
+
+def _gaps(artwork: Artwork) -> list[int]:
+    """Return the gaps that etching makes narrower [nm]: within pairs, and between lines and pour."""
+    gaps = [gap for copper in artwork.line_copper.values() for gap in (copper.gap_left, copper.gap_right)]
+    return [pair.gap for pair in artwork.placement.pairs.values()] + [gap for gap in gaps if gap is not None]
 
 
 def _corners(names: list[str], board: list[str]) -> tuple[list[tuple[tuple[str, int], ...]], FloatArray]:

@@ -19,7 +19,7 @@ import numpy as np
 from layoutgen.reading.wording import quote
 from layoutgen.response.chain import ComplexArray, FloatArray
 
-__all__ = ["MAX_BYTES", "PartData", "UnusableDataError", "largest_gain", "read_part_data"]
+__all__ = ["MAX_BYTES", "PartData", "UnusableDataError", "largest_gain", "largest_one_way", "read_part_data"]
 
 MAX_BYTES = 16 * 1024 * 1024
 """Largest file read [byte]."""
@@ -76,6 +76,13 @@ class PartData:
 def largest_gain(data: PartData) -> tuple[float, float]:
     """Return the largest singular value of S [-] (above 1: not passive) and its frequency [Hz]."""
     values = np.linalg.norm(data.s, 2, axis=(1, 2))
+    worst = int(np.argmax(values))
+    return float(values[worst]), float(data.frequencies[worst])
+
+
+def largest_one_way(data: PartData) -> tuple[float, float]:
+    """Return the largest difference of S from its transpose [-], 0 if reciprocal, and its frequency [Hz]."""
+    values = np.max(np.abs(data.s - np.swapaxes(data.s, 1, 2)), axis=(1, 2))
     worst = int(np.argmax(values))
     return float(values[worst]), float(data.frequencies[worst])
 
@@ -142,9 +149,9 @@ def _parse(name: str, text: str) -> Any:
         with warnings.catch_warnings():
             warnings.simplefilter("ignore")
             return Touchstone(source)
-    except Exception as error:  # whatever the reader trips over, the file is at fault
+    except Exception:  # whatever the reader trips over, the file is at fault
         raise UnusableDataError(
-            f"a file that breaks off or holds other things than numbers ({quote(str(error))})",
+            "a file that breaks off or holds other things than numbers",
             "whole rows of numbers behind the option line",
         ) from None
 

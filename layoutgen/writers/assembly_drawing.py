@@ -14,7 +14,7 @@ from layoutgen.writers.centroid import ROTATION_CONVENTION
 from layoutgen.writers.flow import Flow
 from layoutgen.writers.part_texts import flange_parts, value_text
 from layoutgen.writers.records import Job, Result
-from layoutgen.writers.sheet import INK, Book, document, text_width
+from layoutgen.writers.sheet import INK, Book, text_width
 from layoutgen.writers.supplies import supplies_of
 
 __all__ = ["flange_notes", "safety_notes", "write_assembly_drawing"]
@@ -29,10 +29,10 @@ def write_assembly_drawing(result: Result, job: Job) -> bytes:
     """Return the drawing as PDF; it is the same for equal results."""
     design = result.circuit.file.design
     details = (job.stem, f"revision {design.revision or 'none'}", "millimetres")
-    with document(_KIND, design.title, details) as book:
-        _board_sheet(book, result)
-        _list_sheets(book, result)
-        return book.pdf()
+    book = Book(_KIND, design.title, details)
+    _board_sheet(book, result)
+    _list_sheets(book, result)
+    return book.pdf()
 
 
 def _board_sheet(book: Book, result: Result) -> None:

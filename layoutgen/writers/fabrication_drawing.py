@@ -18,7 +18,7 @@ from layoutgen.writers.fabrication_facts import (
 )
 from layoutgen.writers.flow import Flow
 from layoutgen.writers.records import Job, Result
-from layoutgen.writers.sheet import INK, Book, Sheet, document
+from layoutgen.writers.sheet import INK, Book, Sheet
 from layoutgen.writers.xnc import hits_of
 
 __all__ = ["write_fabrication_drawing"]
@@ -36,11 +36,11 @@ def write_fabrication_drawing(result: Result, job: Job) -> bytes:
     """Return the drawing as PDF; it is the same for equal results."""
     design = result.circuit.file.design
     details = (job.stem, f"revision {design.revision or 'none'}", "millimetres")
-    with document(_KIND, design.title, details) as book:
-        _outline_sheet(book, result)
-        _stackup_sheet(book, result)
-        _width_sheets(book, result)
-        return book.pdf()
+    book = Book(_KIND, design.title, details)
+    _outline_sheet(book, result)
+    _stackup_sheet(book, result)
+    _width_sheets(book, result)
+    return book.pdf()
 
 
 def _outline_sheet(book: Book, result: Result) -> None:

@@ -1,18 +1,19 @@
 """All files of a run, or none: how a folder passes from its old set of files to the new one.
 
-What is promised:
+A set may reach into folders inside the folder, one for each receiver of a package: all of them are one set
+and change together. What is promised:
 
 - A folder that does not exist yet is made beside its place, and appears there whole, by one rename.
 - In a folder that exists, every new file is first written and flushed into ``.layoutgen-stage`` inside it.
   Renaming that to ``.layoutgen-commit`` is the point of no return; then each file is renamed to its place,
   ``report.json`` last. A run that is killed before the point leaves the old set, and leftovers that the next
-  run removes. A run that is killed during the renames (well under a millisecond, and interrupts wait until
-  they are done) is completed by the next run; until then the hashes in ``report.json`` tell that the set is
-  mixed.
+  run removes. A run that is killed during the renames (a few milliseconds for all packages; interrupts wait
+  until they are done) is completed by the next run; until then ``.layoutgen-commit`` is there and tells that
+  the set is mixed, and so do the hashes in ``report.json``.
 - When a rename fails (a file held open elsewhere, a full disk) all renames are undone, under the name
   ``.layoutgen-undo``; the next run ends an undoing that was killed.
 - Files that the tool did not write are never touched. Touchstone files of the last run whose number of ports
-  has changed are removed together with it.
+  has changed are removed together with it, as ``report.json`` or the package's ``README.txt`` lists them.
 
 Two runs into one folder at the same moment are not kept apart: one of them ends with an error.
 """
@@ -26,7 +27,7 @@ import re
 import shutil
 import signal
 import tempfile
-from collections.abc import Iterator, Mapping, Sequence
+from collections.abc import Iterable, Iterator, Mapping, Sequence
 from pathlib import Path
 
 from layoutgen.errors import WrongInputError
@@ -36,7 +37,7 @@ __all__ = ["prepare_folder", "recover", "write_files"]
 
 _STAGE, _COMMIT, _UNDO = ".layoutgen-stage", ".layoutgen-commit", ".layoutgen-undo"
 _JOURNAL, _KEPT = "journal.json", "kept"
-_LAST = "report.json"
+_LAST, _README = "report.json", "README.txt"
 _NUMBERED = re.compile(r"(wanted|as_drawn)\.s\d+p")
 
 
@@ -45,7 +46,7 @@ def prepare_folder(folder: Path, names: Sequence[str] = ()) -> None:
 
     Args:
         folder: Where the files will go; it need not exist.
-        names: Names of files that will be written.
+        names: Names of files that will be written, as for :func:`write_files`.
 
     Raises:
         WrongInputError: The folder cannot be made or written to, or a folder stands where a file must go.
@@ -56,11 +57,20 @@ def prepare_folder(folder: Path, names: Sequence[str] = ()) -> None:
             pass
         if folder.exists():
             recover(folder)
+            for inner in _inner_folders(folder, names):
+                with tempfile.TemporaryFile(dir=inner):
+                    pass
         blocked = [name for name in names if (folder / name).is_dir()]
     except OSError as error:
         raise _unwritable(folder, _reason(error)) from error
     if blocked:
         raise _unwritable(folder, f"a folder named {blocked[0]} stands in it")
+
+
+def _inner_folders(folder: Path, names: Iterable[str]) -> list[Path]:
+    """Return what there is, folders or not, where files of a set need folders inside the folder."""
+    places = dict.fromkeys((folder / name).parent for name in names)
+    return [place for place in places if place != folder and place.exists()]
 
 
 def _nearest_existing(folder: Path) -> Path:
@@ -76,7 +86,7 @@ def write_files(folder: Path, files: Mapping[str, bytes]) -> None:
 
     Args:
         folder: Where they go; made when it does not exist.
-        files: Contents by plain name.
+        files: Contents by plain name, or by the name of a folder inside and a plain name, with a slash.
 
     Raises:
         WrongInputError: The folder cannot be written; the old files are as they were.
@@ -130,6 +140,7 @@ def _replace(folder: Path, files: Mapping[str, bytes]) -> None:
         journal = {
             "files": sorted(files, key=lambda name: name == _LAST),
             "new": [name for name in files if not (folder / name).exists()],
+            "folders": [place for place in _folders_of(files) if not (folder / place).exists()],
             "remove": _outdated(folder, files),
         }
         _write_flushed(stage, {**files, _JOURNAL: json.dumps(journal).encode()})
@@ -154,23 +165,35 @@ def _finish(folder: Path) -> None:
     pending = [name for name in journal["files"] if (commit / name).exists()]
     for name in (*pending, *journal["remove"]):
         _keep(folder / name, commit / _KEPT / name)
+    for place in _folders_of(pending):
+        (folder / place).mkdir(exist_ok=True)
     for name in pending:
         (commit / name).replace(folder / name)
     for name in journal["remove"]:
         (folder / name).unlink(missing_ok=True)
-    _flush_folder(folder)
+    for place in (*_folders_of(journal["files"]), "."):
+        _flush_folder(folder / place)
     _discard(folder, commit)
 
 
 def _put_back(folder: Path) -> None:
     """Undo the renames that a failed run had made."""
-    undo = folder / _UNDO
-    for name in _read_journal(undo)["new"]:
+    undo, kept = folder / _UNDO, folder / _UNDO / _KEPT
+    journal = _read_journal(undo)
+    for name in journal["new"]:
         if not (undo / name).exists():
             (folder / name).unlink(missing_ok=True)
-    for old in sorted((undo / _KEPT).iterdir()):
-        old.replace(folder / old.name)
+    for old in sorted(path for path in kept.rglob("*") if not path.is_dir()):
+        old.replace(folder / old.relative_to(kept))
+    for place in journal["folders"]:
+        with contextlib.suppress(OSError):  # somebody has put something into it
+            (folder / place).rmdir()
     _discard(folder, undo)
+
+
+def _folders_of(names: Iterable[str]) -> list[str]:
+    """Return the folders that names with a slash begin with, each once."""
+    return list(dict.fromkeys(name.split("/", 1)[0] for name in names if "/" in name))
 
 
 def _discard(folder: Path, done: Path) -> None:
@@ -183,6 +206,7 @@ def _keep(old: Path, kept: Path) -> None:
     """Give an old file a second name, so that it can be put back."""
     if not old.exists() or kept.exists():
         return
+    kept.parent.mkdir(exist_ok=True)
     try:
         kept.hardlink_to(old)
     except OSError:
@@ -196,27 +220,40 @@ def _read_journal(where: Path) -> dict[str, list[str]]:
 
 def _outdated(folder: Path, files: Mapping[str, bytes]) -> list[str]:
     """Return Touchstone files that the last run listed and the new set does not have under that name."""
+    listed = _listed(folder)
+    for place in _folders_of(files):
+        listed += [f"{place}/{name}" for name in _named_in_readme(folder / place)]
+    return [name for name in listed if name not in files and (folder / name).is_file()]
+
+
+def _listed(folder: Path) -> list[str]:
+    """Return the Touchstone files that the report of the last run lists."""
     try:
         listed = [entry["path"] for entry in json.loads((folder / _LAST).read_bytes())["files"]]
     except (OSError, ValueError, KeyError, TypeError):
         return []
-    return [
-        name
-        for name in listed
-        if isinstance(name, str)
-        and _NUMBERED.fullmatch(name)
-        and name not in files
-        and (folder / name).is_file()
-    ]
+    return [name for name in listed if isinstance(name, str) and _NUMBERED.fullmatch(name)]
+
+
+def _named_in_readme(place: Path) -> list[str]:
+    """Return the Touchstone files that the README of a package names."""
+    try:
+        words = (place / _README).read_text("utf-8").split()
+    except (OSError, ValueError):
+        return []
+    return sorted({word for word in words if _NUMBERED.fullmatch(word)})
 
 
 def _write_flushed(folder: Path, files: Mapping[str, bytes]) -> None:
+    for place in _folders_of(files):
+        (folder / place).mkdir()
     for name, data in files.items():
         with (folder / name).open("wb") as stream:
             stream.write(data)
             stream.flush()
             os.fsync(stream.fileno())
-    _flush_folder(folder)
+    for place in (*_folders_of(files), "."):
+        _flush_folder(folder / place)
 
 
 def _flush_folder(folder: Path) -> None:

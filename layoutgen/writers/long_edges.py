@@ -35,7 +35,7 @@ def long_edges(ring: Ring, shortest: int = SHORTEST_NM) -> list[Corner]:
     while True:
         lengths = _lengths(corners)
         least = min(lengths)
-        if least >= shortest:
+        if least >= shortest or len(corners) < 3:
             return corners
         merged, carried = _merged(corners, lengths.index(least), carried)
         if len(merged) < (2 if any(bulge for _, bulge in merged) else 3):
@@ -60,7 +60,7 @@ def _merged(corners: Sequence[Corner], edge: int, carried: float) -> tuple[list[
     ring = [*corners[edge:], *corners[:edge]]
     (start, _), (end, bulge), (before, bent) = ring[0], ring[1], ring[-1]
     after = ring[2 % len(ring)][0]
-    places = [start, end, *_between(before, start, end, after)]
+    places = [start, end, *_between(before, start, end, after, carried)]
     won = {place: _won(before, start, end, after, place) for place in places}
     place = min(places, key=lambda p: math.fsum(map(abs, won[p])) + abs(carried + math.fsum(won[p])))
     total = carried + math.fsum(won[place])
@@ -93,11 +93,12 @@ def _rebent(start: Point, end: Point, bulge: float, wanted: float) -> float:
     return bulge
 
 
-def _between(before: Point, start: Point, end: Point, after: Point) -> Iterator[Point]:
-    """Yield where the neighbours of an edge meet, and where its ends balance, on whole nanometres."""
-    first, last = math.dist(before, start), math.dist(end, after)
-    share = last / (first + last)
-    yield round(start[0] + share * (end[0] - start[0])), round(start[1] + share * (end[1] - start[1]))
+def _between(before: Point, start: Point, end: Point, after: Point, carried: float) -> Iterator[Point]:
+    """Yield the place [nm] on an edge at which nothing is won, and the one where its neighbours meet."""
+    first, last = (carried + math.fsum(_won(before, start, end, after, place)) for place in (start, end))
+    if first * last < 0:
+        share = first / (first - last)
+        yield round(start[0] + share * (end[0] - start[0])), round(start[1] + share * (end[1] - start[1]))
     (ux, uy), (vx, vy) = _step(before, start), _step(end, after)
     (wx, wy), turn = _step(start, end), ux * vy - uy * vx
     if turn:

@@ -219,11 +219,13 @@ def _outline(ring: Ring) -> str:
 def _names(result: Result, frame: _Frame, size: float) -> Iterator[str]:
     """Yield the names of parts and ports on the map, size in [mm], moved in from its edges."""
     placement = result.placement
-    for name, at in [*placement.parts.items(), *placement.ports.items()]:
-        if frame.x0 < at.x < frame.x1 and frame.y0 < at.y < frame.y1:
+    places = [(part.name, part.x, part.y) for part in placement.parts.values()]
+    places += [(port.name, port.x, port.y) for port in placement.ports.values()]
+    for name, x, y in places:
+        if frame.x0 < x < frame.x1 and frame.y0 < y < frame.y1:
             half = round(0.35 * size * _MM) * len(name)
-            x = min(max(at.x, frame.x0 + half), frame.x1 - half)
-            y = min(at.y, frame.y1 - round(size * _MM))
+            x = min(max(x, frame.x0 + half), frame.x1 - half)
+            y = min(y, frame.y1 - round(size * _MM))
             where = f'x="{mm_short(x)}" y="{mm_short(-y)}" font-size="{size:.3f}"'
             yield f'<text class="m" {where}>{escape(name)}</text>'
 

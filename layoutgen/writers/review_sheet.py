@@ -16,7 +16,7 @@ from layoutgen.writers.plain import many
 from layoutgen.writers.records import Job, Result
 from layoutgen.writers.response_files import TRACE_HEADS, trace_values
 from layoutgen.writers.scene import marked_findings
-from layoutgen.writers.sheet import INK, MARGIN, Book, Sheet, document, paper_for
+from layoutgen.writers.sheet import INK, MARGIN, Book, Sheet, paper_for
 
 __all__ = ["verdict", "write_review_sheet"]
 
@@ -38,14 +38,14 @@ def write_review_sheet(result: Result, job: Job) -> bytes:
     """Return the sheets as PDF; they are the same for equal results."""
     design = result.circuit.file.design
     details = (job.stem, f"revision {design.revision or 'none'}")
-    with document(_KIND, design.title, details) as book:
-        _board_sheet(book, result)
-        flow = Flow(lambda: book.sheet("dimensions, budgets, findings"))
-        _dimensions(flow, result)
-        _budgets(flow, result)
-        _response(flow, result)
-        _findings(flow, result)
-        return book.pdf()
+    book = Book(_KIND, design.title, details)
+    _board_sheet(book, result)
+    flow = Flow(lambda: book.sheet("dimensions, budgets, findings"))
+    _dimensions(flow, result)
+    _budgets(flow, result)
+    _response(flow, result)
+    _findings(flow, result)
+    return book.pdf()
 
 
 def verdict(result: Result) -> str:

@@ -1,19 +1,23 @@
 """Sheets of paper in true millimetres, as PDF: lines, areas and text, placed from the lower left corner.
 
-x runs right, y up. Fixed meta data and the library's own defaults, so that
-equal content gives equal bytes whatever is installed or configured.
+x runs right, y up. Fixed meta data and fonts that come with the package's libraries, so that equal content
+gives equal bytes whatever is installed or configured.
 """
 
 from __future__ import annotations
 
 import functools
 import io
-from collections.abc import Iterator, Sequence
-from contextlib import contextmanager
-from typing import Any, Literal
+from collections.abc import Callable, Sequence
+from pathlib import Path
+from typing import TYPE_CHECKING, Any, Literal
 
 import numpy as np
 import numpy.typing as npt
+
+if TYPE_CHECKING:
+    from reportlab.pdfgen.canvas import Canvas
+    from reportlab.pdfgen.pathobject import PDFPathObject
 
 __all__ = [
     "A4",
@@ -22,7 +26,6 @@ __all__ = [
     "Book",
     "Sheet",
     "circle_outline",
-    "document",
     "paper_for",
     "printable",
     "text_width",
@@ -37,14 +40,16 @@ MARGIN = 10.0
 INK = "#2b261e"
 SOFT = "#6b6252"
 
-_MM_PER_INCH, _POINTS_PER_MM = 25.4, 72.0 / 25.4
-_FONT = "DejaVu Sans"
+_POINTS_PER_MM = 72.0 / 25.4
+_FONT_FILES = {False: ("layoutgen-plain", "DejaVuSans.ttf"), True: ("layoutgen-bold", "DejaVuSans-Bold.ttf")}
 _STRIP = 14.0
-_EM = 100.0
-"""Size in which characters are measured [points]."""
+_HALF_CAPITAL = 0.365
+"""Half the height of a capital in a font of size one [-]: how far below a middle the base line runs."""
 
 Polyline = Sequence[tuple[float, float]]
 Align = Literal["left", "center", "right"]
+Outline = Sequence[tuple[float, float]] | npt.NDArray[np.float64]
+Mark = Callable[["Canvas"], None]
 
 
 def paper_for(width: float, height: float) -> tuple[float, float]:
@@ -53,22 +58,6 @@ def paper_for(width: float, height: float) -> tuple[float, float]:
         if size[0] >= width and size[1] >= height:
             return size
     return max(width, A4[0]), max(height, A4[1])
-
-
-@contextmanager
-def document(kind: str, title: str, details: Sequence[str] = ()) -> Iterator[Book]:
-    """Give an empty document; inside the block the plotting library has its own defaults, whatever is set.
-
-    Args:
-        kind: What the document is.
-        title: The board's title.
-        details: What else its sheets' strips say, such as the revision.
-    """
-    import matplotlib as mpl
-
-    defaults: dict[Any, Any] = {k: value for k, value in mpl.rcParamsDefault.items() if k != "backend"}
-    with mpl.rc_context({**defaults, "pdf.fonttype": 3}):
-        yield Book(kind, title, details)
 
 
 class Book:
@@ -87,19 +76,18 @@ class Book:
 
     def pdf(self) -> bytes:
         """Return the document as PDF."""
-        from matplotlib.backends.backend_pdf import PdfPages
+        from reportlab.pdfgen.canvas import Canvas
 
         stream = io.BytesIO()
-        meta = {
-            "Title": f"{self.title}: {self.kind}",
-            "Creator": "layoutgen",
-            "Producer": None,
-            "CreationDate": None,
-        }
-        with PdfPages(stream, metadata=meta) as pages:
-            for number, sheet in enumerate(self.sheets, start=1):
-                self._frame(sheet, number)
-                pages.savefig(sheet.figure)
+        font: Any = _font(False)
+        canvas = Canvas(stream, pageCompression=1, invariant=1, initialFontName=font)
+        canvas.setTitle(f"{self.title}: {self.kind}")
+        canvas.setCreator("layoutgen")
+        canvas.setAuthor("")
+        for number, sheet in enumerate(self.sheets, start=1):
+            self._frame(sheet, number)
+            sheet.put_on(canvas)
+        canvas.save()
         return stream.getvalue()
 
     def _frame(self, sheet: Sheet, number: int) -> None:
@@ -121,12 +109,8 @@ class Sheet:
 
     def __init__(self, name: str, width: float, height: float) -> None:
         """Begin an empty sheet."""
-        from matplotlib.figure import Figure
-        from matplotlib.transforms import Affine2D
-
         self.name, self.width, self.height = name, width, height
-        self.figure: Any = Figure(figsize=(width / _MM_PER_INCH, height / _MM_PER_INCH))
-        self._place: Any = Affine2D().scale(1.0 / width, 1.0 / height) + self.figure.transFigure
+        self._marks: list[Mark] = []
 
     @property
     def room(self) -> tuple[float, float, float, float]:
@@ -134,66 +118,60 @@ class Sheet:
         inset = MARGIN + 4.0
         return inset, MARGIN + _STRIP + 4.0, self.width - inset, self.height - inset
 
+    def put_on(self, canvas: Canvas) -> None:
+        """Draw the sheet as the next page of a PDF."""
+        canvas.setPageSize((self.width * _POINTS_PER_MM, self.height * _POINTS_PER_MM))
+        canvas.scale(_POINTS_PER_MM, _POINTS_PER_MM)
+        for mark in self._marks:
+            canvas.saveState()
+            mark(canvas)
+            canvas.restoreState()
+        canvas.showPage()
+
     def line(self, points: Polyline, weight: float = 0.18, pen: str = INK, dash: float = 0.0) -> None:
         """Draw a line through points."""
-        from matplotlib.lines import Line2D
-
-        style: Any = (0, (dash * _POINTS_PER_MM, 0.6 * dash * _POINTS_PER_MM)) if dash else "-"
-        xs, ys = zip(*points, strict=True)
-        artist = Line2D(
-            xs,
-            ys,
-            linewidth=weight * _POINTS_PER_MM,
-            color=pen,
-            linestyle=style,
-            transform=self._place,
-            solid_capstyle="butt",
-            solid_joinstyle="miter",
-        )
-        self.figure.add_artist(artist)
+        self.strokes([points], weight, pen, dash)
 
     def area(
         self,
-        outlines: Sequence[Polyline | npt.NDArray[np.float64]],
+        outlines: Sequence[Outline],
         fill: str | None = None,
         pen: str | None = None,
         weight: float = 0.18,
-        hatch: str | None = None,
     ) -> None:
         """Draw closed outlines as one area: outer ones counter-clockwise, holes clockwise."""
-        from matplotlib.patches import PathPatch
-        from matplotlib.path import Path
-
         rings = [np.asarray(outline, dtype=float) for outline in outlines]
         if not rings:
             return
-        codes = [
-            code for ring in rings for code in (Path.MOVETO, *[Path.LINETO] * (len(ring) - 1), Path.CLOSEPOLY)
-        ]
-        vertices = np.concatenate([part for ring in rings for part in (ring, ring[:1])])
-        patch = PathPatch(
-            Path(vertices, codes),
-            facecolor=fill or "none",
-            edgecolor=pen or "none",
-            linewidth=weight * _POINTS_PER_MM if pen else 0.0,
-            transform=self._place,
-            hatch=hatch,
-            joinstyle="miter",
-        )
-        self.figure.add_artist(patch)
 
-    def strokes(self, lines: Sequence[Polyline], weight: float = 0.18, pen: str = INK) -> None:
+        def mark(canvas: Canvas) -> None:
+            path = canvas.beginPath()
+            for ring in rings:
+                _through(path, ring)
+                path.close()
+            _take_pens(canvas, fill, pen, weight)
+            canvas.drawPath(path, stroke=int(pen is not None), fill=int(fill is not None), fillMode=1)
+
+        self._marks.append(mark)
+
+    def strokes(
+        self, lines: Sequence[Polyline], weight: float = 0.18, pen: str = INK, dash: float = 0.0
+    ) -> None:
         """Draw many lines at once."""
-        from matplotlib.patches import PathPatch
-        from matplotlib.path import Path
-
         if not lines:
             return
-        codes = [code for line in lines for code in (Path.MOVETO, *[Path.LINETO] * (len(line) - 1))]
-        path = Path(np.concatenate([np.asarray(line, dtype=float) for line in lines]), codes)
-        width = weight * _POINTS_PER_MM
-        patch = PathPatch(path, facecolor="none", edgecolor=pen, linewidth=width, transform=self._place)
-        self.figure.add_artist(patch)
+        chains = [np.asarray(line, dtype=float) for line in lines]
+
+        def mark(canvas: Canvas) -> None:
+            path = canvas.beginPath()
+            for chain in chains:
+                _through(path, chain)
+            _take_pens(canvas, None, pen, weight)
+            if dash:
+                canvas.setDash([dash, 0.6 * dash])
+            canvas.drawPath(path, stroke=1, fill=0)
+
+        self._marks.append(mark)
 
     def box(
         self,
@@ -234,27 +212,37 @@ class Sheet:
         middle: bool = False,
     ) -> None:
         """Write text on a base line (or about a middle) in a font of a size; smaller where room is short."""
-        from matplotlib.text import Text
-
         shown = printable(text)
         if room is not None and shown:
             size = min(size, size * room / max(text_width(shown, size, bold), 1e-6))
-        artist = Text(
-            x,
-            y,
-            shown,
-            color=pen,
-            fontfamily=_FONT,
-            fontsize=size * _POINTS_PER_MM,
-            fontweight="bold" if bold else "normal",
-            horizontalalignment=align,
-            verticalalignment="center_baseline" if middle else "baseline",
-            rotation=turn,
-            rotation_mode="anchor",
-            transform=self._place,
-            parse_math=False,
-        )
-        self.figure.add_artist(artist)
+        back = {"left": 0.0, "center": 0.5, "right": 1.0}[align] * text_width(shown, size, bold)
+        low = _HALF_CAPITAL * size if middle else 0.0
+
+        def mark(canvas: Canvas) -> None:
+            canvas.translate(x, y)
+            canvas.rotate(turn)
+            canvas.setFillColor(pen)
+            canvas.setFont(_font(bold), size)
+            canvas.drawString(-back, -low, shown)
+
+        self._marks.append(mark)
+
+
+def _through(path: PDFPathObject, points: npt.NDArray[np.float64]) -> None:
+    """Add a chain of points to a path."""
+    (x, y), *others = points.tolist()
+    path.moveTo(x, y)
+    for x, y in others:
+        path.lineTo(x, y)
+
+
+def _take_pens(canvas: Canvas, fill: str | None, pen: str | None, weight: float) -> None:
+    """Set the colours and the width of what is drawn next."""
+    if fill is not None:
+        canvas.setFillColor(fill)
+    if pen is not None:
+        canvas.setStrokeColor(pen)
+        canvas.setLineWidth(weight)
 
 
 def circle_outline(x: float, y: float, radius: float) -> npt.NDArray[np.float64]:
@@ -267,33 +255,35 @@ def circle_outline(x: float, y: float, radius: float) -> npt.NDArray[np.float64]
 
 def text_width(text: str, size: float, bold: bool = False) -> float:
     """Return how wide a line of text is in a font of a size [mm], kerning left out."""
-    return size * sum(_advance(c, bold) for c in printable(text))
+    from reportlab.pdfbase.pdfmetrics import stringWidth
+
+    return float(stringWidth(printable(text), _font(bold), size))
 
 
-@functools.lru_cache(maxsize=4096)
-def _advance(character: str, bold: bool) -> float:
-    """Return how far a character moves the pen in a font of size one [-]."""
-    from matplotlib.font_manager import findfont, get_font
+@functools.cache
+def _font(bold: bool) -> str:
+    """Return the name under which a font is known to the PDF library, which learns of it on first use.
 
-    font: Any = get_font(findfont(_font(bold)))
-    font.set_size(_EM, 72)
-    return float(font.load_char(ord(character)).linearHoriAdvance) / 65536.0 / _EM
+    The files are those that the plotting library brings along: free to embed, and the same everywhere.
+    """
+    from matplotlib import get_data_path
+    from reportlab import rl_config
+    from reportlab.pdfbase import pdfmetrics
+    from reportlab.pdfbase.ttfonts import TTFont
+
+    rl_config.useA85 = 0
+    name, file = _FONT_FILES[bold]
+    pdfmetrics.registerFont(TTFont(name, Path(get_data_path(), "fonts", "ttf", file)))
+    return name
 
 
-@functools.lru_cache(maxsize=2)
-def _font(bold: bool) -> Any:
-    from matplotlib.font_manager import FontProperties
-
-    return FontProperties(family=_FONT, weight="bold" if bold else "normal")
-
-
-@functools.lru_cache(maxsize=1)
+@functools.cache
 def _characters() -> frozenset[int]:
     """Return the characters that the font has."""
-    from matplotlib.font_manager import findfont, get_font
+    from reportlab.pdfbase import pdfmetrics
 
-    font: Any = get_font(findfont(_font(False)))
-    return frozenset(font.get_charmap())
+    font: Any = pdfmetrics.getFont(_font(False))
+    return frozenset(font.face.charToGlyph)
 
 
 def printable(text: str) -> str:

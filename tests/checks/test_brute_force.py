@@ -18,7 +18,7 @@ from layoutgen.checks.drills import near_drills
 from layoutgen.checks.facing import edges_of, facing
 from layoutgen.checks.near import near_nets
 from tests.checks.boards import Sheet, box, polygon
-from tests.seeded_faults.harness import QUICK, drawn
+from tests.seeded_faults.harness import TESTED, drawn
 
 SEEDS = range(200)
 NETS = ("a", "b", "v")
@@ -123,7 +123,7 @@ def test_edge_distances(seed: int) -> None:
     assert pairs(found(seed, "holes.min_edge_distance")) == pytest.approx(near, abs=1e-6)
 
 
-@pytest.mark.parametrize("stem", QUICK)
+@pytest.mark.parametrize("stem", TESTED)
 def test_gaps_of_the_examples(stem: str) -> None:
     """Catches a pair of nets or holes of an example that the searches miss or invent."""
     artwork = drawn(stem)

@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
+import itertools
 import math
-from collections.abc import Callable
+from collections.abc import Callable, Iterator
 from typing import Any, ClassVar
 
 import numpy as np
@@ -14,9 +15,10 @@ from layoutgen.placement import place
 from layoutgen.reading import circuit_from_data
 from layoutgen.response import CLOSE_ENOUGH, correct_lengths, respond
 from layoutgen.response.correct import MOST_CHANGE
-from layoutgen.response.fit import _bounded
+from layoutgen.response.fit import _bounded, evened_step, largest
 from layoutgen.response.match import Match, resized
-from layoutgen.response.mirror import mirror_groups
+from layoutgen.response.mirror import length_groups, mirror_groups
+from layoutgen.response.rings import loop_numbers
 from layoutgen.response.trace import trace_copper
 from layoutgen.sizing import size_circuit
 
@@ -165,6 +167,37 @@ def test_a_bounded_step_is_no_worse_than_any_point_inside(seed: int) -> None:
     assert 0.5 * np.sum((a @ step + b) ** 2) <= best + 0.15 * (start - best)
 
 
+def test_a_step_evens_differences_out() -> None:
+    """Least squares of 3 and 1, 1, 1 give 1.5; the lowest largest difference is 1. Bounds are kept to."""
+    difference = np.array([3.0, 1.0, 1.0, 1.0], dtype=complex)
+    slope = np.ones((4, 1), dtype=complex)
+    zero, far = np.zeros(1), np.full(1, 9.0)
+    step = evened_step(difference, slope, zero, -far, far)
+    assert largest(difference + slope @ step) == pytest.approx(1.0, abs=0.01)
+    near = np.full(1, 0.5)
+    assert evened_step(difference, slope, zero, -near, near) == pytest.approx([-0.5])
+
+
+@pytest.mark.parametrize("seed", range(4))
+def test_evened_steps_are_as_low_as_a_linear_program_says(seed: int) -> None:
+    """Weights that stick or vanish would leave a higher difference than need be."""
+    from scipy.optimize import linprog
+
+    rng = np.random.default_rng(seed)
+    d = rng.normal(size=30) + 1j * rng.normal(size=30)
+    slope = rng.normal(size=(30, 3)) + 1j * rng.normal(size=(30, 3))
+    step = evened_step(d, slope, np.zeros(3), np.full(3, -9.0), np.full(3, 9.0))
+    around = np.exp(2j * np.pi * np.arange(64) / 64)
+    rows = [np.hstack([(slope * w).real, -np.ones((30, 1))]) for w in around]
+    best = linprog(
+        [0.0, 0.0, 0.0, 1.0],
+        A_ub=np.vstack(rows),
+        b_ub=np.concatenate([-(d * w).real for w in around]),
+        bounds=[(None, None)] * 4,
+    ).fun
+    assert largest(d + slope @ step) < 1.03 * best
+
+
 class TestWhatHolds:
     """Where lengths cannot do it, the element that holds it is named."""
 
@@ -212,6 +245,20 @@ class TestWhatHolds:
         )
         assert found.holders[0].without < 0.02
 
+    def test_mirror_images_hold_together(self, artwork_of: MAKER, ports: PORTS) -> None:
+        """One of two like pads made ideal changes little: only both together show what holds."""
+        part = {"kind": "resistor", "value": "0.1 ohm", "case": "2512"}
+        lines = {
+            "a": by_angle("in", "c", 95, 30),
+            "b": by_angle("d", "e", 95, 30),
+            "c": by_angle("f", "out", 95, 30),
+        }
+        parts = {"R1": {**part, "nets": ["c", "d"]}, "R2": {**part, "nets": ["e", "f"]}}
+        found = respond(artwork_of({"ports": ports, "lines": lines, "parts": parts})).correction
+        assert found.reachable > CLOSE_ENOUGH
+        assert (found.holders[0].element, found.holders[0].alike) == ("R1", ("R2",))
+        assert found.holders[0].cause.endswith("and those of R2")
+
     def test_lengths_that_would_do_are_said_to(self, stubs: Artwork) -> None:
         """An element blamed for what the correction, switched off, would have removed."""
         response = respond(stubs)
@@ -234,6 +281,72 @@ def circuit(**tables: Any) -> Any:
         "board": {"rules": "two-layer-standard"},
     }
     return circuit_from_data({**base, **tables})
+
+
+class TestLengthGroups:
+    HYBRID: ClassVar[dict[str, Any]] = {
+        "s1": by_angle("n1", "n2", 35.36, 90),
+        "p1": by_angle("n2", "n3", 50, 90),
+        "s2": by_angle("n4", "n3", 35.36, 90),
+        "p2": by_angle("n1", "n4", 50, 90),
+    }
+
+    def test_opposite_sides_of_a_loop_stay_equal(self) -> None:
+        """One port ends in a part: no mirror images any more, and a rectangle that no longer closes."""
+        load = {"kind": "resistor", "nets": ["n4", "gnd"], "value": "50 ohm", "case": "0603"}
+        file = circuit(
+            ports={str(k): {"net": f"n{k}"} for k in range(1, 4)}, lines=self.HYBRID, parts={"R": load}
+        )
+        assert len(mirror_groups(file)) == 4
+        assert length_groups(file) == (("s1", "s2"), ("p1", "p2"))
+
+    def test_loops_apart_are_apart(self) -> None:
+        """Two hybrids on one line would share their lengths for nothing; their line is on no loop."""
+        moved = {"n1": "m1", "n2": "m2", "n3": "m3", "n4": "m4"}
+        other = {f"t{k}": {**v, "nets": [moved[n] for n in v["nets"]]} for k, v in self.HYBRID.items()}
+        lines = {**self.HYBRID, **other, "between": by_angle("n3", "m1", 35.36, 90)}
+        ends = {"a": {"net": "n1"}, "b": {"net": "n2", "impedance": "40 ohm"}, "c": {"net": "m2"}}
+        ends |= {"d": {"net": "m4", "impedance": "30 ohm"}, "e": {"net": "n4", "impedance": "20 ohm"}}
+        assert length_groups(circuit(ports=ends, lines=lines)) == (
+            ("s1", "s2"),
+            ("p1", "p2"),
+            ("ts1", "ts2"),
+            ("tp1", "tp2"),
+            ("between",),
+        )
+
+    @pytest.mark.parametrize("seed", range(12))
+    def test_loops_as_by_taking_nets_away(self, seed: int) -> None:
+        """Two elements are on one loop when no single net or element parts them: tried one by one."""
+        rng = np.random.default_rng(seed)
+        nets = {f"e{k}": [f"n{i}" for i in rng.choice(7, 2, replace=False)] for k in range(9)}
+        found = loop_numbers(nets)
+        for a, b in itertools.combinations(nets, 2):
+            together = found.get(a, -1) == found.get(b, -2)
+            assert together == _on_one_loop(nets, a, b)
+
+
+def _on_one_loop(nets: dict[str, list[str]], a: str, b: str) -> bool:
+    """Tell whether some loop without a crossing runs through two elements: two ways without a common net."""
+    (p, q), rest = nets[a], [set(held) for name, held in nets.items() if name not in (a, b)]
+    r, s = nets[b]
+    for x, y in ((r, s), (s, r)):
+        for way in _ways(p, x, rest, {q, y}):
+            if next(_ways(q, y, rest, way), None) is not None:
+                return True
+    return False
+
+
+def _ways(start: str, end: str, rest: list[set[str]], barred: set[str]) -> Iterator[set[str]]:
+    """Yield the nets of each way between two nets that leaves out barred ones."""
+    if start in barred or end in barred:
+        return
+    if start == end:
+        yield {start}
+        return
+    for other in {net for held in rest if start in held for net in held} - {start}:
+        for way in _ways(other, end, rest, barred | {start}):
+            yield way | {start}
 
 
 class TestMirrorGroups:

@@ -253,6 +253,23 @@ class TestRange:
         assert "not passive: largest singular value 1.3" in texts[0]
         assert "coarse" in texts[1]
 
+    @pytest.mark.parametrize(
+        ("f", "s12", "told"),
+        [
+            (np.linspace(1e9, 4e9, 31), 0.3, "is not reciprocal: S12 and S21 differ by 0.5000 at 1 GHz"),
+            (np.array([2.1e9, 2.5e9]), 0.8, "is coarse: its points at the band are too few"),
+        ],
+    )
+    def test_data_of_a_resistor_that_cannot_be_are_told(
+        self, artwork_of: MAKER, ports: PORTS, tmp_path: Path, f: np.ndarray, s12: float, told: str
+    ) -> None:
+        """An amplifier's file under a resistor's name; two points with anything between them."""
+        s = np.tile(np.array([[0.1, s12], [0.8, 0.1]], dtype=complex), (f.size, 1, 1))
+        write_data(tmp_path / "r.s2p", f, s)
+        artwork = artwork_of({"ports": ports, "lines": LINES, "parts": self.parts()}, tmp_path)
+        (text,) = (text for _, _, text in respond(artwork, tmp_path).notes if "cut" not in text)
+        assert told in text
+
     def test_the_sweep_left_out_is_the_band_widened(self, artwork_of: MAKER, ports: PORTS) -> None:
         design = {"title": "x", "frequency": "2.245 GHz", "band": ["2.20 GHz", "2.29 GHz"]}
         lines = {"t": {"nets": ["in", "out"], "impedance": "50 ohm", "length": "free"}}

@@ -278,6 +278,19 @@ class TestRefused:
         with pytest.raises(WrongInputError, match=r"tolerance.width.*narrowest line"):
             tolerance(artwork)
 
+    def test_no_gap_left(self, artwork_of: MAKER, ports: PORTS) -> None:
+        """Strips of a pair that overlap have a coupling all the same, and nobody would see it."""
+        pair = {"nets": ["in", "open", "open", "out"], "even_impedance": "63 ohm", "odd_impedance": "41 ohm"}
+        tables = {
+            "ports": ports,
+            "coupled": {"p": {**pair, "angle": "90 deg"}},
+            "tolerance": {"width": "0.5 mm"},
+        }
+        artwork = artwork_of(tables)
+        assert artwork.placement.pairs["p"].width > 500_000 > artwork.placement.pairs["p"].gap
+        with pytest.raises(WrongInputError, match=r"tolerance.width.*narrowest gap"):
+            tolerance(artwork)
+
     @pytest.mark.filterwarnings("ignore")
     def test_a_scheduler_that_is_not_there(
         self, attenuator: Artwork, monkeypatch: pytest.MonkeyPatch

@@ -11,6 +11,7 @@ import functools
 import json
 import math
 import multiprocessing
+import os
 import random
 import sys
 import time
@@ -29,6 +30,8 @@ STEMS = tuple(path.stem for path in EXAMPLES)
 AMPLIFIER = "telemetry_driver"
 QUICK = ("quarter_wave_transformer", "shorted_stub_tee", "stub_notch", AMPLIFIER)
 """Examples that are placed in a second or two: those that tests use; the command above uses all."""
+TESTED = STEMS if os.environ.get("ALL_EXAMPLES") else QUICK
+"""The examples that tests judge whole: the quick ones, or all with ``ALL_EXAMPLES=1`` in the environment."""
 EVERYWHERE: tuple[Fault, ...] = (*ANYWHERE, *MORE_ANYWHERE)
 WITH_PARTS: tuple[Fault, ...] = (*WITH_BANKS, *MORE_WITH_PARTS)
 KINDS = (*EVERYWHERE, *WITH_PARTS)

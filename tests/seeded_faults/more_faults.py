@@ -219,9 +219,9 @@ def bare_ground_pad(artwork: Artwork, rng: random.Random) -> Seeded:
 
 
 def cut_strip(artwork: Artwork, rng: random.Random) -> Seeded:
-    """A cut of 10 um through the strip of a bank, between two of its parts' pads."""
-    pads = shapely.union_all(
-        [pad.outline.polygon() for part in artwork.placement.parts.values() for pad in part.pads]
+    """A cut of 10 um through the strip of a bank or to a part, where neither a pad nor a line bridges it."""
+    bridges = shapely.union_all(
+        [as_polygon(s) for s in artwork.on("copper_top") if s.role in ("pad", "line")]
     )
     strips = [strip for strip in artwork.placement.strips if math.dist(*strip.path[:2]) > 1e6]
     if not strips:
@@ -233,11 +233,10 @@ def cut_strip(artwork: Artwork, rng: random.Random) -> Seeded:
         along = ((b[0] - a[0]) / length, (b[1] - a[1]) / length)
         at = (a[0] + share * (b[0] - a[0]), a[1] + share * (b[1] - a[1]))
         slot = beam(at, along, 10_000.0, 3.0 * strip.width)
-        if not slot.intersects(pads):
+        if not slot.intersects(bridges):
             break
     middle = (at[0] + 5_000.0 * along[0], at[1] + 5_000.0 * along[1])
-    roles = ("strip", "line", "pad")
-    return Seeded(with_cut(artwork, slot, roles), ("connectivity.open",), middle, strip.width)
+    return Seeded(with_cut(artwork, slot, ("strip",)), ("connectivity.open",), middle, strip.width)
 
 
 def plane_off_the_flange(artwork: Artwork, rng: random.Random) -> Seeded:

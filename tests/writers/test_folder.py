@@ -8,6 +8,7 @@ import signal
 import subprocess
 import sys
 import time
+from collections.abc import Callable
 from pathlib import Path
 
 import pytest
@@ -20,7 +21,11 @@ OLD = {"board.gds": b"old gds", "board.svg": b"old svg", "wanted.s4p": b"old", "
 OLD["report.json"] = b'{"files": [{"path": "board.gds"}, {"path": "board.svg"}, {"path": "wanted.s4p"}]}'
 NEW = {"board.gds": b"new gds", "board.png": b"new png", "board.svg": b"new svg", "wanted.s2p": b"new"}
 NEW["report.json"] = b'{"files": [{"path": "board.gds"}]}'
-FOREIGN = {"notes.txt": b"mine", "board.toml": b"mine", "as_drawn.s9p": b"mine"}
+OLD |= {"test/README.txt": b"wanted.s4p  90  response", "test/wanted.s4p": b"old", "test/ports.csv": b"old"}
+NEW |= {"test/README.txt": b"wanted.s2p  90  response", "test/wanted.s2p": b"new", "test/ports.csv": b"new"}
+NEW |= {"assembly/README.txt": b"new"}
+FOREIGN = {"notes.txt": b"mine", "board.toml": b"mine", "as_drawn.s9p": b"mine", "test/as_drawn.s4p": b"mine"}
+FOREIGN |= {"photos/one.jpg": b"mine"}
 
 LOADS = f"""
 import importlib.util, os, sys
@@ -32,30 +37,51 @@ write_files = module.write_files
 """
 """Loads the module without the package around it, which would take longest of all to import."""
 
-DIES = """
-folder, limit, files = Path(sys.argv[1]), int(sys.argv[2]), eval(sys.argv[3])
-count = 0
-def dying(real):
-    def call(*args, **kwargs):
-        global count
-        if count == limit:
-            os._exit(9)
-        count += 1
-        return real(*args, **kwargs)
-    return call
-for name in ("rename", "replace", "unlink", "rmdir", "mkdir", "link"):
-    setattr(os, name, dying(getattr(os, name)))
-write_files(folder, files)
-"""
+STEPS = ("rename", "replace", "unlink", "rmdir", "mkdir", "link")
+
+
+def status_of_dying(folder: Path, limit: int) -> int:
+    """Write the new set in a process that dies before one of its steps; 0 when it has got through."""
+    child = os.fork()
+    if child:
+        return os.waitstatus_to_exitcode(os.waitpid(child, 0)[1])
+    count = 0
+
+    def dying(real: Callable[..., object]) -> Callable[..., object]:
+        def call(*args: object, **kwargs: object) -> object:
+            nonlocal count
+            if count == limit:
+                os._exit(9)
+            count += 1
+            return real(*args, **kwargs)
+
+        return call
+
+    for name in STEPS:
+        setattr(os, name, dying(getattr(os, name)))
+    try:
+        write_files(folder, NEW)
+    except BaseException:
+        os._exit(1)
+    os._exit(0)
 
 
 def contents(folder: Path) -> dict[str, bytes]:
-    """Return the folder's files; working folders are not looked into."""
-    return {path.name: path.read_bytes() for path in folder.iterdir() if path.is_file()}
+    """Return the files by path; working folders are not looked into."""
+    paths = [path.relative_to(folder) for path in folder.rglob("*") if path.is_file()]
+    return {p.as_posix(): (folder / p).read_bytes() for p in paths if not p.parts[0].startswith(".layoutgen")}
 
 
 def leftovers(folder: Path) -> list[str]:
-    return sorted(path.name for path in folder.iterdir() if path.is_dir())
+    """Return the folders that no set and nobody else has made."""
+    own = {name.split("/")[0] for name in OLD | NEW | FOREIGN if "/" in name}
+    return sorted(path.name for path in folder.iterdir() if path.is_dir() and path.name not in own)
+
+
+def fill(folder: Path, files: dict[str, bytes]) -> None:
+    for name, data in files.items():
+        (folder / name).parent.mkdir(exist_ok=True)
+        (folder / name).write_bytes(data)
 
 
 @pytest.fixture
@@ -63,10 +89,7 @@ def filled(tmp_path: Path) -> Path:
     """A folder with the old set and files of other people."""
     folder = tmp_path / "out"
     folder.mkdir()
-    for name, data in (OLD | FOREIGN).items():
-        (folder / name).write_bytes(data)
-    (folder / "photos").mkdir()
-    (folder / "photos" / "one.jpg").write_bytes(b"mine")
+    fill(folder, OLD | FOREIGN)
     return folder
 
 
@@ -90,8 +113,7 @@ def test_files_of_others_stay(filled: Path) -> None:
     """Touchstone files of the last run with another number of ports go; what it did not list stays."""
     write_files(filled, NEW)
     assert contents(filled) == NEW | FOREIGN
-    assert leftovers(filled) == ["photos"]
-    assert (filled / "photos" / "one.jpg").read_bytes() == b"mine"
+    assert leftovers(filled) == []
 
 
 def test_the_report_comes_last(filled: Path, monkeypatch: pytest.MonkeyPatch) -> None:
@@ -105,7 +127,7 @@ def test_the_report_comes_last(filled: Path, monkeypatch: pytest.MonkeyPatch) ->
 
     monkeypatch.setattr(os, "replace", recording)
     write_files(filled, dict(sorted(NEW.items(), reverse=True)))
-    assert sorted(moved) == sorted(NEW)
+    assert sorted(moved) == sorted(Path(name).name for name in NEW)
     assert moved[-1] == "report.json"
 
 
@@ -130,17 +152,14 @@ def test_every_place_of_death_leaves_the_old_or_the_new_set(filled: Path) -> Non
     """Killed before each single step in turn; the next run finds one whole set, others' files untouched."""
     seen = set()
     for limit in range(100):
-        for path in list(filled.iterdir()):
-            if path.name in OLD | NEW:
-                path.unlink()
-        for name, data in OLD.items():
-            (filled / name).write_bytes(data)
-        command = [sys.executable, "-c", LOADS + DIES, str(filled), str(limit), repr(NEW)]
-        status = subprocess.run(command, check=False).returncode
+        for name in NEW:
+            (filled / name).unlink(missing_ok=True)
+        fill(filled, OLD)
+        status = status_of_dying(filled, limit)
         recover(filled)
         found = contents(filled)
         assert found in (OLD | FOREIGN, NEW | FOREIGN), f"died before step {limit}"
-        assert leftovers(filled) == ["photos"]
+        assert leftovers(filled) == []
         seen.add(found["board.gds"])
         if status == 0:
             break
@@ -154,8 +173,7 @@ def test_death_in_a_new_folder_leaves_none(tmp_path: Path) -> None:
     for limit in range(20):
         folder = tmp_path / str(limit) / "out"
         folder.parent.mkdir()
-        command = [sys.executable, "-c", LOADS + DIES, str(folder), str(limit), repr(NEW)]
-        status = subprocess.run(command, check=False).returncode
+        status = status_of_dying(folder, limit)
         assert not folder.exists() or contents(folder) == NEW
         write_files(folder, NEW)
         assert contents(folder) == NEW
@@ -171,7 +189,8 @@ print("ready", flush=True)
 k = 0
 while True:
     k += 1
-    files = {f"file{n}": str(k).encode() * 2000 for n in range(8)}
+    names = [f"{place}file{n}" for place in ("", "test/", "assembly/") for n in range(5)]
+    files = {name: str(k).encode() * 2000 for name in names}
     write_files(folder, files | {"report.json": str(k).encode()})
 """
 
@@ -190,16 +209,16 @@ def test_killed_at_random_moments_the_set_is_whole(filled: Path) -> None:
         process.wait()
         process.stdout.close()
         recover(filled)
-        versions = {name: data for name, data in contents(filled).items() if name.startswith("file")}
+        versions = {name: data for name, data in contents(filled).items() if "file" in name}
         assert len(set(versions.values())) <= 1
-        assert len(versions) in (0, 8)
+        assert len(versions) in (0, 15)
         assert contents(filled).items() >= FOREIGN.items()
 
 
 def test_a_failing_rename_is_undone(filled: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     """A file held open elsewhere, at any of the renames: the old set is back, and the message says why."""
     real, failures = os.replace, 0
-    for limit in range(12):
+    for limit in range(20):
         calls = 0
 
         def failing(source: str, target: str, limit: int = limit) -> None:
@@ -216,10 +235,12 @@ def test_a_failing_rename_is_undone(filled: Path, monkeypatch: pytest.MonkeyPatc
             failures += 1
             assert "permission denied" in str(error)
             assert contents(filled) == OLD | FOREIGN
-            assert leftovers(filled) == ["photos"]
+            assert leftovers(filled) == []
+            assert not (filled / "assembly").exists()
         else:
             break
     assert failures == len(NEW)
+    assert not (filled / "test" / "wanted.s4p").exists()
     assert contents(filled) == NEW | FOREIGN
 
 
@@ -233,7 +254,7 @@ def test_a_full_disk_leaves_the_old_set(filled: Path, monkeypatch: pytest.Monkey
     with pytest.raises(WrongInputError, match="no space left"):
         write_files(filled, NEW)
     assert contents(filled) == OLD | FOREIGN
-    assert leftovers(filled) == ["photos"]
+    assert leftovers(filled) == []
 
 
 def test_preparing_leaves_no_trace(tmp_path: Path) -> None:
@@ -249,6 +270,13 @@ def test_a_file_in_the_way_is_refused_before_any_work(tmp_path: Path) -> None:
         with pytest.raises(WrongInputError, match="cannot be written"):
             prepare_folder(folder)
     assert (tmp_path / "out").read_bytes() == b"a file"
+
+
+def test_a_file_where_a_package_must_go_is_refused(tmp_path: Path) -> None:
+    """Found half way, the files above it would have been replaced already."""
+    (tmp_path / "assembly").write_bytes(b"a file")
+    with pytest.raises(WrongInputError, match="cannot be written"):
+        prepare_folder(tmp_path, ["x.svg", "assembly/README.txt"])
 
 
 def test_a_folder_where_a_file_must_go_is_refused(tmp_path: Path) -> None:
@@ -270,7 +298,7 @@ def test_preparing_mends_what_a_killed_run_left(filled: Path) -> None:
     (filled / ".layoutgen-stage").mkdir()
     (filled / ".layoutgen-stage" / "board.gds").write_bytes(b"half")
     prepare_folder(filled)
-    assert leftovers(filled) == ["photos"]
+    assert leftovers(filled) == []
     assert contents(filled) == OLD | FOREIGN
 
 

@@ -285,8 +285,8 @@ def zip_with_a_member_swapped(data: bytes) -> bytes:
 
 
 def pdf_with_another_width(data: bytes) -> bytes:
-    """Keep the file whole and lose its first page's content."""
-    at = data.index(b"stream") + 8
+    """Keep the file whole and lose its last page's content."""
+    at = data.rindex(b"stream", 0, data.rindex(b"endstream")) + 8
     return data[:at] + bytes(64) + data[at + 64 :]
 
 

@@ -1,0 +1,113 @@
+"""Looking ahead: whether what leads to a port, or closes a loop, still has a way when something is laid."""
+
+from __future__ import annotations
+
+import itertools
+from collections.abc import Callable, Iterator, Mapping
+from dataclasses import dataclass, field, replace
+from itertools import islice
+
+from layoutgen.circuit import End
+from layoutgen.placement.clearance import Kind, Obstacles
+from layoutgen.placement.frame import Pose, box_around
+from layoutgen.placement.kit import PinnedError
+from layoutgen.placement.neighbours import Neighbours
+from layoutgen.placement.state import Growth, Pending, State
+from layoutgen.placement.ways import Way, Ways
+
+__all__ = ["LookAhead"]
+
+_NEARBY = 40_000_000  # [nm]: farther away nothing is looked at again
+_MOST_WAYS = 60  # ways tried before a candidate is taken as shut in
+
+Spot = tuple[End, Pose]
+
+
+@dataclass(slots=True)
+class LookAhead:
+    """Finds ways out; remembers, by spot, the last one that was clear, to be tried first.
+
+    ``port_order`` returns what is wrong with the order of ports in a candidate, or None.
+    """
+
+    ways: Ways
+    neighbours: Neighbours
+    margins: Mapping[Kind, int]
+    port_order: Callable[[Growth], str | None]
+    _witness: dict[Spot, Way] = field(default_factory=dict)
+
+    def shut_in(self, grown: State, growth: Growth) -> tuple[str | None, dict[Spot, Growth]]:
+        """Return what would have no way with a candidate laid, or None and the ways out that were found.
+
+        Args:
+            grown: The state with the candidate laid.
+            growth: The candidate; its state holds the ways out that were clear before.
+        """
+        escapes: dict[Spot, Growth] = {}
+        added = Obstacles.empty().plus(growth.obstacles)
+        for pending in self._nearby(grown, growth):
+            spot, name = (pending.end, pending.at), pending.end.element
+            if self.ways.mate(pending, grown) is not None:
+                if self._way(grown, pending, self._leaves_ports_open) is None:
+                    return f"{name} would have no way to close its loop", {}
+            elif self.ways.tour.ends_in_port(pending.end):
+                found = self._still_open(grown, growth, added, spot) or self._way(grown, pending)
+                if found is None:
+                    return f"{name} would have no way to its edge", {}
+                escapes[spot] = found
+        return None, escapes
+
+    def _nearby(self, grown: State, growth: Growth) -> Iterator[Pending]:
+        """Yield the pending things that something new may shut in: its own, and those not far from it."""
+        boxes = [item.box for item in growth.obstacles if not item.corridor]
+        if not boxes:
+            return
+        x0, y0, x1, y1 = box_around([corner for box in boxes for corner in (box[:2], box[2:])])
+        for pending in grown.pending:
+            near_x = x0 - _NEARBY <= pending.at.x <= x1 + _NEARBY
+            if near_x and y0 - _NEARBY <= pending.at.y <= y1 + _NEARBY:
+                yield pending
+
+    def _still_open(self, grown: State, growth: Growth, added: Obstacles, spot: Spot) -> Growth | None:
+        """Return the way out that was clear before, if the candidate leaves it clear.
+
+        Only what the candidate adds is looked at: all else was there when the way was found.
+        """
+        before = growth.state.escapes.get(spot)
+        if before is None or before.state.bounds != grown.bounds:
+            return None
+        if self.ways.model.net_of(spot[0]) in growth.used:
+            return None
+        way = replace(before, state=grown)
+        if not way.bounds.holds(way.extent(self.margins)) or self.port_order(way) is not None:
+            return None
+        return None if self.neighbours.between(growth, added, way) else way
+
+    def _way(
+        self, state: State, pending: Pending, suits: Callable[[State, Growth], bool] | None = None
+    ) -> Growth | None:
+        """Return a way of laying a pending thing that is clear, and suits, None where there is none."""
+        base, spot = self.ways.without(state, pending), (pending.end, pending.at)
+        before = [self._witness[spot]] if spot in self._witness else []
+        for way in itertools.chain(before, islice(self.ways.of(pending, state), _MOST_WAYS)):
+            trial = Growth(state=base, bounds=state.bounds)
+            try:
+                way.lay(trial)
+            except PinnedError:
+                continue
+            if self._is_clear(trial) and (suits is None or suits(base, trial)):
+                self._witness[spot] = way
+                return trial
+        return None
+
+    def _is_clear(self, trial: Growth) -> bool:
+        """True when a trial lies on the board, its ports in order, and clear of all else."""
+        inside = trial.bounds.holds(trial.extent(self.margins))
+        return inside and self.port_order(trial) is None and self.neighbours.conflict(trial) is None
+
+    def _leaves_ports_open(self, base: State, trial: Growth) -> bool:
+        """True when a line that closes a loop leaves a way to their edges for ports beside it."""
+        grown, model = trial.applied(trial.extent(self.margins), 0.0), self.ways.model
+        nets = set(model.owner_nets[next(iter(trial.lines))])
+        near = [p for p in base.pending if model.net_of(p.end) in nets]
+        return all(self._way(grown, p) is not None for p in near if self.ways.tour.ends_in_port(p.end))

@@ -1,0 +1,98 @@
+"""What a line meets at its ends, and so what its legs must keep."""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass, field
+
+from layoutgen.circuit import End, EndKind
+from layoutgen.geometry import mitre_for_turn, mitre_reach
+from layoutgen.placement.bodies import beyond
+from layoutgen.placement.model import GROUND, Model
+from layoutgen.placement.tour import Tour
+from layoutgen.placement.words import LegRules, Reach
+
+__all__ = ["Meetings"]
+
+
+@dataclass(slots=True)
+class Meetings:
+    """Answers for the ends of lines; holds the circuit, remembers the rules of each line only."""
+
+    model: Model
+    tour: Tour
+    _rules: dict[End, LegRules] = field(default_factory=dict)
+
+    def rules(self, end: End) -> LegRules:
+        """Return what the legs of a line, travelled from one end, must keep."""
+        if end not in self._rules:
+            self._rules[end] = self._rules_of(end)
+        return self._rules[end]
+
+    def _rules_of(self, end: End) -> LegRules:
+        model, name = self.model, end.element
+        width, limits = model.widths[name], model.limits
+        mitre = mitre_for_turn(model.sized.lines[name].mitre_percent, 90.0, width, limits.neck)
+        bend = math.ceil(mitre_reach(mitre, 90.0, width))
+        first = self._reach(end, self.model.net_of(end))
+        far = self.far(end)
+        last = Reach(0, 0) if far is None else self._reach(far[0], far[1])
+        room = first.copper + 2 * model.pour_gap(name) + model.ground_ring + width // 2
+        clear = room if model.has_ground else 0
+        return LegRules.of(width, limits.spacing, bend, first=first, last=last, clear=clear)
+
+    def far(self, end: End) -> tuple[End, str] | None:
+        """Return a line's other end with its net, None for an open one."""
+        return next((found for found in self.model.ends[end.element] if found[0].index != end.index), None)
+
+    def port_at(self, far: tuple[End, str] | None) -> str | None:
+        """Return the port that a line ends in, when nothing else meets there."""
+        if far is None or far[1] == GROUND:
+            return None
+        hub = self.tour.hubs[far[1]]
+        if hub.arrival == far[0] and not hub.bank and len(hub.arms) == 1:
+            end = hub.arms[0].end
+            return end.element if end.kind is EndKind.PORT else None
+        return None
+
+    def _reach(self, end: End, net: str) -> Reach:
+        """Return what lies at one end of a line."""
+        model, limits = self.model, self.model.limits
+        if net == GROUND:
+            return Reach(limits.land // 2, limits.land, limits.land // 2)
+        hub = self.tour.hubs[net]
+        others = [other for other in model.circuit.nets[net].ends if other != end]
+        pads = [model.bodies[other.element].land_at(other) for other in others if other.kind is EndKind.PAD]
+        if any(other.kind is EndKind.COUPLED for other in others):
+            return Reach(0, 0)
+        if hub.bank:
+            first = model.bodies[hub.bank[0].element]
+            half = max(first.outline[3] - first.outline[1], first.outline[2] - first.outline[0]) // 2
+            along = max(pad.along for pad in pads)
+            return Reach(half, half + limits.height, max(along, self._widest(others)) // 2)
+        if len(others) == 1 and pads:
+            outside = beyond(model.bodies[others[0].element], pads[0])
+            return Reach(pads[0].along, pads[0].along + outside + limits.height, pads[0].across // 2)
+        half = max([self._widest(others), *(pad.across for pad in pads)]) // 2
+        return Reach(half, half + limits.spacing if half else 0, half)
+
+    def _widest(self, ends: list[End]) -> int:
+        return max((self.model.widths.get(end.element, 0) for end in ends), default=0)
+
+    def least_free(self, end: End, *, to_port: bool) -> int:
+        """Return the least length [nm] of a straight free line."""
+        first = self._reach(end, self.model.net_of(end))
+        far = self.far(end)
+        last = Reach(0, 0) if far is None else self._reach(far[0], far[1])
+        limits = self.model.limits
+        rf = self.model.sized.lines[end.element].rf
+        extra = max(limits.spacing, 5 * limits.height if rf else 2 * limits.height)
+        return first.copper + (extra if to_port else last.copper + limits.spacing)
+
+    def with_closer(self, end: End) -> bool:
+        """True when a line leads to a net where another line is to close a loop, and so needs room."""
+        far = self.far(end)
+        if far is None or far[1] == GROUND:
+            return False
+        closers = self.tour.loops.closers
+        return any(other.element in closers for other in self.model.circuit.nets[far[1]].ends)
