@@ -106,8 +106,10 @@ _no_correction = click.option(
     "--for",
     "receivers",
     metavar="LIST",
+    default="none",
+    show_default=True,
     help="Also write packages for these receivers, with commas: pcb-designer, board-house, mask-house, "
-    "assembly, test, reviewer; or all.",
+    "assembly, test, reviewer; or all, or none.",
 )
 @click.option("--prove", is_flag=True, help="Read every file back and compare it with the model.")
 @_no_correction
@@ -117,7 +119,7 @@ def draw(
     out: Path | None,
     repeatable: bool,
     dpi: int,
-    receivers: str | None,
+    receivers: str,
     prove: bool,
     no_correction: bool,
     quiet: bool,
@@ -149,13 +151,13 @@ def draw(
     return FINDINGS if result.count("error") or not proved else CLEAN
 
 
-def _receivers(text: str | None) -> tuple[str, ...]:
-    """Return the receivers asked for; none when the option is not given."""
-    if text is None:
+def _receivers(text: str) -> tuple[str, ...]:
+    """Return the receivers asked for; their writers are imported only if there are any."""
+    if text.strip() == "none":
         return ()
-    from layoutgen.writers.packages import RECEIVERS, receivers_from
+    from layoutgen.writers.packages import receivers_from
 
-    return tuple(RECEIVERS) if text.strip() == "all" else receivers_from(text)
+    return receivers_from(text)
 
 
 def _packages(result: Result, job: Job, receivers: Sequence[str]) -> dict[str, bytes]:

@@ -46,15 +46,16 @@ class LookAhead:
         escapes: dict[Spot, Growth] = {}
         added = Obstacles.empty().plus(growth.obstacles)
         for pending in self._nearby(grown, growth):
-            spot, name = (pending.end, pending.at), pending.end.element
-            if self.ways.mate(pending, grown) is not None:
-                if self._way(grown, pending, self._leaves_ports_open) is None:
-                    return f"{name} would have no way to close its loop", {}
-            elif self.ways.tour.ends_in_port(pending.end):
-                found = self._still_open(grown, growth, added, spot) or self._way(grown, pending)
-                if found is None:
-                    return f"{name} would have no way to its edge", {}
-                escapes[spot] = found
+            mate = self.ways.mate(pending, grown)
+            if mate is None and not self.ways.tour.ends_in_port(pending.end):
+                continue
+            spot = pending.end, pending.at
+            found = self._still_open(grown, growth, added, pending, mate)
+            found = found or self._way(grown, pending, self._leaves_ports_open if mate else None)
+            if found is None:
+                aim = "close its loop" if mate else "its edge"
+                return f"{pending.end.element} would have no way to {aim}", {}
+            escapes[spot] = found
         return None, escapes
 
     def _nearby(self, grown: State, growth: Growth) -> Iterator[Pending]:
@@ -68,15 +69,17 @@ class LookAhead:
             if near_x and y0 - _NEARBY <= pending.at.y <= y1 + _NEARBY:
                 yield pending
 
-    def _still_open(self, grown: State, growth: Growth, added: Obstacles, spot: Spot) -> Growth | None:
+    def _still_open(
+        self, grown: State, growth: Growth, added: Obstacles, pending: Pending, mate: Pending | None
+    ) -> Growth | None:
         """Return the way out that was clear before, if the candidate leaves it clear.
 
         Only what the candidate adds is looked at: all else was there when the way was found.
         """
-        before = growth.state.escapes.get(spot)
+        before = growth.state.escapes.get((pending.end, pending.at))
         if before is None or before.state.bounds != grown.bounds:
             return None
-        if self.ways.model.net_of(spot[0]) in growth.used:
+        if any(p is not None and self.ways.model.net_of(p.end) in growth.used for p in (pending, mate)):
             return None
         way = replace(before, state=grown)
         if not way.bounds.holds(way.extent(self.margins)) or self.port_order(way) is not None:

@@ -45,7 +45,7 @@ class Neighbours:
         return None
 
     def between(self, growth: Growth, added: Obstacles, other: Growth) -> bool:
-        """Return whether two candidates would stand too near to each other; ``added`` are the first's boxes."""
+        """Return whether two candidates would stand too near to each other; ``added`` holds the first."""
         both = Growth(state=growth.state, lines={**growth.lines, **other.lines})
         return any(
             new.owner != old.owner and self._really(both, new, old)

@@ -224,12 +224,13 @@ class Search:
                 continue
             extent, key = growth.extent(self.margins), end_key(element)
             grown = growth.applied(extent, cost, self._crossings(growth), (key, way.choice))
-            conflict, escapes = self._conflict(growth), {}
+            conflict = self._conflict(growth)
             if conflict is None:
                 conflict, escapes = self._ahead.shut_in(grown, growth)
+                grown = replace(grown, escapes=escapes)
             if conflict is None:
                 accepted += 1
-                yield replace(grown, escapes=escapes)
+                yield grown
             else:
                 self._fail(depth, element.element, conflict)
 

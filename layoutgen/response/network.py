@@ -134,6 +134,8 @@ def _flat(value: ComplexArray, shape: tuple[int, ...]) -> ComplexArray:
     """Return a value to a shape, laid out flat."""
     if np.ndim(value) == 0:
         return value
+    if value.shape == shape:
+        return value.reshape(-1)
     laid_out = np.empty(shape, dtype=np.complex128)
     laid_out[...] = value
     return laid_out.reshape(-1)

@@ -12,7 +12,7 @@ from layoutgen.artwork import Shape
 from layoutgen.geometry import Ring
 from layoutgen.writers.outlines import turned
 from layoutgen.writers.records import Result
-from layoutgen.writers.sheet import INK, Sheet, circle_outline
+from layoutgen.writers.sheet import INK, Sheet
 
 __all__ = ["COPPER", "BoardView", "scale_text", "suitable_scale"]
 
@@ -24,6 +24,7 @@ _SCALES = tuple(
     for text in ("20", "10", "5", "4", "3", "5/2", "2", "3/2", "1", "1/2", "1/4", "1/5", "1/10", "1/20")
 )
 _NM_PER_MM = 1e6
+_CHORD_MM = 0.02
 
 
 def suitable_scale(result: Result, width: float, height: float) -> Fraction:
@@ -56,7 +57,9 @@ class BoardView:
 
     def ring(self, ring: Ring) -> npt.NDArray[np.float64]:
         """Return an outline's vertices on the sheet [mm], arcs as chords."""
-        points = np.array(ring.chords(), dtype=float) * (self.scale / _NM_PER_MM)
+        points = np.array(ring.chords(_CHORD_MM * _NM_PER_MM / self.scale), dtype=float) * (
+            self.scale / _NM_PER_MM
+        )
         moved: npt.NDArray[np.float64] = points + np.array([self.x, self.y])
         return moved
 
@@ -89,7 +92,7 @@ class BoardView:
         drills = [(via.x, via.y, via.drill) for via in result.artwork.vias]
         drills += [(hole.x, hole.y, hole.diameter) for hole in result.artwork.holes]
         circles = [(*self.at(x, y), self.size(diameter) / 2.0) for x, y, diameter in drills]
-        self.sheet.area([circle_outline(*circle) for circle in circles], "#ffffff", INK, 0.13)
+        self.sheet.circles(circles, "#ffffff", INK, 0.13)
         if crosses:
             self.sheet.strokes([stroke for circle in circles for stroke in _cross(*circle)], 0.08)
 

@@ -153,13 +153,24 @@ _ZIPPED = {"board-house": "{stem}_board.zip"}
 def receivers_from(text: str) -> tuple[str, ...]:
     """Return the receivers named in a list with commas, in the order of :data:`RECEIVERS`, each once.
 
+    Args:
+        text: Names with commas, or ``all``, or ``none``.
+
     Raises:
-        WrongInputError: An unknown receiver, with the nearest known one; or none named.
+        WrongInputError: An unknown receiver, with the nearest known one; or nothing named.
     """
     named = [word.strip() for word in text.split(",") if word.strip()]
+    if named == ["none"]:
+        return ()
+    if named == ["all"]:
+        return tuple(RECEIVERS)
     faults = [_unknown(name) for name in dict.fromkeys(named) if name not in RECEIVERS]
     if not named:
-        faults = [Fault(Location("--for", 0), "", "no receiver", f"one or more of {', '.join(RECEIVERS)}")]
+        faults = [
+            Fault(
+                Location("--for", 0), "", "no receiver", f"one or more of {', '.join(RECEIVERS)}; all; none"
+            )
+        ]
     if faults:
         raise WrongInputError(faults)
     return tuple(name for name in RECEIVERS if name in named)

@@ -22,6 +22,7 @@ _WIDTH, _HEIGHT, _LEFT, _RIGHT, _TOP, _BOTTOM = 760, 300, 52, 130, 14, 40
 _SMITH, _RADIUS = 360, 160
 _FLOOR_DB = -60.0
 _COLOURS = 6
+_LETTER = 7  # width of a letter
 _MICRO = 1e6
 
 Floats = npt.NDArray[np.float64]
@@ -72,7 +73,7 @@ def phase_plot(title: str, response: Response, traces: Sequence[Trace], band: tu
 def smith_plot(title: str, response: Response, traces: Sequence[Trace]) -> str:
     """Return the reflection at the ports on a Smith chart, each port to its own impedance."""
     half = _SMITH // 2
-    width = _SMITH + _RIGHT
+    width = _SMITH + _key_width(traces)
     parts = [
         f'<svg class="chart smith" viewBox="0 0 {width} {smith_height(len(traces))}" role="img" '
         f'aria-label="{escape(title)}" data-middle="{half}" data-radius="{_RADIUS}">'
@@ -97,6 +98,11 @@ def plot_height(traces: int) -> int:
 def smith_height(traces: int) -> int:
     """Return the height of a Smith chart, or of its key when there are many traces."""
     return max(_SMITH, _key_height(traces))
+
+
+def _key_width(traces: Sequence[Trace]) -> int:
+    """Return the width that the names of traces need beside a plot."""
+    return max(_RIGHT, 40 + _LETTER * max((len(trace.name) for trace in traces), default=0))
 
 
 def _key_height(traces: int) -> int:
@@ -166,8 +172,9 @@ def _plot(
 ) -> str:
     """Return a plot over frequency with its grid and key; ``curves`` are wanted and as drawn by trace."""
     x = axes.x(response.frequencies)
+    width = _WIDTH - _RIGHT + _key_width(traces)
     parts = [
-        f'<svg class="chart" viewBox="0 0 {_WIDTH} {plot_height(len(traces))}" role="img" '
+        f'<svg class="chart" viewBox="0 0 {width} {plot_height(len(traces))}" role="img" '
         f'aria-label="{escape(title)}" data-left="{_LEFT}" data-right="{_WIDTH - _RIGHT}" data-top="{_TOP}" '
         f'data-bottom="{_HEIGHT - _BOTTOM}"><title>{escape(title)}</title>',
         _band(axes, band),

@@ -16,6 +16,7 @@ import numpy as np
 import numpy.typing as npt
 
 if TYPE_CHECKING:
+    from reportlab.lib.colors import Color
     from reportlab.pdfgen.canvas import Canvas
     from reportlab.pdfgen.pathobject import PDFPathObject
 
@@ -25,7 +26,6 @@ __all__ = [
     "PAPER_SIZES",
     "Book",
     "Sheet",
-    "circle_outline",
     "paper_for",
     "printable",
     "text_width",
@@ -149,8 +149,7 @@ class Sheet:
             for ring in rings:
                 _through(path, ring)
                 path.close()
-            _take_pens(canvas, fill, pen, weight)
-            canvas.drawPath(path, stroke=int(pen is not None), fill=int(fill is not None), fillMode=1)
+            _paint(canvas, path, fill, pen, weight)
 
         self._marks.append(mark)
 
@@ -166,10 +165,9 @@ class Sheet:
             path = canvas.beginPath()
             for chain in chains:
                 _through(path, chain)
-            _take_pens(canvas, None, pen, weight)
             if dash:
                 canvas.setDash([dash, 0.6 * dash])
-            canvas.drawPath(path, stroke=1, fill=0)
+            _paint(canvas, path, None, pen, weight)
 
         self._marks.append(mark)
 
@@ -196,7 +194,24 @@ class Sheet:
         weight: float = 0.18,
     ) -> None:
         """Draw a circle."""
-        self.area([circle_outline(x, y, radius)], fill, pen, weight)
+        self.circles([(x, y, radius)], fill, pen, weight)
+
+    def circles(
+        self,
+        circles: Sequence[tuple[float, float, float]],
+        fill: str | None = None,
+        pen: str | None = None,
+        weight: float = 0.18,
+    ) -> None:
+        """Draw circles, each x, y, radius, in one style."""
+
+        def mark(canvas: Canvas) -> None:
+            path = canvas.beginPath()
+            for circle in circles:
+                path.circle(*circle)
+            _paint(canvas, path, fill, pen, weight)
+
+        self._marks.append(mark)
 
     def text(
         self,
@@ -221,7 +236,7 @@ class Sheet:
         def mark(canvas: Canvas) -> None:
             canvas.translate(x, y)
             canvas.rotate(turn)
-            canvas.setFillColor(pen)
+            canvas.setFillColor(_colour(pen))
             canvas.setFont(_font(bold), size)
             canvas.drawString(-back, -low, shown)
 
@@ -236,28 +251,30 @@ def _through(path: PDFPathObject, points: npt.NDArray[np.float64]) -> None:
         path.lineTo(x, y)
 
 
-def _take_pens(canvas: Canvas, fill: str | None, pen: str | None, weight: float) -> None:
-    """Set the colours and the width of what is drawn next."""
+def _paint(canvas: Canvas, path: PDFPathObject, fill: str | None, pen: str | None, weight: float) -> None:
+    """Fill a path, stroke it, or both."""
     if fill is not None:
-        canvas.setFillColor(fill)
+        canvas.setFillColor(_colour(fill))
     if pen is not None:
-        canvas.setStrokeColor(pen)
+        canvas.setStrokeColor(_colour(pen))
         canvas.setLineWidth(weight)
+    canvas.drawPath(path, stroke=int(pen is not None), fill=int(fill is not None), fillMode=1)
 
 
-def circle_outline(x: float, y: float, radius: float) -> npt.NDArray[np.float64]:
-    """Return a circle's outline [mm], as many chords as keep within a fiftieth of a millimetre."""
-    share = min(1.0, 0.02 / max(radius, 1e-6))
-    count = max(8, int(np.ceil(np.pi / np.arccos(1.0 - share))))
-    angle = np.arange(count) * (2.0 * np.pi / count)
-    return np.column_stack([x + radius * np.cos(angle), y + radius * np.sin(angle)])
-
-
+@functools.lru_cache(maxsize=4096)
 def text_width(text: str, size: float, bold: bool = False) -> float:
     """Return how wide a line of text is in a font of a size [mm], kerning left out."""
     from reportlab.pdfbase.pdfmetrics import stringWidth
 
     return float(stringWidth(printable(text), _font(bold), size))
+
+
+@functools.cache
+def _colour(text: str) -> Color:
+    """Return a colour written as ``#rrggbb``."""
+    from reportlab.lib.colors import HexColor
+
+    return HexColor(text)
 
 
 @functools.cache

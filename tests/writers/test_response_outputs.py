@@ -67,6 +67,18 @@ class TestPictures:
             height = float(plot.get("viewBox").split()[3])
             assert max(float(text.get("y")) for text in plot.findall(".//{*}text") if text.get("y")) < height
 
+    def test_long_names_have_room(self, with_ports: Callable[[int], Result]) -> None:
+        """A name such as "antenna to receiver_1" would end at the plot's right edge."""
+        result = with_ports(2)
+        names = ("a_long_name_of_an_antenna", "a_receiver_far_up_the_river")
+        tree = ET.fromstring(write_plot(result, replace(result.response, ports=names)))
+        for plot in tree.findall(".//{*}svg"):
+            width = float(plot.get("viewBox").split()[2])
+            keys = [text for text in plot.findall(".//{*}g[@data-key]/{*}text")]
+            assert keys
+            for text in keys:
+                assert float(text.get("x")) + 6.5 * len(text.text) < width
+
     def test_the_png_is_a_picture_and_the_same_each_time(self, driver: Result) -> None:
         from PIL import Image
 
