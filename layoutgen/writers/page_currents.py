@@ -75,14 +75,14 @@ def current_map_section(result: Result) -> Iterator[str]:
     yield _scale(result, top)
     yield table(
         "Direct current by net, off ground",
-        ("Net", "Current (A)", "Voltage drop (mV)", "Heat (mW)"),
+        ("Net", "Current (mA)", "Voltage drop (mV)", "Heat (mW)"),
         [_row(sheet) for sheet in sheets],
     )
 
 
 def _row(sheet: NetSheet) -> list[str]:
     """Return a net's figures: its largest terminal current, drop and heat."""
-    figures = (fixed(sheet.largest, 3), fixed(sheet.drop * 1e3, 3), fixed(sheet.power * 1e3, 3))
+    figures = (fixed(sheet.largest * 1e3, 3), fixed(sheet.drop * 1e3, 3), fixed(sheet.power * 1e3, 3))
     return [escape(sheet.net), *figures]
 
 
@@ -202,7 +202,7 @@ def _map(result: Result, frame: _Frame, dots: Floats, top: float) -> str:
         f'aria-label="Direct current density in the copper, up to {top * _MM:g} amperes per millimetre">'
         f'<image {where} preserveAspectRatio="none" href="data:image/png;base64,{_picture(dots, top)}"/>'
         f'<path class="ink" fill="none" stroke-width="{width / 800.0:.4f}" d="{outlines}"/>'
-        f"{''.join(_names(result, frame, width / 60.0))}</svg>"
+        f"{''.join(_names(result, frame, width / 80.0))}</svg>"
     )
 
 

@@ -29,6 +29,8 @@ def response_tables(response: Response) -> list[TextTable]:
         tables += _match_tables(response.correction)
     if response.device is not None:
         tables += _device_tables(response.device)
+    notes = [(element or "-", text) for _, element, text in response.notes]
+    tables.append(TextTable("Assumptions of the response", ("element", "note"), notes))
     tables.append(
         TextTable("Where the circuit model is doubtful", ("where", "at mm", "why"), _doubts(response))
     )

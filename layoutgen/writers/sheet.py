@@ -305,5 +305,7 @@ def _characters() -> frozenset[int]:
 
 def printable(text: str) -> str:
     """Return text with a question mark for each character that the font does not have."""
+    if text.isascii() and text.isprintable():
+        return text
     known = _characters()
     return "".join(c if ord(c) in known else "?" for c in text)

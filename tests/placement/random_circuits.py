@@ -197,7 +197,11 @@ class RandomCircuit:
 
 
 def random_circuit(chance: random.Random) -> dict[str, Any]:
-    """Return a circuit: mostly of few elements, some up to 40, with no to three loops."""
-    size = chance.choice((2, 3, 4, 5, 6, 8)) if chance.random() < 0.8 else chance.randint(9, 36)
-    loops = chance.choice((0, 0, 0, 1, 1, 2, 3))
+    """Return a circuit: mostly of few elements, now and then up to 40, with no to three loops."""
+    draw = chance.random()
+    if draw < 0.75:
+        size = chance.randint(2, 4)
+    else:
+        size = chance.randint(5, 9) if draw < 0.95 else chance.randint(10, 36)
+    loops = chance.choices((0, 1, 2, 3), (12, 5, 1, 1))[0]
     return RandomCircuit(chance, size, loops).data()

@@ -13,7 +13,7 @@ from hypothesis import strategies as st
 
 from layoutgen.artwork import Artwork
 from layoutgen.placement import Bend
-from layoutgen.response.copper import Copper, Joint, JointArm, Piece, Post
+from layoutgen.response.copper import Copper, Joint, JointArm, PairCopper, Piece, Post
 from layoutgen.response.drawn import drawn_network
 from layoutgen.response.solve import solve
 
@@ -74,5 +74,45 @@ def test_passive_and_reciprocal(artwork: Artwork, copper: Copper) -> None:
 @given(coppers())
 @settings(max_examples=40, deadline=None)
 def test_lossless_is_unitary(artwork: Artwork, copper: Copper) -> None:
+    s = solve(drawn_network(artwork, SWEEP, {}, lossless=True, copper=copper))
+    assert np.max(np.abs(np.swapaxes(s.conj(), 1, 2) @ s - np.eye(2))) < 1e-9
+
+
+@st.composite
+def pairs(draw: Callable[[st.SearchStrategy[Any]], Any]) -> Copper:
+    """Draw two coupled pairs in a row with stretches at all corners: ports, open ends, grounded ends."""
+    held: list[PairCopper] = []
+    pieces: list[Piece] = []
+    posts: list[Post] = []
+    for number in range(2):
+        width, pour = draw(st.floats(0.15e-3, 3e-3)), draw(GAPS)
+        nodes = tuple(f"corner {k} of {number}" for k in range(4))
+        held.append(PairCopper(nodes, width, draw(st.floats(0.1e-3, 3e-3)), pour, draw(LENGTHS)))
+        for k, node in enumerate(nodes):
+            far = "p1" if (number, k) == (0, 0) else "p2" if (number, k) == (1, 3) else f"end {k} of {number}"
+            if (number, k) in ((0, 3), (1, 0)):
+                far = "middle"
+            kind = draw(ENDS) if far.startswith("end") else "joint"
+            if kind == "ground":
+                posts.append(Post(far, ((0.0, 0.0),), 0.15e-3, width))
+            length = draw(st.floats(-2e-3, 2e-3))
+            pieces.append(Piece(node, far, width, (pour, pour), length, (), kind == "open"))
+    ports = {"p1": "p1", "p2": "p2"}
+    return Copper(tuple(pieces), (), tuple(posts), tuple(held), {}, {}, ports, {}, (), ())
+
+
+@given(pairs())
+@settings(max_examples=60, deadline=None)
+def test_pairs_are_passive_and_reciprocal(artwork: Artwork, copper: Copper) -> None:
+    """Modes with losses of their own, planes moved back behind pads."""
+    s = solve(drawn_network(artwork, SWEEP, {}, copper=copper))
+    assert np.all(np.isfinite(s))
+    assert np.max(np.linalg.norm(s, 2, axis=(1, 2))) < 1.0 + 1e-9
+    assert np.max(np.abs(s - np.swapaxes(s, 1, 2))) < 1e-9
+
+
+@given(pairs())
+@settings(max_examples=30, deadline=None)
+def test_lossless_pairs_are_unitary(artwork: Artwork, copper: Copper) -> None:
     s = solve(drawn_network(artwork, SWEEP, {}, lossless=True, copper=copper))
     assert np.max(np.abs(np.swapaxes(s.conj(), 1, 2) @ s - np.eye(2))) < 1e-9

@@ -5,14 +5,17 @@ from __future__ import annotations
 from collections.abc import Callable
 from dataclasses import replace
 from pathlib import Path
+from types import SimpleNamespace
 from typing import Any
 
 import pytest
 
 from layoutgen import pipeline
+from layoutgen.artwork import Artwork
 from layoutgen.errors import InfeasibleError
 from layoutgen.reading import Inputs, inputs_from_data
 from layoutgen.response import NOTE_RULE, LengthFit
+from layoutgen.writers import Result
 
 BASE: dict[str, Any] = {
     "format": 1,
@@ -141,6 +144,36 @@ class TestCorrection:
         found = result.response.correction
         assert found.after <= min(found.before, plain.after)
         assert any("not settled" in note[2] for note in result.notes)
+
+
+class TestLoops:
+    """Like lines of a loop that was given one cross-section keep it from drawing to drawing."""
+
+    @pytest.fixture
+    def drawn(self, drawn_example: Callable[[str], Result]) -> Artwork:
+        """Return a hybrid one of whose lines has got pour nearer than the line opposite."""
+        artwork = drawn_example("branch_line_hybrid").artwork
+        copper = dict(artwork.line_copper)
+        copper["across_1"] = replace(copper["across_1"], gap_left=400_000)
+        return replace(artwork, line_copper=copper)
+
+    def test_the_pour_asks_for_sizes_alike(self, drawn: Artwork) -> None:
+        own, none = pipeline._sizes_by_pour(drawn, False)
+        assert own.lines["across_1"].width != own.lines["across_2"].width and none == ()
+        alike, notes = pipeline._sizes_by_pour(drawn, True)
+        assert alike.lines["across_1"].width == alike.lines["across_2"].width
+        assert "across_1" in {note[1] for note in notes}
+
+    def test_it_is_seen_where_a_placement_has_done_it(self, drawn: Artwork) -> None:
+        """Sizes that the placement had to change, and the next drawing takes back: it would never settle."""
+        own, _ = pipeline._sizes_by_pour(drawn, False)
+        draft = SimpleNamespace(artwork=drawn)
+        clock = pipeline._Clock(lambda stage: None)
+        asked = pipeline._asked(own, draft, clock, None, False)
+        assert asked.alike
+        assert asked.again.lines["across_1"].width == asked.again.lines["across_2"].width
+        assert not pipeline._asked(drawn.placement.sized, draft, clock, None, False).alike
+        assert pipeline._asked(drawn.placement.sized, draft, clock, None, True).alike
 
 
 class TestPorts:

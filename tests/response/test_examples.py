@@ -22,7 +22,7 @@ FOLDER = Path(__file__).parents[2] / "examples"
 EXAMPLES = sorted(path.stem for path in FOLDER.glob("*.toml"))
 HELD_BY = {"equal_divider": "R1", "edge_coupled_band_pass": "pair_2"}
 """What is known to hold the band of an example above 0.02, whatever the lengths of its lines."""
-MAY_MISS = {*HELD_BY, "corporate_feed_8"}
+MAY_MISS = {*HELD_BY, "alumina_filter", "balanced_stage", "corporate_feed_8"}
 
 
 @pytest.fixture(scope="module", params=EXAMPLES)

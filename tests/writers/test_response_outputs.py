@@ -74,7 +74,7 @@ class TestPictures:
         tree = ET.fromstring(write_plot(result, replace(result.response, ports=names)))
         for plot in tree.findall(".//{*}svg"):
             width = float(plot.get("viewBox").split()[2])
-            keys = [text for text in plot.findall(".//{*}g[@data-key]/{*}text")]
+            keys = plot.findall(".//{*}g[@data-key]/{*}text")
             assert keys
             for text in keys:
                 assert float(text.get("x")) + 6.5 * len(text.text) < width
@@ -112,6 +112,15 @@ class TestTables:
         doubts = tables["Where the circuit model is doubtful"].rows
         assert len(doubts) == len(driver.response.doubts)
         assert all(len(row) == len(table.heads) for table in tables.values() for row in table.rows)
+
+    def test_notes_on_data_are_not_lost(self, driver: Result) -> None:
+        """A part's data that are not passive would be used without a word."""
+        noted = replace(
+            driver.response, notes=(("response", "C1", "c1.s2p is not passive"), ("response", "", "x"))
+        )
+        tables = {table.title: table for table in response_tables(noted)}
+        rows = tables["Assumptions of the response"].rows
+        assert rows == [("C1", "c1.s2p is not passive"), ("-", "x")]
 
     def test_what_holds_is_named_with_figures(self, driver: Result) -> None:
         tables = {table.title: table for table in response_tables(held(driver.response))}

@@ -42,7 +42,7 @@ class Cut:
 def cuts(flow: Flow, above: float) -> list[Cut]:
     """Return cuts through the triangles that carry more than a density [A/nm], at most 48.
 
-    No cut elsewhere can have a mean density above it.
+    Cuts elsewhere pass only triangles that carry less.
     """
     hot = np.flatnonzero(flow.density > above)
     if not len(hot):
