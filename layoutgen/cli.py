@@ -108,6 +108,7 @@ _no_correction = click.option(
     metavar="LIST",
     default="none",
     show_default=True,
+    shell_complete=lambda context, parameter, typed: _receivers_like(typed),
     help="Also write packages for these receivers, with commas: pcb-designer, board-house, mask-house, "
     "assembly, test, reviewer; or all, or none.",
 )
@@ -158,6 +159,19 @@ def _receivers(text: str) -> tuple[str, ...]:
     from layoutgen.writers.packages import receivers_from
 
     return receivers_from(text)
+
+
+def _receivers_like(typed: str) -> list[str]:
+    """Return what a list of receivers that is being typed in a shell may become."""
+    from layoutgen.writers.packages import RECEIVERS
+
+    before, comma, last = typed.rpartition(",")
+    names = (
+        [name for name in RECEIVERS if name not in before.split(",")]
+        if comma
+        else [*RECEIVERS, "all", "none"]
+    )
+    return [f"{before}{comma}{name}" for name in names if name.startswith(last)]
 
 
 def _packages(result: Result, job: Job, receivers: Sequence[str]) -> dict[str, bytes]:

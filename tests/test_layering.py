@@ -25,7 +25,7 @@ ORDER: tuple[tuple[str, ...], ...] = (
     ("foreign",),
     ("compare",),
     ("writers",),
-    ("size_report", "pipeline", "terminal"),
+    ("size_report", "pipeline", "terminal", "aside"),
     ("watch",),
     ("cli",),
 )
@@ -39,7 +39,7 @@ EXCEPTIONS = {
 HEAVY = ("scipy", "shapely", "gdstk", "ezdxf", "matplotlib", "skrf", "rich", "PIL")
 LIGHT_STAGES = (
     "origin", "errors", "units", "numbers", "formulas", "reading", "circuit", "sizing", "size_report",
-    "terminal", "cli",
+    "terminal", "aside", "cli",
 )  # fmt: skip
 """What `--help` and `size` go through: no library of :data:`HEAVY` may be imported at module level."""
 

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import itertools
-from collections.abc import Callable, Iterator, Mapping
+from collections.abc import Callable, Iterable, Iterator, Mapping
 from dataclasses import dataclass, field, replace
 from itertools import islice
 
@@ -18,7 +18,8 @@ from layoutgen.placement.ways import Way, Ways
 __all__ = ["LookAhead"]
 
 _NEARBY = 40_000_000  # [nm]: farther away nothing is looked at again
-_MOST_WAYS = 60  # ways tried before a candidate is taken as shut in
+_MOST_WAYS = 40  # ways tried before a candidate is taken as shut in
+_STRIDE = 7  # of the ways with the same turns to the same edge, one of so many is tried: they differ in legs
 
 Spot = tuple[End, Pose]
 
@@ -92,7 +93,8 @@ class LookAhead:
         """Return a way of laying a pending thing that is clear, and suits, None where there is none."""
         base, spot = self.ways.without(state, pending), (pending.end, pending.at)
         before = [self._witness[spot]] if spot in self._witness else []
-        for way in itertools.chain(before, islice(self.ways.of(pending, state), _MOST_WAYS)):
+        some = islice(_thinned(self.ways.of(pending, state)), _MOST_WAYS)
+        for way in itertools.chain(before, some):
             trial = Growth(state=base, bounds=state.bounds)
             try:
                 way.lay(trial)
@@ -114,3 +116,12 @@ class LookAhead:
         nets = set(model.owner_nets[next(iter(trial.lines))])
         near = [p for p in base.pending if model.net_of(p.end) in nets]
         return all(self._way(grown, p) is not None for p in near if self.ways.tour.ends_in_port(p.end))
+
+
+def _thinned(ways: Iterable[Way]) -> Iterator[Way]:
+    """Yield the first of the ways of each shape, and some of the others."""
+    seen: dict[object, int] = {}
+    for way in ways:
+        count = seen[way.choice.shape] = seen.get(way.choice.shape, -1) + 1
+        if count % _STRIDE == 0:
+            yield way

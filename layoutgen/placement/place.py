@@ -25,7 +25,7 @@ __all__ = ["place"]
 _EFFORTS = (
     Effort(beam=4),
     Effort(beam=16, accepted=5, any_side=True),
-    Effort(beam=16, accepted=5, any_side=True, tight_edges=True),
+    Effort(beam=16, accepted=5, any_side=True, tight_edges=True, only_margins=True),
     Effort(beam=24, accepted=6, any_side=True, tight_edges=True, fold_spine=True),
 )
 _SHIFTS = (6_000_000, -6_000_000, 12_000_000, -12_000_000, 25_000_000, -25_000_000)
@@ -62,6 +62,8 @@ def _placed(ways: Ways, open_loop: InfeasibleError | None, like: Choices | None)
         return finish(model, ways.lengths, again, like.effort)
     failure: Failure | None = None
     for number, effort in enumerate(_EFFORTS):
+        if effort.only_margins and model.file.board.size is None:
+            continue  # the board grows as it must: nothing would be laid otherwise
         best, found = _attempt(ways, effort)
         if best is not None:
             return finish(model, ways.lengths, best, number)

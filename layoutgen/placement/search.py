@@ -46,13 +46,17 @@ def drawing_cost(area: float, bends: float, crossings: int) -> float:
 
 @dataclass(frozen=True, slots=True)
 class Effort:
-    """How hard to look: states kept, candidates accepted for each, whether the straight path may fold."""
+    """How hard to look: states kept, candidates accepted for each, whether the straight path may fold.
+
+    ``only_margins`` marks an effort that differs from the one before by its margins to the profile alone.
+    """
 
     beam: int = 6
     accepted: int = 3
     fold_spine: bool = False
     tight_edges: bool = False
     any_side: bool = False
+    only_margins: bool = False
 
 
 @dataclass(frozen=True, slots=True)

@@ -6,6 +6,7 @@ returns the results in the batches' order. dask.distributed is imported only whe
 
 from __future__ import annotations
 
+import re
 from collections.abc import Callable, Iterator, Sequence
 from concurrent.futures import ProcessPoolExecutor
 from contextlib import contextmanager
@@ -21,6 +22,8 @@ __all__ = ["PATIENCE", "workers"]
 
 PATIENCE = "10s"
 """How long a scheduler is waited for."""
+
+_ADDRESS = re.compile(r"(?:(?:tcp|tls|ws|wss)://)?(?:[A-Za-z0-9_.-]+|\[[0-9A-Fa-f:.]+\]):\d{1,5}")
 
 _Run = Callable[[Callable[[FloatArray], Found], Sequence[FloatArray]], list[Found]]
 
@@ -51,6 +54,8 @@ def workers(processes: int, scheduler: str | None) -> Iterator[_Run]:
 @contextmanager
 def _cluster(address: str) -> Iterator[_Run]:
     """Give a function that sends batches to a dask.distributed scheduler."""
+    if _ADDRESS.fullmatch(address) is None:
+        raise _no_cluster(address, "another form of address", 'such as "tcp://127.0.0.1:8786"')
     try:
         library: Any = import_module("distributed")
     except ImportError:

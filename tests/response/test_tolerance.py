@@ -220,8 +220,10 @@ class TestSameBytes:
         assert everything(tolerance(board, samples=700, seed=5, processes=2)) == everything(alone)
 
     def test_a_local_cluster(self, board: Artwork, alone: Tolerance) -> None:
+        """Batches joined as they come back; over sockets, so that everything has to be sent."""
         distributed = pytest.importorskip("distributed")
         quiet = {"dashboard_address": None, "processes": False, "n_workers": 2, "threads_per_worker": 1}
+        quiet["protocol"] = "tcp://"
         with distributed.LocalCluster(**quiet) as cluster:
             found = tolerance(board, samples=700, seed=5, scheduler=cluster.scheduler_address)
         assert everything(found) == everything(alone)
@@ -290,6 +292,12 @@ class TestRefused:
         assert artwork.placement.pairs["p"].width > 500_000 > artwork.placement.pairs["p"].gap
         with pytest.raises(WrongInputError, match=r"tolerance.width.*narrowest gap"):
             tolerance(artwork)
+
+    @pytest.mark.parametrize("address", ["inproc://10.0.0.1/1/1", "nonsense:::1", "foo://x:1", ""])
+    def test_an_address_that_is_none(self, attenuator: Artwork, address: str) -> None:
+        """The library waits long for these, and leaves a traceback behind."""
+        with pytest.raises(WrongInputError, match="another form of address"):
+            tolerance(attenuator, samples=2, points=2, scheduler=address)
 
     @pytest.mark.filterwarnings("ignore")
     def test_a_scheduler_that_is_not_there(
