@@ -11,7 +11,7 @@ import gc
 import os
 import signal
 import sys
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import replace
 from datetime import date
 from functools import partial
@@ -130,7 +130,7 @@ def draw(
 
     Exit status: 1 findings of severity error (the files are written), 2 wrong input, 3 no placement.
     """
-    from layoutgen.writers import Job, encode, file_names, prepare_folder, write_files
+    from layoutgen.writers import Job, encode, file_names, older_packages, prepare_folder, write_files
 
     folder = out if out is not None else Path("out", circuit.stem)
     chosen = _receivers(receivers)
@@ -146,6 +146,10 @@ def draw(
         _print_findings(result.findings, verbose)
         for path in files:
             click.echo(f"wrote {folder / path}")
+    if old := older_packages(folder, files):
+        click.echo(
+            f"of an earlier run, not of this drawing: {', '.join(old)} in {folder} (see --for)", err=True
+        )
     if verbose:
         _print_seconds(result)
     proved = not prove or _proved(result, files, quiet, verbose)
@@ -328,6 +332,7 @@ def compare(first: Path, second: Path, picture: Path | None, quiet: bool) -> int
 @click.option("--limit", "limits", multiple=True, help='Such as "change <= 0.05"; repeatable.')
 @click.option("--processes", type=click.IntRange(1, 64), default=1, show_default=True)
 @click.option("--scheduler", help="Address of a dask.distributed scheduler to spread the samples over.")
+@click.option("--out", type=click.Path(path_type=Path), help="Folder for tolerance.json, .csv and .png.")
 @_verbosity
 def tolerance(
     circuit: Path,
@@ -336,25 +341,27 @@ def tolerance(
     limits: tuple[str, ...],
     processes: int,
     scheduler: str | None,
+    out: Path | None,
     quiet: bool,
     verbose: bool,
 ) -> int:
-    """Print what the limits of [tolerance] do to CIRCUIT's response: yield and worst contributors."""
+    """Print what the limits of [tolerance] do to CIRCUIT's response: yield, worst contributors, corners."""
     from layoutgen.response import tolerance as spread
+    from layoutgen.writers import prepare_folder
+    from layoutgen.writers.response_tables import tolerance_tables
+    from layoutgen.writers.tolerance_files import tolerance_files
 
+    if out is not None:
+        prepare_folder(out)
     result = _run(circuit, quiet)
     found = spread(
         result.artwork, samples=samples, seed=seed, limits=limits, processes=processes, scheduler=scheduler
     )
     if not quiet:
         click.echo(f"yield {100.0 * found.yield_share:.1f} % of {found.samples} samples, seed {found.seed}")
-        rows = [
-            (y.limit, f"{100.0 * y.share:.1f}", f"{y.nominal:.4f}", f"{y.median:.4f}", f"{y.worst:.4f}")
-            for y in found.limits
-        ]
-        _print_table("Limits", ("limit", "kept %", "nominal", "median", "worst"), rows)
-        worst = [(c.name, f"{c.limit:g}", f"{c.change:.4f}") for c in found.contributors[:12]]
-        _print_table("Worst contributors", ("quantity", "plus-minus", "largest change of |S|"), worst)
+        _print_tables(tolerance_tables(found))
+    if out is not None:
+        _write_into(out, tolerance_files(found, result.circuit.file.design.title), quiet)
     if verbose:
         _print_seconds(result)
     return CLEAN
@@ -381,8 +388,9 @@ def watch(circuit: Path, out: Path | None, port: int) -> int:
 @click.option("--out", type=click.Path(path_type=Path), help="Folder for Touchstone files and the plots.")
 @_verbosity
 def response(circuit: Path, out: Path | None, quiet: bool, verbose: bool) -> int:
-    """Print the S-parameters of CIRCUIT as wanted and as drawn."""
-    from layoutgen.writers import TRACE_HEADS, Job, prepare_folder, response_files, trace_values, write_files
+    """Print the S-parameters of CIRCUIT as wanted and as drawn, and what transistors and feeds see."""
+    from layoutgen.writers import Job, prepare_folder, response_files
+    from layoutgen.writers.response_tables import response_tables
 
     if out is not None:
         prepare_folder(out)
@@ -391,13 +399,10 @@ def response(circuit: Path, out: Path | None, quiet: bool, verbose: bool) -> int
         raise _wrong(
             circuit, "a circuit without RF ports", "one with at least one port of kind rf, or terminations"
         )
-    if out is not None:
-        files = response_files(result, Job(stem=circuit.stem))
-        write_files(out, files)
     if not quiet:
-        _print_table("Response", TRACE_HEADS, trace_values(result.response))
-        for name in files if out is not None else ():
-            click.echo(f"wrote {Path(str(out), name)}")
+        _print_tables(response_tables(result.response))
+    if out is not None:
+        _write_into(out, response_files(result, Job(stem=circuit.stem)), quiet)
     if verbose:
         _print_seconds(result)
     return CLEAN
@@ -421,6 +426,15 @@ def _run(circuit: Path, quiet: bool, *, correction: bool = True) -> Result:
 
     with Progress(sys.stderr, enabled=sys.stderr.isatty() and not quiet) as progress:
         return run(circuit, tell=progress, correction=correction, today=date.today())
+
+
+def _write_into(folder: Path, files: Mapping[str, bytes], quiet: bool) -> None:
+    """Write files and say so."""
+    from layoutgen.writers import write_files
+
+    write_files(folder, files)
+    for name in files if not quiet else ():
+        click.echo(f"wrote {folder / name}")
 
 
 def _wrong(path: Path, found: str, allowed: str) -> WrongInputError:
@@ -460,6 +474,14 @@ def _print_findings(findings: Sequence[Finding], notes: bool) -> None:
 def _print_seconds(result: Result) -> None:
     for stage, seconds in result.seconds.items():
         click.echo(f"{stage}: {seconds:.3f} s", err=True)
+
+
+def _print_tables(tables: Iterable[tuple[str, Sequence[str], Sequence[Sequence[str]]]]) -> None:
+    """Print several tables, each below its title."""
+    for title, heads, rows in tables:
+        if rows and not sys.stdout.isatty():
+            click.echo(f"{title}:")
+        _print_table(title, heads, rows)
 
 
 def _print_table(title: str, heads: Sequence[str], rows: Sequence[Sequence[str]]) -> None:

@@ -256,6 +256,8 @@ def test_response_prints_a_table_and_writes_its_files(
     assert sorted(p.name for p in out.iterdir()) == [
         "as_drawn.s2p",
         "response.csv",
+        "response.json",
+        "response.png",
         "response.svg",
         "wanted.s2p",
     ]

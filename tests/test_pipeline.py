@@ -13,7 +13,7 @@ import pytest
 
 import layoutgen
 from layoutgen import pipeline
-from layoutgen.artwork import Artwork, LineCopper
+from layoutgen.artwork import Artwork, LineCopper, Sketch
 from layoutgen.reading import inputs_from_data
 from layoutgen.sizing import SizedCircuit
 
@@ -118,13 +118,19 @@ def restless(monkeypatch: pytest.MonkeyPatch) -> Iterator[list[float]]:
 def drawings(monkeypatch: pytest.MonkeyPatch) -> list[Artwork]:
     """Every artwork that the loop draws, the drafts and the final one."""
     made: list[Artwork] = []
-    real = pipeline.draw
+    sketch, complete = pipeline.sketch, pipeline.complete
 
-    def drawing(placement: layoutgen.Placement, *, draft: bool = False) -> Artwork:
-        made.append(real(placement, draft=draft))
+    def sketching(placement: layoutgen.Placement) -> Sketch:
+        drawn = sketch(placement)
+        made.append(drawn.artwork)
+        return drawn
+
+    def completing(drawn: Sketch) -> Artwork:
+        made.append(complete(drawn))
         return made[-1]
 
-    monkeypatch.setattr(pipeline, "draw", drawing)
+    monkeypatch.setattr(pipeline, "sketch", sketching)
+    monkeypatch.setattr(pipeline, "complete", completing)
     return made
 
 

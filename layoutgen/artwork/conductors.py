@@ -120,12 +120,11 @@ class _Room:
                     yield grow(stroke(pair.paths[i], pair.width).polygon(), self.limits.min_gap)
 
     def drawn(self, rings: Sequence[Ring]) -> tuple[Ring, ...]:
-        """Return the artwork of finished outlines: grown by the undercut, but not off the board."""
-        grown = [offset_ring(ring, self.limits.undercut) for ring in rings]
-        if self.limits.undercut == 0 or all(self.board.covers(ring.polygon()) for ring in grown):
-            return tuple(grown)
-        kept = overlap(joined(ring.polygon() for ring in grown), self.board)
-        return tuple(rings_of(piece)[0] for piece in pieces(kept))
+        """Return the artwork of finished outlines, grown by the undercut: at the profile past it, too.
+
+        Copper that runs to the profile would else be etched back from it.
+        """
+        return tuple(offset_ring(ring, self.limits.undercut) for ring in rings)
 
     def reach(self, end: Point, net: str, gap: int) -> int:
         """Return how far the pour's keep-out reaches past a line's end [nm].

@@ -6,6 +6,7 @@ import math
 from dataclasses import dataclass
 
 from layoutgen.formulas.constants import C0
+from layoutgen.placement import copper_edge
 from layoutgen.reading import FenceRules, LegendRules, MaskRules
 from layoutgen.sizing import SizedCircuit
 from layoutgen.units import to_nm
@@ -18,7 +19,7 @@ _FENCE_WAVELENGTHS = 0.05
 _ROOM_NM = 100_000
 
 # What is drawn by where the rule file is silent: common practice, no source. None of it is checked.
-_MIN_WIDTH, _MIN_GAP, _COPPER_EDGE = 150_000, 150_000, 300_000
+_MIN_WIDTH, _MIN_GAP = 150_000, 150_000
 _ISLAND_NM2, _CORNER_DEG = 500_000.0 * 1e6, 85.0
 _HOLE_WEB, _HOLE_COPPER, _HOLE_EDGE = 300_000, 200_000, 500_000
 _MASK_EXPANSION, _MASK_WEB = 50_000, 100_000
@@ -73,7 +74,7 @@ def limits_of(sized: SizedCircuit) -> Limits:
         rules.mask or MaskRules.model_construct(),
         rules.legend or LegendRules.model_construct(),
     )
-    edge = _nm(copper.min_edge_distance, _COPPER_EDGE)
+    edge = copper_edge(rules)
     margin = edge if file.board.margin is None else max(edge, to_nm(file.board.margin))
     drill, land = to_nm(vias.drill), to_nm(vias.diameter)
     web = _nm(holes.min_web, _HOLE_WEB)

@@ -20,6 +20,8 @@ __all__ = ["fence", "stitch_cutouts", "stitch_rest", "stitchable", "well_held"]
 
 _LEAST_VIAS = 2
 _GRID_CLEAR = 0.6
+_LEAST_NECK = 1e10  # [nm^2]: smaller ones are corners
+_NECK_ROUNDING = 1_000  # [nm]
 
 
 def stitchable(
@@ -60,7 +62,23 @@ def fence(
         widest = max(piece.gap for piece in guarded)
         facing = Facing([c.copper for c in guarded], 2 * widest, limits.fence_pitch)
         set_rows(sides, facing, drills, limits.fence_reach)
+        set_rows(_through_necks(pour, limits, drills), facing, drills, limits.fence_reach)
     return sides
+
+
+def _through_necks(pour: Sequence[shapely.Polygon], limits: Limits, drills: Drills) -> list[Side]:
+    """Return rows as near to the edge as lands may stand, where the pour is too narrow for the usual ones."""
+    out: list[Side] = []
+    for piece in pour:
+        near = grow(piece, -drills.least_inset)
+        usual = grow(grow(piece, -limits.row), limits.row - drills.least_inset + _NECK_ROUNDING)
+        necks = [neck for neck in pieces(cut(near, usual)) if neck.area > _LEAST_NECK]
+        if necks:
+            about = grow(shapely.MultiPolygon(necks), limits.fence_pitch)
+            shapely.prepare(about)
+            rows = sides_of([piece], drills.least_inset)
+            out += [side for side in rows if shapely.intersects_xy(about, side.points).any()]
+    return out
 
 
 def stitch_cutouts(placement: Placement, sides: Sequence[Side], limits: Limits, drills: Drills) -> None:

@@ -24,7 +24,7 @@ def board_of_foreign(artwork: ForeignArtwork, rules: RuleFile) -> Board:
     """Return the board that a drawing of other origin stands for.
 
     Copper that hangs together, on both layers and through plated holes, is one conductor ``net:N``, the
-    largest first; each piece of it on a layer is ``copper:N``. A plated hole of the rule file's via drill
+    largest first, as etching by the undercut leaves it; each piece of it on a layer is ``copper:N``. A plated hole of the rule file's via drill
     with round copper about it on the top is a via.
     """
     limits = Limits(rules)
@@ -89,8 +89,8 @@ def _drills(artwork: ForeignArtwork, limits: Limits) -> list[Drill]:
 
 
 def _lands(artwork: ForeignArtwork, limits: Limits) -> dict[int, float]:
-    """Return the diameter [nm] of the round copper about each via, by the index of its hole."""
-    drill = limits.nm("vias.drill") or 0.0
+    """Return the finished diameter [nm] of the round copper about each via, by the index of its hole."""
+    drill, undercut = limits.nm("vias.drill") or 0.0, limits.nm("copper.undercut") or 0.0
     wanted = [k for k, hole in enumerate(artwork.holes) if _is_via_hole(hole, drill)]
     polygons = array_of(artwork.layers["copper_top"])
     if not wanted or not len(polygons):
@@ -101,7 +101,8 @@ def _lands(artwork: ForeignArtwork, limits: Limits) -> dict[int, float]:
     for polygon in polygons[square]:
         circle = fitted_circle(shapely.get_coordinates(polygon.exterior)[:-1], _VIA_NM)
         if circle is not None:
-            rounds[round(circle[0] / _VIA_NM), round(circle[1] / _VIA_NM)] = float(round(circle[2]))
+            spot = round(circle[0] / _VIA_NM), round(circle[1] / _VIA_NM)
+            rounds[spot] = max(0.0, float(round(circle[2] - 2.0 * undercut)))
     places = {k: (round(artwork.holes[k].x / _VIA_NM), round(artwork.holes[k].y / _VIA_NM)) for k in wanted}
     return {k: rounds[place] for k, place in places.items() if place in rounds}
 

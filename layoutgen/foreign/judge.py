@@ -22,6 +22,10 @@ _UNKNOWN = (
         "the drawing names no nets: what hangs together is taken as meant so, and what is apart too",
     ),
     NotChecked("substrate", "height and copper thickness are not in the drawing"),
+    NotChecked(
+        "exemptions",
+        "pads at their own cut-out and notches of radial stubs look like any copper: waive what is meant",
+    ),
 )
 
 

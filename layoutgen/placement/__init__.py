@@ -14,6 +14,7 @@ rejecting by ``clearance`` and ``neighbours``. ``twins`` finds equal branches, w
 drawn.
 """
 
+from layoutgen.placement.model import copper_edge
 from layoutgen.placement.place import place
 from layoutgen.placement.records import (
     Bend,
@@ -45,5 +46,6 @@ __all__ = [
     "PlacedVia",
     "Placement",
     "Strip",
+    "copper_edge",
     "place",
 ]

@@ -45,16 +45,6 @@ class Meetings:
         """Return a line's other end with its net, None for an open one."""
         return next((found for found in self.model.ends[end.element] if found[0].index != end.index), None)
 
-    def port_at(self, far: tuple[End, str] | None) -> str | None:
-        """Return the port that a line ends in, when nothing else meets there."""
-        if far is None or far[1] == GROUND:
-            return None
-        hub = self.tour.hubs[far[1]]
-        if hub.arrival == far[0] and not hub.bank and len(hub.arms) == 1:
-            end = hub.arms[0].end
-            return end.element if end.kind is EndKind.PORT else None
-        return None
-
     def _reach(self, end: End, net: str) -> Reach:
         """Return what lies at one end of a line."""
         model, limits = self.model, self.model.limits

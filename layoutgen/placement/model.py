@@ -10,13 +10,16 @@ from layoutgen.circuit import End, EndKind
 from layoutgen.circuit.queries import elements, ends_of
 from layoutgen.origin import Origin
 from layoutgen.placement.bodies import PartBody, part_body
+from layoutgen.reading import RuleFile
 from layoutgen.sizing import SizedCircuit
 from layoutgen.units import to_nm
 
-__all__ = ["GROUND", "Limits", "Model", "strip_owner"]
+__all__ = ["GROUND", "Limits", "Model", "copper_edge", "strip_owner"]
 
 GROUND = "gnd"
 _DEFAULT_SPACING_HEIGHTS = 3.0  # used to place when the rule file is silent; common practice, no source
+_RING_ROOM = 100_000  # [nm] more than a row of vias must have
+_DEFAULT_EDGE = 300_000  # [nm], copper to profile and cut-outs; common practice, no source
 _DEFAULT_GROUND_VIAS = 2  # per ground pad; common practice, no source
 
 
@@ -25,7 +28,7 @@ class Limits:
     """Distances the placement keeps [nm], from the rule file where it has them.
 
     ``spacing`` between lines not meant to couple, ``gap`` between copper of two nets, ``edge`` from copper
-    to the profile, ``hole`` from copper to an unplated hole's wall, ``hole_edge`` from a hole's wall to the
+    to profile and cut-outs, ``hole`` from copper to an unplated hole's wall, ``hole_edge`` from a hole's wall to the
     profile, ``margin`` from copper to the profile where no ground ring is wanted, ``neck`` the least width.
     """
 
@@ -50,7 +53,7 @@ class Limits:
         height = to_nm(file.substrate.height)
         copper, holes, vias = rules.copper, rules.holes, rules.vias
         gap = _nm(None if copper is None else copper.min_gap)
-        edge = _nm(None if copper is None else copper.min_edge_distance)
+        edge = copper_edge(rules)
         heights = _DEFAULT_SPACING_HEIGHTS
         if rules.spacing is not None and rules.spacing.min_line_heights is not None:
             heights = rules.spacing.min_line_heights
@@ -71,6 +74,15 @@ class Limits:
             pitch=max(_nm(vias.min_pitch), drill + web, land),
             ground_vias=vias.per_ground_pad or _DEFAULT_GROUND_VIAS,
         )
+
+
+def copper_edge(rules: RuleFile) -> int:
+    """Return how far copper is kept from the profile and from cut-outs [nm], also where no rule says so.
+
+    Ports end and lines and pours are cut back at this one distance.
+    """
+    asked = rules.copper.min_edge_distance
+    return _DEFAULT_EDGE if asked is None else to_nm(asked)
 
 
 def _nm(value: float | None) -> int:
@@ -132,8 +144,15 @@ class Model:
 
     @cached_property
     def ground_ring(self) -> int:
-        """Width [nm] wanted for the ground between the outermost clearance and the board's margin."""
-        return self.limits.land + 2 * self.limits.neck + 100_000 if self.has_ground else 0
+        """Width [nm] wanted for the ground between the outermost clearance and the board's margin.
+
+        It holds a row of vias, also where holes keep farther from the profile than copper does.
+        """
+        limits = self.limits
+        if not self.has_ground:
+            return 0
+        beyond = limits.hole_edge + limits.drill // 2 + limits.land // 2 - limits.margin
+        return max(limits.land + 2 * limits.neck, beyond) + _RING_ROOM
 
     def reach_at(self, net: str) -> int:
         """Return how far [nm] a junction's own copper reaches from its node: half widths and pads."""

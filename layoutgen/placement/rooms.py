@@ -7,17 +7,16 @@ again when its turn comes. Equal branches at any depth are looked at once.
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator, Mapping
+from collections.abc import Callable, Iterator
 from dataclasses import dataclass, field
 
 from layoutgen.circuit import End, EndKind
 from layoutgen.geometry import Point
-from layoutgen.placement.clearance import Obstacles
 from layoutgen.placement.frame import Box, Pose, box_around, unit
 from layoutgen.placement.model import GROUND
 from layoutgen.placement.records import Choice
 from layoutgen.placement.routes import RouteChoice, Router
-from layoutgen.placement.state import EDGES, Bounds, Growth, Pending, State
+from layoutgen.placement.state import EDGES, Bounds, Growth, Pending, State, nothing_laid
 from layoutgen.placement.tour import Tour, end_key
 from layoutgen.placement.words import Route, least_legs, route_points
 
@@ -158,7 +157,7 @@ class Rooms:
     def _measured(self, end: End, heading: float) -> Box | None:
         far = (item for item in self.router.model.ends[end.element] if item[0].index != end.index)
         net = next(net for _, net in far if net != GROUND)
-        growth = Growth(state=_nothing(), bounds=Bounds())
+        growth = Growth(state=nothing_laid(), bounds=Bounds())
         self.arrive(growth, net, Pose(0, 0, heading))
         found = self.lay(growth.applied((0, 0, 0, 0), 0.0))
         if found is None:
@@ -173,25 +172,3 @@ def _left_of(start: Pose, point: tuple[float, float]) -> float:
     """Return how far a point lies to the left of a pose [nm]."""
     ux, uy = unit(start.heading)
     return -(point[0] - start.x) * uy + (point[1] - start.y) * ux
-
-
-def _nothing() -> State:
-    """Return a state in which nothing is laid."""
-    empty: Mapping[str, Choice] = {}
-    return State(
-        obstacles=Obstacles.empty(),
-        lines={},
-        pairs={},
-        radials={},
-        parts={},
-        ports={},
-        strips=(),
-        line_vias=(),
-        line_grounds=(),
-        pending=(),
-        used={},
-        bounds=Bounds(),
-        extent=(0, 0, 0, 0),
-        bends=0.0,
-        ways=empty,
-    )

@@ -11,7 +11,7 @@ from layoutgen.placement.frame import Pose, unit
 from layoutgen.placement.kit import root_edge
 from layoutgen.placement.lay import Layer
 from layoutgen.placement.model import Model
-from layoutgen.placement.state import EDGES, Bounds, Growth, LaidPort, State
+from layoutgen.placement.state import EDGES, Bounds, Growth, LaidPort, State, nothing_laid
 from layoutgen.placement.tour import Tour
 from layoutgen.units import to_nm
 
@@ -121,21 +121,11 @@ def _begin(
     model: Model, tour: Tour, layer: Layer, margins: Mapping[Kind, int], root: End, pose: Pose, bounds: Bounds
 ) -> State:
     holes = _board_holes(model, bounds)
-    empty = State(
+    empty = replace(
+        nothing_laid(),
         obstacles=Obstacles.empty().plus(holes),
-        lines={},
-        pairs={},
-        radials={},
-        parts={},
-        ports={},
-        strips=(),
-        line_vias=(),
-        line_grounds=(),
-        pending=(),
-        used={},
         bounds=bounds,
         extent=(pose.x, pose.y, pose.x, pose.y),
-        bends=0.0,
     )
     growth = Growth(state=empty, bounds=bounds)
     _lay_root(model, tour, layer, growth, root, pose)

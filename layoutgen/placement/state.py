@@ -29,6 +29,7 @@ __all__ = [
     "corridor_box",
     "edge_of_heading",
     "leg_boxes",
+    "nothing_laid",
 ]
 
 EDGES: Mapping[str, float] = {"east": 0.0, "north": 90.0, "west": 180.0, "south": 270.0}
@@ -201,6 +202,26 @@ class State:
     ways: Mapping[str, Choice] = field(default_factory=dict)
     roles: Mapping[str, Headings] = field(default_factory=dict)
     escapes: Mapping[tuple[End, Pose], Growth] = field(default_factory=dict, compare=False, repr=False)
+
+
+def nothing_laid() -> State:
+    """Return a state in which nothing is laid and nothing is known of the board."""
+    return State(
+        obstacles=Obstacles.empty(),
+        lines={},
+        pairs={},
+        radials={},
+        parts={},
+        ports={},
+        strips=(),
+        line_vias=(),
+        line_grounds=(),
+        pending=(),
+        used={},
+        bounds=Bounds(),
+        extent=(0, 0, 0, 0),
+        bends=0.0,
+    )
 
 
 @dataclass(slots=True, kw_only=True)

@@ -86,6 +86,16 @@ class Tour:
     first_port: Mapping[tuple[str, int], int]
     siblings: Mapping[str, str]
 
+    def port_at(self, far: tuple[End, str] | None) -> str | None:
+        """Return the port that a line ends in by its far end, when nothing else meets there."""
+        if far is None or far[1] == GROUND:
+            return None
+        hub = self.hubs[far[1]]
+        if hub.arrival == far[0] and not hub.bank and len(hub.arms) == 1:
+            end = hub.arms[0].end
+            return end.element if end.kind is EndKind.PORT else None
+        return None
+
     def ends_in_port(self, end: End) -> bool:
         """True for a line or port that only leads to a port."""
         weight = self.weight.get((end.element, end.index), 0)

@@ -5,8 +5,9 @@ the schematic taken literally (``wanted``) and of what was placed (``as_drawn``)
 and where the model is doubtful; a :class:`LengthFit`, how much longer or shorter lines should be drawn; a
 :class:`Tolerance`. ``network``, ``chain``, ``reduce`` and ``solve`` are a solver that knows nothing of
 boards; ``wanted`` and ``drawn`` build its networks; ``trace`` reads the drawn copper; ``touchstone`` reads
-the parts' data. Nothing here changes a drawing, and nothing writes files. Coupling between neighbouring
-lines that are no pair is not modelled.
+the parts' data. ``match`` compares both, ``fit`` finds the lengths that bring them nearest (``mirror`` and
+``rings`` say which move together), ``holders`` names what lengths cannot remove. Nothing here changes a
+drawing, and nothing writes files. Coupling between neighbouring lines that are no pair is not modelled.
 """
 
 from layoutgen.response.correct import LengthFit, correct_lengths

@@ -7,7 +7,7 @@ import contextlib
 import importlib.util
 import socket
 import time
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from pathlib import Path
 from typing import TYPE_CHECKING
@@ -18,7 +18,7 @@ from layoutgen.pipeline import run
 from layoutgen.watch.files import Mark, folders_of, marks_of, watched_files
 from layoutgen.watch.redraw import Draw, Drawing, redraw
 from layoutgen.watch.server import LOOPBACK, Stage, application
-from layoutgen.writers import Job, file_names, prepare_folder
+from layoutgen.writers import Job, file_names, older_packages, prepare_folder
 
 if TYPE_CHECKING:
     from uvicorn import Server
@@ -150,13 +150,15 @@ async def _follow(task: _Task, stage: Stage) -> None:
         start = time.perf_counter()
         drawing = await asyncio.to_thread(task.redraw)
         await stage.finish(drawing)
-        task.tell(_outcome(drawing, time.perf_counter() - start))
+        task.tell(_outcome(drawing, time.perf_counter() - start, older_packages(task.folder, ())))
         await _change(files, seen)
 
 
-def _outcome(drawing: Drawing, seconds: float) -> str:
+def _outcome(drawing: Drawing, seconds: float, packages: Sequence[str]) -> str:
+    """Return what became of a drawing, and which packages beside it are not of it."""
     if not drawing.faults:
-        return f"drawn in {seconds:.1f} s"
+        older = f"; of an earlier drawing: {', '.join(packages)}" if packages else ""
+        return f"drawn in {seconds:.1f} s{older}"
     return "\n".join((*drawing.faults, "nothing was written; waiting for the file to be saved"))
 
 

@@ -12,7 +12,7 @@ from dataclasses import replace
 from pathlib import Path
 
 from layoutgen.writers.dxf import write_dxf
-from layoutgen.writers.folder import prepare_folder, write_files
+from layoutgen.writers.folder import older_packages, prepare_folder, write_files
 from layoutgen.writers.gds import write_gds
 from layoutgen.writers.png import write_png
 from layoutgen.writers.records import DEFAULT_DPI, Job, Result
@@ -33,6 +33,7 @@ __all__ = [
     "encode",
     "file_names",
     "findings_report",
+    "older_packages",
     "prepare_folder",
     "response_files",
     "trace_values",

@@ -23,8 +23,8 @@ from layoutgen.writers.records import Job, Result
 __all__ = ["BILL_HEADS", "bill_rows", "write_bill_of_materials"]
 
 BILL_HEADS = (
-    "Item", "Quantity", "References", "Kind", "Value", "Value tolerance", "Package", "Needed rating",
-    "Assumed series resistance and inductance", "Data file", "Mounting",
+    "Item", "Quantity", "References", "Kind", "Value", "Value tolerance (plus-minus)", "Package",
+    "Needed rating", "Assumed series resistance and inductance", "Data file", "Mounting",
 )  # fmt: skip
 """Headings of :func:`bill_rows`."""
 
@@ -37,7 +37,11 @@ def write_bill_of_materials(result: Result, job: Job) -> bytes:
 def bill_rows(result: Result) -> list[tuple[str, ...]]:
     """Return one row for each set of equal parts, in the order of their first references."""
     tolerance = result.circuit.file.tolerance
-    limits = f"+/-{fixed(100.0 * tolerance.value, 3)} %" if tolerance and tolerance.value else ""
+    limits = (
+        f"{fixed(100.0 * tolerance.value, 3).rstrip('0').rstrip('.')} %"
+        if tolerance and tolerance.value
+        else ""
+    )
     groups: dict[tuple[str, ...], list[str]] = {}
     for name in references(result):
         part = result.circuit.file.parts[name]

@@ -1,8 +1,8 @@
-"""DXF R2010 in millimetres: closed polylines with true arcs, circles for all that is round, texts.
+"""DXF R2010 in millimetres: closed polylines with true arcs, circles for drills, texts.
 
 No hatches, no blocks. Outlines run counter-clockwise, holes and the profile's cut-outs clockwise; copper is
-where circles and outlines wind round more often counter-clockwise than clockwise (every shape keeps its own
-outlines, also where shapes of one net overlap). Circles add: round holes in copper are polylines of two arcs.
+where the outlines wind round more often counter-clockwise than clockwise (every shape keeps its own outlines,
+also where shapes of one net overlap); what is round in copper is a polyline of two arcs, with a direction.
 No vertex is repeated and no edge is below 1 um. The header, tables and objects are the library's; the
 entities are written here as text, since the library takes more than linear time for many.
 """
@@ -44,6 +44,7 @@ _ENTITIES = "  2\nENTITIES\n"
 _NM = 1e6
 """Nanometres in a millimetre; quotients of whole ones have six exact decimals up to 4,000 km."""
 _VERTEX = " 10\n%.6f\n 20\n%.6f\n"
+_HALF = f"{_VERTEX} 42\n1.000000000000\n"
 _CIRCLE = f"{_VERTEX} 30\n0.0\n 40\n%.6f\n"
 
 
@@ -103,15 +104,18 @@ class _Writer:
         self.handle = handle
 
     def layer(self, name: str, drawn: Drawn) -> Iterator[str]:
-        """Yield outlines, then circles."""
+        """Yield outlines, then drills or what else is round."""
         for shape in drawn.shapes:
             yield from (self.entity("LWPOLYLINE", _polyline(name, ring)) for ring in _rings(shape))
-        circle = f"{self.head}  8\n{name}\n100\nAcDbCircle\n{_CIRCLE}"
         first, self.handle = self.handle, self.handle + len(drawn.circles)
-        yield from (
-            circle % ("CIRCLE", handle, x / _NM, y / _NM, radius / _NM)
-            for handle, (x, y, radius) in enumerate(drawn.circles, start=first)
-        )
+        circles = enumerate(drawn.circles, start=first)
+        if name.startswith("drill"):
+            circle = f"{self.head}  8\n{name}\n100\nAcDbCircle\n{_CIRCLE}"
+            yield from (circle % ("CIRCLE", k, x / _NM, y / _NM, r / _NM) for k, (x, y, r) in circles)
+        else:
+            disc = f"{self.head}  8\n{name}\n100\nAcDbPolyline\n 90\n2\n 70\n1\n{_HALF}{_HALF}"
+            for k, (x, y, r) in circles:
+                yield disc % ("LWPOLYLINE", k, (x - r) / _NM, y / _NM, (x + r) / _NM, y / _NM)
 
     def entity(self, kind: str, body: str) -> str:
         """Return an entity."""

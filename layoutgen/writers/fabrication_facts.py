@@ -10,10 +10,13 @@ import math
 from collections.abc import Iterator
 from dataclasses import dataclass
 
+import shapely
+
 from layoutgen.geometry import Point
 from layoutgen.numbers import fixed, mm_short
 from layoutgen.reading import CircuitFile
 from layoutgen.units import quantity_text, to_nm
+from layoutgen.writers.outlines import doubled_area
 from layoutgen.writers.plain import many
 from layoutgen.writers.records import Result
 from layoutgen.writers.xnc import hits_of
@@ -43,6 +46,8 @@ CRITICAL_HEADS = (
 )
 
 _USES = {"ViaDrill": "vias", "ComponentDrill": "component leads", "MechanicalDrill": "screws, tooling"}
+_SAME_NM = 1000
+"""Distances that differ by less than a micrometre are the same [nm]."""
 _HOLD = "do not change: sets the impedance"
 _CURRENT = "not critical for RF; never narrower: carries current"
 
@@ -86,15 +91,20 @@ def stack_rows(result: Result) -> list[tuple[str, ...]]:
     )
     return [
         ("legend, top", "Legend,Top", "ink", ""),
-        ("solder mask, top", "Soldermask,Top", _mask_material(result), ""),
+        ("solder mask, top", "Soldermask,Top", _mask_material(result, "soldermask_top"), ""),
         ("copper 1", "Copper,L1,Top", "copper, lines and pour", copper),
         ("substrate", "", laminate, f"{mm_short(to_nm(substrate.height))} mm"),
         ("copper 2", "Copper,L2,Bot", "copper, ground plane", copper),
-        ("solder mask, bottom", "Soldermask,Bot", _mask_material(result), ""),
+        ("solder mask, bottom", "Soldermask,Bot", _mask_material(result, "soldermask_bottom"), ""),
     ]
 
 
-def _mask_material(result: Result) -> str:
+def _mask_material(result: Result, layer: str) -> str:
+    """Return what a solder mask is of; one that is open wherever the board is, is none."""
+    outlines = result.artwork.on("profile")
+    board = sum(abs(doubled_area(s.outline)) for s in outlines if s.role == "profile")
+    if any(abs(doubled_area(s.outline)) >= board > 0 for s in result.artwork.on(layer) if not s.holes):
+        return "none: open all over"
     given = result.circuit.rules.mask is not None
     return "solder mask" if given else "solder mask, where the board house offers one"
 
@@ -161,13 +171,43 @@ def notes(result: Result) -> Iterator[str]:
     yield _holes_note(result)
     yield (
         "All layers are seen from the top, nothing is mirrored; the origin is the board's south-west corner. "
-        "The profile file is drawn along the finished edges, cut-outs included; inner corners may have the "
-        "router's radius unless a part's flange stands in them."
+        "The profile file is drawn along the finished edges, cut-outs included."
     )
+    yield from _cutout_notes(result)
     yield (
         "Electrical test to the IPC-D-356A file. It names conductors: a line of the circuit joins the "
         "nets at its ends, and a stub shorted at its end joins its net to ground."
     )
+
+
+def _cutout_notes(result: Result) -> Iterator[str]:
+    """Yield what the inner corners of cut-outs may be, and where copper comes near to edges on purpose."""
+    flanges = [part.name for part in result.placement.parts.values() if part.cutout is not None]
+    cutouts = sum(shape.role == "cutout" for shape in result.artwork.on("profile"))
+    if flanges:
+        yield (
+            f"The flange of {', '.join(flanges)} stands in a cut-out: say which radius its inner corners "
+            "will have before routing, and do not widen it."
+        )
+    if cutouts > len(flanges):
+        yield "Inner corners of other cut-outs may have the router's radius."
+    for name, distance in _near_edges(result):
+        yield f"Copper comes as near as {mm_short(distance)} mm to the edge of {name}: on purpose, leave it."
+
+
+def _near_edges(result: Result) -> Iterator[tuple[str, int]]:
+    """Yield edges that copper comes nearer to than the rules' distance, and how near it comes [nm]."""
+    least = result.circuit.rules.copper.min_edge_distance
+    copper = [*result.artwork.on("copper_top"), *result.artwork.on("copper_bottom")]
+    if least is None or not copper:
+        return
+    pieces = [shapely.Polygon(s.outline.chords(), [h.chords() for h in s.holes]) for s in copper]
+    for shape in result.artwork.on("profile"):
+        edge = shapely.LinearRing(shape.outline.chords())
+        distance = round(min(map(edge.distance, pieces)))
+        if distance < to_nm(least) - _SAME_NM:
+            cutout = f"the cut-out under {shape.origin.element}"
+            yield cutout if shape.role == "cutout" else "the board", distance
 
 
 def _width_notes(undercut: float) -> Iterator[str]:

@@ -33,11 +33,12 @@ from pathlib import Path
 from layoutgen.errors import WrongInputError
 from layoutgen.origin import Fault, Location
 
-__all__ = ["prepare_folder", "recover", "write_files"]
+__all__ = ["older_packages", "prepare_folder", "recover", "write_files"]
 
 _STAGE, _COMMIT, _UNDO = ".layoutgen-stage", ".layoutgen-commit", ".layoutgen-undo"
 _JOURNAL, _KEPT = "journal.json", "kept"
 _LAST, _README = "report.json", "README.txt"
+_PACKAGE_TITLE = re.compile(rb".+: files for the [a-z A-Z]+\r?\n=+\r?\n")
 _NUMBERED = re.compile(r"(wanted|as_drawn)\.s\d+p")
 
 
@@ -99,6 +100,25 @@ def write_files(folder: Path, files: Mapping[str, bytes]) -> None:
             _create(folder, files)
     except OSError as error:
         raise _unwritable(folder, _reason(error)) from error
+
+
+def older_packages(folder: Path, files: Iterable[str]) -> list[str]:
+    """Return the packages in a folder that an earlier run has written and this one has not.
+
+    Args:
+        folder: The folder.
+        files: Names of the files of this run, as for :func:`write_files`.
+    """
+    written = _folders_of(files)
+    places = sorted(path.parent for path in folder.glob(f"*/{_README}"))
+    return [place.name for place in places if place.name not in written and _is_package(place)]
+
+
+def _is_package(place: Path) -> bool:
+    try:
+        return _PACKAGE_TITLE.match((place / _README).read_bytes()) is not None
+    except OSError:
+        return False
 
 
 def recover(folder: Path) -> None:

@@ -78,7 +78,7 @@ _ABOUT_LAYERS = {
     "copper_top": "copper 1: lines, pads, pour",
     "copper_bottom": "copper 2: ground plane",
     "soldermask_top": "openings of the top solder mask",
-    "soldermask_bottom": "openings of the bottom solder mask; none: covered all over",
+    "soldermask_bottom": "openings of the bottom solder mask",
     "paste_top": "solder paste",
     "legend_top": "legend",
     "profile": "outline and cut-outs, along the finished edge",

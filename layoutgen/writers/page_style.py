@@ -64,7 +64,7 @@ button[aria-pressed=true]{background:var(--copper);color:var(--card);border-colo
 #panel{flex:1 1 0;min-height:13rem;overflow:auto;border:1px solid var(--rule);background:var(--card);
 padding:.2rem .8rem}
 #panel h3{margin:.5rem 0 .2rem}
-dl{display:grid;grid-template-columns:auto minmax(0,1fr);gap:.1rem .8rem;margin:.2rem 0}
+dl{display:grid;grid-template-columns:minmax(30%,1fr) fit-content(62%);gap:.1rem .8rem;margin:.2rem 0}
 dt{color:var(--soft)}
 dt.head{grid-column:1/-1;margin-top:.4rem;font-weight:600;color:var(--ink)}
 dd{margin:0;overflow-wrap:anywhere;font-variant-numeric:tabular-nums}

@@ -50,7 +50,7 @@ _TITLES = {
     "pcb-designer": "PCB designer",
     "board-house": "board house",
     "mask-house": "mask or ceramic house",
-    "assembly": "assembly",
+    "assembly": "assembler",
     "test": "test engineer",
     "reviewer": "reviewer",
 }
@@ -79,19 +79,22 @@ def _facts(result: Result) -> Iterator[tuple[str, str]]:
 
 def _designer(result: Result) -> Iterator[str]:
     yield (
-        "DXF layers have Gerber function names. Closed polylines, outer ones counter-clockwise, holes and "
-        "cut-outs clockwise; copper is where outlines wind round more often than holes. No hatches, no "
-        "blocks."
+        "Layers have the names of their functions. Closed polylines, outer ones counter-clockwise, holes and "
+        "cut-outs clockwise; copper is where outlines wind round more often than holes. Drills are circles. "
+        "No hatches, no blocks, no edge below 1 um."
     )
     yield (
         "The R12 file has arcs as chords within 1 um and no unit: its reference square, south-west of the "
-        "board, measures 10.000 mm. Its layer keepout holds the parts' courtyards."
+        "board, measures 10.000 mm. Its layer keepout holds the parts' courtyards. Round lands are circles "
+        "there, and count as outlines."
     )
     yield "Shapes of one net overlap on purpose; join them or leave them. Pads are in the copper layers too."
     yield (
-        "The table of shapes says what may be changed. A conductor is the copper that a net belongs to: a "
-        "line joins the nets at its ends."
+        'The table of shapes says what may be changed. "do not change width": the circuit asks for the width '
+        'itself. "impedance, may be adjusted": the width follows from the impedance and may follow it on '
+        "another stackup, the length with it; the board house is told to leave both alone."
     )
+    yield "A conductor is the copper that a net belongs to: a line joins the nets at its ends."
 
 
 def _board_house(result: Result) -> Iterator[str]:
@@ -133,6 +136,9 @@ def _mask_house(result: Result) -> Iterator[str]:
 
 
 def _assembly(result: Result) -> Iterator[str]:
+    if not result.placement.parts:
+        yield "There is nothing to place: the board carries no parts of the circuit file, only connections."
+        return
     yield ROTATION_CONVENTION
     yield "All parts are on the top side. Connectors, wires, screws and carrier are not in the parts list."
     yield "The circuit file names values, cases and ratings, no makers' part numbers."
@@ -147,7 +153,11 @@ def _test(result: Result) -> Iterator[str]:
     if result.response is not None:
         named = ", ".join(f"{k} {name}" for k, name in enumerate(result.response.ports, start=1))
         yield f"Touchstone ports: {named}. All to 50 ohm."
-    yield "Voltages are the solution of the bias point with the resistance of the drawn lines, no RF drive."
+    if order:
+        yield (
+            "Voltages are the solution of the bias point with the resistance of the drawn lines, without RF "
+            "drive."
+        )
 
 
 def _reviewer(result: Result) -> Iterator[str]:

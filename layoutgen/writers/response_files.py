@@ -6,12 +6,13 @@ import cmath
 import math
 from collections.abc import Iterator
 
-from layoutgen.numbers import fixed
+from layoutgen.numbers import fixed, json_text
 from layoutgen.response import Response
 from layoutgen.writers.charts import Trace, decibels, match_traces, trace_groups, transmission_traces
 from layoutgen.writers.html import escape
 from layoutgen.writers.page_plots import level_plot, phase_plot, plot_height, smith_height, smith_plot
 from layoutgen.writers.records import Job, Result
+from layoutgen.writers.response_json import response_entries
 from layoutgen.writers.response_png import write_response_png
 from layoutgen.writers.touchstone import write_as_drawn, write_wanted
 
@@ -32,7 +33,7 @@ _STYLE = (
 
 
 def response_files(result: Result, job: Job) -> dict[str, bytes]:
-    """Return the files of the response by name: Touchstone, CSV, plots.
+    """Return the files of the response by name: Touchstone, CSV, plots, and what else is known as JSON.
 
     Raises:
         ValueError: The result has no response.
@@ -46,6 +47,7 @@ def response_files(result: Result, job: Job) -> dict[str, bytes]:
         "response.csv": write_csv(result.response),
         "response.svg": write_plot(result, result.response),
         "response.png": write_response_png(result, result.response, job.dpi),
+        "response.json": (json_text(response_entries(result.response)) + "\n").encode("utf-8"),
     }
 
 

@@ -179,6 +179,9 @@ def _limit(supply: Supply) -> str:
 
 def _bias(result: Result) -> Iterator[str]:
     """Yield voltages at nets, currents of elements, and what was assumed."""
+    if not supplies_of(result):
+        yield paragraph("None: the board has no supply.")
+        return
     yield paragraph("Direct voltages against ground, without RF drive, at the supply voltages of the ports.")
     yield columns(BIAS_HEADS, bias_rows(result))
     flowing = [(k, i) for k, i in result.circuit.dc.currents.items() if abs(i) >= 5e-7]

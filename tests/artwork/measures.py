@@ -19,6 +19,12 @@ def polygon(shape: Shape, undercut: float = 0.0, tolerance: float = 900.0) -> Ba
     return drawn.buffer(-undercut, join_style="mitre", mitre_limit=5.0) if undercut else drawn
 
 
+def undercut_of(artwork: Artwork) -> float:
+    """Return by how much each edge of the artwork lies outside the finished copper [nm]."""
+    copper = artwork.placement.sized.circuit.rules.copper
+    return 0.0 if copper.undercut is None else copper.undercut * 1e9
+
+
 def areas(
     artwork: Artwork,
     *roles: str,

@@ -13,11 +13,12 @@ from layoutgen.artwork import Artwork
 
 def test_pour_keeps_the_sized_gap_to_every_line(artwork: Artwork, measures: ModuleType) -> None:
     """Would catch a pour drawn at another distance than the widths were computed for."""
-    pour = shapely.union_all(measures.areas(artwork, "pour"))
+    undercut = measures.undercut_of(artwork)
+    pour = shapely.union_all(measures.areas(artwork, "pour", undercut=undercut))
     placement = artwork.placement
     for name, line in placement.lines.items():
         shapes = [s for s in artwork.on("copper_top") if s.origin.element == name and s.role == "line"]
-        copper = shapely.union_all([measures.polygon(s) for s in shapes])
+        copper = shapely.union_all([measures.polygon(s, undercut) for s in shapes])
         gap = placement.sized.lines[name].pour_gap * 1e9
         if line.nets[-1] == "gnd":
             path = shapely.LineString(line.path)
@@ -36,12 +37,15 @@ def test_measured_gaps_are_what_was_sized_or_more(artwork: Artwork) -> None:
 
 def test_ground_can_be_etched(artwork: Artwork, measures: ModuleType) -> None:
     """Would catch slivers, slits and sharp notches where pour, pads and vias of real parts meet."""
-    ground = measures.ground(artwork)
-    assert measures.too_thin(ground, 124_000).is_empty
+    copper_rules = artwork.placement.sized.circuit.rules.copper
+    thin = 0.99e9 * min(copper_rules.min_width, copper_rules.min_gap)
+    sharp = math.degrees(copper_rules.min_corner_angle) - 0.1
+    ground = measures.ground(artwork, measures.undercut_of(artwork))
+    assert measures.too_thin(ground, thin).is_empty
     placement = artwork.placement
     void = shapely.box(0, 0, placement.width, placement.height).difference(ground).buffer(1)
-    assert measures.too_thin(void, 124_000).is_empty
-    assert [at for angle, at in measures.corners(ground, 20.0) if angle < 84.9] == []
+    assert measures.too_thin(void, thin).is_empty
+    assert [at for angle, at in measures.corners(ground, 20.0) if angle < sharp] == []
 
 
 def test_every_line_is_drawn_whole(artwork: Artwork) -> None:

@@ -19,7 +19,7 @@ MOST_DEG = 0.05
 def polygon_of(artwork: Artwork, measures: ModuleType, name: str, which: int = 0) -> shapely.Polygon:
     """Return the copper of a line [nm], or of one strip of a pair."""
     shapes = [s for s in artwork.on("copper_top") if s.origin.element == name and s.role in ("line", "pair")]
-    found: shapely.Polygon = measures.polygon(shapes[which])
+    found: shapely.Polygon = measures.polygon(shapes[which], measures.undercut_of(artwork))
     return found
 
 
@@ -79,7 +79,7 @@ def test_drawn_pairs_and_corrections_make_the_angle(artwork: Artwork, measures: 
     for name, pair in artwork.placement.pairs.items():
         for side in (0, 1):
             x0, y0, x1, y1 = polygon_of(artwork, measures, name, side).bounds
-            assert max(x1 - x0, y1 - y0) == pair.centre_line
+            assert max(x1 - x0, y1 - y0) == pytest.approx(pair.centre_line, abs=1.0)
         asked = artwork.placement.sized.circuit.file.coupled[name].angle
         line_angle = next(entry.angle for entry in pair.budget if entry.cause == "line")
         assert math.degrees(line_angle + corrections(pair.budget)) == pytest.approx(

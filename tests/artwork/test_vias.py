@@ -199,3 +199,14 @@ def test_artwork_does_not_depend_on_the_hash_seed() -> None:
     ]
     assert out[0] == out[1]
     assert len(out[0]) > 10_000
+
+
+def test_fence_goes_on_through_a_neck_of_pour(boards: ModuleType) -> None:
+    """Would catch a gap in the fence where the pour beside an arc is too narrow for the usual row."""
+    board = boards.BoardBuilder(24.0, 13.0)
+    board.line("main", [(0.3, 5.0), (23.7, 5.0)], 1.1, ("a", "b"))
+    board.radial("fan", (12.0, 5.0), 90.0, 60.0, 0.6, 6.0)
+    artwork = draw(board.placement())
+    above = sorted((v.x, v.y) for v in artwork.vias if v.y > 11_500_000 and 8_000_000 < v.x < 16_000_000)
+    assert len(above) >= 5
+    assert max(math.dist(a, b) for a, b in itertools.pairwise(above)) <= 2_000_000

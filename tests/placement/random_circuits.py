@@ -57,7 +57,7 @@ class RandomCircuit:
         for key in ("parts", "coupled", "footprints"):
             if found := getattr(self, key):
                 data[key] = found
-        if self.chance.random() < 0.4:
+        if self.chance.random() < 0.3:
             wide, high = (
                 self.chance.randint(15, 60 + 3 * self.size),
                 self.chance.randint(8, 30 + 2 * self.size),
@@ -126,7 +126,7 @@ class RandomCircuit:
         self.parts[f"Q{len(self.parts)}"] = {"kind": "transistor", "footprint": "small", "pins": pins}
 
     def _loop(self, here: str, there: str) -> None:
-        """Add a loop between two nets: lines, a line and a part, a bridge, a free line, parts side by side."""
+        """Add a loop between two nets: lines, a part in it, a bridge, a free line, or parts side by side."""
         middle = self._net("m")
         kind = self.chance.choice(("ways", "part", "bridge", "free", "beside"))
         if kind == "beside":
@@ -196,12 +196,12 @@ class RandomCircuit:
         self._part(SHUNTS[:1] if self.fed else SHUNTS, net, "gnd")
 
 
-def random_circuit(chance: random.Random) -> dict[str, Any]:
-    """Return a circuit: mostly of few elements, now and then up to 40, with no to three loops."""
+def random_circuit(chance: random.Random, small: float = 0.94) -> dict[str, Any]:
+    """Return a circuit; a share ``small`` has few elements and one loop at most, the rest up to 40."""
     draw = chance.random()
-    if draw < 0.75:
-        size = chance.randint(2, 4)
+    if draw < small:
+        size = chance.randint(1, 4)
     else:
-        size = chance.randint(5, 9) if draw < 0.95 else chance.randint(10, 36)
-    loops = chance.choices((0, 1, 2, 3), (12, 5, 1, 1))[0]
+        size = chance.randint(5, 9) if draw < 1.0 - (1.0 - small) / 4.0 else chance.randint(10, 36)
+    loops = chance.choices((0, 1, 2, 3), (16, 3, 1, 1) if draw > small else (16, 3, 0, 0))[0]
     return RandomCircuit(chance, size, loops).data()

@@ -312,7 +312,7 @@ def test_a_long_outline_keeps_its_arcs_on_paper(handmade: Result) -> None:
     """Corners drawn straight would show another board."""
     outline = handmade.artwork.on("profile")[0].outline
     assert not outline.is_straight
-    points = len(Ring(outline.points, outline.bulges).chords())
+    points = len(Ring(outline.points, outline.bulges).chords(20_000))  # a tenth of a thin pen
     content = streams(write_review_sheet(handmade, JOB))[0]
     paths = re.findall(r"((?:[-0-9.]+ [-0-9.]+ [ml]\n?\s?)+)", content)
     assert any(len(re.findall(r"[ml]\b", path)) >= points for path in paths)

@@ -16,7 +16,7 @@ from pathlib import Path
 import pytest
 
 from layoutgen.errors import WrongInputError
-from layoutgen.writers import Job, Result
+from layoutgen.writers import Job, Result, older_packages, write_files
 from layoutgen.writers.packages import (
     MANIFEST,
     README,
@@ -225,3 +225,24 @@ def test_no_package_depends_on_the_hash_seed(
         env={**os.environ, "PYTHONHASHSEED": "3"},
     )
     assert dict(line.rsplit(" ", 1) for line in done.stdout.splitlines()) == here
+
+
+def test_packages_of_an_earlier_run_are_told_of(handmade: Result, tmp_path: Path) -> None:
+    """Left beside a new report without a word, the old board is sent to the board house."""
+    packages = encode_packages(handmade, JOB, ("test", "assembly"))
+    write_files(tmp_path, {**packages, "report.json": b"{}"})
+    (tmp_path / "photos").mkdir()
+    (tmp_path / "photos" / "README.txt").write_text("holiday: files for the album")
+    assert older_packages(tmp_path, packages) == []
+    assert older_packages(tmp_path, ["test/README.txt", "report.json"]) == ["assembly"]
+    assert older_packages(tmp_path, ["report.json"]) == ["assembly", "test"]
+    assert older_packages(tmp_path / "none", []) == []
+
+
+def test_all_and_none_are_lists_too(handmade: Result) -> None:
+    """Taken for names of receivers, they would be refused; taken for each other, everything is lost."""
+    assert receivers_from(" all ") == tuple(RECEIVERS)
+    assert receivers_from("none") == ()
+    for text in ("all,test", "none,test", ""):
+        with pytest.raises(WrongInputError, match=", ".join(RECEIVERS)):
+            receivers_from(text)

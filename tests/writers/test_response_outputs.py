@@ -91,7 +91,7 @@ class TestPictures:
 
 def test_all_files_are_there(driver: Result) -> None:
     """A plot that is made but never written."""
-    names = {"wanted.s4p", "as_drawn.s4p", "response.csv", "response.svg", "response.png"}
+    names = {"wanted.s4p", "as_drawn.s4p", "response.csv", "response.svg", "response.png", "response.json"}
     assert set(response_files(driver, replace(JOB, dpi=30))) == names
 
 

@@ -216,6 +216,7 @@ def test_a_passive_board_has_no_steps_of_bias(handmade: Result) -> None:
     assert len(switching_steps(handmade)) == 1
     text = write_test_sheet(replace(handmade, response=None), JOB).decode()
     assert "no supply" in text
+    assert "Expected voltage" not in text
     assert "Touchstone files in this folder" not in text
 
 

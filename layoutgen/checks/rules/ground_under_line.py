@@ -1,7 +1,8 @@
 """Under every RF line the ground plane is unbroken.
 
 What: the copper of each RF line, coupled pair and radial stub lies wholly over the bottom plane, except
-within ``copper.min_edge_distance`` of the profile and of cut-outs, where the plane must end.
+within ``copper.min_edge_distance`` (0.3 mm without that rule) of the profile and of cut-outs, where the
+plane must end.
 Why: return current that has to go round a slot radiates, and the line's impedance jumps there.
 How measured: the area of the line's finished copper with no plane below; openings thinner than 20 nm are
 rounding. Only straight below: a slot beside the line is not looked at.
@@ -19,6 +20,7 @@ from layoutgen.checks.board import Board
 from layoutgen.checks.nodes import GROUND
 from layoutgen.checks.outcome import Hit, Outcome, Rule, named
 from layoutgen.checks.planar import TOLERANCE_NM, Geometry, parts, whole
+from layoutgen.placement import copper_edge
 
 __all__ = ["RULE"]
 
@@ -32,7 +34,7 @@ def find(board: Board) -> Iterator[Outcome]:
         return
     plane = shapely.union_all(board.bottom.polygons) if board.bottom.pieces else shapely.MultiPolygon()
     shapely.prepare(plane)
-    away = _edge_zone(board)
+    away = _edge_zone(board, board.artwork)
     for piece in board.top.pieces:
         if piece.role not in _LINE_ROLES or not _is_rf(board.artwork, piece.item):
             continue
@@ -54,11 +56,10 @@ def find(board: Board) -> Iterator[Outcome]:
             )
 
 
-def _edge_zone(board: Board) -> Geometry:
+def _edge_zone(board: Board, artwork: Artwork) -> Geometry:
     """Return where the plane may have ended already: beyond its distance from profile and cut-outs."""
-    reach = (board.limits.nm("copper.min_edge_distance") or 0.0) + TOLERANCE_NM
-    margin = None if board.artwork is None else board.artwork.placement.sized.circuit.file.board.margin
-    reach = max(reach, (margin or 0.0) * 1e9 + TOLERANCE_NM)
+    circuit = artwork.placement.sized.circuit
+    reach = max(copper_edge(circuit.rules), (circuit.file.board.margin or 0.0) * 1e9) + TOLERANCE_NM
     zones: list[Geometry] = [cutout.polygon.buffer(reach, join_style="mitre") for cutout in board.cutouts]
     if board.outline is not None:
         x0, y0, x1, y1 = board.outline.bounds

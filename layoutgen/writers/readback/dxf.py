@@ -113,7 +113,7 @@ def _compared(file: str, reader: str, drawn: dict[str, _Drawn], result: Result, 
             continue
         yield count_check(file, reader, f"{name}: polylines that are not closed", found.unclosed, 0)
         yield from _outlines(file, reader, name, found, shapes, chords)
-        wanted = [circle for shape in shapes if (circle := _disc(shape))]
+        wanted = [circle for shape in shapes if (circle := _disc(shape, chords))]
         if wanted or found.circles:
             yield circle_check(file, reader, f"{name}: circles that differ", found.circles, wanted)
 
@@ -131,7 +131,7 @@ def _outlines(
     file: str, reader: str, name: str, found: _Drawn, shapes: Sequence[Shape], chords: bool
 ) -> Evidence:
     """Yield the comparisons of outlines and of holes."""
-    plain = [shape for shape in shapes if _disc(shape) is None]
+    plain = [shape for shape in shapes if _disc(shape, chords) is None]
     outer = [turned(s.outline, 1) for s in plain if s.role != "cutout"]
     inner = [turned(hole, -1) for s in plain for hole in s.holes]
     inner += [turned(s.outline, -1) for s in plain if s.role == "cutout"]
@@ -170,9 +170,10 @@ def _short(file: str, reader: str, name: str, found: _Drawn) -> Check:
     return count_check(file, reader, f"{name}: repeated vertices and edges below 1 um", count, 0)
 
 
-def _disc(shape: Shape) -> Circle | None:
-    """Return a round shape as the circle that it is in the file; holes and cut-outs are polylines there."""
-    circle = None if shape.holes or shape.role == "cutout" else as_circle(shape.outline)
+def _disc(shape: Shape, r12: bool) -> Circle | None:
+    """Return what is a circle in the file: drills, in R12 everything round but holes and cut-outs."""
+    plain = shape.role == "drill" or (r12 and not shape.holes and shape.role != "cutout")
+    circle = as_circle(shape.outline) if plain else None
     return None if circle is None else (float(circle[0]), float(circle[1]), 2.0 * circle[2])
 
 
