@@ -223,6 +223,31 @@ def test_the_drawing_follows_the_substrate(changes: dict[str, Any], er: float, h
         )
 
 
+BARE_RULES: dict[str, Any] = {
+    "format": 1,
+    "name": "only what is required",
+    "vias": {"diameter": "0.6 mm", "drill": "0.3 mm"},
+    "holes": {"drills": ["0.3 mm"]},
+}
+
+
+@pytest.mark.parametrize(
+    ("copper", "inset"),
+    [({}, 300_000), ({"min_edge_distance": "0.2 mm"}, 200_000), ({"min_edge_distance": "0 mm"}, 0)],
+)
+def test_ports_paths_and_copper_end_at_one_distance_from_the_profile(
+    copper: dict[str, Any], inset: int
+) -> None:
+    """A port placed at the profile whose copper is cut back by a habit is reported where there is none."""
+    rules = {**BARE_RULES, "copper": copper}
+    inputs = inputs_from_data({**NOTCH, "board": {}}, rules=rules)
+    result = pipeline.run_inputs(inputs.circuit, inputs.rules, correction=False)
+    assert [f.text for f in result.findings if f.counts] == []
+    (shape,) = [s for s in result.artwork.shapes if s.role == "line" and s.origin.element == "left"]
+    line, port = result.placement.lines["left"], result.placement.ports["a"]
+    assert port.x == min(x for x, _ in line.path) == shape.outline.polygon().bounds[0] == inset
+
+
 @pytest.mark.parametrize("path", sorted((ROOT / "examples").glob("*.toml")), ids=lambda path: path.stem)
 def test_examples_run_without_errors(path: Path) -> None:
     """Each example is what a user starts from."""

@@ -64,6 +64,11 @@ class Limits:
     height: int
     default_gap: int
 
+    @property
+    def neck(self) -> float:
+        """Half of the width below which ground copper is cut through [nm]: the least width with some room."""
+        return 0.55 * self.min_width
+
 
 def limits_of(sized: SizedCircuit) -> Limits:
     """Return the numbers of a circuit's artwork, with this project's habits where a rule is absent."""

@@ -9,25 +9,30 @@ import shapely
 
 from layoutgen.artwork.board import BOARD, GND, board_outline, cutouts_of, plane_area
 from layoutgen.artwork.limits import Limits
+from layoutgen.artwork.pour import washed, without_necks
 from layoutgen.artwork.records import Shape
 from layoutgen.geometry import Ring, grow, offset_ring, offset_rings, pieces, rings_of
 from layoutgen.placement import Placement
 
 __all__ = ["plane_shapes"]
 
+_CHORDS_NM = 900.0
+
 
 def plane_shapes(placement: Placement, limits: Limits) -> list[Shape]:
     """Return the plane: the board but for its edge, its cut-outs and its bare holes.
 
-    Where nothing touches, the clearances go in as they are, with true arcs; else as polygons.
+    Where there is copper to be etched between all of them, the clearances go in as they are, with true arcs;
+    else as polygons, without necks too narrow and without islands, by the pour's own rules.
     """
     clear = _clearances(placement, limits)
     outline = board_outline(placement, limits.margin - limits.undercut)
-    polygons = [ring.polygon() for ring in clear]
-    if all(outline.polygon().contains_properly(p) for p in polygons) and _apart(polygons):
+    web = 2.0 * (limits.neck + limits.undercut + _CHORDS_NM)
+    if _apart([ring.polygon() for ring in clear], outline.polygon(), web):
         return [_shape(outline, tuple(_clockwise(ring) for ring in clear))]
-    area = plane_area(placement, limits, limits.margin, 900.0)
-    return [_shape(*rings) for piece in pieces(area) for rings in offset_rings(piece, limits.undercut)]
+    area = plane_area(placement, limits, limits.margin, _CHORDS_NM)
+    made = washed(without_necks(area, shapely.MultiPolygon(), limits.neck, limits), area, limits)
+    return [_shape(*rings) for piece in made for rings in offset_rings(piece, limits.undercut)]
 
 
 def _clearances(placement: Placement, limits: Limits) -> list[Ring]:
@@ -47,11 +52,12 @@ def _wider(ring: Ring, distance: int) -> Ring:
     return rings_of(pieces(grow(ring.polygon(), distance))[0])[0]
 
 
-def _apart(polygons: list[shapely.Polygon]) -> bool:
-    """True when no two polygons touch."""
+def _apart(polygons: list[shapely.Polygon], outline: shapely.Polygon, web: float) -> bool:
+    """True when polygons keep a distance [nm] from the outline that they lie in and from each other."""
+    inner = grow(outline, -web)
     tree = shapely.STRtree(polygons)
-    first, second = tree.query(np.array(polygons, dtype=object), predicate="intersects")
-    return bool((first == second).all())
+    first, second = tree.query(np.array(polygons, dtype=object), predicate="dwithin", distance=web)
+    return bool((first == second).all()) and all(inner.contains(polygon) for polygon in polygons)
 
 
 def _clockwise(ring: Ring) -> Ring:

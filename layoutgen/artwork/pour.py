@@ -30,7 +30,7 @@ from layoutgen.geometry import (
 from layoutgen.origin import Origin
 from layoutgen.placement import Placement
 
-__all__ = ["ground_pieces", "pour_of"]
+__all__ = ["ground_pieces", "pour_of", "washed", "without_necks"]
 
 _CORNER_CHORD_NM = 20_000.0
 _WASH_NM = 20
@@ -76,32 +76,43 @@ def pour_of(placement: Placement, limits: Limits, conductors: Sequence[Conductor
     own = _own_ground(placement, limits)
     filled = overlap(closed(joined([allowed, own]), limits.min_gap / 2.0), allowed)
     spaced = _spaced(filled, own, limits)
-    solid = _solid(spaced, own, limits)
-    washed = overlap(opened(solid, _WASH_NM), allowed)
-    return [sharpened(piece, _SHORT_NM) for piece in pieces(washed) if piece.area >= limits.island]
+    solid = without_necks(spaced, own, limits.row, limits)
+    return washed(solid, allowed, limits)
 
 
-def _solid(pour: BaseGeometry, own: BaseGeometry, limits: Limits) -> BaseGeometry:
-    """Return the pour without fins, and without necks too narrow to be etched.
+def washed(copper: BaseGeometry, allowed: BaseGeometry, limits: Limits) -> list[shapely.Polygon]:
+    """Return copper [nm] piece by piece, without what roundings left at its corners and without islands."""
+    smooth = overlap(opened(copper, _WASH_NM), allowed)
+    return [sharpened(piece, _SHORT_NM) for piece in pieces(smooth) if piece.area >= limits.island]
 
-    What is narrower than twice ``limits.row`` goes, but for short necks, which come back as they were: a cut
+
+def without_necks(pour: BaseGeometry, own: BaseGeometry, row: float, limits: Limits) -> BaseGeometry:
+    """Return ground copper without fins, and without necks too narrow to be etched.
+
+    What is narrower than twice ``row`` goes, but for short necks, which come back as they were: a cut
     through one would be a slit with sharp ends. A neck narrower than the least width is cut through squarely.
+
+    Args:
+        pour: The copper [nm].
+        own: Other ground copper that counts as part of it and stays as it is [nm].
+        row: Half of the width wanted [nm].
+        limits: The least width and gap.
     """
-    wide = opened(joined([pour, own]), limits.row)
-    healed = overlap(joined([wide, *_short_necks(pour, wide, limits)]), pour)
-    thin = _thin_necks(joined([healed, own]), 0.55 * limits.min_width)
+    wide = opened(joined([pour, own]), row)
+    healed = overlap(joined([wide, *_short_necks(pour, wide, row)]), pour)
+    thin = _thin_necks(joined([healed, own]), limits.neck)
     if not thin:
         return healed
     apart = cut(healed, joined(shapely.box(*grow(neck, limits.min_gap).bounds) for neck in thin))
-    return overlap(opened(joined([apart, own]), limits.row), apart)
+    return overlap(opened(joined([apart, own]), row), apart)
 
 
-def _short_necks(pour: BaseGeometry, wide: BaseGeometry, limits: Limits) -> list[shapely.Polygon]:
+def _short_necks(pour: BaseGeometry, wide: BaseGeometry, row: float) -> list[shapely.Polygon]:
     """Return what opening took off the pour between places that lie near each other.
 
     Such a piece fills the hollow between its contacts with what is left; a fin stands out from one contact.
     """
-    lost = [piece for piece in pieces(cut(pour, wide)) if piece.length < _NECK_ROUND * limits.row]
+    lost = [piece for piece in pieces(cut(pour, wide)) if piece.length < _NECK_ROUND * row]
     return [piece for piece in lost if _fills_hollow(piece, wide)]
 
 

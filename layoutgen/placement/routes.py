@@ -5,12 +5,13 @@ from __future__ import annotations
 from collections.abc import Iterator
 from dataclasses import dataclass, field
 
-from layoutgen.circuit import End, EndKind
+from layoutgen.circuit import End
 from layoutgen.placement.budgets import LineLengths
 from layoutgen.placement.frame import Box, Pose, unit
 from layoutgen.placement.meetings import Meetings
-from layoutgen.placement.model import GROUND, Model
-from layoutgen.placement.state import EDGES, State
+from layoutgen.placement.model import Model
+from layoutgen.placement.runs import Run, Runs
+from layoutgen.placement.state import EDGES, State, edge_of_heading
 from layoutgen.placement.tour import Tour
 from layoutgen.placement.words import (
     Route,
@@ -78,6 +79,7 @@ class Router:
     model: Model
     tour: Tour
     lengths: LineLengths
+    runs: Runs
     meetings: Meetings = field(init=False)
 
     def __post_init__(self) -> None:
@@ -96,13 +98,13 @@ class Router:
         name = end.element
         far = self.meetings.far(end)
         hinted = self._hinted_word(end)
-        port = self.meetings.port_at(far)
+        port = self.tour.port_at(far)
         if hinted is not None:
             yield from self._hinted(end, start, hinted, state, port)
         elif port is not None:
             yield from self._to_port(end, start, state, port, straight=straight)
-        elif (target := self._pinned_target(far, start, state)) is not None:
-            yield from self._to_pose(end, start, target, state)
+        elif aimed := list(self._aimed(end, start, state, straight=straight)):
+            yield from aimed
         elif self.model.sized.lines[name].free:
             yield from self._free(end, straight=straight)
         else:
@@ -199,17 +201,15 @@ class Router:
             [asked] if asked is not None else sorted(EDGES, key=lambda e: _turn_to(start.heading, EDGES[e]))
         )
         for edge in edges:
-            turn = (EDGES[edge] - start.heading) % 360.0
-            if turn % 90.0:
-                continue
-            yield from self._to_edge(end, start, state, port, edge, straight=straight and turn == 0.0)
+            on = start.heading == EDGES[edge]
+            yield from self._to_edge(end, start, state, port, edge, straight=straight and on)
 
     def _to_edge(
         self, end: End, start: Pose, state: State, port: str, edge: str, *, straight: bool
     ) -> Iterator[RouteChoice]:
         name = end.element
         across, along = self._port_targets(state, port, edge)
-        words = [w for w in _TARGET_WORDS if (start.heading + sum(w)) % 360.0 == EDGES[edge]]
+        words = _words_to(start.heading, EDGES[edge])
         if straight:
             words = [w for w in words if not w]
         x, y = (along, across) if unit(EDGES[edge])[0] else (across, along)
@@ -285,41 +285,69 @@ class Router:
             across = round(state.bounds.at(low)) + to_nm(record.at)
         return across, along
 
-    def _pinned_target(self, far: tuple[End, str] | None, start: Pose, state: State) -> Pose | None:
-        """Return where a line must end, heading that way, for the pinned part it leads to."""
-        if (
-            far is None
-            or far[1] == GROUND
-            or not (state.bounds.known("west") and state.bounds.known("south"))
-        ):
-            return None
-        hub = self.tour.hubs[far[1]]
-        if hub.arrival != far[0] or hub.bank or len(hub.arms) != 1 or hub.arms[0].end.kind is not EndKind.PAD:
-            return None
-        end = hub.arms[0].end
-        hint = self._hint(end.element)
-        if hint is None or hint.at is None:
-            return None
-        land = self.model.bodies[end.element].land_at(end)
-        straight_on = start.heading + 180.0 - land.heading
-        heading = straight_on if hint.heading is None else hint.heading
-        at = Pose(
-            round(state.bounds.x0) + to_nm(hint.at[0]),
-            round(state.bounds.y0) + to_nm(hint.at[1]),
-            heading % 360.0,
-        )
-        ux, uy = unit(at.heading)
-        inner = land.inner
-        x, y = at.x + inner.x * ux - inner.y * uy, at.y + inner.x * uy + inner.y * ux
-        return Pose(round(x), round(y), (at.heading + land.heading + 180.0) % 360.0)
+    # -- aims ----------------------------------------------------------------------------------------
+
+    def _aimed(self, end: End, start: Pose, state: State, *, straight: bool) -> Iterator[RouteChoice]:
+        """Yield routes that bring what stands at the end of a straight run to where it must be."""
+        run = self.runs.beyond(self.meetings.far(end))
+        free = self.model.sized.lines[end.element].free
+        if run is None or (run.lines and not free):
+            return
+        if run.is_port:
+            yield from self._to_edge_by_run(end, start, state, run, straight=straight)
+            return
+        hint = self._hint(run.name)
+        if hint is None:
+            return
+        if hint.at is not None and state.bounds.known("west") and state.bounds.known("south"):
+            x, y = round(state.bounds.x0) + to_nm(hint.at[0]), round(state.bounds.y0) + to_nm(hint.at[1])
+            heading = start.heading + run.pose.heading if hint.heading is None else hint.heading
+            yield from self._to_pose(end, start, run.start_for(Pose(x, y, heading % 360.0)), state)
+        elif hint.heading is not None:
+            yield from self._turned(end, start, state, (hint.heading - run.pose.heading) % 360.0)
+
+    def _to_edge_by_run(
+        self, end: End, start: Pose, state: State, run: Run, *, straight: bool
+    ) -> Iterator[RouteChoice]:
+        """Yield routes of a free line after which lines of given length end at an edge that is settled."""
+        edge = self.model.file.ports[run.name].edge or edge_of_heading(start.heading)
+        if edge is None or not state.bounds.known(edge) or not self.model.sized.lines[end.element].free:
+            return
+        across, along = self._port_targets(state, run.name, edge)
+        x, y = (along, across) if unit(EDGES[edge])[0] else (across, along)
+        goal = run.start_for(Pose(x or 0, y or 0, EDGES[edge]))
+        for word in _words_to(start.heading, goal.heading):
+            if straight and word:
+                continue
+            route = solve_legs(
+                word,
+                self._least(end, word),
+                start,
+                x=None if x is None else goal.x,
+                y=None if y is None else goal.y,
+            )
+            if route is not None:
+                yield RouteChoice(route)
+
+    def _turned(self, end: End, start: Pose, state: State, heading: float) -> Iterator[RouteChoice]:
+        """Yield routes by which a line turns to a heading [deg]; none where it has it already."""
+        words = _words_to(start.heading, heading)
+        if () in words:
+            return
+        if self.model.sized.lines[end.element].free:
+            for word in words:
+                yield from (RouteChoice(route) for route in self._stretched(end, word))
+            return
+        lengths = self.lengths.by_bends(end.element, state.roles)
+        for route in fixed_shapes(lengths, self.meetings.rules(end)):
+            if route.word in words:
+                yield RouteChoice(route)
 
     def _to_pose(self, end: End, start: Pose, target: Pose, state: State) -> Iterator[RouteChoice]:
         name = end.element
         free = self.model.sized.lines[name].free
         lengths = None if free else self.lengths.by_bends(name, state.roles)
-        for word in _TARGET_WORDS:
-            if (start.heading + sum(word)) % 360.0 != target.heading:
-                continue
+        for word in _words_to(start.heading, target.heading):
             if lengths is not None and len(word) >= len(lengths):
                 continue
             total = None if lengths is None else lengths[len(word)]
@@ -368,6 +396,14 @@ class Router:
         route = solve_legs(word, least, start, total=total, x=x, y=y, fixed=legs)
         if route is not None:
             yield RouteChoice(route, edge)
+
+
+def _words_to(heading: float, wanted: float) -> list[Word]:
+    """Return the words that turn a heading [deg] to another: of quarter turns, or a single other turn."""
+    turn = (wanted - heading) % 360.0
+    if turn % 90.0:
+        return [(turn if turn < 180.0 else turn - 360.0,)]
+    return [word for word in _TARGET_WORDS if sum(word) % 360.0 == turn]
 
 
 def _turn_to(heading: float, out: float) -> float:

@@ -17,6 +17,7 @@ from layoutgen.placement.model import GROUND, Model
 from layoutgen.placement.records import Choice
 from layoutgen.placement.rooms import Rooms
 from layoutgen.placement.routes import RouteChoice, Router
+from layoutgen.placement.runs import Runs
 from layoutgen.placement.state import EDGES, Growth, Pending, State
 from layoutgen.placement.tour import Headings, Tour, end_key
 from layoutgen.placement.words import Word, route_points
@@ -64,7 +65,7 @@ class Ways:
         """Set the helpers up."""
         kit = Kit(self.model, self.tour, self.lengths)
         self.layer = Layer(kit)
-        self.router = Router(self.model, self.tour, self.lengths)
+        self.router = Router(self.model, self.tour, self.lengths, Runs(self.layer))
         known: dict[object, list[Solution]] = {}
         count = len(self.tour.loops.clusters)
         self.clusters = [ClusterSolver(kit, self.router, k, known) for k in range(count)]

@@ -78,6 +78,24 @@ def test_plane_with_touching_clearances_is_still_right(boards: ModuleType, measu
         assert copper.distance(shapely.Point(hole.x, hole.y)) >= hole.diameter / 2 + 200_000
 
 
+@pytest.mark.parametrize("undercut", [0, 20_000])
+@pytest.mark.parametrize("web", [30_000, 110_000, 130_000, 150_000])
+def test_plane_has_no_neck_too_narrow_beside_a_hole(
+    boards: ModuleType, measures: ModuleType, web: int, undercut: int
+) -> None:
+    """Would catch a sliver of plane between a legal hole and the board's edge, or between two holes."""
+    board = boards.straight()
+    board.rules = {"copper": {"undercut": f"{undercut} nm"}}
+    at_edge, apart = (300_000 + web + 1_550_000) / 1e6, (3_100_000 + web) / 1e6
+    board.hole(at_edge, 12.0, 2.7).hole(20.0, 4.0, 2.7).hole(20.0 + apart, 4.0, 2.7)
+    copper = shapely.union_all(measures.areas(draw(board.placement()), "plane", layer="copper_bottom", undercut=undercut))
+    wide = copper.buffer(-62_400, join_style="mitre").buffer(62_400, join_style="mitre")
+    left = [piece for piece in shapely.get_parts(copper.difference(wide)) if piece.area > 1e9]
+    assert left == []
+    assert (copper.geom_type == "Polygon" and len(copper.interiors) == 3) == (web >= 138_000)
+    assert copper.area > 0.98 * (29.4e6 * 15.4e6 - 3 * math.pi * 1.55e6**2)
+
+
 def test_holes_are_those_of_the_placement_in_order(boards: ModuleType) -> None:
     """Would catch hole:N in findings pointing at another hole."""
     placement = boards.stage().hole(3.0, 3.0, 2.7, plated=True).placement()

@@ -88,6 +88,16 @@ def test_a_port_runs_to_the_profile_only_when_asked(boards: ModuleType) -> None:
     assert reaches == [300_000, 0]
 
 
+def test_a_port_at_the_profile_is_not_etched_back_from_it(boards: ModuleType, measures: ModuleType) -> None:
+    """Would catch artwork clipped at the profile, whose finished copper ends an undercut inside it."""
+    board = boards.BoardBuilder(20.0, 12.0)
+    board.rules = {"copper": {"undercut": "20 um"}}
+    board.line("main", [(0.0, 6.0), (19.7, 6.0)], 1.1, ("a", "b"))
+    board.port("rf_in", "a", 0.0, 6.0, 0.0, 1.1, to_edge=True).port("rf_out", "b", 19.7, 6.0, 180.0, 1.1)
+    (line,) = measures.areas(draw(board.placement()), "line", undercut=20_000)
+    assert line.bounds == (0, 5_450_000, 19_700_000, 6_550_000)
+
+
 def test_radial_stub_keeps_its_arc(boards: ModuleType) -> None:
     """Would catch an arc handed on as chords: DXF must show a true arc."""
     artwork = draw(boards.shorted().placement())
