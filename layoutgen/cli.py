@@ -12,6 +12,7 @@ import os
 import signal
 import sys
 from collections.abc import Callable, Iterable, Mapping, Sequence
+from contextlib import nullcontext
 from dataclasses import replace
 from datetime import date
 from functools import partial
@@ -106,11 +107,11 @@ _no_correction = click.option(
     "--for",
     "receivers",
     metavar="LIST",
-    default="none",
+    default="all",
     show_default=True,
     shell_complete=lambda context, parameter, typed: _receivers_like(typed),
-    help="Also write packages for these receivers, with commas: pcb-designer, board-house, mask-house, "
-    "assembly, test, reviewer; or all, or none.",
+    help="Whose packages to write, with commas: pcb-designer, board-house, mask-house, assembly, test, "
+    "reviewer; or all, or none.",
 )
 @click.option("--prove", is_flag=True, help="Read every file back and compare it with the model.")
 @_no_correction
@@ -130,22 +131,24 @@ def draw(
 
     Exit status: 1 findings of severity error (the files are written), 2 wrong input, 3 no placement.
     """
-    from layoutgen.writers import Job, encode, file_names, older_packages, prepare_folder, write_files
+    from layoutgen.writers import Job, file_names, older_packages, prepare_folder, write_files
 
     folder = out if out is not None else Path("out", circuit.stem)
     chosen = _receivers(receivers)
     prepare_folder(folder, (*file_names(circuit.stem), *(f"{name}/README.txt" for name in chosen)))
     result = _run(circuit, quiet, correction=not no_correction)
     job = Job(stem=circuit.stem, dpi=dpi, repeatable=repeatable)
-    files = encode(result, job)
-    files |= _packages(result, replace(job, files=files), chosen)
+    files = _encoded(result, job, chosen)
     write_files(folder, files)
     if not quiet:
         click.echo(f"open {folder / 'report.html'} for the picture, the tables and the findings", err=True)
         click.echo(_summary(result))
         _print_findings(result.findings, verbose)
-        for path in files:
+        for path in (path for path in files if "/" not in path):
             click.echo(f"wrote {folder / path}")
+        for name in chosen:
+            count = sum(path.startswith(f"{name}/") for path in files)
+            click.echo(f"wrote {folder / name} ({_many(count, 'file')})")
     if old := older_packages(folder, files):
         click.echo(
             f"of an earlier run, not of this drawing: {', '.join(old)} in {folder} (see --for)", err=True
@@ -178,10 +181,22 @@ def _receivers_like(typed: str) -> list[str]:
     return [f"{before}{comma}{name}" for name in names if name.startswith(last)]
 
 
+def _encoded(result: Result, job: Job, receivers: Sequence[str]) -> dict[str, bytes]:
+    """Return all files by their paths; the packages are encoded while the picture is painted."""
+    from layoutgen.aside import aside
+    from layoutgen.writers import ABOUT_ALL, FORMATS, encode
+
+    pictures = ("{stem}.png",)
+    files = encode(result, job, [name for name in FORMATS if name not in (*pictures, *ABOUT_ALL)])
+    work = partial(_packages, result, replace(job, files=dict(files)), receivers)
+    with aside(work) if receivers else nullcontext(dict) as packages:
+        files |= encode(result, job, pictures)
+        files |= packages()
+    return files | encode(result, replace(job, files=files), ABOUT_ALL)
+
+
 def _packages(result: Result, job: Job, receivers: Sequence[str]) -> dict[str, bytes]:
     """Return all receivers' files by their paths."""
-    if not receivers:
-        return {}
     from layoutgen.writers.packages import encode_packages
 
     return encode_packages(result, job, receivers)

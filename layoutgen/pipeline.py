@@ -18,11 +18,11 @@ from layoutgen.artwork import Artwork, Sketch, complete, sketch
 from layoutgen.checks import check
 from layoutgen.circuit import Circuit, build_circuit
 from layoutgen.errors import LayoutgenError
-from layoutgen.placement import Choices, Placement, place
+from layoutgen.placement import Choices, PlacedLine, Placement, place
 from layoutgen.placement.likes import with_like_lines
 from layoutgen.reading import CircuitFile, RuleFile, read_inputs
 from layoutgen.response import NOTE_RULE, LengthFit, correct_lengths, respond
-from layoutgen.sizing import SizedCircuit, placed_dc, size_circuit
+from layoutgen.sizing import SizedCircuit, placed_dc, size_circuit, sized_beside
 from layoutgen.writers import Result
 
 __all__ = ["Result", "run", "run_inputs"]
@@ -36,6 +36,9 @@ WORTH_A_NOTE = 0.002
 
 A pour that drops or gains a piece as the board grows by a step can keep a wide line from settling for good.
 """
+
+WORSE_FIT = 0.002
+"""By how much a drawing with widths at rest may miss the schematic more than one without [-]."""
 
 Fit = Callable[..., LengthFit]
 Tell = Callable[[str], None]
@@ -138,6 +141,8 @@ def _settled(circuit: Circuit, clock: _Clock, fit: Fit | None) -> tuple[Artwork,
             break
         sized = rounds[-1].again
     best = _best(rounds)
+    if best.move >= SETTLED and not _goes_round(rounds):
+        best = _with_rested_widths(best, clock, fit)
     if best.found.now > best.found.uncorrected:
         text = f"corrected lengths give a difference of {best.found.now:.4f}, the budgets' own less"
         return _uncorrected(circuit, clock, text)
@@ -145,6 +150,7 @@ def _settled(circuit: Circuit, clock: _Clock, fit: Fit | None) -> tuple[Artwork,
         artwork = complete(best.draft)
     with clock("sizing"):  # a piece of pour that holds no vias is dropped from the final drawing only
         asked, alike = _sizes_by_pour(artwork, best.alike)
+        artwork = with_drawn_pour(artwork)
     told = {note[1] for note in artwork.placement.notes}
     widths = _unsettled_widths(artwork.placement.sized, asked)
     notes = (note for note in alike if note[1] not in told)
@@ -166,8 +172,12 @@ class _Round:
     @property
     def settled(self) -> bool:
         """Whether the draft is as it asks to be."""
-        drawn = self.draft.placement.sized
-        return largest_move(drawn, self.again)[1] < SETTLED and self.again.corrections == drawn.corrections
+        return self.move < SETTLED and self.again.corrections == self.draft.placement.sized.corrections
+
+    @property
+    def move(self) -> float:
+        """By how much the pour asks a width to change, at most [m]."""
+        return largest_move(self.draft.placement.sized, self.again)[1]
 
 
 def _goes_round(rounds: Sequence[_Round]) -> bool:
@@ -223,6 +233,21 @@ def _best(rounds: Sequence[_Round]) -> _Round:
     return min(reversed(rounds), key=lambda drawn: drawn.found.now)
 
 
+def _with_rested_widths(best: _Round, clock: _Clock, fit: Fit | None) -> _Round:
+    """Return a draft drawn once more with the widths that its pour asks for, where these then stay.
+
+    Its corrections stay as they are. The draft itself is returned where widths do not rest so either, or where
+    the drawing moves away from the schematic.
+    """
+    drawn = best.draft.placement
+    sized = replace(best.again, corrections=drawn.sized.corrections)
+    try:
+        again = _asked(sized, _draft(sized, drawn.choices, clock), clock, fit, best.alike)
+    except LayoutgenError:
+        return best
+    return again if again.move < SETTLED and again.found.now <= best.found.now + WORSE_FIT else best
+
+
 def _uncorrected(circuit: Circuit, clock: _Clock, reason: str) -> tuple[Artwork, tuple[Note, ...]]:
     """Return the drawing with the lengths of the budgets alone, with a note that says why."""
     artwork, notes = _settled(circuit, clock, None)
@@ -257,6 +282,30 @@ def with_placed_bias(placement: Placement) -> Placement:
     lengths = {name: line.centre_line * 1e-9 for name, line in placement.lines.items()}
     lengths |= {name: pair.centre_line * 1e-9 for name, pair in placement.pairs.items()}
     return replace(placement, sized=placed_dc(placement.sized, lengths))
+
+
+def with_drawn_pour(artwork: Artwork) -> Artwork:
+    """Return the artwork with what its lines are worth beside the pour as drawn; nothing moves.
+
+    Angles of lines given by length follow; the budget of a line given by angle stays the one it was laid by.
+    """
+    placement = artwork.placement
+    sized = sized_beside(placement.sized, measured_gaps(artwork))
+    lines = {
+        name: line if sized.lines[name].angle is not None else _with_beta(line, placement.sized, sized)
+        for name, line in placement.lines.items()
+    }
+    return replace(artwork, placement=replace(placement, sized=sized, lines=lines))
+
+
+def _with_beta(line: PlacedLine, old: SizedCircuit, new: SizedCircuit) -> PlacedLine:
+    """Return a line with the angles of its own length and of its bends in its new cross-section."""
+    share = new.lines[line.name].beta / old.lines[line.name].beta
+    budget = tuple(
+        replace(entry, angle=entry.angle * share) if entry.cause in ("line", "bend") else entry
+        for entry in line.budget
+    )
+    return replace(line, budget=budget, angle=math.fsum(entry.angle for entry in budget))
 
 
 def measured_gaps(artwork: Artwork) -> dict[str, tuple[float, float]]:

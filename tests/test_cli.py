@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import hashlib
 import json
 import os
 import random
@@ -165,7 +166,10 @@ def test_draw_writes_the_files_of_the_contract(circuit: Path, capsys: pytest.Cap
     """The names people script against; the first message says what to open."""
     out = circuit.parent / "made"
     assert status_of(["draw", str(circuit), "--out", str(out)]) == 0
-    assert sorted(p.name for p in out.iterdir()) == [
+    packages = ["assembly", "board-house", "mask-house", "pcb-designer", "reviewer", "test"]
+    assert sorted(p.name for p in out.iterdir() if p.is_dir()) == packages
+    assert all((out / name / "README.txt").is_file() for name in packages)
+    assert sorted(p.name for p in out.iterdir() if p.is_file()) == [
         "as_drawn.s2p", "circuit.dxf", "circuit.gds", "circuit.png", "circuit.svg", "report.html",
         "report.json", "wanted.s2p",
     ]  # fmt: skip
@@ -193,9 +197,15 @@ def test_repeatable_runs_are_the_same_byte_for_byte(circuit: Path) -> None:
         environment = {**os.environ, "PYTHONHASHSEED": str(seed + 1)}
         command = [*COMMAND, "draw", str(circuit), "--out", str(folder), "--repeatable", "-q"]
         subprocess.run(command, check=True, env=environment)
-    files = [{p.name: p.read_bytes() for p in folder.iterdir()} for folder in folders]
-    assert len(files[0]) == 8
+    files = [
+        {p.relative_to(folder).as_posix(): p.read_bytes() for p in folder.rglob("*") if p.is_file()}
+        for folder in folders
+    ]
+    assert len(files[0]) > 30
     assert files[0] == files[1]
+    listed = json.loads(files[0]["report.json"])["files"]
+    assert {entry["path"] for entry in listed} == set(files[0]) - {"report.json"}
+    assert all(entry["sha256"] == hashlib.sha256(files[0][entry["path"]]).hexdigest() for entry in listed)
 
 
 def test_findings_of_severity_error_give_status_one(
@@ -381,13 +391,14 @@ def whole_set(folder: Path) -> dict[str, bytes]:
 def test_killed_at_twenty_moments_the_files_are_a_whole_set(circuit: Path) -> None:
     """The folder holds the old set or the new one, whatever moment the run was killed at."""
     out = circuit.parent / "out"
-    draw = [*COMMAND, "draw", str(circuit), "--out", str(out), "--repeatable", "-q"]
+    options = ["--for", "none", "--repeatable", "-q"]  # packages: tests/writers/test_kills.py
+    draw = [*COMMAND, "draw", str(circuit), "--out", str(out), *options]
     subprocess.run(draw, check=True)
     old = {p.name: p.read_bytes() for p in out.iterdir()}
     circuit.write_text(GOOD.replace('"90 deg"', '"80 deg"'))
     start = time.perf_counter()
     other = circuit.parent / "other"
-    subprocess.run([*COMMAND, "draw", str(circuit), "--out", str(other), "--repeatable", "-q"], check=True)
+    subprocess.run([*COMMAND, "draw", str(circuit), "--out", str(other), *options], check=True)
     takes = time.perf_counter() - start
     new = {p.name: p.read_bytes() for p in other.iterdir()}
     assert old != new

@@ -141,7 +141,7 @@ def test_it_draws_again_until_widths_rest(
     restless += [4e-6, 1.5e-6, 0.4e-6, 0.0]
     result = pipeline.run_inputs(notch.circuit, notch.rules, correction=False)
     assert len(drawings) == 3 + 1
-    assert result.artwork is drawings[-1]
+    assert result.artwork.shapes is drawings[-1].shapes
     assert [bool(artwork.on("profile")) for artwork in drawings] == [False, False, False, True]
     assert result.notes == ()
     assert result.placement.lines["left"].width == round(result.sized.lines["left"].width * 1e9)
@@ -150,15 +150,65 @@ def test_it_draws_again_until_widths_rest(
 def test_it_says_when_widths_do_not_settle(
     notch: layoutgen.Inputs, restless: list[float], drawings: list[Artwork]
 ) -> None:
-    """After four drafts the last one is drawn, with a note that names the line and how far off it is."""
+    """After four drafts and one more the fourth is drawn, with a note that says which line is how far off."""
     restless += [5e-6] * 9
     result = pipeline.run_inputs(notch.circuit, notch.rules, correction=False)
-    assert len(drawings) == pipeline.MAX_ROUNDS + 1 == 5
+    assert len(drawings) == pipeline.MAX_ROUNDS + 2 == 6
+    assert result.artwork.shapes is drawings[-1].shapes
+    assert drawings[-1].placement.lines["left"].width == drawings[3].placement.lines["left"].width
     (note,) = result.notes
     assert note[0] == "assumption.pour"
     assert note[1] in result.sized.lines
-    assert "10.0 um" in note[2]  # asked once more by the last draft, and once by the final drawing
+    assert "15.0 um" in note[2]  # asked by the last draft, by the one more, and by the final drawing
     assert result.findings[-1 - len(result.response.notes if result.response else ())].severity == "note"
+
+
+def test_it_draws_once_more_where_widths_then_rest(
+    notch: layoutgen.Inputs, restless: list[float], drawings: list[Artwork]
+) -> None:
+    """Widths that only the last draft asks for would be told in a note, and not drawn."""
+    restless += [5e-6] * pipeline.MAX_ROUNDS
+    result = pipeline.run_inputs(notch.circuit, notch.rules, correction=False)
+    assert len(drawings) == pipeline.MAX_ROUNDS + 2
+    assert drawings[-1].placement is drawings[-2].placement
+    assert result.notes == ()
+
+
+SUPPLIED: dict[str, Any] = {
+    **NOTCH,
+    "ground": {},
+    "ports": {
+        "a": {"net": "in", "edge": "west"},
+        "b": {"net": "out", "edge": "east"},
+        "v": {"net": "v", "kind": "dc", "voltage": "12 V", "edge": "north"},
+    },
+    "lines": {
+        "main": {"nets": ["in", "out"], "impedance": "50 ohm", "length": "free"},
+        "supply": {"nets": ["v", "b"], "length": "free"},
+    },
+    "parts": {"C1": {"kind": "capacitor", "nets": ["b", "gnd"], "value": "1 nF", "case": "0603"}},
+}
+
+
+def test_what_a_line_is_worth_belongs_to_the_pour_as_drawn() -> None:
+    """Would catch impedance and permittivity of the assumed pour beside the distances of the drawn one."""
+    from layoutgen.formulas.microstrip import kirschning_jansen_1982_permittivity
+    from layoutgen.formulas.pour import microstrip_beside_pour
+
+    inputs = inputs_from_data(SUPPLIED)
+    result = pipeline.run_inputs(inputs.circuit, inputs.rules, correction=False)
+    copper, line = result.artwork.line_copper["supply"], result.placement.lines["supply"]
+    gaps = [math.inf if gap is None else gap / 508e3 for gap in (copper.gap_left, copper.gap_right)]
+    assert max(gaps) > 1.0  # half a height is what the sizing asked for
+    u, t = line.width / 508e3, 35.0 / 508.0
+    section = microstrip_beside_pour(u, 3.55, t, *gaps)
+    ee = kirschning_jansen_1982_permittivity(section.effective_permittivity, u, 3.55, 2.245e9 * 508e-6)
+    sized = result.sized.lines["supply"]
+    assert sized.impedance == pytest.approx(float(section.impedance), rel=1e-9)
+    assert sized.effective_permittivity == pytest.approx(float(ee), rel=1e-9)
+    assert line.angle == math.fsum(entry.angle for entry in line.budget)
+    (own,) = (entry.angle for entry in line.budget if entry.cause == "line")
+    assert own == pytest.approx(sized.beta * line.centre_line * 1e-9, rel=1e-9)
 
 
 def test_bias_is_that_of_the_lengths_as_placed() -> None:

@@ -96,13 +96,31 @@ def _layer(
 
 def _tails(artwork: Artwork, limits: Limits) -> Mapping[str, tuple[str, shapely.Polygon]]:
     """Return for each line that ends on gnd its other net, and the region at its end that counts as gnd."""
-    gaps = pour_gaps(artwork)
-    corner = CORNER_LIMITS * (limits.nm("copper.min_gap") or 0.0)
+    gaps, gap = pour_gaps(artwork), limits.nm("copper.min_gap") or 0.0
     lines = artwork.placement.lines
-    return {
-        name: (net, tail_of(lines[name], gaps.get(name, 0.0) + corner + lines[name].width))
-        for name, net in drawn_conductors(artwork).items()
-    }
+    tails = {}
+    for name, net in drawn_conductors(artwork).items():
+        wanted = gaps.get(name, 0.0) + CORNER_LIMITS * gap + lines[name].width
+        clear = lines[name].centre_line - _reach_of_others(artwork, name, net) - gap - TOLERANCE_NM
+        tails[name] = (net, tail_of(lines[name], max(min(wanted, clear), gap)))
+    return tails
+
+
+def _reach_of_others(artwork: Artwork, name: str, net: str) -> float:
+    """Return how far the copper of other lines and pads of a net may reach along a line from its node [nm].
+
+    What counts as gnd ends short of it: a short stub does not short what it leaves.
+    """
+    placement = artwork.placement
+    both = (*placement.lines.values(), *placement.pairs.values())
+    halves = [other.width / 2.0 for other in both if net in other.nets and other.name != name]
+    pads = [
+        float(np.ptp(pad.outline.points, axis=0).max())
+        for part in placement.parts.values()
+        for pad in part.pads
+        if pad.net == net
+    ]
+    return max([*halves, *pads], default=0.0)
 
 
 def _pieces(

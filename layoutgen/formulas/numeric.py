@@ -58,7 +58,9 @@ def elliptic_ratio(k: ArrayLike, k_prime: ArrayLike) -> Array:
     >>> float(elliptic_ratio(0.5**0.5, 0.5**0.5))
     1.0
     """
-    return np.asarray(_mean_of_one_and(k) / _mean_of_one_and(k_prime))
+    k, k_prime = np.broadcast_arrays(k, k_prime)
+    means = _mean_of_one_and(np.stack([k, k_prime]))
+    return np.asarray(means[0] / means[1])
 
 
 def _mean_of_one_and(k: ArrayLike) -> Array:

@@ -61,13 +61,14 @@ def ghione_naldi_1983(u: ArrayLike, er: ArrayLike, gap: ArrayLike) -> LineResult
 def _slot_ratios(u: Array, s: Array) -> tuple[Array, Array]:
     """Return K(k)/K(k') [-] of the half-space above the strip and of the slab below it."""
     total = u + 2.0 * s
-    above = elliptic_ratio(u / total, 2.0 * np.sqrt(s * (u + s)) / total)
+    wide, wide_prime = u / total, 2.0 * np.sqrt(s * (u + s)) / total
     a, b = 0.25 * math.pi * u, 0.25 * math.pi * total
     shrink_a, shrink_b = np.exp(-2.0 * a), np.exp(-2.0 * b)
     k = np.tanh(a) / np.tanh(b)
     product = -np.expm1(-2.0 * (b - a)) * -np.expm1(-2.0 * (b + a))
     k_prime = 2.0 * np.exp(-a) * np.sqrt(product) / ((1.0 + shrink_a) * (1.0 - shrink_b))
-    return above, elliptic_ratio(k, k_prime)
+    above, below = elliptic_ratio(np.stack([wide, k]), np.stack([wide_prime, k_prime]))
+    return above, below
 
 
 def microstrip_beside_pour(
@@ -111,8 +112,9 @@ def microstrip_beside_pour(
             np.broadcast_to(bare.in_range, shape),
         )
     c_air = ETA0 / (bare.impedance * np.sqrt(bare.effective_permittivity))
-    more = pour_capacitance_increment(u, er, t, gap_left, gap_right)
-    more_air = pour_capacitance_increment(u, 1.0, t, gap_left, gap_right)
+    shape = np.broadcast_shapes(u.shape, er.shape, t.shape, gap_left.shape, gap_right.shape)
+    with_air = np.stack([np.broadcast_to(er, shape), np.ones(shape)])
+    more, more_air = pour_capacitance_increment(u, with_air, t, gap_left, gap_right)
     factor, factor_air = 1.0 + more / (c_air * bare.effective_permittivity), 1.0 + more_air / c_air
     none = np.minimum(gap_left, gap_right) >= NO_POUR_GAP
     in_range = bare.in_range & (none | _pour_in_range(u, er, t, np.minimum(gap_left, gap_right)))
@@ -152,16 +154,18 @@ def pour_capacitance_increment(
     left, right = np.clip(gap_left, 1e-6, NO_POUR_GAP), np.clip(gap_right, 1e-6, NO_POUR_GAP)
     thin = hammerstad_jensen_1980(u, er)
     bare = ETA0 * np.sqrt(thin.effective_permittivity) / thin.impedance
-    more_left = _thin_increment(u, er, bare, left)
-    more_right = more_left if left is right else _thin_increment(u, er, bare, right)
+    wide, near, far = np.broadcast_arrays(u, left, right)
+    above, below = _slot_ratios(wide, np.stack([near, far]))
+    more_left, more_right = (
+        _thin_increment(er, bare, s, above[k], below[k]) for k, s in enumerate((left, right))
+    )
     walls = 0.5 * (_wall_increment(u, er, t, left) + _wall_increment(u, er, t, right))
     mean = 0.5 * (more_left + more_right)
     return np.asarray(mean + walls + (bare + mean) * _crowding(u, er, more_left / bare, more_right / bare))
 
 
-def _thin_increment(u: Array, er: Array, bare: Array, s: Array) -> Array:
+def _thin_increment(er: Array, bare: Array, s: Array, above: Array, below: Array) -> Array:
     """Return the increment [-] of the thin strip with the pour at the gap s on both sides."""
-    above, below = _slot_ratios(u, s)
     slot = 2.0 * (above + er * below)
     power = 23.0 * s**0.25 + 97.0 * (er - 1.0) / (er + 1.0)
     larger, smaller = np.maximum(bare, slot), np.minimum(bare, slot)

@@ -110,6 +110,7 @@ def edge_margins(limits: Limits, pour_gap: int, ground_ring: int, *, tight: bool
     """Return how far inside the profile [nm] each kind stays.
 
     With ground, lines want their pour and a ring with vias all round; ``tight`` asks only what the rules do.
+    Ground copper of parts and lines ends with lands of vias, whose holes keep a distance of their own.
     """
     ring = 0 if tight else ground_ring
     beside = 0 if tight or not ground_ring else pour_gap + ring
@@ -118,7 +119,7 @@ def edge_margins(limits: Limits, pour_gap: int, ground_ring: int, *, tight: bool
         Kind.SUPPLY: limits.margin + (0 if tight else ring),
         Kind.PAD: limits.margin + (0 if tight else ring),
         Kind.STRIP: limits.margin + (0 if tight else ring),
-        Kind.GROUND: limits.margin,
+        Kind.GROUND: max(limits.margin, limits.hole_edge - (limits.land - limits.drill) // 2),
         Kind.BODY: limits.margin,
         Kind.CUTOUT: limits.margin + max(ring, limits.margin),
         Kind.HOLE: max(limits.hole_edge, limits.margin, limits.margin + limits.hole + ring),

@@ -271,11 +271,11 @@ class Layer:
         """Put a junction's node just beyond a pad and leave its arms, or its cluster, pending."""
         body, land = left
         sides = [*(arm.end for arm in hub.arms if arm.turn is None), *hub.inner]
-        half = max((self.kit.across(end) // 2 for end in sides), default=0)
+        half = max(0, max((self.kit.across(end) // 2 for end in sides), default=0) - OVERLAP)
         parts = max((self._breadth(end) for end in sides if end.kind is EndKind.PAD), default=0)
         if parts:
             half = max(half, parts + beyond(body, land))
-        node = ahead(outer, max(0, half - OVERLAP))
+        node = ahead(outer, half)
         if half:
             width = min(strip_width(self.kit.model, hub.net), land.across)
             self.kit.strip(growth, hub.net, width, (ahead(outer, -OVERLAP).point, node.point))

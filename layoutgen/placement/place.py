@@ -16,6 +16,7 @@ from layoutgen.placement.records import Choices, Placement
 from layoutgen.placement.search import Effort, Failure, Search, drawing_cost
 from layoutgen.placement.start import first_states, join_root
 from layoutgen.placement.state import State
+from layoutgen.placement.stubs import refuse_hidden_stubs
 from layoutgen.placement.tour import plan_tour
 from layoutgen.placement.ways import Ways
 from layoutgen.sizing import SizedCircuit
@@ -78,6 +79,7 @@ def _prepared(model: Model) -> tuple[Ways, InfeasibleError | None]:
     while True:
         tour = plan_tour(model, cut)
         lengths = LineLengths(model, tour)
+        refuse_hidden_stubs(model, tour, lengths)
         for name, line in model.sized.lines.items():
             if not line.free:
                 lengths.by_bends(name)

@@ -25,7 +25,7 @@ __all__ = ["Rooms"]
 _LEAST_WEIGHT = 4  # elements beyond a free line from which on it makes room
 _HEAVY = 12  # elements
 _EXTRA = (0, 1_000_000, 3_000_000)  # more than needed [nm]
-_GRID = 20  # [nm]
+_SLACK = 100_000  # [nm]: by so much like branches may differ when their widths follow the pour
 
 Span = tuple[int, int]
 
@@ -129,7 +129,7 @@ class Rooms:
     @property
     def _gap(self) -> int:
         """What each branch keeps from the centre [nm]."""
-        return self.router.model.limits.spacing // 2 + _GRID
+        return self.router.model.limits.spacing // 2 + _SLACK
 
     def _span(self, end: End, heading: float) -> Span | None:
         """Return how far what hangs on a line reaches [nm], low and high to the left of its arrival."""

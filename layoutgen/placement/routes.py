@@ -227,9 +227,9 @@ class Router:
                 if ended is not None and ended.legs[-1] >= route.legs[-1]:
                     yield RouteChoice(ended, edge)
 
-    def _least(self, end: End, word: Word) -> tuple[int, ...]:
+    def _least(self, end: End, word: Word, *, to_port: bool = True) -> tuple[int, ...]:
         if not word:
-            return (self.meetings.least_free(end, to_port=True),)
+            return (self.meetings.least_free(end, to_port=to_port),)
         return least_legs(word, self.meetings.rules(end))
 
     def _stretched(self, end: End, word: Word) -> Iterator[Route]:
@@ -321,7 +321,7 @@ class Router:
                 continue
             route = solve_legs(
                 word,
-                self._least(end, word),
+                self._least(end, word, to_port=False),
                 start,
                 x=None if x is None else goal.x,
                 y=None if y is None else goal.y,
@@ -351,7 +351,7 @@ class Router:
             if lengths is not None and len(word) >= len(lengths):
                 continue
             total = None if lengths is None else lengths[len(word)]
-            least = self._least(end, word) if free else self._fixed_least(end, word)
+            least = self._least(end, word, to_port=False) if free else self._fixed_least(end, word)
             route = solve_legs(word, least, start, total=total, x=target.x, y=target.y)
             if route is not None:
                 yield RouteChoice(route)

@@ -32,7 +32,7 @@ from layoutgen.sizing.records import (
     SizedPair,
     SizedRadial,
 )
-from layoutgen.sizing.size import placed_dc, size_circuit, strip_width
+from layoutgen.sizing.size import placed_dc, size_circuit, sized_beside, strip_width
 
 __all__ = [
     "Arm",
@@ -57,6 +57,7 @@ __all__ = [
     "pad_correction",
     "placed_dc",
     "size_circuit",
+    "sized_beside",
     "strip_width",
     "tee_order",
     "via_correction",

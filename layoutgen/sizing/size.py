@@ -18,7 +18,7 @@ from layoutgen.sizing.records import SizedCircuit
 from layoutgen.sizing.stackup import Stackup
 from layoutgen.sizing.supplies import dc_resistances, supply_width, with_supplies
 
-__all__ = ["placed_dc", "size_circuit", "strip_width"]
+__all__ = ["placed_dc", "size_circuit", "sized_beside", "strip_width"]
 
 
 def size_circuit(
@@ -95,6 +95,23 @@ def placed_dc(sized: SizedCircuit, lengths: Mapping[str, float]) -> SizedCircuit
             for name, pair in sized.pairs.items()
         },
     )
+
+
+def sized_beside(sized: SizedCircuit, measured: Mapping[str, tuple[float, float]]) -> SizedCircuit:
+    """Return the sized circuit with what its lines are worth beside the pour as drawn; widths stay.
+
+    Args:
+        sized: The sized circuit.
+        measured: By line, the pour's distance (left, right) in the drawing, infinity for none [m]; the others
+            keep that of the sizing.
+    """
+    stackup = Stackup.of(sized.circuit)
+    gaps = {}
+    for name, line in sized.lines.items():
+        left, right = measured.get(name, (line.gap_left, line.gap_right))
+        gaps[name] = line.pour_gap, stackup.gap_or_none(left), stackup.gap_or_none(right)
+    widths = {name: line.width for name, line in sized.lines.items()}
+    return replace(sized, lines=sized_lines(sized.circuit, stackup, gaps, widths))
 
 
 def strip_width(sized: SizedCircuit, current: float) -> float:

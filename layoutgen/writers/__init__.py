@@ -23,6 +23,7 @@ from layoutgen.writers.svg import artwork_svg, write_svg
 from layoutgen.writers.touchstone import write_as_drawn, write_wanted
 
 __all__ = [
+    "ABOUT_ALL",
     "DEFAULT_DPI",
     "FORMATS",
     "TRACE_HEADS",
@@ -54,6 +55,8 @@ FORMATS: dict[str, Writer] = {
     "report.json": write_report_json,
 }
 """File names and their writers, in the order of writing: the last two quote or list the files before them."""
+ABOUT_ALL = ("report.html", "report.json")
+"""Those that list all other files of a run."""
 
 
 def encode(result: Result, job: Job, formats: Iterable[str] = FORMATS) -> dict[str, bytes]:
@@ -61,7 +64,8 @@ def encode(result: Result, job: Job, formats: Iterable[str] = FORMATS) -> dict[s
 
     Args:
         result: Every stage's result.
-        job: Stem, resolution, and whether to leave out what differs from run to run.
+        job: Stem, resolution, and whether to leave out what differs from run to run; its ``files`` are taken
+            as written before these.
         formats: Keys of :data:`FORMATS`; those of the response are skipped where there is none.
     """
     files: dict[str, bytes] = {}
@@ -70,7 +74,7 @@ def encode(result: Result, job: Job, formats: Iterable[str] = FORMATS) -> dict[s
             continue
         ports = len(result.response.ports) if result.response else 0
         name = pattern.format(stem=job.stem, ports=ports)
-        files[name] = FORMATS[pattern](result, replace(job, files=dict(files)))
+        files[name] = FORMATS[pattern](result, replace(job, files={**job.files, **files}))
     return files
 
 

@@ -3,10 +3,13 @@
 from __future__ import annotations
 
 import copy
+from collections.abc import Callable
 from typing import Any
 
 import pytest
+import shapely
 
+from layoutgen.artwork import draw
 from layoutgen.circuit import build_circuit
 from layoutgen.placement import Placement, place
 from layoutgen.reading import inputs_from_data
@@ -144,3 +147,41 @@ def test_mirrored_hints_mirror_the_artwork(name: str) -> None:
     plain, other = placed(DESIGNS[name]), placed(mirrored(DESIGNS[name]))
     assert (plain.width, plain.height) == (other.width, other.height)
     assert is_moved(plain, other, lambda x, y: (x, -y)) == []
+
+
+Move = Callable[[int, int], tuple[int, int]]
+
+
+def drawn(data: dict[str, Any], move: Move) -> dict[str, shapely.Geometry]:
+    """Return signal copper, pour and paste as moved [half nm, from the board's middle]."""
+    artwork = draw(placed(data))
+    w, h = artwork.placement.width, artwork.placement.height
+    found: dict[str, list[shapely.Polygon]] = {"signal": [], "pour": [], "paste": []}
+    for shape in (*artwork.on("copper_top"), *artwork.on("paste_top")):
+        kind = "paste" if shape.layer == "paste_top" else "signal" if shape.net != "gnd" else shape.role
+        if kind in found:
+            rings = [ring.chords(900.0) for ring in (shape.outline, *shape.holes)]
+            moved = [[move(2 * x - w, 2 * y - h) for x, y in ring] for ring in rings]
+            found[kind].append(shapely.Polygon(moved[0], moved[1:]))
+    return {kind: shapely.union_all(shapes) for kind, shapes in found.items()}
+
+
+def differs(a: shapely.Geometry, b: shapely.Geometry) -> bool:
+    """True when two areas differ by more than a nanometre along their edges."""
+    return bool(shapely.symmetric_difference(a, b).area > 4.0 * (a.length + 1.0))
+
+
+COPPER_MOVES: dict[str, tuple[Callable[[dict[str, Any]], dict[str, Any]], Move]] = {
+    "quarter": (lambda data: turned(data, 1), lambda x, y: (-y, x)),
+    "half": (lambda data: turned(data, 2), lambda x, y: (-x, -y)),
+    "mirror": (mirrored, lambda x, y: (x, -y)),
+}
+
+
+@pytest.mark.parametrize("how", COPPER_MOVES)
+def test_copper_and_pour_move_with_the_hints(how: str) -> None:
+    """Catches a pour that is cleaned otherwise in one direction than in another, or copper off by a bit."""
+    change, move = COPPER_MOVES[how]
+    plain = drawn(DESIGNS["through"], move)
+    other = drawn(change(DESIGNS["through"]), lambda x, y: (x, y))
+    assert [kind for kind in plain if differs(plain[kind], other[kind])] == []
