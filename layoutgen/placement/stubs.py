@@ -15,6 +15,7 @@ from layoutgen.sizing import SizedLine
 __all__ = ["refuse_hidden_stubs"]
 
 _MM = 1e6
+_SLACK = 30_000  # [nm]: what the pour as drawn may change of widths, so that the angle named does for good
 
 
 def refuse_hidden_stubs(model: Model, tour: Tour, lengths: LineLengths) -> None:
@@ -32,7 +33,7 @@ def refuse_hidden_stubs(model: Model, tour: Tour, lengths: LineLengths) -> None:
         if not line.free and (end := _foot(model, line.name)) is not None
         for length in (lengths.by_bends(line.name)[0],)
         for least in (_host_reach(model, tour.hubs[model.net_of(end)], end) + _beyond(model, line.name),)
-        if length < least
+        if length < least - _SLACK
     ]
     if faults:
         raise WrongInputError(faults)
