@@ -236,7 +236,7 @@ def _best(rounds: Sequence[_Round]) -> _Round:
 def _with_rested_widths(best: _Round, clock: _Clock, fit: Fit | None) -> _Round:
     """Return a draft drawn once more with the widths that its pour asks for, where these then stay.
 
-    Its corrections stay as they are. The draft itself is returned where widths do not rest so either, or where
+    Its corrections stay as they are. The draft itself is returned where widths do not rest even so, or where
     the drawing moves away from the schematic.
     """
     drawn = best.draft.placement

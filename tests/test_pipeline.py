@@ -10,6 +10,7 @@ from pathlib import Path
 from typing import Any
 
 import pytest
+import shapely
 
 import layoutgen
 from layoutgen import pipeline
@@ -209,6 +210,31 @@ def test_what_a_line_is_worth_belongs_to_the_pour_as_drawn() -> None:
     assert line.angle == math.fsum(entry.angle for entry in line.budget)
     (own,) = (entry.angle for entry in line.budget if entry.cause == "line")
     assert own == pytest.approx(sized.beta * line.centre_line * 1e-9, rel=1e-9)
+
+
+def test_pour_follows_a_coplanar_line_over_its_whole_length() -> None:
+    """Would catch the wider distance of the microstrip lines beside it kept far into the coplanar line."""
+    lines = {
+        "left": {"nets": ["a", "m"], "impedance": "50 ohm", "length": "free"},
+        "slab": {
+            "nets": ["m", "n"],
+            "kind": "grounded_coplanar",
+            "gap": "0.3 mm",
+            "impedance": "50 ohm",
+            "angle": "40 deg",
+        },
+        "right": {"nets": ["n", "b"], "impedance": "50 ohm", "length": "free"},
+    }
+    inputs = inputs_from_data({**NOTCH, "ground": {}, "lines": lines})
+    result = pipeline.run_inputs(inputs.circuit, inputs.rules, correction=False)
+    assert [f.text for f in result.findings if f.counts] == []
+    slab = result.placement.lines["slab"]
+    (x0, y), (x1, _) = sorted(slab.path)
+    pours = [s.outline.polygon() for s in result.artwork.shapes if s.role == "pour"]
+    for side in (-1, 1):
+        beside = shapely.box(x0 + 301_000, y, x1 - 301_000, y + side * (slab.width / 2 + 310_000))
+        assert sum(beside.intersection(pour).area for pour in pours) > 0.9 * 10_000 * (x1 - x0 - 602_000)
+        assert min(beside.distance(pour) for pour in pours) == 0.0
 
 
 def test_bias_is_that_of_the_lengths_as_placed() -> None:

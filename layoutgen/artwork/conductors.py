@@ -97,6 +97,7 @@ class _Room:
         self.cutouts = joined(grow(cutout, limits.edge) for cutout in cutouts)
         self.to_edge = {port.net for port in placement.ports.values() if port.to_edge}
         self.port_ends = {(port.x, port.y) for port in placement.ports.values()}
+        self.coplanar = _coplanar_gaps(placement, limits)
 
     def trimmed(self, ring: Ring, nets: Sequence[str]) -> tuple[BaseGeometry, tuple[Ring, ...]]:
         """Return finished copper and its outlines, cut back from cut-outs and the profile."""
@@ -129,11 +130,24 @@ class _Room:
     def reach(self, end: Point, net: str, gap: int) -> int:
         """Return how far the pour's keep-out reaches past a line's end [nm].
 
-        Nothing past an end on ground, which the pour is to meet; to the profile and beyond past a port.
+        Nothing past an end on ground, which the pour is to meet; to the profile and beyond past a port; past
+        an end at a grounded coplanar line, which the pour is to follow, no more than that one's own distance.
         """
         if net == GND:
             return 0
-        return gap + (2 * self.limits.margin if end in self.port_ends else 0)
+        if end in self.port_ends:
+            return gap + 2 * self.limits.margin
+        return min(gap, self.coplanar.get(net, gap))
+
+
+def _coplanar_gaps(placement: Placement, limits: Limits) -> Mapping[str, int]:
+    """Return the pour's distance from the nearest-poured grounded coplanar line at each net that has one."""
+    gaps: dict[str, int] = {}
+    for name, line in placement.sized.circuit.file.lines.items():
+        if line.kind == "grounded_coplanar" and name in placement.lines:
+            gap = _gap(placement.sized.lines[name].pour_gap, limits)
+            gaps.update({net: min(gap, gaps.get(net, gap)) for net in line.nets})
+    return gaps
 
 
 def _valid(ring: Ring) -> BaseGeometry:

@@ -112,6 +112,24 @@ class Drills:
                 return False
         return True
 
+    def move(self, old: Point, x: float, y: float, reach: float) -> bool:
+        """Move a via set here to the nearest whole nanometre if it may stand there; tell whether it does.
+
+        It stays where it was the neighbour of a via within a reach [nm] that it would then be out of.
+        """
+        new = round(x), round(y)
+        square = self._book.get((old[0] // self._square, old[1] // self._square), [])
+        if old not in self.added or not shapely.intersects_xy(self.area, *new):
+            return False
+        near = [(vx, vy) for vx, vy, _ in self.near(*old, reach)]
+        square.remove((*old, self._drill))
+        if not self.free(*new) or any(math.dist(new, via) > reach for via in near if via != old):
+            self._enter(*old, self._drill)
+            return False
+        self._enter(*new, self._drill)
+        self.added[self.added.index(old)] = new
+        return True
+
     def put(self, x: float, y: float) -> bool:
         """Set a via at the nearest whole nanometre if it may stand there; tell whether it does."""
         px, py = round(x), round(y)

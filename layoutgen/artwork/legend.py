@@ -37,10 +37,13 @@ _PART_TRIES = ((True, _NEAR_NM), (False, _NEAR_NM), (True, _FAR_NM), (False, _FA
 _PORT_TRIES = ((True, _NEAR_NM), (True, _FAR_NM), (False, _NEAR_NM), (False, _FAR_NM))
 _SLIDES = tuple(sign * k / 8.0 for k in range(10) for sign in ((1.0, -1.0) if k else (1.0,)))
 _AT_ONCE = 64
+_APART, _TITLE_APART = 0.5, 1.0
+"""Distance of names, and of the title, from other texts over the height of their letters [-]."""
 _TITLE_STEP_NM = 500_000
 _TITLE_LINES = 4
 _PORT_LENGTH_NM = 1_500_000
 _EDGE_NM = 500_000
+_FEW_VERTICES = 40
 _RULE = "legend.min_distance"
 
 Box = tuple[float, float, float, float]
@@ -139,7 +142,7 @@ class _Printer:
         self._homes = [_part_box(part) for part in placement.parts.values()]
         self.shapes: list[Shape] = []
         self.areas: list[shapely.Polygon] = []
-        self._taken: list[Box] = []
+        self._taken: list[tuple[float, ...]] = []  # boxes of texts, and what each keeps clear about it [nm]
         self.notes: list[tuple[str, str, str]] = []
 
     def print_near(self, text: _Text, tries: Sequence[tuple[bool, Sequence[int]]]) -> None:
@@ -153,7 +156,7 @@ class _Printer:
         heights = self._heights(_NAME_HEIGHTS)
         for (tidy, steps), upright, height in itertools.product(tries, (False, True), heights):
             boxes = self._boxes(wording, text.home, height, steps, upright)
-            box = self._first_free(boxes, text.home, tidy)
+            box = self._first_free(boxes, text.home, _APART * height, tidy)
             if box is not None:
                 self._ink(wording, self._spot(wording, height, upright, box), text.origin)
                 return
@@ -184,7 +187,7 @@ class _Printer:
         pitch = 1.7 * height
         width = max(size[0] for size in sizes)
         above, depth = sizes[0][2], sizes[-1][1] + pitch * (len(lines) - 1)
-        corner = self._free_block(width, above + depth, tidy)
+        corner = self._free_block((width, above + depth), _TITLE_APART * height, tidy)
         if corner is None:
             return None
         x, y = corner[0], corner[1] + depth
@@ -194,15 +197,16 @@ class _Printer:
             self._ink(line, _Spot(x, base, height, False, box), BOARD)
         return round(x), round(y)
 
-    def _free_block(self, width: float, height: float, tidy: bool) -> tuple[float, float] | None:
-        """Return the south-west corner of the first free place of a size [nm], edges first."""
+    def _free_block(self, size: tuple[float, float], apart: float, tidy: bool) -> tuple[float, float] | None:
+        """Return the south-west corner of the first free place of a size, apart from texts [nm], edges first."""
+        width, height = size
         first = float(_EDGE_NM + self._limits.legend_distance)
         xs = np.arange(first, self._placement.width - width, _TITLE_STEP_NM)
         ys = np.arange(first, self._placement.height - height, _TITLE_STEP_NM)
         middle = (ys[-1] + ys[0]) / 2.0 if len(ys) else 0.0
         for y in ys[np.argsort(-np.abs(ys - middle), kind="stable")]:
             row = np.column_stack([xs, np.full(len(xs), y), xs + width, np.full(len(xs), y + height)])
-            free = np.flatnonzero(self._open(row, tidy))
+            free = np.flatnonzero(self._open(row, apart, tidy))
             if len(free):
                 return float(xs[free[0]]), float(y)
         return None
@@ -233,29 +237,34 @@ class _Printer:
         x, y = (box[0] + above, box[1]) if upright else (box[0], box[1] + depth)
         return _Spot(x, y, height, upright, box)
 
-    def _first_free(self, boxes: Boxes, home: Box, tidy: bool) -> Box | None:
+    def _first_free(self, boxes: Boxes, home: Box, apart: float, tidy: bool) -> Box | None:
         """Return the first box that is free and not nearer to another part than to its own."""
-        others = np.array([other for other in self._homes if other != home]).reshape(-1, 4)
         own = _box_distances(boxes, np.array([home]))
+        homes = np.array([other for other in self._homes if other != home]).reshape(-1, 4)
+        others = _about(boxes, homes, float(own.max(initial=0.0)))
         near = boxes[(_box_distances(boxes, others) >= own).all(axis=1)]
         for k in range(0, len(near), _AT_ONCE):
             some = near[k : k + _AT_ONCE]
-            free = np.flatnonzero(self._open(some, tidy))
+            free = np.flatnonzero(self._open(some, apart, tidy))
             if len(free):
                 x0, y0, x1, y1 = some[free[0]].tolist()
                 return x0, y0, x1, y1
         return None
 
-    def _open(self, boxes: Boxes, tidy: bool) -> Bools:
-        """Return which boxes (N, 4) [nm] keep their distance to the edge, to obstacles and to other texts."""
+    def _open(self, boxes: Boxes, apart: float, tidy: bool) -> Bools:
+        """Return which boxes (N, 4) [nm] keep their distance to the edge, to obstacles and to other texts.
+
+        To other texts it is at least ``apart`` [nm], and what these keep themselves.
+        """
         if not len(boxes):
             return np.zeros(0, dtype=bool)
         away = self._limits.legend_distance + 2
         grown = boxes + np.array((-away, -away, away, away))
-        taken = np.array(self._taken).reshape(-1, 4)
-        apart: Bools = np.asarray((_box_distances(grown, taken) > 0.0).all(axis=1))
-        apart[apart] = self._ground.open(boxes[apart], grown[apart], tidy)
-        return apart
+        taken = np.array(self._taken).reshape(-1, 5)
+        keep = np.maximum(taken[:, 4], max(away, apart))
+        free: Bools = np.asarray((_box_distances(boxes, taken[:, :4]) > keep).all(axis=1))
+        free[free] = self._ground.open(boxes[free], grown[free], tidy)
+        return free
 
     def _ink(self, wording: str, spot: _Spot, origin: Origin) -> None:
         """Print a text and take its box."""
@@ -266,7 +275,7 @@ class _Printer:
                 Shape(layer="legend_top", outline=outline, holes=holes, role="legend", origin=origin)
             )
         self.areas.append(shapely.box(*spot.box))
-        self._taken.append(spot.box)
+        self._taken.append((*spot.box, _APART * spot.height))
 
 
 class _Ground:
@@ -326,13 +335,38 @@ def _obstacles(
 ) -> Iterator[BaseGeometry]:
     """Yield openings, cut-outs, and drills grown by an extra [nm]."""
     for shape in openings:
-        yield shapely.Polygon(shape.outline.chords(), [hole.chords() for hole in shape.holes])
+        whole = shapely.Polygon(shape.outline.chords(), [hole.chords() for hole in shape.holes])
+        yield from _in_parts(whole)
     for _, ring in cutouts_of(placement):
         yield ring.polygon()
     if drills:
         x, y, diameter = np.array(drills, dtype=np.float64).T
         reach = np.ceil(diameter / 2.0) + extra
         yield from np.asarray(shapely.box(x - reach, y - reach, x + reach, y + reach), dtype=object).tolist()
+
+
+def _in_parts(area: BaseGeometry) -> Iterator[BaseGeometry]:
+    """Yield an area in parts of few vertices, so that a question about one place does not ask all of it."""
+    if shapely.get_num_coordinates(area) <= _FEW_VERTICES:
+        yield area
+        return
+    x0, y0, x1, y1 = area.bounds
+    x, y = ((x0 + x1) / 2.0, y1) if x1 - x0 > y1 - y0 else (x1, (y0 + y1) / 2.0)
+    for box in ((x0, y0, x, y), (x, y0, x1, y1) if x < x1 else (x0, y, x1, y1)):
+        part = shapely.clip_by_rect(area, *box)
+        if not part.is_empty and shapely.get_num_coordinates(part) < shapely.get_num_coordinates(area):
+            yield from _in_parts(part)
+        elif not part.is_empty:
+            yield part
+
+
+def _about(boxes: Boxes, others: Boxes, reach: float) -> Boxes:
+    """Return those of others (M, 4) that lie within a reach [nm] of the box around boxes (N, 4)."""
+    if not len(boxes) or not len(others):
+        return others
+    around = np.concatenate([boxes[:, :2].min(axis=0), boxes[:, 2:].max(axis=0)])
+    near: Boxes = others[_box_distances(around[None, :], others)[0] <= reach]
+    return near
 
 
 def _box_distances(a: Boxes, b: Boxes) -> Boxes:

@@ -11,6 +11,7 @@ from __future__ import annotations
 import math
 from collections.abc import Iterator, Sequence
 
+import numpy as np
 import shapely
 from shapely.geometry.base import BaseGeometry
 
@@ -36,7 +37,8 @@ def soldered_pads(placement: Placement) -> list[tuple[PlacedPart, PlacedPad]]:
 def top_openings(placement: Placement, limits: Limits, conductors: Sequence[Conductor]) -> list[Shape]:
     """Return the openings of the top solder mask; those with too narrow a web between them are one."""
     bare: list[BaseGeometry] = [pad.outline.polygon() for _, pad in soldered_pads(placement)]
-    bare += [_landing(port, conductors) for port in placement.ports.values()]
+    copper = shapely.STRtree([piece.copper for piece in conductors])
+    bare += [_landing(port, copper) for port in placement.ports.values()]
     if not placement.sized.circuit.file.board.mask_over_lines:
         bare += [piece.copper for piece in conductors if piece.rf]
     bare += [_hole(hole.x, hole.y, hole.diameter) for hole in placement.holes]
@@ -46,16 +48,14 @@ def top_openings(placement: Placement, limits: Limits, conductors: Sequence[Cond
     return [_opening("soldermask_top", piece) for piece in pieces(merged)]
 
 
-def _landing(port: PlacedPort, conductors: Sequence[Conductor]) -> BaseGeometry:
+def _landing(port: PlacedPort, copper: shapely.STRtree) -> BaseGeometry:
     """Return the end of a port's copper, left bare for solder: as long as it is wide, 2 mm at least."""
     length = max(_PORT_LANDING_NM, port.width)
     angle = math.radians(port.heading)
     ahead = (round(port.x + length * math.cos(angle)), round(port.y + length * math.sin(angle)))
     area = shapely.buffer(shapely.LineString([(port.x, port.y), ahead]), port.width, cap_style="flat")
-    own = [
-        piece.copper for piece in conductors if piece.copper.distance(shapely.Point(port.x, port.y)) <= 1.0
-    ]
-    return overlap(joined(own), area)
+    own = copper.query(shapely.Point(port.x, port.y), predicate="dwithin", distance=1.0)
+    return overlap(joined(copper.geometries[np.sort(own)]), area)
 
 
 def _hole(x: int, y: int, diameter: int) -> BaseGeometry:

@@ -10,7 +10,7 @@ from __future__ import annotations
 import itertools
 import math
 from collections.abc import Iterable, Iterator, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 
 import numpy as np
 import shapely
@@ -18,12 +18,13 @@ from numpy.typing import NDArray
 from shapely.geometry.base import BaseGeometry
 
 from layoutgen.artwork.drills import Drills
-from layoutgen.geometry import grow, pieces, rings_of
+from layoutgen.geometry import Point, grow, pieces, rings_of
 
-__all__ = ["Facing", "Side", "set_rows", "sides_of"]
+__all__ = ["Facing", "Side", "close_rows", "set_rows", "sides_of"]
 
 _SAMPLE_NM = 100_000
 _STEP_NM = 50_000
+_FINE_NM = 10_000
 _ROUNDING_NM = 2.0
 _CORNER_DEG = 40.0
 _ASIDE = 0.05
@@ -122,17 +123,51 @@ def set_rows(sides: Sequence[Side], facing: Facing, drills: Drills, reach: int) 
         drills: The book that vias are written into.
         reach: Largest distance of an axis from the pour's edge [nm] at which it counts for the row.
     """
-    stretches = [
-        (side, a, b)
-        for side, faced in zip(sides, _faced(sides, facing), strict=True)
-        for a, b in _stretches(side, faced)
-    ]
+    stretches = _all_stretches(sides, facing)
     for side, a, b in stretches:
         for t in (a, b):
             if not drills.near(*side.at(t), facing.pitch / 2.0):
                 _put_near(side, t, (a, b), facing.pitch / 2.0, drills)
     for side, a, b in stretches:
         _fill(side, a, b, facing.pitch, drills, reach)
+
+
+def close_rows(sides: Sequence[Side], facing: Facing, drills: Drills, reach: int) -> None:
+    """Draw vias of rows together where the next one is farther off than the pitch and none fits between them.
+
+    Args:
+        sides: Rows, set.
+        facing: What they face, and the pitch.
+        drills: The book of vias; those set in it may move along their rows, others stay.
+        reach: As for :func:`set_rows`.
+    """
+    for side, a, b in _all_stretches(sides, facing):
+        for before, after in itertools.pairwise(_members(side, a, b, facing.pitch, drills, reach)):
+            missing = before.gap_to(after) - facing.pitch
+            if _ROUNDING_NM < missing <= facing.pitch:
+                missing -= _moved_on(side, before, missing, facing.pitch, drills)
+                _moved_on(side, after, -missing, facing.pitch, drills)
+
+
+def _moved_on(side: Side, member: _Member, by: float, pitch: int, drills: Drills) -> float:
+    """Move a via along its row, back where negative, as much of a way [nm] as it may; return how much."""
+    if member.at is None:
+        return 0.0
+    for k in range(math.ceil(abs(by) / _FINE_NM), 0, -1):
+        step = math.copysign(min(k * _FINE_NM, abs(by)), by)
+        (x0, y0), (x1, y1) = side.at(member.along), side.at(member.along + step)
+        if drills.move(member.at, member.at[0] + x1 - x0, member.at[1] + y1 - y0, pitch):
+            return math.hypot(x1 - x0, y1 - y0)
+    return 0.0
+
+
+def _all_stretches(sides: Sequence[Side], facing: Facing) -> list[tuple[Side, float, float]]:
+    """Return the stretches of all rows that face something: the side, start and end along it [nm]."""
+    return [
+        (side, a, b)
+        for side, faced in zip(sides, _faced(sides, facing), strict=True)
+        for a, b in _stretches(side, faced)
+    ]
 
 
 def _faced(sides: Sequence[Side], facing: Facing) -> list[Bools]:
@@ -182,12 +217,13 @@ def _put_near(
 class _Member:
     """A via by a row: arc length, distance from the row; an end of a stretch: the way on to the nearest via.
 
-    All [nm]; ``across`` is positive towards the pour's edge.
+    All [nm]; ``across`` is positive towards the pour's edge; ``at`` is the via's axis, None for an end.
     """
 
     along: float
     across: float = 0.0
     beyond: float = 0.0
+    at: Point | None = field(default=None, compare=False)
 
     def gap_to(self, other: _Member) -> float:
         """Return the distance [nm] to a later member."""
@@ -212,7 +248,7 @@ def _members(side: Side, a: float, b: float, pitch: int, drills: Drills, reach: 
         (dx, dy), (nx, ny) = offsets[nearest].tolist(), side.outward[nearest].tolist()
         along, across = float(side.along[nearest]) - dx * ny + dy * nx, dx * nx + dy * ny
         if 0.0 < side.inset - across <= reach and a <= along <= b:
-            marks.add(_Member(along, across))
+            marks.add(_Member(along, across, at=(x, y)))
     return sorted(marks)
 
 

@@ -12,7 +12,7 @@ from layoutgen.artwork.board import GND, board_area, cutouts_of
 from layoutgen.artwork.conductors import Conductor
 from layoutgen.artwork.drills import Drills
 from layoutgen.artwork.limits import Limits
-from layoutgen.artwork.rows import Facing, Side, set_rows, sides_of
+from layoutgen.artwork.rows import Facing, Side, close_rows, set_rows, sides_of
 from layoutgen.geometry import Point, cut, grow, pieces
 from layoutgen.placement import Placement
 
@@ -22,6 +22,7 @@ _LEAST_VIAS = 2
 _GRID_CLEAR = 0.6
 _LEAST_NECK = 1e10  # [nm^2]: smaller ones are corners
 _NECK_ROUNDING = 1_000  # [nm]
+_RIM_NM = 1_000  # rows as good as on the pour's edge, which run on where it is too narrow for vias [nm]
 
 
 def stitchable(
@@ -63,6 +64,7 @@ def fence(
         facing = Facing([c.copper for c in guarded], 2 * widest, limits.fence_pitch)
         set_rows(sides, facing, drills, limits.fence_reach)
         set_rows(_through_necks(pour, limits, drills), facing, drills, limits.fence_reach)
+        close_rows(sides_of(pour, _RIM_NM), facing, drills, limits.fence_reach)
     return sides
 
 

@@ -65,12 +65,14 @@ def ground_end(nets: tuple[str, ...]) -> int | None:
     return nets.index(GROUND) if GROUND in nets else None
 
 
-def tail_of(line: PlacedLine, length: float) -> shapely.Polygon:
+def tail_of(line: PlacedLine, length: float, end: int | None = None) -> shapely.Polygon:
     """Return the region of a line's last ``length`` [nm] before its end on ``gnd``, and what lies past it.
 
-    The region is twice as wide as the line; it never takes more than nine tenths of the line.
+    The region is twice as wide as the line; it never takes more than nine tenths of the line. ``end`` 0 or 1
+    asks for the end on that net of the line instead.
     """
-    path: list[Point] = list(line.path) if ground_end(line.nets) == 0 else list(line.path[::-1])
+    end = ground_end(line.nets) if end is None else end
+    path: list[Point] = list(line.path) if end == 0 else list(line.path[::-1])
     centre = shapely.LineString(path)
     wanted = min(length, 0.9 * centre.length)
     tail = shapely.get_coordinates(substring(centre, 0.0, wanted)).tolist()

@@ -23,9 +23,9 @@ _VIA_NM = 1_000.0
 def board_of_foreign(artwork: ForeignArtwork, rules: RuleFile) -> Board:
     """Return the board that a drawing of other origin stands for.
 
-    Copper that hangs together, on both layers and through plated holes, is one conductor ``net:N``, the
-    largest first, as etching by the undercut leaves it; each piece of it on a layer is ``copper:N``. A plated hole of the rule file's via drill
-    with round copper about it on the top is a via.
+    Copper is judged as etching by the undercut leaves it. What hangs together, on both layers and through
+    plated holes, is one conductor ``net:N``, the largest first; each piece of it on a layer is ``copper:N``.
+    A plated hole of the rule file's via drill with round copper about it on the top is a via.
     """
     limits = Limits(rules)
     drills = tuple(_drills(artwork, limits))

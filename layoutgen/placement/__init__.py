@@ -5,15 +5,15 @@ lines with their final length budgets, strips, ports on their edges, vias that b
 in whole nanometres with the origin at the board's south-west corner. It draws no copper and no ground.
 
 The walk (``tour``) decides from the schematic what goes straight on at each net; ``loops`` sorts out how
-loops are laid, and ``likes`` gives like lines at loops one cross-section. ``routes`` and ``words`` say which
-shapes a line may take, ``meetings`` what its legs must keep for what it meets, ``runs`` how free lines come
-to meet what is pinned. ``drawings`` and ``closure`` say which shapes a loop (``cluster``) may take, its legs from
-one linear program, ``demands`` what each piece asks of it, ``symmetry`` how it maps on itself. ``lay`` adds
-one thing, and what follows from it, to a candidate, by ``lines``, ``pairs``, ``ports``, ``banks``, ``beside``
-and ``lay_cluster``; ``ways`` lists the choices, ``search`` keeps the best drawings so far, rejecting by
-``clearance`` and ``neighbours``, and what ``lookahead`` finds shut in. ``twins`` finds equal branches, which
-are laid alike, and ``rooms`` makes room for them. ``finish`` settles the board's frame, ``explain`` says why
-a loop cannot be drawn.
+loops are laid, and ``likes`` gives like lines at loops one cross-section. ``routes`` and ``words`` say
+which shapes a line may take, ``meetings`` what its legs must keep for what it meets, ``runs`` how free
+lines come to meet what is pinned. ``drawings`` and ``closure`` say which shapes a loop (``cluster``) may
+take, its legs from one linear program, ``demands`` what each piece asks of it, ``symmetry`` how it maps on
+itself. ``lay`` adds one thing, and what follows from it, to a candidate, by ``lines``, ``pairs``,
+``ports``, ``banks``, ``beside`` and ``lay_cluster``; ``ways`` lists the choices, ``search`` keeps the best
+drawings so far, rejecting by ``clearance`` and ``neighbours``, and what ``lookahead`` finds shut in.
+``twins`` finds equal branches, which are laid alike, and ``rooms`` makes room for them. ``finish`` settles
+the board's frame, ``explain`` says why a loop cannot be drawn.
 """
 
 from layoutgen.placement.model import copper_edge

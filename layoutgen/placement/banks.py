@@ -35,12 +35,28 @@ class Banks:
             before = high
             self._part(growth, end, ahead(at, position), side, width)
         exit_pose = ahead(at, position)
-        if position:
-            self.kit.strip(growth, hub.net, width, (at.point, exit_pose.point))
+        arrival = [] if hub.arrival is None else [self._half(hub.arrival, width)]
+        back = self._beyond_axis(hub.bank[0], width, arrival)
+        on = self._beyond_axis(hub.bank[-1], width, [0, *(self._half(arm.end, width) for arm in hub.arms)])
+        self.kit.strip(growth, hub.net, width, (ahead(at, -back).point, ahead(exit_pose, on).point))
         for arm in hub.arms:
             turns = (0.0, side, -side) if arm.turn is None else (arm.turn, -side)
             offset = width // 2 - OVERLAP if arm.end.kind is EndKind.PAD else 0
             growth.pending.append(Pending(arm.end, exit_pose, turns, max(0, offset)))
+
+    def _half(self, end: End, width: int) -> int:
+        """Return half the width [nm] of what goes on straight from the end of a bank's strip."""
+        return (self.kit.across(end) if end.kind in (EndKind.LINE, EndKind.COUPLED) else width) // 2
+
+    def _beyond_axis(self, end: End, width: int, halves: list[int]) -> int:
+        """Return how far a bank's strip reaches beyond the axis of the part at its end [nm].
+
+        It ends on the axis, but goes on to the pad's edge where a line that begins there, of a half width or
+        (0) across the strip, would face the pad over a slit too narrow for etching.
+        """
+        land = self.kit.model.bodies[end.element].land_at(end)
+        room = width // 2 - land.along
+        return land.across // 2 if any(self.kit.is_slit(room - half) for half in halves) else 0
 
     def lay_beyond(self, growth: Growth, hub: Hub, body: PartBody, land: BodyLand, outer: Pose) -> None:
         """Lay a bank that a pad leads to: a strip from the pad's outer edge, then the parts."""

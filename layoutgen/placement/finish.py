@@ -10,7 +10,8 @@ from layoutgen.geometry import Point, Ring, path_length, turn_degrees
 from layoutgen.origin import Origin
 from layoutgen.placement.bodies import BodyLand
 from layoutgen.placement.budgets import LineLengths
-from layoutgen.placement.frame import Box, Pose, ring_to_world, to_world, unit
+from layoutgen.placement.frame import Box, Pose, ring_to_world, to_world
+from layoutgen.placement.kit import PIN_TOLERANCE
 from layoutgen.placement.model import Model, strip_owner
 from layoutgen.placement.records import (
     Bend,
@@ -26,26 +27,20 @@ from layoutgen.placement.records import (
     Placement,
     Strip,
 )
-from layoutgen.placement.state import EDGES, LaidLine, LaidPair, LaidPort, LaidStrip, State
+from layoutgen.placement.state import BOARD_STEP, EDGES, LaidLine, LaidPair, LaidPort, LaidStrip, State
 from layoutgen.units import to_nm
 
 __all__ = ["Frame", "finish", "frame_of"]
 
-_STEP = 500_000  # boards grow in steps of 0.5 mm
-
 
 @dataclass(frozen=True, slots=True)
 class Frame:
-    """The board in the search's coordinates: south-west corner and size [nm], and what it had to give.
-
-    ``slack`` names the edges whose ports of given length end short of where they should, by how much [nm].
-    """
+    """The board in the search's coordinates: south-west corner and size [nm]."""
 
     x0: int
     y0: int
     width: int
     height: int
-    slack: tuple[tuple[str, int], ...] = ()
 
     def moved(self, point: Point) -> Point:
         """Return a point of the search in the board's coordinates."""
@@ -55,29 +50,27 @@ class Frame:
 def frame_of(state: State) -> Frame:
     """Return the smallest board in whole steps that holds a state, or the given one around it."""
     bounds, extent = state.bounds, state.extent
-    x0, width, slack_x = _axis(bounds.x0, bounds.x1, extent[0], extent[2], bounds.width)
-    y0, height, slack_y = _axis(bounds.y0, bounds.y1, extent[1], extent[3], bounds.height)
-    slack = [("east", slack_x)] * bool(slack_x) + [("north", slack_y)] * bool(slack_y)
-    return Frame(x0, y0, width, height, tuple(slack))
+    x0, width = _axis(bounds.x0, bounds.x1, extent[0], extent[2], bounds.width)
+    y0, height = _axis(bounds.y0, bounds.y1, extent[1], extent[3], bounds.height)
+    return Frame(x0, y0, width, height)
 
 
-def _axis(low: float, high: float, least: float, most: float, size: float) -> tuple[int, int, int]:
-    """Return origin, size and slack [nm] of one axis from what is known and what is needed."""
+def _axis(low: float, high: float, least: float, most: float, size: float) -> tuple[int, int]:
+    """Return origin and size [nm] of one axis from what is known and what is needed."""
     start = low if math.isfinite(low) else least
     stop = high if math.isfinite(high) else most
     if math.isfinite(size):
         if math.isfinite(low):
-            return round(low), round(size), 0
+            return round(low), round(size)
         if math.isfinite(high):
-            return round(high - size), round(size), 0
-        return round(start - (size - (stop - start)) / 2), round(size), 0
-    need = math.ceil((stop - start) / _STEP) * _STEP
-    more = need - (stop - start)
+            return round(high - size), round(size)
+        return round(start - (size - (stop - start)) / 2), round(size)
+    need = math.ceil((stop - start) / BOARD_STEP) * BOARD_STEP
     if math.isfinite(low):
-        return round(low), need, round(more) if math.isfinite(high) else 0
+        return round(low), need
     if math.isfinite(high):
-        return round(high - need), need, 0
-    return round(start - more / 2), need, 0
+        return round(high - need), need
+    return round(start - (need - (stop - start)) / 2), need
 
 
 def finish(model: Model, lengths: LineLengths, state: State, effort: int = 0) -> Placement:
@@ -273,18 +266,25 @@ class _Maker:
         ]
         return max((abs(currents[key]) for key in keys if key in currents), default=0.0)
 
-    def _port_extensions(self) -> list[Strip]:
-        """Return strips that carry ports on to the edge where given lengths end short of a 0.5 mm step."""
+    def _short_ports(self) -> list[tuple[LaidPort, Point, Point, int]]:
+        """Return the ports whose copper of given length ends short of the edge: from where to where, by how
+        much [nm]."""
         out = []
-        for edge, slack in self.frame.slack:
-            for laid in self.state.ports.values():
-                if laid.edge != edge or laid.movable:
-                    continue
-                start = self.frame.moved(laid.point)
-                ux, uy = unit(EDGES[edge])
-                end = (round(start[0] + ux * slack), round(start[1] + uy * slack))
-                out.append(self._named_strip(self.model.file.ports[laid.name].net, laid.width, (start, end)))
+        for laid in self.state.ports.values():
+            start = self.frame.moved(laid.point)
+            inset = 0 if self.model.file.ports[laid.name].to_edge else self.model.limits.edge
+            stop = self._on_edge(start, laid.edge, inset)
+            short = round(math.dist(start, stop))
+            if not laid.movable and short > PIN_TOLERANCE:
+                out.append((laid, start, stop, short))
         return out
+
+    def _port_extensions(self) -> list[Strip]:
+        """Return strips that carry ports on to the edge where given lengths end short of it."""
+        return [
+            self._named_strip(self.model.file.ports[laid.name].net, laid.width, (start, stop))
+            for laid, start, stop, _ in self._short_ports()
+        ]
 
     def vias(self) -> tuple[PlacedVia, ...]:
         out = [
@@ -346,10 +346,8 @@ class _Maker:
     def notes(self) -> tuple[tuple[str, str, str], ...]:
         text = "the lengths along the board are all given: a strip of {:.3f} mm carries {} on to the edge"
         return tuple(
-            ("placement.port", laid.name, text.format(slack / 1e6, laid.name))
-            for edge, slack in self.frame.slack
-            for laid in self.state.ports.values()
-            if laid.edge == edge and not laid.movable
+            ("placement.port", laid.name, text.format(short / 1e6, laid.name))
+            for laid, _, _, short in self._short_ports()
         )
 
 

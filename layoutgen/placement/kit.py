@@ -93,8 +93,21 @@ class Kit:
         no slit too narrow for etching is left.
         """
         widest, least = max(across, default=0), min(across, default=0)
-        near = widest - least < 2 * self.model.limits.gap + OVERLAP
-        return max(0, (least if near else widest) - OVERLAP)
+        return max(0, (least if self.is_slit(widest - least) else widest) - OVERLAP)
+
+    def joint_width(self, net: str, pad: End, facing: End | None) -> int:
+        """Return the width [nm] of the strip between a node and a pad, at most as wide as the pad.
+
+        It is as wide as what leaves the node opposite to the pad (``facing``), or as a bank's strip: a
+        narrower one would leave a slit between the two.
+        """
+        hub = self.tour.hubs[net]
+        wide = self.bank_width(hub) if hub.bank else 0 if facing is None else self.across(facing)
+        return min(max(strip_width(self.model, net), wide), self.across(pad))
+
+    def is_slit(self, room: int) -> bool:
+        """True when copper of one net would be left apart by a room [nm] too narrow for safe etching."""
+        return 0 < room < 2 * self.model.limits.gap + OVERLAP
 
     def inset(self, port: str) -> int:
         """Return how far short of the profile a port's copper ends [nm]."""

@@ -9,7 +9,6 @@ from layoutgen.geometry import Point
 from layoutgen.placement.banks import Banks
 from layoutgen.placement.beside import lay_beside
 from layoutgen.placement.bodies import OVERLAP, BodyLand, PartBody, beyond
-from layoutgen.placement.budgets import strip_width
 from layoutgen.placement.clearance import Kind, Obstacle
 from layoutgen.placement.frame import Pose, ahead, box_to_world, unit
 from layoutgen.placement.kit import PIN_TOLERANCE, Kit, PinnedError, world
@@ -132,7 +131,7 @@ class Layer:
             if other.element in widths:
                 across.append(widths[other.element] // 2)
             elif other.kind is EndKind.PAD and turn is None:
-                across.append(min(strip_width(self.kit.model, hub.net), self.kit.across(other)) // 2)
+                across.append(self.kit.joint_width(hub.net, other, hub.arrival) // 2)
         offset = self.kit.beside(across)
         if turn != 0.0:
             return offset
@@ -173,7 +172,7 @@ class Layer:
         growth.use(net, node.heading)
         outer = ahead(node, pending.offset)
         if turn == 0.0 and pending.offset:
-            width = min(strip_width(self.kit.model, net), land.across)
+            width = self.kit.joint_width(net, end, self.kit.tour.hubs[net].arrival)
             self.kit.strip(growth, net, width, (node.point, ahead(outer, OVERLAP).point))
         self.part(growth, end, body.entered_by(land, outer, edge="outer"))
 
@@ -271,13 +270,16 @@ class Layer:
         """Put a junction's node just beyond a pad and leave its arms, or its cluster, pending."""
         body, land = left
         sides = [*(arm.end for arm in hub.arms if arm.turn is None), *hub.inner]
-        half = max(0, max((self.kit.across(end) // 2 for end in sides), default=0) - OVERLAP)
+        widths = self.kit.model.widths
+        reach = self.kit.beside([widths[end.element] // 2 for end in sides if end.element in widths])
         parts = max((self._breadth(end) for end in sides if end.kind is EndKind.PAD), default=0)
         if parts:
-            half = max(half, parts + beyond(body, land))
-        node = ahead(outer, half)
-        if half:
-            width = min(strip_width(self.kit.model, hub.net), land.across)
+            reach = max(reach, parts + beyond(body, land))
+        node = ahead(outer, reach)
+        if reach:
+            assert hub.arrival is not None  # the pad itself
+            facing = [arm.end for arm in hub.arms if arm.turn == 0.0] or list(hub.inner)
+            width = self.kit.joint_width(hub.net, hub.arrival, max(facing, key=self.kit.across, default=None))
             self.kit.strip(growth, hub.net, width, (ahead(outer, -OVERLAP).point, node.point))
         if hub.cluster is not None:
             self._enter_cluster(growth, hub, node)

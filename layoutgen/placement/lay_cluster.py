@@ -8,7 +8,6 @@ from dataclasses import dataclass
 from layoutgen.circuit import End, EndKind
 from layoutgen.geometry import Point
 from layoutgen.placement.bodies import OVERLAP
-from layoutgen.placement.budgets import strip_width
 from layoutgen.placement.cluster import ClusterSolver, Solution
 from layoutgen.placement.frame import Pose, ahead, unit
 from layoutgen.placement.kit import PinnedError
@@ -124,12 +123,19 @@ def _strip_to_pad(
 ) -> None:
     """Lay a strip from a node to a pad's edge, unless a line runs through between the two."""
     end, node = pad
-    offset = solver.demands.offset(end, role) + (more + 1) // 2
+    play = (more + 1) // 2
+    offset = solver.demands.offset(end, role) + play
     if offset <= 0 or (_is_crossed(role, end) and not more):
         return
-    net = layer.kit.net(end)
-    width = min(strip_width(layer.kit.model, net), layer.kit.across(end))
+    net, kit = layer.kit.net(end), layer.kit
+    width = kit.across(end) if kit.is_slit(play) else kit.joint_width(net, end, _opposite(role, end))
     layer.kit.strip(growth, net, width, (node.point, ahead(node, offset + OVERLAP).point))
+
+
+def _opposite(role: Headings, pad: End) -> End | None:
+    """Return what leaves a node opposite to a pad."""
+    own = next(heading for end, heading in role if end == pad)
+    return next((end for end, heading in role if (heading - own) % 360.0 == 180.0), None)
 
 
 def _is_crossed(role: Headings, pad: End) -> bool:

@@ -28,8 +28,9 @@ class Limits:
     """Distances the placement keeps [nm], from the rule file where it has them.
 
     ``spacing`` between lines not meant to couple, ``gap`` between copper of two nets, ``edge`` from copper
-    to profile and cut-outs, ``hole`` from copper to an unplated hole's wall, ``hole_edge`` from a hole's wall to the
-    profile, ``margin`` from copper to the profile where no ground ring is wanted, ``neck`` the least width.
+    to profile and cut-outs, ``hole`` from copper to an unplated hole's wall, ``hole_edge`` from a hole's wall
+    to the profile, ``margin`` from copper to the profile where no ground ring is wanted, ``neck`` the least
+    width.
     """
 
     height: int

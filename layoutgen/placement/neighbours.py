@@ -193,10 +193,20 @@ class Neighbours:
         ]
 
     def _is_short(self, name: str) -> bool:
+        """True for a line that, beyond the pads on it, is shorter than the allowance at both its ends."""
         line = self.model.sized.lines.get(name)
         if line is None or line.free:
             return False
-        return self.lengths.by_bends(name)[0] < 2 * self.model.limits.spacing
+        pads = sum(self._pad_on(name, net) for net in line.nets if net != GROUND)
+        return self.lengths.by_bends(name)[0] - pads < 2 * self.model.limits.spacing
+
+    def _pad_on(self, name: str, net: str) -> int:
+        """Return how much of a line lies on the one pad that it ends on in a net [nm]: its node is beyond."""
+        ends = self.model.circuit.nets[net].ends
+        pads = [end for end in ends if end.kind is EndKind.PAD]
+        if len(ends) != 2 or len(pads) != 1:
+            return 0
+        return self.model.bodies[pads[0].element].land_at(pads[0]).along
 
 
 def _overlap(a: Obstacle, b: Obstacle) -> bool:

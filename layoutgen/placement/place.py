@@ -3,16 +3,18 @@
 from __future__ import annotations
 
 from collections.abc import Iterator
-from dataclasses import replace
+from dataclasses import dataclass, replace
 from itertools import islice
 
-from layoutgen.errors import InfeasibleError
+from layoutgen.errors import InfeasibleError, LayoutgenError
 from layoutgen.placement.budgets import LineLengths
+from layoutgen.placement.cluster import ClusterSolver
 from layoutgen.placement.explain import explain_loop
 from layoutgen.placement.finish import finish, frame_of
 from layoutgen.placement.likes import Note, with_like_lines
 from layoutgen.placement.model import Model
 from layoutgen.placement.records import Choices, Placement
+from layoutgen.placement.remedies import Remedies
 from layoutgen.placement.search import Effort, Failure, Search, drawing_cost
 from layoutgen.placement.start import first_states, join_root
 from layoutgen.placement.state import State
@@ -47,35 +49,59 @@ def place(sized: SizedCircuit, like: Choices | None = None) -> Placement:
             its way, and the nearest size or hint that would do.
         WrongInputError: A line has no positive length after its corrections, or a junction too many arms.
     """
+    found = _tried(sized, like, _EFFORTS)
+    if isinstance(found, Placement):
+        return found
+    raise _infeasible(found)
+
+
+@dataclass(frozen=True, slots=True)
+class _Nothing:
+    """A search that found no place: what it went over, its reason, the first loop that does not close."""
+
+    ways: Ways
+    failure: Failure | None
+    open_loop: ClusterSolver | None
+
+
+def _tried(
+    sized: SizedCircuit, like: Choices | None, efforts: tuple[Effort, ...], *, closed: bool = False
+) -> Placement | _Nothing:
+    """Return the placement by the first effort that finds one, or why there is none.
+
+    With ``closed``, a circuit with a loop that does not close is not looked at further.
+    """
     notes: tuple[Note, ...] = ()
     ways, open_loop = _prepared(Model(sized))
     if open_loop is not None:
         alike, notes = with_like_lines(sized)
         ways, open_loop = _prepared(Model(alike)) if notes else (ways, open_loop)
-    placement = _placed(ways, open_loop, like)
-    return replace(placement, notes=placement.notes + notes)
+    found = None if closed and open_loop is not None else _placed(ways, like, efforts)
+    if isinstance(found, Placement):
+        return replace(found, notes=found.notes + notes)
+    return _Nothing(ways, found, open_loop)
 
 
-def _placed(ways: Ways, open_loop: InfeasibleError | None, like: Choices | None) -> Placement:
-    """Return the placement by the first effort that finds one; ``open_loop`` is told when none does."""
+def _placed(ways: Ways, like: Choices | None, efforts: tuple[Effort, ...]) -> Placement | Failure | None:
+    """Return the placement by the first effort that finds one, else the first reason."""
     model = ways.model
     if like is not None and (again := _again(ways, like)) is not None:
         return finish(model, ways.lengths, again, like.effort)
     failure: Failure | None = None
-    for number, effort in enumerate(_EFFORTS):
+    for number, effort in enumerate(efforts):
         if effort.only_margins and model.file.board.size is None:
             continue  # the board grows as it must: nothing would be laid otherwise
         best, found = _attempt(ways, effort)
         if best is not None:
             return finish(model, ways.lengths, best, number)
         failure = failure or found  # the plainest drawing's reason is the one to tell
-    raise open_loop or _infeasible(ways, failure)
+    return failure
 
 
-def _prepared(model: Model) -> tuple[Ways, InfeasibleError | None]:
-    """Return the walk with its ways; loops that no drawing closes are cut, and the first reason is kept."""
+def _prepared(model: Model) -> tuple[Ways, ClusterSolver | None]:
+    """Return the walk with its ways; loops that no drawing closes are cut, and the first one is told."""
     cut: frozenset[str] = frozenset()
-    reason: InfeasibleError | None = None
+    first: ClusterSolver | None = None
     while True:
         tour = plan_tour(model, cut)
         lengths = LineLengths(model, tour)
@@ -86,8 +112,8 @@ def _prepared(model: Model) -> tuple[Ways, InfeasibleError | None]:
         ways = Ways(model, tour, lengths)
         wrong = next((solver for solver in ways.clusters if not solver.solutions()), None)
         if wrong is None:
-            return ways, reason
-        reason = reason or explain_loop(wrong)
+            return ways, first
+        first = first or wrong
         cut |= set(tour.loops.clusters[wrong.number].elements)
 
 
@@ -137,20 +163,38 @@ def _all_trees(search: Search, start: State) -> Iterator[State]:
     yield from states
 
 
-def _infeasible(ways: Ways, failure: Failure | None) -> InfeasibleError:
-    """Return the error for a circuit without a place, with the nearest remedy that was found."""
-    model = ways.model
+def _infeasible(nothing: _Nothing) -> InfeasibleError:
+    """Return the error for a circuit without a place, with a remedy that was tried."""
+    if nothing.open_loop is not None:
+        return explain_loop(nothing.open_loop, _open_loop, _changed)
+    model, failure = nothing.ways.model, nothing.failure
     element = failure.element if failure is not None else model.circuit.spine[0]
     reason = failure.reason if failure is not None else "no placement was found"
-    if model.file.board.size is not None:
-        for effort in _EFFORTS[:2]:
-            roomy, _ = _attempt(ways, effort, sized_board=False)
-            if roomy is not None:
-                frame = frame_of(roomy)
-                size = f"{frame.width / 1e6:.1f} mm x {frame.height / 1e6:.1f} mm"
-                return InfeasibleError(element, reason, f"a board of {size} would do")
-    return InfeasibleError(
-        element,
-        reason,
-        f"let {element} leave another way ([layout.hints.{element}]), or lengthen the lines beside it",
-    )
+    if model.sized.corrections:  # a draft before it had a place
+        return InfeasibleError(element, reason, "the lengths before their correction would do")
+    remedy = Remedies(model, _changed, lambda: _roomy(nothing.ways)).best(element)
+    return InfeasibleError(element, reason, remedy)
+
+
+def _changed(sized: SizedCircuit) -> Placement | None:
+    """Return the placement of a changed circuit; None where there is none, or the change is no good."""
+    try:
+        found = _tried(sized, None, _EFFORTS[:2], closed=True)
+    except LayoutgenError:
+        return None
+    return found if isinstance(found, Placement) else None
+
+
+def _open_loop(sized: SizedCircuit) -> ClusterSolver | None:
+    """Return the first loop of a circuit that no drawing closes."""
+    return _prepared(Model(sized))[1]
+
+
+def _roomy(ways: Ways) -> tuple[int, int] | None:
+    """Return the size [nm] of the board that would be drawn if none were given."""
+    for effort in _EFFORTS[:2]:
+        state, _ = _attempt(ways, effort, sized_board=False)
+        if state is not None:
+            frame = frame_of(state)
+            return frame.width, frame.height
+    return None

@@ -8,10 +8,11 @@ from dataclasses import dataclass, field
 from layoutgen.circuit import End
 from layoutgen.placement.budgets import LineLengths
 from layoutgen.placement.frame import Box, Pose, unit
+from layoutgen.placement.kit import PIN_TOLERANCE
 from layoutgen.placement.meetings import Meetings
 from layoutgen.placement.model import Model
 from layoutgen.placement.runs import Run, Runs
-from layoutgen.placement.state import EDGES, State, edge_of_heading
+from layoutgen.placement.state import BOARD_STEP, EDGES, State, edge_of_heading
 from layoutgen.placement.tour import Tour
 from layoutgen.placement.words import (
     Route,
@@ -260,13 +261,35 @@ class Router:
                     yield RouteChoice(route, edge)
             return
         lengths = self.lengths.by_bends(name, state.roles)
-        for word in words:
-            if len(word) < len(lengths):
-                solved = solve_legs(
-                    word, self._fixed_least(end, word), start, total=lengths[len(word)], x=x, y=y
-                )
-                if solved is not None:
-                    yield RouteChoice(solved, edge)
+        exact = [
+            solved
+            for word in words
+            if len(word) < len(lengths)
+            for least in (self._fixed_least(end, word),)
+            if (solved := solve_legs(word, least, start, total=lengths[len(word)], x=x, y=y)) is not None
+        ]
+        some = exact or self._nearly_to_edge(end, start, state, words, target, edge)
+        yield from (RouteChoice(route, edge) for route in some)
+
+    def _nearly_to_edge(
+        self,
+        end: End,
+        start: Pose,
+        state: State,
+        words: list[Word],
+        target: tuple[int | None, int | None],
+        edge: str,
+    ) -> Iterator[Route]:
+        """Yield shapes of given length that end short of an edge by less than a step of the board's size."""
+        ux, uy = unit(EDGES[edge])
+        axis = 0 if ux else 1
+        for route in fixed_shapes(self.lengths.by_bends(end.element, state.roles), self.meetings.rules(end)):
+            last = route_points(start, route)[1].point
+            along, across = target[axis], target[1 - axis]
+            short = 0 if along is None else (along - last[axis]) * (ux + uy)
+            there = across is None or abs(across - last[1 - axis]) <= PIN_TOLERANCE
+            if route.word in words and 0 <= short < BOARD_STEP and there:
+                yield route
 
     def _fixed_least(self, end: End, word: Word) -> tuple[int, ...]:
         return least_legs(word, self.meetings.rules(end))

@@ -97,10 +97,12 @@ class Runs:
 
     def _straight_on(self, growth: Growth) -> Pending | None:
         """Return the one thing that waits to go straight on, of several the one on the straight path."""
+        closers = self.layer.kit.tour.loops.closers
         waiting = [
             pending
             for pending in growth.pending
             if pending.turns == (0.0,) and pending.at.heading == 0.0 and pending.cluster is None
+            if pending.end.element not in closers
         ]
         if len(waiting) > 1:
             spine = self.layer.kit.model.circuit.spine

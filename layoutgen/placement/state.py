@@ -15,6 +15,7 @@ from layoutgen.placement.tour import Headings
 from layoutgen.placement.words import Route
 
 __all__ = [
+    "BOARD_STEP",
     "EDGES",
     "Bounds",
     "Device",
@@ -34,6 +35,9 @@ __all__ = [
 
 EDGES: Mapping[str, float] = {"east": 0.0, "north": 90.0, "west": 180.0, "south": 270.0}
 """Board edges with the heading [deg] out of the board."""
+
+BOARD_STEP = 500_000
+"""Boards without a given size come in steps of 0.5 mm; so much may copper of given length end short [nm]."""
 
 FAR = 1_000_000_000  # a corridor's length [nm]: longer than any board
 

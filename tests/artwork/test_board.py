@@ -88,7 +88,9 @@ def test_plane_has_no_neck_too_narrow_beside_a_hole(
     board.rules = {"copper": {"undercut": f"{undercut} nm"}}
     at_edge, apart = (300_000 + web + 1_550_000) / 1e6, (3_100_000 + web) / 1e6
     board.hole(at_edge, 12.0, 2.7).hole(20.0, 4.0, 2.7).hole(20.0 + apart, 4.0, 2.7)
-    copper = shapely.union_all(measures.areas(draw(board.placement()), "plane", layer="copper_bottom", undercut=undercut))
+    copper = shapely.union_all(
+        measures.areas(draw(board.placement()), "plane", layer="copper_bottom", undercut=undercut)
+    )
     wide = copper.buffer(-62_400, join_style="mitre").buffer(62_400, join_style="mitre")
     left = [piece for piece in shapely.get_parts(copper.difference(wide)) if piece.area > 1e9]
     assert left == []

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 from types import ModuleType
 
 import pytest
@@ -67,13 +68,13 @@ def test_everything_is_named_or_noted(boards: ModuleType, measures: ModuleType, 
 def test_texts_do_not_overlap_and_stand_nearest_to_their_own_part(
     boards: ModuleType, measures: ModuleType, random_boards: ModuleType, seed: int
 ) -> None:
-    """Would catch two texts in one place, and references that read as another part's."""
+    """Would catch two texts in one place or run together, and references that read as another part's."""
     placement = random_boards.RandomBoard(seed, boards.BoardBuilder).board.placement()
     artwork = draw(placement)
     inks = {name: _ink(artwork, measures, name) for name in (*placement.parts, *placement.ports, "board")}
     inks = {name: ink for name, ink in inks.items() if not ink.is_empty}
     for a in inks:
-        assert all(inks[a].envelope.distance(inks[b].envelope) >= 150_000 for b in inks if b != a)
+        assert all(inks[a].envelope.distance(inks[b].envelope) >= 360_000 for b in inks if b != a)
     areas = {
         name: shapely.union_all([p.outline.polygon() for p in part.pads] + [part.outline.polygon()]).envelope
         for name, part in placement.parts.items()
@@ -81,6 +82,29 @@ def test_texts_do_not_overlap_and_stand_nearest_to_their_own_part(
     for name in areas.keys() & inks.keys():
         own = inks[name].envelope.distance(areas[name])
         assert all(own <= inks[name].envelope.distance(area) + 150_000 for area in areas.values())
+
+
+def test_title_does_not_run_on_from_a_name(boards: ModuleType, measures: ModuleType) -> None:
+    """Would catch the title printed a hair's breadth beside a port's name: they read as one word."""
+    board = boards.BoardBuilder(30.0, 20.0, title="PA 3A")
+    board.line("feed", [(4.0, 4.0), (4.0, 0.3)], 0.3, ("v", "w"), gap=0.3)
+    board.port("vg", "w", 4.0, 0.3, 90.0, 0.3)
+    artwork = draw(board.placement())
+    name, title = _ink(artwork, measures, "vg").envelope, _ink(artwork, measures, "board").envelope
+    assert abs(name.bounds[1] - title.bounds[1]) < 2_000_000  # side by side
+    assert name.distance(title) >= 1_000_000
+
+
+def test_two_names_do_not_run_together(boards: ModuleType, measures: ModuleType) -> None:
+    """Would catch names of neighbouring parts printed as one: C1C2."""
+    board = boards.BoardBuilder(16.0, 10.0)
+    for k in range(4):
+        board.chip(f"C{k + 1}", 3.0 + 1.9 * k, 5.0, 90.0, (f"a{k}", f"b{k}"))
+    artwork = draw(board.placement())
+    inks = [_ink(artwork, measures, f"C{k + 1}") for k in range(4)]
+    inks = [ink.envelope for ink in inks if not ink.is_empty]
+    assert len(inks) > 2
+    assert min(a.distance(b) for a, b in itertools.combinations(inks, 2)) >= 360_000
 
 
 def test_a_board_without_room_leaves_texts_out_and_says_so(boards: ModuleType) -> None:

@@ -201,6 +201,18 @@ def test_artwork_does_not_depend_on_the_hash_seed() -> None:
     assert len(out[0]) > 10_000
 
 
+def test_vias_move_together_where_none_fits_between_them(boards: ModuleType) -> None:
+    """Would catch a fence that keeps its even places beside vias of a part, and gapes there for it."""
+    board = boards.BoardBuilder(24.0, 12.0)
+    board.line("main", [(0.3, 5.0), (23.7, 5.0)], 1.08, ("a", "b"), gap=1.13)
+    for x in (12.7, 13.5):
+        board.via(x, 5.0 + 0.54 + 1.13 + 0.888)
+    artwork = draw(board.placement())
+    edge = 5_000_000 + 540_000 + 1_130_000
+    row = sorted(v.x for v in artwork.vias if 0 < v.y - edge <= 800_000)
+    assert max(b - a for a, b in itertools.pairwise(row)) <= 2_000_000
+
+
 def test_fence_goes_on_through_a_neck_of_pour(boards: ModuleType) -> None:
     """Would catch a gap in the fence where the pour beside an arc is too narrow for the usual row."""
     board = boards.BoardBuilder(24.0, 13.0)

@@ -63,6 +63,18 @@ def test_lands_and_ground_strips_are_no_pour() -> None:
     assert sheet.found("ground.gap") == []
 
 
+@pytest.mark.parametrize(("x", "faults"), [(12.31, []), (12.2, ["la"]), (20.0, [])])
+def test_pour_follows_a_coplanar_line_up_to_its_end(x: float, faults: list[str]) -> None:
+    """Catches pour beside a coplanar line found at its neighbour's end, or any pour there passed."""
+    coplanar = {"kind": "grounded_coplanar", "gap": "0.3 mm", "width": "1 mm", "length": "16 mm"}
+    sheet = Sheet(circuit={"lines": {"lw": {"nets": ["c", "d"], **coplanar}}})
+    sheet.line("la", [(2, 5), (12, 5)], 1.0, gap=1.0)
+    sheet.line("lw", [(12, 5), (28, 5)], 1.0, gap=0.3)
+    sheet.copper(box(x, 5.8, 27, 10))
+    assert [f.items[0] for f in sheet.found("ground.gap")] == faults
+    assert [f.items for f in sheet.noted("ground.gap")] == [("la",)]
+
+
 def test_no_pour_is_listed() -> None:
     """Catches a rule that could not look read as passed."""
     assert Sheet().unchecked()["ground.gap"] == "there is no pour"

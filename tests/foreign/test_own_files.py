@@ -1,4 +1,4 @@
-"""Our own files, read back as artwork of other origin: what is drawn without errors is judged without errors."""
+"""Our own files read back as artwork of other origin: what is drawn without errors is judged without any."""
 
 from __future__ import annotations
 

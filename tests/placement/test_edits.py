@@ -59,3 +59,14 @@ def test_an_angle_moves_only_what_hangs_on_its_line(name: str) -> None:
     other = copy.deepcopy(data)
     other["lines"][name]["angle"] = f"{float(data['lines'][name]['angle'].split()[0]) + 1.0} deg"
     assert _shapes(placed(data), name) == _shapes(placed(other), name)
+
+
+@pytest.mark.parametrize("name", ["stub_in", "drain_tab"])
+def test_an_angle_of_the_amplifier_moves_free_lines_only(name: str) -> None:
+    """Catches a real board that is laid anew, or not at all, for one degree of one of its lines."""
+    data = tomllib.loads(AMPLIFIER.read_text("utf-8"))
+    other = copy.deepcopy(data)
+    other["lines"][name]["angle"] = f"{float(data['lines'][name]['angle'].split()[0]) + 1.0} deg"
+    before, after = _shapes(placed(data), name), _shapes(placed(other), name)
+    given = [line for line, record in data["lines"].items() if record.get("length") != "free"]
+    assert [line for line in given if line != name and before[line] != after[line]] == []

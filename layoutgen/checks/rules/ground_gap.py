@@ -2,6 +2,8 @@
 
 What: the distance from each line, coupled pair and radial stub to the pour is at least the one it was
 sized with.
+Where a line meets a grounded coplanar line, the pour follows that one up to their junction: the other's last
+stretch, as long as the distances differ, keeps the coplanar line's distance only. A note tells.
 Why: nearer pour lowers the line's impedance below what was allowed for.
 How measured: exactly, from the finished copper of the line to the finished pour. Left out: pour inside
 part outlines; the last such distance of a line before its end on gnd, counted from the axis of its via.
@@ -13,6 +15,7 @@ file.
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator, Mapping
 
 import numpy as np
@@ -23,7 +26,7 @@ from layoutgen.checks.board import Board
 from layoutgen.checks.drawn import pour_gaps
 from layoutgen.checks.fences import part_outlines
 from layoutgen.checks.nodes import GROUND, ground_end, tail_of
-from layoutgen.checks.outcome import Outcome, Rule, named, too_small
+from layoutgen.checks.outcome import Hit, Outcome, Rule, mm, named, too_small
 from layoutgen.checks.planar import TOLERANCE_NM, Geometry, middle, parts
 from layoutgen.checks.records import NotChecked
 
@@ -44,11 +47,11 @@ def find(board: Board) -> Iterator[Outcome]:
         yield NotChecked(NAME, "there is no pour")
         return
     gaps = pour_gaps(board.artwork)
+    yield from _coplanar_notes(board.artwork, gaps)
     away = part_outlines(board.artwork, TOLERANCE_NM).union(_own_ground(board))
     pour = np.array([p for whole in pours for p in parts(whole.difference(away))], dtype=object)
     tree = shapely.STRtree(pour)
-    for item, line in _lines(board, board.artwork, gaps).items():
-        limit = gaps[item]
+    for item, line, limit in _lines(board, board.artwork, gaps):
         near = np.sort(tree.query(line, predicate="dwithin", distance=max(limit - _TOLERANCE_NM, 0.0)))
         for k in near.tolist():
             distance = float(line.distance(pour[k]))
@@ -63,8 +66,13 @@ def _own_ground(board: Board) -> Geometry:
     return shapely.union_all(own)
 
 
-def _lines(board: Board, artwork: Artwork, gaps: Mapping[str, float]) -> dict[str, Geometry]:
-    """Return the copper of each line that has a distance to keep, without its last before gnd."""
+def _lines(
+    board: Board, artwork: Artwork, gaps: Mapping[str, float]
+) -> Iterator[tuple[str, Geometry, float]]:
+    """Yield the copper of each line with the distance it has to keep, without its last before gnd.
+
+    Ends at a grounded coplanar line come apart from the rest.
+    """
     found: dict[str, list[shapely.Polygon]] = {}
     for piece in board.top.pieces:
         if piece.role in _LINE_ROLES and piece.item in gaps:
@@ -73,7 +81,36 @@ def _lines(board: Board, artwork: Artwork, gaps: Mapping[str, float]) -> dict[st
     for line in artwork.placement.lines.values():
         if line.name in lines and ground_end(line.nets) is not None:
             lines[line.name] = lines[line.name].difference(tail_of(line, gaps[line.name]))
-    return lines
+    for name, end, near in coplanar_ends(artwork, gaps):
+        if name in lines:
+            tail = tail_of(artwork.placement.lines[name], gaps[name] - near, end)
+            yield name, lines[name].intersection(tail), near
+            lines[name] = lines[name].difference(tail)
+    yield from ((name, line, gaps[name]) for name, line in lines.items())
+
+
+def coplanar_ends(artwork: Artwork, gaps: Mapping[str, float]) -> Iterator[tuple[str, int, float]]:
+    """Yield where lines meet a grounded coplanar line with nearer pour: line, its end, that distance [nm]."""
+    placement = artwork.placement
+    nearest: dict[str, float] = {}
+    for name, asked in placement.sized.circuit.file.lines.items():
+        if asked.kind == "grounded_coplanar" and name in gaps:
+            nearest |= {net: min(gaps[name], nearest.get(net, math.inf)) for net in asked.nets}
+    for line in placement.lines.values():
+        for end, net in enumerate(line.nets):
+            if net != GROUND and nearest.get(net, math.inf) < gaps.get(line.name, 0.0):
+                yield line.name, end, nearest[net]
+
+
+def _coplanar_notes(artwork: Artwork, gaps: Mapping[str, float]) -> Iterator[Hit]:
+    """Yield a note for each end of a line beside which the pour follows a grounded coplanar line."""
+    for name, end, near in coplanar_ends(artwork, gaps):
+        net, at = artwork.placement.lines[name].nets[end], artwork.placement.lines[name].path[-end]
+        text = (
+            f"{name} meets a grounded coplanar line at net {net}: over the last {mm(gaps[name] - near)} before "
+            f"that its pour may come nearer than {mm(gaps[name])}, to {mm(near)}"
+        )
+        yield Hit(rule=NAME, text=text, items=(name,), at=at, nets=(net,), note=True)
 
 
 RULE = Rule(names=(NAME,), find=find, keyless=True, needs_circuit=True)

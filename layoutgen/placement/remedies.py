@@ -1,0 +1,131 @@
+"""What would do where nothing did: changes of the request, each tried before it is named.
+
+A remedy is a change for which a placement was found: another board size, another place or heading of a
+hinted part, a longer line where a short one leaves no room. Where none of those tried helps, the message
+names no figure.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass
+from itertools import chain, islice
+
+from layoutgen.circuit.queries import elements
+from layoutgen.placement.model import GROUND, Model
+from layoutgen.placement.records import Placement
+from layoutgen.placement.requests import with_angles, with_hint, with_size
+from layoutgen.reading import Hint
+from layoutgen.sizing import SizedCircuit
+from layoutgen.units import to_nm
+
+__all__ = ["Remedies", "Tried"]
+
+_MOST_TRIED = 8  # changes placed for one message
+_LARGE = 60  # elements from which on only two are
+_ANGLES = (5.0, 8.0, 10.0, 12.0, 15.0, 20.0)  # of a line that is too short [deg]
+_PARTS_OF_HINT = (("at",), ("heading",), ("at", "heading"), ("leave",), ("route",), ("leave", "route"))
+_NAMES = {0.0: "east", 90.0: "north", 180.0: "west", 270.0: "south"}
+
+Tried = Callable[[SizedCircuit], Placement | None]
+Size = tuple[int, int]
+
+
+@dataclass(frozen=True, slots=True)
+class Remedies:
+    """Looks for changes that do.
+
+    ``tried`` returns the placement of a changed request, or None; ``roomy`` the size [nm] of the board that
+    would be drawn if none were given, or None.
+    """
+
+    model: Model
+    tried: Tried
+    roomy: Callable[[], Size | None]
+
+    def best(self, element: str) -> str:
+        """Return the first remedy that does for an element that found no place; else what can be changed."""
+        some = chain(self._sizes(), self._hints(element), self._short_lines(element))
+        most = _MOST_TRIED if len(elements(self.model.file)) < _LARGE else 2
+        return next((text for text in islice(some, most) if text is not None), self._plain(element))
+
+    def _sizes(self) -> Iterator[str | None]:
+        """Try the board that would be drawn of itself, as little as possible smaller than the given one."""
+        size = self.model.file.board.size
+        needed = None if size is None else self.roomy()
+        if size is None or needed is None:
+            return
+        given = to_nm(size[0]), to_nm(size[1])
+        wide, high = max(given[0], needed[0]), max(given[1], needed[1])
+        for width, height in dict.fromkeys(((wide, high), (needed[0], high), (wide, needed[1]), needed)):
+            if (width, height) != given:
+                does = self.tried(with_size(self.model.sized, width, height)) is not None
+                yield f"a board of {_mm(width)} x {_mm(height)} would do" if does else None
+
+    def _hints(self, element: str) -> Iterator[str | None]:
+        """Try what comes out when a hint, that of the element first, is given up in part."""
+        layout = self.model.file.layout
+        hints = {} if layout is None else dict(layout.hints)
+        for name in sorted(hints, key=lambda name: name != element):
+            for keys in _PARTS_OF_HINT:
+                if all(getattr(hints[name], key) is not None for key in keys):
+                    yield self._without(name, hints[name], keys)
+
+    def _without(self, name: str, hint: Hint, keys: tuple[str, ...]) -> str | None:
+        """Return what a placement without parts of a hint would have them say, if that does."""
+        sized, loose = self.model.sized, hint.model_copy(update=dict.fromkeys(keys))
+        found = self.tried(with_hint(sized, name, loose))
+        if found is None:
+            return None
+        texts, values = [], dict[str, object]()
+        if "at" in keys:
+            part = found.parts[name]
+            values["at"] = (part.x * 1e-9, part.y * 1e-9)
+            texts.append(f'at = ["{_mm(part.x)}", "{_mm(part.y)}"]')
+        if "heading" in keys:
+            values["heading"] = found.parts[name].heading
+            texts.append(f"heading = {_named(found.parts[name].heading)}")
+        if keys == ("leave",) and name in found.lines:
+            (ax, ay), (bx, by) = found.lines[name].path[:2]
+            values["leave"] = math.degrees(math.atan2(by - ay, bx - ax)) % 360.0
+            texts.append(f"leave = {_named(math.degrees(math.atan2(by - ay, bx - ax)) % 360.0)}")
+        if texts and self.tried(with_hint(sized, name, loose.model_copy(update=values))) is not None:
+            return f"{' with '.join(texts)} in [layout.hints.{name}] would do"
+        return f"without {' and '.join(keys)} in [layout.hints.{name}] there is a placement"
+
+    def _short_lines(self, element: str) -> Iterator[str | None]:
+        """Try short lines at the nets of an element, and at those of their other ends, with greater angles."""
+        model, near = self.model, set(self.model.owner_nets.get(element, ()))
+        for name, line in model.sized.lines.items():
+            nets = set(line.nets) - {GROUND}
+            if line.angle is None or line.free or len(nets) < 2 or not nets & near:
+                continue
+            for angle in _ANGLES:
+                if angle > math.degrees(line.angle):
+                    does = self.tried(with_angles(model.sized, {name: angle})) is not None
+                    yield f'angle = "{angle:g} deg" for {name} would do' if does else None
+
+    def _plain(self, element: str) -> str:
+        """Return what can be changed for the kind of element, where nothing that was tried does."""
+        file = self.model.file
+        hint = file.layout.hints.get(element) if file.layout is not None else None
+        keys = (
+            [] if hint is None else [key for key in hint.model_fields_set if getattr(hint, key) is not None]
+        )
+        if keys:
+            return f"give up {' or '.join(sorted(keys))} in [layout.hints.{element}]"
+        if element in file.ports:
+            return f"another edge or at for {element}, or longer lines beside it"
+        return f'longer lines beside {element}, or length = "free" for one of them'
+
+
+def _mm(nm: int) -> str:
+    """Return a length in mm, as short as it is exact, with one decimal at least."""
+    text = f"{nm / 1e6:.6f}".rstrip("0")
+    return f"{text}0 mm" if text.endswith(".") else f"{text} mm"
+
+
+def _named(heading: float) -> str:
+    """Return a heading [deg] as a file has it."""
+    return f'"{_NAMES[heading]}"' if heading in _NAMES else f'"{heading:g} deg"'
