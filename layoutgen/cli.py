@@ -39,6 +39,7 @@ _HELP = {"help_option_names": ["-h", "--help"], "max_content_width": 100}
 def main() -> None:
     """Run the command line and exit; no fault of a user ends in a traceback."""
     signal.signal(signal.SIGTERM, lambda *_: sys.exit(128 + signal.SIGTERM))
+    os.environ.setdefault("OPENBLAS_NUM_THREADS", "1")  # threads only get in each other's way: small matrices
     gc.set_threshold(_NEW_OBJECTS, 20, 20)  # a run makes many lasting objects: looking less often saves 4 %
     sys.exit(status_of(sys.argv[1:]))
 

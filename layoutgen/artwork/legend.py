@@ -198,7 +198,7 @@ class _Printer:
         return round(x), round(y)
 
     def _free_block(self, size: tuple[float, float], apart: float, tidy: bool) -> tuple[float, float] | None:
-        """Return the south-west corner of the first free place of a size, apart from texts [nm], edges first."""
+        """Return the south-west corner of the first free place, edges first, ``apart`` [nm] from texts."""
         width, height = size
         first = float(_EDGE_NM + self._limits.legend_distance)
         xs = np.arange(first, self._placement.width - width, _TITLE_STEP_NM)

@@ -13,6 +13,7 @@ import shapely
 from layoutgen.checks.board import Board, Piece
 from layoutgen.checks.drills import touched
 from layoutgen.checks.netgraph import clusters
+from layoutgen.checks.nodes import GROUND
 from layoutgen.checks.planar import middle, whole
 from layoutgen.geometry import Point
 
@@ -79,21 +80,31 @@ class Connections:
     def joints(self) -> Iterator[Joint]:
         """Yield the places where copper of two nodes meets.
 
-        The two halves of a line that is cut at its end on gnd are not a joint. Copper without a node is a
-        bridge: it joins what it touches.
+        The two halves of a line or strip that is cut at its end on gnd are not a joint. Copper without a node
+        is a bridge: it joins what it touches.
         """
         links: dict[int, list[int]] = {}
         for a, b in self.touching.tolist():
             one, other = self.pieces[a], self.pieces[b]
             if one.node is not None and other.node is not None:
-                if one.node != other.node and not (
-                    one.item == other.item and one.role == other.role == "line"
-                ):
+                if one.node != other.node and not self._is_cut(one, other):
                     yield Joint(one, other, middle(one.polygon, other.polygon), self.layer_of[b])
             else:
                 links.setdefault(a, []).append(b)
                 links.setdefault(b, []).append(a)
         yield from self._bridges(links)
+
+    def _is_cut(self, one: Piece, other: Piece) -> bool:
+        """True for two pieces of one line, or of one strip of a pair: such are cut at their end on gnd."""
+        if one.item != other.item or one.role != other.role or one.role not in ("line", "pair"):
+            return False
+        artwork = self.board.artwork
+        pair = None if artwork is None else artwork.placement.pairs.get(one.item)
+        if pair is None:
+            return True
+        strips = shapely.linestrings([list(path) for path in pair.paths])
+        near = [int(np.argmin(shapely.distance(piece.polygon.centroid, strips))) for piece in (one, other)]
+        return near[0] == near[1] and GROUND in (one.node, other.node)
 
     def _bridges(self, links: Mapping[int, list[int]]) -> Iterator[Joint]:
         """Yield the joints through unnamed copper; ``links`` are the neighbours over which it may lead."""

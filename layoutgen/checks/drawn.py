@@ -12,7 +12,7 @@ import shapely
 from layoutgen.artwork import Artwork, Shape
 from layoutgen.checks.board import Area, Board, Drill, Layer, Piece
 from layoutgen.checks.limits import Limits
-from layoutgen.checks.nodes import GROUND, drawn_conductors, joined_nets, tail_of
+from layoutgen.checks.nodes import GROUND, drawn_conductors, joined_nets, pair_tails, tail_of
 from layoutgen.checks.planar import (
     CHORD_NM,
     CORNER_LIMITS,
@@ -25,6 +25,7 @@ from layoutgen.checks.planar import (
     within,
 )
 from layoutgen.geometry import Ring
+from layoutgen.placement import PlacedLine, PlacedPair
 
 __all__ = ["board_of", "bored", "etched", "pour_gaps"]
 
@@ -94,15 +95,21 @@ def _layer(
     return Layer(name, tuple(bored(pieces, drills)))
 
 
-def _tails(artwork: Artwork, limits: Limits) -> Mapping[str, tuple[str, shapely.Polygon]]:
-    """Return for each line that ends on gnd its other net, and the region at its end that counts as gnd."""
+def _tails(artwork: Artwork, limits: Limits) -> Mapping[str, Geometry]:
+    """Return for each line or pair that ends on gnd the region at its ends there that counts as gnd."""
     gaps, gap = pour_gaps(artwork), limits.nm("copper.min_gap") or 0.0
     lines = artwork.placement.lines
-    tails = {}
+    tails: dict[str, Geometry] = {}
     for name, net in drawn_conductors(artwork).items():
         wanted = gaps.get(name, 0.0) + CORNER_LIMITS * gap + lines[name].width
         clear = lines[name].centre_line - _reach_of_others(artwork, name, net) - gap - TOLERANCE_NM
-        tails[name] = (net, tail_of(lines[name], max(min(wanted, clear), gap)))
+        tails[name] = tail_of(lines[name], max(min(wanted, clear), gap))
+    for name, pair in artwork.placement.pairs.items():
+        wanted = gaps.get(name, 0.0) + CORNER_LIMITS * gap + pair.width
+        held = max(_reach_of_others(artwork, name, net) for net in pair.nets if net != GROUND)
+        clear = pair.centre_line - held - gap - TOLERANCE_NM
+        found = [tail for _, tail in pair_tails(pair, max(min(wanted, clear), gap))]
+        tails |= {name: shapely.union_all(found)} if found else {}
     return tails
 
 
@@ -112,7 +119,7 @@ def _reach_of_others(artwork: Artwork, name: str, net: str) -> float:
     What counts as gnd ends short of it: a short stub does not short what it leaves.
     """
     placement = artwork.placement
-    both = (*placement.lines.values(), *placement.pairs.values())
+    both: list[PlacedLine | PlacedPair] = [*placement.lines.values(), *placement.pairs.values()]
     halves = [other.width / 2.0 for other in both if net in other.nets and other.name != name]
     pads = [
         float(np.ptp(pad.outline.points, axis=0).max())
@@ -127,12 +134,12 @@ def _pieces(
     shape: Shape,
     nodes: Mapping[str, str],
     via_names: Mapping[tuple[float, float], str],
-    tails: Mapping[str, tuple[str, shapely.Polygon]],
+    tails: Mapping[str, Geometry],
 ) -> Iterator[Piece]:
-    """Yield a shape's pieces: one, or two where a line that ends on gnd is cut."""
+    """Yield a shape's pieces: one, or two where a line or strip that ends on gnd is cut."""
     polygon, item = _polygon(shape), _item(shape, via_names)
-    if shape.role == "line" and item in tails:
-        net, tail = tails[item]
+    if shape.role in ("line", "pair") and item in tails:
+        net, tail = shape.net or "", tails[item]
         for rest, held in ((polygon.difference(tail), net), (polygon.intersection(tail), GROUND)):
             for part in parts(rest):
                 yield Piece(part, item, held, nodes.get(held), shape.role)

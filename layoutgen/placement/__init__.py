@@ -13,7 +13,8 @@ itself. ``lay`` adds one thing, and what follows from it, to a candidate, by ``l
 ``ports``, ``banks``, ``beside`` and ``lay_cluster``; ``ways`` lists the choices, ``search`` keeps the best
 drawings so far, rejecting by ``clearance`` and ``neighbours``, and what ``lookahead`` finds shut in.
 ``twins`` finds equal branches, which are laid alike, and ``rooms`` makes room for them. ``finish`` settles
-the board's frame, ``explain`` says why a loop cannot be drawn.
+the board's frame. ``stubs`` refuses stubs that would lie inside what they leave, ``explain`` says why a
+loop cannot be drawn, and ``remedies`` what would do, by placing ``requests`` that differ a little.
 """
 
 from layoutgen.placement.model import copper_edge

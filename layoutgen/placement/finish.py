@@ -293,7 +293,7 @@ class _Maker:
             for x, y in self.model.bodies[name].vias
         ]
         out += [self._via(self.frame.moved(at), f"line:{name}", name) for name, at in self.state.line_vias]
-        order = [*self.model.file.parts, *self.model.file.lines]
+        order = [*self.model.file.parts, *self.model.file.lines, *self.model.file.coupled]
         return tuple(sorted(out, key=lambda via: order.index(via.origin.element)))
 
     def _via(self, at: Point, purpose: str, element: str) -> PlacedVia:

@@ -14,7 +14,7 @@ from layoutgen.placement.frame import Pose, ahead, box_to_world, unit
 from layoutgen.placement.kit import PIN_TOLERANCE, Kit, PinnedError, world
 from layoutgen.placement.lines import Lines
 from layoutgen.placement.model import GROUND, strip_owner
-from layoutgen.placement.pairs import pair_obstacles, sector_slices
+from layoutgen.placement.pairs import ground_strip_end, pair_obstacles, sector_slices
 from layoutgen.placement.ports import Ports
 from layoutgen.placement.state import (
     Device,
@@ -131,12 +131,19 @@ class Layer:
             if other.element in widths:
                 across.append(widths[other.element] // 2)
             elif other.kind is EndKind.PAD and turn is None:
-                across.append(self.kit.joint_width(hub.net, other, hub.arrival) // 2)
+                across.append(self.kit.joint_width(hub.net, other, self._facing(hub, other)) // 2)
         offset = self.kit.beside(across)
         if turn != 0.0:
             return offset
         beside = self._side_parts(hub, end)
         return max(offset, beside + self._courtyard_beyond(end)) if beside else offset
+
+    def _facing(self, hub: Hub, end: End) -> End | None:
+        """Return what leaves a junction opposite to an end on its straight path, the widest of several."""
+        if end != hub.arrival:
+            return hub.arrival
+        onward = [arm.end for arm in hub.arms if arm.turn == 0.0] or list(hub.inner)
+        return max(onward, key=self.kit.across, default=None)
 
     def _side_parts(self, hub: Hub, end: End) -> int:
         """Return how far the parts beside a junction reach along its straight path [nm], 0 without any."""
@@ -278,8 +285,7 @@ class Layer:
         node = ahead(outer, reach)
         if reach:
             assert hub.arrival is not None  # the pad itself
-            facing = [arm.end for arm in hub.arms if arm.turn == 0.0] or list(hub.inner)
-            width = self.kit.joint_width(hub.net, hub.arrival, max(facing, key=self.kit.across, default=None))
+            width = self.kit.joint_width(hub.net, hub.arrival, self._facing(hub, hub.arrival))
             self.kit.strip(growth, hub.net, width, (ahead(outer, -OVERLAP).point, node.point))
         if hub.cluster is not None:
             self._enter_cluster(growth, hub, node)
@@ -353,11 +359,13 @@ class Layer:
         growth.pairs[end.element] = LaidPair(end.element, pose, b_side, length)
         growth.obstacles += pair_obstacles(self.kit, end.element, pose, b_side * pitch, length)
         for other, net in self.kit.model.ends[end.element]:
-            if other.index == end.index or net == GROUND:
+            if other.index == end.index:
                 continue
-            hub = self.kit.tour.hubs[net]
-            if hub.arrival == other:
-                node = ahead(
-                    pose, length if other.index in (1, 3) else 0, b_side * pitch if other.index > 1 else 0
-                )
-                self.arrive(growth, hub, node if other.index in (1, 3) else node.turned(180.0))
+            onward = other.index in (1, 3)
+            node = ahead(pose, length if onward else 0, b_side * pitch if other.index > 1 else 0)
+            out = node if onward else node.turned(180.0)
+            if net == GROUND:
+                outward = b_side if (other.index > 1) == onward else -b_side
+                ground_strip_end(self.kit, growth, other, out, outward)
+            elif self.kit.tour.hubs[net].arrival == other:
+                self.arrive(growth, self.kit.tour.hubs[net], out)

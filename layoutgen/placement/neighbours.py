@@ -60,7 +60,7 @@ class Neighbours:
         if Kind.BODY in (a.kind, b.kind) and a.kind != b.kind and not self._is_line(growth, a, b):
             return False
         if a.kind != Kind.BODY and b.kind != Kind.BODY and not self._is_line(growth, a, b):
-            return Kind.GROUND in (a.kind, b.kind) and a.kind != b.kind
+            return Kind.GROUND in (a.kind, b.kind) and a.kind != b.kind and not self._ends_pair(a, b)
         left = self._trimmed(growth, self._softened(a, nets_b), nets_a)
         right = self._trimmed(growth, self._softened(b, nets_a), nets_b)
         return too_near(left, right, self.table)
@@ -85,8 +85,12 @@ class Neighbours:
         """
         pairs = self.model.sized.pairs
         meet = self.model.owner_nets[a.owner] & self.model.owner_nets[b.owner]
-        ends_there = Kind.PAD not in (a.kind, b.kind) and not _overlap(a, b)
+        ends_there = not {Kind.PAD, Kind.GROUND}.intersection((a.kind, b.kind)) and not _overlap(a, b)
         return bool(meet) and (a.owner in pairs) != (b.owner in pairs) and ends_there
+
+    def _ends_pair(self, a: Obstacle, b: Obstacle) -> bool:
+        """True when one of two is the ground copper of a pair's strip, beside what the other strip feeds."""
+        return any(item.kind == Kind.GROUND and item.owner in self.model.sized.pairs for item in (a, b))
 
     def _nets(self, item: Obstacle) -> frozenset[str]:
         if item.kind == Kind.GROUND:

@@ -4,14 +4,17 @@ from __future__ import annotations
 
 import math
 
+from layoutgen.circuit import End
+from layoutgen.placement.bodies import OVERLAP
 from layoutgen.placement.clearance import Kind, Obstacle
-from layoutgen.placement.frame import Box, Pose, box_to_world
+from layoutgen.placement.frame import Box, Pose, box_to_world, to_world
 from layoutgen.placement.kit import Kit
-from layoutgen.placement.state import edge_of_heading
+from layoutgen.placement.model import GROUND
+from layoutgen.placement.state import Growth, edge_of_heading
 from layoutgen.sizing import SizedRadial
 from layoutgen.units import to_nm
 
-__all__ = ["pair_obstacles", "sector_slices"]
+__all__ = ["ground_strip_end", "pair_obstacles", "sector_slices"]
 
 _SLICES = 8  # boxes that stand for a radial stub's sector
 
@@ -42,6 +45,60 @@ def pair_obstacles(kit: Kit, name: str, pose: Pose, offset: int, length: int) ->
         nets = frozenset(net for index, net in ends.items() if index // 2 == line)
         out.append(Obstacle(box, Kind.LINE, name, at_edges=at_edges, inset=inset, nets=nets))
     return out
+
+
+def ground_strip_end(kit: Kit, growth: Growth, end: End, at: Pose, outward: int) -> None:
+    """Put a row of vias across the end of a pair's strip that lies on gnd, and the copper that joins them.
+
+    The axes lie in the plane of the strip's end, as its length has it. The row is moved away from the other
+    strip, and from what that leads to, as far as copper and holes must, and so far that no land reaches
+    beyond the edge of a strip that is wider.
+
+    Args:
+        kit: The circuit.
+        growth: The candidate.
+        end: The strip's end.
+        at: Its point, heading out of the pair.
+        outward: 1 when the other strip lies to the right of that heading, -1 to the left.
+    """
+    limits, width = kit.model.limits, kit.model.widths[end.element]
+    room, edge = _room_inward(kit, end)
+    fit = 1 + 2 * max(0, (width - limits.land) // 2 // limits.pitch)
+    count = max(limits.ground_vias, fit)
+    first = max(-(count - 1) * limits.pitch // 2, -room, min(0, (limits.land - width) // 2))
+    last = first + (count - 1) * limits.pitch
+    spots = [(0, outward * y) for y in range(first, last + 1, limits.pitch)]
+    growth.line_vias += [(end.element, to_world(at, x, y)) for x, y in spots]
+    half = limits.land // 2
+    inner, outer = min(first - half, max(-(width // 2), -edge)), max(width // 2, last + half)
+    box = _strip_box(at, outward, (-half, inner, half, outer))
+    growth.line_grounds.append((end.element, box))
+    growth.obstacles.append(Obstacle(box, Kind.GROUND, end.element))
+    if inner > -(width // 2):  # joined beside the strip, short of its end, where no line comes near
+        bridge = _strip_box(at, outward, (-half, -(width // 2), 0, inner + OVERLAP))
+        growth.line_grounds.append((end.element, bridge))
+
+
+def _strip_box(at: Pose, outward: int, box: Box) -> Box:
+    """Return a box told along a strip's end and outward from its axis [nm] on the board."""
+    low, high = sorted((outward * box[1], outward * box[3]))
+    return box_to_world(at, (box[0], low, box[2], high))
+
+
+def _room_inward(kit: Kit, end: End) -> tuple[int, int]:
+    """Return how far towards the other strip a via's axis, and copper, on gnd may lie [nm]; from the axis.
+
+    A via of the other strip's own end on gnd keeps the pitch; other copper that begins there keeps the gap.
+    """
+    limits, pair = kit.model.limits, kit.model.sized.pairs[end.element]
+    pitch = to_nm(pair.width) + to_nm(pair.gap)
+    net = kit.model.file.coupled[end.element].nets[end.index ^ 2]
+    if net == GROUND:
+        return (pitch - limits.pitch) // 2, to_nm(pair.width) // 2
+    met = kit.model.circuit.nets[net].ends if net in kit.model.circuit.nets else ()
+    widest = max([to_nm(pair.width), *(kit.across(other) for other in met)])
+    edge = pitch - math.ceil(widest / 2) - limits.gap
+    return edge - limits.land // 2, edge
 
 
 def sector_slices(stub: SizedRadial) -> list[Box]:

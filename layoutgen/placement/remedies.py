@@ -46,7 +46,10 @@ class Remedies:
 
     def best(self, element: str) -> str:
         """Return the first remedy that does for an element that found no place; else what can be changed."""
-        some = chain(self._sizes(), self._hints(element), self._short_lines(element))
+        layout = self.model.file.layout
+        hinted = layout is not None and element in layout.hints
+        first = (self._hints(element), self._sizes()) if hinted else (self._sizes(), self._hints(element))
+        some = chain(*first, self._short_lines(element))
         most = _MOST_TRIED if len(elements(self.model.file)) < _LARGE else 2
         return next((text for text in islice(some, most) if text is not None), self._plain(element))
 
@@ -95,7 +98,7 @@ class Remedies:
         return f"without {' and '.join(keys)} in [layout.hints.{name}] there is a placement"
 
     def _short_lines(self, element: str) -> Iterator[str | None]:
-        """Try short lines at the nets of an element, and at those of their other ends, with greater angles."""
+        """Try short lines that meet an element with greater angles."""
         model, near = self.model, set(self.model.owner_nets.get(element, ()))
         for name, line in model.sized.lines.items():
             nets = set(line.nets) - {GROUND}

@@ -54,7 +54,7 @@ def with_free_line(sized: SizedCircuit, name: str) -> SizedCircuit:
 
 
 def as_drawn_might_be(sized: SizedCircuit) -> SizedCircuit:
-    """Return the circuit with each line's phase constant a little different, as a drawing's pour makes them."""
+    """Return the circuit with phase constants a little unlike, as the pour of a drawing makes them."""
     lines = {
         name: replace(line, beta=line.beta * (1.0 + _UNLIKE * (k % 3)))
         for k, (name, line) in enumerate(sized.lines.items())

@@ -20,10 +20,13 @@ from layoutgen.response.mirror import grouped, mirror_images
 from layoutgen.response.network import GROUND
 from layoutgen.response.records import CLOSE_ENOUGH, Holder
 
-__all__ = ["holders", "reachable"]
+__all__ = ["MANY_PORTS", "holders", "reachable"]
 
 _NAMED = 3  # elements named
 _HELPS = 0.95  # a cause counts when the difference falls below this share without it [-]
+_MOST_PORTS = 40
+MANY_PORTS = 12
+"""With more ports only kinds of cause are looked into, with more than 40 none: each takes a fit of its own."""
 _REACH = 1.0  # changes of length that are tried [rad]
 
 
@@ -38,13 +41,16 @@ def holders(match: Match, best: float) -> tuple[Holder, ...]:
 
     Without each, the largest difference in the band would be the holder's ``without`` [-]. When no element
     with its mirror images holds it alone, the strongest kind of cause is named last, with all its elements.
+    Each takes a fit of its own: with more than 12 ports only the kinds are tried, with more than 40 nothing.
 
     Args:
         match: As drawn against wanted.
         best: What the best lengths leave of the drawing as it is [-].
     """
-    causes = _causes(match)
-    found = _helping(match, causes, _HELPS * best)[:_NAMED]
+    causes, ports = _causes(match), match.wanted.shape[-1]
+    if ports > _MOST_PORTS:
+        return ()
+    found = _helping(match, causes, _HELPS * best)[:_NAMED] if ports <= MANY_PORTS else []
     if found and found[0].without <= CLOSE_ENOUGH:
         return tuple(found)
     limit = _HELPS * (found[0].without if found else best)

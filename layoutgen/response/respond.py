@@ -14,6 +14,7 @@ from layoutgen.response.device import Board, device_view, passive_data
 from layoutgen.response.doubts import find_doubts
 from layoutgen.response.drawn import drawn_network
 from layoutgen.response.figures import correction_figures
+from layoutgen.response.holders import MANY_PORTS
 from layoutgen.response.parts import response_ports, terminals
 from layoutgen.response.records import CLOSE_ENOUGH, NOTE_RULE, Correction, DeviceView, Response
 from layoutgen.response.solve import solve
@@ -54,7 +55,7 @@ def respond(artwork: Artwork, folder: Path | None = None) -> Response:
         frequencies=_frozen(sweep.frequencies),
         wanted=_frozen(wanted[:count]),
         as_drawn=_frozen(drawn[:count]),
-        notes=(*sweep.notes, *copper.notes, *_remainder(correction)),
+        notes=(*sweep.notes, *copper.notes, *_remainder(correction, len(ports))),
         spots=_frozen(sweep.spots),
         wanted_at_spots=_frozen(wanted[count:]),
         as_drawn_at_spots=_frozen(drawn[count:]),
@@ -78,7 +79,7 @@ def _device(artwork: Artwork, sweep: Sweep, copper: Copper) -> DeviceView | None
     return device_view(file, sweep.data, wanted, drawn, sweep.frequencies)
 
 
-def _remainder(correction: Correction) -> tuple[tuple[str, str, str], ...]:
+def _remainder(correction: Correction, ports: int) -> tuple[tuple[str, str, str], ...]:
     """Return a note when the band does not come near enough to the schematic, naming what holds it."""
     if correction.after <= CLOSE_ENOUGH:
         return ()
@@ -86,7 +87,9 @@ def _remainder(correction: Correction) -> tuple[tuple[str, str, str], ...]:
     if correction.reachable <= CLOSE_ENOUGH:
         return ((NOTE_RULE, "", f"{text}; other lengths would bring that to {correction.reachable:.3f}"),)
     if not correction.holders:
-        return ((NOTE_RULE, "", f"{text}; no single element holds it"),)
+        few = ports <= MANY_PORTS
+        held = "no single element holds it" if few else "what holds it is not known for so many ports"
+        return ((NOTE_RULE, "", f"{text}; {held}"),)
     held = "; ".join(f"{h.without:.3f} without {h.cause}" for h in correction.holders[:1])
     return ((NOTE_RULE, correction.holders[0].element, f"{text}; {held}"),)
 

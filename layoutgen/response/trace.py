@@ -151,7 +151,7 @@ class _Tracer:
             return f"end {index} of {name}", 0.0, None
         if net == GROUND:
             node = f"foot {index} of {name}"
-            self.post(node, f"line:{name}", self.axes(f"line:{name}"), width)
+            self.post(node, f"line:{name}", self.axes_at(name, at), width)
             return node, 0.0, None
         pad = next((p for p in self.pads if p.net == net and math.dist((p.x, p.y), at) <= SNAP), None)
         if pad is None:
@@ -224,6 +224,19 @@ class _Tracer:
     def axes(self, purpose: str) -> list[_XY]:
         """Return the axes [nm] of an element's vias."""
         return [(via.x, via.y) for via in self.placement.vias if via.purpose == purpose]
+
+    def axes_at(self, name: str, end: Point) -> list[_XY]:
+        """Return the axes [nm] of the vias at one end of a line or pair: those that are nearest to it.
+
+        A coupled pair may end on gnd at several of its corners.
+        """
+        axes = self.axes(f"line:{name}")
+        pair = self.placement.pairs.get(name)
+        if pair is None:
+            return axes
+        corners = [path[k] for path in pair.paths for k in (0, -1)]
+        feet = [at for at, net in zip(corners, pair.nets, strict=True) if net == GROUND]
+        return [axis for axis in axes if min(feet, key=lambda foot: math.dist(foot, axis)) == end]
 
     def post(self, node: str, purpose: str, axes: Sequence[_XY], width: float) -> None:
         """Keep an element's ground vias; a node without any is tied to ground, with a note."""

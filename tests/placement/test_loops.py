@@ -91,14 +91,15 @@ def test_a_loop_too_short_for_its_part_says_so() -> None:
 
 
 def test_a_hybrid_of_unequal_sides_names_the_length_that_would_close_it() -> None:
-    """Catches a remedy that does not close a loop of straight lines: the angles named are tried."""
+    """Catches a remedy that does not close a loop of straight lines: what is named is tried."""
     data = hybrid()
     for name, angle in (("s1", 25.0), ("s2", 27.0), ("v1", 25.0), ("v2", 25.0)):
         data["lines"][name]["angle"] = f"{angle} deg"
     with pytest.raises(InfeasibleError) as caught:
         placed(data)
-    found = re.findall(r'angle = "([0-9.]+) deg" for (\w+)', caught.value.remedy)
+    found = re.findall(r'(angle|length) = "([0-9.]+ deg|free)" for (\w+)', caught.value.remedy)
     assert found
-    for angle, name in found:
-        data["lines"][name]["angle"] = f"{angle} deg"
+    for key, value, name in found:
+        del data["lines"][name]["angle"]
+        data["lines"][name][key] = value
     assert faults(placed(data)) == []

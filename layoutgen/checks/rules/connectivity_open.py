@@ -6,8 +6,9 @@ Why: what is not joined does not work.
 How measured: from finished polygons and plated holes alone; touching is joining, also through other
 copper. Pads, ports and the legs of lines are looked for at their places, so that copper left out
 altogether is found. A line cut through is found also where its halves hang together another way round, as
-in a ring; copper that touches both halves joins them. Pour that hangs on nothing is
-``connectivity.floating``. The place is the middle of the shortest way between the pieces.
+in a ring; copper that touches both halves joins them. An end of a line or strip on gnd must meet copper on
+gnd that hangs on the ground plane by a plated hole, and not by way of the line itself. Pour that hangs on
+nothing is ``connectivity.floating``. The place is the middle of the shortest way between the pieces.
 Source: the circuit file.
 """
 
@@ -24,6 +25,7 @@ from layoutgen.artwork import Artwork
 from layoutgen.checks.board import Board
 from layoutgen.checks.connections import Connections
 from layoutgen.checks.netgraph import clusters
+from layoutgen.checks.nodes import GROUND, ground_end
 from layoutgen.checks.outcome import Hit, Outcome, Rule, mm, named
 from layoutgen.checks.planar import whole
 from layoutgen.geometry import Point
@@ -41,16 +43,14 @@ def find(board: Board) -> Iterator[Outcome]:
     """Yield a hit for each net in pieces and for each place without copper."""
     if board.artwork is None:
         return
-    joined = Connections(board)
-    broken = list(_broken(joined))
-    told = {item for hit in broken for item in hit.items}
-    broken += [hit for hit in _parted(joined) if not told.intersection(hit.items)]
+    joined, broken = Connections(board), list[Hit]()
+    for found in (_broken, _parted, _missing, _ungrounded):
+        told = {item for hit in broken for item in hit.items}
+        broken += [hit for hit in found(joined, board.artwork) if not told.intersection(hit.items)]
     yield from broken
-    named_already = {item for hit in broken for item in hit.items}
-    yield from (hit for hit in _missing(board, board.artwork) if not named_already.intersection(hit.items))
 
 
-def _broken(joined: Connections) -> Iterator[Hit]:
+def _broken(joined: Connections, _: Artwork) -> Iterator[Hit]:
     """Yield a hit for each piece of a net that does not hang together with the rest of it."""
     for members in joined.nodes().values():
         groups: dict[int, list[int]] = {}
@@ -73,7 +73,7 @@ def _broken(joined: Connections) -> Iterator[Hit]:
             )
 
 
-def _parted(joined: Connections) -> Iterator[Hit]:
+def _parted(joined: Connections, _: Artwork) -> Iterator[Hit]:
     """Yield a hit for each line whose own copper is in pieces that no other copper bridges."""
     own: dict[tuple[str, str], list[int]] = {}
     for k, piece in enumerate(joined.board.top.pieces):
@@ -109,13 +109,13 @@ def _halves(members: list[int], touching: npt.NDArray[np.intp]) -> tuple[list[in
     return first, [k for k in members if k not in first]
 
 
-def _missing(board: Board, artwork: Artwork) -> Iterator[Hit]:
+def _missing(joined: Connections, artwork: Artwork) -> Iterator[Hit]:
     """Yield a hit for each pad, port and leg of a line without copper."""
-    wanted = list(_places(artwork))
+    top, wanted = joined.board.top, list(_places(artwork))
     points = shapely.points([at for _, _, at in wanted]) if wanted else np.array([], dtype=object)
     found = np.zeros(len(wanted), dtype=bool)
-    if wanted and board.top.pieces:
-        found[board.top.tree.query(points, predicate="dwithin", distance=_REACH_NM)[0]] = True
+    if wanted and top.pieces:
+        found[top.tree.query(points, predicate="dwithin", distance=_REACH_NM)[0]] = True
     for k in np.flatnonzero(~found).tolist():
         item, net, (x, y) = wanted[k]
         yield Hit(rule=NAME, text=f"no copper for {item}", items=(item,), at=whole(x, y), nets=named(net))
@@ -148,6 +148,43 @@ def _before_end(a: Point, b: Point) -> tuple[float, float]:
     """Return the point a step before b on the way from a [nm]."""
     share = _STEP_NM / float(np.hypot(b[0] - a[0], b[1] - a[1]))
     return b[0] - share * (b[0] - a[0]), b[1] - share * (b[1] - a[1])
+
+
+def _ungrounded(joined: Connections, artwork: Artwork) -> Iterator[Hit]:
+    """Yield a hit for each end of a line or strip on gnd that meets no copper leading to the ground plane."""
+    ends = list(_ground_ends(artwork))
+    if not ends:
+        return
+    pieces, grounded = joined.pieces, _grounded(joined)
+    tree = shapely.STRtree(np.array([pieces[k].polygon for k in grounded], dtype=object))
+    for item, at, width in ends:
+        near = shapely.Point(at).buffer(width)
+        own = [p.polygon for p in joined.board.top.pieces if p.item == item and p.role in ("line", "pair")]
+        end = shapely.union_all([polygon.intersection(near) for polygon in own if polygon.intersects(near)])
+        if not len(tree.query(end, predicate="intersects")):
+            text = f"the end of {item} on {GROUND} has no way to the ground plane"
+            yield Hit(rule=NAME, text=text, items=(item,), at=at, nets=(GROUND,))
+
+
+def _grounded(joined: Connections) -> list[int]:
+    """Return the top's copper on gnd (no lines or strips) and the barrels that hang on the ground plane."""
+    pieces, top = joined.pieces, len(joined.board.top.pieces)
+    on_gnd = np.array([p.node == GROUND and p.role not in ("line", "pair") for p in pieces], dtype=bool)
+    label = clusters(len(pieces), joined.touching[on_gnd[joined.touching].all(axis=1)])
+    plane = {int(label[k]) for k in range(top, top + len(joined.board.bottom.pieces)) if on_gnd[k]}
+    above = [k for k in range(len(pieces)) if joined.layer_of[k] != "copper_bottom"]
+    return [k for k in above if on_gnd[k] and int(label[k]) in plane]
+
+
+def _ground_ends(artwork: Artwork) -> Iterator[tuple[str, Point, int]]:
+    """Yield the ends of lines and strips on gnd: element, point and width [nm]."""
+    for line in artwork.placement.lines.values():
+        if (end := ground_end(line.nets)) is not None:
+            yield line.name, line.path[-end], line.width
+    for pair in artwork.placement.pairs.values():
+        for index, net in enumerate(pair.nets):
+            if net == GROUND:
+                yield pair.name, pair.paths[index // 2][-(index % 2)], pair.width
 
 
 RULE = Rule(names=(NAME,), find=find, keyless=True, needs_circuit=True)

@@ -25,7 +25,7 @@ from layoutgen.artwork import Artwork
 from layoutgen.checks.board import Board
 from layoutgen.checks.drawn import pour_gaps
 from layoutgen.checks.fences import part_outlines
-from layoutgen.checks.nodes import GROUND, ground_end, tail_of
+from layoutgen.checks.nodes import GROUND, ground_end, pair_tails, tail_of
 from layoutgen.checks.outcome import Hit, Outcome, Rule, mm, named, too_small
 from layoutgen.checks.planar import TOLERANCE_NM, Geometry, middle, parts
 from layoutgen.checks.records import NotChecked
@@ -81,6 +81,9 @@ def _lines(
     for line in artwork.placement.lines.values():
         if line.name in lines and ground_end(line.nets) is not None:
             lines[line.name] = lines[line.name].difference(tail_of(line, gaps[line.name]))
+    for pair in artwork.placement.pairs.values():
+        for _, tail in pair_tails(pair, gaps[pair.name]) if pair.name in lines else ():
+            lines[pair.name] = lines[pair.name].difference(tail)
     for name, end, near in coplanar_ends(artwork, gaps):
         if name in lines:
             tail = tail_of(artwork.placement.lines[name], gaps[name] - near, end)
@@ -107,8 +110,8 @@ def _coplanar_notes(artwork: Artwork, gaps: Mapping[str, float]) -> Iterator[Hit
     for name, end, near in coplanar_ends(artwork, gaps):
         net, at = artwork.placement.lines[name].nets[end], artwork.placement.lines[name].path[-end]
         text = (
-            f"{name} meets a grounded coplanar line at net {net}: over the last {mm(gaps[name] - near)} before "
-            f"that its pour may come nearer than {mm(gaps[name])}, to {mm(near)}"
+            f"{name} meets a grounded coplanar line at net {net}: over the last {mm(gaps[name] - near)} "
+            f"before that its pour may come nearer than {mm(gaps[name])}, to {mm(near)}"
         )
         yield Hit(rule=NAME, text=text, items=(name,), at=at, nets=(net,), note=True)
 
