@@ -26,7 +26,7 @@ _NAMED = 3  # elements named
 _HELPS = 0.95  # a cause counts when the difference falls below this share without it [-]
 _MOST_PORTS = 40
 MANY_PORTS = 12
-"""With more ports only kinds of cause are looked into, with more than 40 none: each takes a fit of its own."""
+"""With more ports only kinds of cause are looked into, with more than 40 none: each takes its own fit."""
 _REACH = 1.0  # changes of length that are tried [rad]
 
 
