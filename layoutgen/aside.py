@@ -5,6 +5,7 @@ from __future__ import annotations
 import os
 import pickle
 import signal
+import threading
 from collections.abc import Callable, Iterator
 from contextlib import contextmanager, suppress
 from typing import IO, TypeVar, cast
@@ -18,13 +19,14 @@ Outcome = TypeVar("Outcome")
 def aside(work: Callable[[], Outcome]) -> Iterator[Callable[[], Outcome]]:
     """Begin some work; calling what the block is given waits for its outcome and returns it.
 
-    The outcome is the same as that of calling ``work`` there and then: where processes cannot be copied,
-    where there is one core only, and where the copy comes to grief, that is what happens.
+    The outcome is the same as that of calling ``work`` there and then: where processes cannot be copied, as
+    in one of several threads, where there is one core only, and where the copy comes to grief, that is what
+    happens.
 
     Args:
         work: Takes nothing; must not depend on what the block does, and its outcome can be pickled.
     """
-    if not hasattr(os, "fork") or (os.cpu_count() or 1) < 2:
+    if not hasattr(os, "fork") or threading.active_count() > 1 or (os.cpu_count() or 1) < 2:
         yield work
         return
     source, sink = os.pipe()

@@ -132,12 +132,12 @@ def draw(
 
     Exit status: 1 findings of severity error (the files are written), 2 wrong input, 3 no placement.
     """
-    from layoutgen.writers import Job, file_names, older_packages, prepare_folder, write_files
+    from layoutgen.writers import Job, file_names, load_libraries, older_packages, prepare_folder, write_files
 
     folder = out if out is not None else Path("out", circuit.stem)
     chosen = _receivers(receivers)
     prepare_folder(folder, (*file_names(circuit.stem), *(f"{name}/README.txt" for name in chosen)))
-    result = _run(circuit, quiet, correction=not no_correction)
+    result = _run(circuit, quiet, correction=not no_correction, meanwhile=load_libraries)
     job = Job(stem=circuit.stem, dpi=dpi, repeatable=repeatable)
     files = _encoded(result, job, chosen)
     write_files(folder, files)
@@ -435,13 +435,15 @@ def schema() -> int:
     return CLEAN
 
 
-def _run(circuit: Path, quiet: bool, *, correction: bool = True) -> Result:
+def _run(
+    circuit: Path, quiet: bool, *, correction: bool = True, meanwhile: Callable[[], None] = lambda: None
+) -> Result:
     """Run all stages, with progress on a terminal."""
     from layoutgen.pipeline import run
     from layoutgen.terminal import Progress
 
     with Progress(sys.stderr, enabled=sys.stderr.isatty() and not quiet) as progress:
-        return run(circuit, tell=progress, correction=correction, today=date.today())
+        return run(circuit, tell=progress, correction=correction, today=date.today(), meanwhile=meanwhile)
 
 
 def _write_into(folder: Path, files: Mapping[str, bytes], quiet: bool) -> None:

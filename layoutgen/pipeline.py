@@ -15,6 +15,7 @@ from functools import partial
 from pathlib import Path
 
 from layoutgen.artwork import Artwork, Sketch, complete, sketch
+from layoutgen.aside import aside
 from layoutgen.checks import check
 from layoutgen.circuit import Circuit, build_circuit
 from layoutgen.errors import LayoutgenError
@@ -51,6 +52,7 @@ def run(
     *,
     correction: bool = True,
     today: date | None = None,
+    meanwhile: Callable[[], None] = lambda: None,
 ) -> Result:
     """Return every stage's result for a circuit file and the rule file it names.
 
@@ -59,6 +61,7 @@ def run(
         tell: Called with the name of each stage as it begins.
         correction: False leaves the lengths as their budgets alone give them, whatever the response.
         today: The day on which waivers are judged; None takes none as expired.
+        meanwhile: Called while a copy of the process may still be at the checks: for what the results need.
 
     Raises:
         WrongInputError: A faulty file, or a circuit outside what the formulas cover.
@@ -67,7 +70,7 @@ def run(
     clock = _Clock(tell)
     with clock("reading"):
         inputs = read_inputs(path)
-    return _run(inputs.circuit, inputs.rules, clock, None, correction, today)
+    return _run(inputs.circuit, inputs.rules, clock, None, correction, today, meanwhile)
 
 
 def run_inputs(
@@ -100,15 +103,18 @@ def _run(
     folder: Path | None,
     correction: bool,
     today: date | None,
+    meanwhile: Callable[[], None] = lambda: None,
 ) -> Result:
     with clock("circuit"):
         circuit = build_circuit(file, rules)
     fit = partial(correct_lengths, folder=folder) if correction and has_response(file) else None
     artwork, notes = _settled(circuit, clock, fit)
-    with clock("checks"):
-        checks = check(artwork, today)
-    with clock("response"):
-        response = respond(artwork, folder) if has_response(file) else None
+    with aside(partial(check, artwork, today)) as checked:
+        with clock("response"):
+            response = respond(artwork, folder) if has_response(file) else None
+        meanwhile()
+        with clock("checks"):
+            checks = checked()
     return Result(artwork=artwork, checks=checks, response=response, seconds=clock.seconds, notes=notes)
 
 

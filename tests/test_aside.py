@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import os
+import threading
 import time
 from collections.abc import Callable
 
@@ -11,6 +12,12 @@ import pytest
 from layoutgen.aside import aside
 
 HERE = os.getpid()
+
+
+@pytest.fixture(autouse=True)
+def only_thread(monkeypatch: pytest.MonkeyPatch) -> None:
+    """The test runner's own threads must not decide."""
+    monkeypatch.setattr(threading, "active_count", lambda: 1)
 
 
 def test_outcome_comes_from_another_process() -> None:
@@ -61,6 +68,13 @@ def test_errors_are_raised_here() -> None:
 def test_without_copies_the_work_is_done_here(monkeypatch: pytest.MonkeyPatch) -> None:
     """Systems without a way to copy a process draw too."""
     monkeypatch.delattr(os, "fork")
+    with aside(os.getpid) as outcome:
+        assert outcome() == os.getpid()
+
+
+def test_of_several_threads_none_is_copied(monkeypatch: pytest.MonkeyPatch) -> None:
+    """A copy holds the locks of threads that it does not have, and may wait for them for ever."""
+    monkeypatch.setattr(threading, "active_count", lambda: 2)
     with aside(os.getpid) as outcome:
         assert outcome() == os.getpid()
 

@@ -25,7 +25,8 @@ ORDER: tuple[tuple[str, ...], ...] = (
     ("foreign",),
     ("compare",),
     ("writers",),
-    ("size_report", "pipeline", "terminal", "aside"),
+    ("aside",),
+    ("size_report", "pipeline", "terminal"),
     ("watch",),
     ("cli",),
 )

@@ -9,6 +9,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Iterable
 from dataclasses import replace
+from importlib import import_module
 from pathlib import Path
 
 from layoutgen.writers.dxf import write_dxf
@@ -34,6 +35,7 @@ __all__ = [
     "encode",
     "file_names",
     "findings_report",
+    "load_libraries",
     "older_packages",
     "prepare_folder",
     "response_files",
@@ -76,6 +78,12 @@ def encode(result: Result, job: Job, formats: Iterable[str] = FORMATS) -> dict[s
         name = pattern.format(stem=job.stem, ports=ports)
         files[name] = FORMATS[pattern](result, replace(job, files={**job.files, **files}))
     return files
+
+
+def load_libraries() -> None:
+    """Import what the writers need, which takes a while and can be done before there is a result."""
+    for name in ("ezdxf", "matplotlib.backends.backend_agg", "matplotlib.textpath", "PIL.PngImagePlugin"):
+        import_module(name)
 
 
 def file_names(stem: str) -> list[str]:
