@@ -61,13 +61,13 @@ def test_stages_are_told_in_order(notch: layoutgen.Inputs) -> None:
     """Progress names what is at work; a stage left out would be a silent wait."""
     told: list[str] = []
     pipeline.run_inputs(notch.circuit, notch.rules, told.append)
-    order = ["circuit", "sizing", "placement", "artwork", "correction", "checks", "response"]
+    order = ["circuit", "sizing", "placement", "artwork", "correction", "response", "checks"]
     assert list(dict.fromkeys(told)) == order
 
 
 def test_every_stage_has_its_seconds(result: layoutgen.Result) -> None:
     """They go into report.json; rounds of one stage add up."""
-    assert list(result.seconds) == ["circuit", "sizing", "placement", "artwork", "checks", "response"]
+    assert list(result.seconds) == ["circuit", "sizing", "placement", "artwork", "response", "checks"]
     assert all(seconds > 0.0 for seconds in result.seconds.values())
 
 
