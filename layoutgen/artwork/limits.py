@@ -6,7 +6,7 @@ import math
 from dataclasses import dataclass
 
 from layoutgen.formulas.constants import C0
-from layoutgen.placement import copper_edge
+from layoutgen.placement import copper_edge, hole_land
 from layoutgen.reading import FenceRules, LegendRules, MaskRules
 from layoutgen.sizing import SizedCircuit
 from layoutgen.units import to_nm
@@ -23,8 +23,6 @@ _MIN_WIDTH, _MIN_GAP = 150_000, 150_000
 _ISLAND_NM2, _CORNER_DEG = 500_000.0 * 1e6, 85.0
 _HOLE_WEB, _HOLE_COPPER, _HOLE_EDGE = 300_000, 200_000, 500_000
 _MASK_EXPANSION, _MASK_WEB = 50_000, 100_000
-_HOLE_LAND = 400_000
-"""Copper around a plated hole, for the head of a screw [nm]: common practice, no source."""
 _LEGEND_LINE, _LEGEND_DISTANCE = 150_000, 150_000
 
 
@@ -99,7 +97,7 @@ def limits_of(sized: SizedCircuit) -> Limits:
         hole_web=web,
         hole_copper=_nm(holes.min_copper_distance, _HOLE_COPPER),
         hole_edge=_nm(holes.min_edge_distance, _HOLE_EDGE),
-        hole_land=max(_HOLE_LAND, _nm(holes.min_annular_ring, 0)),
+        hole_land=hole_land(rules),
         via_drill=drill,
         via_land=land,
         via_pitch=pitch,

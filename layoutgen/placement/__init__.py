@@ -17,7 +17,7 @@ the board's frame. ``stubs`` refuses stubs that would lie inside what they leave
 loop cannot be drawn, and ``remedies`` what would do, by placing ``requests`` that differ a little.
 """
 
-from layoutgen.placement.model import copper_edge
+from layoutgen.placement.model import copper_edge, hole_land
 from layoutgen.placement.place import place
 from layoutgen.placement.records import (
     Bend,
@@ -50,5 +50,6 @@ __all__ = [
     "Placement",
     "Strip",
     "copper_edge",
+    "hole_land",
     "place",
 ]

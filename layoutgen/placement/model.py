@@ -14,12 +14,13 @@ from layoutgen.reading import RuleFile
 from layoutgen.sizing import SizedCircuit
 from layoutgen.units import to_nm
 
-__all__ = ["GROUND", "Limits", "Model", "copper_edge", "strip_owner"]
+__all__ = ["GROUND", "Limits", "Model", "copper_edge", "hole_land", "strip_owner"]
 
 GROUND = "gnd"
 _DEFAULT_SPACING_HEIGHTS = 3.0  # used to place when the rule file is silent; common practice, no source
 _RING_ROOM = 100_000  # [nm] more than a row of vias must have
 _DEFAULT_EDGE = 300_000  # [nm], copper to profile and cut-outs; common practice, no source
+_HOLE_LAND = 400_000  # [nm], copper around a plated hole, for the head of a screw; common practice, no source
 _DEFAULT_GROUND_VIAS = 2  # per ground pad; common practice, no source
 
 
@@ -29,8 +30,8 @@ class Limits:
 
     ``spacing`` between lines not meant to couple, ``gap`` between copper of two nets, ``edge`` from copper
     to profile and cut-outs, ``hole`` from copper to an unplated hole's wall, ``hole_edge`` from a hole's wall
-    to the profile, ``margin`` from copper to the profile where no ground ring is wanted, ``neck`` the least
-    width.
+    to the profile, ``hole_land`` how far a plated hole's land reaches from its wall, ``margin`` from copper
+    to the profile where no ground ring is wanted, ``neck`` the least width.
     """
 
     height: int
@@ -39,6 +40,7 @@ class Limits:
     edge: int
     hole: int
     hole_edge: int
+    hole_land: int
     margin: int
     neck: int
     expansion: int
@@ -67,6 +69,7 @@ class Limits:
             edge=edge,
             hole=_nm(holes.min_copper_distance),
             hole_edge=_nm(holes.min_edge_distance),
+            hole_land=hole_land(rules),
             margin=max(edge, _nm(file.board.margin)),
             neck=_nm(None if copper is None else copper.min_width),
             expansion=_nm(None if rules.mask is None else rules.mask.expansion),
@@ -84,6 +87,11 @@ def copper_edge(rules: RuleFile) -> int:
     """
     asked = rules.copper.min_edge_distance
     return _DEFAULT_EDGE if asked is None else to_nm(asked)
+
+
+def hole_land(rules: RuleFile) -> int:
+    """Return how far the land of a plated hole reaches beyond its wall [nm] (common practice, no source)."""
+    return max(_HOLE_LAND, _nm(rules.holes.min_annular_ring))
 
 
 def _nm(value: float | None) -> int:

@@ -141,12 +141,15 @@ def _board_holes(model: Model, bounds: Bounds) -> list[Obstacle]:
         x, y = round(bounds.x0) + to_nm(hole.at[0]), round(bounds.y0) + to_nm(hole.at[1])
         r = to_nm(hole.diameter / 2) + 1
         out.append(Obstacle((x - r, y - r, x + r, y + r), Kind.HOLE, "board"))
+        if hole.plated:
+            r += model.limits.hole_land
+            out.append(Obstacle((x - r, y - r, x + r, y + r), Kind.GROUND, "board", corridor=True))
     return out
 
 
 def _holes_extent(model: Model, state: State, holes: list[Obstacle]) -> tuple[float, float, float, float]:
     x0, y0, x1, y1 = state.extent
-    for hole in holes:
+    for hole in (hole for hole in holes if hole.kind is Kind.HOLE):
         edge = model.limits.hole_edge
         x0, y0 = min(x0, hole.box[0] - edge), min(y0, hole.box[1] - edge)
         x1, y1 = max(x1, hole.box[2] + edge), max(y1, hole.box[3] + edge)

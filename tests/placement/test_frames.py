@@ -6,6 +6,8 @@ from typing import Any
 
 import pytest
 
+from layoutgen.artwork import draw
+from layoutgen.checks import check
 from layoutgen.circuit import build_circuit
 from layoutgen.placement import Placement, place
 from layoutgen.reading import inputs_from_data
@@ -107,3 +109,15 @@ def test_holes_of_ground_vias_keep_their_distance_from_the_profile() -> None:
     placement = placed(data)
     wall = min(min(v.x, v.y, placement.width - v.x, placement.height - v.y) for v in placement.vias) - 150_000
     assert wall >= 500_000
+
+
+def test_lines_keep_off_the_land_of_a_plated_board_hole() -> None:
+    """Catches a line led past a plated hole's wall only: its land would be shorted, or a hair away."""
+    hole = {"at": ["21 mm", "9 mm"], "diameter": "3.2 mm", "plated": True}
+    data = base(
+        ports=two_ports(),
+        lines={"in": line("a", "m", angle="60 deg"), "out": free("m", "z")},
+        board=board("42 mm", "23 mm", holes=[hole]),
+    )
+    found = [f for f in check(draw(placed(data))).findings if f.severity == "error"]
+    assert found == []
