@@ -30,9 +30,16 @@ from tests.seeded_faults.faults import (
 
 
 def limit(artwork: Artwork, key: str) -> float:
-    """Return a length of the rule file [nm]."""
+    """Return a length of the rule file [nm].
+
+    Raises:
+        LookupError: the rule file is silent, so there is nothing to break.
+    """
     table, name = key.split(".")
-    return float(getattr(getattr(artwork.placement.sized.circuit.rules, table), name)) * 1e9
+    found = getattr(getattr(artwork.placement.sized.circuit.rules, table), name, None)
+    if found is None:
+        raise LookupError(f"no {key} in the rule file")
+    return float(found) * 1e9
 
 
 def wide_line(artwork: Artwork, rng: random.Random) -> Seeded:
