@@ -11,9 +11,7 @@ import gc
 import os
 import signal
 import sys
-from collections.abc import Callable, Iterable, Mapping, Sequence
-from contextlib import nullcontext
-from dataclasses import replace
+from collections.abc import Callable, Mapping, Sequence
 from datetime import date
 from functools import partial
 from pathlib import Path
@@ -23,10 +21,12 @@ import click
 
 from layoutgen.errors import InfeasibleError, LayoutgenError, WrongInputError
 from layoutgen.origin import Fault, Location
+from layoutgen.terminal import print_table, print_tables
+from layoutgen.wording import FINDING_HEADS, counts, finding_rows, many, summary
 
 if TYPE_CHECKING:
     from layoutgen.checks import Finding, NotChecked
-    from layoutgen.writers import Job, Result
+    from layoutgen.writers import Result
 
 __all__ = ["cli", "main", "status_of"]
 
@@ -132,6 +132,7 @@ def draw(
 
     Exit status: 1 findings of severity error (the files are written), 2 wrong input, 3 no placement.
     """
+    from layoutgen.delivery import encoded
     from layoutgen.writers import Job, file_names, load_libraries, older_packages, prepare_folder, write_files
 
     folder = out if out is not None else Path("out", circuit.stem)
@@ -139,17 +140,17 @@ def draw(
     prepare_folder(folder, (*file_names(circuit.stem), *(f"{name}/README.txt" for name in chosen)))
     result = _run(circuit, quiet, correction=not no_correction, meanwhile=load_libraries)
     job = Job(stem=circuit.stem, dpi=dpi, repeatable=repeatable)
-    files = _encoded(result, job, chosen)
+    files = encoded(result, job, chosen)
     write_files(folder, files)
     if not quiet:
         click.echo(f"open {folder / 'report.html'} for the picture, the tables and the findings", err=True)
-        click.echo(_summary(result))
-        _print_findings(result.findings, verbose)
+        click.echo(summary(result))
+        print_table("Findings", FINDING_HEADS, finding_rows(result.findings, verbose))
         for path in (path for path in files if "/" not in path):
             click.echo(f"wrote {folder / path}")
         for name in chosen:
             count = sum(path.startswith(f"{name}/") for path in files)
-            click.echo(f"wrote {folder / name} ({_many(count, 'file')})")
+            click.echo(f"wrote {folder / name} ({many(count, 'file')})")
     if old := older_packages(folder, files):
         click.echo(
             f"of an earlier run, not of this drawing: {', '.join(old)} in {folder} (see --for)", err=True
@@ -182,27 +183,6 @@ def _receivers_like(typed: str) -> list[str]:
     return [f"{before}{comma}{name}" for name in names if name.startswith(last)]
 
 
-def _encoded(result: Result, job: Job, receivers: Sequence[str]) -> dict[str, bytes]:
-    """Return all files by their paths; the packages are encoded while the picture is painted."""
-    from layoutgen.aside import aside
-    from layoutgen.writers import ABOUT_ALL, FORMATS, encode
-
-    pictures = ("{stem}.png",)
-    files = encode(result, job, [name for name in FORMATS if name not in (*pictures, *ABOUT_ALL)])
-    work = partial(_packages, result, replace(job, files=dict(files)), receivers)
-    with aside(work) if receivers else nullcontext(dict) as packages:
-        files |= encode(result, job, pictures)
-        files |= packages()
-    return files | encode(result, replace(job, files=files), ABOUT_ALL)
-
-
-def _packages(result: Result, job: Job, receivers: Sequence[str]) -> dict[str, bytes]:
-    """Return all receivers' files by their paths."""
-    from layoutgen.writers.packages import encode_packages
-
-    return encode_packages(result, job, receivers)
-
-
 def _proved(result: Result, files: dict[str, bytes], quiet: bool, verbose: bool) -> bool:
     """Read all files back and print what was found; return whether they hold the model."""
     from layoutgen.writers.proof import proof_rows, prove
@@ -210,7 +190,7 @@ def _proved(result: Result, files: dict[str, bytes], quiet: bool, verbose: bool)
     proof = prove(result, files)
     rows = [row for row in proof_rows(proof) if verbose or row[0] != "ok"]
     if not quiet:
-        _print_table("Proof", ("verdict", "file", "reader", "what", "measured", "limit"), rows)
+        print_table("Proof", ("verdict", "file", "reader", "what", "measured", "limit"), rows)
         click.echo(f"{len(proof.checks)} read-back checks, {len(proof.failures)} failed")
         for item in proof.not_proved:
             click.echo(f"not proved: {item.file}: {item.reason}")
@@ -239,7 +219,7 @@ def size(circuit: Path, as_json: bool, quiet: bool, verbose: bool) -> int:
             "drawn straight, before placement: bends and free lines are known to `draw` only", err=True
         )
         for table in tables:
-            _print_table(table.title, table.heads, table.rows)
+            print_table(table.title, table.heads, table.rows)
     if verbose:
         for note in sized.notes:
             click.echo(f"note: {note}", err=True)
@@ -269,20 +249,20 @@ def check(
 
     if circuit.suffix.lower() in _ARTWORK_SUFFIXES:
         findings, not_checked = _foreign(circuit, rules, layers, unit)
-        head = f"{circuit.name}: {_counts(findings)}; {len(not_checked)} not checked"
+        head = f"{circuit.name}: {counts(findings)}; {len(not_checked)} not checked"
     else:
         _refuse_artwork_options(circuit, rules, layers, unit)
         result = _run(circuit, quiet)
-        findings, not_checked, head = result.findings, result.checks.not_checked, _summary(result)
+        findings, not_checked, head = result.findings, result.checks.not_checked, summary(result)
     if junit is not None:
         _write_junit(junit, findings, not_checked)
     if as_json:
         click.echo(findings_json(findings, not_checked))
     elif not quiet:
         click.echo(head)
-        _print_findings(findings, notes=True)
+        print_table("Findings", FINDING_HEADS, finding_rows(findings, notes=True))
         rows = [(item.rule, item.reason) for item in not_checked]
-        _print_table("Not checked", ("not checked", "reason"), rows)
+        print_table("Not checked", ("not checked", "reason"), rows)
     return FINDINGS if any(finding.counts for finding in findings) else CLEAN
 
 
@@ -337,7 +317,7 @@ def compare(first: Path, second: Path, picture: Path | None, quiet: bool) -> int
         write_files(picture.parent, {picture.name: overlay(comparison, a, b)})
     if not quiet:
         click.echo(comparison.summary())
-        _print_table("Changes", ("severity", "layer", "kind", "net", "what"), comparison.rows())
+        print_table("Changes", ("severity", "layer", "kind", "net", "what"), comparison.rows())
     return CLEAN if comparison.equal else FINDINGS
 
 
@@ -375,7 +355,7 @@ def tolerance(
     )
     if not quiet:
         click.echo(f"yield {100.0 * found.yield_share:.1f} % of {found.samples} samples, seed {found.seed}")
-        _print_tables(tolerance_tables(found))
+        print_tables(tolerance_tables(found))
     if out is not None:
         _write_into(out, tolerance_files(found, result.circuit.file.design.title), quiet)
     if verbose:
@@ -416,7 +396,7 @@ def response(circuit: Path, out: Path | None, quiet: bool, verbose: bool) -> int
             circuit, "a circuit without RF ports", "one with at least one port of kind rf, or terminations"
         )
     if not quiet:
-        _print_tables(response_tables(result.response))
+        print_tables(response_tables(result.response))
     if out is not None:
         _write_into(out, response_files(result, Job(stem=circuit.stem)), quiet)
     if verbose:
@@ -459,54 +439,6 @@ def _wrong(path: Path, found: str, allowed: str) -> WrongInputError:
     return WrongInputError([Fault(Location(str(path), 0), "", found, allowed)])
 
 
-def _summary(result: Result) -> str:
-    """Return one line: the board and how many findings there are."""
-    placement, artwork, file = result.placement, result.artwork, result.circuit.file
-    return (
-        f"{placement.width / 1e6:g} x {placement.height / 1e6:g} mm, {_many(len(file.lines), 'line')}, "
-        f"{_many(len(placement.parts), 'part')}, {_many(len(artwork.vias), 'via')}; "
-        f"{_counts(result.findings)}; {len(result.checks.not_checked)} not checked"
-    )
-
-
-def _counts(findings: Sequence[Finding]) -> str:
-    """Return how many findings count, by severity."""
-    found = [finding.severity for finding in findings if finding.waived is None]
-    return ", ".join(_many(found.count(kind), kind) for kind in ("error", "warning", "note"))
-
-
-def _many(count: int, noun: str) -> str:
-    return f"{count} {noun}" if count == 1 else f"{count} {noun}s"
-
-
-def _print_findings(findings: Sequence[Finding], notes: bool) -> None:
-    """Print the findings as a table, numbered as in the report."""
-    shown = [(n, f) for n, f in enumerate(findings, start=1) if notes or f.severity != "note"]
-    rows = [
-        (str(n), f.severity if f.waived is None else "waived", f.rule, ", ".join(f.items) or "-", f.text)
-        for n, f in shown
-    ]
-    _print_table("Findings", ("no", "severity", "rule", "items", "what"), rows)
-
-
 def _print_seconds(result: Result) -> None:
     for stage, seconds in result.seconds.items():
         click.echo(f"{stage}: {seconds:.3f} s", err=True)
-
-
-def _print_tables(tables: Iterable[tuple[str, Sequence[str], Sequence[Sequence[str]]]]) -> None:
-    """Print several tables, each below its title."""
-    for title, heads, rows in tables:
-        if rows and not sys.stdout.isatty():
-            click.echo(f"{title}:")
-        _print_table(title, heads, rows)
-
-
-def _print_table(title: str, heads: Sequence[str], rows: Sequence[Sequence[str]]) -> None:
-    """Print a table: with lines and colours on a terminal, plain when piped; nothing when it has no rows."""
-    from layoutgen.terminal import plain_table, rich_table
-
-    if rows and sys.stdout.isatty():
-        rich_table(title, heads, rows, sys.stdout)
-    elif rows:
-        click.echo(plain_table(heads, rows) + "\n")

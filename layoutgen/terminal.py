@@ -2,12 +2,15 @@
 
 from __future__ import annotations
 
+import sys
 import threading
-from collections.abc import Sequence
+from collections.abc import Iterable, Sequence
 from types import TracebackType
 from typing import Any, TextIO
 
-__all__ = ["Progress", "plain_table", "rich_table"]
+import click
+
+__all__ = ["Progress", "plain_table", "print_table", "print_tables", "rich_table"]
 
 Row = Sequence[str]
 
@@ -39,6 +42,22 @@ def rich_table(title: str, heads: Row, rows: Sequence[Row], stream: TextIO) -> N
     for row in rows:
         table.add_row(*(Text(text, style=_STYLES.get(text, "")) for text in row))
     Console(file=stream).print(table)
+
+
+def print_tables(tables: Iterable[tuple[str, Row, Sequence[Row]]]) -> None:
+    """Print several tables to standard output, each below its title."""
+    for title, heads, rows in tables:
+        if rows and not sys.stdout.isatty():
+            click.echo(f"{title}:")
+        print_table(title, heads, rows)
+
+
+def print_table(title: str, heads: Row, rows: Sequence[Row]) -> None:
+    """Print a table: with lines and colours on a terminal, plain when piped; nothing when it has no rows."""
+    if rows and sys.stdout.isatty():
+        rich_table(title, heads, rows, sys.stdout)
+    elif rows:
+        click.echo(plain_table(heads, rows) + "\n")
 
 
 _STYLES = {"error": "bold red", "warning": "yellow", "note": "dim"}

@@ -26,7 +26,7 @@ ORDER: tuple[tuple[str, ...], ...] = (
     ("compare",),
     ("writers",),
     ("aside",),
-    ("size_report", "pipeline", "terminal"),
+    ("delivery", "size_report", "pipeline", "terminal", "wording"),
     ("watch",),
     ("cli",),
 )
@@ -40,7 +40,7 @@ EXCEPTIONS = {
 HEAVY = ("scipy", "shapely", "gdstk", "ezdxf", "matplotlib", "skrf", "rich", "PIL")
 LIGHT_STAGES = (
     "origin", "errors", "units", "numbers", "formulas", "reading", "circuit", "sizing", "size_report",
-    "terminal", "aside", "cli",
+    "terminal", "wording", "delivery", "aside", "cli",
 )  # fmt: skip
 """What `--help` and `size` go through: no library of :data:`HEAVY` may be imported at module level."""
 
