@@ -106,6 +106,7 @@ tbody th{font-weight:600;white-space:nowrap}
 td{white-space:nowrap}
 td.t{white-space:normal;min-width:17rem}
 .n{text-align:right;font-variant-numeric:tabular-nums;white-space:nowrap}
+thead .n{white-space:normal}
 .beside{display:flex;flex-wrap:wrap;gap:0 2rem;align-items:flex-start}
 td small{color:var(--soft)}
 .error{color:var(--bad);font-weight:600}
