@@ -23,6 +23,7 @@ TRACE_HEADS = (
 )  # fmt: skip
 """Headings of :func:`trace_values`."""
 
+_ROUNDING = 10.0 ** (-150.0 / 20.0)
 _WIDTH = 760
 _STYLE = (
     "svg{font:12px Helvetica,Arial,'DejaVu Sans',sans-serif}text{fill:#2b261e}.m{text-anchor:middle}"
@@ -57,22 +58,40 @@ def traces_of(response: Response) -> list[Trace]:
 
 
 def trace_values(response: Response) -> list[tuple[str, ...]]:
-    """Return rows of text, each trace at each spot: levels [dB], angles [deg], and their changes."""
+    """Return rows of text, each trace at each spot: levels [dB], angles [deg], and their changes.
+
+    Below -150 dB there is only what rounding leaves: such a level and its angle read "none".
+    """
     return [_values(response, trace, k) for trace in traces_of(response) for k in range(len(response.spots))]
 
 
 def _values(response: Response, trace: Trace, spot: int) -> tuple[str, ...]:
     both = (response.wanted_at_spots, response.as_drawn_at_spots)
     wanted, drawn = (complex(s[spot, trace.row, trace.column]) for s in both)
-    levels = float(decibels(wanted)), float(decibels(drawn))
-    angles = math.degrees(cmath.phase(wanted)), math.degrees(cmath.phase(drawn))
-    turn = (angles[1] - angles[0] + 180.0) % 360.0 - 180.0
+    levels = _with_change(_level(wanted), _level(drawn))
+    *angles, turn = _with_change(_angle(wanted), _angle(drawn))
+    turn = None if turn is None else (turn + 180.0) % 360.0 - 180.0
     return (
         trace.name,
         f"{response.spots[spot] / 1e9:.9g}",
-        *(fixed(value, 2) for value in (*levels, levels[1] - levels[0])),
-        *(fixed(value, 1) for value in (*angles, turn)),
+        *("none" if value is None else fixed(value, 2) for value in levels),
+        *("none" if value is None else fixed(value, 1) for value in (*angles, turn)),
     )
+
+
+def _level(s: complex) -> float | None:
+    """Return the level [dB] of an S-parameter [-]; none where it is only what rounding leaves."""
+    return float(decibels(s)) if abs(s) > _ROUNDING else None
+
+
+def _angle(s: complex) -> float | None:
+    """Return the angle [deg] of an S-parameter [-]; none where it is only what rounding leaves."""
+    return math.degrees(cmath.phase(s)) if abs(s) > _ROUNDING else None
+
+
+def _with_change(first: float | None, second: float | None) -> tuple[float | None, ...]:
+    """Return both values and what the second has more, where both are known."""
+    return first, second, None if first is None or second is None else second - first
 
 
 def write_csv(response: Response) -> bytes:

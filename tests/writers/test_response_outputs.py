@@ -16,7 +16,7 @@ from layoutgen.numbers import json_text
 from layoutgen.reading import Tolerance as Limits
 from layoutgen.response import Correction, Holder, Response, Tolerance, tolerance
 from layoutgen.writers import Job, Result, response_files
-from layoutgen.writers.response_files import write_plot
+from layoutgen.writers.response_files import trace_values, write_plot
 from layoutgen.writers.response_json import response_entries
 from layoutgen.writers.response_png import write_response_png
 from layoutgen.writers.response_tables import response_tables, tolerance_tables
@@ -190,3 +190,16 @@ class TestTolerance:
         files = tolerance_files(spread, "Gauge driver")
         assert files["tolerance.png"].startswith(b"\x89PNG")
         assert files == tolerance_files(spread, "Gauge driver")
+
+
+def test_what_only_rounding_leaves_reads_none(driver: Result) -> None:
+    """The level and angle of a wave that is not there are noise, and so is their change."""
+    assert driver.response is not None
+    silent = np.where(np.eye(len(driver.response.ports)), 1e-8, driver.response.wanted_at_spots)
+    rows = trace_values(replace(driver.response, wanted_at_spots=silent))
+    reflections = [row for row in rows if " to " not in row[0]]
+    assert reflections
+    for row in reflections:
+        assert (row[2], row[4], row[5], row[7]) == ("none",) * 4
+        assert "none" not in (row[3], row[6])
+    assert not any("none" in row for row in trace_values(driver.response))
