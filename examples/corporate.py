@@ -81,9 +81,17 @@ def _output(data: Data, net: str, tag: str) -> None:
     data["lines"][f"out{tag}"] = free(net, f"o{tag}")
 
 
+def _ways(text: str) -> int:
+    """Return the number of ways asked for, or end with a message."""
+    ways = int(text) if text.isascii() and text.isdigit() else 0
+    if ways < 2 or ways & (ways - 1):
+        sys.exit(f"{text!r} ways; a power of two from 2 on; usage: examples/corporate.py [WAYS] [FOLDER]")
+    return ways
+
+
 def main() -> None:
     """Draw a feed, tell its size and its findings, and write the files where a folder is given."""
-    ways = int(sys.argv[1]) if len(sys.argv) > 1 else 8
+    ways = _ways(sys.argv[1]) if len(sys.argv) > 1 else 8
     inputs = layoutgen.inputs_from_data(feed(ways))
     if len(sys.argv) > 2:
         result = layoutgen.run_inputs(inputs.circuit, inputs.rules)
