@@ -20,6 +20,7 @@ from layoutgen.response.chain import FloatArray
 from layoutgen.response.fit import fitted
 from layoutgen.response.match import Match, resized
 from layoutgen.response.sweep import part_data
+from layoutgen.response.threads import one_thread
 from layoutgen.response.trace import trace_copper
 from layoutgen.sizing import SizedCircuit
 
@@ -46,6 +47,7 @@ class LengthFit:
     expected: float = 0.0
 
 
+@one_thread()
 def correct_lengths(
     artwork: Artwork, folder: Path | None = None, sized: SizedCircuit | None = None
 ) -> LengthFit:

@@ -19,6 +19,7 @@ from layoutgen.response.parts import response_ports, terminals
 from layoutgen.response.records import CLOSE_ENOUGH, NOTE_RULE, Correction, DeviceView, Response
 from layoutgen.response.solve import solve
 from layoutgen.response.sweep import Sweep, plan_sweep
+from layoutgen.response.threads import one_thread
 from layoutgen.response.trace import trace_copper
 from layoutgen.response.wanted import wanted_network
 
@@ -29,6 +30,7 @@ _CHUNK = 2048  # frequencies of one network: bounds the memory of long sweeps
 ArrayType = TypeVar("ArrayType", bound=npt.NDArray[np.generic])
 
 
+@one_thread()
 def respond(artwork: Artwork, folder: Path | None = None) -> Response:
     """Return the wanted and the as-drawn S-parameters of an artwork.
 

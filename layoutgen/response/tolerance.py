@@ -30,6 +30,7 @@ from layoutgen.response.parts import response_ports
 from layoutgen.response.samples import ETCHING, HEIGHT, PERMITTIVITY, Found, Job, spreads
 from layoutgen.response.solve import solve
 from layoutgen.response.sweep import part_data
+from layoutgen.response.threads import one_thread
 from layoutgen.response.wanted import wanted_network
 
 __all__ = ["BATCH_POINTS", "Contributor", "Corner", "LimitYield", "Tolerance", "tolerance"]
@@ -97,6 +98,7 @@ class Tolerance:
     most: npt.NDArray[np.float64]
 
 
+@one_thread()
 def tolerance(
     artwork: Artwork,
     *,
