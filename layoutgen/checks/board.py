@@ -16,7 +16,8 @@ import shapely
 from layoutgen.artwork import Artwork
 from layoutgen.checks.facing import Edges, Places, edges_of, facing
 from layoutgen.checks.limits import Limits
-from layoutgen.checks.planar import CORNER_LIMITS, TOLERANCE_NM, array_of, merge, points_of
+from layoutgen.checks.nodes import GROUND
+from layoutgen.checks.planar import CORNER_LIMITS, TOLERANCE_NM, Geometry, array_of, merge, points_of
 from layoutgen.checks.sheet import Sheets, sheets_of
 from layoutgen.geometry import Point
 
@@ -126,6 +127,14 @@ class Layer:
         """Return the places where copper is narrower than a limit [nm], corners left out."""
         return facing(self.edges, limit - TOLERANCE_NM, CORNER_LIMITS * limit, across_copper=True)
 
+    @cached_property
+    def pinches(self) -> npt.NDArray[np.float64]:
+        """Points (N, 2) [nm] where outlines of the merged copper meet: nothing is wide there."""
+        x, y = self.edges.start.T
+        order = np.lexsort((y, x))
+        x, y = x[order], y[order]
+        return np.asarray(self.edges.start[order[1:][(x[1:] == x[:-1]) & (y[1:] == y[:-1])]])
+
     def owners(self, points: npt.NDArray[np.float64], reach: float = TOLERANCE_NM) -> list[int]:
         """Return for each point (N, 2) [nm] the smallest piece within reach [nm], -1 for none."""
         best = [-1] * len(points)
@@ -171,6 +180,13 @@ class Board:
     def sheets(self) -> Sheets:
         """The direct current in every piece of copper off gnd, solved once for all rules."""
         return sheets_of(self)
+
+    @cached_property
+    def plane(self) -> Geometry:
+        """The bottom copper on gnd, prepared for many questions; empty where there is none."""
+        plane = shapely.union_all(array_of([p.polygon for p in self.bottom.pieces if p.node == GROUND]))
+        shapely.prepare(plane)
+        return plane
 
     @cached_property
     def vias(self) -> tuple[Drill, ...]:

@@ -10,7 +10,7 @@ import shapely
 
 from layoutgen.checks.board import Board
 from layoutgen.checks.facing import edges_of, facing
-from layoutgen.checks.planar import CORNER_LIMITS, TOLERANCE_NM, whole
+from layoutgen.checks.planar import CORNER_LIMITS, TOLERANCE_NM, Floats, whole
 from layoutgen.geometry import Point
 
 __all__ = ["Carrier", "Neck", "carriers", "necks"]
@@ -65,7 +65,8 @@ def necks(board: Board, carrier: Carrier, needed: float) -> Iterator[Neck]:
     """Yield the places where a carrier's copper is narrower than needed [nm].
 
     Its own copper is judged together with what it touches, so that an overlapped end is no neck, and only
-    places on its own outline count. Corners are left out as for ``copper.min_width``.
+    places on its own outline count. Corners are left out as for ``copper.min_width``. Beside a hole the
+    copper on all sides of it counts together.
     """
     layer = board.top
     own = [k for k, p in enumerate(layer.pieces) if p.item == carrier.item and p.role in _ROLES]
@@ -74,11 +75,29 @@ def necks(board: Board, carrier: Carrier, needed: float) -> Iterator[Neck]:
     i, j = layer.touching.T
     met = np.union1d(j[np.isin(i, own)], i[np.isin(j, own)])
     around = [k for k in np.union1d(met, own).tolist() if layer.nodes[k] == layer.nodes[own[0]]]
-    joined = shapely.get_parts(shapely.union_all(layer.polygons[around]))
+    edges = edges_of(shapely.get_parts(shapely.union_all(layer.polygons[around])))
     limit = needed - TOLERANCE_NM
-    places = facing(edges_of(joined), limit, CORNER_LIMITS * needed, across_copper=True)
+    places = facing(edges, limit, CORNER_LIMITS * needed, across_copper=True)
     rim = shapely.boundary(shapely.union_all(layer.polygons[own]))
     on = shapely.dwithin(shapely.points(places.first), rim, TOLERANCE_NM)
     on &= shapely.dwithin(shapely.points(places.second), rim, TOLERANCE_NM)
+    split = edges.ring[places.i] != edges.ring[places.j]
     for k in np.flatnonzero(on).tolist():
-        yield Neck(float(places.distance[k]), whole(*((places.first[k] + places.second[k]) / 2.0).tolist()))
+        first, second = places.first[k], places.second[k]
+        width = float(places.distance[k])
+        if split[k]:
+            width = _section(edges.polygons[edges.polygon[places.i[k]]], first, second)
+        if width < limit:
+            yield Neck(width, whole(*((first + second) / 2.0).tolist()))
+
+
+def _section(copper: shapely.Polygon, first: Floats, second: Floats) -> float:
+    """Return the width [nm] of copper from outline to outline on the line through two points, less holes."""
+    way = (second - first) / np.hypot(*(second - first))
+    x0, y0, x1, y1 = copper.bounds
+    reach = np.hypot(x1 - x0, y1 - y0) * way
+    across = shapely.LineString([first - reach, second + reach])
+    outer = shapely.get_parts(across.intersection(shapely.Polygon(copper.exterior)))
+    middle = shapely.Point((first + second) / 2.0)
+    whole_way = min(outer, key=lambda part: part.distance(middle))
+    return float(whole_way.intersection(copper).length)

@@ -18,6 +18,7 @@ from layoutgen.geometry import Point
 
 __all__ = [
     "PART_CLEARANCE_NM",
+    "ground_copper",
     "line_pieces",
     "nearest_line",
     "part_outlines",
@@ -73,6 +74,14 @@ def stretches(board: Board) -> list[shapely.LineString]:
         if name in gaps:
             spans.extend(_spans(edges, shapely.union_all(polygons), 2.0 * gaps[name], away))
     return [_way(edges, ring, start, end) for ring, start, end in _joined(edges, spans)]
+
+
+def ground_copper(board: Board) -> Geometry:
+    """Return the top's copper on gnd, grown by the tolerance and prepared for many questions."""
+    copper = shapely.union_all([piece.polygon for piece in board.top.pieces if piece.node == GROUND])
+    grown = copper.buffer(TOLERANCE_NM, join_style="mitre")
+    shapely.prepare(grown)
+    return grown
 
 
 def nearest_line(board: Board, at: Point) -> str:

@@ -10,6 +10,7 @@ import shapely
 
 from layoutgen.artwork import Artwork
 from layoutgen.checks.board import Board, Drill
+from layoutgen.checks.ground_ends import ground_ends
 from layoutgen.checks.netgraph import clusters
 from layoutgen.checks.nodes import GROUND
 from layoutgen.checks.planar import CHORD_NM, Geometry, whole, within
@@ -78,15 +79,13 @@ def _own_copper(artwork: Artwork, part: str, pad: PlacedPad, outline: shapely.Po
 def via_currents(board: Board) -> list[tuple[Drill, float]]:
     """Return the vias that carry direct current, each with its magnitude [A].
 
-    The vias of a pad or line share equally; crowding in those nearest to the source is not looked at.
+    The vias of a pad, or of an end on gnd, share equally; crowding in those nearest to the source is not
+    looked at.
     """
     if board.artwork is None:
         return []
-    dc = board.artwork.placement.sized.circuit.dc
     shared = [(pad.vias, abs(_pad_current(board, pad))) for pad in ground_pads(board)]
-    for name in board.artwork.placement.lines:
-        own = tuple(via for via in board.vias if via.purpose == f"line:{name}")
-        shared.append((own, abs(dc.currents.get(name, 0.0))))
+    shared += [(end.vias, abs(end.current)) for end in ground_ends(board)]
     return [(via, current / len(vias)) for vias, current in shared for via in vias if current > 0.0]
 
 

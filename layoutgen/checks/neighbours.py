@@ -3,9 +3,9 @@
 A place is counted for a pair of lines only where it is farther along its line from each node the two
 share than 3 h beyond what else reaches out from that node (half the widest line there, a pad). Nodes
 joined by a part, or by a line no longer than 3 h, count as one, and so do the two ends of a coupled pair that
-lie beside each other with a gap of up to 3 h: an open end there lies at its partner's node. Between legs of
-one line the bends between them take the place of the node. Lines of a coupled pair are meant to couple; a
-radial stub is not judged against lines it meets.
+lie beside each other with a gap of up to 3 h: one that is open or on gnd lies at its partner's node there.
+Between legs of one line the bends between them take the place of the node. Lines of a coupled pair are meant
+to couple; a radial stub is not judged against lines it meets.
 """
 
 from __future__ import annotations
@@ -36,7 +36,7 @@ class Leg:
 
     ``line`` is the element, ``strip`` tells the strips of a pair apart; ``before`` and ``after`` [nm] are the
     ways along the line from its ends to this leg's; ``nets`` are those at the line's two ends, ``nodes`` the
-    nets of the nodes those ends lie at: of an open end of a pair its partner's.
+    nets of the nodes those ends lie at: of an open or grounded end of a pair its partner's.
     """
 
     line: str
@@ -102,7 +102,7 @@ def legs_of(placement: Placement) -> list[Leg]:
 def _of_strip(nets: tuple[str, ...], strip: int) -> tuple[tuple[str, str], tuple[str, str]]:
     """Return the nets at the two ends of a pair's strip, and the nets of the nodes they lie at."""
     own, beside = nets[2 * strip : 2 * strip + 2], nets[2 - 2 * strip : 4 - 2 * strip]
-    at = [partner if net == OPEN else net for net, partner in zip(own, beside, strict=True)]
+    at = [partner if net in (OPEN, GROUND) else net for net, partner in zip(own, beside, strict=True)]
     return (own[0], own[1]), (at[0], at[1])
 
 

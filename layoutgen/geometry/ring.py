@@ -73,12 +73,13 @@ class Ring:
 
 
 def _arc_points(start: Point, end: Point, bulge: float, tolerance: float) -> list[Point]:
-    """Return the inner chord vertices of one arc, start and end left out."""
+    """Return the inner chord vertices of one arc, ends left out; equally many in every quarter turn."""
     angle = 4.0 * math.atan(bulge)
     chord = math.hypot(end[0] - start[0], end[1] - start[1])
     radius = chord / (2.0 * abs(math.sin(angle / 2.0)))
     step = 2.0 * math.acos(max(0.0, 1.0 - min(tolerance / radius, 1.0)))
-    count = max(2, math.ceil(abs(angle) / step))
+    quarters = max(1, math.ceil(abs(angle) / (math.pi / 2.0) - 1e-9))
+    count = max(2, quarters * math.ceil(abs(angle) / (quarters * step)))
     mx, my = (start[0] + end[0]) / 2.0, (start[1] + end[1]) / 2.0
     offset = (1.0 - bulge * bulge) / (4.0 * bulge)
     cx, cy = mx - offset * (end[1] - start[1]), my + offset * (end[0] - start[0])

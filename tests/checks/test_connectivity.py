@@ -2,10 +2,15 @@
 
 from __future__ import annotations
 
+import math
+from dataclasses import replace
+
 import pytest
 
 from layoutgen.geometry import Ring
-from tests.checks.boards import Sheet, box, near, nm, only
+from layoutgen.placement import Bend
+from tests.checks.boards import Sheet, box, near, nm, only, polygon
+from tests.placed import placed_line
 
 # -- opens
 
@@ -49,6 +54,81 @@ def test_missing_pad_and_port() -> None:
     sheet.part("C1", {"1": ("c", 11.5, 10, 0.9, 0.9)}, draw=False)
     sheet.port("pa", 0.5, 10, 0.0, 1.0)
     assert {f.items for f in sheet.found("connectivity.open")} == {("C1",), ("pa",)}
+
+
+@pytest.mark.parametrize(("left_out", "faults"), [(0.0005, 0), (0.0015, 1), (0.3, 1)])
+def test_pad_without_all_of_its_copper(left_out: float, faults: int) -> None:
+    """Catches a pad judged by its middle alone; a micrometre may be missing."""
+    sheet = Sheet()
+    sheet.part("C1", {"1": ("c", 11.5, 10, 0.9, 0.9)}, draw=False)
+    sheet.copper(box(11.05, 9.55, 11.95 - left_out, 10.45), "c", "pad", "C1")
+    found = sheet.found("connectivity.open")
+    assert [f.items for f in found] == [("C1",)] * faults
+    assert all(near(f, 11.95, 10, 0.46) and f.unit == "mm^2" for f in found)
+
+
+def test_pad_with_a_hole_drilled_through_it() -> None:
+    """Catches copper missed where the circuit itself has an unplated hole drilled."""
+    sheet = Sheet()
+    sheet.part("C1", {"1": ("c", 11.5, 10, 3.0, 3.0)})
+    sheet.hole(11.5, 10.0, 1.0)
+    assert sheet.found("connectivity.open") == []
+
+
+PAIR = {"nets": ["a", "c", "b", "open"], "width": "0.5 mm", "gap": "0.3 mm", "angle": "30 deg"}
+
+
+@pytest.mark.parametrize(("strip", "place"), [(0, 5.0), (1, 5.8)])
+def test_strip_of_a_pair_left_out(strip: int, place: float) -> None:
+    """Catches a strip that was not drawn: with an open end no net tells that it is missing."""
+    sheet = Sheet(circuit={"lines": {"la": None}, "coupled": {"cp": PAIR}})
+    sheet.pair("cp", 5, 15, 5, 0.5, 0.3)
+    assert sheet.found("connectivity.open") == []
+    del sheet.shapes[1 + strip]
+    finding = only(sheet.found("connectivity.open"))
+    assert finding.items == ("cp",)
+    assert finding.measured == pytest.approx(10.0)
+    assert near(finding, 10, place)
+
+
+def test_end_of_a_strip_left_out() -> None:
+    """Catches a strip that was drawn too short by two micrometres at its open end."""
+    sheet = Sheet(circuit={"lines": {"la": None}, "coupled": {"cp": PAIR}})
+    sheet.pair("cp", 5, 15, 5, 0.5, 0.3)
+    sheet.shapes[2] = replace(sheet.shapes[2], outline=box(5, 5.55, 14.998, 6.05))
+    finding = only(sheet.found("connectivity.open"))
+    assert finding.items == ("cp",)
+    assert near(finding, 15, 5.8)
+
+
+@pytest.mark.parametrize(("inner", "outer", "faults"), [(0.3, 4.0, 0), (0.3, 3.99, 1), (None, None, 1)])
+def test_radial_stub_left_out(inner: float | None, outer: float | None, faults: int) -> None:
+    """Catches a radial stub that was not drawn, or to a shorter radius: nothing else hangs on it."""
+    circuit = {"lines": {"rs": {"nets": ["a"], "shape": "radial", "sector": "60 deg", "radius": "4 mm"}}}
+    sheet = Sheet(circuit=circuit)
+    sheet.radial("rs", (9, 5), 90.0, 60.0, 4.0)
+    sheet.shapes.pop()
+    if outer is not None:
+        turns = [math.radians(60.0 + k) for k in range(61)]
+        rim = [(9 + outer * math.cos(t), 5 + outer * math.sin(t)) for t in turns]
+        sheet.copper(polygon((9, 5), *rim), "a", "radial", "rs")
+    found = sheet.found("connectivity.open")
+    assert [f.items for f in found] == [("rs",)] * faults
+
+
+def test_bends_may_be_mitred() -> None:
+    """Catches a deep mitre, off the meeting point of the centre-lines, found as missing copper."""
+    sheet = Sheet()
+    line = placed_line("la", ("a", "c"), [(4, 5), (10, 5), (10, 12)], 1.0, (Bend(1, 90.0, 90.0),))
+    sheet.line("la", [(4, 5), (10, 5), (10, 12)], 1.0, draw=False)
+    sheet.lines["la"] = line
+    sheet.copper(
+        polygon((4, 4.5), (9.3, 4.5), (10.5, 5.7), (10.5, 12), (9.5, 12), (9.5, 5.5), (4, 5.5)),
+        "a",
+        "line",
+        "la",
+    )
+    assert sheet.found("connectivity.open") == []
 
 
 def test_open_end_cut_off() -> None:

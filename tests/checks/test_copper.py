@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 
+import numpy as np
 import pytest
 
 from layoutgen.geometry import Ring
@@ -67,6 +68,48 @@ def test_neck_between_two_reflex_corners() -> None:
     finding = only(sheet.found("copper.min_width"))
     assert finding.measured == pytest.approx(0.1 * math.sqrt(2.0), abs=1e-5)
     assert near(finding, 6.05, 6.05)
+
+
+@pytest.mark.parametrize(("lap", "measured"), [(0.0, 0.0), (0.00001, 0.0), (0.15, None), (0.1, 0.1414)])
+def test_two_pieces_that_meet_at_their_corners(lap: float, measured: float | None) -> None:
+    """Catches copper joined by a mere point passed: no edges face each other there. 0.2 mm and more pass."""
+    sheet = Sheet(WIDTH)
+    sheet.copper(box(4.0, 4.0, 6.0 + lap, 6.0 + lap), "a", "line", "la")
+    sheet.copper(box(6.0, 6.0, 8.0, 8.0), "a", "line", "la")
+    found = sheet.found("copper.min_width")
+    assert [f.measured for f in found] == pytest.approx([] if measured is None else [measured], abs=1e-4)
+    assert all(near(f, 6.0 + lap / 2.0, 6.0 + lap / 2.0) for f in found)
+
+
+def test_corner_on_an_edge() -> None:
+    """Catches a pinch overlooked where a corner meets the middle of an edge."""
+    sheet = Sheet(WIDTH)
+    sheet.copper(box(4.0, 4.0, 8.0, 6.0), "a", "line", "la")
+    sheet.copper(polygon((6.0, 6.0), (7.0, 7.0), (6.0, 8.0), (5.0, 7.0)), "a", "line", "la")
+    finding = only(sheet.found("copper.min_width"))
+    assert finding.measured == 0.0
+    assert near(finding, 6.0, 6.0)
+
+
+@pytest.mark.parametrize("tip", [8.0, 8.1])
+def test_voids_that_meet_at_a_point(tip: float) -> None:
+    """Catches the copper between two voids left out that touch, or nearly touch, at their tips."""
+    sheet = Sheet(WIDTH)
+    one = polygon((7.0, 7.0), (6.0, 6.0), (7.0, 5.5), (8.0, 6.5))
+    other = polygon((tip, 6.5), (10.0, 6.0), (10.0, 7.0))
+    sheet.copper(box(5.0, 5.0, 12.0, 8.0), holes=(one, other))
+    finding = only(sheet.found("copper.min_width"))
+    assert finding.measured == pytest.approx(tip - 8.0, abs=1e-6)
+    assert near(finding, (8.0 + tip) / 2.0, 6.5)
+
+
+def test_two_nets_that_meet_in_a_point_are_a_short() -> None:
+    """Catches a short told a second time as narrow copper."""
+    sheet = Sheet(WIDTH)
+    sheet.copper(box(4.0, 4.0, 6.0, 6.0), "a", "line", "la")
+    sheet.copper(box(6.0, 6.0, 8.0, 8.0), "b", "line", "lb")
+    assert sheet.found("copper.min_width") == []
+    assert len(sheet.found("connectivity.short")) == 1
 
 
 def test_taper_is_judged_at_its_narrow_end() -> None:
@@ -330,6 +373,46 @@ def test_notch(opening: float, faults: int, degrees: float) -> None:
         assert near(found[0], 10.0, 8.0)
 
 
+@pytest.mark.parametrize(("flat", "faults"), [(0.0005, 1), (0.005, 1), (0.006, 0)])
+@pytest.mark.parametrize("start", range(7))
+def test_notch_with_its_tip_cut_off(flat: float, faults: int, start: int) -> None:
+    """Catches a sharp notch hidden by a tip cut off a little, wherever the outline begins."""
+    half = math.radians(25.0)
+    mouth = flat / 2.0 + 2.0 * math.tan(half)
+    outline = [(-5, -3), (5, -3), (5, 2), (mouth, 2), (flat / 2, 0), (-flat / 2, 0), (-mouth, 2), (-5, 2)]
+    sheet = Sheet(ANGLE)
+    sheet.copper(rotated([*outline[start:], *outline[:start]], 20.0, 10.0, 8.0))
+    found = sheet.found("copper.min_corner_angle")
+    assert len(found) == faults
+    assert all(f.measured == pytest.approx(50.0, abs=0.1) and near(f, 10.0, 8.0, 0.003) for f in found)
+
+
+@pytest.mark.parametrize(("opening", "faults"), [(85.0, 0), (84.5, 1)])
+def test_notch_with_a_rounded_tip(opening: float, faults: int) -> None:
+    """Catches turns of a small rounding judged one by one, or added up wrongly: exact at the limit."""
+    half = math.radians(opening / 2.0)
+    turns = np.linspace(-math.pi + half, -half, 9)
+    radius = 0.9 * 0.005 / (math.pi - 2.0 * half)
+    tip = [(-radius * math.cos(t), radius * math.sin(t)) for t in turns]
+    flank = (tip[0][0] + 2.0 * math.sin(half), tip[0][1] + 2.0 * math.cos(half))
+    outline = [(-5, -3), (5, -3), (5, flank[1]), flank, *tip, (-flank[0], flank[1]), (-5, flank[1])]
+    sheet = Sheet(ANGLE)
+    sheet.copper(rotated(outline, 0.0, 10.0, 8.0))
+    found = sheet.found("copper.min_corner_angle")
+    assert len(found) == faults
+    assert all(f.measured == pytest.approx(opening, abs=0.1) for f in found)
+
+
+def test_chamfers_and_jogs_are_no_notches() -> None:
+    """Catches two obtuse turns of a chamfer, or turns either way, added up to a sharp corner."""
+    sheet = Sheet(ANGLE)
+    sheet.copper(polygon((4, 4), (12, 4), (12, 6), (8.004, 6), (8, 6.004), (8, 8), (4, 8)))
+    sheet.copper(
+        polygon((14, 4), (22, 4), (22, 6), (18, 6), (18, 6.002), (17.998, 6.002), (17.998, 8), (14, 8))
+    )
+    assert sheet.found("copper.min_corner_angle") == []
+
+
 def test_sharp_point_of_copper_is_no_notch() -> None:
     """Catches copper that sticks out taken for an inside corner."""
     sheet = Sheet(ANGLE)
@@ -386,6 +469,15 @@ def test_copper_of_the_circuit_is_no_island() -> None:
     sheet = Sheet(ISLAND)
     sheet.part("C1", {"1": ("c", 5, 5, 0.4, 0.5), "2": ("d", 6, 5, 0.4, 0.5)})
     assert sheet.found("copper.min_island_area") == []
+
+
+@pytest.mark.parametrize(("plated", "faults"), [(True, 0), (False, 1)])
+def test_copper_held_by_a_barrel_is_no_island(plated: bool, faults: int) -> None:
+    """Catches lands of a foreign drawing's vias found as scraps, or a scrap passed for any hole in it."""
+    sheet = Sheet(ISLAND)
+    sheet.copper(box(10, 8, 10.6, 8.6))
+    sheet.hole(10.3, 8.3, 0.3, plated=plated)
+    assert len(sheet.found("copper.min_island_area")) == faults
 
 
 def test_two_scraps_that_touch_are_one_island() -> None:

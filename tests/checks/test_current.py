@@ -54,6 +54,16 @@ def test_neck_that_the_width_alone_passes() -> None:
     assert finding.measured == pytest.approx((0.6 / (0.048 * area**0.725)) ** (1 / 0.44), rel=1e-4)
 
 
+@pytest.mark.parametrize(("hole", "faults"), [(1.6, 0), (1.61, 1)])
+def test_current_passes_a_hole_on_both_sides(hole: float, faults: int) -> None:
+    """Catches all of the current put through the copper on one side of a hole: 4.9 A want 1.4 mm of 3 mm."""
+    sheet = carrying(4.9, DENSITY, 3.0)
+    sheet.hole(12, 5.2, hole)
+    found = sheet.found("current.max_density")
+    assert len(found) == faults
+    assert all(f.measured == pytest.approx(100.0 * 1.4 / 1.39, rel=1e-3) for f in found)
+
+
 def test_line_wide_enough_passes() -> None:
     """Catches a rule that finds every line that carries something."""
     assert carrying(0.35, RISE, 0.3).found("current.temperature_rise") == []

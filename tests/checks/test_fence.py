@@ -99,6 +99,23 @@ def test_row_around_a_bend() -> None:
     assert sheet.found("fence.max_pitch") == []
 
 
+@pytest.mark.parametrize(("rows", "faults"), [((1, -1), 0), ((1,), 1), ((-1,), 1)])
+def test_a_row_across_a_narrow_line_is_not_this_edges(rows: tuple[int, ...], faults: int) -> None:
+    """Catches a missing row passed for the one across the line, as near as a fence may be: 0.8 mm."""
+    sheet = Sheet({**RULES, "fence": {"max_pitch": "2 mm", "max_edge_distance": "0.8 mm"}})
+    sheet.plane()
+    sheet.line("la", [(5, 10), (25, 10)], 0.2, gap=0.15)
+    for side in (1, -1):
+        low, high = sorted((10 + side * 0.25, 10 + side * 4))
+        sheet.copper(box(5, low, 25, high))
+    for side in rows:
+        for k in range(14):
+            sheet.via(5.2 + 1.5 * k, 10 + side * 0.55, "fence")
+    found = sheet.found("fence.max_pitch")
+    assert len(found) == faults
+    assert all(f.measured == pytest.approx(20.0) and near(f, 15, 10, 0.26) for f in found)
+
+
 def test_narrow_pour_between_two_lines() -> None:
     """Catches one row in the middle of a narrow pour counted for one of its edges only."""
     sheet = Sheet(RULES)

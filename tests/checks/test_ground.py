@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import math
+
 import pytest
 
 from layoutgen.checks.drawn import board_of
@@ -151,6 +153,21 @@ def test_slot_beside_a_line() -> None:
     assert over_plane(Ring(box(8, 6, 9, 7).points[::-1])).found("ground.under_line") == []
 
 
+@pytest.mark.parametrize(("lap", "faults"), [(0.0, 0), (0.001, 1)])
+def test_slot_up_to_a_lines_edge(lap: float, faults: int) -> None:
+    """Catches a slot found that only comes up to the line, or passed a micrometre under it."""
+    found = over_plane(Ring(box(8, 5.5 - lap, 8.5, 7).points[::-1])).found("ground.under_line")
+    assert len(found) == faults
+
+
+def test_copper_of_another_net_is_no_ground() -> None:
+    """Catches a bridge of another net in a slot taken for the plane; one of gnd closes the slot."""
+    for net, faults in (("b", 1), (None, 1), ("gnd", 0)):
+        sheet = over_plane(Ring(box(8, 3, 9, 7).points[::-1]))
+        sheet.copper(box(8, 3, 9, 7), net, "strip", "jumper", layer="copper_bottom")
+        assert len(sheet.found("ground.under_line")) == faults
+
+
 def test_plane_may_end_at_the_edge() -> None:
     """Catches a line to the profile found where the plane has to keep its own distance."""
     sheet = Sheet({"copper": {"min_edge_distance": "0.5 mm"}})
@@ -183,6 +200,32 @@ def test_plane_at_a_flange(away: float, faults: int) -> None:
         assert found[0].items == ("C1",)
         assert found[0].measured == pytest.approx(away)
         assert near(found[0], 10, 10, 1.01)
+
+
+@pytest.mark.parametrize("y", [9.04, 10.0, 10.53])
+def test_a_slot_in_the_plane_at_a_flange(y: float) -> None:
+    """Catches a slot that lies between samples: 0.15 mm wide, at any place under a pad 2 mm wide."""
+    sheet = Sheet({"copper": {"min_edge_distance": "0.3 mm"}})
+    pads = {"gate": ("a", 8.8, 10.0, 2.0, 2.0), "source": ("gnd", 12.0, 10.0, 0.0, 0.0)}
+    sheet.part("C1", pads, headings={"gate": 180.0}, cutout=box(10, 5, 14, 15), ground={"source": "flange"})
+    low, high = y - 0.075, y + 0.075
+    hole = polygon(
+        (9.7, 4.7), (9.7, low), (8, low), (8, high), (9.7, high), (9.7, 15.3), (14.3, 15.3), (14.3, 4.7)
+    )
+    sheet.plane(hole)
+    finding = only(sheet.found("ground.flange"))
+    assert finding.measured == pytest.approx(math.hypot(0.3, 0.075), abs=5e-4)
+    assert near(finding, 10, y, 0.01)
+
+
+def test_other_copper_at_a_flange_is_no_ground() -> None:
+    """Catches bottom copper of another net taken for the plane that must come up to the slot."""
+    sheet = Sheet({"copper": {"min_edge_distance": "0.3 mm"}})
+    pads = {"gate": ("a", 8.8, 10.0, 2.0, 2.0), "source": ("gnd", 12.0, 10.0, 0.0, 0.0)}
+    sheet.part("C1", pads, headings={"gate": 180.0}, cutout=box(10, 5, 14, 15), ground={"source": "flange"})
+    sheet.plane(Ring(box(8, 4.7, 14.3, 15.3).points[::-1]))
+    sheet.copper(box(8.5, 6, 9.7, 14), "b", "strip", "jumper", layer="copper_bottom")
+    assert only(sheet.found("ground.flange")).measured == pytest.approx(2.0)
 
 
 def test_no_plane_at_a_flange() -> None:

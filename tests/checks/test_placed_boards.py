@@ -10,11 +10,14 @@ from typing import Any
 import pytest
 
 from layoutgen.artwork import Artwork, draw
-from layoutgen.checks import check
+from layoutgen.checks import check, current_map
+from layoutgen.checks.drawn import board_of
+from layoutgen.checks.grounding import via_currents
 from layoutgen.circuit import build_circuit
 from layoutgen.placement import place
 from layoutgen.reading import inputs_from_data
 from layoutgen.sizing import size_circuit
+from tests.placed import changed
 from tests.placement.circuits import base, chip, free, line, port, two_ports
 
 FEED = {"db": line("m", "v", width="2.5 mm", angle="40 deg"), "supply": free("v", "vd", z="", width="0.9 mm")}
@@ -120,6 +123,32 @@ def test_each_strip_end_on_gnd_has_vias_in_its_plane(name: str, poured: bool) ->
     for end in ends:
         assert sum((via.x, via.y)[along] == end[along] for via in vias) >= 2
     assert errors(artwork) == []
+
+
+SUPPLY = {
+    "ports": {"vd": {"kind": "dc", "net": "v", "voltage": "5 V", "edge": "north"}},
+    "parts": {"R1": chip("resistor", "10 ohm", "v", "m", case="0805")},
+}
+
+
+@pytest.mark.parametrize("name", ["both strips, opposite ends", "narrow strips"])
+def test_direct_current_returns_through_a_strips_end(name: str) -> None:
+    """Catches a strip's end on gnd whose current the solved sheet, its vias or the way to them leave out.
+
+    The drop is that of the strip's squares and a few more at its ends.
+    """
+    artwork = artwork_of(changed(PAIRS[name][0], SUPPLY))
+    maps = current_map(artwork)
+    assert maps.skipped == ()
+    sheet = max(maps.solved, key=lambda one: one.drop)
+    shares = [t.current for t in sheet.terminals if t.item == "k1"]
+    assert shares == pytest.approx([-sheet.largest / 2.0] * 2)
+    placed = artwork.placement.pairs["k1"]
+    squares = placed.centre_line / placed.width
+    resistance = sheet.drop / sheet.largest * 58e6 * 35e-6
+    assert squares < resistance < squares + 4.0
+    loaded = [current for via, current in via_currents(board_of(artwork)) if via.purpose == "line:k1"]
+    assert loaded == pytest.approx([sheet.largest / 2.0] * 2)
 
 
 @pytest.mark.parametrize("name", ["both strips, opposite ends", "one strip beside a through line"])

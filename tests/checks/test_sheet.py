@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from dataclasses import replace
 
 import numpy as np
 import pytest
@@ -12,7 +13,7 @@ from layoutgen.artwork import Artwork
 from layoutgen.checks import Finding, current_map
 from layoutgen.checks.sheet import cuts, mesh_of, sheet_resistance, solve
 from layoutgen.checks.sheet.solve import loads_on
-from tests.checks.boards import Sheet, near, only, polygon
+from tests.checks.boards import Sheet, box, near, only, polygon
 
 MM = 1e6
 OHM_PER_SQUARE = 1.0 / (58e6 * 35e-6)
@@ -179,3 +180,104 @@ def test_a_net_in_pieces_is_listed() -> None:
     sheet = feed({"current": {"max_density": "25 A/mm^2"}}, own_copper=True)
     sheet.copper(polygon((2, 4.75), (8, 4.75), (8, 5.25), (2, 5.25)), "v", "line", "lv")
     assert "in pieces" in sheet.unchecked()["current crowding"]
+
+
+# -- an end of a pair's strip on gnd: R1 draws 0.28 A from port pv, and it returns through the strip
+
+
+def returning(nets: list[str], length: float, rules: dict[str, object]) -> Sheet:
+    """Return R1 from the supply to a strip 0.5 mm wide that ends on two vias beside its own end on gnd.
+
+    Strips head east from (5, 5) and (5, 5.8); the net of the strip is w, the other strip's nets are a and c.
+    """
+    pair = {"nets": nets, "width": "0.5 mm", "gap": "0.3 mm", "angle": "30 deg"}
+    parts = {"R1": {"nets": ["v", "w"]}, "C2": None, "C3": None}
+    sheet = Sheet(rules, {"lines": {"lv": None, "la": None}, "coupled": {"cp": pair}, "parts": parts})
+    sheet.pair("cp", 5.0, 5.0 + length, 5.0, 0.5, 0.3)
+    y, out = (5.8, 1.0) if nets.index("w") > 1 else (5.0, -1.0)
+    live, end = (5.0, 5.0 + length) if nets.index("w") % 2 == 0 else (5.0 + length, 5.0)
+    sheet.port("pv", live - 0.25, 12, 0.0, 0.5)
+    sheet.part("R1", {"1": ("v", live, 12, 0.5, 0.5), "2": ("w", live, y, 0.5, 0.5)})
+    for away in (0.6, 1.4):
+        sheet.via(end, y + out * away, "line:cp")
+    low, high = sorted((y - 0.25 * out, y + 1.7 * out))
+    sheet.copper(box(end - 0.3, low, end + 0.3, high), role="ground", element="cp")
+    return sheet
+
+
+ENDS = {
+    "first strip, far end": ["w", "gnd", "a", "c"],
+    "first strip, near end": ["gnd", "w", "a", "c"],
+    "second strip, far end": ["a", "c", "w", "gnd"],
+    "second strip, near end": ["a", "c", "gnd", "w"],
+}
+
+
+@pytest.mark.parametrize("nets", ENDS.values(), ids=ENDS)
+def test_a_strip_that_ends_on_gnd_is_solved(nets: list[str]) -> None:
+    """Catches a strip's current that finds no way into gnd, turned about or in the wrong strip.
+
+    5 mm more of it are 10 squares more, whatever the ends are: R I times 10, within 0.5 %.
+    """
+    solved = []
+    for length in (8.0, 13.0):
+        maps = current_map(returning(nets, length, {}).artwork())
+        assert maps.skipped == ()
+        (sheet,) = [one for one in maps.solved if one.net == "w"]
+        assert sorted(t.item for t in sheet.terminals) == ["R1", "cp", "cp"]
+        assert sum(t.current for t in sheet.terminals) == pytest.approx(0.0, abs=1e-12)
+        solved.append(sheet)
+    current = solved[0].largest
+    assert current == pytest.approx(0.28, rel=1e-2)
+    assert solved[1].drop - solved[0].drop == pytest.approx(current * OHM_PER_SQUARE * 10.0, rel=5e-3)
+    assert solved[1].power - solved[0].power == pytest.approx(current**2 * OHM_PER_SQUARE * 10.0, rel=5e-3)
+
+
+@pytest.mark.parametrize("nets", ENDS.values(), ids=ENDS)
+@pytest.mark.parametrize(("limit", "faults"), [(0.1401, 0), (0.139, 2)])
+def test_vias_at_the_end_of_a_strip(nets: list[str], limit: float, faults: int) -> None:
+    """Catches the vias of a strip's end on gnd left out, or given all of its current: half of 0.28 A each."""
+    sheet = returning(nets, 8.0, {"vias": {"max_current": f"{limit} A"}})
+    found = sheet.found("vias.max_current")
+    assert [f.measured for f in found] == pytest.approx([0.14] * faults, rel=1e-2)
+    assert {item for f in found for item in f.items} == ({"via:0", "via:1", "cp"} if faults else set())
+
+
+def test_barrels_at_the_end_of_a_strip() -> None:
+    """Catches barrels of a strip's end on gnd that no rule on current looks at: 0.14 A in pi t (d - t)."""
+    density = 0.14 / (math.pi * 0.02 * (0.3 - 0.02))
+    for limit, faults in ((density * 1.01, 0), (density * 0.97, 2)):
+        sheet = returning(ENDS["first strip, far end"], 8.0, {"current": {"max_density": f"{limit} A/mm^2"}})
+        assert len([f for f in sheet.found("current.max_density") if "via" in f.items[0]]) == faults
+
+
+def test_each_strip_has_the_vias_that_it_ends_at() -> None:
+    """Catches the current of one strip led through the vias of the other one beside it."""
+    nets = ["w", "gnd", "w2", "gnd"]
+    pair = {"nets": nets, "width": "0.5 mm", "gap": "0.3 mm", "angle": "30 deg"}
+    parts = {
+        "R1": {"nets": ["v", "w"]},
+        "R2": {"kind": "resistor", "nets": ["v", "w2"], "value": "50 ohm", "case": "1206"},
+        "C2": None,
+        "C3": None,
+    }
+    circuit = {"lines": {"lv": None}, "coupled": {"cp": pair}, "parts": parts}
+    sheet = Sheet({"vias": {"max_current": "0.1 A"}}, circuit)
+    sheet.pair("cp", 5.0, 13.0, 5.0, 0.5, 0.3)
+    for y in (4.4, 6.4, 3.6):
+        sheet.via(13.0, y, "line:cp")
+    found = {f.items[0]: f.measured for f in sheet.found("vias.max_current")}
+    assert found == pytest.approx({"via:0": 0.14, "via:1": 0.56, "via:2": 0.14}, rel=2e-2)
+
+
+def test_a_neck_before_a_strips_vias() -> None:
+    """Catches the copper between a strip's end on gnd and its vias left out of the solved sheet."""
+    limit = {"current": {"max_density": "30 A/mm^2"}}
+    assert returning(ENDS["first strip, far end"], 8.0, limit).found("current.max_density") == []
+    sheet = returning(ENDS["first strip, far end"], 8.0, limit)
+    thin = box(12.95, 3.3, 13.05, 5.25)
+    sheet.shapes[-1] = replace(sheet.shapes[-1], outline=thin)
+    found = [f for f in sheet.found("current.max_density") if "cp" in f.items and "via:0" not in f.items]
+    assert found
+    assert found[0].measured == pytest.approx(0.28 / (0.1 * 0.035), rel=0.05)
+    assert near(found[0], 13.0, 4.72, 0.1)

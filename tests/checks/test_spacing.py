@@ -94,24 +94,26 @@ def test_strips_of_a_pair_are_meant_to_couple() -> None:
     assert set(only(sheet.found("spacing.min_line_heights")).items) == {"cp", "lv"}
 
 
-def fed_pair(turn: float) -> Sheet:
-    """Return a pair whose first strip ends at net c, fed there by lb at a turn [deg], the other end open."""
-    sheet = Sheet(RULES, {"coupled": {"cp": {**PAIR["coupled"]["cp"], "nets": ["a", "d", "c", "open"]}}})
+def fed_pair(turn: float, other: str = "open") -> Sheet:
+    """Return a pair whose first strip ends at net d, fed there by lb at a turn [deg], the end beside open."""
+    sheet = Sheet(RULES, {"coupled": {"cp": {**PAIR["coupled"]["cp"], "nets": ["a", "d", "c", other]}}})
     sheet.pair("cp", 5, 15, 5, 1.0, 0.2)
     c, s = math.cos(math.radians(turn)), math.sin(math.radians(turn))
     sheet.line("lb", [(15, 5), (15 + 9 * c, 5 + 9 * s)], 1.0)
     return sheet
 
 
-def test_what_goes_on_from_a_pair_begins_beside_its_open_end() -> None:
-    """Catches a feed found for lying a gap's width from the open end of the strip that it couples to."""
-    assert fed_pair(0.0).found("spacing.min_line_heights") == []
-    assert fed_pair(-90.0).found("spacing.min_line_heights") == []
+@pytest.mark.parametrize("other", ["open", "gnd"])
+def test_what_goes_on_from_a_pair_begins_beside_its_other_end(other: str) -> None:
+    """Catches a feed found for lying a gap's width from the end of the strip that it couples to."""
+    assert fed_pair(0.0, other).found("spacing.min_line_heights") == []
+    assert fed_pair(-90.0, other).found("spacing.min_line_heights") == []
 
 
-def test_a_pairs_end_is_no_licence_to_run_along_it() -> None:
+@pytest.mark.parametrize("other", ["open", "gnd"])
+def test_a_pairs_end_is_no_licence_to_run_along_it(other: str) -> None:
     """Catches a line that leaves a pair's end and comes back along the strips passed as part of the pair."""
-    sheet = fed_pair(0.0)
+    sheet = fed_pair(0.0, other)
     sheet.line("lb", [(15, 5), (20, 5), (20, 7.5), (6, 7.5)], 1.0)
     finding = only([f for f in sheet.found("spacing.min_line_heights") if "cp" in f.items])
     assert finding.measured == pytest.approx(0.3 / H)
@@ -149,7 +151,30 @@ def test_coupling(margin: float, faults: int) -> None:
     coupling = 20 * math.log10(k * math.sin(2 * math.pi * 2.3e9 * math.sqrt(ee) / 299792458.0 * 8e-3))
     sheet = Sheet({"spacing": {"max_coupling": f"{coupling + margin} dB"}})
     sheet.line("la", [(4, 5), (12, 5)], 1.0)
-    sheet.line("lb", [(2, 7.5), (20, 7.5)], 1.0)
+    sheet.line("lv", [(2, 7.5), (20, 7.5)], 1.0)
+    found = sheet.found("spacing.max_coupling")
+    assert len(found) == faults
+    assert all(f.measured == pytest.approx(coupling, abs=1e-3) for f in found)
+
+
+@pytest.mark.parametrize(("margin", "faults"), [(0.05, 0), (-0.05, 1)])
+def test_coupling_does_not_count_what_lies_at_a_shared_node(margin: float, faults: int) -> None:
+    """Catches the length near a shared node, which no line can leave otherwise, counted as a parallel run.
+
+    la leaves net c for the east, lx for the north and then the east: 10 mm run side by side, less 3 h of way
+    and half a line's width from c.
+    """
+    pair = coupled_pair(2.0, 4.0, 3.55, 0.07)
+    k = float((pair.z_even - pair.z_odd) / (pair.z_even + pair.z_odd))
+    ee = float((pair.ee_even + pair.ee_odd) / 2)
+    lap = 10.0 - (3.0 * H + 0.5)
+    coupling = 20 * math.log10(k * math.sin(2 * math.pi * 2.3e9 * math.sqrt(ee) / 299792458.0 * lap * 1e-3))
+    circuit = {"lines": {"lx": {"nets": ["c", "d"], "impedance": "50 ohm", "angle": "30 deg"}}}
+    sheet = Sheet(
+        {"spacing": {"max_coupling": f"{coupling + margin} dB"}}, {**circuit, "parts": {"C1": None}}
+    )
+    sheet.line("la", [(14, 5), (4, 5)], 1.0)
+    sheet.line("lx", [(4, 5), (4, 8), (14, 8)], 1.0)
     found = sheet.found("spacing.max_coupling")
     assert len(found) == faults
     assert all(f.measured == pytest.approx(coupling, abs=1e-3) for f in found)

@@ -59,3 +59,11 @@ def test_what_is_no_outline_is_refused(
     """Would catch a two-vertex polygon, or bulges that do not match the edges, being let through."""
     with pytest.raises(ValueError, match="vertices"):
         Ring(points, bulges)
+
+
+@pytest.mark.parametrize("radius", [150_000, 300_000, 300_001, 1_350_000])
+def test_chords_of_a_circle_are_their_own_quarter_turn_and_mirror_image(radius: int) -> None:
+    """A turned board must have turned chords; 21 of them to a half circle would not be."""
+    chords = set(Ring.circle(0, 0, radius).chords())
+    assert {(-y, x) for x, y in chords} == chords
+    assert {(x, -y) for x, y in chords} == chords

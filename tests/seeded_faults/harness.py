@@ -1,7 +1,8 @@
 """Puts seeded faults into the examples and looks whether the right rule finds them at the right place.
 
 ``python -m tests.seeded_faults.harness 2000 --processes 2 --out RESULT.json`` runs that many seeds over all
-examples, prints what was missed and writes how often each kind of fault was put into each board.
+examples, prints what was missed and how often each kind of fault was put into how many boards, and writes it
+board by board; boards that have no place for a kind are passed over and counted.
 """
 
 from __future__ import annotations
@@ -16,25 +17,31 @@ import random
 import sys
 import time
 from collections import Counter
-from collections.abc import Iterable, Sequence
+from collections.abc import Callable, Iterable, Iterator, Sequence
 from pathlib import Path
+from typing import NamedTuple
 
 from layoutgen.artwork import Artwork
 from layoutgen.checks import check
 from layoutgen.pipeline import run
-from tests.seeded_faults.faults import ANYWHERE, WITH_BANKS, Fault, Seeded
-from tests.seeded_faults.more_faults import MORE_ANYWHERE, MORE_WITH_PARTS
+from tests.seeded_faults.copper_faults import CHARGED, COPPER
+from tests.seeded_faults.hole_faults import HOLES
+from tests.seeded_faults.part_faults import PARTS
+from tests.seeded_faults.tools import Fault, Seeded
 
 EXAMPLES = sorted((Path(__file__).parents[2] / "examples").glob("*.toml"))
 STEMS = tuple(path.stem for path in EXAMPLES)
 AMPLIFIER = "telemetry_driver"
-QUICK = ("quarter_wave_transformer", "shorted_stub_tee", "stub_notch", AMPLIFIER)
+THIN_FILM = "alumina_filter"
+QUICK = ("quarter_wave_transformer", "shorted_stub_tee", "stub_notch", THIN_FILM, AMPLIFIER)
 """Examples that are placed in a second or two: those that tests use; the command above uses all."""
 TESTED = STEMS if os.environ.get("ALL_EXAMPLES") else QUICK
 """The examples that tests judge whole: the quick ones, or all with ``ALL_EXAMPLES=1`` in the environment."""
-EVERYWHERE: tuple[Fault, ...] = (*ANYWHERE, *MORE_ANYWHERE)
-WITH_PARTS: tuple[Fault, ...] = (*WITH_BANKS, *MORE_WITH_PARTS)
+EVERYWHERE: tuple[Fault, ...] = (*COPPER, *HOLES)
+WITH_PARTS: tuple[Fault, ...] = (*CHARGED, *PARTS)
 KINDS = (*EVERYWHERE, *WITH_PARTS)
+LEAST_BOARDS = 2
+"""On how many boards each kind of fault has to have a place, at least."""
 _SHARE_OF_AMPLIFIER = 0.12
 
 
@@ -49,7 +56,23 @@ def kind_of(seed: int) -> Fault:
     return KINDS[seed % len(KINDS)]
 
 
-def seeded(seed: int, stems: Sequence[str] = QUICK) -> tuple[str, Seeded]:
+class Case(NamedTuple):
+    """A seed's example, its drawing with the fault, and the examples that had no place for it."""
+
+    stem: str
+    fault: Seeded
+    passed_over: tuple[str, ...]
+
+
+class Outcome(NamedTuple):
+    """Where a seed's fault was put, what went wrong or nothing, and the examples that had no place for it."""
+
+    stem: str
+    wrong: str
+    passed_over: tuple[str, ...]
+
+
+def seeded(seed: int, stems: Sequence[str] = QUICK) -> Case:
     """Return a seed's example and its drawing with the fault.
 
     Boards come in an order of the seed; where one has no place for the fault the next one is taken.
@@ -57,12 +80,14 @@ def seeded(seed: int, stems: Sequence[str] = QUICK) -> tuple[str, Seeded]:
     Raises:
         LookupError: no board has one.
     """
-    for stem in _order(seed, stems):
+    kind, order = kind_of(seed), _order(seed, stems)
+    for n, stem in enumerate(order):
         try:
-            return stem, kind_of(seed)(drawn(stem), random.Random(f"{stem} {kind_of(seed).__name__} {seed}"))
+            fault = kind(drawn(stem), random.Random(f"{stem} {kind.__name__} {seed}"))
         except LookupError:
             continue
-    raise LookupError(f"no board has a place for {kind_of(seed).__name__}")
+        return Case(stem, fault, tuple(order[:n]))
+    raise LookupError(f"no board has a place for {kind.__name__}")
 
 
 def _order(seed: int, stems: Sequence[str]) -> list[str]:
@@ -80,22 +105,23 @@ def _order(seed: int, stems: Sequence[str]) -> list[str]:
 
 def missed(seed: int, stems: Sequence[str] = QUICK) -> str:
     """Return what went wrong with a seed, empty when the right rule found its fault at the right place."""
-    return _outcome(seed, stems)[1]
+    return _outcome(seed, stems).wrong
 
 
-def _outcome(seed: int, stems: Sequence[str]) -> tuple[str, str]:
-    """Return a seed's example, and what went wrong or nothing."""
-    stem, case = seeded(seed, stems)
+def _outcome(seed: int, stems: Sequence[str]) -> Outcome:
+    """Return where a seed's fault was put, and what went wrong or nothing."""
+    case = seeded(seed, stems)
     places = [
-        math.dist(f.at, case.at)
-        for f in check(case.artwork).findings
-        if f.rule in case.rules and f.severity != "note" and f.at is not None
+        math.dist(f.at, case.fault.at)
+        for f in check(case.fault.artwork).findings
+        if f.rule in case.fault.rules and f.severity != "note" and f.at is not None
     ]
     nearest = min(places, default=math.inf)
-    if nearest <= case.within:
-        return stem, ""
-    name = kind_of(seed).__name__
-    return stem, f"seed {seed}: {name} in {stem} at {case.at}: nearest finding {nearest:.0f} nm away"
+    wrong = ""
+    if nearest > case.fault.within:
+        what = f"seed {seed}: {kind_of(seed).__name__} in {case.stem} at {case.fault.at}"
+        wrong = f"{what}: nearest finding {nearest:.0f} nm away"
+    return Outcome(case.stem, wrong, case.passed_over)
 
 
 def false_alarms(stem: str) -> list[str]:
@@ -104,8 +130,8 @@ def false_alarms(stem: str) -> list[str]:
     return [f"{stem}: {f.severity} {f.rule}: {f.text}" for f in found if f.severity != "note"]
 
 
-def outcomes(count: int, processes: int) -> list[tuple[str, str]]:
-    """Return each seed's example and what went wrong; the drawings are made once, then shared by a fork."""
+def outcomes(count: int, processes: int) -> list[Outcome]:
+    """Return each seed's outcome; the drawings are made once, then shared by a fork."""
     judge = functools.partial(_outcome, stems=STEMS)
     for stem in STEMS:
         drawn(stem)
@@ -115,19 +141,42 @@ def outcomes(count: int, processes: int) -> list[tuple[str, str]]:
         return list(pool.imap(judge, range(count), chunksize=8))
 
 
-def report(found: Sequence[tuple[str, str]], alarms: Sequence[str], seconds: float) -> dict[str, object]:
+def report(found: Sequence[Outcome], alarms: Sequence[str], seconds: float) -> dict[str, object]:
     """Return the result as it is written: figures, what was missed, seeds by kind and board."""
-    boards: dict[str, Counter[str]] = {kind.__name__: Counter() for kind in KINDS}
-    for seed, (stem, _) in enumerate(found):
-        boards[kind_of(seed).__name__][stem] += 1
+    held, passed = by_kind(found), _by_kind_and_board(found, lambda outcome: outcome.passed_over)
     return {
         "seeds": len(found),
         "kinds": len(KINDS),
-        "missed": [text for _, text in found if text],
+        "missed": [outcome.wrong for outcome in found if outcome.wrong],
         "findings_on_unharmed_boards": list(alarms),
-        "seeds_by_kind_and_board": {kind: dict(sorted(held.items())) for kind, held in boards.items()},
+        "seeds_by_kind_and_board": {kind: dict(sorted(boards.items())) for kind, boards in held.items()},
+        "no_place_by_kind_and_board": {kind: dict(sorted(boards.items())) for kind, boards in passed.items()},
         "seconds": round(seconds, 1),
     }
+
+
+def by_kind(found: Sequence[Outcome]) -> dict[str, Counter[str]]:
+    """Return for each kind how often it was put into each board."""
+    return _by_kind_and_board(found, lambda outcome: (outcome.stem,))
+
+
+def _by_kind_and_board(
+    found: Sequence[Outcome], boards_of: Callable[[Outcome], Iterable[str]]
+) -> dict[str, Counter[str]]:
+    """Return for each kind how often each board comes in the outcomes of its seeds."""
+    boards: dict[str, Counter[str]] = {kind.__name__: Counter() for kind in KINDS}
+    for seed, outcome in enumerate(found):
+        boards[kind_of(seed).__name__].update(boards_of(outcome))
+    return boards
+
+
+def by_kind_text(found: Sequence[Outcome]) -> Iterator[str]:
+    """Yield a line for each kind: seeds, missed ones, boards it was put into, times a board had no place."""
+    missed_of = Counter(kind_of(seed).__name__ for seed, outcome in enumerate(found) if outcome.wrong)
+    passed = _by_kind_and_board(found, lambda outcome: outcome.passed_over)
+    for kind, boards in by_kind(found).items():
+        figures = f"{boards.total():5d} seeds, {missed_of[kind]} missed, on {len(boards):2d} boards"
+        yield f"{kind:<20} {figures}, {passed[kind].total()} times no place"
 
 
 def main(arguments: Iterable[str]) -> int:
@@ -141,14 +190,15 @@ def main(arguments: Iterable[str]) -> int:
     found = outcomes(options.seeds, options.processes)
     alarms = [text for stem in STEMS for text in false_alarms(stem)]
     result = report(found, alarms, time.perf_counter() - start)
-    misses = [text for _, text in found if text]
-    for text in (*misses, *alarms):
+    misses = [outcome.wrong for outcome in found if outcome.wrong]
+    few = [kind for kind, boards in by_kind(found).items() if len(boards) < LEAST_BOARDS]
+    for text in (*by_kind_text(found), *misses, *alarms, *(f"{kind}: on too few boards" for kind in few)):
         print(text)  # noqa: T201
     figures = f"{len(misses)} missed, {len(alarms)} findings on unharmed boards"
     print(f"{len(found)} seeds, {len(KINDS)} kinds, {len(STEMS)} boards: {figures}, {result['seconds']} s")  # noqa: T201
     if options.out is not None:
         options.out.write_text(json.dumps(result, indent=1) + "\n")
-    return 1 if misses or alarms else 0
+    return 1 if misses or alarms or few else 0
 
 
 if __name__ == "__main__":

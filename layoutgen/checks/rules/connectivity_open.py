@@ -1,21 +1,22 @@
 """Every net of the circuit hangs together.
 
-What: all copper of a net (of nets that lines join, of gnd) is one piece, and so is each line's own; each
-pad, port and line end has copper.
+What: all copper of a net (of nets that lines join, of gnd) is one piece, and so is each line's own; there is
+copper all along each line, strip of a pair and radial stub, under the whole of each pad and at each port.
 Why: what is not joined does not work.
-How measured: from finished polygons and plated holes alone; touching is joining, also through other
-copper. Pads, ports and the legs of lines are looked for at their places, so that copper left out
-altogether is found. A line cut through is found also where its halves hang together another way round, as
-in a ring; copper that touches both halves joins them. An end of a line or strip on gnd must meet copper on
-gnd that hangs on the ground plane by a plated hole, and not by way of the line itself. Pour that hangs on
-nothing is ``connectivity.floating``. The place is the middle of the shortest way between the pieces.
+How measured: from finished polygons and plated holes alone; touching is joining, also through other copper.
+Pads, ports, the centre-lines of lines and of pairs' strips and three rays through each radial stub are looked
+for at their places, so that copper left out is found; a micrometre may be missing, what the mitre of a bend
+cuts off, and what an unplated hole takes away. A line cut through is found also where its halves hang
+together another way round, as in a ring; copper that touches both halves joins them. An end of a line or
+strip on gnd must meet copper on gnd that hangs on the ground plane by a plated hole, and not by way of the
+line itself. Pour that hangs on nothing is ``connectivity.floating``. The place is the middle of the shortest
+way between the pieces, or of what lies bare.
 Source: the circuit file.
 """
 
 from __future__ import annotations
 
 from collections.abc import Iterator
-from itertools import pairwise
 
 import numpy as np
 import numpy.typing as npt
@@ -28,15 +29,12 @@ from layoutgen.checks.netgraph import clusters
 from layoutgen.checks.nodes import GROUND, ground_end
 from layoutgen.checks.outcome import Hit, Outcome, Rule, mm, named
 from layoutgen.checks.planar import whole
+from layoutgen.checks.wanted import bare_places
 from layoutgen.geometry import Point
-from layoutgen.placement import PlacedLine
 
 __all__ = ["RULE"]
 
 NAME = "connectivity.open"
-_STEP_NM = 2_000.0
-_REACH_NM = 1_000.0
-_LEG_WIDTHS = 4.0
 
 
 def find(board: Board) -> Iterator[Outcome]:
@@ -61,9 +59,10 @@ def _broken(joined: Connections, _: Artwork) -> Iterator[Hit]:
             if group is largest or all(joined.pieces[k].role == "pour" for k in group):
                 continue
             a, b, at, distance = joined.nearest(group, largest)
+            where = f"{mm(distance)} apart" if distance > 0.0 else "one above the other"
             yield Hit(
                 rule=NAME,
-                text=f"{a.item} and {b.item} of net {a.net} are not joined, {mm(distance)} apart",
+                text=f"{a.item} and {b.item} of net {a.net} are not joined, {where}",
                 items=named(a.item, b.item),
                 at=at,
                 measured=distance / 1e6,
@@ -110,44 +109,24 @@ def _halves(members: list[int], touching: npt.NDArray[np.intp]) -> tuple[list[in
 
 
 def _missing(joined: Connections, artwork: Artwork) -> Iterator[Hit]:
-    """Yield a hit for each pad, port and leg of a line without copper."""
-    top, wanted = joined.board.top, list(_places(artwork))
-    points = shapely.points([at for _, _, at in wanted]) if wanted else np.array([], dtype=object)
-    found = np.zeros(len(wanted), dtype=bool)
-    if wanted and top.pieces:
-        found[top.tree.query(points, predicate="dwithin", distance=_REACH_NM)[0]] = True
-    for k in np.flatnonzero(~found).tolist():
-        item, net, (x, y) = wanted[k]
-        yield Hit(rule=NAME, text=f"no copper for {item}", items=(item,), at=whole(x, y), nets=named(net))
-
-
-def _places(artwork: Artwork) -> Iterator[tuple[str, str, tuple[float, float]]]:
-    """Yield the places where there must be copper: item, net, point [nm]."""
-    placement = artwork.placement
-    for part in placement.parts.values():
-        for pad in part.pads:
-            if pad.outline.polygon().area > 0.0:
-                yield part.name, pad.net, (pad.x, pad.y)
-    for port in placement.ports.values():
-        turn = np.radians(port.heading)
-        yield port.name, port.net, (port.x + _STEP_NM * np.cos(turn), port.y + _STEP_NM * np.sin(turn))
-    for line in placement.lines.values():
-        yield from ((line.name, line.nets[0], point) for point in _on_legs(line))
-
-
-def _on_legs(line: PlacedLine) -> Iterator[tuple[float, float]]:
-    """Yield the middle of each leg that its mitres leave straight there, and a point before an open end."""
-    for a, b in pairwise(line.path):
-        if np.hypot(b[0] - a[0], b[1] - a[1]) > _LEG_WIDTHS * line.width:
-            yield (a[0] + b[0]) / 2.0, (a[1] + b[1]) / 2.0
-    if len(line.nets) == 1:
-        yield _before_end(line.path[-2], line.path[-1])
-
-
-def _before_end(a: Point, b: Point) -> tuple[float, float]:
-    """Return the point a step before b on the way from a [nm]."""
-    share = _STEP_NM / float(np.hypot(b[0] - a[0], b[1] - a[1]))
-    return b[0] - share * (b[0] - a[0]), b[1] - share * (b[1] - a[1])
+    """Yield a hit for each pad, port, line, strip and stub that lies bare of copper somewhere."""
+    for (item, net, place), bare in bare_places(joined.board, artwork):
+        largest = max(shapely.get_parts(bare), key=lambda part: (part.area, part.length))
+        if bare.area > 0.0:
+            size, unit, spot = bare.area / 1e12, "mm^2", largest.representative_point()
+        else:
+            size, unit, spot = bare.length / 1e6, "mm", largest.interpolate(0.5, normalized=True)
+        what = item if bare.equals(place) else f"{size:.4f} {unit} of {item}"
+        yield Hit(
+            rule=NAME,
+            text=f"no copper for {what}",
+            items=(item,),
+            at=whole(spot.x, spot.y),
+            measured=size,
+            limit=0.0,
+            unit=unit,
+            nets=named(net),
+        )
 
 
 def _ungrounded(joined: Connections, artwork: Artwork) -> Iterator[Hit]:

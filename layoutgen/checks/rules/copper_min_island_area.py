@@ -2,8 +2,9 @@
 
 What: each piece of copper that holds no line, strip, pad or land has at least ``copper.min_island_area``.
 Why: a small scrap may come off in the etch bath and land where it shorts something.
-How measured: the area of the joined copper. Copper of the circuit itself may be as small as it is.
-On drawings of unknown origin all copper is judged. One part in a million below the limit passes.
+How measured: the area of the joined copper. Copper of the circuit itself, and copper that the barrel of a
+plated hole holds, may be as small as it is. On drawings of unknown origin all other copper is judged. One
+part in a million below the limit passes.
 Source: the limit is the board house's.
 """
 
@@ -29,16 +30,18 @@ def find(board: Board) -> Iterator[Outcome]:
     limit = board.limits.number(NAME)
     if limit is not None:
         for layer in board.layers:
-            yield from _islands(layer, limit * 1e18)
+            yield from _islands(board, layer, limit * 1e18)
 
 
-def _islands(layer: Layer, limit: float) -> Iterator[Hit]:
+def _islands(board: Board, layer: Layer, limit: float) -> Iterator[Hit]:
     """Yield the islands of one layer; the limit is an area [nm^2]."""
     areas = shapely.area(layer.merged)
     small = np.flatnonzero(areas < limit * (1.0 - 1e-6))
     wanted = np.array([piece.role in _WANTED for piece in layer.pieces], dtype=bool)
     island, member = layer.tree.query(layer.merged[small], predicate="intersects")
-    used = np.isin(np.arange(len(small)), island[wanted[member]])
+    plated = board.drill_points[[k for k, drill in enumerate(board.drills) if drill.plated]]
+    held, _ = shapely.STRtree(plated).query(layer.merged[small], predicate="intersects")
+    used = np.isin(np.arange(len(small)), np.concatenate((island[wanted[member]], held)))
     for n in np.flatnonzero(~used).tolist():
         k, shape = small[n], layer.merged[small[n]]
         inside = [layer.pieces[m] for m in np.sort(member[island == n]).tolist()]

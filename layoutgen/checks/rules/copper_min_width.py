@@ -6,6 +6,7 @@ Why: narrower copper may be etched through or lift off; a narrow line also misse
 How measured: exactly, on the joined copper of each layer, between facing edges found through a tree over
 all edges, not on centre-lines. Two places of one outline less than 3.5 limits apart along it are a corner
 and are not counted, so copper tapering to a point is counted where its angle is below about 33 degrees.
+Copper of one net that meets in a single point only (two corners, a void that touches the outline) measures 0.
 Finished copper is the artwork less ``copper.undercut`` on each edge. A distance 10 nm short of the limit
 passes (rounding to whole nanometres, chords of arcs).
 Source: the limit is the board house's; the 3.5 limits are a choice of this project.
@@ -15,8 +16,12 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
+import numpy as np
+import shapely
+
 from layoutgen.checks.board import Board, Layer
 from layoutgen.checks.outcome import Hit, Outcome, Rule, named, too_small
+from layoutgen.checks.planar import TOLERANCE_NM, whole
 from layoutgen.checks.spots import item_at, net_at, spots
 
 __all__ = ["RULE"]
@@ -30,6 +35,7 @@ def find(board: Board) -> Iterator[Outcome]:
     if limit is not None:
         for layer in board.layers:
             yield from _necks(layer, limit)
+            yield from _pinched(layer, limit)
 
 
 def _necks(layer: Layer, limit: float) -> Iterator[Hit]:
@@ -39,6 +45,17 @@ def _necks(layer: Layer, limit: float) -> Iterator[Hit]:
         nets = named(net_at(layer, spot.first), net_at(layer, spot.second))
         text = f"copper of {' and '.join(items)} is wide only"
         yield too_small(NAME, text, spot.distance, limit, spot.at, items, nets, layer.name)
+
+
+def _pinched(layer: Layer, limit: float) -> Iterator[Hit]:
+    """Yield a hit for each point by which alone copper of one net hangs together."""
+    for x, y in layer.pinches.tolist():
+        near = layer.tree.query(shapely.Point(x, y), predicate="dwithin", distance=TOLERANCE_NM)
+        pieces = [layer.pieces[k] for k in np.sort(near).tolist()]
+        if len({piece.node for piece in pieces}) == 1:  # of several nets it is a short
+            items, nets = named(*(p.item for p in pieces)), named(*(p.net or "" for p in pieces))
+            text = f"copper of {' and '.join(items)} meets in a point, wide only"
+            yield too_small(NAME, text, 0.0, limit, whole(x, y), items, nets, layer.name)
 
 
 RULE = Rule(names=(NAME,), find=find)

@@ -3,13 +3,14 @@
 What: the current density in lines, strips, pads, the copper between them, and in via barrels is at most
 ``current.max_density``.
 Why: too dense a current heats, and in the long run moves, the copper.
-How measured: lines and strips by their current over their width at the narrowest place of their drawn
-copper, between facing edges, a width 10 nm short passing. Besides, the sheet of each net off gnd is solved
-by finite elements; on every line of one potential (a cross-section, however it bends) the mean density is
-the current through it over its length, so that tees, tapers, pads and bent necks are judged where the
-current crowds; half a per cent above the limit passes there. The peak at a sharp inner corner is not a
-measure: it has none but the mesh's. Barrels by pi t (d - t) with the drill d taken as drilled. Currents
-come from the DC solution, vias share equally. The current of the ground's own copper is not looked at.
+How measured: lines and strips by their current over their width at the narrowest place of their drawn copper,
+between facing edges (beside a hole all copper around it), a width 10 nm short passing. Besides, the sheet of
+each net off gnd is solved by finite elements; on every line of one potential (a cross-section, however it
+bends) the mean density is the current through it over its length, so that tees, tapers, pads and bent necks
+are judged where the current crowds; half a per cent above the limit passes there. The peak at a sharp inner
+corner is not a measure: it has none but the mesh's. Barrels by pi t (d - t) with the drill d taken as
+drilled. Currents come from the DC solution, vias share equally. The current of the ground's own copper is not
+looked at.
 Source: the limit is the board house's; the method is the textbook's.
 """
 

@@ -4,12 +4,12 @@ What: the temperature rise of lines, strips and via barrels by the IPC-2221 equa
 ``current.temperature_rise``.
 Why: hot copper ages the laminate and moves the bias of what is soldered to it.
 How measured: I = 0.048 dT^0.44 A^0.725 (A in square mils) for lines at the narrowest place of their drawn
-copper, between facing edges; barrels as pi t (d - t) with the drill d taken as drilled and the constant
-0.024 of conductors inside the board. Currents come from the DC solution, vias share equally. A current
-beyond the chart's 35 A is a finding whatever the width. A width 10 nm short passes. Besides, every line of
-one potential across the solved sheet of a net (see ``current.max_density``) is taken as a conductor of its
-length that carries the current through it; half a per cent short passes there. The current of the ground's
-own copper is not looked at.
+copper, between facing edges (beside a hole all copper around it); barrels as pi t (d - t) with the drill d
+taken as drilled and the constant 0.024 of conductors inside the board. Currents come from the DC solution,
+vias share equally. A current beyond the chart's 35 A is a finding whatever the width. A width 10 nm short
+passes. Besides, every line of one potential across the solved sheet of a net (see ``current.max_density``) is
+taken as a conductor of its length that carries the current through it; half a per cent short passes there.
+The current of the ground's own copper is not looked at.
 Source: IPC-2221, as independent public code and pages quote it; the standard's text was not read.
 """
 

@@ -7,10 +7,11 @@ frequency the row would do.
 Why: the pour with a sparse row of vias guides waves between the planes, past the filter it stands beside.
 How measured: a row is asked for where a pour edge faces a line within two of the line's gaps, over
 stretches longer than the pitch, not within 0.3 mm of part outlines. Vias on gnd within
-``fence.max_edge_distance`` of the stretch count, in the order of their feet on it (on both sides of a
-narrow piece of pour); the distance of two is the way along the edge, or around a corner the straight line
-between the axes, at most twice the depth of each behind the edge shorter; the ends of a stretch count as
-axes. A micrometre above the limit passes (rows are laid on whole nanometres along arcs drawn as chords).
+``fence.max_edge_distance`` of the stretch count that stand behind it, in ground copper all the way to their
+foot on it (on both sides of a narrow piece of pour), in the order of these feet; the distance of two is the
+way along the edge, or around a corner the straight line between the axes, at most twice the depth of each
+behind the edge shorter; the ends of a stretch count as axes. A micrometre above the limit passes (rows are
+laid on whole nanometres along arcs drawn as chords).
 Source: a twentieth of a wavelength in the slab is common practice (public pages on microwave boards).
 """
 
@@ -26,10 +27,10 @@ import numpy.typing as npt
 import shapely
 
 from layoutgen.checks.board import Board
-from layoutgen.checks.fences import nearest_line, stretches, unfenced
+from layoutgen.checks.fences import ground_copper, nearest_line, stretches, unfenced
 from layoutgen.checks.nodes import GROUND
 from layoutgen.checks.outcome import Hit, Outcome, Rule, mm, named
-from layoutgen.checks.planar import TOLERANCE_NM, whole
+from layoutgen.checks.planar import TOLERANCE_NM, Geometry, whole
 from layoutgen.checks.records import NotChecked
 from layoutgen.formulas.constants import C0
 from layoutgen.geometry import Point
@@ -51,9 +52,10 @@ def find(board: Board) -> Iterator[Outcome]:
     if limit < least:
         yield _too_close(board, limit, least)
         name, limit = PITCH, least
+    ground = ground_copper(board)
     for stretch in stretches(board):
         if stretch.length > limit:
-            yield from _gaps(board, stretch, name, limit)
+            yield from _gaps(board, stretch, ground, name, limit)
 
 
 def _wavelength(board: Board) -> float:
@@ -92,9 +94,11 @@ def _too_close(board: Board, asked: float, least: float) -> Hit:
     )
 
 
-def _gaps(board: Board, stretch: shapely.LineString, name: str, limit: float) -> Iterator[Hit]:
-    """Yield the gaps in the row along one stretch."""
-    for gap, at in _row(board, stretch, limit):
+def _gaps(
+    board: Board, stretch: shapely.LineString, ground: Geometry, name: str, limit: float
+) -> Iterator[Hit]:
+    """Yield the gaps in the row along one stretch of the ground's copper."""
+    for gap, at in _row(board, stretch, ground, limit):
         if gap > limit + _PITCH_TOLERANCE_NM:
             line = nearest_line(board, at)
             yield Hit(
@@ -109,14 +113,17 @@ def _gaps(board: Board, stretch: shapely.LineString, name: str, limit: float) ->
             )
 
 
-def _row(board: Board, stretch: shapely.LineString, limit: float) -> Iterator[tuple[float, Point]]:
+def _row(
+    board: Board, stretch: shapely.LineString, ground: Geometry, limit: float
+) -> Iterator[tuple[float, Point]]:
     """Yield the distances of consecutive axes along a stretch [nm], each with the middle between them."""
     reach = (board.limits.nm("fence.max_edge_distance") or limit) + TOLERANCE_NM
     near = board.drill_tree.query(stretch, predicate="dwithin", distance=reach)
     vias = [board.drills[k] for k in np.sort(near).tolist() if board.drills[k].is_via]
     axes = np.array([(via.x, via.y) for via in vias if via.node == GROUND]).reshape(-1, 2)
     (x0, y0), (x1, y1) = shapely.get_coordinates(stretch)[[0, -1]].tolist()
-    feet = [_Foot(0.0, x0, y0, 0.0), *sorted(_feet(stretch, axes, reach)), _Foot(stretch.length, x1, y1, 0.0)]
+    behind = [foot for foot in _feet(stretch, axes, reach) if ground.covers(foot.way(stretch))]
+    feet = [_Foot(0.0, x0, y0, 0.0), *sorted(behind), _Foot(stretch.length, x1, y1, 0.0)]
     for a, b in pairwise(feet):
         middle = stretch.interpolate((a.along + b.along) / 2.0)
         yield _apart(a, b), whole(middle.x, middle.y)
@@ -129,6 +136,11 @@ class _Foot(NamedTuple):
     x: float
     y: float
     depth: float
+
+    def way(self, stretch: shapely.LineString) -> shapely.LineString:
+        """Return the straight way from the axis to its foot."""
+        foot = stretch.interpolate(self.along)
+        return shapely.LineString([(self.x, self.y), (foot.x, foot.y)])
 
 
 def _apart(a: _Foot, b: _Foot) -> float:

@@ -4,9 +4,9 @@ What: along the side of a cut-out that a pad faces, the bottom plane is no farth
 ``copper.min_edge_distance`` makes it.
 Why: there the return current of the line goes over into the carrier; every gap on its way is inductance
 in series with the source.
-How measured: from the cut-out's edge straight under the pad, over the pad's width, to the plane; the
-largest of 21 distances, ends included. Only for parts with a pin on ``ground = "flange"``. 1 um above
-passes.
+How measured: from the cut-out's edge under the pad, over the pad's width, to the nearest bottom copper on
+gnd; the largest of these distances, looked for wherever it is too large, so that a slot is found however
+narrow it is against the pad. Only for parts with a pin on ``ground = "flange"``. 1 um above passes.
 Source: common practice, no source; the limit is the least that the edge rule lets be.
 """
 
@@ -22,7 +22,7 @@ from shapely.geometry.polygon import orient
 from layoutgen.checks.board import Area, Board
 from layoutgen.checks.nodes import GROUND
 from layoutgen.checks.outcome import Hit, Outcome, Rule, mm, named
-from layoutgen.checks.planar import CHORD_NM, Geometry, Polygons, points_of, whole
+from layoutgen.checks.planar import CHORD_NM, Geometry, points_of, whole
 from layoutgen.checks.records import NotChecked
 from layoutgen.placement import PlacedPad
 
@@ -39,7 +39,6 @@ def find(board: Board) -> Iterator[Outcome]:
     if board.artwork is None:
         return
     limit = board.limits.nm("copper.min_edge_distance")
-    plane = shapely.union_all(board.bottom.polygons) if board.bottom.pieces else shapely.MultiPolygon()
     for cutout in board.cutouts:
         part = board.artwork.placement.parts.get(cutout.item)
         if part is None or not any(pad.ground == "flange" for pad in part.pads):
@@ -48,15 +47,19 @@ def find(board: Board) -> Iterator[Outcome]:
             yield NotChecked(f"{NAME} ({part.name})", "copper.min_edge_distance is not given")
             continue
         for pad in part.pads:
-            yield from _pad(cutout, pad, plane, limit)
+            yield from _pad(cutout, pad, board.plane, limit)
 
 
 def _pad(cutout: Area, pad: PlacedPad, plane: Geometry, limit: float) -> Iterator[Hit]:
     """Yield the hit of one pad."""
-    points = _facing_points(cutout, pad)
-    if points is None:
+    side = _facing_side(cutout, pad)
+    if side is None:
         return
-    away = shapely.distance(points, plane) if not plane.is_empty else np.full(_SAMPLES, np.inf)
+    far = side.difference(plane.buffer(limit + _TOLERANCE_NM, quad_segs=64))
+    if far.is_empty:
+        return
+    points = points_of([place for piece in shapely.get_parts(far) for place in _along(piece)])
+    away = shapely.distance(points, plane) if not plane.is_empty else np.full(len(points), np.inf)
     worst = int(np.argmax(away))
     if away[worst] > limit + _TOLERANCE_NM:
         found = mm(float(away[worst])) if np.isfinite(away[worst]) else "nowhere"
@@ -74,8 +77,14 @@ def _pad(cutout: Area, pad: PlacedPad, plane: Geometry, limit: float) -> Iterato
         )
 
 
-def _facing_points(cutout: Area, pad: PlacedPad) -> Polygons | None:
-    """Return points along the side of a cut-out that a pad faces, over its width, if there is one."""
+def _along(piece: shapely.LineString) -> list[tuple[float, float]]:
+    """Return points along a line, ends included."""
+    spots = shapely.line_interpolate_point(piece, np.linspace(0.0, 1.0, _SAMPLES), normalized=True)
+    return [(spot.x, spot.y) for spot in spots]
+
+
+def _facing_side(cutout: Area, pad: PlacedPad) -> shapely.LineString | None:
+    """Return the side of a cut-out that a pad faces, over the pad's width, if there is one."""
     outline = pad.outline.polygon(CHORD_NM)
     turn = np.radians(pad.heading)
     outward = np.array([np.cos(turn), np.sin(turn)])
@@ -85,7 +94,7 @@ def _facing_points(cutout: Area, pad: PlacedPad) -> Polygons | None:
         along = (b - a) / length
         low, high = np.clip([((corners - a) @ along).min(), ((corners - a) @ along).max()], 0.0, length)
         if along[1] * outward[0] - along[0] * outward[1] > _LOOKING and high > low and outline.area > 0.0:
-            return points_of(list(a + np.linspace(low, high, _SAMPLES)[:, None] * along))
+            return shapely.LineString([a + low * along, a + high * along])
     return None
 
 

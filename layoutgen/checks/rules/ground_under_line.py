@@ -1,11 +1,11 @@
 """Under every RF line the ground plane is unbroken.
 
-What: the copper of each RF line, coupled pair and radial stub lies wholly over the bottom plane, except
+What: the copper of each RF line, coupled pair and radial stub lies wholly over bottom copper on gnd, except
 within ``copper.min_edge_distance`` (0.3 mm without that rule) of the profile and of cut-outs, where the
 plane must end.
 Why: return current that has to go round a slot radiates, and the line's impedance jumps there.
-How measured: the area of the line's finished copper with no plane below; openings thinner than 20 nm are
-rounding. Only straight below: a slot beside the line is not looked at.
+How measured: the area of the line's finished copper with none below, copper of other nets being none;
+openings thinner than 20 nm are rounding. Only straight below: a slot beside the line is not looked at.
 Source: common practice, no source.
 """
 
@@ -32,15 +32,13 @@ def find(board: Board) -> Iterator[Outcome]:
     """Yield a hit for each line with no plane under part of it."""
     if board.artwork is None:
         return
-    plane = shapely.union_all(board.bottom.polygons) if board.bottom.pieces else shapely.MultiPolygon()
-    shapely.prepare(plane)
     away = _edge_zone(board, board.artwork)
     for piece in board.top.pieces:
         if piece.role not in _LINE_ROLES or not _is_rf(board.artwork, piece.item):
             continue
-        if plane.covers(piece.polygon):
+        if board.plane.covers(piece.polygon):
             continue
-        bare = piece.polygon.difference(plane).difference(away).buffer(-TOLERANCE_NM)
+        bare = piece.polygon.difference(board.plane).difference(away).buffer(-TOLERANCE_NM)
         for part in parts(bare):
             spot = part.representative_point()
             yield Hit(

@@ -3,11 +3,11 @@
 What: the coupling between two lines over the length they run in parallel is at most
 ``spacing.max_coupling``.
 Why: a few per cent of the output led back to the input is enough to make an amplifier oscillate.
-How measured: k = (Ze - Zo) / (Ze + Zo) of a symmetric coupled pair at the drawn gap, times sin(beta l) up
-to a quarter wave, at the band's upper edge; for unequal widths the geometric mean of k at both. Legs of
-two different lines that run in parallel within a degree, up to ten heights apart; places left out as for
-``spacing.min_line_heights``. Pour between the lines lowers the coupling and is not taken into account.
-0.01 dB above the limit pass.
+How measured: k = (Ze - Zo) / (Ze + Zo) of a symmetric coupled pair at the drawn gap, times sin(beta l) up to
+a quarter wave, at the band's upper edge; for unequal widths the geometric mean of k at both. Legs of two
+different lines that run in parallel within a degree, up to ten heights apart; places left out as for
+``spacing.min_line_heights``, of the length too. Pour between the lines lowers the coupling and is not taken
+into account. 0.01 dB above the limit pass.
 Source: Kirschning and Jansen 1984 with thickness (see the formulas); mean and product with sin are
 choices of this project, good for weak coupling.
 """
@@ -18,12 +18,13 @@ import math
 from collections.abc import Iterator
 
 import numpy as np
+import shapely
 
 from layoutgen.artwork import Artwork
 from layoutgen.checks.board import Board
-from layoutgen.checks.neighbours import Leg, neighbours
+from layoutgen.checks.neighbours import Leg, Neighbours, neighbours
 from layoutgen.checks.outcome import Hit, Outcome, Rule, mm, named
-from layoutgen.checks.planar import middle
+from layoutgen.checks.planar import Floats, middle
 from layoutgen.checks.records import NotChecked
 from layoutgen.formulas.constants import C0
 from layoutgen.formulas.coupled import coupled_pair
@@ -46,7 +47,7 @@ def find(board: Board) -> Iterator[Outcome]:
         return
     for pair in neighbours(board.artwork, _FARTHEST_HEIGHTS * board.height, board.height):
         a, b = pair.first, pair.second
-        lap = _overlap(a, b)
+        lap = _overlap(pair)
         if a.line == b.line or lap <= 0.0:
             continue
         coupling = _coupling(board.artwork, board.height, (a, b), pair.distance, lap)
@@ -64,16 +65,23 @@ def find(board: Board) -> Iterator[Outcome]:
             )
 
 
-def _overlap(a: Leg, b: Leg) -> float:
-    """Return the length [nm] over which two legs run in parallel, 0 for radial stubs."""
+def _overlap(pair: Neighbours) -> float:
+    """Return the length [nm] over which what counts of two legs runs in parallel, 0 for radial stubs."""
+    a, b = pair.first, pair.second
     if a.shape is not None or b.shape is not None or a.length == 0.0 or b.length == 0.0:
         return 0.0
     ax, ay = (a.end[0] - a.start[0]) / a.length, (a.end[1] - a.start[1]) / a.length
     bx, by = (b.end[0] - b.start[0]) / b.length, (b.end[1] - b.start[1]) / b.length
     if abs(ax * by - ay * bx) > _PARALLEL:
         return 0.0
-    along = sorted((x - a.start[0]) * ax + (y - a.start[1]) * ay for x, y in (b.start, b.end))
-    return max(0.0, min(a.length, along[1]) - max(0.0, along[0]))
+    spans = [np.sort(_centre_line(copper) @ (ax, ay)) for copper in (pair.one, pair.other)]
+    return max(0.0, float(min(span[1] for span in spans) - max(span[0] for span in spans)))
+
+
+def _centre_line(copper: shapely.Polygon) -> Floats:
+    """Return the ends (2, 2) [nm] of a straight leg's centre-line, from its four corners."""
+    corners = shapely.get_coordinates(copper)[:4]
+    return np.asarray((corners[:2] + corners[:1:-1]) / 2.0)
 
 
 def _coupling(artwork: Artwork, height: float, legs: tuple[Leg, Leg], gap: float, lap: float) -> float:

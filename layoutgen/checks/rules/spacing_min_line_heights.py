@@ -6,9 +6,9 @@ Why: at three heights two 50-ohm lines couple by about -29 dB over a quarter wav
 How measured: edge to edge of the straight legs at their drawn width. Not counted: within 3 h of path from
 a node that both lines share, beginning where other lines and pads at that node end (half the widest
 line); nets joined by a part or by a line of up to 3 h count as one node, and so do the two ends of a coupled
-pair beside each other (gap up to 3 h), an open one too, since what goes on from either cannot but begin
-beside the other; legs that share a bend, and legs within 3 h of the bends between them; the strips of a
-coupled pair; a radial stub against lines it meets.
+pair beside each other (gap up to 3 h), one that is open or on gnd too, since what goes on from either cannot
+but begin beside the other; legs that share a bend, and legs within 3 h of the bends between them; the strips
+of a coupled pair; a radial stub against lines it meets.
 Mitred corners are left to the legs beside them. 10 nm short of the limit passes.
 Source: field-solved tables made for this project (coupling); three heights is common practice, no source.
 """

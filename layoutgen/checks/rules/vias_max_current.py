@@ -2,8 +2,9 @@
 
 What: the direct current through each via is at most ``vias.max_current``.
 Why: a barrel's plating is thin and hidden; where it fails nobody sees it.
-How measured: the current of a ground pad or of a line that ends on gnd, from the DC solution, shared
-equally by its own vias. One part in a million above the limit passes. Crowding, and current that leaves
+How measured: the current of a ground pad, or of a line or strip of a coupled pair that ends on gnd, from
+the DC solution, shared equally by its own vias; of a pair's vias each belongs to the strip's end that it
+stands nearest to. One part in a million above the limit passes. Crowding, and current that leaves
 through other vias by way of the pour, are not looked at.
 Source: the limit is the board house's; the equal share is common practice, no source.
 """

@@ -1,7 +1,8 @@
 """Which copper carries direct current, where it enters and leaves, and the solved sheet of each net.
 
-A current enters a pad evenly over its outline, a port over a square at its end, a line that ends on gnd
-evenly at the barrels of its vias. Nets that lines join are one sheet. The ground's own copper is left out.
+A current enters a pad evenly over its outline, a port over a square at its end, a line or a strip of a
+coupled pair that ends on gnd evenly at the barrels of its vias. Nets that lines join are one sheet. The
+ground's own copper is left out.
 """
 
 from __future__ import annotations
@@ -14,7 +15,8 @@ import numpy as np
 import shapely
 from shapely.geometry.base import BaseGeometry
 
-from layoutgen.checks.nodes import GROUND, ground_end, joined_nets
+from layoutgen.checks.ground_ends import ground_ends
+from layoutgen.checks.nodes import GROUND, joined_nets
 from layoutgen.checks.planar import CHORD_NM, array_of, parts
 from layoutgen.checks.records import NotChecked
 from layoutgen.checks.sheet.mesh import mesh_of
@@ -34,6 +36,8 @@ _UNBALANCED = 1e-6
 """Largest sum of terminal currents that counts as none, in the largest of them [-]."""
 _FINE = 4.0
 """Triangle edges across a region where a current enters, at least [-]."""
+_END_ROLES = ("line", "pair", "ground")
+"""Copper on gnd that belongs to the end of a line or strip there, when it bears the line's name."""
 NAME = "current crowding"
 
 
@@ -96,7 +100,7 @@ def _terminals(board: Board, artwork: Artwork) -> Mapping[str, list[Terminal]]:
     """Return the terminals of each node that carry current, ``gnd`` left out."""
     nodes = joined_nets(artwork.placement.sized.circuit.file)
     found: dict[str, list[Terminal]] = {}
-    for net, terminal in (*_at_pads(artwork), *_at_ports(artwork), *_at_vias(board, artwork)):
+    for net, terminal in (*_at_pads(artwork), *_at_ports(artwork), *_at_vias(board)):
         if net != GROUND and abs(terminal.current) > _LEAST_A:
             found.setdefault(nodes.get(net, net), []).append(terminal)
     return found
@@ -134,30 +138,28 @@ def _port_square(port: PlacedPort) -> shapely.Polygon:
     return shapely.Polygon([*corners, corners[1] + port.width * along, corners[0] + port.width * along])
 
 
-def _at_vias(board: Board, artwork: Artwork) -> Iterator[tuple[str, Terminal]]:
-    """Yield what lines that end on gnd lose at their vias, in equal shares."""
-    currents = artwork.placement.sized.circuit.dc.currents
-    for line in artwork.placement.lines.values():
-        end = ground_end(line.nets)
-        own = [via for via in board.vias if via.purpose == f"line:{line.name}"]
-        if end is None or not own:
-            continue
-        leaving = currents.get(line.name, 0.0) * (1.0 if end == 1 else -1.0)
-        for via in own:
+def _at_vias(board: Board) -> Iterator[tuple[str, Terminal]]:
+    """Yield what lines and strips of pairs that end on gnd lose at their vias, in equal shares."""
+    for end in ground_ends(board):
+        for via in end.vias:
             disc = shapely.Point(via.x, via.y).buffer(via.diameter / 2.0)
-            yield line.nets[1 - end], Terminal(line.name, disc, -leaving / len(own))
+            yield end.net, Terminal(end.item, disc, -end.share)
 
 
 def _copper(board: Board, node: str, terminals: Sequence[Terminal]) -> list[shapely.Polygon]:
-    """Return a node's copper on the top as disjoint polygons, with the gnd ends of its lines."""
-    names = {terminal.item for terminal in terminals}
-    ends = {via.item for via in board.vias if via.purpose.removeprefix("line:") in names}
+    """Return a node's copper on the top as disjoint polygons, with the gnd ends of its lines and strips.
+
+    To such an end belong the lands of its vias and the ground copper that leads to them.
+    """
+    meant = {terminal.item for terminal in terminals}
+    ends = [end for end in ground_ends(board) if end.item in meant]
+    names, vias = {end.item for end in ends}, {via.item for end in ends for via in end.vias}
     own = [
         piece.polygon
         for piece in board.top.pieces
         if piece.node == node
-        or (piece.node == GROUND and piece.role == "line" and piece.item in names)
-        or (piece.role == "land" and piece.item in ends)
+        or (piece.node == GROUND and piece.role in _END_ROLES and piece.item in names)
+        or (piece.role == "land" and piece.item in vias)
     ]
     return parts(shapely.union_all(array_of(own))) if own else []
 
