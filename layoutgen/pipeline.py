@@ -18,7 +18,7 @@ from layoutgen.artwork import Artwork, Sketch, complete, sketch
 from layoutgen.aside import aside
 from layoutgen.checks import check
 from layoutgen.circuit import Circuit, build_circuit
-from layoutgen.errors import LayoutgenError
+from layoutgen.errors import InfeasibleError, LayoutgenError
 from layoutgen.placement import Choices, PlacedLine, Placement, place
 from layoutgen.placement.likes import with_like_lines
 from layoutgen.reading import CircuitFile, RuleFile, read_inputs
@@ -134,21 +134,15 @@ def _settled(circuit: Circuit, clock: _Clock, fit: Fit | None) -> tuple[Artwork,
     """
     with clock("sizing"):
         sized = size_circuit(circuit)
-    rounds: list[_Round] = []
-    while len(rounds) < MAX_ROUNDS:
-        try:
-            draft = _draft(sized, rounds[-1].draft.placement.choices if rounds else None, clock)
-        except LayoutgenError as error:
-            if not sized.corrections:
-                raise
-            return _uncorrected(circuit, clock, f"no placement with corrected lengths ({error})")
-        rounds.append(_asked(sized, draft, clock, fit, bool(rounds) and rounds[-1].alike))
-        if rounds[-1].settled or _goes_round(rounds):
-            break
-        sized = rounds[-1].again
-    best = _best(rounds)
-    if best.move >= SETTLED and not _goes_round(rounds):
-        best = _with_rested_widths(best, clock, fit)
+    try:
+        best = _best_draft(sized, clock, fit)
+    except _UncorrectableError as error:
+        return _uncorrected(circuit, clock, str(error))
+    except InfeasibleError:
+        settled = _sizes_without_places(circuit, clock, fit)
+        if settled is None:
+            raise
+        best = _best_draft(settled, clock, fit)
     if best.found.now > best.found.uncorrected:
         text = f"corrected lengths give a difference of {best.found.now:.4f}, the budgets' own less"
         return _uncorrected(circuit, clock, text)
@@ -161,6 +155,62 @@ def _settled(circuit: Circuit, clock: _Clock, fit: Fit | None) -> tuple[Artwork,
     widths = _unsettled_widths(artwork.placement.sized, asked)
     notes = (note for note in alike if note[1] not in told)
     return artwork, (*notes, *widths, *_unsettled_lengths(best.found))
+
+
+class _UncorrectableError(Exception):
+    """No placement with corrected lengths, while there is one with those of the budgets."""
+
+
+def _best_draft(sized: SizedCircuit, clock: _Clock, fit: Fit | None) -> _Round:
+    """Return the draft whose sizes settled, or the nearest to the schematic.
+
+    Args:
+        sized: The sizes of the first draft, with or without corrections.
+        clock: Takes the time.
+        fit: Says how lengths should be corrected; None leaves them.
+
+    Raises:
+        _UncorrectableError: The lengths that a draft asks for cannot be placed; no draft had corrected ones.
+        LayoutgenError: There is no first draft, or its widths do not settle to a placement.
+    """
+    rounds: list[_Round] = []
+    corrected = bool(sized.corrections)
+    while len(rounds) < MAX_ROUNDS:
+        try:
+            draft = _draft(sized, rounds[-1].draft.placement.choices if rounds else None, clock)
+        except LayoutgenError as error:
+            if corrected and rounds:
+                return _best(rounds)
+            if corrected or not sized.corrections:
+                raise
+            raise _UncorrectableError(f"no placement with corrected lengths ({error})") from error
+        rounds.append(_asked(sized, draft, clock, fit, bool(rounds) and rounds[-1].alike))
+        if rounds[-1].settled or _goes_round(rounds):
+            break
+        sized = rounds[-1].again
+    best = _best(rounds)
+    if best.move >= SETTLED and not _goes_round(rounds):
+        best = _with_rested_widths(best, clock, fit)
+    return best
+
+
+def _sizes_without_places(circuit: Circuit, clock: _Clock, fit: Fit | None) -> SizedCircuit | None:
+    """Return the sizes that settle without hints, on any board; None where no hint asks a place or legs.
+
+    Parts pinned where an earlier drawing had them leave their lines just the room that the settled lengths
+    take, which those of a first draft do not.
+    """
+    layout = circuit.file.layout
+    if not any(hint.at or (hint.route and any(hint.route.lengths)) for hint in layout.hints.values()):
+        return None
+    board = circuit.file.board.model_copy(update={"size": None})
+    bare = layout.model_copy(update={"hints": {}})
+    free = circuit.file.model_copy(update={"board": board, "layout": bare})
+    try:
+        best = _best_draft(size_circuit(build_circuit(free, circuit.rules)), clock, fit)
+    except (LayoutgenError, _UncorrectableError):
+        return None
+    return replace(best.draft.placement.sized, circuit=circuit)
 
 
 @dataclass(frozen=True, slots=True, eq=False)

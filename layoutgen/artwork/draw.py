@@ -8,17 +8,20 @@ from dataclasses import dataclass
 import shapely
 from shapely.geometry.base import BaseGeometry
 
+from layoutgen.artwork.attitude import Attitude
 from layoutgen.artwork.board import GND, cutouts_of, hole_lands, holes_of, profile_shapes
 from layoutgen.artwork.conductors import Conductor, conductors_of, copper_shapes
-from layoutgen.artwork.drills import Drills, legal_area
+from layoutgen.artwork.drills import Drills, legal_area, symmetries_of
 from layoutgen.artwork.labels import reference_labels
 from layoutgen.artwork.legend import draw_legend
 from layoutgen.artwork.limits import Limits, limits_of
+from layoutgen.artwork.lying import attitude_of, moved
 from layoutgen.artwork.mask import bottom_openings, paste_shapes, soldered_pads, top_openings
 from layoutgen.artwork.measure import measured_gaps
+from layoutgen.artwork.pad_vias import with_pad_vias
 from layoutgen.artwork.plane import plane_shapes
 from layoutgen.artwork.pour import ground_pieces, pour_of
-from layoutgen.artwork.records import LAYERS, Artwork, Hole, Shape, Via
+from layoutgen.artwork.records import LAYERS, Artwork, Shape, Via
 from layoutgen.artwork.stitching import fence, stitch_cutouts, stitch_rest, stitchable, well_held
 from layoutgen.geometry import Point, Ring, offset_ring, offset_rings
 from layoutgen.origin import Origin
@@ -29,9 +32,14 @@ __all__ = ["Sketch", "complete", "draw", "sketch"]
 
 @dataclass(frozen=True, slots=True, eq=False)
 class Sketch:
-    """A placed board with its copper and its pour, before vias decide which pieces of pour stay."""
+    """A placed board with its copper and its pour, before vias decide which pieces of pour stay.
+
+    All but ``placement`` lies as ``laid`` does: the same board, moved by ``attitude`` to how it is drawn.
+    """
 
     placement: Placement
+    attitude: Attitude
+    laid: Placement
     limits: Limits
     conductors: Sequence[Conductor]
     openings: Sequence[Shape]
@@ -41,13 +49,15 @@ class Sketch:
     @property
     def artwork(self) -> Artwork:
         """The copper and the pour alone, with the pour's distances."""
+        back = self.attitude.back
+        shapes = (*copper_shapes(self.conductors), *_pour_shapes(self.limits, self.pour))
         return Artwork(
             placement=self.placement,
-            shapes=(*copper_shapes(self.conductors), *_pour_shapes(self.limits, self.pour)),
+            shapes=tuple(back.shape(shape) for shape in shapes),
             vias=tuple(_placed_vias(self.placement)),
             holes=holes_of(self.placement),
             labels=(),
-            line_copper=measured_gaps(self.placement, self.limits, self.pour),
+            line_copper=back.line_copper(measured_gaps(self.laid, self.limits, self.pour)),
             title_anchor=(0, 0),
         )
 
@@ -57,7 +67,8 @@ def draw(placement: Placement) -> Artwork:
 
     The signal copper is drawn as placed, cut back only at cut-outs and the profile; the ground pour, its vias
     and all that is printed follow from it and from the rule file. The same placement gives the same artwork,
-    shape by shape.
+    shape by shape; a turned or mirrored one gives it turned or mirrored to the nanometre, but for the legend,
+    which is set to be read on the board as it lies.
 
     Args:
         placement: The placed board.
@@ -72,18 +83,23 @@ def sketch(placement: Placement) -> Sketch:
         placement: The placed board.
     """
     limits = limits_of(placement.sized)
-    conductors = conductors_of(placement, limits)
-    pour = pour_of(placement, limits, conductors) if limits.pour else []
-    bare = [pad.outline for _, pad in soldered_pads(placement)]
-    bare += [ring for ring, _ in hole_lands(placement, limits)]
-    area = legal_area(placement, limits, pour, conductors, bare)
+    attitude = attitude_of(placement)
+    plain = moved(placement, attitude)
+    conductors = conductors_of(plain, limits)
+    laid = with_pad_vias(plain, limits, conductors)
+    pour = pour_of(laid, limits, conductors) if limits.pour else []
+    bare = [pad.outline for _, pad in soldered_pads(laid)]
+    bare += [ring for ring, _ in hole_lands(laid, limits)]
+    area = legal_area(laid, limits, pour, conductors, bare)
     return Sketch(
-        placement=placement,
+        placement=placement if laid is plain else moved(laid, attitude.back),
+        attitude=attitude,
+        laid=laid,
         limits=limits,
         conductors=conductors,
-        openings=top_openings(placement, limits, conductors),
+        openings=top_openings(laid, limits, conductors),
         area=area,
-        pour=stitchable(pour, area, limits, placement),
+        pour=stitchable(pour, area, limits, laid),
     )
 
 
@@ -93,27 +109,22 @@ def complete(drawn: Sketch) -> Artwork:
     Args:
         drawn: The sketch.
     """
-    placement, limits, conductors, pour = drawn.placement, drawn.limits, drawn.conductors, drawn.pour
-    drills = Drills(drawn.area, limits, [(via.x, via.y, via.drill) for via in placement.vias])
-    sides = fence(pour, conductors, limits, drills)
-    count = len(drills.added)
-    stitch_cutouts(placement, sides, limits, drills)
+    placement, limits, back = drawn.placement, drawn.limits, drawn.attitude.back
+    pour, added = _stitched(drawn)
+    vias = (*_placed_vias(placement), *_pour_vias(limits, ((back.point(at), why) for at, why in added)))
     holes = holes_of(placement)
-    legend = draw_legend(
-        placement, limits, drawn.openings, conductors, _all_drills(placement, limits, holes, drills)
-    )
-    drills.keep_off(legend.areas, limits.legend_distance)
-    stitch_rest(placement, pour, sides, limits, drills)
-    pour, added = well_held(pour, drills, count)
-    vias = (*_placed_vias(placement), *_pour_vias(limits, added))
+    openings = [back.shape(opening) for opening in drawn.openings]
+    conductors = [back.conductor(piece) for piece in drawn.conductors]
+    drills = [(via.x, via.y, via.drill) for via in vias] + [(h.x, h.y, h.diameter) for h in holes]
+    legend = draw_legend(placement, limits, openings, conductors, drills)
     shapes = [
         *copper_shapes(conductors),
         *_ground_shapes(placement, limits, vias),
-        *_pour_shapes(limits, pour),
-        *plane_shapes(placement, limits),
-        *drawn.openings,
-        *bottom_openings(placement, limits),
-        *paste_shapes(placement),
+        *(back.shape(shape) for shape in _pour_shapes(limits, pour)),
+        *(back.shape(shape) for shape in plane_shapes(drawn.laid, limits)),
+        *openings,
+        *(back.shape(shape) for shape in bottom_openings(drawn.laid, limits)),
+        *(back.shape(shape) for shape in paste_shapes(drawn.laid)),
         *legend.shapes,
         *profile_shapes(placement),
     ]
@@ -124,21 +135,23 @@ def complete(drawn: Sketch) -> Artwork:
         vias=vias,
         holes=holes,
         labels=tuple(reference_labels(placement)),
-        line_copper=measured_gaps(placement, limits, pour),
+        line_copper=back.line_copper(measured_gaps(drawn.laid, limits, pour)),
         title_anchor=legend.title_anchor,
         notes=(*_cutout_notes(placement, limits, conductors), *legend.notes),
     )
 
 
-def _all_drills(
-    placement: Placement, limits: Limits, holes: Sequence[Hole], drills: Drills
-) -> list[tuple[int, int, int]]:
-    """Return all holes and vias so far, each (x, y, diameter) [nm]."""
-    return [
-        *((hole.x, hole.y, hole.diameter) for hole in holes),
-        *((via.x, via.y, via.drill) for via in placement.vias),
-        *((x, y, limits.via_drill) for x, y in drills.added),
-    ]
+def _stitched(drawn: Sketch) -> tuple[list[shapely.Polygon], list[tuple[Point, str]]]:
+    """Return the pieces of pour that vias hold, and these vias with their purposes."""
+    laid, limits, pour = drawn.laid, drawn.limits, drawn.pour
+    placed = [(via.x, via.y, via.drill) for via in laid.vias]
+    symmetries = symmetries_of(drawn.area, placed, (laid.width, laid.height))
+    drills = Drills(drawn.area, limits, placed, symmetries)
+    sides = fence(laid, pour, drawn.conductors, limits, drills)
+    count = len(drills.added)
+    stitch_cutouts(laid, sides, limits, drills)
+    stitch_rest(laid, pour, sides, limits, drills)
+    return well_held(pour, drills, count)
 
 
 def _placed_vias(placement: Placement) -> Iterator[Via]:

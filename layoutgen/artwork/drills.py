@@ -2,23 +2,27 @@
 
 from __future__ import annotations
 
+import itertools
 import math
-from collections.abc import Iterable, Sequence
+from collections.abc import Collection, Iterable, Sequence
 
 import numpy as np
 import shapely
 from numpy.typing import NDArray
 from shapely.geometry.base import BaseGeometry
 
+from layoutgen.artwork.attitude import Attitude
 from layoutgen.artwork.board import board_area, cutouts_of
 from layoutgen.artwork.conductors import Conductor
 from layoutgen.artwork.limits import Limits
 from layoutgen.geometry import Point, Ring, circumscribed, cut, grow, joined, overlap
 from layoutgen.placement import Placement
 
-__all__ = ["Drills", "legal_area"]
+__all__ = ["Drills", "legal_area", "symmetries_of"]
 
 _ROUNDING_NM = 1
+_ONTO_AXIS_NM = 100_000  # apart: a via and its image are then one
+_ALIKE_NM = 1.0  # by which outlines may differ in the mean
 
 
 def legal_area(
@@ -52,6 +56,28 @@ def legal_area(
     return cut(inner, joined(forbidden))
 
 
+def symmetries_of(
+    area: BaseGeometry, placed: Collection[tuple[int, int, int]], size: tuple[int, int]
+) -> tuple[Attitude, ...]:
+    """Return the movements, rest left out, of a board's pour and its placed vias onto themselves.
+
+    Args:
+        area: Where axes of pour vias may stand [nm].
+        placed: The vias that are there, each (x, y, drill) [nm].
+        size: The board's width and height [nm].
+    """
+    movements = (Attitude(*size, quarters, mirrored) for quarters in (0, 2) for mirrored in (True, False))
+    return tuple(by for by in movements if not by.is_rest and _is_own_image(area, placed, by))
+
+
+def _is_own_image(area: BaseGeometry, placed: Collection[tuple[int, int, int]], by: Attitude) -> bool:
+    """True when pour and vias come to lie on themselves, to the roundings of booleans."""
+    if area.is_empty or {(*by.point((x, y)), drill) for x, y, drill in placed} != set(placed):
+        return False
+    apart = shapely.symmetric_difference(area, by.geometry(area))
+    return bool(apart.area <= _ALIKE_NM * area.length)
+
+
 class Drills:
     """All vias set so far: answers what may stand where, and what stands near a point.
 
@@ -59,8 +85,22 @@ class Drills:
     squares about its place, so the time grows with the number of vias only.
     """
 
-    def __init__(self, area: BaseGeometry, limits: Limits, placed: Iterable[tuple[int, int, int]]) -> None:
-        """Start with the vias that came with the placement, each (x, y, drill) [nm]."""
+    def __init__(
+        self,
+        area: BaseGeometry,
+        limits: Limits,
+        placed: Iterable[tuple[int, int, int]],
+        symmetries: tuple[Attitude, ...] = (),
+    ) -> None:
+        """Start with the vias that came with the placement.
+
+        Args:
+            area: Where axes may stand [nm].
+            limits: Sizes and distances.
+            placed: The vias that are there, each (x, y, drill) [nm].
+            symmetries: Movements of the board onto itself: a via is set with its images.
+        """
+        self._symmetries = symmetries
         self.area = area
         shapely.prepare(area)
         self._limits = limits
@@ -73,12 +113,6 @@ class Drills:
         self.added: list[Point] = []
         for x, y, drill in placed:
             self._enter(x, y, drill)
-
-    def keep_off(self, areas: Iterable[BaseGeometry], distance: int) -> None:
-        """Let no later via come nearer to any of the areas [nm] than a distance [nm], from its wall."""
-        away = distance + math.ceil(self._drill / 2)
-        self.area = cut(self.area, joined(grow(area, away) for area in areas))
-        shapely.prepare(self.area)
 
     def _enter(self, x: int, y: int, drill: int) -> None:
         """Write a via into its square."""
@@ -112,29 +146,56 @@ class Drills:
                 return False
         return True
 
-    def move(self, old: Point, x: float, y: float, reach: float) -> bool:
-        """Move a via set here to the nearest whole nanometre if it may stand there; tell whether it does.
+    @property
+    def is_symmetric(self) -> bool:
+        """True when vias are set with their images."""
+        return bool(self._symmetries)
 
-        It stays where it was the neighbour of a via within a reach [nm] that it would then be out of.
-        """
-        new = round(x), round(y)
-        square = self._book.get((old[0] // self._square, old[1] // self._square), [])
-        if old not in self.added or not shapely.intersects_xy(self.area, *new):
-            return False
-        near = [(vx, vy) for vx, vy, _ in self.near(*old, reach)]
-        square.remove((*old, self._drill))
-        if not self.free(*new) or any(math.dist(new, via) > reach for via in near if via != old):
-            self._enter(*old, self._drill)
-            return False
-        self._enter(*new, self._drill)
-        self.added[self.added.index(old)] = new
-        return True
+    @property
+    def apart(self) -> int:
+        """The least distance of the axes of two vias that are set here [nm]."""
+        return max(self._limits.via_pitch, self._drill + self._limits.hole_web)
+
+    def take(self, vias: Iterable[Point]) -> list[Point]:
+        """Take vias away that were set here [nm], and their images; return all that were taken."""
+        taken = [
+            via
+            for via in dict.fromkeys(both for at in vias for both in self._images(at))
+            if via in self.added
+        ]
+        for x, y in taken:
+            self.added.remove((x, y))
+            self._book[x // self._square, y // self._square].remove((x, y, self._drill))
+        return taken
+
+    def give(self, vias: Iterable[Point]) -> None:
+        """Set vias back that were taken away [nm]."""
+        for x, y in vias:
+            self._enter(x, y, self._drill)
+            self.added.append((x, y))
 
     def put(self, x: float, y: float) -> bool:
-        """Set a via at the nearest whole nanometre if it may stand there; tell whether it does."""
-        px, py = round(x), round(y)
-        if not shapely.intersects_xy(self.area, px, py) or not self.free(px, py):
+        """Set a via at the nearest whole nanometre if it may stand there; tell whether it does.
+
+        On a symmetric board its images are set as well, where all may stand; near an axis it goes onto it.
+        """
+        images = self._images(self._onto_axes((round(x), round(y))))
+        legal = self.legal(*np.array(images, dtype=np.float64).T)
+        if not legal.all() or not all(self.free(*image) for image in images):
             return False
-        self._enter(px, py, self._drill)
-        self.added.append((px, py))
+        if any(math.dist(a, b) < self.apart for a, b in itertools.combinations(images, 2)):
+            return False
+        self.give(images)
         return True
+
+    def _images(self, at: Point) -> list[Point]:
+        """Return a place and its images on a symmetric board, each once."""
+        return list(dict.fromkeys([at, *(by.point(at) for by in self._symmetries)]))
+
+    def _onto_axes(self, at: Point) -> Point:
+        """Return a place moved onto the axes and middles of symmetry that it lies near."""
+        for by in self._symmetries:
+            x, y = by.point(at)
+            if math.dist(at, (x, y)) <= _ONTO_AXIS_NM:
+                at = (at[0] + x) // 2, (at[1] + y) // 2
+        return at

@@ -54,10 +54,9 @@ Geometries = NDArray[np.object_]
 
 @dataclass(frozen=True, slots=True, kw_only=True)
 class Legend:
-    """What was printed: outlines, the areas of the texts [nm], the title's anchor, what was left out."""
+    """What was printed: outlines, the title's anchor [nm], what was left out."""
 
     shapes: tuple[Shape, ...]
-    areas: tuple[shapely.Polygon, ...]
     title_anchor: Point
     notes: tuple[tuple[str, str, str], ...]
 
@@ -106,7 +105,6 @@ def draw_legend(
     anchor = printer.print_title()
     return Legend(
         shapes=tuple(printer.shapes),
-        areas=tuple(printer.areas),
         title_anchor=anchor,
         notes=tuple(printer.notes),
     )
@@ -141,7 +139,6 @@ class _Printer:
         self._pen = limits.legend_line
         self._homes = [_part_box(part) for part in placement.parts.values()]
         self.shapes: list[Shape] = []
-        self.areas: list[shapely.Polygon] = []
         self._taken: list[tuple[float, ...]] = []  # boxes of texts, and what each keeps clear about it [nm]
         self.notes: list[tuple[str, str, str]] = []
 
@@ -274,7 +271,6 @@ class _Printer:
             self.shapes.append(
                 Shape(layer="legend_top", outline=outline, holes=holes, role="legend", origin=origin)
             )
-        self.areas.append(shapely.box(*spot.box))
         self._taken.append((*spot.box, _APART * spot.height))
 
 

@@ -18,13 +18,12 @@ from numpy.typing import NDArray
 from shapely.geometry.base import BaseGeometry
 
 from layoutgen.artwork.drills import Drills
-from layoutgen.geometry import Point, grow, pieces, rings_of
+from layoutgen.geometry import grow, pieces, rings_of
 
-__all__ = ["Facing", "Side", "close_rows", "set_rows", "sides_of"]
+__all__ = ["Facing", "Side", "all_stretches", "set_rows", "sides_of", "whole_sides"]
 
 _SAMPLE_NM = 100_000
 _STEP_NM = 50_000
-_FINE_NM = 10_000
 _ROUNDING_NM = 2.0
 _CORNER_DEG = 40.0
 _ASIDE = 0.05
@@ -67,11 +66,15 @@ class Side:
 
 @dataclass(frozen=True, slots=True)
 class Facing:
-    """What rows are asked for: targets to be faced, within which distance of the edge, and the pitch [nm]."""
+    """What rows are asked for: targets to be faced, within which distance of the edge, and the pitch [nm].
+
+    No row is asked for inside what is ``spared``.
+    """
 
     targets: Sequence[BaseGeometry]
     distance: int
     pitch: int
+    spared: BaseGeometry | None = None
 
 
 def sides_of(pour: Iterable[shapely.Polygon], inset: int) -> list[Side]:
@@ -83,6 +86,13 @@ def sides_of(pour: Iterable[shapely.Polygon], inset: int) -> list[Side]:
             for ring in (outline, *holes):
                 out.extend(_split(np.array(ring.points, dtype=np.float64), inset))
     return out
+
+
+def whole_sides(pour: Iterable[shapely.Polygon], inset: int) -> list[Side]:
+    """Return all rows as :func:`sides_of` does, but run on around corners."""
+    cores = [core for piece in pour for core in pieces(grow(piece, -inset))]
+    rings = [ring for core in cores for outline, holes in [rings_of(core)] for ring in (outline, *holes)]
+    return [_sampled(np.array([*ring.points, ring.points[0]], dtype=np.float64), inset) for ring in rings]
 
 
 def _split(points: Floats, inset: int) -> Iterator[Side]:
@@ -115,7 +125,7 @@ def _sampled(vertices: Floats, inset: int) -> Side:
 
 
 def set_rows(sides: Sequence[Side], facing: Facing, drills: Drills, reach: int) -> None:
-    """Set the vias of all rows that face the targets.
+    """Set the vias of all rows that face the targets; where rows meet, the longer one has its corners first.
 
     Args:
         sides: Rows to choose from.
@@ -123,7 +133,7 @@ def set_rows(sides: Sequence[Side], facing: Facing, drills: Drills, reach: int) 
         drills: The book that vias are written into.
         reach: Largest distance of an axis from the pour's edge [nm] at which it counts for the row.
     """
-    stretches = _all_stretches(sides, facing)
+    stretches = sorted(all_stretches(sides, facing), key=lambda stretch: stretch[1] - stretch[2])
     for side, a, b in stretches:
         for t in (a, b):
             if not drills.near(*side.at(t), facing.pitch / 2.0):
@@ -132,36 +142,7 @@ def set_rows(sides: Sequence[Side], facing: Facing, drills: Drills, reach: int) 
         _fill(side, a, b, facing.pitch, drills, reach)
 
 
-def close_rows(sides: Sequence[Side], facing: Facing, drills: Drills, reach: int) -> None:
-    """Draw vias of rows together where the next one is farther off than the pitch and none fits between them.
-
-    Args:
-        sides: Rows, set.
-        facing: What they face, and the pitch.
-        drills: The book of vias; those set in it may move along their rows, others stay.
-        reach: As for :func:`set_rows`.
-    """
-    for side, a, b in _all_stretches(sides, facing):
-        for before, after in itertools.pairwise(_members(side, a, b, facing.pitch, drills, reach)):
-            missing = before.gap_to(after) - facing.pitch
-            if _ROUNDING_NM < missing <= facing.pitch:
-                missing -= _moved_on(side, before, missing, facing.pitch, drills)
-                _moved_on(side, after, -missing, facing.pitch, drills)
-
-
-def _moved_on(side: Side, member: _Member, by: float, pitch: int, drills: Drills) -> float:
-    """Move a via along its row, back where negative, as much of a way [nm] as it may; return how much."""
-    if member.at is None:
-        return 0.0
-    for k in range(math.ceil(abs(by) / _FINE_NM), 0, -1):
-        step = math.copysign(min(k * _FINE_NM, abs(by)), by)
-        (x0, y0), (x1, y1) = side.at(member.along), side.at(member.along + step)
-        if drills.move(member.at, member.at[0] + x1 - x0, member.at[1] + y1 - y0, pitch):
-            return math.hypot(x1 - x0, y1 - y0)
-    return 0.0
-
-
-def _all_stretches(sides: Sequence[Side], facing: Facing) -> list[tuple[Side, float, float]]:
+def all_stretches(sides: Sequence[Side], facing: Facing) -> list[tuple[Side, float, float]]:
     """Return the stretches of all rows that face something: the side, start and end along it [nm]."""
     return [
         (side, a, b)
@@ -187,6 +168,8 @@ def _faced(sides: Sequence[Side], facing: Facing) -> list[Bools]:
     seen = np.zeros(len(edge), dtype=bool)
     looks = np.sum(ahead * outward[spot], axis=1) > _ASIDE * np.hypot(ahead[:, 0], ahead[:, 1])
     seen[spot[looks]] = True
+    if facing.spared is not None:
+        seen &= ~shapely.intersects(facing.spared, spots)
     return np.split(seen, np.cumsum([len(side.points) for side in sides])[:-1])
 
 
@@ -217,17 +200,19 @@ def _put_near(
 class _Member:
     """A via by a row: arc length, distance from the row; an end of a stretch: the way on to the nearest via.
 
-    All [nm]; ``across`` is positive towards the pour's edge; ``at`` is the via's axis, None for an end.
+    All [nm]; ``across`` is positive towards the pour's edge; ``spot`` is the axis of the via.
     """
 
     along: float
     across: float = 0.0
     beyond: float = 0.0
-    at: Point | None = field(default=None, compare=False)
+    spot: tuple[float, float] = field(default=(0.0, 0.0), compare=False)
 
     def gap_to(self, other: _Member) -> float:
-        """Return the distance [nm] to a later member."""
-        return math.hypot(self.beyond + other.along - self.along + other.beyond, other.across - self.across)
+        """Return the distance [nm] to a later member: around a corner the straight one."""
+        if self.beyond or other.beyond:
+            return math.dist(self.spot, other.spot)
+        return math.hypot(other.along - self.along, other.across - self.across)
 
     @property
     def aside(self) -> float:
@@ -240,7 +225,7 @@ def _members(side: Side, a: float, b: float, pitch: int, drills: Drills, reach: 
 
     An end counts as an axis unless a via stands near it about the corner.
     """
-    marks = {_Member(t, beyond=_nearest(side.at(t), drills, pitch / 2.0)) for t in (a, b)}
+    marks = {_end(side, t, drills, pitch / 2.0) for t in (a, b)}
     middle = (side.along >= a) & (side.along <= b)
     for x, y, _ in _vias_about(side.points[middle], drills, reach):
         offsets = np.array([x, y]) - side.points
@@ -248,14 +233,16 @@ def _members(side: Side, a: float, b: float, pitch: int, drills: Drills, reach: 
         (dx, dy), (nx, ny) = offsets[nearest].tolist(), side.outward[nearest].tolist()
         along, across = float(side.along[nearest]) - dx * ny + dy * nx, dx * nx + dy * ny
         if 0.0 < side.inset - across <= reach and a <= along <= b:
-            marks.add(_Member(along, across, at=(x, y)))
+            marks.add(_Member(along, across, spot=(x, y)))
     return sorted(marks)
 
 
-def _nearest(point: tuple[float, float], drills: Drills, reach: float) -> float:
-    """Return the way [nm] to the nearest via within reach of a point, round a corner, or 0."""
-    about = drills.near(*point, reach)
-    return min((abs(x - point[0]) + abs(y - point[1]) for x, y, _ in about), default=0.0)
+def _end(side: Side, t: float, drills: Drills, reach: float) -> _Member:
+    """Return the end of a stretch: an axis itself, or the via within reach [nm] of it, round a corner."""
+    x, y = side.at(t)
+    about = [(abs(vx - x) + abs(vy - y), (vx, vy)) for vx, vy, _ in drills.near(x, y, reach)]
+    beyond, spot = min(about, default=(0.0, (x, y)))
+    return _Member(t, beyond=float(beyond), spot=spot)
 
 
 def _vias_about(points: Floats, drills: Drills, reach: int) -> list[tuple[int, int, int]]:
@@ -272,14 +259,31 @@ def _fill(side: Side, a: float, b: float, pitch: int, drills: Drills, reach: int
 
     Where no via may stand at its place, the nearest one within the pitch is taken and the rest divided anew.
     """
-    for before, after in itertools.pairwise(_members(side, a, b, pitch, drills, reach)):
-        if before.gap_to(after) <= pitch + _ROUNDING_NM:
-            continue
-        last, end = before.along - before.aside, after.along + after.aside
-        while end - last > pitch + _ROUNDING_NM:
-            steps = math.ceil((end - last - _ROUNDING_NM) / pitch)
-            wish, farthest = last + (end - last) / steps, min(b, last + pitch)
-            placed = _put_near(side, wish, (max(a, last), farthest), float(pitch), drills)
-            if placed is None:
-                placed = _put_near(side, farthest, (farthest, min(b, end)), end - farthest, drills)
-            last = end if placed is None else placed
+    tried: set[tuple[float, float]] = set()
+    while True:
+        members = itertools.pairwise(_members(side, a, b, pitch, drills, reach))
+        wide = ((m, n) for m, n in members if m.gap_to(n) > pitch + _ROUNDING_NM)
+        gap = next((gap for gap in wide if (gap[0].along, gap[1].along) not in tried), None)
+        if gap is None:
+            return
+        tried.add((gap[0].along, gap[1].along))
+        _divide(side, (a, b), gap, pitch, drills)
+
+
+def _divide(
+    side: Side, bounds: tuple[float, float], gap: tuple[_Member, _Member], pitch: int, drills: Drills
+) -> None:
+    """Set vias between two members of a row, each at an even share of what is left.
+
+    On a symmetric board the images of vias may stand in the same row: then the rest is looked at anew.
+    """
+    last, end = gap[0].along - gap[0].aside, gap[1].along + gap[1].aside
+    while end - last > pitch + _ROUNDING_NM:
+        steps = math.ceil((end - last - _ROUNDING_NM) / pitch)
+        wish, farthest = last + (end - last) / steps, min(bounds[1], last + pitch)
+        placed = _put_near(side, wish, (max(bounds[0], last), farthest), float(pitch), drills)
+        if placed is None:
+            placed = _put_near(side, farthest, (farthest, min(bounds[1], end)), end - farthest, drills)
+        if placed is None or drills.is_symmetric:
+            return
+        last = placed

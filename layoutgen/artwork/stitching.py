@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import replace
 
 import numpy as np
 import shapely
@@ -12,8 +13,9 @@ from layoutgen.artwork.board import GND, board_area, cutouts_of
 from layoutgen.artwork.conductors import Conductor
 from layoutgen.artwork.drills import Drills
 from layoutgen.artwork.limits import Limits
-from layoutgen.artwork.rows import Facing, Side, close_rows, set_rows, sides_of
-from layoutgen.geometry import Point, cut, grow, pieces
+from layoutgen.artwork.mending import close_rows
+from layoutgen.artwork.rows import Facing, Side, set_rows, sides_of, whole_sides
+from layoutgen.geometry import Point, cut, grow, joined, pieces
 from layoutgen.placement import Placement
 
 __all__ = ["fence", "stitch_cutouts", "stitch_rest", "stitchable", "well_held"]
@@ -22,6 +24,7 @@ _LEAST_VIAS = 2
 _GRID_CLEAR = 0.6
 _LEAST_NECK = 1e10  # [nm^2]: smaller ones are corners
 _NECK_ROUNDING = 1_000  # [nm]
+_PART_CLEAR_NM = 300_000  # no row is asked for nearer to the outline of a part [nm]
 _RIM_NM = 1_000  # rows as good as on the pour's edge, which run on where it is too narrow for vias [nm]
 
 
@@ -54,7 +57,11 @@ def _room_for(area: BaseGeometry, pitch: int) -> int:
 
 
 def fence(
-    pour: Sequence[shapely.Polygon], conductors: Sequence[Conductor], limits: Limits, drills: Drills
+    placement: Placement,
+    pour: Sequence[shapely.Polygon],
+    conductors: Sequence[Conductor],
+    limits: Limits,
+    drills: Drills,
 ) -> list[Side]:
     """Set the fence: rows beside all lines, pairs and radial stubs. Return the rows of all pour edges."""
     sides = sides_of(pour, limits.row)
@@ -64,7 +71,9 @@ def fence(
         facing = Facing([c.copper for c in guarded], 2 * widest, limits.fence_pitch)
         set_rows(sides, facing, drills, limits.fence_reach)
         set_rows(_through_necks(pour, limits, drills), facing, drills, limits.fence_reach)
-        close_rows(sides_of(pour, _RIM_NM), facing, drills, limits.fence_reach)
+        spared = joined(grow(p.outline.polygon(), _PART_CLEAR_NM) for p in placement.parts.values())
+        asked = replace(facing, spared=spared)
+        close_rows(whole_sides(pour, _RIM_NM), asked, drills, limits.fence_reach)
     return sides
 
 

@@ -222,3 +222,33 @@ def test_fence_goes_on_through_a_neck_of_pour(boards: ModuleType) -> None:
     above = sorted((v.x, v.y) for v in artwork.vias if v.y > 11_500_000 and 8_000_000 < v.x < 16_000_000)
     assert len(above) >= 5
     assert max(math.dist(a, b) for a, b in itertools.pairwise(above)) <= 2_000_000
+
+
+def _row_beside_vias(boards: ModuleType, x0: float, depth: float) -> float:
+    """Return the widest step [nm] of a fence row where three vias of a part stand behind it."""
+    board = boards.BoardBuilder(24.0, 14.0)
+    board.rules = {"vias": {"min_pitch": "1.1 mm"}, "fence": {"max_pitch": "1.6 mm"}}
+    board.line("main", [(0.3, 5.0), (23.7, 5.0)], 1.08, ("a", "b"), gap=1.13)
+    edge = 5.0 + 0.54 + 1.13
+    for k in range(3):
+        board.via(x0 + 1.1 * k, edge + depth)
+    artwork = draw(board.placement())
+    row = sorted(via.x for via in artwork.vias if 0 < via.y - edge * 1e6 <= 800_000)
+    return max(b - a for a, b in itertools.pairwise(row))
+
+
+@pytest.mark.parametrize("x0", [9.0, 9.6, 9.9, 10.2])
+def test_a_fence_row_finds_the_places_that_close_it(boards: ModuleType, x0: float) -> None:
+    """Would catch a row that gives up where vias set earlier take the places that later ones need."""
+    assert _row_beside_vias(boards, x0, 1.3) <= 1_600_000
+
+
+@pytest.mark.parametrize("x0", [9.0, 9.6, 10.5])
+def test_a_gap_that_nothing_closes_is_as_narrow_as_it_can_be(boards: ModuleType, x0: float) -> None:
+    """Would catch a row that leaves more open than the vias behind it force it to.
+
+    They stand 0.9 mm behind the nearest that a via of the row may come to the edge, so that the next ones
+    stand sqrt(1.1^2 - 0.9^2) mm before the first of them, and after the last.
+    """
+    least = 2_200_000 + 2.0 * math.sqrt(1.1**2 - 0.9**2) * 1e6
+    assert least <= _row_beside_vias(boards, x0, 1.2) <= least + 40_000

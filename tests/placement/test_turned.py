@@ -178,6 +178,18 @@ COPPER_MOVES: dict[str, tuple[Callable[[dict[str, Any]], dict[str, Any]], Move]]
 }
 
 
+@pytest.mark.parametrize("name", ["through", "amplifier"])
+def test_vias_move_with_the_hints(name: str) -> None:
+    """Catches rows and grids of vias that begin at the board's west or south end, however it lies."""
+    change, move = COPPER_MOVES["quarter"]
+    plain, other = draw(placed(DESIGNS[name])), draw(placed(change(DESIGNS[name])))
+    axes = []
+    for artwork in (plain, other):
+        w, h = artwork.placement.width, artwork.placement.height
+        axes.append([(2 * via.x - w, 2 * via.y - h, via.purpose) for via in artwork.vias])
+    assert sorted((*move(x, y), purpose) for x, y, purpose in axes[0]) == sorted(axes[1])
+
+
 @pytest.mark.parametrize("how", COPPER_MOVES)
 def test_copper_and_pour_move_with_the_hints(how: str) -> None:
     """Catches a pour that is cleaned otherwise in one direction than in another, or copper off by a bit."""
