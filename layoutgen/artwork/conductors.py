@@ -99,26 +99,35 @@ class _Room:
         self.port_ends = {(port.x, port.y) for port in placement.ports.values()}
         self.coplanar = _coplanar_gaps(placement, limits)
 
-    def trimmed(self, ring: Ring, nets: Sequence[str]) -> tuple[BaseGeometry, tuple[Ring, ...]]:
-        """Return finished copper and its outlines, cut back from cut-outs and the profile."""
+    def trimmed(
+        self, ring: Ring, nets: Sequence[str], pair: str = ""
+    ) -> tuple[BaseGeometry, tuple[Ring, ...]]:
+        """Return finished copper and its outlines, cut back from cut-outs, the profile and strips of pairs.
+
+        Args:
+            ring: The outline.
+            nets: What the copper carries at its ends.
+            pair: The coupled pair that it is a strip of, if of one.
+        """
         whole = _valid(ring)
         limit = self.board if self.to_edge.intersection(nets) else self.inset
-        off = joined([*pieces(self.cutouts), *self._other_strips(nets)])
+        off = joined([*pieces(self.cutouts), *self._other_strips(set(nets) - {OPEN}, pair)])
         if ring.polygon().is_valid and limit.covers(whole) and off.disjoint(whole):
             return whole, (ring,)
         left = cut(overlap(whole, limit), off)
         return left, tuple(rings_of(piece)[0] for piece in pieces(left))
 
-    def _other_strips(self, nets: Sequence[str]) -> Iterator[BaseGeometry]:
+    def _other_strips(self, nets: set[str], pair: str) -> Iterator[BaseGeometry]:
         """Yield what copper that meets one strip of a coupled pair must keep off: the other one, and a gap.
 
-        A line wider than the strip it feeds is notched there, at its end, by less than that gap's length.
+        A line or another pair's strip, wider than the strip it feeds, is notched there, at its end, by less
+        than that gap's length. A pair's own strips lie as far apart as its gap says, whatever the rules.
         """
-        for pair in self.placement.pairs.values():
-            own = [set(nets).intersection(pair.nets[2 * i : 2 * i + 2]) for i in (0, 1)]
+        for other in self.placement.pairs.values():
+            own = [nets.intersection(other.nets[2 * i : 2 * i + 2]) for i in (0, 1)]
             for i in (0, 1):
-                if own[1 - i] and not own[i]:
-                    yield grow(stroke(pair.paths[i], pair.width).polygon(), self.limits.min_gap)
+                if other.name != pair and own[1 - i] and not own[i]:
+                    yield grow(stroke(other.paths[i], other.width).polygon(), self.limits.min_gap)
 
     def drawn(self, rings: Sequence[Ring]) -> tuple[Ring, ...]:
         """Return the artwork of finished outlines, grown by the undercut: at the profile past it, too.
@@ -198,7 +207,7 @@ def _pair(pair: PlacedPair, room: _Room) -> Iterator[Conductor]:
     gap = _gap(room.placement.sized.pairs[pair.name].pour_gap, room.limits)
     for i, path in enumerate(pair.paths):
         nets = pair.nets[2 * i : 2 * i + 2]
-        copper, rings = room.trimmed(stroke(path, pair.width), nets)
+        copper, rings = room.trimmed(stroke(path, pair.width), nets, pair.name)
         keepout = _around(path, pair.width, (nets[0], nets[1]), gap, room)
         if i == 0:
             keepout = joined([keepout, _slot(pair)])
