@@ -40,9 +40,16 @@ class Banks:
         on = self._beyond_axis(hub.bank[-1], width, [0, *(self._half(arm.end, width) for arm in hub.arms)])
         self.kit.strip(growth, hub.net, width, (ahead(at, -back).point, ahead(exit_pose, on).point))
         for arm in hub.arms:
-            turns = (0.0, side, -side) if arm.turn is None else (arm.turn, -side)
+            turns: tuple[float, ...] = (0.0, side, -side) if arm.turn is None else (arm.turn, -side)
             offset = width // 2 - OVERLAP if arm.end.kind is EndKind.PAD else 0
+            if offset and arm.turn == 0.0 and len(hub.arms) == 1 and before is not None:
+                turns, offset = (0.0,), max(offset, before + _SPACE + self._courtyard_beyond(arm.end))
             growth.pending.append(Pending(arm.end, exit_pose, turns, max(0, offset)))
+
+    def _courtyard_beyond(self, end: End) -> int:
+        """Return how far a part's courtyard reaches beyond the pad at one of its ends [nm]."""
+        body = self.kit.model.bodies[end.element]
+        return beyond(body, body.land_at(end))
 
     def _half(self, end: End, width: int) -> int:
         """Return half the width [nm] of what goes on straight from the end of a bank's strip."""

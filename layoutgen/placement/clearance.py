@@ -26,7 +26,7 @@ _ROUNDING = 2  # [nm]: edges of odd widths are rounded to the grid
 
 
 class Kind(IntEnum):
-    """What an obstacle is, as far as distances go."""
+    """What an obstacle is, as far as distances go; a lead is a strip that turns away at a part's pad."""
 
     LINE = 0
     SUPPLY = 1
@@ -36,6 +36,7 @@ class Kind(IntEnum):
     BODY = 5
     CUTOUT = 6
     HOLE = 7
+    LEAD = 8
 
 
 class Obstacle(NamedTuple):
@@ -68,7 +69,7 @@ class Obstacle(NamedTuple):
 
 
 def clearance_table(limits: Limits, pour_gap: int) -> Ints:
-    """Return the least distance [nm] between kinds (8, 8), symmetric.
+    """Return the least distance [nm] between kinds (9, 9), symmetric.
 
     Lines keep the spacing rule from lines and strips, and the pour's distance from other parts' ground and
     pads; courtyards may touch; the rest keeps what etching and soldering need (common practice, no source:
@@ -96,11 +97,18 @@ def clearance_table(limits: Limits, pour_gap: int) -> Ints:
         (Kind.STRIP, Kind.GROUND): small,
         (Kind.STRIP, Kind.BODY): small,
         (Kind.GROUND, Kind.GROUND): via,
+        (Kind.LINE, Kind.LEAD): height,
+        (Kind.SUPPLY, Kind.LEAD): height,
+        (Kind.PAD, Kind.LEAD): small,
+        (Kind.STRIP, Kind.LEAD): height,
+        (Kind.GROUND, Kind.LEAD): small,
+        (Kind.BODY, Kind.LEAD): small,
+        (Kind.LEAD, Kind.LEAD): small,
     }
     table = np.zeros((len(Kind), len(Kind)), dtype=np.int64)
     for (a, b), value in rows.items():
         table[a, b] = table[b, a] = value + _ROUNDING if value else 0
-    for kind in (Kind.LINE, Kind.SUPPLY, Kind.PAD, Kind.STRIP, Kind.GROUND):
+    for kind in (Kind.LINE, Kind.SUPPLY, Kind.PAD, Kind.STRIP, Kind.GROUND, Kind.LEAD):
         table[kind, Kind.CUTOUT] = table[Kind.CUTOUT, kind] = limits.edge
         table[kind, Kind.HOLE] = table[Kind.HOLE, kind] = max(limits.hole, limits.edge)
     return table
@@ -119,6 +127,7 @@ def edge_margins(limits: Limits, pour_gap: int, ground_ring: int, *, tight: bool
         Kind.SUPPLY: limits.margin + (0 if tight else ring),
         Kind.PAD: limits.margin + (0 if tight else ring),
         Kind.STRIP: limits.margin + (0 if tight else ring),
+        Kind.LEAD: limits.margin + (0 if tight else ring),
         Kind.GROUND: max(limits.margin, limits.hole_edge - (limits.land - limits.drill) // 2),
         Kind.BODY: limits.margin,
         Kind.CUTOUT: limits.margin + max(ring, limits.margin),

@@ -8,6 +8,7 @@ may be longer or shorter than asked at a price, names the line that stands in th
 from __future__ import annotations
 
 import itertools
+import math
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 
@@ -17,15 +18,16 @@ import numpy.typing as npt
 from layoutgen.geometry import Point
 from layoutgen.placement.drawings import Drawing, Scheme
 from layoutgen.placement.frame import unit
-from layoutgen.placement.words import headings_of
+from layoutgen.placement.words import headings_of, is_bow
 
-__all__ = ["Bar", "Shape", "Strain", "solve_closure", "strain"]
+__all__ = ["Apart", "Bar", "Shape", "Strain", "solve_closure", "strain", "surplus"]
 
 Floats = npt.NDArray[np.float64]
 
 _MM = 1e6
 _SPREAD = 0.02  # what the least surplus of a leg counts against the size of the box
 _PLAY = 10.0  # what a strip beside a part counts
+_FREE = 0.1  # what the length of a free line counts
 _STRAIN = 1e3  # what a wrong length counts
 _PART_STRAIN = 5e3  # what a wrong part counts: lines are more easily changed
 
@@ -34,13 +36,25 @@ _PART_STRAIN = 5e3  # what a wrong part counts: lines are more easily changed
 class Bar:
     """What a drawing asks of one piece [nm]: a line's length and least legs, or a part's fixed vector.
 
-    ``play`` is by how much a part's nodes may lie farther apart, a strip filling the rest.
+    ``play`` is by how much a part's nodes may lie farther apart, a strip filling the rest; a ``free`` line is
+    as long as its legs.
     """
 
     length: int = 0
     least: tuple[int, ...] = ()
     vector: tuple[int, int] | None = None
     play: int = 0
+    free: bool = False
+
+
+@dataclass(frozen=True, slots=True)
+class Apart:
+    """Two hubs of which one lies at least so far [nm] beyond the other along an axis (0 east, 1 north)."""
+
+    axis: int
+    low: int
+    high: int
+    least: int
 
 
 @dataclass(frozen=True, slots=True)
@@ -86,12 +100,22 @@ class _Program:
         self.below: list[tuple[dict[int, float], float]] = []
 
     def build(self, mirror: Iterable[tuple[int, int]]) -> None:
-        """Fill the rows in; ``mirror`` are pairs of variables' numbers (see :meth:`leg`) to be equal."""
+        """Fill the rows in; ``mirror`` are pairs of variables' numbers (see :meth:`leg`) to be equal.
+
+        A bow lies in the middle of its line.
+        """
         for k in range(len(self.bars)):
             self._piece(k)
-        for a, b in mirror:
+        bows = [k for k, word in enumerate(self.drawing.words) if is_bow(word)]
+        even = ((self.leg(k, i), self.leg(k, 4 - i)) for k in bows for i in (0, 1))
+        for a, b in (*mirror, *even):
             if a != b:
                 self.equal.append(({a: 1.0, b: -1.0}, 0.0))
+
+    def keep_apart(self, item: Apart) -> None:
+        """Keep two hubs apart along an axis."""
+        first = item.axis * len(self.scheme.outer)
+        self.below.append(({first + item.low: 1.0, first + item.high: -1.0}, -item.least / _MM))
 
     def leg(self, piece: int, index: int) -> int:
         """Return the number of a leg's variable."""
@@ -116,7 +140,7 @@ class _Program:
                 bend = {axis * hubs + piece.a: 1.0}
                 bend |= {self.leg(k, j): directions[j][axis] for j in range(i)}
                 self._inside(axis, bend)
-        if bar.least:
+        if bar.least and not bar.free:
             total = {self.leg(k, i): 1.0 for i in range(len(bar.least))} | {plus: -1.0, minus: 1.0}
             self.equal.append((total, bar.length / _MM))
         for i, least in enumerate(bar.least[: len(bar.least) if len(bar.least) > 1 else 0]):
@@ -128,10 +152,13 @@ class _Program:
         self.below.append(({low: 1.0, **{v: -c for v, c in point.items()}}, 0.0))
         self.below.append(({**point, high: -1.0}, 0.0))
 
-    def solve(self, aim: tuple[float, float], most: float | None) -> Floats | None:
+    def solve(
+        self, aim: tuple[float, float], most: float | None, spare: Sequence[float] = ()
+    ) -> Floats | None:
         """Return the solution [mm] that is best by width and height times ``aim``.
 
-        ``most`` is the greatest change of any length [mm], None for any change.
+        ``most`` is the greatest change of any length [mm], None for any change; ``spare`` is, by piece, by
+        how much it may reach less far than it is long [mm].
         """
         from scipy.optimize import linprog  # slow to import, and few circuits have loops
 
@@ -146,10 +173,13 @@ class _Program:
         bounds[0] = bounds[len(self.scheme.outer)] = (0.0, 0.0)
         for k, bar in enumerate(self.bars):
             for i, least in enumerate(bar.least):
+                cost[self.leg(k, i)] = _FREE if bar.free else 0.0
                 bounds[self.leg(k, i)] = (least / _MM, None)
         bounds[self.spread_at] = (0.0, 1e3)
         for v in range(self.strain_at, self.size):
             bounds[v] = (0.0, most)
+        for k, more in enumerate(spare):
+            bounds[self.strain_at + 2 * k + 1] = (0.0, max(more, most or 0.0))
         for k, bar in enumerate(self.bars):
             if bar.play and most is not None:
                 cost[self.strain_at + 2 * k] = _PLAY
@@ -175,6 +205,7 @@ def solve_closure(
     aim: tuple[float, float] = (1.0, 1.0),
     mapping: Sequence[tuple[int, bool]] = (),
     slack: float = 0.0,
+    apart: Sequence[Apart] = (),
 ) -> Shape | None:
     """Return hubs and legs of a drawing in whole nanometres, or None where its loops cannot close.
 
@@ -185,17 +216,52 @@ def solve_closure(
         aim: What a millimetre of width and of height of the box costs [-].
         mapping: By piece, the one that is its mirror image and whether it runs the same way; empty for none.
         slack: By how much any length may be off [nm].
+        apart: Hubs that must lie apart.
     """
     program = _Program(scheme, drawing, bars)
+    program.build(_mirrored(program, mapping))
+    for item in apart:
+        program.keep_apart(item)
+    found = program.solve(aim, slack / _MM)
+    return None if found is None else _rounded(program, found)
+
+
+def _mirrored(program: _Program, mapping: Sequence[tuple[int, bool]]) -> list[tuple[int, int]]:
+    """Return the pairs of legs that a mirror image makes equal."""
     mirror = []
     for k, (other, keeps) in enumerate(mapping):
-        count = len(bars[k].least)
+        count = len(program.bars[k].least)
         mirror += [
             (program.leg(k, i), program.leg(other, i if keeps else count - 1 - i)) for i in range(count)
         ]
-    program.build(mirror)
-    found = program.solve(aim, slack / _MM)
-    return None if found is None else _rounded(program, found)
+    return mirror
+
+
+def surplus(
+    scheme: Scheme,
+    drawing: Drawing,
+    bars: Sequence[Bar],
+    spare: Sequence[int],
+    mapping: Sequence[tuple[int, bool]] = (),
+    slack: float = 0.0,
+) -> tuple[float, ...] | None:
+    """Return by how much less far than they are long pieces must reach [nm] for the loops to close, at least.
+
+    Args:
+        scheme: The cluster.
+        drawing: Headings and words.
+        bars: What each piece asks.
+        spare: By piece, the most by which it may reach less far [nm].
+        mapping: As for :func:`solve_closure`.
+        slack: By how much any length may be off [nm].
+
+    Returns:
+        A length for each piece, None where no surplus within ``spare`` closes the loops.
+    """
+    program = _Program(scheme, drawing, bars)
+    program.build(_mirrored(program, mapping))
+    found = program.solve((1.0, 1.0), slack / _MM, [most / _MM for most in spare])
+    return None if found is None else tuple(float(v) * _MM for v in found[program.strain_at + 1 :: 2])
 
 
 def strain(scheme: Scheme, drawing: Drawing, bars: Sequence[Bar]) -> Strain | None:
@@ -227,6 +293,9 @@ def _rounded(program: _Program, found: Floats) -> Shape:
     vertices = list(zip(*grid, strict=True))
     legs = []
     for k, chain in enumerate(chains):
+        if is_bow(program.drawing.words[k]):
+            legs.append(_bowed(program, found, k, math.dist(vertices[chain[0]], vertices[chain[-1]])))
+            continue
         sizes = [
             abs(vertices[b][0] - vertices[a][0]) + abs(vertices[b][1] - vertices[a][1])
             for a, b in itertools.pairwise(chain)
@@ -234,6 +303,16 @@ def _rounded(program: _Program, found: Floats) -> Shape:
         legs.append(tuple(sizes) if program.bars[k].least else ())
     more = tuple(_more(program.bars[k], vertices[p.a], vertices[p.b]) for k, p in enumerate(scheme.pieces))
     return Shape(tuple(vertices[:hubs]), tuple(legs), tuple(vertices), more)
+
+
+def _bowed(program: _Program, found: Floats, k: int, apart: float) -> tuple[int, ...]:
+    """Return the legs of a bow [nm] between ends that lie apart by a distance [nm].
+
+    Its slanted legs are equal, so it ends on the line of its ends; the last leg takes what rounding leaves.
+    """
+    first, slant, along = (round(float(found[program.leg(k, i)]) * _MM) for i in range(3))
+    reach = 2.0 * slant * math.cos(math.radians(program.drawing.words[k][0]))
+    return first, slant, along, slant, round(apart - first - along - reach)
 
 
 def _more(bar: Bar, start: Point, stop: Point) -> int:
@@ -258,6 +337,8 @@ def _snapped(
     for k, chain in enumerate(chains):
         headings = headings_of(program.drawing.headings[k][0], program.drawing.words[k])
         vector = program.bars[k].vector
+        if is_bow(program.drawing.words[k]) and unit(headings[0])[axis] == 0.0:
+            group[root(chain[-1])] = root(chain[0])
         for i, (a, b) in enumerate(itertools.pairwise(chain)):
             along = vector[axis] != 0 if vector is not None else unit(headings[i])[axis] != 0.0
             if not along:

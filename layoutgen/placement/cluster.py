@@ -192,6 +192,8 @@ class ClusterSolver:
         shape = None
         if mapping is not None and mirrored_alike(bars, mapping):
             shape = solve_closure(self.scheme, plan.drawing, bars, plan.aim, mapping, _SLACK)
+            if shape is None and (loose := self.demands.bars(plan.drawing, roles, loose=True)) is not None:
+                shape = solve_closure(self.scheme, plan.drawing, loose, plan.aim, mapping, _SLACK)
         symmetric = shape is not None
         shape = shape or solve_closure(self.scheme, plan.drawing, bars, plan.aim, slack=_SLACK)
         return None if shape is None else Solution(plan, shape, roles, symmetric)
@@ -200,7 +202,7 @@ class ClusterSolver:
         """Return a drawing with lengths as they would be but for the roles of what leaves the loop."""
         plan = ClusterPlan(drawing, self._any_outer(drawing), (1.0, 1.0))
         roles = self.demands.roles(drawing, plan.outer)
-        bars = self.demands.bars(drawing, roles)
+        bars = self.demands.bars(drawing, roles, loose=self._mirror(drawing) is not None)
         if bars is None:
             return None
         slack = _ROUGH_HEIGHTS * self.kit.model.limits.height

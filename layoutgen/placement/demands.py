@@ -20,6 +20,7 @@ from layoutgen.placement.words import Word, headings_of, least_legs
 __all__ = ["Demands"]
 
 _PLAY_HEIGHTS = 4  # by how many heights a part's nodes may lie farther apart than they must
+_LOOSE_HEIGHTS = 6  # the same, where a drawing is symmetric only so
 _FAR = 1e9  # longer than any line [nm]
 
 
@@ -45,13 +46,13 @@ class Demands:
             out.append((*zip(self.outer[hub], outer[hub], strict=True), *inner))
         return tuple(out)
 
-    def bars(self, drawing: Drawing, roles: tuple[Headings, ...]) -> list[Bar] | None:
-        """Return what each piece asks, None where a line would have no length."""
+    def bars(self, drawing: Drawing, roles: tuple[Headings, ...], *, loose: bool = False) -> list[Bar] | None:
+        """Return what each piece asks, None where a line would have no length; ``loose`` with more play."""
         named = dict(zip(self.nets, roles, strict=True))
         bars = []
         for k, piece in enumerate(self.scheme.pieces):
             if not piece.is_line:
-                bars.append(self._rigid(k, drawing.headings[k][0], roles))
+                bars.append(self._rigid(k, drawing.headings[k][0], roles, loose=loose))
                 continue
             word = drawing.words[k]
             try:
@@ -61,11 +62,12 @@ class Demands:
             bars.append(Bar(length, self._least(k, word)))
         return bars
 
-    def _rigid(self, k: int, heading: float, roles: tuple[Headings, ...]) -> Bar:
+    def _rigid(self, k: int, heading: float, roles: tuple[Headings, ...], *, loose: bool) -> Bar:
         """Return what a part asks: its vector, with play where both its pads are arms of junctions."""
         vector, piece = self.vector(k, heading, roles), self.scheme.pieces[k]
-        loose = all(len(roles[hub]) > 2 for hub in (piece.a, piece.b)) and 0 in vector
-        return Bar(vector=vector, play=_PLAY_HEIGHTS * self.kit.model.limits.height if loose else 0)
+        heights = _LOOSE_HEIGHTS if loose else _PLAY_HEIGHTS
+        has_play = all(len(roles[hub]) > 2 for hub in (piece.a, piece.b)) and 0 in vector
+        return Bar(vector=vector, play=heights * self.kit.model.limits.height if has_play else 0)
 
     def _least(self, k: int, word: Word) -> tuple[int, ...]:
         return least_legs(word, self.meetings.rules(self.ends[k][0]))

@@ -12,7 +12,7 @@ from dataclasses import dataclass
 
 from layoutgen.placement.words import Word, reversed_word
 
-__all__ = ["Drawing", "Piece", "Scheme", "drawings"]
+__all__ = ["Drawing", "Piece", "Range", "Scheme", "Step", "Walk", "drawings", "walked_steps"]
 
 MOST_BENDS = 8
 """Most bends of a whole cluster [-]; with four a line can take up any surplus."""
@@ -116,11 +116,11 @@ def drawings(
             of its displacement, or None where it has no room for that word.
         bends: Number of bends of all lines together [-].
     """
-    yield from _Walk(scheme, entry, reach).run(bends)
+    yield from Walk(scheme, entry, reach).run(bends)
 
 
 @dataclass(frozen=True, slots=True)
-class _Step:
+class Step:
     """One piece as walked: from a hub to a hub, and whether it closes a loop (then the way round it)."""
 
     piece: int
@@ -130,12 +130,13 @@ class _Step:
     loop: tuple[tuple[int, bool], ...] = ()
 
 
-class _Walk:
+class Walk:
     """Depth first over the steps, with headings and words as they stand."""
 
     def __init__(self, scheme: Scheme, entry: int, reach: Callable[[int, Word, float], Range | None]) -> None:
+        """Set out from a hub; the arguments are those of :func:`drawings`."""
         self.scheme, self.entry, self.reach = scheme, entry, reach
-        self.steps = _steps(scheme, entry)
+        self.steps = walked_steps(scheme, entry)
         self.headings: dict[tuple[int, bool], float] = {}
         self.words: dict[int, Word] = {}
         self.used: list[list[float]] = [[] for _ in scheme.outer]
@@ -169,7 +170,7 @@ class _Walk:
             tuple(self.words[k] for k in pieces),
         )
 
-    def _leaving(self, step: _Step, at: int) -> Sequence[float]:
+    def _leaving(self, step: Step, at: int) -> Sequence[float]:
         """Return the headings with which a step may leave its hub."""
         if at == 0:
             return (0.0,)
@@ -178,7 +179,7 @@ class _Walk:
             return ((used[0] + 180.0) % 360.0,)
         return [heading for heading in _HEADINGS if heading not in used]
 
-    def _words(self, step: _Step, left: int) -> Iterator[Word]:
+    def _words(self, step: Step, left: int) -> Iterator[Word]:
         """Yield the words a step may take, as walked."""
         piece = self.scheme.pieces[step.piece]
         if not piece.is_line:
@@ -190,7 +191,7 @@ class _Walk:
             for words in _WORDS[: left + 1]:
                 yield from words
 
-    def _take(self, step: _Step, heading: float, word: Word) -> bool:
+    def _take(self, step: Step, heading: float, word: Word) -> bool:
         """Draw a step, if its end fits; False, and nothing changed, if not."""
         piece = self.scheme.pieces[step.piece]
         turn = sum(word) if piece.is_line else piece.turn if step.forward else -piece.turn
@@ -215,7 +216,7 @@ class _Walk:
             return False
         return True
 
-    def _give_back(self, step: _Step) -> None:
+    def _give_back(self, step: Step) -> None:
         self.used[step.stop].pop()
         self.used[step.start].pop()
 
@@ -237,12 +238,39 @@ class _Walk:
         return abs(total) == 360.0 and meets
 
 
-def _steps(scheme: Scheme, entry: int) -> list[_Step]:
-    """Return the pieces in the order of a depth-first walk, closing ones with the loop they close."""
-    steps: list[_Step] = []
+def walked_steps(scheme: Scheme, entry: int, *, early: bool = False) -> list[Step]:
+    """Return the pieces in the order of a depth-first walk, closing ones with the loop they close.
+
+    Args:
+        scheme: The cluster.
+        entry: The hub at which the walk begins.
+        early: Whether to go first where a loop closes soonest, instead of in file order.
+    """
+    steps: list[Step] = []
     trail: list[tuple[int, int, bool]] = []
-    _visit(scheme, entry, set(), {entry}, trail, steps)
+    _visit(scheme, entry, set(), {entry}, trail, steps, early=early)
     return steps
+
+
+def _ways_on(
+    scheme: Scheme, hub: int, done: set[int], seen: set[int], *, early: bool
+) -> list[tuple[int, bool]]:
+    """Return the pieces at a hub, each with True where it is the piece's first end, in the order to go."""
+    inner = scheme.inner(hub)
+    return sorted(inner, key=lambda way: _way_back(scheme, way, done, seen)) if early else inner
+
+
+def _way_back(scheme: Scheme, way: tuple[int, bool], done: set[int], seen: set[int]) -> int:
+    """Return over how many pieces, beginning with one, a walk comes back to where it was."""
+    piece = scheme.pieces[way[0]]
+    reached, count = {piece.b if way[1] else piece.a}, 1
+    gone = done | {way[0]}
+    while not reached & seen and count <= len(scheme.pieces):
+        onward = [(k, p) for k, p in enumerate(scheme.pieces) if k not in gone and {p.a, p.b} & reached]
+        gone |= {k for k, _ in onward}
+        reached = reached | {hub for _, p in onward for hub in (p.a, p.b)}
+        count += 1
+    return count
 
 
 def _visit(
@@ -251,9 +279,11 @@ def _visit(
     done: set[int],
     seen: set[int],
     trail: list[tuple[int, int, bool]],
-    steps: list[_Step],
+    steps: list[Step],
+    *,
+    early: bool,
 ) -> None:
-    for k, first in scheme.inner(hub):
+    for k, first in _ways_on(scheme, hub, done, seen, early=early):
         if k in done:
             continue
         done.add(k)
@@ -262,10 +292,10 @@ def _visit(
         if far in seen:
             start = next(i for i, (left, _, _) in enumerate(trail) if left == far)
             loop = tuple((p, f) for _, p, f in trail[start:])
-            steps.append(_Step(k, first, hub, far, (*loop, (k, first))))
+            steps.append(Step(k, first, hub, far, (*loop, (k, first))))
             continue
         seen.add(far)
-        steps.append(_Step(k, first, hub, far))
+        steps.append(Step(k, first, hub, far))
         trail.append((hub, k, first))
-        _visit(scheme, far, done, seen, trail, steps)
+        _visit(scheme, far, done, seen, trail, steps, early=early)
         trail.pop()

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 import math
 from collections.abc import Iterable
 from typing import NamedTuple
@@ -17,11 +18,15 @@ __all__ = [
     "grown",
     "hull",
     "ring_to_world",
+    "slices_to_world",
     "to_world",
     "unit",
 ]
 
 Box = tuple[int, int, int, int]
+
+_SLICE = 250_000  # width of a slice [nm]
+_MOST_SLICES = 40
 
 _QUARTERS = {0.0: (1.0, 0.0), 90.0: (0.0, 1.0), 180.0: (-1.0, 0.0), 270.0: (0.0, -1.0)}
 
@@ -69,6 +74,30 @@ def box_to_world(pose: Pose, box: Box) -> Box:
     x0, y0, x1, y1 = box
     points = [to_world(pose, x, y) for x, y in ((x0, y0), (x1, y0), (x1, y1), (x0, y1))]
     return box_around(points)
+
+
+def slices_to_world(pose: Pose, box: Box) -> list[Box]:
+    """Return axis-parallel boxes that cover a box given in the frame of a pose: one for quarter turns.
+
+    A box at another angle is cut into slices across the board's x axis, each covered by a box of its own.
+    """
+    if pose.heading % 90.0 == 0.0:
+        return [box_to_world(pose, box)]
+    x0, y0, x1, y1 = box
+    ring = [to_world(pose, x, y) for x, y in ((x0, y0), (x1, y0), (x1, y1), (x0, y1))]
+    low, _, high, _ = box_around(ring)
+    count = max(1, min(_MOST_SLICES, math.ceil((high - low) / _SLICE)))
+    cuts = [low + (high - low) * k / count for k in range(count + 1)]
+    return [_slice(ring, left, right) for left, right in itertools.pairwise(cuts)]
+
+
+def _slice(ring: list[Point], left: float, right: float) -> Box:
+    """Return the box around the part of a convex outline that lies between two x coordinates [nm]."""
+    ys = [float(y) for x, y in ring if left <= x <= right]
+    for (ax, ay), (bx, by) in zip(ring, [*ring[1:], ring[0]], strict=True):
+        inside = (x for x in (left, right) if min(ax, bx) < x < max(ax, bx))
+        ys.extend(ay + (by - ay) * (x - ax) / (bx - ax) for x in inside)
+    return math.floor(left), math.floor(min(ys)), math.ceil(right), math.ceil(max(ys))
 
 
 def ring_to_world(pose: Pose, box: Box) -> Ring:

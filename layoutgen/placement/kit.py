@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import math
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, field
 
 from layoutgen.circuit import End, EndKind
@@ -9,9 +11,10 @@ from layoutgen.geometry import Point
 from layoutgen.placement.bodies import OVERLAP, BodyLand, PartBody
 from layoutgen.placement.budgets import LineLengths, strip_width
 from layoutgen.placement.clearance import Kind, Obstacle
-from layoutgen.placement.frame import Box, Pose, box_to_world, to_world
+from layoutgen.placement.frame import Box, Pose, ahead, box_to_world, slices_to_world, to_world
+from layoutgen.placement.launches import Launch, launches_of
 from layoutgen.placement.model import GROUND, Model, strip_owner
-from layoutgen.placement.state import EDGES, Growth, LaidStrip, corridor_box, leg_boxes
+from layoutgen.placement.state import EDGES, Growth, LaidStrip, corridor_box, leg_slices
 from layoutgen.placement.tour import Hub, Tour
 
 __all__ = ["Kit", "PinnedError", "part_obstacles", "root_edge", "span_along", "world"]
@@ -30,13 +33,30 @@ class PinnedError(Exception):
 
 @dataclass(slots=True)
 class Kit:
-    """Lays single pieces into a growing candidate; knows the circuit, remembers turned bodies only."""
+    """Lays single pieces into a growing candidate; knows the circuit, remembers turned bodies only.
+
+    ``turns_leads`` lets leads turn away from one another, and stand farther off what they meet.
+    """
 
     model: Model
     tour: Tour
     lengths: LineLengths
+    turns_leads: bool = False
+    launches: Mapping[str, Launch] = field(init=False)
     _turned: dict[tuple[str, float], list[Obstacle]] = field(default_factory=dict)
     _spans: dict[tuple[str, float], tuple[int, int]] = field(default_factory=dict)
+
+    def __post_init__(self) -> None:
+        """Find the ports' launches."""
+        self.launches = launches_of(self.model)
+
+    def launch_length(self, port: str) -> int:
+        """Return how far the pad of a port's launch reaches from the end of the port's copper [nm], or 0.
+
+        The pad itself keeps its distance from the profile, also where the port's copper does not.
+        """
+        launch = self.launches.get(port)
+        return 0 if launch is None else launch.land.along + self.model.limits.edge - self.inset(port)
 
     def net(self, end: End) -> str:
         """Return the net of an end."""
@@ -61,13 +81,15 @@ class Kit:
             self._spans[key] = span_along(body, land, side)
         return self._spans[key]
 
-    def strip(self, growth: Growth, net: str, width: int, points: tuple[Point, ...]) -> None:
+    def strip(
+        self, growth: Growth, net: str, width: int, points: tuple[Point, ...], kind: Kind = Kind.STRIP
+    ) -> None:
         """Lay a strip of a net; nothing where it has no length."""
         if points[0] == points[-1]:
             return
         growth.strips.append(LaidStrip(net, width, points))
         owner = strip_owner(net)
-        growth.obstacles += [Obstacle(box, Kind.STRIP, owner) for box in leg_boxes(points, width)]
+        growth.obstacles += [Obstacle(box, kind, owner) for leg in leg_slices(points, width) for box in leg]
 
     def keep_way(self, growth: Growth, owner: str, kind: Kind, point: Point, edge: str, width: int) -> None:
         """Keep the way from a point to the board's edge clear."""
@@ -104,6 +126,44 @@ class Kit:
         hub = self.tour.hubs[net]
         wide = self.bank_width(hub) if hub.bank else 0 if facing is None else self.across(facing)
         return min(max(strip_width(self.model, net), wide), self.across(pad))
+
+    def lead(self, growth: Growth, pad: End, outer: Pose, node: Pose, width: int) -> None:
+        """Lay the strip from a pad, or from the bar across several, to the node beyond it.
+
+        Args:
+            growth: The candidate.
+            pad: The pad's end.
+            outer: Middle of its outer edge, heading out.
+            node: The node, on the pad's axis.
+            width: How wide the strip is at most [nm].
+        """
+        body = self.model.bodies[pad.element]
+        land = body.land_at(pad)
+        start = ahead(outer, -land.along // 2 if body.is_joined(land) else -OVERLAP)
+        kind = Kind.LEAD if len(body.lands) > 2 else Kind.STRIP
+        self.strip(growth, self.net(pad), min(width, land.across), (start.point, node.point), kind)
+
+    def room_ahead(self, pad: End, sides: Sequence[End], onward: Sequence[End] = ()) -> int:
+        """Return how far beyond a pad's outer edge its node must lie [nm], clear of the pad's neighbours.
+
+        Args:
+            pad: The pad's end.
+            sides: What leaves the node across the pad's way out.
+            onward: What goes on along it.
+        """
+        body = self.model.bodies[pad.element]
+        land, gap = body.land_at(pad), self.model.limits.gap
+        free_side = len(sides) < 2 and body.has_row_on_one_side(land)
+        half = max((self.across(end) / 2 for end in onward), default=0.0)
+        room = body.free_from(land, half if free_side else math.inf, gap)
+        return room + max((self.across(end) // 2 for end in sides), default=0) if room else 0
+
+    def edge_at(self, net: str) -> int:
+        """Return how far from its node the copper of a net's lines, or of its bank's strip, reaches [nm]."""
+        hub = self.tour.hubs[net]
+        ends = self.model.circuit.nets[net].ends
+        wide = [self.model.widths[end.element] for end in ends if end.element in self.model.widths]
+        return max([*wide, self.bank_width(hub) if hub.bank else 0]) // 2
 
     def is_slit(self, room: int) -> bool:
         """True when copper of one net would be left apart by a room [nm] too narrow for safe etching."""
@@ -152,14 +212,16 @@ def span_along(body: PartBody, land: BodyLand, side: float) -> tuple[int, int]:
 def part_obstacles(body: PartBody, pose: Pose) -> list[Obstacle]:
     """Return a part's boxes at a pose: pads, ground copper, courtyard, cut-out, holes."""
     name = body.name
-    out = [Obstacle(box_to_world(pose, box), Kind.BODY, name) for box in body.solid]
+    out = [Obstacle(piece, Kind.BODY, name) for box in body.solid for piece in slices_to_world(pose, box)]
     for land in body.lands:
         if land.has_copper:
             kind = Kind.GROUND if land.net == GROUND else Kind.PAD
-            out.append(Obstacle(box_to_world(pose, land.box), kind, name, net=land.net))
-    out += [Obstacle(box_to_world(pose, box), Kind.GROUND, name) for box in body.grounds]
+            out += [Obstacle(piece, kind, name, net=land.net) for piece in slices_to_world(pose, land.box)]
+    out += [
+        Obstacle(piece, Kind.GROUND, name) for box in body.grounds for piece in slices_to_world(pose, box)
+    ]
     if body.cutout is not None:
-        out.append(Obstacle(box_to_world(pose, body.cutout), Kind.CUTOUT, name))
+        out += [Obstacle(piece, Kind.CUTOUT, name) for piece in slices_to_world(pose, body.cutout)]
     for hole in body.holes:
         r = hole.diameter // 2 + 1
         box: Box = (hole.x - r, hole.y - r, hole.x + r, hole.y + r)

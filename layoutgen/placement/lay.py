@@ -10,7 +10,7 @@ from layoutgen.placement.banks import Banks
 from layoutgen.placement.beside import lay_beside
 from layoutgen.placement.bodies import OVERLAP, BodyLand, PartBody, beyond
 from layoutgen.placement.clearance import Kind, Obstacle
-from layoutgen.placement.frame import Pose, ahead, box_to_world, unit
+from layoutgen.placement.frame import Pose, ahead, box_to_world, to_world, unit
 from layoutgen.placement.kit import PIN_TOLERANCE, Kit, PinnedError, world
 from layoutgen.placement.lines import Lines
 from layoutgen.placement.model import GROUND, strip_owner
@@ -24,6 +24,7 @@ from layoutgen.placement.state import (
     Pending,
 )
 from layoutgen.placement.tour import Hub
+from layoutgen.placement.turned import turn_away
 from layoutgen.placement.words import Route
 from layoutgen.units import to_nm
 
@@ -133,10 +134,18 @@ class Layer:
             elif other.kind is EndKind.PAD and turn is None:
                 across.append(self.kit.joint_width(hub.net, other, self._facing(hub, other)) // 2)
         offset = self.kit.beside(across)
+        offset = max(offset, self._room_for(hub, end, turn))
         if turn != 0.0:
             return offset
         beside = self._side_parts(hub, end)
         return max(offset, beside + self._courtyard_beyond(end)) if beside else offset
+
+    def _room_for(self, hub: Hub, pad: End, turn: float | None) -> int:
+        """Return how far from the node a pad arm's outer edge must lie [nm], clear of its neighbours."""
+        others = [(end, heading in (90.0, 270.0)) for end, heading in hub.canonical_headings() if end != pad]
+        across = [end for end, is_side in others if is_side == (turn == 0.0)]
+        onward = [end for end, is_side in others if is_side != (turn == 0.0)]
+        return self.kit.room_ahead(pad, across, onward)
 
     def _facing(self, hub: Hub, end: End) -> End | None:
         """Return what leaves a junction opposite to an end on its straight path, the widest of several."""
@@ -166,7 +175,14 @@ class Layer:
     def _part_by_inner_edge(self, growth: Growth, end: End, at: Pose) -> None:
         body = self.kit.model.bodies[end.element]
         land = body.land_at(end)
-        self.part(growth, end, body.entered_by(land, at, edge="inner"))
+        if not body.is_apart(land):
+            self.part(growth, end, body.entered_by(land, at, edge="inner"))
+            return
+        outer = ahead(at, body.node_of(land))
+        arrival = self.kit.tour.hubs[self.kit.net(end)].arrival
+        width = land.across if arrival is None else self.kit.across(arrival)
+        self.kit.lead(growth, end, outer.turned(180.0), at, width)
+        self.part(growth, end, body.entered_by(land, outer, edge="outer"))
 
     def pad_arm(self, growth: Growth, pending: Pending, turn: float, bank_side: int = 1) -> None:
         """Lay a part whose pad is an arm of a junction; a bank it leads to lies left (1) or right (-1)."""
@@ -178,7 +194,7 @@ class Layer:
         node = pending.at.turned(turn)
         growth.use(net, node.heading)
         outer = ahead(node, pending.offset)
-        if turn == 0.0 and pending.offset:
+        if pending.offset and (turn == 0.0 or pending.offset > self.kit.edge_at(net)):
             width = self.kit.joint_width(net, end, self.kit.tour.hubs[net].arrival)
             self.kit.strip(growth, net, width, (node.point, ahead(outer, OVERLAP).point))
         self.part(growth, end, body.entered_by(land, outer, edge="outer"))
@@ -199,6 +215,9 @@ class Layer:
         body = self.kit.model.bodies[entered.element]
         self._check_hint(growth, body.name, pose)
         growth.parts[body.name] = pose
+        for bond in body.bonds:
+            path = tuple(to_world(pose, x, y) for x, y in bond.path)
+            self.kit.strip(growth, bond.net, bond.width, path)
         growth.obstacles += self.kit.part_obstacles(body, pose)
         self._note_device(growth, entered, body, pose)
         lay_beside(self.kit, growth, body, pose)
@@ -238,13 +257,22 @@ class Layer:
     def _arrive_by_pad(self, growth: Growth, hub: Hub, body: PartBody, land: BodyLand, pose: Pose) -> None:
         """Go on from a pad: a line starts at its inner edge, all else beyond its outer edge."""
         outer, inner = world(pose, land.outer), world(pose, land.inner)
-        growth.use(hub.net, outer.heading + 180.0)
+        away = turn_away(self.kit, growth, hub, outer) if hub.bank or len(hub.arms) > 1 else None
+        growth.use(hub.net, (outer if away is None else away).heading + 180.0)
         if hub.cluster is not None:
             self._junction_beyond(growth, hub, (body, land), outer)
+        elif away is not None and hub.bank:
+            self.banks.lay(growth, hub, away)
+        elif away is not None:
+            self._leave_arms(growth, hub, away)
         elif hub.bank:
             self.banks.lay_beyond(growth, hub, body, land, outer)
         elif len(hub.arms) == 1 and hub.arms[0].end.kind in (EndKind.LINE, EndKind.COUPLED):
-            growth.pending.append(Pending(hub.arms[0].end, inner, (0.0,)))
+            onward = hub.arms[0].end
+            node = ahead(outer, body.node_of(land)) if body.is_apart(land) else inner
+            if body.is_apart(land) and hub.arrival is not None:
+                self.kit.lead(growth, hub.arrival, outer, node, self.kit.across(onward))
+            growth.pending.append(Pending(onward, node, (0.0,)))
         elif len(hub.arms) == 1:
             self._pad_to(growth, hub, hub.arms[0].end, (body, land), outer)
         else:
@@ -264,12 +292,18 @@ class Layer:
         met = other.land_at(end)
         there = ahead(outer, self.pad_gap((body, land), (other, met)))
         width = min(land.across, met.across)
-        self.kit.strip(growth, hub.net, width, (back, ahead(there, OVERLAP).point))
+        kind = Kind.LEAD if max(len(body.lands), len(other.lands)) > 2 else Kind.STRIP
+        self.kit.strip(growth, hub.net, width, (back, ahead(there, OVERLAP).point), kind)
         self.part(growth, end, other.entered_by(met, there, edge="outer"))
 
     def pad_gap(self, left: tuple[PartBody, BodyLand], right: tuple[PartBody, BodyLand]) -> int:
         """Return the distance of two pads' outer edges [nm] at which their parts' courtyards touch."""
-        return max(beyond(*left) + beyond(*right), self.kit.model.limits.gap)
+        gap = self.kit.model.limits.gap
+        clear = (
+            left[0].free_from(left[1], right[1].across / 2, gap),
+            right[0].free_from(right[1], left[1].across / 2, gap),
+        )
+        return max(beyond(*left) + beyond(*right), gap, *clear)
 
     def _junction_beyond(
         self, growth: Growth, hub: Hub, left: tuple[PartBody, BodyLand], outer: Pose
@@ -282,11 +316,13 @@ class Layer:
         parts = max((self._breadth(end) for end in sides if end.kind is EndKind.PAD), default=0)
         if parts:
             reach = max(reach, parts + beyond(body, land))
+        assert hub.arrival is not None  # the pad itself
+        onward = [arm.end for arm in hub.arms if arm.turn == 0.0]
+        reach = max(reach, self.kit.room_ahead(hub.arrival, sides, onward))
         node = ahead(outer, reach)
         if reach:
-            assert hub.arrival is not None  # the pad itself
             width = self.kit.joint_width(hub.net, hub.arrival, self._facing(hub, hub.arrival))
-            self.kit.strip(growth, hub.net, width, (ahead(outer, -OVERLAP).point, node.point))
+            self.kit.lead(growth, hub.arrival, outer, node, width)
         if hub.cluster is not None:
             self._enter_cluster(growth, hub, node)
         else:
@@ -297,11 +333,15 @@ class Layer:
     def leave_port(self, growth: Growth, hub: Hub, pose: Pose) -> tuple[str, int]:
         """Go on from the first port; return what carries it and how wide [nm] that is."""
         growth.use(hub.net, pose.heading + 180.0)
+        assert hub.arrival is not None  # the port itself
+        if hub.arrival.element in self.kit.launches:
+            pose = self.ports.root_launch(growth, hub.arrival, pose)
         single = hub.arms[0].end if len(hub.arms) == 1 and hub.cluster is None and not hub.bank else None
         if single is not None and single.kind in (EndKind.LINE, EndKind.COUPLED):
             growth.pending.append(Pending(single, pose, (0.0,)))
-            return single.element, self.kit.model.widths[single.element]
-        assert hub.arrival is not None  # the port itself
+            launched = growth.ports.get(hub.arrival.element)
+            own = single.element, self.kit.model.widths[single.element]
+            return own if launched is None else (launched.carrier, launched.width)
         out, width = self.ports.root_strip(growth, hub, hub.arrival.element, pose)
         if hub.cluster is not None:
             self._enter_cluster(growth, hub, out)

@@ -9,7 +9,7 @@ from layoutgen.geometry import Point
 from layoutgen.placement.clearance import Kind, Obstacle
 from layoutgen.placement.frame import Pose, box_to_world, to_world
 from layoutgen.placement.kit import Kit, root_edge
-from layoutgen.placement.state import Growth, LaidLine, Pending, leg_boxes
+from layoutgen.placement.state import Growth, LaidLine, Pending, leg_slices
 from layoutgen.placement.words import Route, route_points
 
 __all__ = ["Lines"]
@@ -40,7 +40,8 @@ class Lines:
         points, arrival = route_points(start, route)
         name = end.element
         free = self.kit.model.sized.lines[name].free
-        open_edge = edge if edge is not None and free and not growth.bounds.known(edge) else None
+        is_open = edge is not None and free and not growth.bounds.known(edge)
+        open_edge = edge if is_open and not self._meets_launch(end) else None
         root = self._root_edge(end)
         open_root = root if root is not None and free and not growth.bounds.known(root) else None
         growth.lines[name] = LaidLine(name, end.index, points, route, open_edge, open_root)
@@ -66,10 +67,10 @@ class Lines:
         width, kind, last = self.kit.model.widths[name], self._line_kind(name), len(points) - 2
         root = self._root_edge(end)
         inset = 0 if self._runs_to_edge(name) else self.kit.model.limits.edge
-        for i, box in enumerate(leg_boxes(points, width)):
+        for i, leg in enumerate(leg_slices(points, width)):
             edges = (root if i == 0 else None, edge if i == last else None)
             at_edges = tuple(e for e in edges if e is not None)
-            growth.obstacles.append(Obstacle(box, kind, name, at_edges=at_edges, inset=inset))
+            growth.obstacles += [Obstacle(box, kind, name, at_edges=at_edges, inset=inset) for box in leg]
         laid = growth.lines[name]
         if laid.open_edge is not None:
             self.kit.keep_way(growth, name, kind, points[-1], laid.open_edge, width)
@@ -83,6 +84,10 @@ class Lines:
         if arrival is None or arrival.kind is not EndKind.PORT or hub.bank or len(hub.arms) != 1:
             return None
         return None if hub.cluster is not None else root_edge(self.kit.model, arrival.element)
+
+    def _meets_launch(self, end: End) -> bool:
+        """True for a line, travelled from one end, that ends at a port's launch."""
+        return self.kit.tour.port_at(self.kit.model.far_end(end)) in self.kit.launches
 
     def _runs_to_edge(self, name: str) -> bool:
         """True when a line ends in a port whose copper runs to the profile."""

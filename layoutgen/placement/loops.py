@@ -4,7 +4,8 @@ Three ways: parts between the same two nets stand side by side (``Loops.beside``
 cut at that line, which is laid last between two placed nodes (``Loops.closers``); what is left, loops of
 lines of given length and of two-pad parts, is laid as one ``Cluster`` whose legs come from one linear
 program. Loops that no cluster can hold (through transistors, coupled pairs, banks, or too many elements) are
-cut at their longest line, whose length then has to meet its far node.
+cut at their longest line, whose length then has to meet its far node. Where that finds no place, ``wide``
+clusters hold transistors and free RF lines, too: then only loops through coupled pairs and banks are cut.
 """
 
 from __future__ import annotations
@@ -21,6 +22,9 @@ __all__ = ["Cluster", "Loops", "find_loops"]
 
 MOST_ELEMENTS = 14
 """Most elements of a cluster [-]: the drawings to try grow exponentially with them."""
+
+MOST_WIDE = 36
+"""Most elements of a wide cluster [-], in which smaller loops keep their drawings."""
 
 Node = tuple[bool, str]
 
@@ -50,12 +54,13 @@ class Loops:
         return frozenset(name for names in self.beside.values() for name in names)
 
 
-def find_loops(sized: SizedCircuit, cut: frozenset[str] = frozenset()) -> Loops:
+def find_loops(sized: SizedCircuit, cut: frozenset[str] = frozenset(), *, wide: bool = False) -> Loops:
     """Return how each loop of a circuit is laid.
 
     Args:
         sized: The circuit.
         cut: Elements of clusters for which no drawing was found: these are cut at a line instead.
+        wide: Whether clusters hold free RF lines and transistors, too.
 
     Raises:
         InfeasibleError: A loop that can be neither drawn as a cluster nor cut, or a net of one with a bank.
@@ -64,9 +69,11 @@ def find_loops(sized: SizedCircuit, cut: frozenset[str] = frozenset()) -> Loops:
     beside = _side_by_side(circuit)
     away = frozenset(name for names in beside.values() for name in names)
     closers = _free_closers(sized, away)
+    if wide:
+        closers = frozenset(name for name in closers if not sized.lines[name].rf)
     nets_of = {name: nets for name, nets in _nets_of(circuit).items() if name not in away | closers}
     blocks = _blocks(nets_of)
-    while (wrong := _not_a_cluster(circuit, blocks, cut)) is not None:
+    while (wrong := _not_a_cluster(circuit, blocks, cut, wide=wide)) is not None:
         line = _line_to_cut(sized, wrong)
         closers |= {line}
         del nets_of[line]
@@ -80,13 +87,13 @@ def _cluster(block: tuple[str, ...], nets_of: Mapping[str, tuple[str, ...]]) -> 
 
 
 def _not_a_cluster(
-    circuit: Circuit, blocks: list[tuple[str, ...]], cut: frozenset[str]
+    circuit: Circuit, blocks: list[tuple[str, ...]], cut: frozenset[str], *, wide: bool
 ) -> tuple[str, ...] | None:
     """Return the first block that is to be cut: one that is no cluster, or meets another in a net."""
     seen: set[str] = set()
     for block in blocks:
         nets = {net for name in block for _, net in ends_of(circuit.file, name)}
-        if cut & set(block) or not _is_cluster(circuit, block) or seen & nets:
+        if cut & set(block) or not _is_cluster(circuit, block, wide=wide) or seen & nets:
             return block
         seen |= nets
     return None
@@ -128,15 +135,26 @@ def _free_closers(sized: SizedCircuit, away: frozenset[str]) -> frozenset[str]:
     return frozenset(closing)
 
 
-def _is_cluster(circuit: Circuit, block: tuple[str, ...]) -> bool:
-    """True for a loop of lines and two-pad parts only, no bank on it, and few enough of them."""
+def _is_cluster(circuit: Circuit, block: tuple[str, ...], *, wide: bool) -> bool:
+    """True for a loop of lines and two-pad parts only, no bank on it, and few enough of them.
+
+    A wide one may hold parts of more pads, if the others are on ground.
+    """
     file = circuit.file
-    plain = all(
-        name in file.lines or (name in file.parts and two_nets(file.parts[name]) is not None)
-        for name in block
-    )
-    banks = any(circuit.nets[net].bank for name in block for _, net in ends_of(file, name))
-    return plain and not banks and len(block) <= MOST_ELEMENTS
+    joins = _joins_two if wide else _has_two
+    plain = all(name in file.lines or (name in file.parts and joins(circuit, name)) for name in block)
+    banks = any(circuit.nets[net].bank for name in block for _, net in ends_of(file, name) if net != GROUND)
+    return plain and not banks and len(block) <= (MOST_WIDE if wide else MOST_ELEMENTS)
+
+
+def _has_two(circuit: Circuit, name: str) -> bool:
+    return two_nets(circuit.file.parts[name]) is not None
+
+
+def _joins_two(circuit: Circuit, name: str) -> bool:
+    """True for a part with two ends off ground, on different nets."""
+    nets = [net for _, net in ends_of(circuit.file, name) if net != GROUND]
+    return len(nets) == len(set(nets)) == 2
 
 
 def _line_to_cut(sized: SizedCircuit, block: tuple[str, ...]) -> str:

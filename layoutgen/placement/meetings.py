@@ -60,11 +60,22 @@ class Meetings:
             half = max(first.outline[3] - first.outline[1], first.outline[2] - first.outline[0]) // 2
             along = max(pad.along for pad in pads)
             return Reach(half, half + limits.height, max(along, self._widest(others)) // 2)
+        if len(others) == 1 and pads and model.bodies[others[0].element].is_apart(pads[0]):
+            return self._beyond_row(others[0])
         if len(others) == 1 and pads:
             outside = beyond(model.bodies[others[0].element], pads[0])
             return Reach(pads[0].along, pads[0].along + outside + limits.height, pads[0].across // 2)
         half = max([self._widest(others), *(pad.across for pad in pads)]) // 2
         return Reach(half, half + limits.spacing if half else 0, half)
+
+    def _beyond_row(self, pad: End) -> Reach:
+        """Return what lies at the end of a line whose node is beyond the leads in the row of its pad."""
+        model = self.model
+        body = model.bodies[pad.element]
+        land = body.land_at(pad)
+        node, row = body.node_of(land), body.free_from(land, math.inf, model.limits.gap)
+        out = max(beyond(body, land), row) - node
+        return Reach(max(0, -node), max(0, out) + model.limits.height, land.across // 2)
 
     def _widest(self, ends: list[End]) -> int:
         return max((self.model.widths.get(end.element, 0) for end in ends), default=0)

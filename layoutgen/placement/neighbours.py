@@ -11,12 +11,14 @@ from layoutgen.circuit.queries import ends_of
 from layoutgen.geometry import Point
 from layoutgen.placement.budgets import LineLengths
 from layoutgen.placement.clearance import Ints, Kind, Obstacle, Obstacles, too_near
-from layoutgen.placement.model import GROUND, Model
-from layoutgen.placement.state import Growth, LaidLine, leg_boxes
+from layoutgen.placement.model import GROUND, Model, strip_owner
+from layoutgen.placement.state import Growth, LaidLine, leg_boxes, leg_slices
+from layoutgen.placement.words import is_bow
 
 __all__ = ["Neighbours"]
 
 _GRID = 10  # [nm]: rounding of odd widths must not decide
+_TOLD = 500  # [nm]: distances that differ by less read alike
 
 
 @dataclass(slots=True)
@@ -34,15 +36,25 @@ class Neighbours:
         old = growth.state.obstacles
         for new, other in old.conflicts(growth.obstacles, self.table):
             if new.owner != other.owner and self._really(growth, new, other):
-                return f"no room for {new.owner} beside {other.owner}"
+                return self._told(new, other)
         own = Obstacles.empty().plus(growth.obstacles)
         for new, other in own.conflicts(growth.obstacles, self.table):
             if new.owner < other.owner and self._really(growth, new, other):
-                return f"no room for {new.owner} beside {other.owner}"
+                return self._told(new, other)
         for line in growth.lines.values():
             if self._folds_on_itself(line):
                 return f"the legs of {line.name} would come too near to each other"
         return None
+
+    def _told(self, new: Obstacle, other: Obstacle) -> str:
+        """Return what is too near to what, how near, and what is kept."""
+        need = int(self.table[new.kind, other.kind])
+        if self._shared(new.owner, other.owner)[0] and self._too_close(new, other):
+            need = self.model.limits.gap
+        apart, way = _distance(new, other), " on its way to the edge" if new.corridor else ""
+        told = f"no room for {_named(new.owner)}{way} beside {_named(other.owner)}"
+        kept = f"{apart / 1e6:.3f} mm between them, {need / 1e6:.3f} mm are kept"
+        return f"{told} ({kept})" if apart < need - _TOLD else told
 
     def between(self, growth: Growth, added: Obstacles, other: Growth) -> bool:
         """Return whether two candidates would stand too near to each other; ``added`` holds the first."""
@@ -57,12 +69,17 @@ class Neighbours:
         nets_a, nets_b = self._shared(a.owner, b.owner)
         if not nets_a or self._too_close(a, b):
             return True
+        if a.kind == b.kind == Kind.GROUND:  # vias keep their pitch, whatever meets
+            return _distance(a, b) < self.model.limits.pitch - self.model.limits.land
         if Kind.BODY in (a.kind, b.kind) and a.kind != b.kind and not self._is_line(growth, a, b):
             return False
         if a.kind != Kind.BODY and b.kind != Kind.BODY and not self._is_line(growth, a, b):
-            return Kind.GROUND in (a.kind, b.kind) and a.kind != b.kind and not self._ends_pair(a, b)
+            grounded = Kind.GROUND in (a.kind, b.kind) and a.kind != b.kind
+            return grounded and not self._ends_pair(a, b) and not (self._is_lead(a) or self._is_lead(b))
         left = self._trimmed(growth, self._softened(a, nets_b), nets_a)
         right = self._trimmed(growth, self._softened(b, nets_a), nets_b)
+        if self._is_lead(a) or self._is_lead(b):
+            left, right = _beside_leads(left), _beside_leads(right)
         return too_near(left, right, self.table)
 
     def _softened(self, item: Obstacle, nets: frozenset[str]) -> Obstacle:
@@ -70,23 +87,30 @@ class Neighbours:
         joined = item.kind == Kind.PAD and item.net in nets
         return item._replace(kind=Kind.BODY) if joined else item
 
+    def _is_lead(self, item: Obstacle) -> bool:
+        """True for pads and ground copper of a part with more than two pads: no pour lies between them."""
+        body = self.model.bodies.get(item.owner)
+        return item.kind in (Kind.PAD, Kind.GROUND) and body is not None and len(body.lands) > 2
+
     def _too_close(self, a: Obstacle, b: Obstacle) -> bool:
         """True when copper of different nets is nearer than may be etched: no allowance mends that."""
         if Kind.BODY in (a.kind, b.kind) or self._nets(a) & self._nets(b) or self._feeds_pair(a, b):
             return False
-        dx = max(a.box[0] - b.box[2], b.box[0] - a.box[2], 0)
-        dy = max(a.box[1] - b.box[3], b.box[1] - a.box[3], 0)
-        return math.hypot(dx, dy) < self.model.limits.gap
+        return _distance(a, b) < self.model.limits.gap
 
     def _feeds_pair(self, a: Obstacle, b: Obstacle) -> bool:
         """True for a coupled pair and a line that ends at one of its ends: the artwork notches the line.
 
-        A line that runs past the end, or a pad, cannot be notched.
+        So for two pairs, where just one of the two strips carries what joins the pairs. A line that runs past
+        the end, or a pad, cannot be notched.
         """
         pairs = self.model.sized.pairs
         meet = self.model.owner_nets[a.owner] & self.model.owner_nets[b.owner]
-        ends_there = not {Kind.PAD, Kind.GROUND}.intersection((a.kind, b.kind)) and not _overlap(a, b)
-        return bool(meet) and (a.owner in pairs) != (b.owner in pairs) and ends_there
+        if not meet or {Kind.PAD, Kind.GROUND}.intersection((a.kind, b.kind)) or _overlap(a, b):
+            return False
+        if a.owner in pairs and b.owner in pairs:
+            return a.owner != b.owner and bool(self._nets(a) & meet) != bool(self._nets(b) & meet)
+        return a.owner in pairs or b.owner in pairs
 
     def _ends_pair(self, a: Obstacle, b: Obstacle) -> bool:
         """True when one of two is the ground copper of a pair's strip, beside what the other strip feeds."""
@@ -123,8 +147,8 @@ class Neighbours:
                 points = _cut(points, cut, at_start=index == line.start)
         if len(points) < 2:
             return []
-        boxes = leg_boxes(points, self.model.widths[line.name])
-        return [Obstacle(box, item.kind, item.owner) for box in boxes]
+        legs = leg_slices(points, self.model.widths[line.name])
+        return [Obstacle(box, item.kind, item.owner) for leg in legs for box in leg]
 
     def _allowance(self, net: str) -> int:
         """Return how far from a node [nm] a line is not compared with what it meets there.
@@ -139,6 +163,8 @@ class Neighbours:
         return factor * self.model.limits.spacing + self.model.reach_at(net) + _GRID
 
     def _folds_on_itself(self, line: LaidLine) -> bool:
+        if is_bow(line.route.word):
+            return False  # its least legs see to that, and boxes are larger than slanted legs
         boxes = leg_boxes(line.points, self.model.widths[line.name])
         for i, a in enumerate(boxes):
             for b in boxes[i + 2 :]:
@@ -211,6 +237,25 @@ class Neighbours:
         if len(ends) != 2 or len(pads) != 1:
             return 0
         return self.model.bodies[pads[0].element].land_at(pads[0]).along
+
+
+def _named(owner: str) -> str:
+    """Return an owner's name for a message: an element, or a net's strip."""
+    net = owner.removeprefix(strip_owner(""))
+    return owner if net == owner else f"the strip of net {net}"
+
+
+def _distance(a: Obstacle, b: Obstacle) -> float:
+    """Return how far two boxes are apart [nm]."""
+    dx = max(a.box[0] - b.box[2], b.box[0] - a.box[2], 0)
+    dy = max(a.box[1] - b.box[3], b.box[1] - a.box[3], 0)
+    return math.hypot(dx, dy)
+
+
+def _beside_leads(items: list[Obstacle]) -> list[Obstacle]:
+    """Return lines, and pads that are no lead of theirs, as things that keep only what etching needs."""
+    kinds = {Kind.LINE: Kind.SUPPLY, Kind.PAD: Kind.GROUND}
+    return [item._replace(kind=kinds.get(item.kind, item.kind)) for item in items]
 
 
 def _overlap(a: Obstacle, b: Obstacle) -> bool:

@@ -2,15 +2,17 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterator, Sequence
+from contextlib import suppress
 from dataclasses import dataclass, replace
 from itertools import islice
 
 from layoutgen.errors import InfeasibleError, LayoutgenError
-from layoutgen.placement.budgets import LineLengths
+from layoutgen.placement.bows import closed_before
 from layoutgen.placement.cluster import ClusterSolver
 from layoutgen.placement.explain import explain_loop
 from layoutgen.placement.finish import finish, frame_of
+from layoutgen.placement.leads import LeadLengths, fit_leads, with_single_leads
 from layoutgen.placement.likes import Note, with_like_lines
 from layoutgen.placement.model import Model
 from layoutgen.placement.records import Choices, Placement
@@ -21,6 +23,7 @@ from layoutgen.placement.state import State
 from layoutgen.placement.stubs import refuse_hidden_stubs
 from layoutgen.placement.tour import plan_tour
 from layoutgen.placement.ways import Ways
+from layoutgen.placement.wide import holds_more
 from layoutgen.sizing import SizedCircuit
 
 __all__ = ["place"]
@@ -31,6 +34,7 @@ _EFFORTS = (
     Effort(beam=16, accepted=5, any_side=True, tight_edges=True, only_margins=True),
     Effort(beam=24, accepted=6, any_side=True, tight_edges=True, fold_spine=True),
 )
+_WIDE_EFFORTS = 2  # tried with loops drawn with all that lies on them
 _SHIFTS = (6_000_000, -6_000_000, 12_000_000, -12_000_000, 25_000_000, -25_000_000)
 
 
@@ -49,10 +53,11 @@ def place(sized: SizedCircuit, like: Choices | None = None) -> Placement:
             its way, and the nearest size or hint that would do.
         WrongInputError: A line has no positive length after its corrections, or a junction too many arms.
     """
-    found = _tried(sized, like, _EFFORTS)
+    again = None if like is None else _as_before(sized, like)
+    found = again or _tried(sized, _EFFORTS)
     if isinstance(found, Placement):
         return found
-    raise _infeasible(found)
+    raise _infeasible(found, placed_before=like is not None)
 
 
 @dataclass(frozen=True, slots=True)
@@ -64,29 +69,72 @@ class _Nothing:
     open_loop: ClusterSolver | None
 
 
-def _tried(
-    sized: SizedCircuit, like: Choices | None, efforts: tuple[Effort, ...], *, closed: bool = False
-) -> Placement | _Nothing:
+def _as_before(sized: SizedCircuit, like: Choices) -> Placement | None:
+    """Return the placement that earlier choices give, None where they no longer fit.
+
+    Lines at loops are drawn alike only where the loops do not close otherwise.
+    """
+    walked = with_single_leads(sized)
+    for circuit, notes in _variants(walked):
+        model = Model(circuit)
+        fit_leads(model)
+        ways = _widely(model, _small_loops(model)) if like.wide else _walked(model, frozenset(), bows=True)
+        again = _again(ways, like)
+        if again is not None:
+            found = finish(model, ways.lengths, again, like.effort)
+            return _whole(_as_wide(found) if like.wide else found, sized, notes)
+    return None
+
+
+def _variants(walked: SizedCircuit) -> Iterator[tuple[SizedCircuit, tuple[Note, ...]]]:
+    """Yield a circuit as it is, then with like lines at its loops drawn alike, if that is another."""
+    yield walked, ()
+    with suppress(InfeasibleError):  # a loop without a line
+        alike, notes = with_like_lines(walked)
+        if notes:
+            yield alike, notes
+
+
+def _whole(found: Placement, sized: SizedCircuit, notes: tuple[Note, ...]) -> Placement:
+    """Return a placement as one of the circuit asked for, with more notes."""
+    return replace(found, sized=replace(found.sized, circuit=sized.circuit), notes=found.notes + notes)
+
+
+def _tried(sized: SizedCircuit, efforts: tuple[Effort, ...], *, closed: bool = False) -> Placement | _Nothing:
     """Return the placement by the first effort that finds one, or why there is none.
 
-    With ``closed``, a circuit with a loop that does not close is not looked at further.
+    With ``closed``, a circuit with a loop that does not close without bows is not looked at further.
+
+    Raises:
+        InfeasibleError: A loop without a line, which cannot be drawn as one with what lies on it, either.
     """
     notes: tuple[Note, ...] = ()
-    ways, open_loop = _prepared(Model(sized))
+    walked = with_single_leads(sized)
+    try:
+        ways, open_loop = _prepared(Model(walked))
+    except InfeasibleError:
+        model = Model(walked)
+        fit_leads(model)
+        lone = _placed_widely(model, (), efforts)
+        if lone is None:
+            raise
+        return _whole(lone, sized, notes)
     if open_loop is not None:
-        alike, notes = with_like_lines(sized)
+        alike, notes = with_like_lines(walked)
         ways, open_loop = _prepared(Model(alike)) if notes else (ways, open_loop)
-    found = None if closed and open_loop is not None else _placed(ways, like, efforts)
-    if isinstance(found, Placement):
-        return replace(found, notes=found.notes + notes)
-    return _Nothing(ways, found, open_loop)
+    if open_loop is not None and not closed:
+        bowed, still_open = _prepared(ways.model, before=ways)
+        ways, open_loop = (bowed, None) if still_open is None else (ways, open_loop)
+    found = None if closed and open_loop is not None else _placed(ways, efforts)
+    return _whole(found, sized, notes) if isinstance(found, Placement) else _Nothing(ways, found, open_loop)
 
 
-def _placed(ways: Ways, like: Choices | None, efforts: tuple[Effort, ...]) -> Placement | Failure | None:
-    """Return the placement by the first effort that finds one, else the first reason."""
+def _placed(ways: Ways, efforts: tuple[Effort, ...]) -> Placement | Failure | None:
+    """Return the placement by the first effort that finds one, else the first reason.
+
+    After the first, loops are drawn with the transistors and free lines on them.
+    """
     model = ways.model
-    if like is not None and (again := _again(ways, like)) is not None:
-        return finish(model, ways.lengths, again, like.effort)
     failure: Failure | None = None
     for number, effort in enumerate(efforts):
         if effort.only_margins and model.file.board.size is None:
@@ -95,26 +143,84 @@ def _placed(ways: Ways, like: Choices | None, efforts: tuple[Effort, ...]) -> Pl
         if best is not None:
             return finish(model, ways.lengths, best, number)
         failure = failure or found  # the plainest drawing's reason is the one to tell
+        if number == 0 and (wide := _placed_widely(model, ways.clusters, efforts)) is not None:
+            return wide
     return failure
 
 
-def _prepared(model: Model) -> tuple[Ways, ClusterSolver | None]:
-    """Return the walk with its ways; loops that no drawing closes are cut, and the first one is told."""
+def _placed_widely(
+    model: Model, inside: Sequence[ClusterSolver], efforts: tuple[Effort, ...]
+) -> Placement | None:
+    """Return the placement in which loops are drawn with the transistors and free lines on them, or None.
+
+    Args:
+        model: The circuit.
+        inside: Its loops without those.
+        efforts: As for :func:`_tried`.
+    """
+    ways = _widely(model, inside)
+    is_other = any(holds_more(solver) for solver in ways.clusters)
+    if not is_other or not all(solver.solutions() for solver in ways.clusters):
+        return None
+    for number, effort in enumerate(efforts[:_WIDE_EFFORTS]):
+        best, _ = _attempt(ways, effort)
+        if best is not None:
+            return _as_wide(finish(model, ways.lengths, best, number))
+    return None
+
+
+def _as_wide(found: Placement) -> Placement:
+    """Return a placement that says that its loops were drawn with all that lies on them."""
+    assert found.choices is not None  # it was searched for
+    return replace(found, choices=replace(found.choices, wide=True))
+
+
+def _small_loops(model: Model) -> Sequence[ClusterSolver]:
+    """Return the loops of a circuit without transistors and free lines; none where some loop has no line."""
+    try:
+        return _walked(model, frozenset(), bows=True).clusters
+    except InfeasibleError:
+        return ()
+
+
+def _widely(model: Model, inside: Sequence[ClusterSolver]) -> Ways:
+    """Return the walk with its ways that draws loops with the transistors and free lines on them."""
+    tour = plan_tour(model, wide=True)
+    return Ways(model, tour, LeadLengths(model, tour), inside=inside)
+
+
+def _prepared(model: Model, before: Ways | None = None) -> tuple[Ways, ClusterSolver | None]:
+    """Return the walk with its ways; loops that no drawing closes are cut, and the first one is told.
+
+    Where some did not close ``before``, straight lines of loops may bow to take up what they are too long.
+    """
     cut: frozenset[str] = frozenset()
     first: ClusterSolver | None = None
+    fit_leads(model)
+    known = {} if before is None else closed_before(before.known)
     while True:
-        tour = plan_tour(model, cut)
-        lengths = LineLengths(model, tour)
-        refuse_hidden_stubs(model, tour, lengths)
-        for name, line in model.sized.lines.items():
-            if not line.free:
-                lengths.by_bends(name)
-        ways = Ways(model, tour, lengths)
+        ways = replace(_walked(model, cut, bows=before is not None), known=known)
         wrong = next((solver for solver in ways.clusters if not solver.solutions()), None)
         if wrong is None:
             return ways, first
         first = first or wrong
-        cut |= set(tour.loops.clusters[wrong.number].elements)
+        cut |= set(ways.tour.loops.clusters[wrong.number].elements)
+
+
+def _walked(model: Model, cut: frozenset[str], *, bows: bool) -> Ways:
+    """Return the walk with its ways; loops that hold a ``cut`` element are cut.
+
+    Raises:
+        InfeasibleError: A loop that can be neither drawn nor cut.
+        WrongInputError: A line has no positive length after its corrections, or a stub no room.
+    """
+    tour = plan_tour(model, cut)
+    lengths = LeadLengths(model, tour)
+    refuse_hidden_stubs(model, tour, lengths)
+    for name, line in model.sized.lines.items():
+        if not line.free:
+            lengths.by_bends(name)
+    return Ways(model, tour, lengths, bows=bows)
 
 
 def _again(ways: Ways, like: Choices) -> State | None:
@@ -163,14 +269,14 @@ def _all_trees(search: Search, start: State) -> Iterator[State]:
     yield from states
 
 
-def _infeasible(nothing: _Nothing) -> InfeasibleError:
+def _infeasible(nothing: _Nothing, *, placed_before: bool) -> InfeasibleError:
     """Return the error for a circuit without a place, with a remedy that was tried."""
     if nothing.open_loop is not None:
         return explain_loop(nothing.open_loop, _open_loop, _changed)
     model, failure = nothing.ways.model, nothing.failure
     element = failure.element if failure is not None else model.circuit.spine[0]
     reason = failure.reason if failure is not None else "no placement was found"
-    if model.sized.corrections:  # a draft before it had a place
+    if placed_before and model.sized.corrections:
         return InfeasibleError(element, reason, "the lengths before their correction would do")
     remedy = Remedies(model, _changed, lambda: _roomy(nothing.ways)).best(element)
     return InfeasibleError(element, reason, remedy)
@@ -179,7 +285,7 @@ def _infeasible(nothing: _Nothing) -> InfeasibleError:
 def _changed(sized: SizedCircuit) -> Placement | None:
     """Return the placement of a changed circuit; None where there is none, or the change is no good."""
     try:
-        found = _tried(sized, None, _EFFORTS[:2], closed=True)
+        found = _tried(sized, _EFFORTS[:2], closed=True)
     except LayoutgenError:
         return None
     return found if isinstance(found, Placement) else None
@@ -187,7 +293,7 @@ def _changed(sized: SizedCircuit) -> Placement | None:
 
 def _open_loop(sized: SizedCircuit) -> ClusterSolver | None:
     """Return the first loop of a circuit that no drawing closes."""
-    return _prepared(Model(sized))[1]
+    return _prepared(Model(with_single_leads(sized)))[1]
 
 
 def _roomy(ways: Ways) -> tuple[int, int] | None:

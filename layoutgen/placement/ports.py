@@ -10,6 +10,7 @@ from layoutgen.placement.bodies import OVERLAP
 from layoutgen.placement.clearance import Kind
 from layoutgen.placement.frame import Pose, ahead, unit
 from layoutgen.placement.kit import PIN_TOLERANCE, Kit, PinnedError, root_edge
+from layoutgen.placement.launches import settle_at_edge
 from layoutgen.placement.model import strip_owner
 from layoutgen.placement.state import EDGES, Growth, LaidPort, Pending, edge_of_heading
 from layoutgen.placement.tour import Hub
@@ -29,6 +30,9 @@ class Ports:
     def at_line(self, growth: Growth, end: End, at: Pose, line: str) -> None:
         """Put a port at the end of a line, whose route was chosen to end there."""
         edge = self._edge(end, at)
+        if end.element in self.kit.launches:
+            self.launch(growth, end, at, edge)
+            return
         free = self.kit.model.sized.lines[line].free
         movable = not growth.bounds.known(edge) and free
         if not movable:
@@ -43,6 +47,9 @@ class Ports:
         if growth.bounds.known(edge) and not self._distance(growth, end, at, edge):
             if self._off(growth, end, at, edge):
                 raise PinnedError(end.element, "its pair ends at the edge, away from the port's place")
+            if end.element in self.kit.launches:
+                self.launch(growth, end, at, edge)
+                return
             growth.ports[end.element] = LaidPort(end.element, at.point, edge, width, pair, movable=False)
             return
         start = at if growth.bounds.known(edge) else ahead(at, _LEAST_STRIP)
@@ -62,12 +69,42 @@ class Ports:
         points = (back, *self._to_edge(growth, end, start, edge))
         known = growth.bounds.known(edge)
         self.kit.strip(growth, net, width, points)
+        if end.element in self.kit.launches:
+            self.launch(growth, end, Pose(*points[-1], start.heading), edge)
+            return
         self._mark_edge(growth, end, edge, None if known else edge)
         if not known:
             self.kit.keep_way(growth, strip_owner(net), Kind.STRIP, points[-1], edge, width)
         growth.ports[end.element] = LaidPort(
             end.element, points[-1], edge, width, strip_owner(net), movable=not known
         )
+
+    def launch(self, growth: Growth, end: End, at: Pose, edge: str) -> None:
+        """Lay a port's launch where its copper arrives, and settle the board's edge by it.
+
+        Args:
+            growth: The candidate.
+            end: The port's end.
+            at: Where copper meets the launch's pad, heading out of the board.
+            edge: The edge it leaves by.
+        """
+        launch, net, first = self.kit.launches[end.element], self.kit.net(end), len(growth.obstacles)
+        port = ahead(at, self.kit.launch_length(end.element))
+        self._settle(growth, end, port, edge)
+        self.kit.strip(growth, net, launch.land.across, (at.point, port.point))
+        pose = launch.pose(at)
+        growth.parts[launch.body.name] = pose
+        growth.obstacles += self.kit.part_obstacles(launch.body, pose)
+        settle_at_edge(growth, edge, first, round(growth.bounds.at(edge)))
+        growth.ports[end.element] = LaidPort(
+            end.element, port.point, edge, launch.land.across, strip_owner(net), movable=False
+        )
+
+    def root_launch(self, growth: Growth, end: End, pose: Pose) -> Pose:
+        """Lay the launch of the first port, which stands at a pose; return where its pad ends."""
+        out = ahead(pose, self.kit.launch_length(end.element))
+        self.launch(growth, end, out.turned(180.0), root_edge(self.kit.model, end.element))
+        return out
 
     def arm(self, growth: Growth, pending: Pending, turn: float) -> None:
         """Run a strip from a junction to the edge for a port that is an arm of it."""
@@ -120,7 +157,8 @@ class Ports:
         if not growth.bounds.known(edge):
             return 0
         ux, uy = unit(EDGES[edge])
-        goal = growth.bounds.at(edge) - (ux + uy) * self.kit.inset(end.element)
+        kept = self.kit.inset(end.element) + self.kit.launch_length(end.element)
+        goal = growth.bounds.at(edge) - (ux + uy) * kept
         gap = round((goal - (at.x if ux else at.y)) * (ux + uy))
         if gap < -PIN_TOLERANCE:
             raise PinnedError(end.element, f"its copper would reach {-gap / 1e6:.2f} mm too far {edge}")
@@ -157,6 +195,8 @@ class Ports:
 
     def root_can_move(self, hub: Hub) -> bool:
         """True when the first port's edge may still be moved outward: a free line or a strip leaves it."""
+        if hub.arrival is not None and hub.arrival.element in self.kit.launches:
+            return False
         if hub.bank or len(hub.arms) != 1 or hub.cluster is not None:
             return True
         end = hub.arms[0].end

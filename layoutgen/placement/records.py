@@ -193,11 +193,15 @@ class Choice:
 
 @dataclass(frozen=True, slots=True)
 class Choices:
-    """What the search decided, so that a drawing with slightly other lengths can be made the same way."""
+    """What the search decided, so that a drawing with slightly other lengths can be made the same way.
+
+    ``wide`` tells whether loops were drawn with the transistors and free lines on them.
+    """
 
     effort: int
     start: int
     ways: Mapping[str, Choice]
+    wide: bool = False
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -15,7 +15,8 @@ from itertools import chain, islice
 from layoutgen.circuit.queries import elements
 from layoutgen.placement.model import GROUND, Model
 from layoutgen.placement.records import Placement
-from layoutgen.placement.requests import with_angles, with_hint, with_size
+from layoutgen.placement.requests import with_angles, with_hint, with_port_order, with_size
+from layoutgen.placement.state import EDGES
 from layoutgen.reading import Hint
 from layoutgen.sizing import SizedCircuit
 from layoutgen.units import to_nm
@@ -49,7 +50,7 @@ class Remedies:
         layout = self.model.file.layout
         hinted = layout is not None and element in layout.hints
         first = (self._hints(element), self._sizes()) if hinted else (self._sizes(), self._hints(element))
-        some = chain(*first, self._short_lines(element))
+        some = chain(*first, self._port_orders(), self._short_lines(element))
         most = _MOST_TRIED if len(elements(self.model.file)) < _LARGE else 2
         return next((text for text in islice(some, most) if text is not None), self._plain(element))
 
@@ -97,6 +98,19 @@ class Remedies:
             return f"{' with '.join(texts)} in [layout.hints.{name}] would do"
         return f"without {' and '.join(keys)} in [layout.hints.{name}] there is a placement"
 
+    def _port_orders(self) -> Iterator[str | None]:
+        """Try the ports of an edge, of one edge after the other, in the opposite order."""
+        ports = self.model.file.ports
+        for edge in EDGES:
+            names = [name for name, port in ports.items() if port.edge == edge and port.at is None]
+            if len(names) < 2:
+                continue
+            back = iter(names[::-1])
+            order = [next(back) if name in names else name for name in ports]
+            does = self.tried(with_port_order(self.model.sized, order)) is not None
+            listed = ", ".join(f"[ports.{name}]" for name in names[::-1])
+            yield f"{listed} in this order in the file would do" if does else None
+
     def _short_lines(self, element: str) -> Iterator[str | None]:
         """Try short lines that meet an element with greater angles."""
         model, near = self.model, set(self.model.owner_nets.get(element, ()))
@@ -120,6 +134,8 @@ class Remedies:
             return f"give up {' or '.join(sorted(keys))} in [layout.hints.{element}]"
         if element in file.ports:
             return f"another edge or at for {element}, or longer lines beside it"
+        if element in file.coupled:
+            return f"mode impedances nearer to each other for {element}, or narrower lines at its ends"
         return f'longer lines beside {element}, or length = "free" for one of them'
 
 

@@ -3,13 +3,13 @@
 from __future__ import annotations
 
 import math
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import replace
 
 from layoutgen.reading import CircuitFile, Hint
 from layoutgen.sizing import SizedCircuit
 
-__all__ = ["as_drawn_might_be", "with_angles", "with_free_line", "with_hint", "with_size"]
+__all__ = ["as_drawn_might_be", "with_angles", "with_free_line", "with_hint", "with_port_order", "with_size"]
 
 _UNLIKE = 3e-3  # step by which the pour as drawn may make one line's wavelength unlike the next one's [-]
 
@@ -32,6 +32,12 @@ def with_hint(sized: SizedCircuit, name: str, hint: Hint) -> SizedCircuit:
         return sized
     layout = file.layout.model_copy(update={"hints": {**file.layout.hints, name: hint}})
     return _with_file(sized, file.model_copy(update={"layout": layout}))
+
+
+def with_port_order(sized: SizedCircuit, names: Sequence[str]) -> SizedCircuit:
+    """Return the circuit with its ports in another order."""
+    file = sized.circuit.file
+    return _with_file(sized, file.model_copy(update={"ports": {name: file.ports[name] for name in names}}))
 
 
 def with_angles(sized: SizedCircuit, degrees: Mapping[str, float]) -> SizedCircuit:

@@ -29,6 +29,7 @@ from layoutgen.units import to_nm
 __all__ = ["RouteChoice", "Router"]
 
 _MM = 1_000_000
+_OPPOSITE = {"east": "west", "west": "east", "north": "south", "south": "north"}
 _STRETCHES = (0, 1 * _MM, 2 * _MM, 4 * _MM, 8 * _MM)
 _JOGS = (0, 2 * _MM, 5 * _MM)
 _TARGET_WORDS: tuple[Word, ...] = (
@@ -224,9 +225,25 @@ class Router:
                     yield RouteChoice(route, edge)
                 continue
             for route in self._stretched(end, word):
-                ended = _end_at(route, start, along, edge)
+                goal = self._whole_step(route, start, state, port, edge) if along is None else along
+                ended = _end_at(route, start, goal, edge)
                 if ended is not None and ended.legs[-1] >= route.legs[-1]:
                     yield RouteChoice(ended, edge)
+
+    def _whole_step(self, route: Route, start: Pose, state: State, port: str, edge: str) -> int | None:
+        """Return where a line to a port's launch ends [nm] so that the board comes in whole steps.
+
+        None where that is no matter: without a launch, or where the opposite edge is not settled.
+        """
+        length, opposite = self.runs.launch_length(port), _OPPOSITE[edge]
+        if not length or not state.bounds.known(opposite):
+            return None
+        ux, uy = unit(EDGES[edge])
+        inset = 0 if self.model.file.ports[port].to_edge else self.model.limits.edge
+        end = route_points(start, route)[1]
+        along, sign = (end.x if ux else end.y), round(ux + uy)
+        span = abs(round(along - state.bounds.at(opposite))) + length + inset
+        return along + sign * (-span % BOARD_STEP)
 
     def _least(self, end: End, word: Word, *, to_port: bool = True) -> tuple[int, ...]:
         if not word:
@@ -256,6 +273,8 @@ class Router:
         name = end.element
         x, y = target
         if x is None and y is None:
+            slanted = [word for word in words if _is_slanted(word)]
+            yield from (RouteChoice(route, edge) for route in self._slanted(end, start, state, slanted))
             for route in fixed_shapes(self.lengths.by_bends(name, state.roles), self.meetings.rules(end)):
                 if route.word in words:
                     yield RouteChoice(route, edge)
@@ -266,7 +285,8 @@ class Router:
             for word in words
             if len(word) < len(lengths)
             for least in (self._fixed_least(end, word),)
-            if (solved := solve_legs(word, least, start, total=lengths[len(word)], x=x, y=y)) is not None
+            for total in (self._total(name, word, state),)
+            if (solved := solve_legs(word, least, start, total=total, x=x, y=y)) is not None
         ]
         some = exact or self._nearly_to_edge(end, start, state, words, target, edge)
         yield from (RouteChoice(route, edge) for route in some)
@@ -301,6 +321,7 @@ class Router:
         along = None
         if state.bounds.known(edge):
             inset = 0 if record.to_edge else self.model.limits.edge
+            inset += self.runs.launch_length(port)
             along = round(state.bounds.at(edge) - (ux + uy) * inset)
         across = None
         low = "south" if ux else "west"
@@ -361,10 +382,26 @@ class Router:
             for word in words:
                 yield from (RouteChoice(route) for route in self._stretched(end, word))
             return
+        slanted = [word for word in words if _is_slanted(word)]
+        yield from (RouteChoice(route) for route in self._slanted(end, start, state, slanted))
         lengths = self.lengths.by_bends(end.element, state.roles)
         for route in fixed_shapes(lengths, self.meetings.rules(end)):
             if route.word in words:
                 yield RouteChoice(route)
+
+    def _slanted(self, end: End, start: Pose, state: State, words: list[Word]) -> Iterator[Route]:
+        """Yield routes of given length with turns that are no quarter turns, spare length spread evenly."""
+        for word in words:
+            total = self._total(end.element, word, state)
+            route = solve_legs(word, self._fixed_least(end, word), start, total=total)
+            if route is not None:
+                yield route
+
+    def _total(self, name: str, word: Word, state: State) -> int:
+        """Return the centre-line length [nm] of a line of given length with the turns of a word."""
+        if _is_slanted(word):
+            return self.lengths.length(name, word, state.roles)
+        return self.lengths.by_bends(name, state.roles)[len(word)]
 
     def _to_pose(self, end: End, start: Pose, target: Pose, state: State) -> Iterator[RouteChoice]:
         name = end.element
@@ -373,7 +410,7 @@ class Router:
         for word in _words_to(start.heading, target.heading):
             if lengths is not None and len(word) >= len(lengths):
                 continue
-            total = None if lengths is None else lengths[len(word)]
+            total = None if lengths is None else self._total(name, word, state)
             least = self._least(end, word, to_port=False) if free else self._fixed_least(end, word)
             route = solve_legs(word, least, start, total=total, x=target.x, y=target.y)
             if route is not None:
@@ -421,11 +458,18 @@ class Router:
             yield RouteChoice(route, edge)
 
 
+def _is_slanted(word: Word) -> bool:
+    """True for a word with a turn that is no quarter turn."""
+    return any(turn % 90.0 for turn in word)
+
+
 def _words_to(heading: float, wanted: float) -> list[Word]:
-    """Return the words that turn a heading [deg] to another: of quarter turns, or a single other turn."""
+    """Return the words that turn a heading [deg] to another: of quarter turns, and one other if need be."""
     turn = (wanted - heading) % 360.0
     if turn % 90.0:
-        return [(turn if turn < 180.0 else turn - 360.0,)]
+        turn = turn if turn < 180.0 else turn - 360.0
+        quarter = 90.0 if turn > 0 else -90.0
+        return [(turn,)] if abs(turn) < 90.0 else [(quarter, turn - quarter), (turn - quarter, quarter)]
     return [word for word in _TARGET_WORDS if sum(word) % 360.0 == turn]
 
 

@@ -53,6 +53,10 @@ class Runs:
     layer: Layer
     _known: dict[End, Run | None] = field(default_factory=dict)
 
+    def launch_length(self, port: str) -> int:
+        """Return how much short of its port's place a line ends [nm]: on the pad of a launch."""
+        return self.layer.kit.launch_length(port)
+
     def beyond(self, far: tuple[End, str] | None) -> Run | None:
         """Return what a line leads to from its far end; None when nothing there binds it.
 

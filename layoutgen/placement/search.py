@@ -80,6 +80,7 @@ class Search:
     def __post_init__(self) -> None:
         """Set the helpers up."""
         self.ways.fold_spine, self.ways.any_side = self.effort.fold_spine, self.effort.any_side
+        self.ways.layer.kit.turns_leads = self.effort.any_side
         table = clearance_table(self.model.limits, self.model.default_gap)
         self.neighbours = Neighbours(self.model, self.ways.lengths, table)
         self.margins = edge_margins(
@@ -142,7 +143,7 @@ class Search:
         while state.pending:
             pending = self._next(state)
             chosen = choices.ways.get(end_key(pending.end))
-            if chosen is None:
+            if chosen is None or (pending.cluster is None) != (chosen.plan is None):
                 return None
             base = self.ways.without(state, pending)
             way = self._way_like(pending, state, chosen)

@@ -9,7 +9,7 @@ from dataclasses import dataclass, field, replace
 from layoutgen.circuit import End
 from layoutgen.geometry import Point
 from layoutgen.placement.clearance import Kind, Obstacle, Obstacles
-from layoutgen.placement.frame import Box, Pose, box_around, hull, unit
+from layoutgen.placement.frame import Box, Pose, box_around, hull, slices_to_world, unit
 from layoutgen.placement.records import Choice
 from layoutgen.placement.tour import Headings
 from layoutgen.placement.words import Route
@@ -30,6 +30,7 @@ __all__ = [
     "corridor_box",
     "edge_of_heading",
     "leg_boxes",
+    "leg_slices",
     "nothing_laid",
 ]
 
@@ -301,6 +302,21 @@ def leg_boxes(points: tuple[Point, ...], width: int) -> list[Box]:
         _leg_box(points[i], points[i + 1], width, bend_before=i > 0, bend_after=i < last)
         for i in range(len(points) - 1)
     ]
+
+
+def leg_slices(points: tuple[Point, ...], width: int) -> list[list[Box]]:
+    """Return boxes [nm] that cover each leg of a line: one for a quarter turn, several for a slanted leg."""
+    out, last = [], len(points) - 2
+    for i, box in enumerate(leg_boxes(points, width)):
+        (ax, ay), (bx, by) = points[i], points[i + 1]
+        if ax == bx or ay == by:
+            out.append([box])
+            continue
+        before, after = width // 2 if i else 0, width // 2 if i < last else 0
+        pose = Pose(ax, ay, math.degrees(math.atan2(by - ay, bx - ax)) % 360.0)
+        length = math.ceil(math.dist((ax, ay), (bx, by)))
+        out.append(slices_to_world(pose, (-before, -(width // 2) - 1, length + after, width // 2 + 1)))
+    return out
 
 
 def _leg_box(a: Point, b: Point, width: int, *, bend_before: bool, bend_after: bool) -> Box:

@@ -63,7 +63,8 @@ def _host_reach(model: Model, hub: Hub, end: End) -> int:
     if hub.bank:
         return 0
     if len(others) == 1 and others[0].kind is EndKind.PAD:
-        return model.bodies[others[0].element].land_at(others[0]).along
+        body = model.bodies[others[0].element]
+        return max(0, -body.node_of(body.land_at(others[0])))
     halves = {other: model.widths.get(other.element, 0) // 2 for other in others}
     if hub.cluster is not None:
         return min(halves.values(), default=0)

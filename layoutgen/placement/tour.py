@@ -19,7 +19,7 @@ from layoutgen.placement.loops import Cluster, Loops, find_loops
 from layoutgen.placement.model import GROUND, Model
 from layoutgen.placement.twins import Twin, find_twins
 
-__all__ = ["ArmPlan", "Headings", "Hub", "Tour", "end_key", "plan_tour"]
+__all__ = ["MOST_ARMS", "ArmPlan", "Headings", "Hub", "Tour", "end_key", "plan_tour", "walked_hubs"]
 
 MOST_ARMS = 4
 
@@ -107,18 +107,19 @@ def end_key(end: End) -> str:
     return f"{end.element}:{end.index}"
 
 
-def plan_tour(model: Model, cut: frozenset[str] = frozenset()) -> Tour:
+def plan_tour(model: Model, cut: frozenset[str] = frozenset(), *, wide: bool = False) -> Tour:
     """Return the walk over a circuit.
 
     Args:
         model: The circuit.
         cut: Elements of clusters that are to be cut at a line, because no drawing of them was found.
+        wide: Whether clusters hold free RF lines and transistors, too.
 
     Raises:
         InfeasibleError: A loop that cannot be drawn in any way.
         WrongInputError: A junction has more than four arms.
     """
-    loops = find_loops(model.sized, cut)
+    loops = find_loops(model.sized, cut, wide=wide)
     walk = _Walk(model.circuit, loops)
     walk.run()
     faults = walk.crowded()
@@ -139,6 +140,13 @@ def plan_tour(model: Model, cut: frozenset[str] = frozenset()) -> Tour:
         walk.first_port,
         siblings,
     )
+
+
+def walked_hubs(circuit: Circuit, loops: Loops) -> Mapping[str, Hub]:
+    """Return every net as the walk meets it, also those with more arms than can be drawn."""
+    walk = _Walk(circuit, loops)
+    walk.run()
+    return walk.hubs
 
 
 class _Walk:

@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Iterator
+import itertools
+from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass, field, replace
 from functools import partial
 
 from layoutgen.circuit import End, EndKind
+from layoutgen.placement.bows import BowedSolver
 from layoutgen.placement.budgets import LineLengths
 from layoutgen.placement.cluster import ClusterPlan, ClusterSolver, Solution
 from layoutgen.placement.frame import Box, Pose, hull
@@ -20,6 +22,8 @@ from layoutgen.placement.routes import RouteChoice, Router
 from layoutgen.placement.runs import Runs
 from layoutgen.placement.state import EDGES, Growth, Pending, State
 from layoutgen.placement.tour import Headings, Tour, end_key
+from layoutgen.placement.turned import sides_of_leads
+from layoutgen.placement.wide import WideSolver, keeps_its_hand
 from layoutgen.placement.words import Word, route_points
 
 __all__ = ["Way", "Ways"]
@@ -58,6 +62,9 @@ class Ways:
     clusters: list[ClusterSolver] = field(init=False)
     fold_spine: bool = False
     any_side: bool = False
+    bows: bool = False
+    inside: Sequence[ClusterSolver] | None = None
+    known: dict[object, list[Solution]] = field(default_factory=dict)
     rooms: Rooms | None = field(init=False, default=None)
     _spine: frozenset[str] = field(init=False)
 
@@ -66,10 +73,15 @@ class Ways:
         kit = Kit(self.model, self.tour, self.lengths)
         self.layer = Layer(kit)
         self.router = Router(self.model, self.tour, self.lengths, Runs(self.layer))
-        known: dict[object, list[Solution]] = {}
         count = len(self.tour.loops.clusters)
-        self.clusters = [ClusterSolver(kit, self.router, k, known) for k in range(count)]
+        self.clusters = [self._solver(kit, k, self.known) for k in range(count)]
         self._spine = frozenset(self.model.circuit.spine)
+
+    def _solver(self, kit: Kit, number: int, known: dict[object, list[Solution]]) -> ClusterSolver:
+        """Return what draws a cluster."""
+        if self.inside is not None:
+            return WideSolver(kit, self.router, number, known, inside=self.inside)
+        return (BowedSolver if self.bows else ClusterSolver)(kit, self.router, number, known)
 
     def mate(self, pending: Pending, state: State) -> Pending | None:
         """Return the other end of a line that closes a loop, where that waits too."""
@@ -157,9 +169,15 @@ class Ways:
                 partial(layer.ports.arm, pending=pending, turn=turn),
             )
         else:
-            for side in (1, -1) if self._meets_bank(end) else (1,):
-                lay_part = partial(layer.pad_arm, pending=pending, turn=turn, bank_side=side)
-                yield Way(end.element, Choice(turn, side, heading=here), extent, 0.0, lay_part)
+            for more, side in itertools.product(self._offsets(), (1, -1) if self._meets_bank(end) else (1,)):
+                farther = replace(pending, offset=pending.offset + more)
+                lay_part = partial(layer.pad_arm, pending=farther, turn=turn, bank_side=side)
+                choice = Choice(turn, side, legs=(more,), heading=here)
+                yield Way(end.element, choice, extent, 0.0, lay_part)
+
+    def _offsets(self) -> tuple[int, ...]:
+        """Return how much farther from its node than it must a part may stand [nm]."""
+        return (0, self.model.limits.spacing) if self.any_side else (0,)
 
     def _line_ways(self, pending: Pending, turn: float, state: State, word: Word | None) -> Iterator[Way]:
         """Yield the ways of a line, for each role that it may have at a cluster it leads to."""
@@ -191,13 +209,15 @@ class Ways:
         promise: tuple[str, Headings] | None,
     ) -> Iterator[Way]:
         end, start = pending.end, pending.at.turned(turn)
-        straight = self._goes_straight(end) and not self.fold_spine
+        straight = self._goes_straight(end) and not self.fold_spine and not self._leads_back(end, start)
+        straight = straight and not (self.any_side and self._leaves_beside_lead(end))
         sides = (1, -1) if self._meets_bank(end) else (1,)
         weight = self.layer.lines.bend_weight(end)
         spread = self.rooms.routes(pending, start, state) if self.rooms is not None else None
         choices = self.router.choices(end, start, state, straight=straight) if spread is None else spread
+        back = self._leads_back(end, start)
         for choice in choices:
-            if word is not None and choice.route.word != word:
+            if (word is not None and choice.route.word != word) or (back and not choice.route.word):
                 continue
             last = (start.heading + sum(choice.route.word)) % 360.0
             if not self.router.leaves_as_hinted(end, start.heading, last):
@@ -259,6 +279,24 @@ class Ways:
                     stack.append(hub.arms[0].end)
         return False
 
+    def _leaves_beside_lead(self, end: End) -> bool:
+        """True for a line that leaves one of two signal leads side by side: the two must part."""
+        kit = self.layer.kit
+        pads = [other for other in self.model.circuit.nets[self._net(end)].ends if other.kind is EndKind.PAD]
+        bodies = [(kit.model.bodies[pad.element], pad) for pad in pads]
+        return any(bool(sides_of_leads(kit, body, body.land_at(pad))) for body, pad in bodies)
+
+    def _leads_back(self, end: End, start: Pose) -> bool:
+        """True for a free line of the straight path that leaves away from the edge to which the path goes."""
+        line = self.model.sized.lines[end.element]
+        last = self.model.file.ports.get(self.model.circuit.spine[-1])
+        if not line.free or last is None or last.edge is None or end.element not in self._spine:
+            return False
+        arrival = self.tour.hubs[self._net(end)].arrival
+        if arrival is None or arrival.kind is not EndKind.PAD:
+            return False  # it goes on from a port or a loop
+        return start.heading == (EDGES[last.edge] + 180.0) % 360.0
+
     def _goes_straight(self, end: End) -> bool:
         """True for an element of the straight path, unless it is one of two equal arms."""
         return end.element in self._spine and end_key(end) not in self.tour.siblings
@@ -290,14 +328,14 @@ class Ways:
         for solution in solver.solutions():
             if not self._keeps_promise(solver, solution, state):
                 continue
-            for mirror in (1, -1):
+            for mirror in (1,) if keeps_its_hand(solver) else (1, -1):
                 yield self._cluster_way(pending, state, solver, solution, mirror)
 
     def cluster_way(self, pending: Pending, state: State, plan: ClusterPlan, mirror: int) -> Way | None:
         """Return the way of a drawing chosen earlier, None where it no longer closes."""
         assert pending.cluster is not None  # asked for clusters only
         solver = self.clusters[pending.cluster]
-        solution = solver.solve_again(plan)
+        solution = None if mirror < 0 and keeps_its_hand(solver) else solver.solve_again(plan)
         if solution is None or not self._keeps_promise(solver, solution, state):
             return None
         return self._cluster_way(pending, state, solver, solution, mirror)

@@ -8,6 +8,7 @@ the legs are taken from a short list of tidy proportions.
 from __future__ import annotations
 
 import itertools
+import math
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 
@@ -18,8 +19,10 @@ __all__ = [
     "LegRules",
     "Route",
     "Word",
+    "bow_word",
     "fixed_shapes",
     "headings_of",
+    "is_bow",
     "least_legs",
     "meeting_routes",
     "reversed_word",
@@ -68,7 +71,8 @@ class LegRules:
     ``first`` and ``last`` are the least first and last legs when there is a bend (they clear what the line
     leaves and meets), ``clear`` a roomier first leg that lets the pour in between, ``fold`` the least middle
     leg, centre to centre, so that neighbouring legs keep the spacing rule, ``last_fold`` that of the last
-    fold, beside what the line meets, ``bend`` the reach of one bend.
+    fold, beside what the line meets, ``bend`` the reach of one bend. ``lead`` and ``tail`` are the least
+    first and last legs before a bend that turns little, ``apart`` the spacing of legs.
     """
 
     width: int
@@ -78,6 +82,9 @@ class LegRules:
     fold: int
     last_fold: int
     bend: int
+    lead: int = 0
+    tail: int = 0
+    apart: int = 0
 
     @classmethod
     def of(cls, width: int, spacing: int, reach: int, *, first: Reach, last: Reach, clear: int) -> LegRules:
@@ -95,7 +102,8 @@ class LegRules:
         finish = max(last.copper + reach, last.beside + width // 2 + _GRID)
         fold = max(width + spacing, 2 * reach + width // 4)
         last_fold = max(fold, width // 2 + spacing + last.half)
-        return cls(width, start, finish, max(clear, start), fold, last_fold, reach)
+        lead, tail = first.copper + reach, last.copper + reach
+        return cls(width, start, finish, max(clear, start), fold, last_fold, reach, lead, tail, spacing)
 
 
 def headings_of(start: float, word: Word) -> tuple[float, ...]:
@@ -124,7 +132,29 @@ def least_legs(word: Word, rules: LegRules) -> tuple[int, ...]:
     """Return the least length [nm] of each leg of a word."""
     if not word:
         return (1,)
+    if is_bow(word):
+        return _bow_legs(word[0], rules)
     return (rules.first, *_folds(len(word) - 1, rules), rules.last)
+
+
+def bow_word(angle: float) -> Word:
+    """Return the word of a bow: aside by an angle [deg], along, and back; it takes up a little surplus."""
+    return (angle, -angle, -angle, angle)
+
+
+def is_bow(word: Word) -> bool:
+    """True for a bow whose slanted legs are no right angles."""
+    return len(word) == 4 and word[0] % 90.0 != 0.0 and word == bow_word(word[0])
+
+
+def _bow_legs(angle: float, rules: LegRules) -> tuple[int, ...]:
+    """Return the least legs of a bow [nm]: bends do not meet, and legs that face each other keep apart."""
+    bend = rules.bend + rules.width // 8  # what a bend that turns little reaches farther than a right angle
+    room = 2 * bend + rules.width // 4
+    slant = max(room, math.ceil(rules.apart / math.cos(math.radians(angle))) + _GRID)
+    along = max(room, rules.apart + math.ceil(rules.width * abs(math.sin(math.radians(angle)))) + _GRID)
+    more = bend - rules.bend
+    return rules.lead + more, slant, along, slant, rules.tail + more
 
 
 def fixed_shapes(lengths: Sequence[int], rules: LegRules) -> Iterator[Route]:

@@ -21,7 +21,10 @@ def copper(placement: Placement) -> dict[str, tuple[str, shapely.Polygon]]:
         out[line.name] = (line.name, _notched(placement, set(line.nets), ring.polygon()))
     for pair in placement.pairs.values():
         for side, path in zip("ab", pair.paths, strict=True):
-            out[f"{pair.name}.{side}"] = (pair.name, stroke(path, pair.width).polygon())
+            start = 2 * "ab".index(side)
+            nets = set(pair.nets[start : start + 2]) - {"open"}
+            area = stroke(path, pair.width).polygon()
+            out[f"{pair.name}.{side}"] = (pair.name, _notched(placement, nets, area, pair.name))
     for strip in placement.strips:
         area = stroke(strip.path, strip.width).polygon()
         out[strip.name] = (strip.net, _notched(placement, {strip.net}, area))
@@ -33,14 +36,14 @@ def copper(placement: Placement) -> dict[str, tuple[str, shapely.Polygon]]:
     return out
 
 
-def _notched(placement: Placement, nets: set[str], area: shapely.Polygon) -> shapely.Polygon:
+def _notched(placement: Placement, nets: set[str], area: shapely.Polygon, of: str = "") -> shapely.Polygon:
     """Return copper that ends at one strip of a coupled pair without what lies beside the other strip.
 
     Only its last bit may be wider than the strip that it feeds: it keeps most of its area.
     """
     gap = placement.sized.circuit.rules.copper.min_gap * 1e9  # type: ignore[union-attr, operator]
     left = area
-    for pair in placement.pairs.values():
+    for pair in (pair for name, pair in placement.pairs.items() if name != of):
         own = [bool(nets & set(pair.nets[2 * side : 2 * side + 2])) for side in (0, 1)]
         for side, path in enumerate(pair.paths):
             if own[1 - side] and not own[side]:

@@ -15,6 +15,8 @@ from layoutgen.placement import Placement, place
 from layoutgen.reading import inputs_from_data
 from layoutgen.sizing import size_circuit
 from tests.placement.circuits import chip, line, through_with, two_ports
+from tests.placement.legal import faults
+from tests.placement.loop_circuits import side_longer
 
 AMPLIFIER = Path(__file__).parents[2] / "examples" / "telemetry_driver.toml"
 
@@ -59,6 +61,16 @@ def test_an_angle_moves_only_what_hangs_on_its_line(name: str) -> None:
     other = copy.deepcopy(data)
     other["lines"][name]["angle"] = f"{float(data['lines'][name]['angle'].split()[0]) + 1.0} deg"
     assert _shapes(placed(data), name) == _shapes(placed(other), name)
+
+
+@pytest.mark.parametrize(("name", "degrees"), [("s1", 1.0), ("s2", 0.5), ("v2", 2.0)])
+def test_a_degree_of_a_hybrids_side_bows_that_side_only(name: str, degrees: float) -> None:
+    """Catches a hybrid that no longer closes, or is drawn anew, for one degree of one of its sides."""
+    placement = placed(side_longer(name, degrees))
+    assert faults(placement) == []
+    assert {line for line in ("s1", "s2", "v1", "v2") if placement.lines[line].bends} == {name}
+    turns = [bend.turn for bend in placement.lines[name].bends]
+    assert len(turns) == 4 and max(map(abs, turns)) <= 45.0
 
 
 @pytest.mark.parametrize("name", ["stub_in", "drain_tab"])

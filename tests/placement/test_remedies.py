@@ -3,11 +3,13 @@
 from __future__ import annotations
 
 import re
+from typing import Any
 
 import pytest
 
 from layoutgen.errors import InfeasibleError
 from tests.placement.circuits import base, free, line, port, through_with
+from tests.placement.leads import pad, part
 from tests.placement.legal import faults
 from tests.placement.test_frames import HOLE, board, pinned, placed
 
@@ -62,3 +64,57 @@ def test_a_size_named_for_a_board_with_holes_leaves_a_way_round_them() -> None:
     assert size is not None
     data["board"]["size"] = [size[1], size[2]]
     assert faults(placed(data)) == []
+
+
+def crossed_outputs() -> dict[str, Any]:
+    """Return a part whose outputs would have to cross for their ports to come in file order."""
+    pads = {
+        "i": pad(-1.0, 0, 0.6, 0.35, "west"),
+        "a": pad(1.0, 0.65, 0.6, 0.35, "east"),
+        "b": pad(1.0, -0.65, 0.6, 0.35, "east"),
+    }
+    return base(
+        ports={"p": port("a", edge="west"), "upper": port("y", edge="east"), "lower": port("z", edge="east")},
+        lines={"in": free("a", "i"), "up": free("u", "y"), "down": free("d", "z")},
+        parts={"T1": part("three", {"i": "i", "a": "u", "b": "d"})},
+        footprints={"three": {"pads": pads}},
+    )
+
+
+def test_ports_whose_order_asks_for_a_crossing_are_told_the_other_order() -> None:
+    """Catches advice on lengths where only the order of two ports of one edge stands in the way."""
+    data = crossed_outputs()
+    with pytest.raises(InfeasibleError) as caught:
+        placed(data)
+    assert caught.value.remedy == "[ports.lower], [ports.upper] in this order in the file would do"
+    data["ports"] = {name: data["ports"][name] for name in ("p", "lower", "upper")}
+    assert faults(placed(data)) == []
+
+
+def test_what_is_too_near_is_told_with_its_distance_and_the_least_one() -> None:
+    """Catches a reason that names two elements and not what is kept between them."""
+    data = base(
+        ports={"p1": port("a"), "p2": port("z")},
+        lines={
+            "in": free("a", "m"),
+            "short": line("m", "n", angle="2.5 deg"),
+            "stub": line("n", angle="14 deg"),
+            "out": free("n", "z"),
+        },
+    )
+    with pytest.raises(InfeasibleError) as caught:
+        placed(data)
+    assert re.search(r"stub beside in \(0\.1\d\d mm between them, 0\.125 mm are kept\)", caught.value.reason)
+
+
+def test_ends_of_a_pair_that_lie_side_by_side_are_told_to_need_other_impedances() -> None:
+    """Catches advice on hints or boards where two wide lines begin side by side at narrow strips."""
+    pair = {"nets": ["i", "gnd", "o", "gnd"], "angle": "80 deg"}
+    data = base(
+        ports={"p1": port("a"), "p2": port("z")},
+        lines={"in": free("a", "i"), "out": free("o", "z")},
+        coupled={"comb": {**pair, "even_impedance": "75 ohm", "odd_impedance": "45 ohm"}},
+    )
+    with pytest.raises(InfeasibleError) as caught:
+        placed(data)
+    assert "impedances nearer to each other for comb" in caught.value.remedy
