@@ -8,7 +8,7 @@ from __future__ import annotations
 import math
 import time
 from collections.abc import Callable, Iterator, Mapping, Sequence
-from contextlib import contextmanager
+from contextlib import contextmanager, suppress
 from dataclasses import dataclass, replace
 from datetime import date
 from functools import partial
@@ -19,7 +19,8 @@ from layoutgen.aside import aside
 from layoutgen.checks import check
 from layoutgen.circuit import Circuit, build_circuit
 from layoutgen.errors import InfeasibleError, LayoutgenError
-from layoutgen.placement import Choices, PlacedLine, Placement, place
+from layoutgen.pins import loosened
+from layoutgen.placement import Choices, PlacedLine, Placement, fits, place
 from layoutgen.placement.likes import with_like_lines
 from layoutgen.reading import CircuitFile, RuleFile, read_inputs
 from layoutgen.response import NOTE_RULE, LengthFit, correct_lengths, respond
@@ -139,7 +140,7 @@ def _settled(circuit: Circuit, clock: _Clock, fit: Fit | None) -> tuple[Artwork,
     except _UncorrectableError as error:
         return _uncorrected(circuit, clock, str(error))
     except InfeasibleError:
-        settled = _sizes_without_places(circuit, clock, fit)
+        settled = _loosely_settled(circuit, clock, fit)
         if settled is None:
             raise
         best = _best_draft(settled, clock, fit)
@@ -194,23 +195,19 @@ def _best_draft(sized: SizedCircuit, clock: _Clock, fit: Fit | None) -> _Round:
     return best
 
 
-def _sizes_without_places(circuit: Circuit, clock: _Clock, fit: Fit | None) -> SizedCircuit | None:
-    """Return the sizes that settle without hints, on any board; None where no hint asks a place or legs.
+def _loosely_settled(circuit: Circuit, clock: _Clock, fit: Fit | None) -> SizedCircuit | None:
+    """Return sizes that settle with the hints loosened; the first that fit the hints, else the first of all.
 
-    Parts pinned where an earlier drawing had them leave their lines just the room that the settled lengths
-    take, which those of a first draft do not.
+    None where no hint asks a place or a length, or where nothing settles.
     """
-    layout = circuit.file.layout
-    if not any(hint.at or (hint.route and any(hint.route.lengths)) for hint in layout.hints.values()):
-        return None
-    board = circuit.file.board.model_copy(update={"size": None})
-    bare = layout.model_copy(update={"hints": {}})
-    free = circuit.file.model_copy(update={"board": board, "layout": bare})
-    try:
-        best = _best_draft(size_circuit(build_circuit(free, circuit.rules)), clock, fit)
-    except (LayoutgenError, _UncorrectableError):
-        return None
-    return replace(best.draft.placement.sized, circuit=circuit)
+    found: list[SizedCircuit] = []
+    for file in loosened(circuit.file):
+        with suppress(LayoutgenError, _UncorrectableError):
+            loose = _best_draft(size_circuit(build_circuit(file, circuit.rules)), clock, fit)
+            found.append(replace(loose.draft.placement.sized, circuit=circuit))
+            if fits(found[-1]):
+                return found[-1]
+    return found[0] if found else None
 
 
 @dataclass(frozen=True, slots=True, eq=False)

@@ -17,8 +17,8 @@ from layoutgen.sizing import (
     SizedLine,
     SizedPair,
     SizedRadial,
-    default_arms,
     default_budgets,
+    default_junctions,
     junction_flags,
 )
 from layoutgen.units import to_nm
@@ -121,7 +121,8 @@ def _flags(sized: SizedCircuit) -> SizeTable:
     rows += [(pair.name, flag) for pair in sized.pairs.values() for flag in pair.flags]
     rows += [(stub.name, flag) for stub in sized.radials.values() for flag in stub.flags]
     for net in sized.circuit.nets.values():
-        rows += [(net.name, flag) for flag in junction_flags(sized, net.name, default_arms(sized, net.name))]
+        for arms in default_junctions(sized, net.name):
+            rows += [(net.name, flag) for flag in junction_flags(sized, net.name, arms)]
     return SizeTable("Outside a formula's range", ("where", "formula, found (holds for)"), tuple(rows))
 
 

@@ -25,7 +25,7 @@ ORDER: tuple[tuple[str, ...], ...] = (
     ("foreign",),
     ("compare",),
     ("writers",),
-    ("aside",),
+    ("aside", "pins"),
     ("delivery", "size_report", "pipeline", "terminal", "wording"),
     ("watch",),
     ("cli",),

@@ -22,7 +22,7 @@ loop cannot be drawn, and ``remedies`` what would do, by placing ``requests`` th
 """
 
 from layoutgen.placement.model import copper_edge, hole_land
-from layoutgen.placement.place import place
+from layoutgen.placement.place import fits, place
 from layoutgen.placement.records import (
     Bend,
     Choice,
@@ -54,6 +54,7 @@ __all__ = [
     "Placement",
     "Strip",
     "copper_edge",
+    "fits",
     "hole_land",
     "place",
 ]

@@ -9,6 +9,7 @@ from itertools import islice
 
 from layoutgen.errors import InfeasibleError, LayoutgenError
 from layoutgen.placement.bows import closed_before
+from layoutgen.placement.chains import chained, holds_chain, told, unchained
 from layoutgen.placement.cluster import ClusterSolver
 from layoutgen.placement.explain import explain_loop
 from layoutgen.placement.finish import finish, frame_of
@@ -26,7 +27,7 @@ from layoutgen.placement.ways import Ways
 from layoutgen.placement.wide import holds_more
 from layoutgen.sizing import SizedCircuit
 
-__all__ = ["place"]
+__all__ = ["fits", "place"]
 
 _EFFORTS = (
     Effort(beam=4),
@@ -35,6 +36,9 @@ _EFFORTS = (
     Effort(beam=24, accepted=6, any_side=True, tight_edges=True, fold_spine=True),
 )
 _WIDE_EFFORTS = 2  # tried with loops drawn with all that lies on them
+_CHAINS = ((0.0, True), (1.0, False), (1.0, True), (3.0, False), (3.0, True))
+"""How chains are tried in turn where none as short as can be does: how much longer, whether combed."""
+
 _SHIFTS = (6_000_000, -6_000_000, 12_000_000, -12_000_000, 25_000_000, -25_000_000)
 
 
@@ -54,10 +58,18 @@ def place(sized: SizedCircuit, like: Choices | None = None) -> Placement:
         WrongInputError: A line has no positive length after its corrections, or a junction too many arms.
     """
     again = None if like is None else _as_before(sized, like)
-    found = again or _tried(sized, _EFFORTS)
+    found = again or _searched(sized)
     if isinstance(found, Placement):
         return found
     raise _infeasible(found, placed_before=like is not None)
+
+
+def fits(sized: SizedCircuit) -> bool:
+    """Tell whether a sized circuit has a placement, without looking for what would do where it has none."""
+    try:
+        return isinstance(_searched(sized), Placement)
+    except LayoutgenError:
+        return False
 
 
 @dataclass(frozen=True, slots=True)
@@ -69,12 +81,35 @@ class _Nothing:
     open_loop: ClusterSolver | None
 
 
+def _searched(sized: SizedCircuit) -> Placement | _Nothing:
+    """Return the placement of a circuit, with other chains where the shortest do not fit, or why none."""
+    found = _tried(sized, _EFFORTS)
+    if isinstance(found, _Nothing) and holds_chain(found.ways.model.sized):
+        return _with_other_chains(sized) or found
+    return found
+
+
+def _with_other_chains(sized: SizedCircuit) -> Placement | None:
+    """Return the placement of a circuit whose chains are longer, or the lines on them straight, or None."""
+    for longer, combed in _CHAINS:
+        found = _tried(sized, _EFFORTS, longer=longer, combed=combed)
+        if isinstance(found, Placement):
+            return _as_chained(found, longer, combed)
+    return None
+
+
+def _as_chained(found: Placement, longer: float, combed: bool) -> Placement:
+    """Return a placement that says how its chains were made."""
+    assert found.choices is not None  # it was searched for
+    return replace(found, choices=replace(found.choices, longer=longer, combed=combed))
+
+
 def _as_before(sized: SizedCircuit, like: Choices) -> Placement | None:
     """Return the placement that earlier choices give, None where they no longer fit.
 
     Lines at loops are drawn alike only where the loops do not close otherwise.
     """
-    walked = with_single_leads(sized)
+    walked = chained(with_single_leads(sized), like.longer, combed=like.combed)
     for circuit, notes in _variants(walked):
         model = Model(circuit)
         fit_leads(model)
@@ -82,7 +117,8 @@ def _as_before(sized: SizedCircuit, like: Choices) -> Placement | None:
         again = _again(ways, like)
         if again is not None:
             found = finish(model, ways.lengths, again, like.effort)
-            return _whole(_as_wide(found) if like.wide else found, sized, notes)
+            found = _whole(_as_wide(found) if like.wide else found, sized, notes)
+            return _as_chained(found, like.longer, like.combed)
     return None
 
 
@@ -97,19 +133,28 @@ def _variants(walked: SizedCircuit) -> Iterator[tuple[SizedCircuit, tuple[Note, 
 
 def _whole(found: Placement, sized: SizedCircuit, notes: tuple[Note, ...]) -> Placement:
     """Return a placement as one of the circuit asked for, with more notes."""
-    return replace(found, sized=replace(found.sized, circuit=sized.circuit), notes=found.notes + notes)
+    whole = unchained(found, sized)
+    return replace(whole, notes=whole.notes + notes)
 
 
-def _tried(sized: SizedCircuit, efforts: tuple[Effort, ...], *, closed: bool = False) -> Placement | _Nothing:
+def _tried(
+    sized: SizedCircuit,
+    efforts: tuple[Effort, ...],
+    *,
+    closed: bool = False,
+    longer: float = 0.0,
+    combed: bool = False,
+) -> Placement | _Nothing:
     """Return the placement by the first effort that finds one, or why there is none.
 
-    With ``closed``, a circuit with a loop that does not close without bows is not looked at further.
+    With ``closed``, a circuit with a loop that does not close without bows is not looked at further;
+    ``longer`` and ``combed`` are as for :func:`chained`.
 
     Raises:
         InfeasibleError: A loop without a line, which cannot be drawn as one with what lies on it, either.
     """
     notes: tuple[Note, ...] = ()
-    walked = with_single_leads(sized)
+    walked = chained(with_single_leads(sized), longer, combed=combed)
     try:
         ways, open_loop = _prepared(Model(walked))
     except InfeasibleError:
@@ -275,7 +320,7 @@ def _infeasible(nothing: _Nothing, *, placed_before: bool) -> InfeasibleError:
         return explain_loop(nothing.open_loop, _open_loop, _changed)
     model, failure = nothing.ways.model, nothing.failure
     element = failure.element if failure is not None else model.circuit.spine[0]
-    reason = failure.reason if failure is not None else "no placement was found"
+    reason = told(failure.reason, model.sized) if failure is not None else "no placement was found"
     if placed_before and model.sized.corrections:
         return InfeasibleError(element, reason, "the lengths before their correction would do")
     remedy = Remedies(model, _changed, lambda: _roomy(nothing.ways)).best(element)

@@ -195,13 +195,17 @@ class Choice:
 class Choices:
     """What the search decided, so that a drawing with slightly other lengths can be made the same way.
 
-    ``wide`` tells whether loops were drawn with the transistors and free lines on them.
+    ``wide`` tells whether loops were drawn with the transistors and free lines on them; ``longer`` how much
+    longer the strips of chains are than their arms ask, in widths of the spacing rule [-], and ``combed``
+    whether the lines that leave them sideways are straight.
     """
 
     effort: int
     start: int
     ways: Mapping[str, Choice]
     wide: bool = False
+    longer: float = 0.0
+    combed: bool = False
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -13,6 +13,7 @@ from dataclasses import dataclass
 from itertools import chain, islice
 
 from layoutgen.circuit.queries import elements
+from layoutgen.placement.chains import is_strip
 from layoutgen.placement.model import GROUND, Model
 from layoutgen.placement.records import Placement
 from layoutgen.placement.requests import with_angles, with_hint, with_port_order, with_size
@@ -70,7 +71,8 @@ class Remedies:
     def _hints(self, element: str) -> Iterator[str | None]:
         """Try what comes out when a hint, that of the element first, is given up in part."""
         layout = self.model.file.layout
-        hints = {} if layout is None else dict(layout.hints)
+        held = {} if layout is None else layout.hints
+        hints = {name: hint for name, hint in held.items() if not is_strip(name)}
         for name in sorted(hints, key=lambda name: name != element):
             for keys in _PARTS_OF_HINT:
                 if all(getattr(hints[name], key) is not None for key in keys):
@@ -126,7 +128,8 @@ class Remedies:
     def _plain(self, element: str) -> str:
         """Return what can be changed for the kind of element, where nothing that was tried does."""
         file = self.model.file
-        hint = file.layout.hints.get(element) if file.layout is not None else None
+        asked = file.layout is not None and not is_strip(element)
+        hint = file.layout.hints.get(element) if asked else None
         keys = (
             [] if hint is None else [key for key in hint.model_fields_set if getattr(hint, key) is not None]
         )

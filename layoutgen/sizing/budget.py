@@ -30,6 +30,7 @@ __all__ = [
     "cross_order",
     "default_arms",
     "default_budgets",
+    "default_junctions",
     "halved",
     "junction_corrections",
     "junction_flags",
@@ -41,6 +42,9 @@ __all__ = [
 ]
 
 Turns = Sequence[tuple[float, float]]
+
+_MOST_ARMS = 4
+_SIDES = (90.0, 270.0)
 
 
 def line_budget(
@@ -168,8 +172,9 @@ def _default_ends(sized: SizedCircuit) -> dict[str, list[BudgetEntry]]:
         if net == GROUND:
             continue
         arms = default_arms(sized, net)
-        for (element, _), entry in junction_corrections(sized, net, arms[:4]).items():
-            found.setdefault(element, []).append(entry)
+        for junction in default_junctions(sized, net):
+            for (element, _), entry in junction_corrections(sized, net, junction).items():
+                found.setdefault(element, []).append(entry)
         for arm in arms:
             if arm.is_line and len(arms) == 2 and not all(other.is_line for other in arms):
                 other = next(other for other in arms if not other.is_line)
@@ -201,16 +206,36 @@ def _far_ends(sized: SizedCircuit, name: str) -> list[BudgetEntry]:
 def default_arms(sized: SizedCircuit, net: str) -> tuple[Arm, ...]:
     """Return the arms that meet in a net, with the headings they have before anything is placed.
 
-    The two that follow one another on the spine, else the two widest, point east and west; further ones
+    The two that follow one another on the spine, else the two widest, point west and east; further ones
     north, south, and so on. Ports and radial stubs are no arms.
     """
     circuit = sized.circuit
     arms = [arm for end in circuit.nets[net].ends if (arm := _arm(sized, end)) is not None]
     mains = _mains(circuit, arms)
     rest = [arm for arm in arms if arm not in mains]
-    headings = [90.0, 270.0, 45.0, 135.0, 225.0, 315.0]
+    headings = [*_SIDES, 45.0, 135.0, 225.0, 315.0]
     straight = [replace(arm, heading_deg=heading) for arm, heading in zip(mains, (180.0, 0.0), strict=False)]
     return (*straight, *(replace(arm, heading_deg=headings[i % 6]) for i, arm in enumerate(rest)))
+
+
+def default_junctions(sized: SizedCircuit, net: str) -> tuple[tuple[Arm, ...], ...]:
+    """Return the arms of a net by junction: one of up to four arms, or a chain of them joined by strips.
+
+    The arms are those of :func:`default_arms`; a chain has its straight ones at its ends, and two of the
+    others at each junction. A strip is an arm without an element, as wide as the wider straight arm. Banks
+    and ``gnd`` are no junctions: all of their arms are returned as one.
+    """
+    arms = default_arms(sized, net)
+    if len(arms) <= _MOST_ARMS or sized.circuit.nets[net].bank or net == GROUND:
+        return (arms,)
+    first, last, *rest = arms
+    width = max(first.width, last.width)
+    back, on = (Arm("", -1, heading, width, is_line=False) for heading in (180.0, 0.0))
+    found = []
+    for k in range(0, len(rest), 2):
+        sides = (replace(arm, heading_deg=side) for arm, side in zip(rest[k : k + 2], _SIDES, strict=False))
+        found.append((back if k else first, *sides, on if k + 2 < len(rest) else last))
+    return tuple(found)
 
 
 def _mains(circuit: Circuit, arms: Sequence[Arm]) -> list[Arm]:

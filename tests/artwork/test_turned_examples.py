@@ -14,6 +14,7 @@ import shapely
 from layoutgen.artwork import Artwork, draw
 from layoutgen.circuit import build_circuit
 from layoutgen.geometry import Ring
+from layoutgen.pipeline import run_inputs
 from layoutgen.placement import place
 from layoutgen.reading import inputs_from_data
 from layoutgen.sizing import size_circuit
@@ -105,6 +106,20 @@ def test_turned_hints_turn_every_layer(name: str, how: str) -> None:
 def test_a_drawing_pinned_by_its_own_hints_is_the_same(name: str) -> None:
     """Catches a turned copy that is compared with a drawing that has nothing to do with the file's own."""
     assert _differing(_plain(name)[1], _at_rest(name, pinned=True), Move()) == []
+
+
+@pytest.mark.parametrize(("name", "how"), [("shorted_stub_tee", "mirrored"), ("telemetry_driver", "90")])
+def test_copies_pinned_by_settled_drawings_settle_where_these_did(name: str, how: str) -> None:
+    """A first draft's widths and lengths are not the settled ones: pins that fit only these were refused."""
+    data = tomllib.loads((_EXAMPLES / f"{name}.toml").read_text(encoding="utf-8"))
+    settled = _settled(data)
+    copied = _settled(turned(data, settled.placement, _MOVES[how], pinned=True))
+    assert _differing(settled, copied, _MOVES[how]) == []
+
+
+def _settled(data: dict[str, Any]) -> Artwork:
+    inputs = inputs_from_data(data)
+    return run_inputs(inputs.circuit, inputs.rules).artwork
 
 
 def test_the_comparison_sees_three_nanometres() -> None:

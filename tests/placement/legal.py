@@ -93,7 +93,10 @@ def loose_ends(placement: Placement) -> list[str]:
 
 
 def parted_ends(placement: Placement) -> list[str]:
-    """Return nets, banks excepted, whose lines do not end in one and the same point, to the nanometre."""
+    """Return nets, banks excepted, whose lines do not end in one and the same point, to the nanometre.
+
+    Where more than four ends meet, they may end at the ends of the net's strips.
+    """
     circuit = placement.sized.circuit
     out = []
     for net in circuit.nets.values():
@@ -105,7 +108,8 @@ def parted_ends(placement: Placement) -> list[str]:
             for index, name in enumerate(line.nets)
             if name == net.name
         }
-        if len(ends) > 1:
+        strips = {at for s in placement.strips if s.net == net.name for at in (s.path[0], s.path[-1])}
+        if len(ends) > 1 and not (len(net.ends) > 4 and ends <= strips):
             out.append(f"{net.name}: {sorted(ends)}")
     return out
 

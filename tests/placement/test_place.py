@@ -205,13 +205,6 @@ def test_too_short_a_line_is_wrong_input() -> None:
     assert caught.value.faults[0].key.startswith("lines.tail")
 
 
-def test_more_than_four_arms_is_wrong_input() -> None:
-    """Catches a fifth arm drawn over another."""
-    stubs = {f"s{k}": line("n", angle=f"{20 + k} deg") for k in range(4)}
-    with pytest.raises(WrongInputError, match="arms"):
-        placed(through_with({"mid": line("n", "m", angle="60 deg"), **stubs}))
-
-
 def test_input_and_output_stay_on_their_sides_of_the_transistor() -> None:
     """Catches a gate feed laid beside the output, where the two would couple."""
     inputs = read_inputs(next(path for path in EXAMPLES if path.stem == "telemetry_driver"))
