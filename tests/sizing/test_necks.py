@@ -113,12 +113,15 @@ def test_the_board_would_fail_with_the_mitre_of_a_match() -> None:
     result = run_inputs(circuit_from_data(CIRCUIT), rules_from_data(RULES))
     artwork = result.artwork
     line = artwork.placement.lines["supply"]
-    copper = stroke(line.path, line.width, [mitre_for_turn(58.0, 90.0, line.width, 0.0)] * len(line.bends))
+    mitre = mitre_for_turn(58.0, 90.0, line.width, 0.0)
+    copper = stroke(line.path, line.width, [mitre] * len(line.bends))
     shapes = tuple(
         shape if shape.origin.element != "supply" or shape.role != "line" else replace(shape, outline=copper)
         for shape in artwork.shapes
     )
-    found = check(replace(artwork, shapes=shapes)).findings
+    told = replace(line, bends=tuple(replace(bend, mitre_percent=mitre) for bend in line.bends))
+    placement = replace(artwork.placement, lines={**artwork.placement.lines, "supply": told})
+    found = check(replace(artwork, placement=placement, shapes=shapes)).findings
     assert {f.rule for f in found if f.severity == "error"} == {"current.max_density"}
     assert {f.items for f in found if f.severity == "error"} == {("supply",)}
 
