@@ -20,10 +20,11 @@ from layoutgen.artwork.mask import bottom_openings, paste_shapes, soldered_pads,
 from layoutgen.artwork.measure import measured_gaps
 from layoutgen.artwork.pad_vias import with_pad_vias
 from layoutgen.artwork.plane import plane_shapes
-from layoutgen.artwork.pour import ground_pieces, pour_of
+from layoutgen.artwork.pour import ground_pieces, own_ground, pour_of
 from layoutgen.artwork.records import LAYERS, Artwork, Shape, Via
+from layoutgen.artwork.slits import with_bridges
 from layoutgen.artwork.stitching import fence, stitch_cutouts, stitch_rest, stitchable, well_held
-from layoutgen.geometry import Point, Ring, offset_ring, offset_rings
+from layoutgen.geometry import Point, Ring, joined, offset_ring, offset_rings, pieces
 from layoutgen.origin import Origin
 from layoutgen.placement import Placement
 
@@ -86,8 +87,7 @@ def sketch(placement: Placement) -> Sketch:
     attitude = attitude_of(placement)
     plain = moved(placement, attitude)
     conductors = conductors_of(plain, limits)
-    laid = with_pad_vias(plain, limits, conductors)
-    pour = pour_of(laid, limits, conductors) if limits.pour else []
+    laid, pour = _poured(with_pad_vias(plain, limits, conductors), limits, conductors)
     bare = [pad.outline for _, pad in soldered_pads(laid)]
     bare += [ring for ring, _ in hole_lands(laid, limits)]
     area = legal_area(laid, limits, pour, conductors, bare)
@@ -101,6 +101,18 @@ def sketch(placement: Placement) -> Sketch:
         area=area,
         pour=stitchable(pour, area, limits, laid),
     )
+
+
+def _poured(
+    placement: Placement, limits: Limits, conductors: Sequence[Conductor]
+) -> tuple[Placement, list[shapely.Polygon]]:
+    """Return a placed board with its slits between lands bridged, and its pour."""
+    pour = pour_of(placement, limits, conductors) if limits.pour else []
+    ground = joined([*pour, *pieces(own_ground(placement, limits))])
+    bridged = with_bridges(placement, limits, conductors, ground)
+    if bridged is placement or not limits.pour:
+        return bridged, pour
+    return bridged, pour_of(bridged, limits, conductors)
 
 
 def complete(drawn: Sketch) -> Artwork:

@@ -6,7 +6,7 @@ import math
 from dataclasses import dataclass
 
 from layoutgen.formulas.constants import C0
-from layoutgen.placement import copper_edge, hole_land
+from layoutgen.placement import DEFAULT_GAP, copper_edge, hole_land
 from layoutgen.reading import FenceRules, LegendRules, MaskRules
 from layoutgen.sizing import SizedCircuit
 from layoutgen.units import to_nm
@@ -19,7 +19,7 @@ _FENCE_WAVELENGTHS = 0.05
 _ROOM_NM = 100_000
 
 # What is drawn by where the rule file is silent: common practice, no source. None of it is checked.
-_MIN_WIDTH, _MIN_GAP = 150_000, 150_000
+_MIN_WIDTH = 150_000
 _ISLAND_NM2, _CORNER_DEG = 500_000.0 * 1e6, 85.0
 _HOLE_WEB, _HOLE_COPPER, _HOLE_EDGE = 300_000, 200_000, 500_000
 _MASK_EXPANSION, _MASK_WEB = 50_000, 100_000
@@ -89,7 +89,7 @@ def limits_of(sized: SizedCircuit) -> Limits:
         pour=file.ground is not None,
         fence=file.ground is not None and file.ground.fence,
         min_width=min_width,
-        min_gap=_nm(copper.min_gap, _MIN_GAP),
+        min_gap=_nm(copper.min_gap, DEFAULT_GAP),
         edge=edge,
         margin=margin,
         island=_ISLAND_NM2 if copper.min_island_area is None else copper.min_island_area * 1e18,

@@ -19,7 +19,7 @@ from layoutgen.artwork.board import BOARD, board_area, board_outline, cutouts_of
 from layoutgen.artwork.conductors import Conductor
 from layoutgen.artwork.limits import Limits
 from layoutgen.artwork.records import Shape
-from layoutgen.geometry import Ring, circumscribed, closed, grow, joined, overlap, pieces, rings_of
+from layoutgen.geometry import Ring, circumscribed, closed, grow, joined, overlap, pieces, rings_of, stroke
 from layoutgen.placement import PlacedPad, PlacedPart, PlacedPort, Placement
 
 __all__ = ["bottom_openings", "paste_shapes", "soldered_pads", "top_openings"]
@@ -44,8 +44,38 @@ def top_openings(placement: Placement, limits: Limits, conductors: Sequence[Cond
     bare += [_hole(hole.x, hole.y, hole.diameter) for hole in placement.holes]
     bare += [ring.polygon() for ring, _ in hole_lands(placement, limits)]
     grown = joined(grow(copper, limits.mask_expansion) for copper in bare)
-    merged = overlap(closed(grown, limits.mask_web / 2.0), board_area(placement))
+    ganged = _ganged(closed(grown, limits.mask_web / 2.0), limits, conductors)
+    merged = overlap(ganged, board_area(placement))
     return [_opening("soldermask_top", piece) for piece in pieces(merged)]
+
+
+def _ganged(openings: BaseGeometry, limits: Limits, conductors: Sequence[Conductor]) -> BaseGeometry:
+    """Return openings with those made one that still lie nearer to each other than a web is wide.
+
+    Closing leaves webs where a corner faces another opening. A bridge joins the two there (common practice,
+    no source), where no pour comes.
+    """
+    parts = np.array(pieces(openings), dtype=object)
+    tree = shapely.STRtree(parts)
+    first, second = tree.query(parts, predicate="dwithin", distance=limits.mask_web - 1.0)
+    pairs = sorted((i, j) for i, j in zip(first.tolist(), second.tolist(), strict=True) if i < j)
+    if not pairs:
+        return openings
+    bridges = [_bridge(parts[i], parts[j], limits.mask_web) for i, j in pairs]
+    pourless = closed(joined(piece.keepout for piece in conductors), limits.min_width / 2.0)
+    return joined([openings, overlap(joined(bridges), pourless)])
+
+
+def _bridge(a: BaseGeometry, b: BaseGeometry, web: int) -> BaseGeometry:
+    """Return what joins two openings where they are nearest: as wide as a web, and as far into both."""
+    (x0, y0), (x1, y1) = shapely.get_coordinates(shapely.shortest_line(a, b)).tolist()
+    apart = math.dist((x0, y0), (x1, y1))
+    if apart < 1.0:  # they touch at a corner
+        touching: BaseGeometry = shapely.box(x0 - web / 2.0, y0 - web / 2.0, x0 + web / 2.0, y0 + web / 2.0)
+        return touching
+    more = web / apart
+    dx, dy = more * (x1 - x0), more * (y1 - y0)
+    return stroke([(round(x0 - dx), round(y0 - dy)), (round(x1 + dx), round(y1 + dy))], web).polygon()
 
 
 def _landing(port: PlacedPort, copper: shapely.STRtree) -> BaseGeometry:

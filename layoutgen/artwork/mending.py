@@ -187,11 +187,13 @@ def _is_mended(
     before = [other.excess(drills) for other in about]
     taken = drills.take(loose)
     chain = _best_chain(row, feet, loose, drills)
-    put = [(x, y) for x, y in chain if drills.put(x, y)]
+    kept = len(drills.added)
+    for x, y in chain:
+        drills.put(x, y)
     after = [other.excess(drills) for other in about]
     worse = any(new > old + 1.0 for new, old in zip(after, before, strict=True))
     if worse or sum(after) >= sum(before) - 1.0:
-        drills.take([(round(x), round(y)) for x, y in put])
+        drills.take(drills.added[kept:])  # where they were set, which may be on an axis beside the place
         drills.give(taken)
         return False
     return True

@@ -30,7 +30,7 @@ from layoutgen.geometry import (
 from layoutgen.origin import Origin
 from layoutgen.placement import Placement
 
-__all__ = ["ground_pieces", "pour_of", "washed", "without_necks"]
+__all__ = ["ground_pieces", "own_ground", "pour_of", "washed", "without_necks"]
 
 _CORNER_CHORD_NM = 20_000.0
 _WASH_NM = 20
@@ -52,7 +52,7 @@ def ground_pieces(placement: Placement, limits: Limits) -> list[tuple[str, Ring,
     return pads + [("land", ring, origin) for ring, origin in hole_lands(placement, limits)]
 
 
-def _own_ground(placement: Placement, limits: Limits) -> BaseGeometry:
+def own_ground(placement: Placement, limits: Limits) -> BaseGeometry:
     """Return the ground copper that came with parts and lines [nm]: pads, pieces, lands of vias."""
     flat = [ring for role, ring, _ in ground_pieces(placement, limits) if role != "land"]
     shapes: list[BaseGeometry] = [ring.polygon() for ring in flat]
@@ -73,7 +73,7 @@ def pour_of(placement: Placement, limits: Limits, conductors: Sequence[Conductor
     """
     board = plane_area(placement, limits, limits.margin, _CORNER_CHORD_NM)
     allowed = cut(board, _keepout(placement, limits, conductors))
-    own = _own_ground(placement, limits)
+    own = own_ground(placement, limits)
     filled = overlap(closed(joined([allowed, own]), limits.min_gap / 2.0), allowed)
     spaced = _spaced(filled, own, limits)
     solid = without_necks(spaced, own, limits.row, limits)

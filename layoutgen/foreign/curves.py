@@ -17,6 +17,9 @@ _MOST = 100_000
 """Chords of one curve at most [-]."""
 _WIDEST_GAP = 1.0
 """Widest angle between neighbouring vertices of what counts as a circle [rad]."""
+_ROUND_STEPS_NM = (10_000.0, 1_000.0, 100.0, 10.0)
+_COARSEST_GRID_NM = 1_000
+"""Widest grid that vertices are taken to be rounded to [nm]."""
 
 
 def _steps(radius: float, sweep: float, tolerance: float) -> int:
@@ -96,9 +99,12 @@ def _bulge_arc(start: Floats, end: Floats, bulge: float, tolerance: float) -> Fl
 def fitted_circle(points: Floats, off: float) -> tuple[float, float, float] | None:
     """Return middle and diameter of the circle on which all points (N, 2) lie; None when they do not.
 
+    Vertices rounded to a grid tell the diameter to that grid's diagonal only: of the diameters within it the
+    roundest is returned, in steps of 10 um, 1 um, 100 nm or 10 nm.
+
     Args:
-        points: Vertices of an outline, the first not repeated.
-        off: How far a vertex may lie off the circle, in the unit of the coordinates.
+        points: Vertices of an outline, the first not repeated [nm].
+        off: How far a vertex may lie off the circle [nm].
     """
     if len(points) < _FEWEST:
         return None
@@ -116,4 +122,12 @@ def fitted_circle(points: Floats, off: float) -> tuple[float, float, float] | No
     gaps = np.diff(np.append(turns, turns[0] + 2.0 * np.pi))
     if float(np.abs(radii - radius).max()) > off or float(gaps.max()) > _WIDEST_GAP:
         return None
-    return float(centre[0] + middle[0]), float(centre[1] + middle[1]), 2.0 * radius
+    return float(centre[0] + middle[0]), float(centre[1] + middle[1]), _roundest(2.0 * radius, points)
+
+
+def _roundest(diameter: float, points: Floats) -> float:
+    """Return the roundest diameter [nm] within what the grid of the vertices (N, 2) [nm] leaves open."""
+    whole = np.rint(points).astype(np.int64)
+    grid = min(int(np.gcd.reduce(whole - whole[0], axis=None)), _COARSEST_GRID_NM)
+    near = (step * round(diameter / step) for step in _ROUND_STEPS_NM)
+    return next((size for size in near if abs(size - diameter) <= math.sqrt(2.0) * grid), diameter)

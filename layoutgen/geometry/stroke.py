@@ -76,7 +76,7 @@ def stroke(path: Sequence[Point], width: int, mitres: Sequence[float] = ()) -> R
     for i in range(1, len(path) - 1):
         _bend(path[i - 1], path[i], path[i + 1], half, mitres[i - 1] if mitres else 0.0, left, right)
     _square_end(path[-2], path[-1], path[-1], half, left, right)
-    return Ring(tuple(right + left[::-1]))
+    return Ring(tuple(point for point, _ in itertools.groupby(right + left[::-1])))
 
 
 def _square_end(a: Point, b: Point, at: Point, half: float, left: list[Point], right: list[Point]) -> None:

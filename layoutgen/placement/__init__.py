@@ -19,9 +19,10 @@ the best drawings so far, rejecting by ``clearance`` and ``neighbours``, and wha
 ``twins`` finds equal branches, which are laid alike, and ``rooms`` makes room for them. ``finish`` settles
 the board's frame. ``stubs`` refuses stubs that would lie inside what they leave, ``explain`` says why a
 loop cannot be drawn, and ``remedies`` what would do, by placing ``requests`` that differ a little.
+``made`` has a placement tell how it was made, and what was given up for it: distances, the straight path.
 """
 
-from layoutgen.placement.model import copper_edge, hole_land
+from layoutgen.placement.model import DEFAULT_GAP, copper_edge, hole_land
 from layoutgen.placement.place import fits, place
 from layoutgen.placement.records import (
     Bend,
@@ -40,6 +41,7 @@ from layoutgen.placement.records import (
 )
 
 __all__ = [
+    "DEFAULT_GAP",
     "Bend",
     "Choice",
     "Choices",

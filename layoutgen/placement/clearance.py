@@ -2,7 +2,7 @@
 
 Everything laid is kept as axis-parallel boxes (exact for routes of right angles, a little larger than the
 copper otherwise). Two things that meet in a net are compared without the part of each line that lies within
-the spacing rule of the shared node: there they are meant to be near.
+three substrate heights, or the spacing rule if more, of the shared node: there they are meant to be near.
 """
 
 from __future__ import annotations

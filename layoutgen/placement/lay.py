@@ -285,7 +285,7 @@ class Layer:
         body, land = left
         back = ahead(outer, -OVERLAP).point
         if end.kind is EndKind.PORT:
-            start = ahead(outer, self.kit.model.limits.spacing)
+            start = ahead(outer, self.kit.model.limits.near)
             self.ports.by_strip(growth, end, start, back, land.across)
             return
         other = self.kit.model.bodies[end.element]

@@ -3,9 +3,10 @@
 Three things follow from leads in a row. Pads of one part on one net are one conductor: those that face the
 same way with nothing between are covered by a bar across, others are bonded by a strip under the part's body
 where there is room; the walk then meets one pad. A line wider than its lead's share of the row begins beyond
-the row, at the end of a strip as wide as the lead. And the vias of ground pads stand where they leave the
-ways of the signal leads free: in a row across just outside the pad where that does, else in a column, to one
-side, or under the body (common practice, no source).
+the row, at the end of a strip as wide as the lead. (So does a chip wider than the pair's strip that it ends,
+beyond the pair.) And the vias of ground pads stand where they leave the ways of the signal leads free: in a
+row across just outside the pad where that does, else in a column, to one side, or under the body (common
+practice, no source).
 """
 
 from __future__ import annotations
@@ -25,6 +26,7 @@ from layoutgen.placement.launches import is_launch, launches_of
 from layoutgen.placement.model import GROUND, Limits, Model
 from layoutgen.placement.state import leg_boxes
 from layoutgen.sizing import Arm, BudgetEntry, SizedCircuit, junction_corrections
+from layoutgen.units import to_nm
 
 __all__ = ["LeadLengths", "fit_leads", "with_single_leads"]
 
@@ -103,6 +105,8 @@ def fit_leads(model: Model) -> None:
     for name, plain in model.bodies.items():
         if len(plain.lands) > 2 and not plain.nodes:
             model.bodies[name] = _with_nodes(model, _with_vias(model, _joined(plain, model.limits)))
+        elif not plain.nodes:
+            model.bodies[name] = replace(plain, nodes=tuple(_nodes_beyond_pairs(model, plain)))
 
 
 def _joined(body: PartBody, limits: Limits) -> PartBody:
@@ -208,6 +212,22 @@ def _with_nodes(model: Model, body: PartBody) -> PartBody:
         )
         nodes[body.land_at(end).pin] = node
     return replace(body, nodes=tuple(nodes.items()))
+
+
+def _nodes_beyond_pairs(model: Model, body: PartBody) -> Iterator[tuple[str, int]]:
+    """Yield the pins of a two-pad part that are wider than the pair's strip they end, and how far off it is.
+
+    On the strip such a pad would be nearer to the other one than the pair's gap: it begins beyond the strips'
+    ends by that gap, at the end of a strip as wide as the pair's.
+    """
+    for end, net in model.ends[body.name]:
+        if net == GROUND or not body.land_at(end).has_copper:
+            continue
+        others = [other for other in model.circuit.nets[net].ends if other != end]
+        if len(others) == 1 and others[0].kind is EndKind.COUPLED:
+            pair = model.sized.pairs[others[0].element]
+            if body.land_at(end).across > to_nm(pair.width):
+                yield body.land_at(end).pin, max(to_nm(pair.gap), model.limits.gap)
 
 
 def _lone_line(model: Model, net: str, pad: End) -> int | None:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from dataclasses import dataclass
 
 from layoutgen.circuit import End, EndKind
@@ -9,12 +10,15 @@ from layoutgen.geometry import Point
 from layoutgen.placement.clearance import Kind, Obstacle
 from layoutgen.placement.frame import Pose, box_to_world, to_world
 from layoutgen.placement.kit import Kit, root_edge
+from layoutgen.placement.model import GROUND
 from layoutgen.placement.state import Growth, LaidLine, Pending, leg_slices
 from layoutgen.placement.words import Route, route_points
 
 __all__ = ["Lines"]
 
-_RF_BEND_WEIGHT = 10.0  # a fold in a stub must save ten times what one in a feed must
+_RF_BEND_WEIGHT = 10.0  # a fold in a matching line must save ten times what one in a feed must
+_STUB_BEND_WEIGHT = 200.0  # a short stub folds where something is in its way, not to save room
+_SHORT_STUB = math.radians(100.0)  # a quarter wave and a little more
 
 
 @dataclass(slots=True)
@@ -55,11 +59,21 @@ class Lines:
         growth.use(self.kit.net(mate.end), arrival.heading + 180.0)
 
     def bend_weight(self, end: End) -> float:
-        """Return what a bend counts for: a feed or supply may fold, a stub or matching line better not."""
+        """Return what a bend counts for: a feed or supply may fold, matching lines better not, stubs last."""
+        if self._is_short_stub(end):
+            return _STUB_BEND_WEIGHT
         tour = self.kit.tour
         feeds = tour.leads_to_port.get((end.element, end.index), False) or end.element in tour.loops.closers
         off_path = end.element not in self.kit.model.circuit.spine
         return 1.0 if off_path and feeds else _RF_BEND_WEIGHT
+
+    def _is_short_stub(self, end: End) -> bool:
+        """True for an open or grounded line on a net of RF that is not much longer than a quarter wave."""
+        line = self.kit.model.sized.lines[end.element]
+        ends = [net for _, net in self.kit.model.ends[end.element] if net != GROUND]
+        if line.free or not line.rf or len(ends) != 1:
+            return False
+        return self.kit.lengths.by_bends(end.element)[0] * 1e-9 * line.beta <= _SHORT_STUB
 
     def _line_obstacles(self, growth: Growth, end: End, points: tuple[Point, ...], edge: str | None) -> None:
         """Add a line's boxes; where it ends in a port it runs up to the edge, and its way is kept clear."""

@@ -14,6 +14,10 @@ from layoutgen.placement.words import LegRules, Reach
 
 __all__ = ["Meetings"]
 
+_RF_LAUNCH = 3  # board heights: least length of a straight free line at a port of RF
+_PAIR_LAUNCH = 4  # board heights: the same at a coupled pair, whose other strip's end is near the edge, too
+_SUPPLY_LAUNCH = 2  # board heights: the same at a port of supply
+
 
 @dataclass(slots=True)
 class Meetings:
@@ -81,14 +85,27 @@ class Meetings:
         return max((self.model.widths.get(end.element, 0) for end in ends), default=0)
 
     def least_free(self, end: End, *, to_port: bool) -> int:
-        """Return the least length [nm] of a straight free line."""
-        first = self._reach(end, self.model.net_of(end))
-        far = self.far(end)
+        """Return the least length [nm] of a straight free line: the same from a port as to one."""
+        net, far = self.model.net_of(end), self.far(end)
+        first = self._reach(end, net)
         last = Reach(0, 0) if far is None else self._reach(far[0], far[1])
         limits = self.model.limits
-        rf = self.model.sized.lines[end.element].rf
-        extra = max(limits.spacing, 5 * limits.height if rf else 2 * limits.height)
-        return first.copper + (extra if to_port else last.copper + limits.spacing)
+        if to_port or self._begins_at_port(net):
+            return first.copper + last.copper + max(limits.spacing, self._launch(end.element) * limits.height)
+        return first.copper + last.copper + limits.spacing
+
+    def _launch(self, name: str) -> int:
+        """Return the least length of a straight free line at a port [board heights]."""
+        if not self.model.sized.lines[name].rf:
+            return _SUPPLY_LAUNCH
+        nets = [net for _, net in self.model.ends[name] if net != GROUND]
+        ends = (end for net in nets for end in self.model.circuit.nets[net].ends)
+        return _PAIR_LAUNCH if any(end.kind is EndKind.COUPLED for end in ends) else _RF_LAUNCH
+
+    def _begins_at_port(self, net: str) -> bool:
+        """True for the net of the port at which the walk begins."""
+        hub = self.tour.hubs.get(net)
+        return hub is not None and hub.arrival is not None and hub.arrival.kind is EndKind.PORT
 
     def with_closer(self, end: End) -> bool:
         """True when a line leads to a net where another line is to close a loop, and so needs room."""

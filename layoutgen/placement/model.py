@@ -14,10 +14,24 @@ from layoutgen.reading import RuleFile
 from layoutgen.sizing import SizedCircuit
 from layoutgen.units import to_nm
 
-__all__ = ["GROUND", "Limits", "Model", "copper_edge", "hole_land", "strip_owner"]
+__all__ = [
+    "DEFAULT_GAP",
+    "GROUND",
+    "Limits",
+    "Model",
+    "copper_edge",
+    "hole_land",
+    "line_heights",
+    "other_heights",
+    "strip_owner",
+]
 
 GROUND = "gnd"
+DEFAULT_GAP = 150_000
+"""Between copper of two nets [nm], where no rule says so: drawn, not checked; common practice, no source."""
 _DEFAULT_SPACING_HEIGHTS = 3.0  # used to place when the rule file is silent; common practice, no source
+_NODE_HEIGHTS = 3.0  # around a shared node [substrate heights]; as the check of line spacing has it
+_NEARER = (0.95, 0.8, 0.6, 0.4)  # shares of the spacing rule at which lines are laid where it cannot be kept
 _RING_ROOM = 100_000  # [nm] more than a row of vias must have
 _DEFAULT_EDGE = 300_000  # [nm], copper to profile and cut-outs; common practice, no source
 _HOLE_LAND = 400_000  # [nm], copper around a plated hole, for the head of a screw; common practice, no source
@@ -26,7 +40,7 @@ _DEFAULT_GROUND_VIAS = 2  # per ground pad; common practice, no source
 
 @dataclass(frozen=True, slots=True)
 class Limits:
-    """Distances the placement keeps [nm], from the rule file where it has them.
+    """Distances the placement keeps [nm], from the rule file where it has them, else as is common practice.
 
     ``spacing`` between lines not meant to couple, ``gap`` between copper of two nets, ``edge`` from copper
     to profile and cut-outs, ``hole`` from copper to an unplated hole's wall, ``hole_edge`` from a hole's wall
@@ -55,16 +69,13 @@ class Limits:
         file, rules = sized.circuit.file, sized.circuit.rules
         height = to_nm(file.substrate.height)
         copper, holes, vias = rules.copper, rules.holes, rules.vias
-        gap = _nm(None if copper is None else copper.min_gap)
+        gap = DEFAULT_GAP if copper is None or copper.min_gap is None else to_nm(copper.min_gap)
         edge = copper_edge(rules)
-        heights = _DEFAULT_SPACING_HEIGHTS
-        if rules.spacing is not None and rules.spacing.min_line_heights is not None:
-            heights = rules.spacing.min_line_heights
         land, drill = to_nm(vias.diameter), to_nm(vias.drill)
         web = _nm(holes.min_web)
         return cls(
             height=height,
-            spacing=max(math.ceil(heights * height), gap),
+            spacing=max(math.ceil(line_heights(rules) * height), gap),
             gap=gap,
             edge=edge,
             hole=_nm(holes.min_copper_distance),
@@ -79,6 +90,14 @@ class Limits:
             ground_vias=vias.per_ground_pad or _DEFAULT_GROUND_VIAS,
         )
 
+    @property
+    def near(self) -> int:
+        """How far from a shared node [nm] lines are not compared with what they meet there.
+
+        Never less than the check passes over, so that a looser spacing rule is no harder to keep.
+        """
+        return max(self.spacing, math.ceil(_NODE_HEIGHTS * self.height))
+
 
 def copper_edge(rules: RuleFile) -> int:
     """Return how far copper is kept from the profile and from cut-outs [nm], also where no rule says so.
@@ -87,6 +106,23 @@ def copper_edge(rules: RuleFile) -> int:
     """
     asked = rules.copper.min_edge_distance
     return _DEFAULT_EDGE if asked is None else to_nm(asked)
+
+
+def line_heights(rules: RuleFile) -> float:
+    """Return how far lines not meant to couple keep apart [substrate heights], also where no rule says so."""
+    asked = None if rules.spacing is None else rules.spacing.min_line_heights
+    return _DEFAULT_SPACING_HEIGHTS if asked is None else asked
+
+
+def other_heights(rules: RuleFile) -> tuple[tuple[float, ...], tuple[float, ...]]:
+    """Return distances of lines [substrate heights] to try where none is found at the rule's: wider, nearer.
+
+    Wider ones keep the rule as well; nearer ones, the widest first, are empty where that is an error.
+    """
+    heights = line_heights(rules)
+    wider = (_DEFAULT_SPACING_HEIGHTS,) if heights < _DEFAULT_SPACING_HEIGHTS else ()
+    is_error = rules.severity.get("spacing.min_line_heights") == "error"
+    return wider, () if is_error or not heights else tuple(share * heights for share in _NEARER)
 
 
 def hole_land(rules: RuleFile) -> int:

@@ -9,10 +9,13 @@ from dataclasses import dataclass, field
 from layoutgen.circuit import EndKind
 from layoutgen.circuit.queries import ends_of
 from layoutgen.geometry import Point
+from layoutgen.placement.bodies import CLEAR
 from layoutgen.placement.budgets import LineLengths
 from layoutgen.placement.clearance import Ints, Kind, Obstacle, Obstacles, too_near
+from layoutgen.placement.frame import Box
 from layoutgen.placement.model import GROUND, Model, strip_owner
-from layoutgen.placement.state import Growth, LaidLine, leg_boxes, leg_slices
+from layoutgen.placement.pairs import is_folded_back
+from layoutgen.placement.state import Growth, LaidLine, LaidPair, leg_boxes, leg_slices
 from layoutgen.placement.words import is_bow
 
 __all__ = ["Neighbours"]
@@ -23,7 +26,7 @@ _TOLD = 500  # [nm]: distances that differ by less read alike
 
 @dataclass(slots=True)
 class Neighbours:
-    """Clearance with allowance: lines that meet are compared beyond the spacing rule of the shared node."""
+    """Clearance with allowance: lines that meet are compared beyond ``limits.near`` of the shared node."""
 
     model: Model
     lengths: LineLengths
@@ -67,7 +70,7 @@ class Neighbours:
     def _really(self, growth: Growth, a: Obstacle, b: Obstacle) -> bool:
         """Return whether a conflict stands once the allowance for shared nodes is made."""
         nets_a, nets_b = self._shared(a.owner, b.owner)
-        if not nets_a or self._too_close(a, b):
+        if not nets_a or self._too_close(a, b) or self._are_apart(growth, a, nets_a, b, nets_b):
             return True
         if a.kind == b.kind == Kind.GROUND:  # vias keep their pitch, whatever meets
             return _distance(a, b) < self.model.limits.pitch - self.model.limits.land
@@ -75,7 +78,9 @@ class Neighbours:
             return False
         if a.kind != Kind.BODY and b.kind != Kind.BODY and not self._is_line(growth, a, b):
             grounded = Kind.GROUND in (a.kind, b.kind) and a.kind != b.kind
-            return grounded and not self._ends_pair(a, b) and not (self._is_lead(a) or self._is_lead(b))
+            if not grounded or self._ends_pair(a, b) or self._is_lead(a) or self._is_lead(b):
+                return False
+            return not self._is_beyond_pair(a, b, nets_a)
         left = self._trimmed(growth, self._softened(a, nets_b), nets_a)
         right = self._trimmed(growth, self._softened(b, nets_a), nets_b)
         if self._is_lead(a) or self._is_lead(b):
@@ -112,9 +117,37 @@ class Neighbours:
             return a.owner != b.owner and bool(self._nets(a) & meet) != bool(self._nets(b) & meet)
         return a.owner in pairs or b.owner in pairs
 
+    def _are_apart(
+        self, growth: Growth, a: Obstacle, nets_a: frozenset[str], b: Obstacle, nets_b: frozenset[str]
+    ) -> bool:
+        """True for strips of two pairs neither of which carries what joins the pairs: no allowance for them.
+
+        On either side of what joins the pairs, as in a staircase, they lie as the pairs' gaps have it.
+        """
+        if a.nets is None or b.nets is None or a.nets & nets_a or b.nets & nets_b or a.owner == b.owner:
+            return False
+        return is_folded_back(self._strip(growth, a), self._strip(growth, b))
+
+    def _strip(self, growth: Growth, item: Obstacle) -> tuple[LaidPair, bool]:
+        """Return a pair as it lies, and whether a strip of it is its second."""
+        laid = growth.pairs.get(item.owner) or growth.state.pairs[item.owner]
+        first = frozenset(net for end, net in self.model.ends[item.owner] if end.index < 2)
+        return laid, item.nets != first
+
     def _ends_pair(self, a: Obstacle, b: Obstacle) -> bool:
         """True when one of two is the ground copper of a pair's strip, beside what the other strip feeds."""
         return any(item.kind == Kind.GROUND and item.owner in self.model.sized.pairs for item in (a, b))
+
+    def _is_beyond_pair(self, a: Obstacle, b: Obstacle, nets: frozenset[str]) -> bool:
+        """True for the ground pad of a part that ends a pair's strip: the pour is not to keep off it there.
+
+        It may face that strip across the part, as it may a line's end; off the other strip it keeps a height.
+        """
+        pad, strip = (a, b) if a.kind == Kind.GROUND else (b, a)
+        if strip.nets is None or pad.owner not in self.model.bodies:
+            return False
+        own = bool(strip.nets & nets & self.model.owner_nets[pad.owner])
+        return own or _distance(a, b) >= max(self.model.limits.height, CLEAR)
 
     def _nets(self, item: Obstacle) -> frozenset[str]:
         if item.kind == Kind.GROUND:
@@ -132,12 +165,26 @@ class Neighbours:
     def _trimmed(self, growth: Growth, item: Obstacle, nets: frozenset[str]) -> list[Obstacle]:
         """Return an obstacle, or for a line its boxes without what lies near the shared nodes."""
         line = self._line(growth, item.owner)
-        if line is None or item.corridor:
+        if line is None:
             return [item]
+        if item.corridor:
+            return [self._cut_corridor(line, item, nets)]
         key = (line.name, line.points, nets)
         if key not in self._cuts:
             self._cuts[key] = self._cut_boxes(line, item, nets)
         return self._cuts[key]
+
+    def _cut_corridor(self, line: LaidLine, item: Obstacle, nets: frozenset[str]) -> Obstacle:
+        """Return the way from a line's end to the edge without what of it lies near a shared node, too.
+
+        The line will run there: what of its allowance it does not use up itself holds for its way.
+        """
+        if line.open_edge is None or line.root_edge is not None:
+            return item
+        net = self.model.file.lines[line.name].nets[line.start]
+        run = sum(math.dist(a, b) for a, b in itertools.pairwise(line.points))
+        left = math.floor(self._allowance(net) - run) if net in nets else 0
+        return item._replace(box=_shortened(item.box, line.open_edge, left)) if left > 0 else item
 
     def _cut_boxes(self, line: LaidLine, item: Obstacle, nets: frozenset[str]) -> list[Obstacle]:
         points = line.points
@@ -153,14 +200,14 @@ class Neighbours:
     def _allowance(self, net: str) -> int:
         """Return how far from a node [nm] a line is not compared with what it meets there.
 
-        At the end of a coupled pair or a radial stub's apex twice the spacing rule: there copper begins side
+        At the end of a coupled pair or a radial stub's apex twice as far: there copper begins side
         by side and must part.
         """
         ends = self.model.circuit.nets[net].ends
         radials = self.model.sized.radials
         spreads = any(end.kind is EndKind.COUPLED or end.element in radials for end in ends)
         factor = 2 if spreads else 1
-        return factor * self.model.limits.spacing + self.model.reach_at(net) + _GRID
+        return factor * self.model.limits.near + self.model.reach_at(net) + _GRID
 
     def _folds_on_itself(self, line: LaidLine) -> bool:
         if is_bow(line.route.word):
@@ -214,12 +261,12 @@ class Neighbours:
         return out
 
     def _near_pins(self, name: str) -> list[tuple[str, str]]:
-        """Return the pairs of nets whose pads on one part lie within twice the spacing rule."""
+        """Return the pairs of nets whose pads on one part lie within twice the allowance."""
         lands = [land for land in self.model.bodies[name].lands if land.net != GROUND and land.has_copper]
         return [
             (a.net, b.net)
             for a, b in itertools.combinations(lands, 2)
-            if math.dist((a.x, a.y), (b.x, b.y)) < 2 * self.model.limits.spacing
+            if math.dist((a.x, a.y), (b.x, b.y)) < 2 * self.model.limits.near
         ]
 
     def _is_short(self, name: str) -> bool:
@@ -228,7 +275,7 @@ class Neighbours:
         if line is None or line.free:
             return False
         pads = sum(self._pad_on(name, net) for net in line.nets if net != GROUND)
-        return self.lengths.by_bends(name)[0] - pads < 2 * self.model.limits.spacing
+        return self.lengths.by_bends(name)[0] - pads < 2 * self.model.limits.near
 
     def _pad_on(self, name: str, net: str) -> int:
         """Return how much of a line lies on the one pad that it ends on in a net [nm]: its node is beyond."""
@@ -262,6 +309,14 @@ def _overlap(a: Obstacle, b: Obstacle) -> bool:
     """True when the interiors of two boxes overlap."""
     x = a.box[0] < b.box[2] and b.box[0] < a.box[2]
     return x and a.box[1] < b.box[3] and b.box[1] < a.box[3]
+
+
+def _shortened(box: Box, edge: str, amount: int) -> Box:
+    """Return a way to an edge that begins an amount [nm] nearer to it."""
+    x0, y0, x1, y1 = box
+    if edge in ("east", "west"):
+        return (x0 + amount, y0, x1, y1) if edge == "east" else (x0, y0, x1 - amount, y1)
+    return (x0, y0 + amount, x1, y1) if edge == "north" else (x0, y0, x1, y1 - amount)
 
 
 def _cut(points: tuple[Point, ...], amount: int, *, at_start: bool) -> tuple[Point, ...]:

@@ -9,12 +9,12 @@ from layoutgen.placement.bodies import OVERLAP
 from layoutgen.placement.clearance import Kind, Obstacle
 from layoutgen.placement.frame import Box, Pose, box_to_world, to_world
 from layoutgen.placement.kit import Kit
-from layoutgen.placement.model import GROUND
-from layoutgen.placement.state import Growth, edge_of_heading
+from layoutgen.placement.model import GROUND, Model
+from layoutgen.placement.state import Growth, LaidPair, State, edge_of_heading
 from layoutgen.sizing import SizedRadial
 from layoutgen.units import to_nm
 
-__all__ = ["ground_strip_end", "pair_obstacles", "sector_slices"]
+__all__ = ["ground_strip_end", "is_folded_back", "pair_obstacles", "sector_slices", "side_away"]
 
 _SLICES = 8  # boxes that stand for a radial stub's sector
 
@@ -99,6 +99,52 @@ def _room_inward(kit: Kit, end: End) -> tuple[int, int]:
     widest = max([to_nm(pair.width), *(kit.across(other) for other in met)])
     edge = pitch - math.ceil(widest / 2) - limits.gap
     return edge - limits.land // 2, edge
+
+
+def side_away(model: Model, state: State, end: End, start: Pose) -> int | None:
+    """Return on which side a pair's other strip lies away from that of the pair it follows directly.
+
+    Pairs in a row, each joined to the next by one strip in line, are a staircase: an end folded back would
+    lie beside the open end of the pair before, and couple to it (common practice, no source).
+
+    Args:
+        model: The circuit.
+        state: What is laid.
+        end: The end by which the pair is entered.
+        start: Its node and heading into the pair.
+
+    Returns:
+        1 for the left of the traveller, -1 for the right, None where no pair comes just before, in line.
+    """
+    net = model.net_of(end)
+    for met in model.circuit.nets[net].ends if net in model.circuit.nets else ():
+        laid = state.pairs.get(met.element)
+        if laid is None or met.element == end.element or not _is_joined_once(model, met.element, end.element):
+            continue
+        side = laid.side if met.index < 2 else -laid.side
+        out = (laid.pose.heading + (0.0 if met.index in (1, 3) else 180.0)) % 360.0
+        if out == start.heading % 360.0:
+            return -side if met.index in (1, 3) else side
+    return None
+
+
+def _is_joined_once(model: Model, one: str, two: str) -> bool:
+    """True for two pairs that share a single net: both strips of a coupler's sections go on side by side."""
+    return len(model.owner_nets[one] & model.owner_nets[two]) == 1
+
+
+def is_folded_back(a: tuple[LaidPair, bool], b: tuple[LaidPair, bool]) -> bool:
+    """Return whether strips of two pairs lie on one side of what joins the pairs: no staircase.
+
+    Args:
+        a: A pair, and whether its strip is the second.
+        b: The other pair, and the same.
+    """
+    ways = [
+        (pair.pose.heading + 90.0 * pair.side * (1 if is_second else -1)) % 360.0
+        for pair, is_second in (a, b)
+    ]
+    return (ways[0] - ways[1]) % 360.0 != 180.0
 
 
 def sector_slices(stub: SizedRadial) -> list[Box]:

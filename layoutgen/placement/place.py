@@ -15,9 +15,11 @@ from layoutgen.placement.explain import explain_loop
 from layoutgen.placement.finish import finish, frame_of
 from layoutgen.placement.leads import LeadLengths, fit_leads, with_single_leads
 from layoutgen.placement.likes import Note, with_like_lines
-from layoutgen.placement.model import Model
+from layoutgen.placement.made import as_chained, as_led, as_spaced, as_wide, keeps_folds
+from layoutgen.placement.model import Model, line_heights, other_heights
 from layoutgen.placement.records import Choices, Placement
 from layoutgen.placement.remedies import Remedies
+from layoutgen.placement.requests import with_spacing, with_spine_to
 from layoutgen.placement.search import Effort, Failure, Search, drawing_cost
 from layoutgen.placement.start import first_states, join_root
 from layoutgen.placement.state import State
@@ -36,6 +38,7 @@ _EFFORTS = (
     Effort(beam=24, accepted=6, any_side=True, tight_edges=True, fold_spine=True),
 )
 _WIDE_EFFORTS = 2  # tried with loops drawn with all that lies on them
+_MOST_GOALS = 3  # ports to which the straight path is led in turn where none is found otherwise
 _CHAINS = ((0.0, True), (1.0, False), (1.0, True), (3.0, False), (3.0, True))
 """How chains are tried in turn where none as short as can be does: how much longer, whether combed."""
 
@@ -82,29 +85,83 @@ class _Nothing:
 
 
 def _searched(sized: SizedCircuit) -> Placement | _Nothing:
-    """Return the placement of a circuit, with other chains where the shortest do not fit, or why none."""
+    """Return the placement of a circuit, or why there is none.
+
+    Where the shortest chains do not fit, others are tried, then another straight path, and then other
+    distances between lines.
+    """
     found = _tried(sized, _EFFORTS)
-    if isinstance(found, _Nothing) and holds_chain(found.ways.model.sized):
-        return _with_other_chains(sized) or found
-    return found
+    if isinstance(found, Placement):
+        return found
+    chains = _with_other_chains(sized) if holds_chain(found.ways.model.sized) else None
+    return chains or _with_other_spine(sized) or _with_other_spacing(sized) or found
 
 
 def _with_other_chains(sized: SizedCircuit) -> Placement | None:
     """Return the placement of a circuit whose chains are longer, or the lines on them straight, or None."""
     for longer, combed in _CHAINS:
-        found = _tried(sized, _EFFORTS, longer=longer, combed=combed)
+        found = _tried(sized, _EFFORTS[:2], longer=longer, combed=combed)
         if isinstance(found, Placement):
-            return _as_chained(found, longer, combed)
+            return as_chained(found, longer, combed)
     return None
 
 
-def _as_chained(found: Placement, longer: float, combed: bool) -> Placement:
-    """Return a placement that says how its chains were made."""
-    assert found.choices is not None  # it was searched for
-    return replace(found, choices=replace(found.choices, longer=longer, combed=combed))
+def _with_other_spine(sized: SizedCircuit) -> Placement | None:
+    """Return the placement of a circuit whose straight path leads to another RF port, or None.
+
+    Of three arms the one must go straight on whose port lies ahead, whichever comes first in the file.
+    """
+    file = sized.circuit.file
+    if file.layout.spine is not None:
+        return None
+    others = [
+        name for name, port in file.ports.items() if port.kind == "rf" and name not in sized.circuit.spine
+    ]
+    for port in others[:_MOST_GOALS]:
+        found = _quickly(with_spine_to(sized, port), 1)
+        if found is not None:
+            return as_led(found, port)
+    return None
+
+
+def _with_other_spacing(sized: SizedCircuit) -> Placement | None:
+    """Return the placement of a circuit with lines farther apart, else nearer, than the rule asks; or None.
+
+    Only what takes little time is tried, and the nearest first: where that has no place, it ends there.
+    """
+    wider, nearer = other_heights(sized.circuit.rules)
+    found = next((found for heights in wider if (found := _spaced(sized, heights)) is not None), None)
+    if found is not None or not nearer:
+        return found
+    nearest = _spaced(sized, nearer[-1])
+    if nearest is None:
+        return None
+    return next((found for heights in nearer[:-1] if (found := _spaced(sized, heights)) is not None), nearest)
+
+
+def _spaced(sized: SizedCircuit, heights: float) -> Placement | None:
+    """Return the placement with another distance of lines [substrate heights], None where there is none.
+
+    Legs of one line keep the circuit's own rule even so.
+    """
+    found = _changed(with_spacing(sized, heights))
+    if found is None or not keeps_folds(found, line_heights(sized.circuit.rules)):
+        return None
+    return as_spaced(found, sized, heights)
 
 
 def _as_before(sized: SizedCircuit, like: Choices) -> Placement | None:
+    """Return the placement that earlier choices give, None where they no longer fit."""
+    if like.spine_to is not None:
+        found = _replayed(with_spine_to(sized, like.spine_to), like)
+        return None if found is None else as_led(found, like.spine_to)
+    if like.heights is None:
+        return _replayed(sized, like)
+    found = _replayed(with_spacing(sized, like.heights), like)
+    return None if found is None else as_spaced(found, sized, like.heights)
+
+
+def _replayed(sized: SizedCircuit, like: Choices) -> Placement | None:
     """Return the placement that earlier choices give, None where they no longer fit.
 
     Lines at loops are drawn alike only where the loops do not close otherwise.
@@ -117,8 +174,8 @@ def _as_before(sized: SizedCircuit, like: Choices) -> Placement | None:
         again = _again(ways, like)
         if again is not None:
             found = finish(model, ways.lengths, again, like.effort)
-            found = _whole(_as_wide(found) if like.wide else found, sized, notes)
-            return _as_chained(found, like.longer, like.combed)
+            found = _whole(as_wide(found) if like.wide else found, sized, notes)
+            return as_chained(found, like.longer, like.combed)
     return None
 
 
@@ -210,14 +267,8 @@ def _placed_widely(
     for number, effort in enumerate(efforts[:_WIDE_EFFORTS]):
         best, _ = _attempt(ways, effort)
         if best is not None:
-            return _as_wide(finish(model, ways.lengths, best, number))
+            return as_wide(finish(model, ways.lengths, best, number))
     return None
-
-
-def _as_wide(found: Placement) -> Placement:
-    """Return a placement that says that its loops were drawn with all that lies on them."""
-    assert found.choices is not None  # it was searched for
-    return replace(found, choices=replace(found.choices, wide=True))
 
 
 def _small_loops(model: Model) -> Sequence[ClusterSolver]:
@@ -329,8 +380,13 @@ def _infeasible(nothing: _Nothing, *, placed_before: bool) -> InfeasibleError:
 
 def _changed(sized: SizedCircuit) -> Placement | None:
     """Return the placement of a changed circuit; None where there is none, or the change is no good."""
+    return _quickly(sized, 2)
+
+
+def _quickly(sized: SizedCircuit, most: int) -> Placement | None:
+    """Return the placement of a circuit with the first few efforts; None where there is none."""
     try:
-        found = _tried(sized, _EFFORTS[:2], closed=True)
+        found = _tried(sized, _EFFORTS[:most], closed=True)
     except LayoutgenError:
         return None
     return found if isinstance(found, Placement) else None

@@ -112,12 +112,12 @@ class Ports:
         node = pending.at.turned(turn)
         growth.use(net, node.heading)
         width = self.kit.hub_strip_width(self.kit.tour.hubs[net])
-        out = ahead(node, self.kit.model.reach_at(net) + self.kit.model.limits.spacing)
+        out = ahead(node, self.kit.model.reach_at(net) + self.kit.model.limits.near)
         self.by_strip(growth, pending.end, out, node.point, width)
 
     def root_strip(self, growth: Growth, hub: Hub, port: str, pose: Pose) -> tuple[Pose, int]:
         """Lay the strip from the first port to pads or a junction; return its far end and width [nm]."""
-        out = ahead(pose, self.kit.model.limits.spacing + self.kit.model.reach_at(hub.net))
+        out = ahead(pose, self.kit.model.limits.near + self.kit.model.reach_at(hub.net))
         width = self.kit.hub_strip_width(hub)
         edge = root_edge(self.kit.model, port)
         known = growth.bounds.known(edge)

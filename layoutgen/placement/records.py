@@ -197,7 +197,9 @@ class Choices:
 
     ``wide`` tells whether loops were drawn with the transistors and free lines on them; ``longer`` how much
     longer the strips of chains are than their arms ask, in widths of the spacing rule [-], and ``combed``
-    whether the lines that leave them sideways are straight.
+    whether the lines that leave them sideways are straight; ``heights`` how far lines kept apart [substrate
+    heights] where that is not what the rule file asks, and ``spine_to`` the port to which the straight path
+    leads where it is not the one that follows from the circuit.
     """
 
     effort: int
@@ -206,6 +208,8 @@ class Choices:
     wide: bool = False
     longer: float = 0.0
     combed: bool = False
+    heights: float | None = None
+    spine_to: str | None = None
 
 
 @dataclass(frozen=True, slots=True, kw_only=True)

@@ -8,7 +8,7 @@ names no figure.
 from __future__ import annotations
 
 import math
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
 from itertools import chain, islice
 
@@ -101,17 +101,18 @@ class Remedies:
         return f"without {' and '.join(keys)} in [layout.hints.{name}] there is a placement"
 
     def _port_orders(self) -> Iterator[str | None]:
-        """Try the ports of an edge, of one edge after the other, in the opposite order."""
+        """Try the ports of an edge, of one edge after the other, in the opposite order, then two swapped."""
         ports = self.model.file.ports
         for edge in EDGES:
             names = [name for name, port in ports.items() if port.edge == edge and port.at is None]
             if len(names) < 2:
                 continue
-            back = iter(names[::-1])
-            order = [next(back) if name in names else name for name in ports]
-            does = self.tried(with_port_order(self.model.sized, order)) is not None
-            listed = ", ".join(f"[ports.{name}]" for name in names[::-1])
-            yield f"{listed} in this order in the file would do" if does else None
+            for other in _other_orders(names):
+                left = iter(other)
+                order = [next(left) if name in names else name for name in ports]
+                does = self.tried(with_port_order(self.model.sized, order)) is not None
+                listed = ", ".join(f"[ports.{name}]" for name in other)
+                yield f"{listed} in this order in the file would do" if does else None
 
     def _short_lines(self, element: str) -> Iterator[str | None]:
         """Try short lines that meet an element with greater angles."""
@@ -125,9 +126,14 @@ class Remedies:
                     does = self.tried(with_angles(model.sized, {name: angle})) is not None
                     yield f'angle = "{angle:g} deg" for {name} would do' if does else None
 
+    def _part_ending(self, pair: str) -> str | None:
+        """Return the first part with a pad straight on the end of a pair, None without one."""
+        nets = self.model.owner_nets[pair]
+        return next((name for name in self.model.file.parts if nets & self.model.owner_nets[name]), None)
+
     def _plain(self, element: str) -> str:
         """Return what can be changed for the kind of element, where nothing that was tried does."""
-        file = self.model.file
+        model, file = self.model, self.model.file
         asked = file.layout is not None and not is_strip(element)
         hint = file.layout.hints.get(element) if asked else None
         keys = (
@@ -138,8 +144,27 @@ class Remedies:
         if element in file.ports:
             return f"another edge or at for {element}, or longer lines beside it"
         if element in file.coupled:
-            return f"mode impedances nearer to each other for {element}, or narrower lines at its ends"
+            part = self._part_ending(element)
+            first = "" if part is None else f"a line between {element} and {part}, or "
+            return f"{first}mode impedances nearer to each other for {element}, or narrower lines at its ends"
+        line = model.sized.lines.get(element)
+        if line is not None and line.free:
+            return f"another order of the arms or ports, or leave or route in [layout.hints.{element}]"
+        if element in file.parts and not self._given_lines(element):
+            return f"more distance: a line between {element} and what stands beside it"
         return f'longer lines beside {element}, or length = "free" for one of them'
+
+    def _given_lines(self, element: str) -> bool:
+        """True where a line of given length meets an element."""
+        near = self.model.owner_nets.get(element, frozenset())
+        return any(not line.free and near & set(line.nets) for line in self.model.sized.lines.values())
+
+
+def _other_orders(names: Sequence[str]) -> Iterator[Sequence[str]]:
+    """Yield orders of an edge's ports to try: the opposite one, then each with two neighbours swapped."""
+    yield names[::-1]
+    for k in range(len(names) - 1 if len(names) > 2 else 0):
+        yield [*names[:k], names[k + 1], names[k], *names[k + 2 :]]
 
 
 def _mm(nm: int) -> str:

@@ -6,10 +6,22 @@ import math
 from collections.abc import Mapping, Sequence
 from dataclasses import replace
 
-from layoutgen.reading import CircuitFile, Hint
+from layoutgen.circuit import build_circuit
+from layoutgen.errors import LayoutgenError
+from layoutgen.placement.chains import holds_chain
+from layoutgen.reading import CircuitFile, Hint, SpacingRules
 from layoutgen.sizing import SizedCircuit
 
-__all__ = ["as_drawn_might_be", "with_angles", "with_free_line", "with_hint", "with_port_order", "with_size"]
+__all__ = [
+    "as_drawn_might_be",
+    "with_angles",
+    "with_free_line",
+    "with_hint",
+    "with_port_order",
+    "with_size",
+    "with_spacing",
+    "with_spine_to",
+]
 
 _UNLIKE = 3e-3  # step by which the pour as drawn may make one line's wavelength unlike the next one's [-]
 
@@ -34,10 +46,39 @@ def with_hint(sized: SizedCircuit, name: str, hint: Hint) -> SizedCircuit:
     return _with_file(sized, file.model_copy(update={"layout": layout}))
 
 
+def with_spacing(sized: SizedCircuit, heights: float) -> SizedCircuit:
+    """Return the circuit with another rule for the distance of its lines [substrate heights]."""
+    rules = sized.circuit.rules
+    table = (rules.spacing or SpacingRules()).model_copy(update={"min_line_heights": heights})
+    changed = rules.model_copy(update={"spacing": table})
+    return replace(sized, circuit=replace(sized.circuit, rules=changed))
+
+
+def with_spine_to(sized: SizedCircuit, port: str) -> SizedCircuit:
+    """Return the circuit whose straight path leads from its first RF port to another one than the next."""
+    ports = sized.circuit.file.ports
+    first = next(name for name in ports if ports[name].kind == "rf")
+    order = [first, port, *(name for name in ports if name not in (first, port))]
+    spine = with_port_order(sized, order).circuit.spine
+    return replace(sized, circuit=replace(sized.circuit, spine=spine))
+
+
 def with_port_order(sized: SizedCircuit, names: Sequence[str]) -> SizedCircuit:
-    """Return the circuit with its ports in another order."""
-    file = sized.circuit.file
-    return _with_file(sized, file.model_copy(update={"ports": {name: file.ports[name] for name in names}}))
+    """Return the circuit with its ports in another order, and the straight path that follows from it.
+
+    Where nets are chains of junctions the straight path stays.
+    """
+    circuit, ports = sized.circuit, sized.circuit.file.ports
+    changed = _with_file(
+        sized, circuit.file.model_copy(update={"ports": {name: ports[name] for name in names}})
+    )
+    if holds_chain(sized):
+        return changed
+    try:
+        built = build_circuit(changed.circuit.file, circuit.rules)
+    except LayoutgenError:  # what the walk leaves out may be all that a net holds
+        return changed
+    return replace(changed, circuit=replace(changed.circuit, nets=built.nets, spine=built.spine))
 
 
 def with_angles(sized: SizedCircuit, degrees: Mapping[str, float]) -> SizedCircuit:

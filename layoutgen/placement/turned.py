@@ -50,7 +50,7 @@ def turn_away(kit: Kit, growth: Growth, hub: Hub, outer: Pose) -> Pose | None:
 
 def sides_of_leads(kit: Kit, body: PartBody, land: BodyLand) -> set[int]:
     """Return to which sides of a lead, 1 left and -1 right, another signal lead is near in the same row."""
-    near = 2 * kit.model.limits.spacing
+    near = 2 * kit.model.limits.near
     sides = set()
     for other in body.lands:
         box = body.seen_ahead(land, other.box)

@@ -16,6 +16,7 @@ from layoutgen.placement.kit import Kit
 from layoutgen.placement.lay import Layer
 from layoutgen.placement.lay_cluster import Pinning, lay_cluster
 from layoutgen.placement.model import GROUND, Model
+from layoutgen.placement.pairs import side_away
 from layoutgen.placement.records import Choice
 from layoutgen.placement.rooms import Rooms
 from layoutgen.placement.routes import RouteChoice, Router
@@ -33,6 +34,7 @@ _CLUSTER_BENDS = 3.0  # what a bend inside a loop counts for
 _LOPSIDED = 12.0  # bends that a symmetric drawing of a symmetric loop is worth
 _SLENDER = 2.0  # bends for each unit by which a loop is more slender than
 _PLAIN_SLENDERNESS = 2.0  # this: long against wide [-]
+_FOLDED = 50.0  # bends that a pair folded back beside the one before it counts for: where nothing else does
 
 Extent = tuple[float, float, float, float]
 
@@ -156,10 +158,7 @@ class Ways:
         elif end.kind is EndKind.LINE:
             yield from self._line_ways(pending, turn, state, word)
         elif end.kind is EndKind.COUPLED:
-            length, start = self.lengths.pair_length(end.element, state.roles), pending.at.turned(turn)
-            for side in (1, -1):
-                lay_pair = partial(layer.pair, end=end, start=start, side=side, length=length)
-                yield Way(end.element, Choice(turn, side, heading=here), extent, 0.0, lay_pair)
+            yield from self._pair_ways(pending, turn, state)
         elif end.kind is EndKind.PORT:
             yield Way(
                 end.element,
@@ -174,6 +173,19 @@ class Ways:
                 lay_part = partial(layer.pad_arm, pending=farther, turn=turn, bank_side=side)
                 choice = Choice(turn, side, legs=(more,), heading=here)
                 yield Way(end.element, choice, extent, 0.0, lay_part)
+
+    def _pair_ways(self, pending: Pending, turn: float, state: State) -> Iterator[Way]:
+        """Yield the sides of a pair; of one that follows another the side away, late also the other."""
+        end, start = pending.end, pending.at.turned(turn)
+        length = self.lengths.pair_length(end.element, state.roles)
+        away = side_away(self.model, state, end, start)
+        for side in (1, -1):
+            folded = _FOLDED if away == -side else 0.0
+            if folded and not self.any_side:
+                continue
+            lay = partial(self.layer.pair, end=end, start=start, side=side, length=length)
+            choice = Choice(turn, side, heading=pending.at.heading)
+            yield Way(end.element, choice, state.extent, folded, lay, crowding=folded)
 
     def _offsets(self) -> tuple[int, ...]:
         """Return how much farther from its node than it must a part may stand [nm]."""

@@ -23,7 +23,7 @@ from layoutgen.response.records import CLOSE_ENOUGH, Holder
 __all__ = ["MANY_PORTS", "holders", "reachable"]
 
 _NAMED = 3  # elements named
-_HELPS = 0.95  # a cause counts when the difference falls below this share without it [-]
+_HELPS = 0.9  # a cause counts when the difference falls below this share without it [-]
 _MOST_PORTS = 40
 MANY_PORTS = 12
 """With more ports only kinds of cause are looked into, with more than 40 none: each takes its own fit."""

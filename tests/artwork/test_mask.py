@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import math
 from types import ModuleType
 
 import pytest
@@ -134,3 +135,31 @@ def test_paste_of_an_exposed_pad_is_a_window_of_panes(boards: ModuleType, measur
     assert max(max(pane.bounds[2] - pane.bounds[0], pane.bounds[3] - pane.bounds[1]) for pane in panes) < 2e6
     assert 0.45 < sum(pane.area for pane in panes) / pad.area < 0.75
     assert min(a.distance(b) for i, a in enumerate(panes) for b in panes[i + 1 :]) >= 299_000
+
+
+@pytest.mark.parametrize("apart", [0.0, 0.03, 0.079, 0.099])
+def test_openings_that_corners_bring_together_are_one(
+    boards: ModuleType, measures: ModuleType, apart: float
+) -> None:
+    """Would catch a web that comes off: closing leaves one where two openings face each other by corners."""
+    board = boards.BoardBuilder(20.0, 12.0)
+    step = 0.1 + apart / math.sqrt(2.0)
+    board.line("low", [(3.0, 5.0), (10.0, 5.0)], 1.0, ("a", "open"))
+    board.line("high", [(10.0 + step, 6.0 + step), (17.0, 6.0 + step)], 1.0, ("b", "open"))
+    artwork = draw(board.placement())
+    opening = _top(artwork, measures)
+    assert len(shapely.get_parts(opening)) == 1
+    between = shapely.Point((10.0 + step / 2.0) * 1e6, (5.5 + step / 2.0) * 1e6)
+    assert opening.covers(between.buffer(40_000))
+    lines = shapely.union_all(
+        [piece.outline.polygon() for piece in artwork.on("copper_top") if piece.net != "gnd"]
+    )
+    assert lines.buffer(60_000, join_style="mitre").buffer(120_000).covers(opening)
+
+
+def test_openings_a_web_apart_stay_two(boards: ModuleType, measures: ModuleType) -> None:
+    """Would catch mask taken away that holds."""
+    board = boards.BoardBuilder(20.0, 12.0)
+    board.line("low", [(3.0, 5.0), (10.0, 5.0)], 1.0, ("a", "open"))
+    board.line("high", [(10.2, 6.2), (17.0, 6.2)], 1.0, ("b", "open"))
+    assert len(shapely.get_parts(_top(draw(board.placement()), measures))) == 2

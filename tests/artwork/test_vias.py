@@ -8,13 +8,17 @@ import subprocess
 import sys
 from pathlib import Path
 from types import ModuleType
+from typing import Any
 
 import numpy as np
 import pytest
 import shapely
 from scipy.spatial import cKDTree
 
-from layoutgen.artwork import Artwork, Via, draw
+from layoutgen.artwork import Artwork, Via, draw, mending
+from layoutgen.artwork.attitude import Attitude
+from layoutgen.artwork.drills import Drills
+from layoutgen.artwork.limits import limits_of
 
 NAMES = ("straight", "tee", "feed", "stage", "shorted")
 SEEDS = range(40)
@@ -252,3 +256,27 @@ def test_a_gap_that_nothing_closes_is_as_narrow_as_it_can_be(boards: ModuleType,
     """
     least = 2_200_000 + 2.0 * math.sqrt(1.1**2 - 0.9**2) * 1e6
     assert least <= _row_beside_vias(boards, x0, 1.2) <= least + 40_000
+
+
+class _StandIn:
+    """Stands in for a row that gapes as much whatever is set."""
+
+    def excess(self, drills: Drills) -> float:
+        """Return a constant [nm]."""
+        return 1_000.0
+
+
+def test_a_mending_that_is_given_up_leaves_no_via(
+    boards: ModuleType, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    """Would catch vias nearer than the least pitch: one moved onto an axis stayed, and the old came back."""
+    limits = limits_of(boards.straight().placement().sized)
+    area = shapely.box(0, 0, 10e6, 10e6)
+    drills = Drills(area, limits, [], (Attitude(10_000_000, 10_000_000, mirrored=True),))
+    assert drills.put(5e6, 5.45e6)
+    before = drills.axes()
+    assert len(before) == 2
+    monkeypatch.setattr(mending, "_best_chain", lambda *_: [(5.3e6, 5.02e6)])
+    row: Any = _StandIn()
+    assert not mending._is_mended(row, [], before, [row], drills)
+    assert drills.axes() == before

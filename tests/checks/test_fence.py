@@ -4,8 +4,11 @@ from __future__ import annotations
 
 from typing import Any
 
+import numpy as np
 import pytest
+import shapely
 
+from layoutgen.checks.rules.fence_max_pitch import _feet
 from tests.checks.boards import Sheet, box, near, only, polygon
 
 RULES: dict[str, Any] = {"fence": {"max_pitch": "2 mm", "max_edge_distance": "0.8 mm"}}
@@ -183,3 +186,11 @@ def test_pour_vias_may_stand_deep() -> None:
     sheet = fenced(EVEN)
     sheet.via(15, 8, "pour")
     assert sheet.found("fence.max_edge_distance") == []
+
+
+@pytest.mark.parametrize("off", [0.0, 0.4, -0.4])
+def test_a_via_behind_a_corner_stands_by_both_edges(off: float) -> None:
+    """Catches a via as far from both edges that counts for one of them, as rounding has it: a false gap."""
+    stretch = shapely.LineString([(0, 0), (1_000_000, 0), (1_000_000, 1_000_000)])
+    feet = list(_feet(stretch, np.array([[700_000.0 + off, 300_000.0]]), 400_000.0))
+    assert sorted(round(foot.along) for foot in feet) == pytest.approx([700_000, 1_300_000], abs=1)

@@ -3,6 +3,7 @@ limit, in a format with true arcs and in one with chords."""
 
 from __future__ import annotations
 
+import itertools
 from pathlib import Path
 from typing import Any
 
@@ -14,6 +15,7 @@ import pytest
 from layoutgen.artwork import LAYERS
 from layoutgen.checks import CheckResult
 from layoutgen.foreign import check_foreign, read_artwork
+from layoutgen.foreign.curves import fitted_circle
 from layoutgen.reading import rules_from_data
 
 RULES: dict[str, Any] = {
@@ -185,3 +187,30 @@ def test_units_that_a_drawing_may_state(code: int, tmp_path: Path) -> None:
     doc.saveas(tmp_path / "a.dxf")
     (copper,) = read_artwork(tmp_path / "a.dxf").layers["copper_top"]
     assert np.asarray(copper.bounds) == pytest.approx((0, 0, 1e7, 1e7), abs=1.0)
+
+
+@pytest.mark.parametrize("corners", [16, 24, 37])
+def test_a_drill_read_from_chords_is_the_stocked_one(corners: int, tmp_path: Path) -> None:
+    """Catches "1.0000 mm has no drill, the nearest is 1.0000 mm" on vertices rounded to nanometres."""
+    things: list[Any] = [PAD]
+    for k, size in enumerate((1.0, 1.002)):
+        turn = 2.0 * np.pi * (np.arange(corners) + 0.3) / corners
+        x, y = 6.0 + 0.0000003 + 7.0 * k + 0.5 * size * np.cos(turn), 6.0 + 0.5 * size * np.sin(turn)
+        things.append(("drill_plated", list(zip(x.tolist(), y.tolist(), strict=True))))
+    found = [f for f in judged(tmp_path / "a.gds", *things).findings if f.rule == "holes.drills"]
+    assert [f.measured for f in found] == [1.002]
+
+
+@pytest.mark.parametrize("grid", [1, 10, 1_000])
+def test_diameters_of_chords_are_as_good_as_their_grid(grid: int) -> None:
+    """Catches a mean of rounded vertices taken for the diameter, or one rounder than the grid allows."""
+    for size, corners in itertools.product((200_000, 250_000, 999_400, 1_270_000, 3_200_000), (8, 24, 36)):
+        turn = 2.0 * np.pi * np.arange(corners) / corners
+        points = size / 2.0 * np.column_stack((np.cos(turn), np.sin(turn))) + (12_345_678, -7_654_321)
+        rounded = grid * np.rint(points / grid)
+        fitted = fitted_circle(rounded, 1_000.0)
+        assert fitted is not None
+        assert abs(fitted[2] - size) <= (1.5 * grid if size == 999_400 and grid > 100 else 1e-6), (
+            size,
+            corners,
+        )

@@ -9,6 +9,8 @@ import pytest
 import shapely
 from hypothesis import given, settings
 from hypothesis import strategies as st
+from shapely import affinity
+from shapely.geometry.base import BaseGeometry
 
 from layoutgen.geometry import (
     Ring,
@@ -179,3 +181,56 @@ def test_a_polygon_too_fine_for_exact_offset_still_comes_out_valid() -> None:
     )
     for outline, holes in offset_rings(notched, 80):
         assert shapely.Polygon(outline.points, [h.points for h in holes]).is_valid
+
+
+def _notched(seed: int) -> shapely.Polygon:
+    """Return a strip [nm], turned, with notches, some at a slant; every third has very fine ones."""
+    random = np.random.default_rng(seed)
+    length, width = (int(random.integers(*span)) for span in ((50_000, 200_000), (8_000, 40_000)))
+    strip: BaseGeometry = shapely.box(0, 0, length, width)
+    for _ in range(int(random.integers(1, 4))):
+        deep = int(random.choice([1_000, 1_500, width // 3] if seed % 3 else [3, 100, 1_500, width // 3]))
+        wide = int(random.choice([900, 3_000, 30_000] if seed % 3 else [5, 50, 3_000, 30_000]))
+        at = int(random.integers(-5_000, length))
+        notch = shapely.box(at, width - deep, at + wide, width + 5)
+        tilt = float(random.choice([0.0, 0.0, random.uniform(-40.0, 40.0)]))
+        strip = strip.difference(affinity.rotate(notch, tilt))
+    turned = affinity.rotate(strip, float(random.choice([0.0, 45.0, 90.0, 33.0])), origin=(0, 0))
+    return max(pieces(shapely.set_precision(turned, 1.0)), key=lambda piece: piece.area)
+
+
+@pytest.mark.parametrize("distance", [20, 200, 2_000, 4_000])
+def test_offset_of_notched_strips_is_the_mitred_buffer(distance: int) -> None:
+    """Would catch a division by zero at repeated points, and crossed or wrong outlines at fine notches."""
+    compared = 0
+    for seed in range(150):
+        strip = _notched(seed)
+        (outline, _), at = rings_of(shapely.Polygon(strip.exterior)), seed % 3
+        twice = Ring((*outline.points[: at + 1], outline.points[at], *outline.points[at + 1 :]))
+        grown = shapely.Polygon(offset_ring(twice, distance).points)
+        assert grown.is_valid, seed
+        allowed = 0.05 * distance + 10.0
+        around = shapely.Polygon(strip.buffer(distance, quad_segs=32).exterior)
+        assert grown.buffer(allowed).covers(around), seed
+        assert shapely.Polygon(strip.buffer(5.1 * distance + 10.0).exterior).covers(grown), seed
+        wanted = strip.buffer(distance, join_style="mitre", mitre_limit=5.0)
+        if seed % 3 and wanted.geom_type == "Polygon" and wanted.is_valid:  # it may break at fine notches
+            edge = shapely.Polygon(wanted.exterior).exterior
+            assert edge.hausdorff_distance(grown.exterior) <= allowed + 2.0, seed
+            compared += 1
+    assert compared > 90
+
+
+def test_repeated_points_and_points_on_an_edge_do_not_move_an_offset() -> None:
+    """Would catch the traceback on a pair whose end chamfer meets its square end in one point twice."""
+    box = ((0, 0), (0, 0), (900, 0), (900, 500), (900, 500), (450, 500), (0, 500))
+    assert set(offset_ring(Ring(box), 20).points) == {(-20, -20), (920, -20), (920, 520), (-20, 520)}
+
+
+def test_a_notch_narrower_than_twice_the_offset_closes() -> None:
+    """Would catch a refusal, or walls of a notch that pass through each other."""
+    notched = Ring(((0, 0), (900, 0), (900, 500), (420, 500), (420, 300), (390, 300), (390, 500), (0, 500)))
+    closed_up = shapely.Polygon(offset_ring(notched, 20).points)
+    assert closed_up.equals(shapely.box(-20, -20, 920, 520))
+    open_still = shapely.Polygon(offset_ring(notched, 10).points)
+    assert open_still.area == 920 * 520 - 10 * 200

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import itertools
 import math
 
 import pytest
@@ -127,3 +128,15 @@ def test_paths_and_mitres_that_do_not_match_are_refused(
     """Would catch a mitre silently applied to the wrong bend."""
     with pytest.raises(ValueError, match=r"vertices|bends"):
         stroke(path, 2, mitres)
+
+
+def test_a_chamfer_that_ends_at_a_square_end_gives_no_point_twice() -> None:
+    """Would catch edges of no length, which an offset cannot turn into a normal."""
+    half = 1_000 * math.tan(math.radians(22.5))
+    reach = round(mitre_reach(60.0, 45.0, 2_000.0))
+    assert reach > half
+    for length in range(reach - 3, reach + 4):
+        ring = stroke(
+            [(0, 0), (10_000, 0), (10_000 + round(length * 0.7071), round(length * 0.7071))], 2_000, [60.0]
+        )
+        assert all(a != b for a, b in itertools.pairwise((*ring.points, ring.points[0])))

@@ -337,16 +337,19 @@ def test_strips_grow_where_what_follows_asks_for_room() -> None:
     )
 
 
-def test_stubs_stand_straight_where_a_bent_one_shuts_others_in() -> None:
-    """Catches a row of stubs given up because the longest was bent across the way of those beside it."""
+def test_a_row_of_stubs_can_be_combed() -> None:
+    """Catches a row of stubs given up because the longest is bent across the way of those beside it."""
     lines = {f"e{k}": line("n", angle=f"{angle} deg") for k, angle in enumerate((26, 66, 43, 28))}
     bridge = {"i": free("a", "n"), "o": line("n", "k", angle="55 deg"), "o2": free("k", "z")}
     parts = {"C1": chip("capacitor", "1 pF", "n", "gnd")}
-    placement = place(sized(base(ports=two_ports(), lines={**bridge, **lines}, parts=parts)))
+    asked = sized(base(ports=two_ports(), lines={**bridge, **lines}, parts=parts))
+    placement = place(asked)
     assert faults(placement) == []
-    assert placement.choices is not None and placement.choices.combed
-    assert not any(placement.lines[name].bends for name in lines)
-    assert "e1" not in placement.sized.circuit.file.layout.hints
+    assert not placement.sized.circuit.file.layout.hints
+    combed, plain = (chained(asked, combed=on).circuit.file.layout.hints for on in (True, False))
+    strips = {"strip 1 of n", "strip 2 of n"}
+    assert (set(combed), set(plain)) == ({*lines, *strips}, strips)
+    assert all(hint.route is not None and hint.route.turns == () for hint in combed.values())
 
 
 @pytest.mark.parametrize(("south", "count"), [(("s1", "s2"), 1), (("s1", "s2", "s3"), 2)])

@@ -7,8 +7,15 @@ from typing import Any
 
 import pytest
 
+from layoutgen.circuit import build_circuit
 from layoutgen.errors import InfeasibleError
-from tests.placement.circuits import base, free, line, port, through_with
+from layoutgen.placement import Placement
+from layoutgen.placement.model import Model
+from layoutgen.placement.remedies import Remedies
+from layoutgen.placement.requests import with_port_order
+from layoutgen.reading import inputs_from_data
+from layoutgen.sizing import SizedCircuit, size_circuit
+from tests.placement.circuits import base, chip, divider, free, line, port, through_with
 from tests.placement.leads import pad, part
 from tests.placement.legal import faults
 from tests.placement.test_frames import HOLE, board, pinned, placed
@@ -118,3 +125,43 @@ def test_ends_of_a_pair_that_lie_side_by_side_are_told_to_need_other_impedances(
     with pytest.raises(InfeasibleError) as caught:
         placed(data)
     assert "impedances nearer to each other for comb" in caught.value.remedy
+
+
+def test_two_of_three_ports_on_one_edge_are_told_to_be_swapped() -> None:
+    """Catches ports tried in the opposite order only, which of three ports is none with two swapped."""
+    lines = {"in": free("a", "t"), **{f"l{k}": free("t", f"q{k}") for k in (1, 2, 3)}}
+    ports = {"p": port("a", edge="west"), **{name: port(name, edge="east") for name in ("q1", "q3", "q2")}}
+    inputs = inputs_from_data(base(ports=ports, lines=lines))
+    model = Model(size_circuit(build_circuit(inputs.circuit, inputs.rules)))
+    some = placed(base(ports={"p1": port("a"), "p2": port("z")}, lines={"only": free("a", "z")}))
+
+    def only_in_order(changed: SizedCircuit) -> Placement | None:
+        return some if list(changed.circuit.file.ports) == ["p", "q1", "q2", "q3"] else None
+
+    told = Remedies(model, only_in_order, lambda: None).best("l3")
+    assert told == "[ports.q1], [ports.q2], [ports.q3] in this order in the file would do"
+
+
+def test_ports_in_another_order_are_tried_with_the_straight_path_that_follows() -> None:
+    """Catches a swap of two ports that draws when it is made but is not found when it is tried."""
+    data = divider()
+    inputs = inputs_from_data(data)
+    sized = size_circuit(build_circuit(inputs.circuit, inputs.rules))
+    data["ports"] = {name: data["ports"][name] for name in ("p1", "p3", "p2")}
+    again = build_circuit(inputs_from_data(data).circuit, inputs.rules)
+    tried = with_port_order(sized, ["p1", "p3", "p2"]).circuit
+    assert sized.circuit.spine != again.spine
+    assert (tried.spine, tried.nets) == (again.spine, again.nets)
+
+
+def test_what_is_told_suits_the_kind_of_element_where_nothing_that_was_tried_does() -> None:
+    """Catches length = "free" named for a line whose length is free already, and longer lines for none."""
+    lines = {"in": free("a", "n"), "mid": line("m", "k", angle="60 deg"), "out": free("k", "z")}
+    parts = {"C1": chip("capacitor", "22 pF", "n", "o"), "C2": chip("capacitor", "22 pF", "o", "m")}
+    inputs = inputs_from_data(base(ports={"p1": port("a"), "p2": port("z")}, lines=lines, parts=parts))
+    model = Model(size_circuit(build_circuit(inputs.circuit, inputs.rules)))
+    remedies = Remedies(model, lambda _: None, lambda: None)
+    assert remedies.best("in") == "another order of the arms or ports, or leave or route in [layout.hints.in]"
+    assert remedies.best("C1") == "more distance: a line between C1 and what stands beside it"
+    assert remedies.best("mid") == 'longer lines beside mid, or length = "free" for one of them'
+    assert remedies.best("C2") == 'longer lines beside C2, or length = "free" for one of them'

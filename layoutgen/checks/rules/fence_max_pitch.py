@@ -156,7 +156,8 @@ def _apart(a: _Foot, b: _Foot) -> float:
 def _feet(stretch: shapely.LineString, axes: npt.NDArray[np.float64], reach: float) -> Iterator[_Foot]:
     """Yield where axes (N, 2) [nm] stand by a stretch.
 
-    An axis in a narrow piece of pour, with the stretch running past on both sides, has a foot on each.
+    An axis in a narrow piece of pour, with the stretch running past on both sides, has a foot on each; one
+    behind a corner, as far from both its edges, too: rounding must not decide which one it stands by.
     """
     points = shapely.get_coordinates(stretch)
     step = np.diff(points, axis=0)
@@ -168,8 +169,8 @@ def _feet(stretch: shapely.LineString, axes: npt.NDArray[np.float64], reach: flo
         away = np.hypot(*(offset - share[:, None] * step).T)
         close = np.flatnonzero(away <= reach)
         for group in np.split(close, np.flatnonzero(np.diff(close) > 1) + 1):
-            if len(group):
-                best = int(group[np.argmin(away[group])])
+            nearest = group[away[group] <= away[group].min(initial=np.inf) + TOLERANCE_NM]
+            for best in dict.fromkeys(nearest[[0, -1]].tolist() if len(nearest) else ()):
                 yield _Foot(float(before[best] + share[best] * length[best]), x, y, float(away[best]))
 
 
