@@ -10,9 +10,13 @@ from collections.abc import Callable
 from pathlib import Path
 
 import pytest
+from hypothesis import settings
 
 from layoutgen import pipeline
 from layoutgen.writers import Result
+
+settings.register_profile("same every time", derandomize=True)
+settings.load_profile("same every time")
 
 EXAMPLES = Path(__file__).parents[1] / "examples"
 PATIENCE = 300.0  # for another process's drawing [s]

@@ -105,3 +105,10 @@ def test_legend_on_a_pad() -> None:
     sheet = padded({"legend": {"min_distance": "0.15 mm"}})
     sheet.ink(box(9.9, 9.9, 10.1, 10.1), "R1")
     assert only(sheet.found("legend.min_distance")).measured == 0.0
+
+
+def test_a_pad_off_the_board_needs_no_opening() -> None:
+    """Catches a crash over a pad that nothing of lies on the board: its place is the edge rule's matter."""
+    sheet = Sheet(EXPANSION)
+    sheet.part("C1", {"1": ("c", -10, 10, 1, 1), "2": ("d", -8, 10, 1, 1)})
+    assert sheet.found("mask.expansion") == []

@@ -54,6 +54,8 @@ def _pad(
     items, nets = (part,), (pad.net,)
     covered = shapely.MultiPolygon() if host is None else host
     bare = _on_board(board, outline.difference(covered))
+    if host is None and bare.is_empty:  # the pad lies off the board: the edge rule's matter
+        return
     if host is None or bare.area > TOLERANCE_NM * outline.length:
         at = middle(bare, outline)
         text = f"{name} leaves {bare.area / 1e12:.4f} mm^2 of the pad covered"
