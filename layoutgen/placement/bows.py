@@ -12,6 +12,7 @@ import itertools
 import math
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
+from typing import ClassVar
 
 from layoutgen.errors import WrongInputError
 from layoutgen.placement.closure import Bar, surplus
@@ -68,11 +69,7 @@ class LooseDemands(Demands):
 class BowedSolver(ClusterSolver):
     """A cluster whose lines may bow, where no drawing of right angles closes."""
 
-    def __post_init__(self) -> None:
-        """Read the cluster from the walk."""
-        ClusterSolver.__post_init__(self)
-        meetings = self.router.meetings
-        self.demands = LooseDemands(self.kit, meetings, self.scheme, self.nets, self.ends, self.outer)
+    DEMANDS: ClassVar[type[Demands]] = LooseDemands
 
     def _all(self) -> Iterator[Solution]:
         """Yield the solutions without bows, or where there are none, those with few bends and least bowed."""

@@ -5,6 +5,7 @@ from __future__ import annotations
 import itertools
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, field, replace
+from typing import ClassVar
 
 from layoutgen.circuit import End
 from layoutgen.circuit.queries import ends_of
@@ -78,6 +79,7 @@ class ClusterSolver:
     router: Router
     number: int
     known: dict[object, list[Solution]] = field(default_factory=dict)
+    DEMANDS: ClassVar[type[Demands]] = Demands
     scheme: Scheme = field(init=False)
     nets: tuple[str, ...] = field(init=False)
     ends: tuple[tuple[End, End], ...] = field(init=False)
@@ -93,7 +95,7 @@ class ClusterSolver:
         hub = {net: i for i, net in enumerate(self.nets)}
         pieces, ends = [], []
         for name in cluster.elements:
-            (a, net_a), (b, net_b) = ends_of(file, name)[:2]
+            (a, net_a), (b, net_b) = (item for item in ends_of(file, name) if item[1] in hub)
             pieces.append(self._piece(name, hub[net_a], hub[net_b], a, b))
             ends.append((a, b))
         outer = []
@@ -103,7 +105,8 @@ class ClusterSolver:
             outer.append((*arrival, *(arm.end for arm in found.arms)))
         self.ends, self.outer = tuple(ends), tuple(outer)
         self.scheme = Scheme(tuple(pieces), tuple(len(ends) for ends in self.outer))
-        self.demands = Demands(self.kit, self.router.meetings, self.scheme, self.nets, self.ends, self.outer)
+        meetings = self.router.meetings
+        self.demands = self.DEMANDS(self.kit, meetings, self.scheme, self.nets, self.ends, self.outer)
 
     def _piece(self, name: str, a: int, b: int, first: End, second: End) -> Piece:
         model = self.kit.model

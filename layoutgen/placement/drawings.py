@@ -9,6 +9,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass
+from typing import ClassVar
 
 from layoutgen.placement.words import Word, reversed_word
 
@@ -133,6 +134,8 @@ class Step:
 class Walk:
     """Depth first over the steps, with headings and words as they stand."""
 
+    MOST: ClassVar[int] = MOST_STEPS
+
     def __init__(self, scheme: Scheme, entry: int, reach: Callable[[int, Word, float], Range | None]) -> None:
         """Set out from a hub; the arguments are those of :func:`drawings`."""
         self.scheme, self.entry, self.reach = scheme, entry, reach
@@ -157,10 +160,10 @@ class Walk:
         for heading in self._leaving(step, at):
             for word in self._words(step, left):
                 self.count += 1
-                if self.count > MOST_STEPS:
+                if self.count > self.MOST:
                     return
                 if self._take(step, heading, word):
-                    yield from self._go(at + 1, left - len(word))
+                    yield from self._go(at + 1, left - self._bends(step, word))
                     self._give_back(step)
 
     def _drawing(self) -> Drawing:
@@ -215,6 +218,10 @@ class Walk:
             self._give_back(step)
             return False
         return True
+
+    def _bends(self, step: Step, word: Word) -> int:
+        """Return how many of the bends to be spent a step takes."""
+        return len(word)
 
     def _give_back(self, step: Step) -> None:
         self.used[step.stop].pop()

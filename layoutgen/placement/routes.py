@@ -2,12 +2,13 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
 from dataclasses import dataclass, field
 
 from layoutgen.circuit import End
 from layoutgen.placement.budgets import LineLengths
 from layoutgen.placement.frame import Box, Pose, unit
+from layoutgen.placement.headed import ROUND_WORDS, TARGET_WORDS, is_slanted, turn_to, words_to
 from layoutgen.placement.kit import PIN_TOLERANCE
 from layoutgen.placement.meetings import Meetings
 from layoutgen.placement.model import Model
@@ -32,34 +33,6 @@ _MM = 1_000_000
 _OPPOSITE = {"east": "west", "west": "east", "north": "south", "south": "north"}
 _STRETCHES = (0, 1 * _MM, 2 * _MM, 4 * _MM, 8 * _MM)
 _JOGS = (0, 2 * _MM, 5 * _MM)
-_TARGET_WORDS: tuple[Word, ...] = (
-    (),
-    (90.0,),
-    (-90.0,),
-    (90.0, -90.0),
-    (-90.0, 90.0),
-    (90.0, 90.0),
-    (-90.0, -90.0),
-    (90.0, -90.0, -90.0),
-    (-90.0, 90.0, 90.0),
-    (90.0, 90.0, -90.0),
-    (-90.0, -90.0, 90.0),
-    (90.0, -90.0, -90.0, 90.0),
-    (-90.0, 90.0, 90.0, -90.0),
-)
-_ROUND_WORDS: tuple[Word, ...] = (
-    (90.0, 90.0, 90.0),
-    (-90.0, -90.0, -90.0),
-    (90.0, -90.0, 90.0),
-    (-90.0, 90.0, -90.0),
-    (90.0, 90.0, -90.0, -90.0),
-    (-90.0, -90.0, 90.0, 90.0),
-    (90.0, 90.0, 90.0, -90.0),
-    (-90.0, -90.0, -90.0, 90.0),
-    (90.0, -90.0, -90.0, -90.0),
-    (-90.0, 90.0, 90.0, 90.0),
-)
-"""Further words for lines between two placed nodes."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -126,7 +99,7 @@ class Router:
             state: What is laid so far.
         """
         hinted = self._hinted_word(end)
-        words = [hinted[0]] if hinted is not None else [*_TARGET_WORDS, *_ROUND_WORDS]
+        words = [hinted[0]] if hinted is not None else [*TARGET_WORDS, *ROUND_WORDS]
         for word in words:
             if (start.heading + sum(word)) % 360.0 != target.heading:
                 continue
@@ -200,7 +173,7 @@ class Router:
     ) -> Iterator[RouteChoice]:
         asked = self.model.file.ports[port].edge
         edges = (
-            [asked] if asked is not None else sorted(EDGES, key=lambda e: _turn_to(start.heading, EDGES[e]))
+            [asked] if asked is not None else sorted(EDGES, key=lambda e: turn_to(start.heading, EDGES[e]))
         )
         for edge in edges:
             on = start.heading == EDGES[edge]
@@ -211,7 +184,7 @@ class Router:
     ) -> Iterator[RouteChoice]:
         name = end.element
         across, along = self._port_targets(state, port, edge)
-        words = _words_to(start.heading, EDGES[edge])
+        words = words_to(start.heading, EDGES[edge])
         if straight:
             words = [w for w in words if not w]
         x, y = (along, across) if unit(EDGES[edge])[0] else (across, along)
@@ -272,14 +245,13 @@ class Router:
         """Yield routes of given length that end at an edge, or settle where it is."""
         name = end.element
         x, y = target
-        if x is None and y is None:
-            slanted = [word for word in words if _is_slanted(word)]
-            yield from (RouteChoice(route, edge) for route in self._slanted(end, start, state, slanted))
-            for route in fixed_shapes(self.lengths.by_bends(name, state.roles), self.meetings.rules(end)):
-                if route.word in words:
-                    yield RouteChoice(route, edge)
-            return
         lengths = self.lengths.by_bends(name, state.roles)
+        shapes = (r for r in fixed_shapes(lengths, self.meetings.rules(end)) if r.word in words)
+        if x is None and y is None:
+            slanted = [word for word in words if is_slanted(word)]
+            yield from (RouteChoice(route, edge) for route in self._slanted(end, start, state, slanted))
+            yield from (RouteChoice(route, edge) for route in shapes)
+            return
         exact = [
             solved
             for word in words
@@ -288,28 +260,8 @@ class Router:
             for total in (self._total(name, word, state),)
             if (solved := solve_legs(word, least, start, total=total, x=x, y=y)) is not None
         ]
-        some = exact or self._nearly_to_edge(end, start, state, words, target, edge)
+        some = exact or _nearly_to_edge(shapes, start, target, edge)
         yield from (RouteChoice(route, edge) for route in some)
-
-    def _nearly_to_edge(
-        self,
-        end: End,
-        start: Pose,
-        state: State,
-        words: list[Word],
-        target: tuple[int | None, int | None],
-        edge: str,
-    ) -> Iterator[Route]:
-        """Yield shapes of given length that end short of an edge by less than a step of the board's size."""
-        ux, uy = unit(EDGES[edge])
-        axis = 0 if ux else 1
-        for route in fixed_shapes(self.lengths.by_bends(end.element, state.roles), self.meetings.rules(end)):
-            last = route_points(start, route)[1].point
-            along, across = target[axis], target[1 - axis]
-            short = 0 if along is None else (along - last[axis]) * (ux + uy)
-            there = across is None or abs(across - last[1 - axis]) <= PIN_TOLERANCE
-            if route.word in words and 0 <= short < BOARD_STEP and there:
-                yield route
 
     def _fixed_least(self, end: End, word: Word) -> tuple[int, ...]:
         return least_legs(word, self.meetings.rules(end))
@@ -360,7 +312,7 @@ class Router:
         across, along = self._port_targets(state, run.name, edge)
         x, y = (along, across) if unit(EDGES[edge])[0] else (across, along)
         goal = run.start_for(Pose(x or 0, y or 0, EDGES[edge]))
-        for word in _words_to(start.heading, goal.heading):
+        for word in words_to(start.heading, goal.heading):
             if straight and word:
                 continue
             route = solve_legs(
@@ -375,14 +327,14 @@ class Router:
 
     def _turned(self, end: End, start: Pose, state: State, heading: float) -> Iterator[RouteChoice]:
         """Yield routes by which a line turns to a heading [deg]; none where it has it already."""
-        words = _words_to(start.heading, heading)
+        words = words_to(start.heading, heading)
         if () in words:
             return
         if self.model.sized.lines[end.element].free:
             for word in words:
                 yield from (RouteChoice(route) for route in self._stretched(end, word))
             return
-        slanted = [word for word in words if _is_slanted(word)]
+        slanted = [word for word in words if is_slanted(word)]
         yield from (RouteChoice(route) for route in self._slanted(end, start, state, slanted))
         lengths = self.lengths.by_bends(end.element, state.roles)
         for route in fixed_shapes(lengths, self.meetings.rules(end)):
@@ -399,7 +351,7 @@ class Router:
 
     def _total(self, name: str, word: Word, state: State) -> int:
         """Return the centre-line length [nm] of a line of given length with the turns of a word."""
-        if _is_slanted(word):
+        if is_slanted(word):
             return self.lengths.length(name, word, state.roles)
         return self.lengths.by_bends(name, state.roles)[len(word)]
 
@@ -407,7 +359,7 @@ class Router:
         name = end.element
         free = self.model.sized.lines[name].free
         lengths = None if free else self.lengths.by_bends(name, state.roles)
-        for word in _words_to(start.heading, target.heading):
+        for word in words_to(start.heading, target.heading):
             if lengths is not None and len(word) >= len(lengths):
                 continue
             total = None if lengths is None else self._total(name, word, state)
@@ -458,27 +410,6 @@ class Router:
             yield RouteChoice(route, edge)
 
 
-def _is_slanted(word: Word) -> bool:
-    """True for a word with a turn that is no quarter turn."""
-    return any(turn % 90.0 for turn in word)
-
-
-def _words_to(heading: float, wanted: float) -> list[Word]:
-    """Return the words that turn a heading [deg] to another: of quarter turns, and one other if need be."""
-    turn = (wanted - heading) % 360.0
-    if turn % 90.0:
-        turn = turn if turn < 180.0 else turn - 360.0
-        quarter = 90.0 if turn > 0 else -90.0
-        return [(turn,)] if abs(turn) < 90.0 else [(quarter, turn - quarter), (turn - quarter, quarter)]
-    return [word for word in _TARGET_WORDS if sum(word) % 360.0 == turn]
-
-
-def _turn_to(heading: float, out: float) -> float:
-    """Return how far a heading must turn [deg, 0 to 180] to leave by an edge."""
-    turn = abs((out - heading) % 360.0)
-    return min(turn, 360.0 - turn)
-
-
 def _end_at(route: Route, start: Pose, along: int | None, edge: str) -> Route | None:
     """Return the route with its last leg cut or stretched to end at a coordinate [nm], if it is known."""
     if along is None:
@@ -488,3 +419,17 @@ def _end_at(route: Route, start: Pose, along: int | None, edge: str) -> Route | 
     more = round((along - (end.x if ux else end.y)) * (ux + uy))
     last = route.legs[-1] + more
     return Route(route.word, (*route.legs[:-1], last)) if last > 0 else None
+
+
+def _nearly_to_edge(
+    shapes: Iterable[Route], start: Pose, target: tuple[int | None, int | None], edge: str
+) -> Iterator[Route]:
+    """Yield the shapes that end short of an edge by less than a step of the board's size."""
+    ux, uy = unit(EDGES[edge])
+    axis = 0 if ux else 1
+    for route in shapes:
+        last = route_points(start, route)[1].point
+        along, across = target[axis], target[1 - axis]
+        short = 0 if along is None else (along - last[axis]) * (ux + uy)
+        if 0 <= short < BOARD_STEP and (across is None or abs(across - last[1 - axis]) <= PIN_TOLERANCE):
+            yield route

@@ -3,14 +3,12 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator, Mapping, Sequence
+from typing import ClassVar
 
-from layoutgen.placement.drawings import Drawing, Range, Scheme, Step, Walk, walked_steps
+from layoutgen.placement.drawings import Range, Scheme, Step, Walk, walked_steps
 from layoutgen.placement.words import Word, reversed_word
 
 __all__ = ["Fixed", "JoinedWalk"]
-
-_MOST_STEPS = 15_000
-"""Steps of a walk for one number of bends after which the rest is left out."""
 
 Fixed = Mapping[int, tuple[int, tuple[float, float], Word]]
 """By piece: the smaller loop it belongs to, the headings of its ends in that loop's drawing, its word."""
@@ -22,6 +20,8 @@ class JoinedWalk(Walk):
     No other line takes more than ``each`` bends. With ``straight``, nodes with a stub or feed beside two
     pieces lead straight through.
     """
+
+    MOST: ClassVar[int] = 15_000
 
     def __init__(
         self,
@@ -38,6 +38,7 @@ class JoinedWalk(Walk):
         self.steps = walked_steps(scheme, entry, early=True)
         self.fixed, self.each, self.mirror = fixed, each, 1.0
         self.frames: dict[int, tuple[float, float]] = {}
+        self.framed_by: dict[int, int] = {}
         self.through = [straight and self._leads_through(hub) for hub in range(len(scheme.outer))]
 
     def _leads_through(self, hub: int) -> bool:
@@ -45,32 +46,26 @@ class JoinedWalk(Walk):
         inner = self.scheme.inner(hub)
         return len(inner) == 2 and all(k not in self.fixed for k, _ in inner)
 
-    def _go(self, at: int, left: int) -> Iterator[Drawing]:
-        if at == len(self.steps):
-            if left == 0:
-                yield self._drawing()
-            return
-        step = self.steps[at]
-        for heading in self._leaving(step, at):
-            for word in self._words(step, left):
-                self.count += 1
-                if self.count > _MOST_STEPS:
-                    return
-                if self._take(step, heading, word):
-                    sets = self._frame(step, heading)
-                    yield from self._go(at + 1, left - (0 if step.piece in self.fixed else len(word)))
-                    if sets:
-                        del self.frames[self.fixed[step.piece][0]]
-                    self._give_back(step)
+    def _bends(self, step: Step, word: Word) -> int:
+        return 0 if step.piece in self.fixed else len(word)
 
-    def _frame(self, step: Step, heading: float) -> bool:
-        """Note how a smaller loop lies, by the first of its pieces; True where that was not known."""
-        if step.piece not in self.fixed or self.fixed[step.piece][0] in self.frames:
+    def _take(self, step: Step, heading: float, word: Word) -> bool:
+        """Draw a step, and note how a smaller loop lies by the first of its pieces."""
+        if not super()._take(step, heading, word):
             return False
-        loop, headings, _ = self.fixed[step.piece]
-        own = headings[0 if step.forward else 1]
-        self.frames[loop] = (self.mirror, (heading - self.mirror * own) % 360.0)
+        if step.piece in self.fixed and self.fixed[step.piece][0] not in self.frames:
+            loop, headings, _ = self.fixed[step.piece]
+            own = headings[0 if step.forward else 1]
+            self.frames[loop] = (self.mirror, (heading - self.mirror * own) % 360.0)
+            self.framed_by[loop] = step.piece
         return True
+
+    def _give_back(self, step: Step) -> None:
+        super()._give_back(step)
+        if step.piece in self.fixed:
+            loop = self.fixed[step.piece][0]
+            if self.framed_by.get(loop) == step.piece:
+                del self.frames[loop], self.framed_by[loop]
 
     def _leaving(self, step: Step, at: int) -> Sequence[float]:
         some = super()._leaving(step, at)

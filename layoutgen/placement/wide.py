@@ -12,16 +12,16 @@ from __future__ import annotations
 import itertools
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass, field
+from typing import ClassVar
 
 from layoutgen.circuit import End, EndKind
-from layoutgen.circuit.queries import ends_of
 from layoutgen.errors import WrongInputError
 from layoutgen.placement.bodies import BodyLand, PartBody, beyond
 from layoutgen.placement.bows import BowedSolver, LooseDemands
 from layoutgen.placement.closure import Apart, Bar, Shape, solve_closure
 from layoutgen.placement.cluster import ClusterPlan, ClusterSolver, Solution
 from layoutgen.placement.demands import Demands
-from layoutgen.placement.drawings import Drawing, Piece, Range, Scheme
+from layoutgen.placement.drawings import Drawing, Piece, Range
 from layoutgen.placement.frame import Box, Pose, box_around, unit
 from layoutgen.placement.symmetry import Mapping2, mirrored_alike
 from layoutgen.placement.tour import Headings
@@ -119,28 +119,8 @@ class WideDemands(LooseDemands):
 class WideSolver(BowedSolver):
     """A cluster of lines, two-pad parts and transistors; ``inside`` are the smaller loops by themselves."""
 
+    DEMANDS: ClassVar[type[Demands]] = WideDemands
     inside: Sequence[ClusterSolver] = field(default=())
-
-    def __post_init__(self) -> None:
-        """Read the cluster from the walk."""
-        tour, file = self.kit.tour, self.kit.model.file
-        cluster = tour.loops.clusters[self.number]
-        self.nets = cluster.nets
-        hub = {net: i for i, net in enumerate(self.nets)}
-        pieces, ends = [], []
-        for name in cluster.elements:
-            (a, net_a), (b, net_b) = (item for item in ends_of(file, name) if item[1] in hub)
-            pieces.append(self._piece(name, hub[net_a], hub[net_b], a, b))
-            ends.append((a, b))
-        outer = []
-        for net in self.nets:
-            found = tour.hubs[net]
-            arrival = () if found.arrival is None or found.arrival in found.inner else (found.arrival,)
-            outer.append((*arrival, *(arm.end for arm in found.arms)))
-        self.ends, self.outer = tuple(ends), tuple(outer)
-        self.scheme = Scheme(tuple(pieces), tuple(len(ends) for ends in self.outer))
-        meetings = self.router.meetings
-        self.demands = WideDemands(self.kit, meetings, self.scheme, self.nets, self.ends, self.outer)
 
     def _piece(self, name: str, a: int, b: int, first: End, second: End) -> Piece:
         model = self.kit.model
